@@ -1,0 +1,40 @@
+"""The program's own log: for finding faults of the program, not for proving how a coil was made."""
+
+from __future__ import annotations
+
+import logging
+from logging.handlers import RotatingFileHandler
+from pathlib import Path
+
+from windctl.cli.places import log_file
+
+_BYTES = 500_000
+_FILES = 4
+
+
+def start_log() -> Path | None:
+    """Send everything that `windctl` loggers say to a rotating file; its path, or None where none can be kept."""
+    logger = logging.getLogger("windctl")
+    for handler in logger.handlers:
+        if isinstance(handler, RotatingFileHandler):
+            return Path(handler.baseFilename)
+    path = log_file()
+    try:
+        path.parent.mkdir(parents=True, exist_ok=True)
+        # Opened at once, so that a folder that refuses is found now and not at the first fault.
+        file = RotatingFileHandler(path, maxBytes=_BYTES, backupCount=_FILES - 1, encoding="utf-8")
+    except OSError:
+        return None
+    file.setFormatter(logging.Formatter("%(asctime)s %(process)d %(threadName)s %(name)s %(levelname)s %(message)s"))
+    logger.addHandler(file)
+    logger.setLevel(logging.INFO)
+    logger.propagate = False
+    return path
+
+
+def log_fault(error: BaseException) -> Path | None:
+    """Write an unforeseen exception with its traceback to the log; where that is, or None if it cannot be."""
+    path = start_log()
+    if path is not None:
+        logging.getLogger("windctl").error("unforeseen", exc_info=error)
+    return path

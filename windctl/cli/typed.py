@@ -1,0 +1,60 @@
+"""Values that people type: either decimal sign, `k` for thousand, and a check against slips of the decimal point."""
+
+from __future__ import annotations
+
+import math
+import re
+
+import click
+
+from windctl.errors import UsageError
+
+_OHM = re.compile(r"\s*(\d+(?:[.,]\d*)?|[.,]\d+)\s*(k?)\s*(?:ohm)?\s*", re.IGNORECASE)
+
+
+def parse_ohm(text: str) -> float:
+    """`7946`, `7.946k`, `7,946 k`: a resistance in ohm. Raises ValueError for anything else, also for zero."""
+    match = _OHM.fullmatch(text)
+    if match is None:
+        raise ValueError(f"{text!r} is not a resistance: write 7946, 7.946k or 7,946k")
+    value = float(match[1].replace(",", ".")) * (1000.0 if match[2] else 1.0)
+    if value <= 0 or not math.isfinite(value):
+        raise ValueError(f"a resistance is above 0 ohm, not {text.strip()}")
+    return value
+
+
+class Ohm(click.ParamType):
+    """A resistance on the command line."""
+
+    name = "ohm"
+
+    def convert(self, value: object, param: click.Parameter | None, ctx: click.Context | None) -> float:
+        """Ohm as a float, or click's complaint about this option."""
+        if isinstance(value, float):
+            return value
+        try:
+            return parse_ohm(str(value))
+        except ValueError as error:
+            self.fail(str(error), param, ctx)
+
+
+def slipped_thousand(value: float, expected: float) -> float | None:
+    """What was probably meant, if `value` is about a thousand times off `expected` (> 0) either way; else None."""
+    for meant in (value * 1000, value / 1000):
+        if 0.2 < meant / expected < 5:
+            return meant
+    return None
+
+
+def confirm_ohm(value: float, expected: float, what: str, may_ask: bool) -> float:
+    """`value`, or what was meant where it is a thousand times off and the operator says so.
+
+    Raises UsageError where nobody can be asked.
+    """
+    meant = slipped_thousand(value, expected)
+    if meant is None:
+        return value
+    slip = f"{what} of {value:g} ohm is about a thousand times off the expected {expected:.4g} ohm"
+    if not may_ask:
+        raise UsageError(f"{slip}; if {meant:g} ohm is meant, write that.")
+    return meant if click.confirm(f"{slip}. Take {meant:g} ohm instead?", err=True) else value
