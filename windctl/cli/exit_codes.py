@@ -32,10 +32,6 @@ class ExitCode(IntEnum):
     INTERRUPTED = 130  # Ctrl-C, SIGTERM or SIGHUP, after a confirmed stop; the coil stays open
 
 
-class Interrupted(WindctlError):
-    """A signal asked the run to end; the machine has confirmed that it stands."""
-
-
 # Every class of windctl.errors finds its code through the most specific of these that it belongs to.
 _CODES: dict[type[BaseException], ExitCode] = {
     UsageError: ExitCode.USAGE,
@@ -45,7 +41,6 @@ _CODES: dict[type[BaseException], ExitCode] = {
     RunFailed: ExitCode.FAILED,
     BookError: ExitCode.FAILED,
     RecordBroken: ExitCode.RECORD_BROKEN,
-    Interrupted: ExitCode.INTERRUPTED,
     WindctlError: ExitCode.FAILED,
     click.exceptions.Abort: ExitCode.INTERRUPTED,
     click.UsageError: ExitCode.USAGE,
@@ -64,7 +59,7 @@ def code_for(error: BaseException) -> ExitCode:
 
 
 def code_for_coil(outcome: str, verdict: str) -> ExitCode:
-    """The exit code of a coil whose run came to an end: from its outcome, and its verdict if it is finished."""
+    """The exit code of a coil whose run came to an end: from its outcome and, if finished, its verdict."""
     if outcome == "finished":
         return ExitCode.OUTSIDE if verdict == "outside" else ExitCode.DONE
     return ExitCode.INTERRUPTED if outcome == "open" else ExitCode.ENDED_EARLY

@@ -13,7 +13,7 @@ _FILES = 4
 
 
 def start_log() -> Path | None:
-    """Send everything that `windctl` loggers say to a rotating file; its path, or None where none can be kept."""
+    """Send what `windctl` loggers say to a rotating file; its path, or None where none can be kept."""
     logger = logging.getLogger("windctl")
     for handler in logger.handlers:
         if isinstance(handler, RotatingFileHandler):
@@ -25,7 +25,9 @@ def start_log() -> Path | None:
         file = RotatingFileHandler(path, maxBytes=_BYTES, backupCount=_FILES - 1, encoding="utf-8")
     except OSError:
         return None
-    file.setFormatter(logging.Formatter("%(asctime)s %(process)d %(threadName)s %(name)s %(levelname)s %(message)s"))
+    file.setFormatter(
+        logging.Formatter("%(asctime)s %(process)d %(threadName)s %(name)s %(levelname)s %(message)s")
+    )
     logger.addHandler(file)
     logger.setLevel(logging.INFO)
     logger.propagate = False

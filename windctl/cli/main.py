@@ -39,8 +39,9 @@ windctl winds pickup coils on a motorised winding machine and keeps a record of 
     lazy=COMMANDS,
     invoke_without_command=True,
     context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100},
-    epilog="Options may stand before or behind the command's name. Results go to standard output, progress and "
-    "messages to standard error. No key and no command here is an emergency stop: use the hardware stop.",
+    epilog="Options may stand before or behind the command's name. Results go to standard output, "
+    "progress and messages to standard error. No key and no command here is an emergency stop: "
+    "use the hardware stop.",
 )
 @options.all_options
 @click.version_option(__version__, prog_name="windctl")

@@ -87,7 +87,9 @@ _OPTIONS: dict[str, _Decorator] = {
         "--at-turn", metavar="N", type=click.FloatRange(min=0), help="The turn, counted or confirmed by you."
     ),
     "batch": _shared("--batch", metavar="NAME", help="The batch that the coil belongs to."),
-    "of": _shared("--of", metavar="N", type=click.IntRange(min=1), help="How many coils the batch is to have."),
+    "of": _shared(
+        "--of", metavar="N", type=click.IntRange(min=1), help="How many coils the batch is to have."
+    ),
     "quiet": _shared("-q", "--quiet", is_flag=True, help="No progress; results, questions and errors only."),
     "no_input": _shared(
         "--no-input", is_flag=True, help="Never ask; refused where a real machine would turn."

@@ -39,7 +39,7 @@ def grouped(value: float, decimals: int = 0) -> str:
 def with_uncertainty(value: float, half_width: float, unit: str, most_decimals: int = 6) -> str:
     """`7.946 ± 0.031 kohm`: the half-width to two significant digits, the value to the same place.
 
-    `unit` "ohm" becomes "kohm" from 1000 on. A half-width that is not positive and finite shows the value alone.
+    `unit` "ohm" becomes "kohm" from 1000 on. A half-width that is not positive and finite is left out.
     """
     if unit == "ohm" and abs(value) >= 1000:
         value, half_width, unit = value / 1000, half_width / 1000, "kohm"

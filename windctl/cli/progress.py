@@ -7,10 +7,7 @@ terminal was closed, the reader of the pipe has gone) is given up quietly: the r
 
 from __future__ import annotations
 
-import os
-import shutil
-import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Protocol, TextIO
 
 from windctl.cli import present
@@ -104,7 +101,13 @@ def live_lines(snapshot: Snapshot, width: int, plain: bool, colour: bool) -> lis
     head = f"\x1b[{sgr}m{head}\x1b[0m" if colour else head[:room]
     first = f"{head}  {rest}" if rest else head
     marked = ["simulated"] if snapshot.simulated else []
-    return [first, fitted(["  " + field if i == 0 else field for i, field in enumerate([*coil_fields(snapshot), *marked])], room)]
+    return [
+        first,
+        fitted(
+            ["  " + field if i == 0 else field for i, field in enumerate([*coil_fields(snapshot), *marked])],
+            room,
+        ),
+    ]
 
 
 def plain_line(snapshot: Snapshot) -> str:

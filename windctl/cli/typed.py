@@ -1,4 +1,4 @@
-"""Values that people type: either decimal sign, `k` for thousand, and a check against slips of the decimal point."""
+"""Values that people type: either decimal sign, `k` for thousand, and a guard against a slipped point."""
 
 from __future__ import annotations
 
@@ -13,7 +13,7 @@ _OHM = re.compile(r"\s*(\d+(?:[.,]\d*)?|[.,]\d+)\s*(k?)\s*(?:ohm)?\s*", re.IGNOR
 
 
 def parse_ohm(text: str) -> float:
-    """`7946`, `7.946k`, `7,946 k`: a resistance in ohm. Raises ValueError for anything else, also for zero."""
+    """`7946`, `7.946k`, `7,946 k`: a resistance in ohm. Raises ValueError for anything else and for zero."""
     match = _OHM.fullmatch(text)
     if match is None:
         raise ValueError(f"{text!r} is not a resistance: write 7946, 7.946k or 7,946k")
@@ -23,23 +23,18 @@ def parse_ohm(text: str) -> float:
     return value
 
 
-class Ohm(click.ParamType):
-    """A resistance on the command line."""
-
-    name = "ohm"
-
-    def convert(self, value: object, param: click.Parameter | None, ctx: click.Context | None) -> float:
-        """Ohm as a float, or click's complaint about this option."""
-        if isinstance(value, float):
-            return value
-        try:
-            return parse_ohm(str(value))
-        except ValueError as error:
-            self.fail(str(error), param, ctx)
+def ohm_option(ctx: click.Context, param: click.Parameter, value: str | None) -> float | None:
+    """Callback of an option that takes a resistance: ohm, or click's complaint about that option."""
+    if value is None:
+        return None
+    try:
+        return parse_ohm(value)
+    except ValueError as error:
+        raise click.BadParameter(str(error), ctx, param) from None
 
 
 def slipped_thousand(value: float, expected: float) -> float | None:
-    """What was probably meant, if `value` is about a thousand times off `expected` (> 0) either way; else None."""
+    """What was probably meant, if `value` is about a thousand times off `expected` (> 0); else None."""
     for meant in (value * 1000, value / 1000):
         if 0.2 < meant / expected < 5:
             return meant

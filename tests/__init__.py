@@ -1,0 +1,1 @@
+"""Mirrors windctl/; beside it firmware, newcomer and benchmarks."""
