@@ -41,7 +41,7 @@ class Sampling:
 
 @dataclass(frozen=True, slots=True)
 class Segments:
-    """A program as the conversation streams it. `packed` is its wire form, 4 bytes a segment (u16, i16 LE)."""
+    """A program as the conversation streams it. `packed` is its wire form: (u16, i16) LE a segment."""
 
     id32: int
     packed: bytes
