@@ -9,25 +9,41 @@ from __future__ import annotations
 
 import json
 import math
+import sys
 from collections.abc import Sequence
-from typing import Any
+from typing import Any, TextIO
 
 import click
+
+_SPELT_OUT = str.maketrans({"±": "+-", "°": "deg ", "·": "-"})
+
+
+def takes_unicode(stream: TextIO) -> bool:
+    """Whether the stream's encoding has more than a handful of letters."""
+    return (getattr(stream, "encoding", None) or "").lower().replace("-", "").startswith("utf")
+
+
+def writable(text: str, stream: TextIO) -> str:
+    """The text, with signs that the stream may lack spelt out."""
+    return text if takes_unicode(stream) else text.translate(_SPELT_OUT)
 
 
 def result(text: str = "") -> None:
     """A line of the answer itself."""
-    click.echo(text)
+    click.echo(writable(text, sys.stdout))
 
 
 def result_json(answer: dict[str, Any]) -> None:
     """The answer as one JSON object with its `format`; refuses NaN and infinities, which are not JSON."""
-    click.echo(json.dumps({"format": 1, **answer}, ensure_ascii=False, allow_nan=False, indent=2))
+    text = json.dumps(
+        {"format": 1, **answer}, ensure_ascii=not takes_unicode(sys.stdout), allow_nan=False, indent=2
+    )
+    click.echo(text)
 
 
 def message(text: str) -> None:
     """A line about the work: to standard error."""
-    click.echo(text, err=True)
+    click.echo(writable(text, sys.stderr), err=True)
 
 
 def grouped(value: float, decimals: int = 0) -> str:
@@ -36,7 +52,7 @@ def grouped(value: float, decimals: int = 0) -> str:
     return text[1:] if text.startswith("-") and not text.strip("-0. ") else text
 
 
-def with_uncertainty(value: float, half_width: float, unit: str, most_decimals: int = 6) -> str:
+def with_uncertainty(value: float, half_width: float, unit: str, most_decimals: int = 9) -> str:
     """`7.946 ± 0.031 kohm`: the half-width to two significant digits, the value to the same place.
 
     `unit` "ohm" becomes "kohm" from 1000 on. A half-width that is not positive and finite is left out.

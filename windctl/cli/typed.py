@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+import sys
 
 import click
 
@@ -39,6 +40,11 @@ def slipped_thousand(value: float, expected: float) -> float | None:
         if 0.2 < meant / expected < 5:
             return meant
     return None
+
+
+def may_ask(no_input: bool) -> bool:
+    """Whether somebody sits at the terminal and has not asked to be left alone."""
+    return not no_input and sys.stdin is not None and sys.stdin.isatty()
 
 
 def confirm_ohm(value: float, expected: float, what: str, may_ask: bool) -> float:

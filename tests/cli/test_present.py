@@ -1,0 +1,69 @@
+"""How numbers are written for people."""
+
+from __future__ import annotations
+
+import io
+import math
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from windctl.cli import present
+
+
+@pytest.mark.parametrize(
+    ("value", "half_width", "text"),
+    [
+        (7945.62, 30.9, "7.946 ± 0.031 kohm"),
+        (7945.62, 3.14, "7.9456 ± 0.0031 kohm"),
+        (812.44, 3.06, "812.4 ± 3.1 ohm"),
+        (812.44, 26.0, "812 ± 26 ohm"),
+        (7945.62, 0.0, "7.946 kohm"),
+        (812.44, 0.0, "812.4 ohm"),
+        (5.4716, 0.0, "5.5 ohm"),
+    ],
+)
+def test_a_resistance_shows_as_many_digits_as_its_uncertainty_carries(
+    value: float, half_width: float, text: str
+) -> None:
+    assert present.ohm(value, half_width) == text
+
+
+@given(st.floats(1.0, 1e6), st.floats(1e-3, 1e5))
+def test_what_is_written_is_within_a_twentieth_of_the_half_width(value: float, half_width: float) -> None:
+    """Two significant digits of the uncertainty: rounding the value costs at most 1/20 of it."""
+    text = present.ohm(value, half_width)
+    scale = 1000.0 if text.endswith("kohm") else 1.0
+    written = float(text.split(" ± ")[0].replace(" ", "")) * scale
+    assert abs(written - value) <= half_width / 20 * 1.000001 + 1e-9
+
+
+def test_thousands_are_parted_by_a_space() -> None:
+    assert present.grouped(7946.0) == "7 946"
+    assert present.grouped(1234567.891, 2) == "1 234 567.89"
+    assert present.grouped(-0.04, 1) == "0.0"
+    assert present.grouped(-12.04, 1) == "-12.0"
+
+
+def test_turns_and_durations() -> None:
+    assert present.turns(7946.0) == "7 946 turns"
+    assert present.turns(7946.25) == "7 946.25 turns"
+    assert present.turns(7946.0, 206.0) == "7 946 ± 206 turns"
+    assert [present.duration(s) for s in (0.4, 45, 485, 3730)] == ["0:00", "0:45", "8:05", "1:02:10"]
+
+
+def test_json_is_one_object_with_its_format_and_refuses_what_json_cannot_say(
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    present.result_json({"turns": 3})
+    assert capsys.readouterr().out == '{\n  "format": 1,\n  "turns": 3\n}\n'
+    with pytest.raises(ValueError, match="JSON"):
+        present.result_json({"ohm": math.nan})
+
+
+def test_signs_are_spelt_out_where_the_stream_lacks_them() -> None:
+    ascii_stream = io.TextIOWrapper(io.BytesIO(), encoding="ascii")
+    assert present.writable("7.946 ± 0.031 kohm at 20 °C", ascii_stream) == "7.946 +- 0.031 kohm at 20 deg C"
+    utf8_stream = io.TextIOWrapper(io.BytesIO(), encoding="UTF-8")
+    assert present.writable("±", utf8_stream) == "±"

@@ -1,0 +1,86 @@
+"""Which machine a command speaks to: the profile by name or file, and what the options change about it."""
+
+from __future__ import annotations
+
+import os
+import tomllib
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from windctl.cli import places
+from windctl.errors import FileInvalid, MachineError, Problem
+
+if TYPE_CHECKING:
+    from windctl.cli.options import Shared
+    from windctl.profile.model import MachineProfile
+
+VIRTUAL = "virtual"
+
+
+def configured_machine() -> str:
+    """The name under `machine` in the user's settings, else `virtual`. Raises FileInvalid."""
+    file = places.settings_file()
+    try:
+        settings = tomllib.loads(file.read_text(encoding="utf-8"))
+    except FileNotFoundError:
+        return VIRTUAL
+    except (OSError, UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
+        raise FileInvalid([Problem(str(file), 0, 0, f"cannot be read: {error}")]) from error
+    name = settings.get("machine", VIRTUAL)
+    if not isinstance(name, str):
+        text = f"machine is {name!r}, not the name of a machine"
+        raise FileInvalid([Problem(str(file), 0, 0, text)])
+    return name
+
+
+def kept_profiles() -> dict[str, Path]:
+    """Profiles in the user's folder by name, in alphabetical order."""
+    return {file.stem: file for file in sorted(places.machines_folder().glob("*.toml"))}
+
+
+def profile_of(shared: Shared) -> MachineProfile:
+    """The machine asked for, with --readings and --port in place of what its profile says.
+
+    Raises MachineError for an unknown name, ProfileError for a bad file.
+    """
+    from windctl.profile.builtin import VIRTUAL as BUILT_IN
+    from windctl.profile.load import load_profile
+
+    name = shared.machine or configured_machine()
+    if name == VIRTUAL:
+        profile = BUILT_IN
+    elif name.endswith(".toml") or os.sep in name or "/" in name:
+        profile = load_profile(Path(name))
+    else:
+        kept = kept_profiles()
+        if name not in kept:
+            known = ", ".join([VIRTUAL, *kept])
+            raise MachineError(
+                f"there is no machine {name!r}; known: {known}. "
+                f"Profiles are kept as NAME.toml in {places.machines_folder()}."
+            )
+        profile = load_profile(kept[name])
+    if shared.readings is not None:
+        readings = profile.readings.model_copy(update={"mode": shared.readings})
+        profile = profile.model_copy(update={"readings": readings})
+    if shared.port is not None and shared.port != VIRTUAL:
+        port = profile.port.model_copy(update={"url": shared.port})
+        profile = profile.model_copy(update={"port": port})
+    return profile
+
+
+def simulated_here(shared: Shared, profile: MachineProfile) -> bool:
+    """True if the machine is to be simulated in this process; False if the profile names a port.
+
+    Raises MachineError if the profile is a real machine's and names none.
+    """
+    if shared.port == VIRTUAL:
+        return True
+    if profile.port.url is not None:
+        return False
+    if profile.name == VIRTUAL:
+        return True
+    raise MachineError(
+        f"the profile {profile.name!r} names no port: give port.url in it, or --port URL; "
+        f"--port {VIRTUAL} simulates that machine."
+    )

@@ -1,0 +1,77 @@
+"""`windctl plan`: what a coil will be, before any wire is cut."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from windctl.cli import present, typed
+from windctl.cli.machines import profile_of
+from windctl.cli.options import Shared, takes
+
+if TYPE_CHECKING:
+    from windctl.plan.model import Plan
+
+_Z95 = 1.959964  # two-sided 95 % of a normal distribution
+
+
+@click.command()
+@click.argument("recipe", type=click.Path(path_type=Path))
+@click.option(
+    "--turns", type=click.IntRange(min=1), metavar="N", help="Plan this many turns, whatever the target."
+)
+@click.option(
+    "--dcr",
+    "dcr_ohm",
+    callback=typed.ohm_option,
+    metavar="OHM",
+    help="Plan for this resistance at 20 °C, whatever the target; 7.946k and 7,946k are understood.",
+)
+@takes("machine", "readings", "json", "no_input")
+def plan(shared: Shared, recipe: Path, turns: int | None, dcr_ohm: float | None) -> None:
+    """What the coil of RECIPE will be: turns, resistance, wire, fit, time, and what can go wrong."""
+    from windctl.plan.make import make_plan
+    from windctl.recipe.load import load_recipe
+
+    if turns is not None and dcr_ohm is not None:
+        raise click.UsageError("--turns and --dcr each name the target: give one of them.")
+    wanted, profile = load_recipe(recipe), profile_of(shared)
+    if dcr_ohm is not None:
+        expected = make_plan(wanted, profile).dcr_20c_ohm
+        dcr_ohm = typed.confirm_ohm(dcr_ohm, expected, "a target", may_ask=typed.may_ask(shared.no_input))
+    made = make_plan(wanted, profile, turns=turns, dcr_ohm=dcr_ohm)
+    if shared.json:
+        present.result_json(made.as_json())
+    else:
+        show_plan(made)
+
+
+def show_plan(made: Plan) -> None:
+    """The plan as a table for people; ± is the half-width of the 95 % interval."""
+    present.result(made.recipe_name)
+    present.pairs(
+        [
+            ("turns", present.turns(made.turns, _Z95 * made.turns_sd)),
+            ("resistance", f"{present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)} at 20 °C"),
+            ("wire", f"{present.grouped(made.wire_length_m, 1)} m, {made.wire_mass_g:.1f} g"),
+            ("mean turn", f"{made.mean_turn_mm:.1f} mm"),
+            (
+                "build",
+                f"{made.build_mm:.2f} mm, {made.peak_build_mm:.2f} mm at its highest (crown {made.crown:.3f})",
+            ),
+            ("fits", made.fits),
+            ("time", present.duration(made.duration_s)),
+            (
+                "wire speed",
+                f"{made.wire_speed_mean_m_s:.1f} m/s, {made.wire_speed_peak_m_s:.1f} m/s twice a turn",
+            ),
+            (
+                "program",
+                f"{present.grouped(made.program.segments)} segments, {present.short_digest(made.program.digest)}",
+            ),
+        ]
+    )
+    for warning in made.warnings:
+        present.result(f"caution: {warning}")

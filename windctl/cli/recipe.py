@@ -1,0 +1,46 @@
+"""`windctl recipe`: recipe files."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from windctl.cli import present
+from windctl.cli.exit_codes import ExitCode
+from windctl.cli.options import Shared, takes
+
+
+@click.group()
+def recipe() -> None:
+    """Recipe files."""
+
+
+@recipe.command()
+@click.argument("files", metavar="FILE...", type=click.Path(path_type=Path), nargs=-1, required=True)
+@takes("json")
+def check(shared: Shared, files: tuple[Path, ...]) -> ExitCode:
+    """Say everything that is wrong with recipe files, each with its place; nothing else is done."""
+    from windctl.errors import Problem, RecipeError
+    from windctl.recipe.load import load_recipe
+
+    sound: list[dict[str, str]] = []
+    problems: list[Problem] = []
+    for file in files:
+        try:
+            loaded = load_recipe(file)
+        except RecipeError as error:
+            problems.extend(error.problems)
+            continue
+        sound.append({"file": str(file), "name": loaded.name, "digest": loaded.digest})
+    if shared.json:
+        listed = [
+            {"file": one.file, "line": one.line, "column": one.column, "text": one.text} for one in problems
+        ]
+        present.result_json({"recipes": sound, "problems": listed})
+    else:
+        for entry in sound:
+            present.result(f"{entry['file']}: {entry['name']}, {present.short_digest(entry['digest'])}")
+        for problem in problems:
+            present.message(str(problem))
+    return ExitCode.FILE_INVALID if problems else ExitCode.DONE
