@@ -1,0 +1,14 @@
+"""One coil as a fold over its events: what happened, what is known because of it, and what follows from that.
+
+events     the facts, named in past tense
+canonical  their one written form
+chain      the digests that tie each fact to all before it
+entries    facts as rows: rare ones singly, dense ones in lossless chunks
+fold       state' = fold(state, event)
+decide     (events, wants) = decide(state)
+summary    what the coil book's index says of a coil
+curve      resistance over turns, thinned for eyes and queries
+trace      the digest of a coil's facts without clock and names
+
+Everything here is pure: no clock, no random source, no input or output.
+"""

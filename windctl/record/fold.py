@@ -1,0 +1,266 @@
+"""state' = fold(state, event): what is known of a coil after each fact.
+
+The state is small and stays so, however long the coil: the latest words of the board, the estimate, the consents
+that still count, and a few counters. Nothing here decides anything; `windctl.record.decide` does.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
+from enum import Enum
+
+from windctl.forecast.estimator import Estimate, begin, update
+from windctl.forecast.reading import Reading as CoilReading
+from windctl.protocol.frames import crc16
+from windctl.protocol.messages import Identity, ReadingFlag, Refused, Status, Trust
+from windctl.protocol.messages import State as BoardState
+from windctl.protocol.wants import Permission
+from windctl.record.events import (
+    BoardGreeted,
+    ClearGiven,
+    CoilFinished,
+    CoilStarted,
+    CommandRefused,
+    CountCorrected,
+    EndRequested,
+    Event,
+    GoGiven,
+    Held,
+    HoldRequested,
+    LinkLost,
+    NoteMade,
+    ReadingTaken,
+    Resumed,
+    StatusHeard,
+    StopPointChosen,
+    Tripped,
+    WentOn,
+)
+
+# A reading at rest counts as settled when its whole window lies this long after the spindle stood.
+SETTLE_TICKS = 500
+
+
+class Fit(Enum):
+    """How the board that answered relates to this coil."""
+
+    UNKNOWN = "unknown"  # nobody has answered yet
+    FRESH = "fresh"  # nothing has ever been let go for this coil: the board is to be set up for it
+    SAME = "same"  # the board has this coil in hand; its count and its place in the program are the coil's
+    LOST = "lost"  # the board does not know where this coil stands: only the operator can tell the turn
+    CORRECTED = "corrected"  # the operator has told the turn: the board is to be set up for it
+
+
+@dataclass(frozen=True, slots=True)
+class State:
+    """One coil as its facts tell it. `None` is "not known" throughout."""
+
+    started: CoilStarted | None = None
+    identity: Identity | None = None  # since the last greeting of this run
+    status: Status | None = None  # of this conversation
+    fit: Fit = Fit.UNKNOWN
+    let_go: bool = False  # a consent was ever given: the spindle may have turned for this coil
+    turning: bool = False
+    boot: int = 0  # the board's boot number and epoch when it was last known to have this coil in hand
+    epoch: int = 0
+    count: int = 0  # the last count that is known for sure
+    next: int = 0  # segments laid by then
+    consent: GoGiven | None = None
+    consented_since_greeting: bool = False
+    hold: HoldRequested | None = None
+    end: EndRequested | None = None
+    clear: Permission | None = None
+    stop_point: int | None = None  # counts
+    stop_choices: int = 0
+    top_ups: int = 0  # stop points chosen after the first stop at the target
+    held: Held | None = None  # since the spindle last came to rest
+    tripped: Tripped | None = None
+    corrected: CountCorrected | None = None  # counts until the board has turned again
+    refused: Refused | None = None  # the last refusal since the last consent
+    link_lost: LinkLost | None = None
+    estimate: Estimate | None = None
+    reading: CoilReading | None = None  # the last one, used or not
+    readings_used: int = 0
+    readings_gated: int = 0
+    settled_readings: int = 0  # used ones since the spindle came to rest
+    finished: CoilFinished | None = None
+
+    @property
+    def counts_per_turn(self) -> int:
+        """Encoder counts in one turn of the spindle; 1 before the coil has started."""
+        return self.started.setup.counts_per_turn if self.started else 1
+
+    @property
+    def turns(self) -> float:
+        """Turns on the bobbin as last known."""
+        return self.count / self.counts_per_turn
+
+    @property
+    def permission(self) -> Permission | None:
+        """The board's present boot and epoch: what a consent given now would be good for."""
+        if self.status is not None:
+            return Permission(self.status.boot, self.status.epoch)
+        if self.identity is not None:
+            return Permission(self.identity.boot, self.identity.epoch)
+        return None
+
+
+def start() -> State:
+    """The state before the first fact."""
+    return State()
+
+
+def fold(state: State, event: Event) -> State:
+    """The state after one more fact."""
+    match event:
+        case StatusHeard():
+            return _status(state, event.status)
+        case ReadingTaken():
+            return _reading(state, event)
+        case CoilStarted():
+            return replace(state, started=event, estimate=begin(event.prior))
+        case Resumed():
+            return _link_gone(replace(state, hold=None, end=None, link_lost=None))
+        case BoardGreeted():
+            return replace(
+                state,
+                identity=event.identity,
+                status=None,
+                fit=_fit(state, event.identity),
+                consent=None,
+                consented_since_greeting=False,
+                clear=None,
+                refused=None,
+                link_lost=None,
+            )
+        case GoGiven():
+            return replace(
+                state,
+                consent=event,
+                consented_since_greeting=True,
+                let_go=True,
+                boot=event.boot,
+                epoch=event.epoch,
+                hold=None,
+                refused=None,
+            )
+        case ClearGiven():
+            return replace(state, clear=Permission(event.boot, event.epoch), refused=None)
+        case HoldRequested():
+            return replace(state, hold=event, consent=None)
+        case EndRequested():
+            return replace(state, end=event, consent=None)
+        case StopPointChosen():
+            return replace(
+                state,
+                stop_point=event.count,
+                stop_choices=state.stop_choices + 1,
+                top_ups=state.top_ups + (1 if state.held is not None else 0),
+            )
+        case WentOn():
+            return replace(
+                state, fit=Fit.SAME, turning=True, held=None, corrected=None, settled_readings=0
+            )
+        case Held():
+            return replace(state, turning=False, held=event, settled_readings=0)
+        case Tripped():
+            return replace(state, tripped=event, consent=None)
+        case LinkLost():
+            return _link_gone(replace(state, link_lost=event))
+        case CountCorrected():
+            cpt = state.counts_per_turn
+            return replace(
+                state, fit=Fit.CORRECTED, corrected=event, count=round(event.turn * cpt), held=None
+            )
+        case CommandRefused():
+            return replace(state, refused=event.refused)
+        case CoilFinished():
+            return replace(state, finished=event, consent=None)
+        case NoteMade():
+            return state
+
+
+def replay(events: Iterable[Event], state: State | None = None) -> State:
+    """The state after all of `events`."""
+    state = start() if state is None else state
+    for event in events:
+        state = fold(state, event)
+    return state
+
+
+def _fit(state: State, identity: Identity) -> Fit:
+    """A board that was never reset for another coil, and stands where this one can stand, has it in hand."""
+    if not state.let_go or state.started is None:
+        return Fit.FRESH
+    setup = state.started.setup
+    same = (
+        identity.boot == state.boot
+        and identity.trust == Trust.COUNT | Trust.GUIDE
+        and identity.coil_token == setup.coil_token
+        and identity.setup_crc == crc16(setup.encode_body())
+        and identity.program == state.started.program_id
+        and (identity.epoch - state.epoch) & 0xFFFF < 0x8000
+        and state.count <= identity.count <= state.started.total_counts
+        and identity.next >= state.next
+    )
+    return Fit.SAME if same else Fit.LOST
+
+
+def _status(state: State, status: Status) -> State:
+    tripped = state.tripped if status.state == BoardState.TRIPPED else None
+    if state.fit is not Fit.SAME:  # the board may still stand where another coil left it
+        return replace(state, status=status, tripped=tripped)
+    return replace(
+        state,
+        status=status,
+        tripped=tripped,
+        count=status.count,
+        next=status.next,
+        boot=status.boot,
+        epoch=status.epoch,
+    )
+
+
+def _reading(state: State, event: ReadingTaken) -> State:
+    """Only readings of this coil teach: not before it turned, not through an open contact."""
+    raw = event.reading
+    if state.started is None or state.identity is None or state.estimate is None or state.fit is not Fit.SAME:
+        return state
+    if raw.flags & ReadingFlag.OPEN or raw.count <= 0:
+        return replace(state, readings_gated=state.readings_gated + 1)
+    resting = not raw.flags & ReadingFlag.TURNING
+    reading = CoilReading(
+        turn=raw.count / state.counts_per_turn,
+        ohm=raw.value * state.identity.contact_scale / 16_000.0,
+        celsius=raw.celsius / 100.0,
+        resting=resting,
+        seconds=raw.ticks / 1000.0,
+    )
+    settled = (
+        resting and state.held is not None and raw.ticks - raw.window - state.held.ticks >= SETTLE_TICKS
+    )
+    if resting and not settled:
+        return replace(state, reading=reading)
+    estimate, used = update(state.estimate, reading)
+    return replace(
+        state,
+        estimate=estimate,
+        reading=reading,
+        readings_used=state.readings_used + used,
+        readings_gated=state.readings_gated + (not used),
+        settled_readings=state.settled_readings + (1 if settled and used else 0),
+    )
+
+
+def _link_gone(state: State) -> State:
+    return replace(
+        state,
+        identity=None,
+        status=None,
+        fit=Fit.UNKNOWN,
+        consent=None,
+        consented_since_greeting=False,
+        clear=None,
+        turning=False,
+    )

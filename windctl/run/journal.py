@@ -1,0 +1,144 @@
+"""The journal thread: facts become durable here, and a slow disk never delays the serial line.
+
+The runner hands over entries and goes on; this thread commits them in batches. A ticket tells when a certain
+entry is durable: consents wait for theirs before they act. A failed commit stops the journal for good; the
+runner sees it, stops beating, and the board holds.
+"""
+
+from __future__ import annotations
+
+import threading
+import time
+from collections.abc import Sequence
+from typing import Protocol
+
+from windctl.errors import BookError, WindctlError
+from windctl.record.entries import Entry
+
+LINGER_S = 0.5  # how long entries may gather before a commit
+TOO_OLD_S = 3.0  # an uncommitted fact older than this means: hold
+MOST_WAITING = 400  # entries, about 200 s of a coil: a simulated run waits beyond that
+
+
+class CoilLog(Protocol):
+    """Where one coil's facts go. Used by one thread, which need not be the one that made it."""
+
+    def commit(self, entries: Sequence[Entry]) -> None:
+        """Append entries in order; durable on return.
+
+        Raises BookError when they could not be stored; then none of them was.
+        """
+        ...
+
+    def close(self) -> None:
+        """Give back what is held. Called by the thread that committed."""
+        ...
+
+
+class Journal:
+    """A queue of entries and the thread that commits them."""
+
+    def __init__(self, log: CoilLog, linger_s: float = LINGER_S) -> None:
+        self._log = log
+        self._linger_s = linger_s
+        self._waiting: list[tuple[float, Entry]] = []
+        self._handed = 0
+        self._durable = 0
+        self._urgent = False
+        self._closing = False
+        self._failure: WindctlError | None = None
+        self._oldest_being_written: float | None = None
+        self._changed = threading.Condition()
+        self._thread = threading.Thread(target=self._work, name="windctl-journal", daemon=True)
+        self._thread.start()
+
+    def put(self, entries: Sequence[Entry], *, urgent: bool) -> int:
+        """Hand entries over; the ticket of the last one."""
+        with self._changed:
+            now = time.monotonic()
+            self._waiting.extend((now, entry) for entry in entries)
+            self._handed += len(entries)
+            self._urgent |= urgent
+            if entries:
+                self._changed.notify_all()
+            return self._handed
+
+    def is_durable(self, ticket: int) -> bool:
+        """True once the entry of that ticket is on disk."""
+        return self._durable >= ticket
+
+    def wait(self, ticket: int, timeout_s: float) -> bool:
+        """Wait until the entry of that ticket is durable; False when it is not, in time or ever."""
+        with self._changed:
+            self._urgent |= self._durable < ticket
+            self._changed.notify_all()
+            self._changed.wait_for(lambda: self._durable >= ticket or self._failure is not None, timeout_s)
+            return self._durable >= ticket
+
+    @property
+    def waiting(self) -> int:
+        """Entries handed over and not yet durable."""
+        return self._handed - self._durable
+
+    @property
+    def failure(self) -> WindctlError | None:
+        """Why the journal stopped for good, if it did."""
+        return self._failure
+
+    def oldest_s(self) -> float:
+        """Age in seconds of the oldest fact not yet durable."""
+        with self._changed:
+            first = self._oldest_being_written
+            if first is None and self._waiting:
+                first = self._waiting[0][0]
+            return 0.0 if first is None else time.monotonic() - first
+
+    def close(self, timeout_s: float = 30.0) -> None:
+        """Commit what is left and end the thread.
+
+        Raises BookError when something could not be made durable.
+        """
+        with self._changed:
+            self._closing = True
+            self._changed.notify_all()
+        self._thread.join(timeout_s)
+        if self._failure is not None:
+            raise self._failure
+        if self._thread.is_alive():
+            raise BookError(f"the coil book did not take the last {self.waiting} facts within {timeout_s:.0f} s")
+
+    def _work(self) -> None:
+        try:
+            while True:
+                batch = self._next_batch()
+                if not batch:
+                    break
+                self._log.commit(batch)
+                with self._changed:
+                    self._durable += len(batch)
+                    self._oldest_being_written = None
+                    self._changed.notify_all()
+        except WindctlError as error:
+            self._fail(error)
+        except Exception as error:  # whatever it is: the record is not safe, so the machine must stop
+            self._fail(BookError(f"the journal failed: {type(error).__name__}: {error}"))
+        finally:
+            self._log.close()
+
+    def _next_batch(self) -> list[Entry]:
+        """Wait for something to commit; empty when closing and all is done."""
+        with self._changed:
+            self._changed.wait_for(lambda: self._waiting or self._closing)
+            if self._waiting and not self._urgent and not self._closing:
+                left = self._waiting[0][0] + self._linger_s - time.monotonic()
+                self._changed.wait_for(lambda: self._urgent or self._closing, max(0.0, left))
+            batch = [entry for _, entry in self._waiting]
+            self._oldest_being_written = self._waiting[0][0] if self._waiting else None
+            self._waiting = []
+            self._urgent = False
+            return batch
+
+    def _fail(self, error: WindctlError) -> None:
+        with self._changed:
+            self._failure = error
+            self._changed.notify_all()

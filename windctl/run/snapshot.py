@@ -1,0 +1,132 @@
+"""What a screen may look at: one frozen picture of a run, in the units people read.
+
+Made from the folded facts when somebody looks, never stored, never asked for by anything that decides.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from windctl.forecast.finish import finish_at, so_far
+from windctl.protocol.messages import Cause, Trip
+from windctl.protocol.messages import State as BoardState
+from windctl.record.decide import Decision
+from windctl.record.fold import Fit, State
+
+
+@dataclass(frozen=True, slots=True)
+class Snapshot:
+    """One coil at one moment. None is "not known". Resistances in ohm, intervals are 95 % half-widths."""
+
+    phase: str  # "connecting", "setting up", "ready", "turning", "stopping", "held", "settling", "tripped", "ended"
+    says: str  # what is happening or happens next, in plain words
+    turns: float
+    turns_planned: float
+    stop_turn: float | None
+    pace_rpm: float
+    ohm_now: float | None
+    celsius: float | None
+    ohm_20c_now: float | None
+    finish_ohm: float | None
+    finish_u95: float | None
+    tension_cn: float | None
+    guide_mm: float | None
+    seconds_left: float | None
+    virtual: bool
+    asks: str | None
+    readings_used: int
+    readings_gated: int
+
+
+def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
+    """The picture of `state` for eyes. `steps_per_mm` is the guide's."""
+    started, status, identity = state.started, state.status, state.identity
+    spt = started.setup.steps_per_turn if started else 1
+    speed = status.speed if status else 0
+    stop = None if state.stop_point is None else state.stop_point / state.counts_per_turn
+    finish = None
+    now_20c = None
+    if state.estimate is not None and started is not None:
+        finish = finish_at(state.estimate, max(stop or started.planned_turns, state.turns))
+        if state.readings_used:
+            now_20c = so_far(state.estimate, state.turns).ohm
+    scale = identity.tension_scale if identity else 0
+    return Snapshot(
+        phase=_phase(state),
+        says=_says(state, decision),
+        turns=state.turns,
+        turns_planned=started.planned_turns if started else 0.0,
+        stop_turn=stop,
+        pace_rpm=speed * 60.0 / spt,
+        ohm_now=state.reading.ohm if state.reading else None,
+        celsius=status.celsius / 100.0 if status else None,
+        ohm_20c_now=now_20c,
+        finish_ohm=finish.ohm if finish else None,
+        finish_u95=(finish.high - finish.low) / 2.0 if finish else None,
+        tension_cn=status.tension * scale / 10_000.0 if status and scale else None,
+        guide_mm=status.guide / steps_per_mm if status and steps_per_mm else None,
+        seconds_left=_seconds_left(state, stop, speed / spt),
+        virtual=bool(identity and identity.capabilities & 128),
+        asks=decision.asks,
+        readings_used=state.readings_used,
+        readings_gated=state.readings_gated,
+    )
+
+
+def _phase(state: State) -> str:
+    status = state.status
+    if state.finished is not None:
+        return "ended"
+    if status is None:
+        return "connecting"
+    if status.state == BoardState.TRIPPED:
+        return "tripped"
+    if status.state == BoardState.TURNING:
+        return "turning"
+    if status.speed > 0:
+        return "stopping"
+    if status.state == BoardState.DRIVES_OFF:
+        return "setting up"
+    if state.held is not None:
+        at_stop = state.stop_point is not None and state.count >= state.stop_point
+        return "settling" if at_stop else "held"
+    return "ready"
+
+
+def _says(state: State, decision: Decision) -> str:
+    if state.finished is not None:
+        return state.finished.reason
+    if decision.blocked is not None:
+        return decision.blocked
+    phase = _phase(state)
+    if phase == "turning" and state.stop_point is not None and state.started is not None:
+        stop = state.stop_point / state.counts_per_turn
+        slow = stop - state.started.pace.finish_counts / state.counts_per_turn
+        if state.turns < slow:
+            return f"slows at {slow:.0f}, stops near {stop:.0f}"
+        return f"slow to the stop at {stop:.0f}"
+    if phase == "held" and state.held is not None:
+        if state.hold is not None:
+            return f"held: {state.hold.reason}"
+        return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
+    if phase == "settling":
+        return "at rest: the reading settles"
+    if phase == "tripped" and state.status is not None:
+        return f"tripped: {Trip(state.status.trip).name.lower().replace('_', ' ')}"
+    if phase == "stopping":
+        return "stopping"
+    if decision.asks == "go":
+        return "waits for go"
+    return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[phase]
+
+
+def _seconds_left(state: State, stop: float | None, turns_per_s: float) -> float | None:
+    """Time to the stop point at the paces of the recipe; ramps left out."""
+    started = state.started
+    if started is None or stop is None or state.fit is not Fit.SAME or turns_per_s <= 0:
+        return None
+    pace, cpt, spt = started.pace, state.counts_per_turn, started.setup.steps_per_turn
+    left = max(0.0, stop - state.turns)
+    slow = min(left, pace.finish_counts / cpt)
+    cruise_tps = max(turns_per_s, pace.cruise_pace / spt) if left > slow else turns_per_s
+    return (left - slow) / cruise_tps + slow * spt / pace.finish_pace
