@@ -28,15 +28,18 @@ class Form(BaseModel):
     model_config = ConfigDict(frozen=True, extra="forbid", strict=True, allow_inf_nan=False)
 
     def faults(self, *, partial: bool = False) -> Iterator[Fault]:
-        """What does not go together. `partial`: some keys are unset because they are invalid themselves;
-        the checks that need one of those are left out."""
+        """What does not go together.
+
+        `partial`: some keys are unset because they are invalid themselves; checks that rest on them, or on
+        something that cannot be worked out without them, are left out.
+        """
         for name in dict.fromkeys(name for kind in type(self).__mro__ for name in vars(kind)):
             method = getattr(type(self), name, None)
             if not getattr(method, "is_form_check", False):
                 continue
             try:
                 yield from list(getattr(self, name)())
-            except AttributeError:
+            except (AttributeError, ValueError):
                 if not partial:
                     raise
 

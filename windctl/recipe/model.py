@@ -79,13 +79,12 @@ class Recipe(Form):
 
     @check
     def _margin_leaves_a_stroke(self) -> Iterator[Fault]:
-        overall = self.wire_data().overall_mm
-        if self.stroke_mm < overall:
+        half = self.bobbin.flange_gap_mm / 2
+        if self.lay.margin_mm >= half:
             yield Fault(
                 ("lay", "margin_mm"),
-                f"is {self.lay.margin_mm:g} mm at each flange, which leaves {self.stroke_mm:g} mm of the gap "
-                f"of {self.bobbin.flange_gap_mm:g} mm for the guide's stroke; at least the wire's overall "
-                f"diameter of {overall:.3g} mm is needed",
+                f"is {self.lay.margin_mm:g} mm at each flange, which leaves the guide no stroke in the gap of "
+                f"{self.bobbin.flange_gap_mm:g} mm; must be less than {half:g} mm",
             )
         if self.lay.margin_mm < -self.bobbin.flange_gap_mm:
             yield Fault(
@@ -94,21 +93,39 @@ class Recipe(Form):
                 f"{self.bobbin.flange_gap_mm:g} mm is high",
             )
 
+    def _pitch_as_given(self) -> tuple[float, tuple[str, str], str]:
+        """The pitch, the key that gives it, and how a message begins. ValueError while none or two do."""
+        if (self.lay.pitch_mm is None) == (self.lay.turns_per_pass is None):
+            raise ValueError("there is no one pitch")
+        if self.lay.pitch_mm is not None:
+            return self.lay.pitch_mm, ("lay", "pitch_mm"), f"is {self.lay.pitch_mm:g} mm"
+        said = f"is {self.lay.turns_per_pass:g} turns, a pitch of {self.pitch_mm:.3g} mm"
+        return self.pitch_mm, ("lay", "turns_per_pass"), said
+
+    @check
+    def _even_turns_lie_side_by_side(self) -> Iterator[Fault]:
+        if self.lay.style != "even":
+            return
+        pitch, key, said = self._pitch_as_given()
+        overall = self.wire_data().overall_mm
+        if 0 < pitch < overall:
+            yield Fault(key, f"{said}, less than the wire's overall diameter of {overall:.3g} mm")
+
     @check
     def _pitch_fits_the_stroke(self) -> Iterator[Fault]:
+        pitch, key, said = self._pitch_as_given()
+        if pitch > self.stroke_mm * (1 + 1e-9) > 0:
+            yield Fault(key, f"{said}, more than the guide's whole stroke of {self.stroke_mm:g} mm")
+
+    @check
+    def _stroke_is_wider_than_the_wire(self) -> Iterator[Fault]:
         overall = self.wire_data().overall_mm
-        if (self.lay.pitch_mm is None) == (self.lay.turns_per_pass is None) or self.stroke_mm < overall:
-            return
-        pitch = self.pitch_mm
-        if self.lay.pitch_mm is not None:
-            path, said = ("lay", "pitch_mm"), f"is {pitch:g} mm"
-        else:
-            path = ("lay", "turns_per_pass")
-            said = f"is {self.lay.turns_per_pass:g} turns, a pitch of {pitch:.3g} mm"
-        if self.lay.style == "even" and pitch < overall:
-            yield Fault(path, f"{said}, less than the wire's overall diameter of {overall:.3g} mm")
-        if pitch > self.stroke_mm * (1 + 1e-9):
-            yield Fault(path, f"{said}, more than the guide's whole stroke of {self.stroke_mm:g} mm")
+        if 0 < self.stroke_mm < overall:
+            yield Fault(
+                ("lay", "margin_mm"),
+                f"is {self.lay.margin_mm:g} mm at each flange, which leaves the guide a stroke of "
+                f"{self.stroke_mm:.3g} mm, less than the wire's overall diameter of {overall:.3g} mm",
+            )
 
     @check
     def _turn_rounds_fit_the_stroke(self) -> Iterator[Fault]:
