@@ -83,8 +83,8 @@ class Recipe(Form):
         if self.lay.margin_mm >= half:
             yield Fault(
                 ("lay", "margin_mm"),
-                f"is {self.lay.margin_mm:g} mm at each flange, which leaves the guide no stroke in the gap of "
-                f"{self.bobbin.flange_gap_mm:g} mm; must be less than {half:g} mm",
+                f"is {self.lay.margin_mm:g} mm at each flange, which leaves the guide no stroke in the gap "
+                f"of {self.bobbin.flange_gap_mm:g} mm; must be less than {half:g} mm",
             )
         if self.lay.margin_mm < -self.bobbin.flange_gap_mm:
             yield Fault(
