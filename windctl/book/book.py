@@ -1,0 +1,224 @@
+"""The coil book as the rest of the program sees it."""
+
+from __future__ import annotations
+
+import re
+import uuid
+from collections.abc import Iterator, Mapping
+from dataclasses import replace
+from pathlib import Path
+from types import TracebackType
+
+import sqlalchemy as sa
+
+from windctl.book.export import exported, shown
+from windctl.book.heads import CoilHead, coil_number, head_columns, opened
+from windctl.book.lease import Lease
+from windctl.book.queries import (
+    Which,
+    counted,
+    curve_in,
+    found,
+    head_of,
+    listed,
+    record_entries,
+    stored_rows,
+)
+from windctl.book.store import Store
+from windctl.book.tables import coils, entries, numbers
+from windctl.book.verify import VerifyReport, verify_book, verify_coils
+from windctl.book.writer import CoilWriter
+from windctl.errors import BookError, RecordBroken
+from windctl.record.canonical import decode, encode
+from windctl.record.chain import genesis, link
+from windctl.record.curve import CurvePoint
+from windctl.record.entries import Entry, unpack
+from windctl.record.events import CoilStarted, Event
+
+_BENCH = re.compile(r"[a-z0-9]{1,8}")
+
+
+class Book:
+    """One coil book. Coils are named by number, by the number's last digits, or by the beginning of the id.
+
+    May be used from several threads, and beside other processes that use the same file. Everything raises
+    BookError when the file cannot be read or written, or holds no such coil.
+    """
+
+    def __init__(self, store: Store) -> None:
+        self._store = store
+
+    @property
+    def path(self) -> Path:
+        """Where the book lies."""
+        return self._store.path
+
+    def close(self) -> None:
+        """Close the file."""
+        self._store.close()
+
+    def __enter__(self) -> Book:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        self.close()
+
+    def begin_coil(self, bench: str, year: int, started: CoilStarted) -> CoilWriter:
+        """Allot the next number of `bench` in `year` and record `started` under it as the coil's first fact.
+
+        `started.number` is replaced; the writer's `started` is the fact as recorded, and durable already.
+        Two processes never get the same number.
+        """
+        _check_new(bench, year, started)
+        with self._store.atomic() as connection:
+            serial = _next_serial(connection, bench, year)
+            started = replace(started, number=coil_number(bench, year, serial))
+            payload = encode(started)
+            tie = link(genesis(started.coil_id), started.kind, payload)
+            head = opened(started, bench, year, serial, tie)
+            if connection.scalar(sa.select(coils.c.number).where(coils.c.id == head.id)) is not None:
+                raise BookError(f"the coil book {self.path} already has a coil with the id {head.id}")
+            connection.execute(sa.insert(coils), [head_columns(head)])
+            first = {"coil": head.id, "seq": 0, "kind": started.kind, "events": 1}
+            connection.execute(sa.insert(entries), [{**first, "payload": payload, "link": tie}])
+        lease = Lease(self.path, started.coil_id, started.number)
+        lease.take()
+        return CoilWriter(self._store, lease, head, started)
+
+    def reopen(self, coil: str) -> CoilWriter:
+        """Go on with an open coil where its record ends.
+
+        Raises BookError when it is closed or another writer is alive, RecordBroken when its chain is damaged.
+        """
+        head = self.find(coil)
+        lease = Lease(self.path, head.id, head.number)
+        lease.take()
+        try:
+            head = self._again(head)  # as the last writer left it
+            _refuse_closed(head)
+            return CoilWriter(self._store, lease, head, self._checked_start(head))
+        except BaseException:
+            lease.release()
+            raise
+
+    def find(self, text: str) -> CoilHead:
+        """The one coil that `text` names."""
+        return found(self._store, text)
+
+    def list(
+        self,
+        *,
+        bench: str | None = None,
+        recipe: str | None = None,
+        batch: str | None = None,
+        outcome: str | None = None,
+        verdict: str | None = None,
+        limit: int | None = None,
+        offset: int = 0,
+    ) -> tuple[CoilHead, ...]:
+        """Coils, the one started last first; a page of them with `limit` and `offset`."""
+        which = Which(bench=bench, recipe=recipe, batch=batch, outcome=outcome, verdict=verdict)
+        return listed(self._store, which, limit, offset)
+
+    def count(
+        self,
+        *,
+        bench: str | None = None,
+        recipe: str | None = None,
+        batch: str | None = None,
+        outcome: str | None = None,
+        verdict: str | None = None,
+    ) -> int:
+        """How many coils `list` has in all its pages."""
+        which = Which(bench=bench, recipe=recipe, batch=batch, outcome=outcome, verdict=verdict)
+        return counted(self._store, which)
+
+    def open_coils(self, bench: str | None = None) -> tuple[CoilHead, ...]:
+        """Coils whose record is not closed, the one started last first."""
+        return listed(self._store, Which(bench=bench, sealed=False), None, 0)
+
+    def entries(self, coil: str) -> Iterator[Entry]:
+        """The rows that hold the coil's events, in order, as far as they are recorded when this is asked."""
+        return record_entries(self._store, self.find(coil))
+
+    def events(self, coil: str) -> Iterator[Event]:
+        """The coil's events, in order.
+
+        Raises RecordBroken on the way when a row cannot be read.
+        """
+        return unpack(self.entries(coil))
+
+    def curve(self, coil: str) -> tuple[CurvePoint, ...]:
+        """The coil's curve, at most 500 points; empty as long as the coil is open."""
+        head = self.find(coil)
+        with self._store.reading() as connection:
+            return tuple(point for _, point in curve_in(connection, head.id))
+
+    def show(self, coil: str) -> Mapping[str, object]:
+        """What is known of a coil as plain data: its row, its events, its curve."""
+        return shown(self._store, self.find(coil))
+
+    def export(self, coil: str) -> Mapping[str, object]:
+        """`show`, and every row of the record with its digests: enough to check and restore the coil."""
+        return exported(self._store, self.find(coil))
+
+    def verify(self, coil: str | None = None) -> VerifyReport:
+        """Check one coil, or all of them and the book as a whole, against the chains of digests."""
+        if coil is None:
+            return verify_book(self._store)
+        return verify_coils(self._store, [self.find(coil).id])
+
+    def _again(self, head: CoilHead) -> CoilHead:
+        with self._store.reading() as connection:
+            return head_of(connection.execute(sa.select(coils).where(coils.c.id == head.id)).one())
+
+    def _checked_start(self, head: CoilHead) -> CoilStarted:
+        """The coil's first fact, when all links from there to the end agree."""
+        last, n, started = genesis(head.id), 0, None
+        for row in stored_rows(self._store, head.id, head.n_entries):
+            last = link(last, row.entry.kind, row.entry.payload)
+            if row.seq != n or row.link != last:
+                break
+            if n == 0:
+                started = decode(row.entry.kind, row.entry.payload)
+            n += 1
+        if n != head.n_entries or last.hex() != head.record_digest or not isinstance(started, CoilStarted):
+            raise RecordBroken(
+                f"the record of coil {head.number} is damaged at row {n}: it cannot be continued; "
+                "'windctl coils verify' says more"
+            )
+        return started
+
+
+def _refuse_closed(head: CoilHead) -> None:
+    if head.sealed:
+        raise BookError(f"coil {head.number} is closed ({head.outcome}): nothing can be added to its record")
+
+
+def _next_serial(connection: sa.Connection, bench: str, year: int) -> int:
+    """The next number of a bench's year; the transaction's lock keeps others from getting the same."""
+    here = (numbers.c.bench == bench, numbers.c.year == year)
+    last = connection.scalar(sa.select(numbers.c.last).where(*here).with_for_update())
+    if last is None:
+        connection.execute(sa.insert(numbers), [{"bench": bench, "year": year, "last": 1}])
+        return 1
+    serial = int(last) + 1
+    connection.execute(sa.update(numbers).where(*here).values(last=serial))
+    return serial
+
+
+def _check_new(bench: str, year: int, started: CoilStarted) -> None:
+    if not _BENCH.fullmatch(bench):
+        raise BookError(
+            f"the bench is {bench!r}, it must be 1 to 8 of a-z and 0-9: change it in the machine profile"
+        )
+    if not 2000 <= year <= 9999:
+        raise BookError(f"the year is {year}, outside 2000 to 9999: set the computer's clock")
+    try:
+        proper = str(uuid.UUID(started.coil_id)) == started.coil_id
+    except ValueError:
+        proper = False
+    if not proper:
+        raise BookError(f"the coil's id is {started.coil_id!r}, it must be a UUID in lower case")

@@ -1,0 +1,126 @@
+"""One coil as plain data: JSON for people's scripts, and lossless for other books.
+
+An export stands by itself: every digest in it can be computed anew with SHA-256 alone, and `restored` does.
+"""
+
+from __future__ import annotations
+
+import base64
+import json
+from collections.abc import Mapping, Sequence
+from dataclasses import asdict, dataclass, fields
+from typing import Any
+
+from windctl.book.check import check_record
+from windctl.book.heads import SEAL, CoilHead
+from windctl.book.queries import StoredRow, curve_in, stored_rows
+from windctl.book.store import Store
+from windctl.errors import RecordBroken
+from windctl.record.canonical import encode
+from windctl.record.chain import genesis
+from windctl.record.curve import CurvePoint
+from windctl.record.entries import Entry, unpack
+from windctl.record.events import Event
+
+FORMAT = 1
+
+# The row's columns that the export names otherwise.
+_RENAMED = ("number", "target_kind", "target_value")
+
+
+@dataclass(frozen=True, slots=True)
+class Restored:
+    """What an export holds: the coil's row, every row of its record, its curve."""
+
+    head: CoilHead
+    rows: tuple[StoredRow, ...]
+    curve: tuple[CurvePoint, ...]
+
+
+def summary_of(head: CoilHead) -> dict[str, object]:
+    """A coil's row as plain data."""
+    plain = {field.name: getattr(head, field.name) for field in fields(head) if field.name not in _RENAMED}
+    target = {"kind": head.target_kind, "value": head.target_value}
+    return {"format": FORMAT, "coil": head.number, **plain, "target": target, "sealed": head.sealed}
+
+
+def event_data(event: Event) -> dict[str, object]:
+    """One event as plain data: its kind and its fields."""
+    return {"kind": event.kind, **json.loads(encode(event))}
+
+
+def shown(store: Store, head: CoilHead) -> dict[str, object]:
+    """A coil's row, events and curve as plain data.
+
+    Raises RecordBroken when a row of the record cannot be read.
+    """
+    rows = tuple(stored_rows(store, head.id, head.n_entries))
+    return _shown(head, rows, _curve(store, head))
+
+
+def exported(store: Store, head: CoilHead) -> dict[str, object]:
+    """`shown`, and the rows of the record as they are stored.
+
+    Each: `seq`, `kind`, `events` (how many it holds), `payload` (base64), `link` (hex): SHA-256 over the link
+    before, the length of the kind (u16, big endian), the kind, the payload.
+
+    Raises RecordBroken when a row of the record cannot be read.
+    """
+    rows = tuple(stored_rows(store, head.id, head.n_entries))
+    plain = [
+        {
+            "seq": row.seq,
+            "kind": row.entry.kind,
+            "events": row.entry.events,
+            "payload": base64.b64encode(row.entry.payload).decode(),
+            "link": row.link.hex(),
+        }
+        for row in rows
+    ]
+    shape = _shown(head, rows, _curve(store, head))
+    return {**shape, "genesis": genesis(head.id).hex(), "entries": plain}
+
+
+def restored(data: Mapping[str, Any]) -> Restored:
+    """What was exported, when every digest in it agrees.
+
+    Raises RecordBroken where one does not, or something is missing.
+    """
+    try:
+        if data["format"] != FORMAT:
+            raise RecordBroken(
+                f"this export has format {data['format']!r}; this windctl reads format {FORMAT}"
+            )
+        target = data["target"]
+        named = {"number": data["coil"], "target_kind": target["kind"], "target_value": target["value"]}
+        plain = {field.name: data[field.name] for field in fields(CoilHead) if field.name not in _RENAMED}
+        head = CoilHead(**named, **plain)
+        rows = tuple(
+            StoredRow(
+                row["seq"],
+                Entry(row["kind"], base64.b64decode(row["payload"], validate=True), row["events"]),
+                bytes.fromhex(row["link"]),
+            )
+            for row in data["entries"]
+        )
+        curve = tuple(CurvePoint(**point) for point in data["curve"])
+    except (KeyError, TypeError, ValueError) as error:
+        raise RecordBroken(f"this export is not whole: {type(error).__name__} {error}") from error
+    faults = check_record(head, rows, list(enumerate(curve)))
+    if faults:
+        raise RecordBroken(f"the export of coil {head.number} was altered: {faults[0].what}")
+    return Restored(head, rows, curve)
+
+
+def _curve(store: Store, head: CoilHead) -> list[CurvePoint]:
+    with store.reading() as connection:
+        return [point for _, point in curve_in(connection, head.id)]
+
+
+def _shown(head: CoilHead, rows: Sequence[StoredRow], curve: Sequence[CurvePoint]) -> dict[str, object]:
+    events = unpack(row.entry for row in rows if row.entry.kind != SEAL)
+    return {
+        **summary_of(head),
+        "events": [event_data(event) for event in events],
+        "curve": [asdict(point) for point in curve],
+    }

@@ -1,0 +1,164 @@
+"""Lists and look-ups, done in SQL: a shop's book holds thousands of coils, a screen shows forty."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import sqlalchemy as sa
+
+from windctl.book.heads import SEAL, CoilHead
+from windctl.book.store import Store
+from windctl.book.tables import coils, curve, entries
+from windctl.errors import BookError, RecordBroken
+from windctl.record.curve import CurvePoint
+from windctl.record.entries import Entry
+
+PAGE = 256  # rows of a record read at once; a reader holds up writers only that long
+_NAMED = 6  # how many candidates an ambiguous name lists
+
+_ID_PREFIX = re.compile(r"[0-9a-f][0-9a-f-]{3,35}")
+
+
+@dataclass(frozen=True, slots=True)
+class Which:
+    """Which coils to list. `None` is "any"; texts must match whole."""
+
+    bench: str | None = None
+    recipe: str | None = None
+    batch: str | None = None
+    outcome: str | None = None
+    verdict: str | None = None
+    sealed: bool | None = None
+
+    def condition(self) -> sa.ColumnElement[bool]:
+        """The same in SQL."""
+        parts: list[sa.ColumnElement[bool]] = [
+            coils.c[name] == value
+            for name in ("bench", "recipe", "batch", "outcome", "verdict")
+            if (value := getattr(self, name)) is not None
+        ]
+        if self.sealed is not None:
+            parts.append(coils.c.trace_digest.is_not(None) if self.sealed else coils.c.trace_digest.is_(None))
+        return sa.and_(sa.true(), *parts)
+
+
+@dataclass(frozen=True, slots=True)
+class StoredRow:
+    """One row of a record as the file has it, with the link that ties it to the rows before."""
+
+    seq: int
+    entry: Entry
+    link: bytes
+
+
+def head_of(row: sa.Row[Any]) -> CoilHead:
+    """A coil's row."""
+    return CoilHead(**row._mapping)
+
+
+def listed(store: Store, which: Which, limit: int | None, offset: int) -> tuple[CoilHead, ...]:
+    """Coils, the one started last first."""
+    query = (
+        sa.select(coils)
+        .where(which.condition())
+        .order_by(coils.c.started.desc(), coils.c.number.desc())
+        .limit(limit)
+        .offset(offset or None)
+    )
+    with store.reading() as connection:
+        return tuple(head_of(row) for row in connection.execute(query))
+
+
+def counted(store: Store, which: Which) -> int:
+    """How many coils there are of these."""
+    with store.reading() as connection:
+        n = connection.scalar(sa.select(sa.func.count()).select_from(coils).where(which.condition()))
+        return int(n or 0)
+
+
+def found(store: Store, text: str) -> CoilHead:
+    """The one coil of this number, of this serial number (the last digits), or whose id starts like this.
+
+    Raises BookError when there is none, or more than one.
+    """
+    name = text.strip().lower()
+    ways: list[sa.ColumnElement[bool]] = [coils.c.number == name]
+    if re.fullmatch(r"[0-9]{1,6}", name):
+        ways.append(coils.c.serial == int(name))
+    if _ID_PREFIX.fullmatch(name):
+        ways.append(coils.c.id.startswith(name, autoescape=True))
+    for way in ways:
+        query = sa.select(coils).where(way).order_by(coils.c.started.desc(), coils.c.number.desc())
+        with store.reading() as connection:
+            heads = [head_of(row) for row in connection.execute(query.limit(_NAMED))]
+        if len(heads) == 1:
+            return heads[0]
+        if heads:
+            names = ", ".join(head.number for head in heads[: _NAMED - 1])
+            more = ", ..." if len(heads) == _NAMED else ""
+            raise BookError(f"{text!r} may mean several coils ({names}{more}): give the whole number")
+    raise BookError(
+        f"no coil {text!r} in the coil book {store.path}: give its number, the number's last digits, or "
+        "at least the first four characters of its id; 'windctl coils list' shows them"
+    )
+
+
+def stored_rows(store: Store, coil_id: str, stop: int) -> Iterator[StoredRow]:
+    """The rows of a coil's record below `stop`, in order; read in pages, each in a transaction of its own.
+
+    Raises RecordBroken for a row whose values are not of the kind that was stored.
+    """
+    after = -1
+    while True:
+        query = (
+            sa.select(entries)
+            .where(entries.c.coil == coil_id, entries.c.seq > after, entries.c.seq < stop)
+            .order_by(entries.c.seq)
+            .limit(PAGE)
+        )
+        with store.reading() as connection:
+            page = [_stored(store.path, row) for row in _fetched(store.path, connection, query)]
+        yield from page
+        if len(page) < PAGE:
+            return
+        after = page[-1].seq
+
+
+def record_entries(store: Store, head: CoilHead) -> Iterator[Entry]:
+    """The entries that hold a coil's events, in order; the seal is none of them."""
+    for row in stored_rows(store, head.id, head.n_entries):
+        if row.entry.kind != SEAL:
+            yield row.entry
+
+
+def curve_in(connection: sa.Connection, coil_id: str) -> list[tuple[int, CurvePoint]]:
+    """The points of a coil's curve with their places in it, in order."""
+    query = sa.select(curve).where(curve.c.coil == coil_id).order_by(curve.c.seq)
+    return [
+        (row.seq, CurvePoint(row.turn, row.ohm_20c, row.final_ohm, row.final_sd))
+        for row in connection.execute(query)
+    ]
+
+
+def _fetched(path: Path, connection: sa.Connection, query: sa.Select[Any]) -> list[sa.Row[Any]]:
+    try:
+        return list(connection.execute(query))
+    except TypeError as error:  # bytes were stored, something else came back
+        raise RecordBroken(
+            f"the coil book {path} has a value of the wrong kind in a record: {error}"
+        ) from error
+
+
+def _stored(path: Path, row: sa.Row[Any]) -> StoredRow:
+    kinds = (int, str, int, bytes, bytes)
+    values = (row.seq, row.kind, row.events, row.payload, row.link)
+    for value, kind in zip(values, kinds, strict=True):
+        if not isinstance(value, kind):
+            raise RecordBroken(
+                f"the coil book {path} has a value of the wrong kind in row {row.seq} of a record: {value!r}"
+            )
+    return StoredRow(row.seq, Entry(row.kind, row.payload, row.events), row.link)

@@ -1,0 +1,172 @@
+"""Does every stored byte still agree? One coil, or the whole book.
+
+Safe beside a live writer: of each coil one state is taken, rows that come later are left for the next time.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
+from typing import Any
+
+import sqlalchemy as sa
+
+from windctl.book.check import Fault, check_record
+from windctl.book.heads import CoilHead, coil_number
+from windctl.book.ledger import names
+from windctl.book.queries import curve_in, head_of, stored_rows
+from windctl.book.store import Store
+from windctl.book.tables import coils, curve, entries, ledger, numbers
+from windctl.errors import BookError, RecordBroken
+from windctl.record.curve import CurvePoint
+
+BOOK = "book"  # stands for a coil where a fault is of none
+
+_MOST_DAMAGE = 5  # messages of SQLite's own check
+
+
+@dataclass(frozen=True, slots=True)
+class BrokenCoil:
+    """One thing found wrong.
+
+    `coil`: its number, or "book". `event_seq`: the row of the coil's record, counted from 0; `None` where the
+    fault is in none of them.
+    """
+
+    coil: str
+    event_seq: int | None
+    what: str
+
+    def __str__(self) -> str:
+        place = self.coil if self.event_seq is None else f"{self.coil}, row {self.event_seq}"
+        return f"{place}: {self.what}"
+
+
+@dataclass(frozen=True, slots=True)
+class VerifyReport:
+    """How many coils were checked, and all that was found wrong."""
+
+    checked: int
+    broken: tuple[BrokenCoil, ...]
+
+    @property
+    def good(self) -> bool:
+        """True when nothing was found wrong."""
+        return not self.broken
+
+
+def verify_coils(store: Store, ids: Iterable[str]) -> VerifyReport:
+    """Check these coils.
+
+    Raises BookError when the book itself cannot be read.
+    """
+    checked = 0
+    broken: list[BrokenCoil] = []
+    for coil_id in ids:
+        checked += 1
+        broken += _coil(store, coil_id)
+    return VerifyReport(checked, tuple(broken))
+
+
+def verify_book(store: Store) -> VerifyReport:
+    """Check the file, the numbers allotted, and every coil.
+
+    Raises BookError when the book itself cannot be read.
+    """
+    broken = list(_damage(store))
+    with store.reading() as connection:
+        steps = [tuple(row) for row in connection.execute(sa.select(ledger).order_by(ledger.c.version))]
+        allotted = [tuple(row) for row in connection.execute(sa.select(numbers))]
+        here = sa.select(coils.c.bench, coils.c.year, coils.c.serial)
+        present = [tuple(row) for row in connection.execute(here)]
+        ids = list(connection.scalars(sa.select(coils.c.id).order_by(coils.c.started, coils.c.number)))
+        broken += _orphans(connection)
+    if steps != names():
+        broken.append(BrokenCoil(BOOK, None, f"the ledger of schemas was altered: it says {steps!r}"))
+    broken += _gaps(allotted, present)
+    report = verify_coils(store, ids)
+    return VerifyReport(report.checked, (*broken, *report.broken))
+
+
+def _coil(store: Store, coil_id: str) -> Iterator[BrokenCoil]:
+    name = coil_id
+    try:
+        head, points, n_rows = _snapshot(store, coil_id)
+        name = head.number
+        stop = head.n_entries if isinstance(head.n_entries, int) else n_rows
+        faults = check_record(head, stored_rows(store, coil_id, stop), points)
+        if n_rows > stop:
+            faults.append(Fault(stop, f"the record has {n_rows} rows, the coil's row says {stop}"))
+    except (BookError, RecordBroken) as error:
+        faults = [Fault(None, f"cannot be read: {error}")]
+    for fault in faults:
+        yield BrokenCoil(_printable(name), fault.seq, fault.what)
+
+
+def _snapshot(store: Store, coil_id: str) -> tuple[CoilHead, list[tuple[int, CurvePoint]], int]:
+    """A coil's row, its curve and how many rows its record has, all of one moment."""
+    with store.reading() as connection:
+        head = head_of(connection.execute(sa.select(coils).where(coils.c.id == coil_id)).one())
+        rows = sa.select(sa.func.count()).select_from(entries).where(entries.c.coil == coil_id)
+        return head, curve_in(connection, coil_id), int(connection.scalar(rows) or 0)
+
+
+def _damage(store: Store) -> Iterator[BrokenCoil]:
+    """What SQLite itself finds wrong with the file's structure."""
+    try:
+        with store.bare() as connection:
+            said = [str(row[0]) for row in connection.execute(f"PRAGMA integrity_check({_MOST_DAMAGE})")]
+    except BookError as error:
+        said = [str(error)]
+    for text in said:
+        if text != "ok":
+            yield BrokenCoil(BOOK, None, f"the file is damaged: {text}")
+
+
+def _orphans(connection: sa.Connection) -> Iterator[BrokenCoil]:
+    """Rows that belong to no coil."""
+    for table, what in ((entries, "rows of a record"), (curve, "points of a curve")):
+        known = sa.select(coils.c.id)
+        query = (
+            sa.select(table.c.coil, sa.func.count()).where(table.c.coil.not_in(known)).group_by(table.c.coil)
+        )
+        for coil, n in connection.execute(query):
+            yield BrokenCoil(_printable(coil), None, f"{n} {what} belong to no coil in the book")
+
+
+def _gaps(
+    allotted: Iterable[tuple[Any, Any, Any]], present: Iterable[tuple[Any, Any, Any]]
+) -> Iterator[BrokenCoil]:
+    """Numbers that were given to a coil which is not here. Both are (bench, year, serial number)."""
+    last = {(bench, year): serial for bench, year, serial in allotted}
+    serials: dict[tuple[str, int], list[int]] = {key: [] for key in last}
+    for bench, year, serial in present:
+        if isinstance(serial, int):  # else the coil's own check says so
+            serials.setdefault((bench, year), []).append(serial)
+    for (bench, year), here in serials.items():
+        here.sort()
+        highest = here[-1] if here else 0
+        count = last.get((bench, year))
+        if count is None or not isinstance(count, int) or count < highest:
+            what = (
+                f"bench {bench!r}, {year}: {highest} numbers are in use, the count of numbers says {count!r}"
+            )
+            yield BrokenCoil(BOOK, None, what)
+            count = highest
+        before = 0
+        for serial in [*here, count + 1]:
+            if serial - before > 1:
+                yield _missing(bench, year, before + 1, serial - 1)
+            before = serial
+
+
+def _missing(bench: str, year: int, first: int, last: int) -> BrokenCoil:
+    what = "missing: the number was allotted, but its coil is not in the book"
+    if last > first:
+        upto = coil_number(bench, year, last)
+        what = f"missing: this and all up to {upto} were allotted, but their coils are not in the book"
+    return BrokenCoil(_printable(coil_number(bench, year, first)), None, what)
+
+
+def _printable(text: object) -> str:
+    return str(text).encode("utf-8", "backslashreplace").decode()
