@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import logging
+import threading
+from collections.abc import Iterator
+from contextlib import contextmanager
 from logging.handlers import RotatingFileHandler
 from pathlib import Path
 
@@ -40,3 +43,20 @@ def log_fault(error: BaseException) -> Path | None:
     if path is not None:
         logging.getLogger("windctl").error("unforeseen", exc_info=error)
     return path
+
+
+@contextmanager
+def faults_of_threads() -> Iterator[list[Path]]:
+    """Unforeseen exceptions of other threads go to the log, not to the screen; the list says where."""
+    found: list[Path] = []
+
+    def kept(hook: threading.ExceptHookArgs) -> None:
+        path = log_fault(hook.exc_value) if hook.exc_value is not None else None
+        if path is not None:
+            found.append(path)
+
+    before, threading.excepthook = threading.excepthook, kept
+    try:
+        yield found
+    finally:
+        threading.excepthook = before

@@ -50,27 +50,22 @@ def plan(shared: Shared, recipe: Path, turns: int | None, dcr_ohm: float | None)
 
 def show_plan(made: Plan) -> None:
     """The plan as a table for people; ± is the half-width of the 95 % interval."""
+    resistance = present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)
+    highest = f"{made.peak_build_mm:.2f} mm at its highest (crown {made.crown:.3f})"
+    peak = f"{made.wire_speed_peak_m_s:.1f} m/s twice a turn"
+    segments = present.grouped(made.program.segments)
     present.result(made.recipe_name)
     present.pairs(
         [
             ("turns", present.turns(made.turns, _Z95 * made.turns_sd)),
-            ("resistance", f"{present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)} at 20 °C"),
+            ("resistance", f"{resistance} at 20 °C"),
             ("wire", f"{present.grouped(made.wire_length_m, 1)} m, {made.wire_mass_g:.1f} g"),
             ("mean turn", f"{made.mean_turn_mm:.1f} mm"),
-            (
-                "build",
-                f"{made.build_mm:.2f} mm, {made.peak_build_mm:.2f} mm at its highest (crown {made.crown:.3f})",
-            ),
+            ("build", f"{made.build_mm:.2f} mm, {highest}"),
             ("fits", made.fits),
             ("time", present.duration(made.duration_s)),
-            (
-                "wire speed",
-                f"{made.wire_speed_mean_m_s:.1f} m/s, {made.wire_speed_peak_m_s:.1f} m/s twice a turn",
-            ),
-            (
-                "program",
-                f"{present.grouped(made.program.segments)} segments, {present.short_digest(made.program.digest)}",
-            ),
+            ("wire speed", f"{made.wire_speed_mean_m_s:.1f} m/s, {peak}"),
+            ("program", f"{segments} segments, {present.short_digest(made.program.digest)}"),
         ]
     )
     for warning in made.warnings:

@@ -1,0 +1,42 @@
+"""Opening the coil book that a command means."""
+
+from __future__ import annotations
+
+import os
+from contextlib import AbstractContextManager, nullcontext
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from windctl.book.book import Book
+    from windctl.cli.options import Shared
+
+
+def book_if_any(shared: Shared) -> AbstractContextManager[Book | None]:
+    """The book, never changed by reading it; None where no coil has been wound yet and none was named.
+
+    Raises BookError for a book that was named and is not there.
+    """
+    from windctl.book.open import open_book
+    from windctl.book.places import BOOK_VARIABLE, book_path
+
+    path = book_path(shared.book, os.environ)
+    named = shared.book is not None or bool(os.environ.get(BOOK_VARIABLE))
+    if not named and not path.exists():
+        return nullcontext()
+    return open_book(path, create=False, readonly=True)
+
+
+def book_to_read(shared: Shared) -> Book:
+    """The book, never changed by reading it. Raises BookError where there is none."""
+    from windctl.book.open import open_book
+    from windctl.book.places import book_path
+
+    return open_book(book_path(shared.book, os.environ), create=False, readonly=True)
+
+
+def book_to_write(shared: Shared) -> Book:
+    """The book, made if it is not there yet."""
+    from windctl.book.open import open_book
+    from windctl.book.places import book_path
+
+    return open_book(book_path(shared.book, os.environ))

@@ -1,0 +1,185 @@
+"""`windctl coils`: what the coil book holds."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from windctl.cli import present
+from windctl.cli.books import book_if_any, book_to_read
+from windctl.cli.exit_codes import ExitCode
+from windctl.cli.options import Shared, takes
+from windctl.errors import BookError
+
+if TYPE_CHECKING:
+    from windctl.book.heads import CoilHead
+
+_DENSE = ("status_heard", "reading_taken")  # thousands of them: counted, not listed
+_UNTOLD = ("kind", "at_ms", "identity", "refused")
+
+
+@click.group()
+def coils() -> None:
+    """The coil book: every coil that was wound, and how."""
+
+
+@coils.command("list")
+@click.option("--recipe", metavar="NAME", help="Only coils of this recipe.")
+@click.option(
+    "--outcome",
+    type=click.Choice(["open", "finished", "stopped", "tripped"]),
+    help="Only coils that ended so; open: not ended yet.",
+)
+@click.option("--limit", type=click.IntRange(min=1), metavar="N", help="Only the last N.")
+@takes("book", "batch", "json")
+def list_(shared: Shared, recipe: str | None, outcome: str | None, limit: int | None) -> None:
+    """The coils in the book, the one started last first."""
+    with book_if_any(shared) as book:
+        heads = (
+            () if book is None else book.list(recipe=recipe, batch=shared.batch, outcome=outcome, limit=limit)
+        )
+    if shared.json:
+        present.result_json({"coils": [_row(head) for head in heads]})
+        return
+    if not heads:
+        present.message("no coils")
+        return
+    present.table(
+        ["coil", "recipe", "started", "outcome", "turns", "at 20 °C", "verdict"],
+        [
+            [
+                head.number,
+                head.recipe,
+                head.started[:16].replace("T", " "),
+                head.outcome,
+                "" if head.turns is None else present.grouped(head.turns),
+                _resistance(head),
+                head.verdict,
+            ]
+            for head in heads
+        ],
+        right="    rr",
+    )
+
+
+def _row(head: CoilHead) -> dict[str, object]:
+    return {
+        "coil": head.number,
+        "id": head.id,
+        "recipe": head.recipe,
+        "started": head.started,
+        "outcome": head.outcome,
+        "turns": head.turns,
+        "dcr_20c_ohm": head.dcr_20c_ohm,
+        "verdict": head.verdict,
+        "batch": head.batch,
+    }
+
+
+def _resistance(head: CoilHead) -> str:
+    if head.dcr_20c_ohm is None:
+        return ""
+    return present.ohm(head.dcr_20c_ohm, head.dcr_u95_ohm or 0.0)
+
+
+@coils.command()
+@click.argument("coil")
+@takes("book", "json")
+def show(shared: Shared, coil: str) -> None:
+    """Everything known of COIL: by its number, the number's last digits, or the beginning of its id."""
+    with book_to_read(shared) as book:
+        shown = book.show(coil)
+        head = book.find(coil)
+    if shared.json:
+        present.result_json(dict(shown))
+        return
+    target = (
+        present.turns(head.target_value)
+        if head.target_kind == "turns"
+        else f"{present.ohm(head.target_value)} at 20 °C"
+    )
+    rows = [
+        ("coil", head.number),
+        ("id", head.id),
+        ("recipe", head.recipe),
+        ("batch", head.batch),
+        ("started", head.started),
+        ("ended", head.ended or ""),
+        ("outcome", f"{head.outcome}: {head.reason}" if head.reason else head.outcome),
+        ("turns", "" if head.turns is None else present.turns(head.turns)),
+        ("resistance", _resistance(head) and f"{_resistance(head)} at 20 °C"),
+        ("target", target),
+        ("verdict", head.verdict),
+        ("program", head.program_digest),
+        ("record", head.record_digest),
+    ]
+    present.pairs([(name, value) for name, value in rows if value])
+    _show_events(shown["events"])
+
+
+def _show_events(events: Any) -> None:
+    """The rare facts in order, each with the time since its run began; of the dense ones, the number."""
+    present.result()
+    dense = dict.fromkeys(_DENSE, 0)
+    for event in events:
+        if event["kind"] in dense:
+            dense[event["kind"]] += 1
+        else:
+            present.result(f"{_since(event)}  {event['kind'].replace('_', ' ')}{_told(event)}")
+    present.result(f"{dense['status_heard']} board reports and {dense['reading_taken']} readings besides")
+
+
+def _since(event: Mapping[str, Any]) -> str:
+    return f"{event['at_ms'] / 1000:9.3f} s" if "at_ms" in event else " " * 11
+
+
+def _told(event: Mapping[str, Any]) -> str:
+    if event["kind"] == "coil_started":
+        return f": {event['recipe_name']} on {event['machine']}"
+    parts = [
+        f"{name.replace('_', ' ')} {value:g}"
+        if isinstance(value, float)
+        else f"{name.replace('_', ' ')} {value}"
+        for name, value in event.items()
+        if name not in _UNTOLD and value != ""
+    ]
+    return f": {', '.join(parts)}" if parts else ""
+
+
+@coils.command()
+@click.argument("coil", required=False)
+@takes("book", "json")
+def verify(shared: Shared, coil: str | None) -> ExitCode:
+    """Check the record of COIL, or of all coils, against its digests: any change to it shows."""
+    with book_if_any(shared) as book:
+        if book is not None:
+            report = book.verify(coil)
+            checked, broken = report.checked, list(report.broken)
+        elif coil is None:
+            checked, broken = 0, []
+        else:
+            raise BookError(f"no coil {coil!r}: no coil has been wound yet")
+    if shared.json:
+        present.result_json({"checked": checked, "broken": [_finding(one) for one in broken]})
+    else:
+        present.result(f"{checked} checked, {len(broken)} broken")
+        for one in broken:
+            present.result(str(one))
+    return ExitCode.RECORD_BROKEN if broken else ExitCode.DONE
+
+
+def _finding(one: Any) -> dict[str, object]:
+    from dataclasses import asdict
+
+    return asdict(one)
+
+
+@coils.command()
+@click.argument("coil")
+@takes("book", "json")
+def export(shared: Shared, coil: str) -> None:
+    """The whole record of COIL as JSON, with its digests: enough to check it, and to restore it elsewhere."""
+    with book_to_read(shared) as book:
+        present.result_json(dict(book.export(coil)))

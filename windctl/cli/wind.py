@@ -1,0 +1,215 @@
+"""`windctl wind` and `windctl resume`: one coil, from its recipe or from where it was left."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from windctl.cli import present, typed
+from windctl.cli.books import book_to_read, book_to_write
+from windctl.cli.exit_codes import ExitCode, code_for, code_for_coil
+from windctl.cli.machines import VIRTUAL, profile_of, simulated_here
+from windctl.cli.options import Shared, takes
+from windctl.cli.plan import show_plan
+from windctl.errors import RecordBroken, UsageError
+
+if TYPE_CHECKING:
+    from windctl.book.book import Book
+    from windctl.book.heads import CoilHead
+    from windctl.cli.bench import Bench
+    from windctl.plan.model import Plan
+    from windctl.profile.model import MachineProfile
+    from windctl.record.events import CoilStarted
+    from windctl.run.outcome import Outcome
+    from windctl.run.wind import Winding
+
+
+@click.command()
+@click.argument("recipe", type=click.Path(path_type=Path))
+@takes(
+    "machine",
+    "port",
+    "speed",
+    "plant_seed",
+    "readings",
+    "book",
+    "batch",
+    "of",
+    "dry_run",
+    "json",
+    "quiet",
+    "no_input",
+)
+def wind(shared: Shared, recipe: Path) -> ExitCode:
+    """Wind the coil of RECIPE, measure it, stop at its target, and keep the record.
+
+    On a real machine nothing turns before a typed go or a press of the pedal. Ctrl-C holds the spindle
+    and leaves the coil open, for `windctl resume`. It is no emergency stop: use the hardware stop.
+    """
+    from windctl.cli.bench import open_bench
+    from windctl.plan.make import make_plan
+    from windctl.recipe.load import load_recipe
+    from windctl.run.wind import Order, begin
+
+    wanted, profile = load_recipe(recipe), profile_of(shared)
+    simulated = simulated_here(shared, profile)
+    plan = make_plan(wanted, profile)
+    if shared.dry_run:
+        return _dry_run(shared, plan)
+    _before(shared, plan, profile)
+    with open_bench(shared, profile, simulated, wanted) as bench, book_to_write(shared) as book:
+        order = Order(
+            recipe=wanted,
+            recipe_text=recipe.read_text(encoding="utf-8"),
+            plan=plan,
+            profile=profile,
+            machine=bench.name,
+            batch=shared.batch or "",
+            of=shared.of or 0,
+        )
+        return _stand_by(shared, begin(order, book, bench.port, bench.here), bench)
+
+
+@click.command()
+@click.argument("coil", required=False)
+@takes("at_turn", "machine", "port", "speed", "plant_seed", "book", "dry_run", "json", "quiet", "no_input")
+def resume(shared: Shared, coil: str | None) -> ExitCode:
+    """Go on with COIL after an interruption; without COIL, with the one that this bench left open.
+
+    The board is asked where the coil stands. Where it no longer knows, count the turns and give --at-turn.
+    """
+    from windctl.cli.bench import open_bench
+    from windctl.recipe.load import parse_recipe
+    from windctl.record.events import CoilStarted
+    from windctl.run.wind import go_on
+
+    with book_to_read(shared) as book:
+        head = _open_coil(book, coil, None if shared.machine is None else profile_of(shared).bench)
+        started = next(iter(book.events(head.number)))
+    if not isinstance(started, CoilStarted):
+        raise RecordBroken(f"the record of coil {head.number} does not begin with its start")
+    profile = _recorded_profile(shared, started)
+    simulated = simulated_here(shared, profile)
+    if shared.dry_run:
+        where = "on the simulated machine" if simulated else f"on {profile.port.url}"
+        present.result(f"would go on with {head.number} ({head.recipe}) {where}; nothing was moved")
+        return ExitCode.DONE
+    recipe = parse_recipe(started.recipe_text, head.number)
+    with open_bench(shared, profile, simulated, recipe, started) as bench, book_to_write(shared) as book:
+        winding = go_on(head.number, book, bench.port, bench.here, shared.at_turn)
+        return _stand_by(shared, winding, bench)
+
+
+def _open_coil(book: Book, coil: str | None, bench: str | None) -> CoilHead:
+    """The coil to go on with: the one named, or the only one open."""
+    if coil is not None:
+        return book.find(coil)
+    heads = book.open_coils(bench)
+    if not heads:
+        raise UsageError("no coil is open: there is nothing to go on with")
+    if len(heads) > 1:
+        named = ", ".join(head.number for head in heads)
+        raise UsageError(f"several coils are open ({named}): say which one to go on with")
+    return heads[0]
+
+
+def _recorded_profile(shared: Shared, started: CoilStarted) -> MachineProfile:
+    """The machine as it was when the coil began; only the port may be another one now."""
+    from windctl.profile.model import MachineProfile
+
+    recorded = MachineProfile.model_validate_json(started.profile_json)
+    now = profile_of(shared) if shared.machine is not None else recorded
+    url = shared.port if shared.port not in (None, VIRTUAL) else now.port.url
+    return recorded.model_copy(update={"port": now.port.model_copy(update={"url": url})})
+
+
+def _dry_run(shared: Shared, plan: Plan) -> ExitCode:
+    """The plan, with nothing connected, moved or recorded."""
+    if shared.json:
+        present.result_json(plan.as_json())
+    else:
+        show_plan(plan)
+        present.result("nothing was moved or recorded")
+    return ExitCode.DONE
+
+
+def _before(shared: Shared, plan: Plan, profile: MachineProfile) -> None:
+    """What should be known before the first turn."""
+    for warning in plan.warnings:
+        present.message(f"caution: {warning}")
+    if plan.fits != "yes":
+        present.message(f"caution: whether this coil fits its bobbin: {plan.fits}")
+    if profile.spindle.drive == "none":
+        present.message("caution: this machine only counts; windctl cannot stop it")
+    if not shared.quiet:
+        goal = f"{present.turns(plan.turns)}, {present.ohm(plan.dcr_20c_ohm)} at 20 °C"
+        present.message(f"{plan.recipe_name}: {goal}, {present.duration(plan.duration_s)} of winding")
+
+
+def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
+    """Watch the run to its end, tell how it went, and with which code."""
+    from windctl.cli.log import faults_of_threads
+    from windctl.cli.progress import face_for
+    from windctl.cli.prompt import Prompt
+    from windctl.cli.watch import stand_by
+
+    if not shared.quiet:
+        present.message(f"coil {winding.number} on {bench.name}")
+    prompt = Prompt(sys.stdin.fileno()) if typed.may_ask(shared.no_input) else None
+    with faults_of_threads() as faults:
+        try:
+            stand_by(winding, face_for(sys.stderr, quiet=shared.quiet), prompt)
+        finally:
+            outcome = winding.close()
+    answer = outcome.as_json()
+    if bench.truth is not None:
+        truth = bench.truth()
+        answer["plant"] = {
+            "true_turns": truth.true_turns,
+            "true_dcr_20c_ohm": truth.true_dcr_20c_ohm,
+        }
+    if shared.json:
+        present.result_json(answer)
+    else:
+        _show(outcome, answer)
+    if faults:
+        present.message(f"The log has the details: {faults[0]}")
+    return _ending(outcome)
+
+
+def _show(outcome: Outcome, answer: dict[str, Any]) -> None:
+    """How it went, for people."""
+    summary = outcome.summary
+    rows = [("coil", outcome.number), ("outcome", f"{summary.outcome}: {answer['reason']}")]
+    if summary.turns is not None:
+        rows.append(("turns", present.turns(summary.turns)))
+    if summary.dcr_20c_ohm:
+        rows.append(("resistance", f"{present.ohm(summary.dcr_20c_ohm, summary.dcr_u95_ohm or 0)} at 20 °C"))
+    aim = present.turns if summary.target_kind == "turns" else present.ohm
+    rows.append(("target", f"{aim(summary.target_value)}: {summary.verdict}"))
+    rows.append(("record", present.short_digest(outcome.record_digest)))
+    if "plant" in answer:
+        truth = answer["plant"]
+        really = f"{present.turns(truth['true_turns'])}, {present.ohm(truth['true_dcr_20c_ohm'])} at 20 °C"
+        rows.append(("simulated", f"really {really}"))
+    present.pairs(rows)
+
+
+def _ending(outcome: Outcome) -> ExitCode:
+    """The exit code, and what to do next where the coil is not finished."""
+    go_on = f"windctl resume {outcome.number}"
+    match outcome.left:
+        case "finished":
+            return code_for_coil(outcome.summary.outcome, outcome.summary.verdict)
+        case "held":
+            present.message(f"The spindle stands, the coil stays open: {go_on}")
+            return ExitCode.INTERRUPTED
+        case "turn wanted":
+            raise UsageError(f"{outcome.why}. Count the turns and say: {go_on} --at-turn N")
+        case "unconfirmed":
+            present.message("THE STOP IS NOT CONFIRMED: use the hardware stop.")
+    present.message(f"{outcome.why}\nWhat was wound is in the record: {go_on}")
+    return code_for(outcome.error) if outcome.error is not None else ExitCode.FAILED
