@@ -28,3 +28,6 @@ class Prior:
     noise_rel: float  # relative, each reading
     floor_ohm: float  # resolution and contact, each reading
     contact_length_ohm: float  # wire between coil and contact, subtracted from each reading
+    # relative sd over the whole coil: what ohm per metre gathers by wandering, and by a steady slope
+    wire_walk_rel: float = 0.0015
+    wire_slope_rel: float = 0.0017

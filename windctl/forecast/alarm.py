@@ -1,0 +1,122 @@
+"""When the readings say that something is wrong with the coil, the wire, the count or the contact."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import exp, log, sqrt
+
+from windctl.forecast.belief import OHM, moved
+from windctl.forecast.estimator import Estimate
+
+_RUN = 5  # open circuits, or readings near zero, in a row: a bouncing contact rarely shows two
+_BEYOND = 3.6  # standard deviations of the prior; a right coil goes there once in 3 000
+_AREA_PER_GAUGE = 92.0 ** (2.0 / 39.0)  # ohm per metre from one gauge number to the next (ASTM B258's law)
+_GAUGE_ODDS = {
+    1: 0.01,
+    2: 0.003,
+    3: 0.001,
+}  # of fetching a spool that many numbers off, each way; our judgement
+_OTHER_ODDS, _OTHER_SD = (
+    0.01,
+    0.15,
+)  # anything else that scales the resistance: core, count, wire; our judgement
+_MANY_GATED = 10
+
+
+@dataclass(frozen=True, slots=True)
+class Alarm:
+    """What is wrong: `kind` is "open", "short", "jump", "wire" or "unsteady"; `odds` for "wire" only."""
+
+    kind: str
+    text: str
+    odds: float | None = None  # the named reason against everything being right
+
+
+def alarm(estimate: Estimate) -> str | None:
+    """The alarm's text, or None when the readings are what the prior allows."""
+    found = find_alarm(estimate)
+    return None if found is None else found.text
+
+
+def find_alarm(estimate: Estimate) -> Alarm | None:
+    """The gravest alarm that the readings so far give cause for."""
+    if estimate.open_run >= _RUN:
+        return Alarm(
+            "open",
+            f"the last {estimate.open_run} readings show an open circuit: the wire is broken or the contact "
+            "is off; hold, and look at the wire and the contact",
+        )
+    if estimate.zero_run >= _RUN:
+        return Alarm(
+            "short",
+            f"the last {estimate.zero_run} readings show next to nothing: a short across the coil, to the "
+            "core, or between the leads; hold, and measure by hand",
+        )
+    wire = _wire(estimate)
+    if wire is not None:
+        return wire
+    if estimate.jump is not None:
+        return _jump(estimate.jump.turn, estimate.jump.expected_ohm, estimate.jump.seen_ohm)
+    if estimate.gated >= _MANY_GATED and estimate.gated > estimate.used:
+        return Alarm(
+            "unsteady",
+            f"{estimate.gated} of {estimate.gated + estimate.used} readings disagree with the others: the "
+            "forecast rests on the rest; clean the contact or measure at rest",
+        )
+    return None
+
+
+def _jump(turn: float, expected: float, seen: float) -> Alarm:
+    if seen < expected:
+        why = "shorted turns, a short to the core, or turns that were counted but not wound"
+    else:
+        why = "a bad joint or contact, or turns that were wound but not counted"
+    return Alarm(
+        "jump",
+        f"at turn {turn:.0f} the readings went from {expected:.1f} to {seen:.1f} ohm and stayed there: {why}",
+    )
+
+
+def _wire(estimate: Estimate) -> Alarm | None:
+    """Resistance per turn against the prior: how far off, and what most likely explains it."""
+    if estimate.trust < 2:
+        return None
+    belief = estimate.belief
+    expected = moved(estimate.reference, belief.turn, estimate.walk)
+    grown = expected.mean[OHM] - estimate.reference.mean[OHM]
+    variance = expected.cov[OHM][OHM] - belief.cov[OHM][OHM]  # of the move from the one mean to the other
+    off = belief.mean[OHM] - expected.mean[OHM]
+    if grown <= 0.0 or variance <= 0.0 or abs(off) <= _BEYOND * sqrt(variance):
+        return None
+    ratio, sd = 1.0 + off / grown, sqrt(variance) / grown
+    steps, odds = likeliest(ratio, sd)
+    side = "above" if off > 0.0 else "below"
+    start = f"the resistance is {abs(100.0 * off / grown):.1f} % {side} what this coil can have"
+    against = f"odds {min(odds, 1e6):.0f} to 1 against the recipe's"
+    if steps == 0:
+        return Alarm(
+            "wire", f"{start}: another wire, another core or a wrong count ({against}); check the spool", odds
+        )
+    kind = "thinner" if steps > 0 else "thicker"
+    numbers = "one gauge number" if abs(steps) == 1 else f"{abs(steps)} gauge numbers"
+    return Alarm("wire", f"{start}: the wire is probably {numbers} {kind} ({against}); check the spool", odds)
+
+
+def likeliest(ratio: float, sd: float) -> tuple[int, float]:
+    """Which wire best explains `ratio` (resistance over the expected one, relative sd `sd` for any one
+    gauge).
+
+    Returns gauge numbers off (0: none of them, something else) and its odds against the recipe's wire.
+    """
+    right = _log_normal(ratio - 1.0, sd)
+    candidates = [(log(_OTHER_ODDS) + _log_normal(ratio - 1.0, sqrt(sd * sd + _OTHER_SD**2)), 0)]
+    for number, odds in _GAUGE_ODDS.items():
+        for steps in (number, -number):
+            centre = _AREA_PER_GAUGE**steps
+            candidates.append((log(odds) + _log_normal(ratio - centre, centre * sd), steps))
+    best, steps = max(candidates)
+    return steps, exp(min(best - right, 700.0))
+
+
+def _log_normal(x: float, sd: float) -> float:
+    return -0.5 * (x / sd) ** 2 - log(sd)

@@ -1,0 +1,182 @@
+"""The running estimate of one coil: a belief, and the doubt whether the readings behind it can be believed.
+
+A live contact bounces: some readings show an open circuit, nothing, or a value that is off by a few to
+forty per cent. So every reading passes a gate at `GATE` standard deviations of what is expected. A gate
+alone can starve: one bad reading let in while little is known shuts out every good one behind it. Therefore
+
+- a reading that is let in while the gate is much wider than the reading's own noise is not yet trusted: the
+  belief before it (`anchor`) is kept until later readings agree with it;
+- a reading that is kept out starts a rival belief, from the anchor or, with a trusted past, from the
+  present belief with its resistance opened up. Readings that agree with the rival feed it. When enough have
+  in a row, it takes over.
+
+Open circuits and readings near zero feed nothing; they are counted for the alarm. An estimate has a
+constant size.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field, replace
+from math import isfinite, sqrt
+
+from windctl.forecast.belief import Belief, Walk, first_belief, look, moved, told, walk_of
+from windctl.forecast.noise import Unrest, own_variance
+from windctl.forecast.reading import Reading
+from windctl.forecast.widen import opened
+from windctl.plan.prior import Prior
+
+GATE = 4.5  # standard deviations; a good reading falls outside once in 150 000
+_UNSURE = 3.0  # expected sd over own noise from which one reading alone is not trusted
+_TRUSTED = 2  # readings that agree, the first included
+_UNSEATS_TRUSTED = 4  # readings kept out in a row, agreeing among themselves, that unseat a trusted belief
+_OPEN_FACTOR = 5.0  # beyond this multiple of what is expected: an open circuit
+_ZERO_PART = 0.1  # below this part of what is expected: no coil between the probes
+_ZERO_FROM_OHM = 20.0  # a coil too short to tell from nothing
+
+
+@dataclass(frozen=True, slots=True)
+class Jump:
+    """A rival took over from a trusted belief: the readings left what was known and stayed there."""
+
+    turn: float
+    expected_ohm: float
+    seen_ohm: float
+
+
+@dataclass(frozen=True, slots=True)
+class Estimate:
+    """All that is kept of a coil's readings. Made by `begin`; every change makes another one."""
+
+    prior: Prior
+    walk: Walk
+    belief: Belief
+    reference: Belief  # what was expected without any reading, since the start or the last event
+    unrest: Unrest = field(default_factory=Unrest)
+    anchor: Belief | None = None  # before the reading that is not trusted yet
+    trust: int = 0  # readings in agreement since the anchor, or since nothing was known
+    rival: Belief | None = None
+    rival_trust: int = 0
+    used: int = 0
+    gated: int = 0
+    open_run: int = 0  # open circuits since the last other reading
+    zero_run: int = 0
+    jump: Jump | None = None
+
+    @property
+    def turn(self) -> float:
+        """The turn up to which readings have been taken in."""
+        return self.belief.turn
+
+
+def begin(prior: Prior) -> Estimate:
+    """The estimate before the first turn."""
+    belief = first_belief(prior)
+    return Estimate(prior, walk_of(prior), belief, belief)
+
+
+def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
+    """Take in one reading; False when it was gated out.
+
+    Readings are handed in as they come, or in `canonical_key` order; going back to an earlier turn is
+    allowed.
+    """
+    prior = estimate.prior
+    belief = moved(estimate.belief, reading.turn, estimate.walk)
+    seen = look(belief, reading.celsius, reading.warmth, prior.contact_length_ohm)
+    if not isfinite(reading.ohm) or reading.ohm > _OPEN_FACTOR * max(seen.ohm, _ZERO_FROM_OHM):
+        return replace(estimate, gated=estimate.gated + 1, open_run=estimate.open_run + 1, zero_run=0), False
+    if seen.ohm > _ZERO_FROM_OHM and reading.ohm < _ZERO_PART * seen.ohm:
+        return replace(estimate, gated=estimate.gated + 1, zero_run=estimate.zero_run + 1, open_run=0), False
+    noise = own_variance(prior, reading, seen.ohm) * estimate.unrest.factor(not reading.resting)
+    sd = sqrt(seen.variance + noise)
+    surprise = reading.ohm - seen.ohm
+    unrest = estimate.unrest.heard(surprise, sd)
+    if abs(surprise) <= GATE * sd:
+        unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * noise
+        trust = 1 if unsure else estimate.trust + 1
+        anchor = estimate.belief if unsure else estimate.anchor
+        taken = told(belief, seen, reading.ohm, noise)
+        return _with(
+            estimate, unrest, taken, anchor=anchor if trust < _TRUSTED else None, trust=trust, used=1
+        ), True
+    return _kept_out(estimate, unrest, reading, seen.ohm)
+
+
+def _kept_out(
+    estimate: Estimate, unrest: Unrest, reading: Reading, expected_ohm: float
+) -> tuple[Estimate, bool]:
+    """A reading outside the gate: it feeds the rival, which takes over once enough readings agree with it."""
+    rival, agreeing = None, 1
+    if estimate.rival is not None:
+        rival = _agreeing(estimate, estimate.rival, unrest, reading)
+        agreeing = estimate.rival_trust + 1
+    if rival is None:
+        agreeing = 1
+        if estimate.anchor is not None:
+            start = estimate.anchor
+        elif estimate.trust == 0:
+            start = estimate.belief
+        else:
+            start = opened(estimate.belief, estimate.prior)
+        rival = _forced(estimate, start, unrest, reading)
+    trusted = estimate.trust >= _TRUSTED
+    if agreeing < (_UNSEATS_TRUSTED if trusted else _TRUSTED):
+        return _with(
+            estimate,
+            unrest,
+            estimate.belief,
+            anchor=estimate.anchor,
+            trust=estimate.trust,
+            rival=rival,
+            rival_trust=agreeing,
+        ), False
+    jump = Jump(reading.turn, expected_ohm, reading.ohm) if trusted else estimate.jump
+    return replace(_with(estimate, unrest, rival, trust=agreeing, used=1), jump=jump), True
+
+
+def _agreeing(estimate: Estimate, rival: Belief, unrest: Unrest, reading: Reading) -> Belief | None:
+    """The rival after a reading inside its own gate, or None."""
+    belief = moved(rival, reading.turn, estimate.walk)
+    seen = look(belief, reading.celsius, reading.warmth, estimate.prior.contact_length_ohm)
+    noise = own_variance(estimate.prior, reading, seen.ohm) * unrest.factor(not reading.resting)
+    if abs(reading.ohm - seen.ohm) > GATE * sqrt(seen.variance + noise):
+        return None
+    return told(belief, seen, reading.ohm, noise)
+
+
+def _forced(estimate: Estimate, start: Belief, unrest: Unrest, reading: Reading) -> Belief:
+    """A belief that takes a reading at its word, however far off it is."""
+    belief = moved(start, reading.turn, estimate.walk)
+    seen = look(belief, reading.celsius, reading.warmth, estimate.prior.contact_length_ohm)
+    noise = own_variance(estimate.prior, reading, seen.ohm) * unrest.factor(not reading.resting)
+    return told(belief, seen, reading.ohm, noise)
+
+
+def _with(
+    estimate: Estimate,
+    unrest: Unrest,
+    belief: Belief,
+    *,
+    anchor: Belief | None = None,
+    trust: int,
+    rival: Belief | None = None,
+    rival_trust: int = 0,
+    used: int = 0,
+) -> Estimate:
+    """The next estimate; `dataclasses.replace` would cost as much as the update itself."""
+    return Estimate(
+        estimate.prior,
+        estimate.walk,
+        belief,
+        estimate.reference,
+        unrest,
+        anchor,
+        trust,
+        rival,
+        rival_trust,
+        estimate.used + used,
+        estimate.gated + 1 - used,
+        0,
+        0,
+        estimate.jump,
+    )
