@@ -1,7 +1,7 @@
 """A chain of digests: each link is the SHA-256 of the link before it and of what it ties on.
 
-Whoever knows the last link knows whether any byte of any fact before it was changed. The chain makes tampering
-evident; it does not make it impossible, and it says nothing about facts that were never written.
+Whoever knows the last link knows whether any byte of any fact before it was changed. The chain makes
+tampering evident; it does not make it impossible, and it says nothing about facts that were never written.
 """
 
 from __future__ import annotations

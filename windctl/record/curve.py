@@ -1,4 +1,4 @@
-"""Resistance over turns, thinned to what an eye or a query needs; every reading stays in the record itself."""
+"""Resistance over turns, thinned to what an eye or a query needs; the record itself keeps all."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ MOST_POINTS = 500
 
 @dataclass(frozen=True, slots=True)
 class CurvePoint:
-    """What was known after a reading at `turn`: resistance so far and forecast finish, ohm at 20 degrees C."""
+    """What was known after a reading at `turn`: resistance so far and forecast finish, ohm at 20 C."""
 
     turn: float
     ohm_20c: float

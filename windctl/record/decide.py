@@ -1,20 +1,19 @@
 """(events, wants) = decide(state): what follows from what is known of a coil.
 
-Facts alone decide; time enters only as the board's ticks in them. `events` are new facts to record and fold before
-anything acts on them; `wants` is what the board should be, as levels; `asks` is what only a person can give.
-`decide` is called again after its events were folded, until it has none left.
+Facts alone decide; time enters only as the board's ticks in them. `events` are new facts to record and fold
+before anything acts on them; `wants` is what the board should be, as levels; `asks` is what only a person can
+give. `decide` is called again after its events were folded, until it has none left.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 
-from windctl.forecast.finish import so_far
+from windctl.forecast.finish import finish_at, so_far
 from windctl.forecast.stop import missing_turns, stop_advice
 from windctl.forecast.verdict import verdict
 from windctl.lay.program import Program
 from windctl.plan.pace import pace_for
-from windctl.protocol.frames import crc16
 from windctl.protocol.messages import Capability, Cause, InputBit, Trip
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, Permission, Sampling, Segments, Wants
@@ -27,7 +26,7 @@ from windctl.record.events import (
     Tripped,
     WentOn,
 )
-from windctl.record.fold import Fit, State
+from windctl.record.fold import Fit, State, setup_crc
 from windctl.record.program import unpacked
 
 WINDOW_TICKS = 200  # of one reading: whole cycles of 50 and 60 Hz mains
@@ -39,9 +38,9 @@ MOST_TOP_UPS = 3
 
 @dataclass(frozen=True, slots=True)
 class Decision:
-    """`events` to fold first; then `wants` for the board, and `asks` ("go", "clear", "turn" or None) for a person.
+    """`events` to fold first; then `wants` for the board.
 
-    `blocked` says in words why the coil cannot go on by itself, where it cannot.
+    `asks` is "go", "clear", "turn" or None: what only a person can give. `blocked` says in words why the coil cannot go on by itself, where it cannot.
     """
 
     events: tuple[Event, ...]
@@ -102,23 +101,25 @@ def _stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
         count = round(target.value * cpt)
         if state.stop_point == count:
             return ()
-        finish = so_far(state.estimate, target.value)
+        finish = finish_at(state.estimate, target.value)
         return (StopPointChosen(at_ms, count, "the turns asked for", finish.ohm, finish.sd),)
-    if state.held is not None and state.top_ups > 0:
-        return ()  # the last turns are counted out, not forecast anew
-    if state.stop_point is not None and not state.turning:
-        return ()
+    if state.stop_point is not None and not (state.turning and state.fresh_reading and state.top_ups == 0):
+        return ()  # nothing new to learn; and the last missing turns are counted out, not forecast anew
+    chosen = None if state.stop_point is None else state.stop_point // cpt
     advice = stop_advice(
         state.estimate,
-        turn=state.turns,
-        target_ohm=target.value,
-        min_turns=target.min_turns,
-        max_turns=target.max_turns,
-        chosen=None if state.stop_point is None else state.stop_point / cpt,
+        state.turns,
+        target.value,
+        target.min_turns,
+        target.max_turns,
+        chosen,
+        settles=started.readings_mode == "live",
     )
-    if state.top_ups > 0 or advice is None:
+    if advice.turn == chosen:
         return ()
-    return (StopPointChosen(at_ms, advice.turn * cpt, advice.reason, advice.finish.ohm, advice.finish.sd),)
+    finish = finish_at(state.estimate, advice.turn)
+    words = "the least or most turns allowed" if advice.limited else "where the forecast nears the target"
+    return (StopPointChosen(at_ms, advice.turn * cpt, words, finish.ohm, finish.sd),)
 
 
 # ---------------------------------------------------------------- how it ends
@@ -129,7 +130,9 @@ def _ending(state: State, at_ms: int) -> tuple[Event, ...]:
     assert started is not None
     if state.tripped is not None and _standing(state):
         trip = Trip(state.tripped.trip)
-        return (_finished(state, at_ms, "tripped", f"the board tripped: {trip.name.lower().replace('_', ' ')}"),)
+        return (
+            _finished(state, at_ms, "tripped", f"the board tripped: {trip.name.lower().replace('_', ' ')}"),
+        )
     if state.end is not None and _standing(state):
         return (_finished(state, at_ms, "stopped", state.end.reason),)
     held = state.held
@@ -140,7 +143,11 @@ def _ending(state: State, at_ms: int) -> tuple[Event, ...]:
     if started.target.kind == "turns":
         return (_finished(state, at_ms, "finished", "the turns asked for are wound"),)
     if started.readings_mode != "live" or state.settled_readings == 0:
-        return (_finished(state, at_ms, "finished", "stopped where the forecast meets the target; no settled reading"),)
+        return (
+            _finished(
+                state, at_ms, "finished", "stopped where the forecast meets the target; no settled reading"
+            ),
+        )
     return _judge_resistance(state, at_ms)
 
 
@@ -163,11 +170,15 @@ def _judge_resistance(state: State, at_ms: int) -> tuple[Event, ...]:
     room = target.max_turns - round(state.turns)
     if more >= 1 and room >= 1 and state.top_ups < MOST_TOP_UPS:
         more = min(more, room)
-        finish = so_far(state.estimate, state.turns + more)
+        finish = finish_at(state.estimate, state.turns + more)
         words = f"{more} turns missing after the settled reading"
         return (StopPointChosen(at_ms, state.count + more * cpt, words, finish.ohm, finish.sd),)
     if more >= 1 and room < 1:
-        return (_finished(state, at_ms, "finished", f"the most turns allowed are wound; {more} turns are missing"),)
+        return (
+            _finished(
+                state, at_ms, "finished", f"the most turns allowed are wound; {more} turns are missing"
+            ),
+        )
     if more <= -1:
         words = f"unwind {-more} +- {max(1, round(1.96 * missing.sd))} turns to meet the target"
         return (_finished(state, at_ms, "finished", words),)
@@ -199,18 +210,27 @@ def _finished(state: State, at_ms: int, outcome: str, reason: str) -> CoilFinish
 def _consent(state: State, at_ms: int) -> tuple[Event, ...]:
     """The starts that follow from a consent already given: after powering the drives, or by the pedal."""
     status, permission = state.status, state.permission
-    if status is None or permission is None or status.state != BoardState.READY:
+    if status is None or permission is None:
         return ()
-    consent = state.consent
-    if consent is None or state.hold is not None:
+    if not _powered_by_consent(state):
         return ()
-    one_on = (consent.epoch + 1) & 0xFFFF
-    if consent.boot == permission.boot and permission.epoch == one_on and status.cause == Cause.ARM:
-        if _pedal_fitted(state) and not status.inputs & InputBit.PEDAL_DOWN:
-            return ()
-        by = "pedal" if _pedal_fitted(state) else "consent"
-        return (GoGiven(at_ms, permission.boot, permission.epoch, by),)
-    return ()
+    if _pedal_fitted(state) and not status.inputs & InputBit.PEDAL_DOWN:
+        return ()
+    by = "pedal" if _pedal_fitted(state) else "consent"
+    return (GoGiven(at_ms, permission.boot, permission.epoch, by),)
+
+
+def _powered_by_consent(state: State) -> bool:
+    """Exactly the powering that was consented to has happened since the consent, and nothing else."""
+    consent, status = state.consent, state.status
+    return (
+        consent is not None
+        and status is not None
+        and status.state == BoardState.READY
+        and status.cause == Cause.ARM
+        and status.boot == consent.boot
+        and status.epoch == (consent.epoch + 1) & 0xFFFF
+    )
 
 
 def _pedal_fitted(state: State) -> bool:
@@ -228,22 +248,28 @@ def _asks(state: State) -> str | None:
         return None
     if state.held is not None and state.stop_point is not None and state.count >= state.stop_point:
         return None  # settling
-    if _consent_good(state):
+    if _consented(state):
         return None
-    if state.fit is Fit.FRESH and status.state != BoardState.DRIVES_OFF and not state.consented_since_greeting:
+    if (
+        state.fit is Fit.FRESH
+        and status.state != BoardState.DRIVES_OFF
+        and not state.consented_since_greeting
+    ):
         return None  # still to be disarmed and set up
     return "go"
 
 
-def _consent_good(state: State) -> bool:
-    consent, permission = state.consent, state.permission
-    assert permission is not None
-    return (
-        consent is not None
-        and consent.boot == permission.boot
-        and (permission.epoch - consent.epoch) & 0xFFFF <= 1
-        and state.held is None
-    ) or (consent is not None and consent.boot == permission.boot and consent.epoch == permission.epoch)
+def _consented(state: State) -> bool:
+    """A consent is on its way to the board: to power the drives, to start, or it waits for the pedal."""
+    return _given(state) is not None or _powered_by_consent(state)
+
+
+def _given(state: State) -> Permission | None:
+    """The consent that counts for the board as it is now."""
+    consent = state.consent
+    if consent is None or state.permission != Permission(consent.boot, consent.epoch):
+        return None
+    return state.permission
 
 
 def _blocked(state: State) -> str | None:
@@ -261,7 +287,8 @@ def _why_lost(state: State) -> str:
         why = "the board has had another coil since"
     else:
         why = "what the board reports does not go on from the record"
-    return f"{why}; the record ends at turn {state.turns:.2f}, the board says {identity.count / state.counts_per_turn:.2f}"
+    says = identity.count / state.counts_per_turn
+    return f"{why}; the record ends at turn {state.turns:.2f}, the board says {says:.2f}"
 
 
 # ---------------------------------------------------------------- what the board should be
@@ -275,17 +302,14 @@ def _wants(state: State) -> Wants:
     if state.identity is None or permission is None:
         return Wants(beat=True)
     program = unpacked(started.program_packed)
-    consent = state.consent
-    given = Permission(consent.boot, consent.epoch) if consent is not None else None
+    given = _given(state)
     drives_off = status is not None and status.state == BoardState.DRIVES_OFF
     setting_up = state.fit in (Fit.FRESH, Fit.CORRECTED) and not state.consented_since_greeting
     to_go = given if state.stop_point is not None and state.stop_point > state.count else None
     return Wants(
         beat=True,
         setup=started.setup,
-        disarmed=setting_up
-        and not drives_off
-        and state.identity.setup_crc != crc16(started.setup.encode_body()),
+        disarmed=setting_up and not drives_off and state.identity.setup_crc != setup_crc(started),
         datum=_datum(state, program) if setting_up and drives_off else None,
         program=Segments(started.program_id, program),
         armed=given if drives_off else None,
@@ -307,7 +331,9 @@ def _datum(state: State, program: bytes) -> Datum | None:
     assert permission is not None
     if state.fit is Fit.FRESH:
         return Datum(count=0, guide=0, next=0, into=0, given_for=permission)
-    place = Program.from_packed(
-        program, counts_per_turn=state.counts_per_turn, steps_per_mm=1.0
-    ).place_of(state.count)
-    return Datum(count=state.count, guide=place.guide, next=place.index, into=place.into, given_for=permission)
+    place = Program.from_packed(program, counts_per_turn=state.counts_per_turn, steps_per_mm=1.0).place_of(
+        state.count
+    )
+    return Datum(
+        count=state.count, guide=place.guide, next=place.index, into=place.into, given_for=permission
+    )

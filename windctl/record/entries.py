@@ -2,8 +2,8 @@
 
 A chunk is a small JSON header line (what is in it, under which column names) and zlib-packed columns of
 zigzag varints: the first value, then differences. Nothing is rounded: unpacking gives the same events. Chunks
-end where the board's clock passes a multiple of 500 ticks and before every rare fact, so order is kept and the
-cut depends on facts alone, not on how fast the host happened to run.
+end where the board's clock passes a multiple of 500 ticks and before every rare fact, so order is kept and
+the cut depends on facts alone, not on how fast the host happened to run.
 """
 
 from __future__ import annotations
@@ -129,10 +129,9 @@ def _unpack(payload: bytes) -> Iterator[Event]:
                 for row in zip(*table["r"], strict=True)
             ]
         )
-        if at != len(columns):
-            raise ValueError("bytes left over")
+        assert at == len(columns), "bytes left over"
         events: list[Event] = [next(statuses) if letter == "s" else next(readings) for letter in order]
-    except (zlib.error, ValueError, KeyError, TypeError, IndexError, StopIteration) as error:
+    except (zlib.error, ValueError, KeyError, TypeError, IndexError, StopIteration, AssertionError) as error:
         raise RecordBroken(f"a stored chunk of readings cannot be read: {error}") from error
     yield from events
 

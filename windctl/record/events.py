@@ -111,8 +111,8 @@ class GoGiven:
     """Consent to one movement, void as soon as the board's boot or epoch differ.
 
     Given with the drives off it covers powering them and the one start that follows.
-    `by`: "operator", "pedal", "virtual" (a simulated machine needs nobody's consent), "consent" (the start that
-    follows from a consent given with the drives off).
+    `by`: "operator", "pedal", "virtual" (a simulated machine needs nobody's consent), "consent" (the start
+    that follows from a consent given with the drives off).
     """
 
     kind: ClassVar[str] = "go_given"
@@ -230,7 +230,8 @@ class CoilFinished:
     """The end of the coil: always an outcome and a reason.
 
     `outcome`: "finished", "stopped" (by the operator), "tripped". `dcr_20c_ohm`, `dcr_u95_ohm` are 0 where
-    nothing is known; u95 is the half-width of the 95 % interval. `verdict`: "within", "outside", "not judged".
+    nothing is known; u95 is the half-width of the 95 % interval. `verdict`: "within", "outside" or
+    "not judged".
     """
 
     kind: ClassVar[str] = "coil_finished"

@@ -1,18 +1,19 @@
 """state' = fold(state, event): what is known of a coil after each fact.
 
-The state is small and stays so, however long the coil: the latest words of the board, the estimate, the consents
-that still count, and a few counters. Nothing here decides anything; `windctl.record.decide` does.
+The state is small and stays so, however long the coil: the latest words of the board, the estimate, the
+consents that still count, and a few counters. Nothing here decides anything; `windctl.record.decide` does.
 """
 
 from __future__ import annotations
 
+from binascii import crc_hqx
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from enum import Enum
 
 from windctl.forecast.estimator import Estimate, begin, update
 from windctl.forecast.reading import Reading as CoilReading
-from windctl.protocol.frames import crc16
+from windctl.protocol.frames import CRC_START
 from windctl.protocol.messages import Identity, ReadingFlag, Refused, Status, Trust
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
@@ -81,6 +82,7 @@ class State:
     link_lost: LinkLost | None = None
     estimate: Estimate | None = None
     reading: CoilReading | None = None  # the last one, used or not
+    fresh_reading: bool = False  # the latest word of the board was a reading that taught something
     readings_used: int = 0
     readings_gated: int = 0
     settled_readings: int = 0  # used ones since the spindle came to rest
@@ -159,9 +161,8 @@ def fold(state: State, event: Event) -> State:
                 top_ups=state.top_ups + (1 if state.held is not None else 0),
             )
         case WentOn():
-            return replace(
-                state, fit=Fit.SAME, turning=True, held=None, corrected=None, settled_readings=0
-            )
+            moving = replace(state, fit=Fit.SAME, turning=True, held=None, corrected=None, settled_readings=0)
+            return moving if state.status is None else _status(moving, state.status)
         case Held():
             return replace(state, turning=False, held=event, settled_readings=0)
         case Tripped():
@@ -198,7 +199,7 @@ def _fit(state: State, identity: Identity) -> Fit:
         identity.boot == state.boot
         and identity.trust == Trust.COUNT | Trust.GUIDE
         and identity.coil_token == setup.coil_token
-        and identity.setup_crc == crc16(setup.encode_body())
+        and identity.setup_crc == setup_crc(state.started)
         and identity.program == state.started.program_id
         and (identity.epoch - state.epoch) & 0xFFFF < 0x8000
         and state.count <= identity.count <= state.started.total_counts
@@ -207,10 +208,15 @@ def _fit(state: State, identity: Identity) -> Fit:
     return Fit.SAME if same else Fit.LOST
 
 
+def setup_crc(started: CoilStarted) -> int:
+    """What the board reports as its setup once it has this coil's."""
+    return crc_hqx(started.setup.encode_body(), CRC_START)
+
+
 def _status(state: State, status: Status) -> State:
     tripped = state.tripped if status.state == BoardState.TRIPPED else None
     if state.fit is not Fit.SAME:  # the board may still stand where another coil left it
-        return replace(state, status=status, tripped=tripped)
+        return replace(state, status=status, tripped=tripped, fresh_reading=False)
     return replace(
         state,
         status=status,
@@ -219,6 +225,7 @@ def _status(state: State, status: Status) -> State:
         next=status.next,
         boot=status.boot,
         epoch=status.epoch,
+        fresh_reading=False,
     )
 
 
@@ -237,9 +244,7 @@ def _reading(state: State, event: ReadingTaken) -> State:
         resting=resting,
         seconds=raw.ticks / 1000.0,
     )
-    settled = (
-        resting and state.held is not None and raw.ticks - raw.window - state.held.ticks >= SETTLE_TICKS
-    )
+    settled = resting and state.held is not None and raw.ticks - raw.window - state.held.ticks >= SETTLE_TICKS
     if resting and not settled:
         return replace(state, reading=reading)
     estimate, used = update(state.estimate, reading)
@@ -247,6 +252,7 @@ def _reading(state: State, event: ReadingTaken) -> State:
         state,
         estimate=estimate,
         reading=reading,
+        fresh_reading=used,
         readings_used=state.readings_used + used,
         readings_gated=state.readings_gated + (not used),
         settled_readings=state.settled_readings + (1 if settled and used else 0),

@@ -105,7 +105,9 @@ class Journal:
         if self._failure is not None:
             raise self._failure
         if self._thread.is_alive():
-            raise BookError(f"the coil book did not take the last {self.waiting} facts within {timeout_s:.0f} s")
+            raise BookError(
+                f"the coil book did not take the last {self.waiting} facts within {timeout_s:.0f} s"
+            )
 
     def _work(self) -> None:
         try:
@@ -120,7 +122,7 @@ class Journal:
                     self._changed.notify_all()
         except WindctlError as error:
             self._fail(error)
-        except Exception as error:  # whatever it is: the record is not safe, so the machine must stop
+        except Exception as error:  # noqa: BLE001 - whatever it is, the record is not safe: the machine stops
             self._fail(BookError(f"the journal failed: {type(error).__name__}: {error}"))
         finally:
             self._log.close()

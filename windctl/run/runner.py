@@ -1,8 +1,8 @@
 """The runner: the one thread that owns the port and alone decides.
 
-Each round it reads what came, turns it into facts, folds them, decides, hands the facts to the journal, and lets
-the conversation write what follows. Consents reach the conversation only when they are durable; a hold goes out
-before it is recorded. The beat goes out only while the journal is healthy: if this process, its record or its
+Each round it reads what came, turns it into facts, folds them, decides, hands the facts to the journal, and
+lets the conversation write what follows. Consents reach the conversation only when they are durable; a hold
+goes out before it is recorded. The beat goes out only while the journal is healthy: if this process, its record or its
 line dies, the board stops by itself.
 """
 
@@ -91,8 +91,8 @@ Request = Go | Hold | End | Clear | Note
 class Ended:
     """How a run ended: the last state, and why it went no further where the coil is not finished.
 
-    `left`: "finished", "held" (asked to leave; the spindle was seen standing), "unconfirmed" (asked to leave; it
-    was not), "turn wanted" (the board does not know where the coil stands), "failed".
+    `left`: "finished", "held" (asked to leave; the spindle was seen standing), "unconfirmed" (asked to leave;
+    it was not), "turn wanted" (the board does not know where the coil stands), "failed".
     """
 
     state: State
@@ -170,10 +170,11 @@ class Runner:
     def _wind(self) -> Ended:
         self._started_at = self._port.now()
         self._record(self._first)
+        self._settle_decision()
         while True:
-            heard = self._listen()
-            self._record((*self._requested(), *heard))
-            self._settle_decision()
+            for event in (*self._listen(), *self._requested()):
+                self._record((event,))  # one by one: each fact may have a consequence before the next
+                self._settle_decision()
             ended = self._over()
             self._speak()
             if ended is not None:
@@ -244,7 +245,12 @@ class Runner:
     def _consent_of_virtual(self, decision: Decision) -> tuple[Event, ...]:
         """A simulated machine hurts nobody: it goes where a person would have agreed without a thought."""
         state, permission = self._state, self._state.permission
-        if state.identity is None or permission is None or self._leaving is not None or state.hold is not None:
+        if (
+            state.identity is None
+            or permission is None
+            or self._leaving is not None
+            or state.hold is not None
+        ):
             return ()
         if not state.identity.capabilities & Capability.VIRTUAL:
             return ()
@@ -284,7 +290,9 @@ class Runner:
             wants = replace(wants, armed=None, go=None, datum=None, clear_trip=None)
         if not self._port.simulated and journal.oldest_s() > TOO_OLD_S and self._state.hold is None:
             self._port.write(self._talk.advance(replace(wants, beat=False, hold=True), now))
-            self._record((HoldRequested(self._at_ms(), "windctl", f"the record is {TOO_OLD_S:.0f} s behind"),))
+            self._record(
+                (HoldRequested(self._at_ms(), "windctl", f"the record is {TOO_OLD_S:.0f} s behind"),)
+            )
             return
         data = self._talk.advance(wants, now)
         if data:
@@ -364,5 +372,3 @@ def _fact(message: Message, at_ms: int) -> Event | None:
             return CommandRefused(at_ms, message)
         case _:
             return None
-
-

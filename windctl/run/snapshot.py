@@ -18,7 +18,7 @@ from windctl.record.fold import Fit, State
 class Snapshot:
     """One coil at one moment. None is "not known". Resistances in ohm, intervals are 95 % half-widths."""
 
-    phase: str  # "connecting", "setting up", "ready", "turning", "stopping", "held", "settling", "tripped", "ended"
+    phase: str  # connecting, setting up, ready, turning, stopping, held, settling, tripped, ended
     says: str  # what is happening or happens next, in plain words
     turns: float
     turns_planned: float
@@ -117,7 +117,9 @@ def _says(state: State, decision: Decision) -> str:
         return "stopping"
     if decision.asks == "go":
         return "waits for go"
-    return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[phase]
+    return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[
+        phase
+    ]
 
 
 def _seconds_left(state: State, stop: float | None, turns_per_s: float) -> float | None:

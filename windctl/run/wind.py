@@ -1,7 +1,8 @@
 """One coil from plan to seal, and going on with one: puts book, journal, runner and port together.
 
-A `Winding` is a run in progress. Whoever starts one looks at it (`look`), answers what it asks for (`request`),
-waits for its end (`wait`) and closes it (`close`), which makes the last facts durable and seals a finished coil.
+A `Winding` is a run in progress. Whoever starts one looks at it (`look`), answers what it asks for
+(`request`), waits for its end (`wait`) and closes it (`close`), which makes the last facts durable and seals a
+finished coil.
 """
 
 from __future__ import annotations
@@ -116,7 +117,8 @@ class Winding:
     def close(self) -> Outcome:
         """Make the last facts durable, seal the coil if it is finished, and say how it went.
 
-        Raises BookError when the record could not be completed, RecordBroken when it does not tell what happened.
+        Raises BookError when the record could not be completed, RecordBroken when it does not tell what
+        happened.
         """
         ended = self._runner.wait(60.0)
         self._thread.join(60.0)
@@ -130,7 +132,9 @@ class Winding:
         seen = review(events)
         trace = trace_digest(events)
         if self._journal.failure is None and seen.state != ended.state:
-            raise RecordBroken(f"the record of coil {self.number} does not tell what happened: nothing is sealed")
+            raise RecordBroken(
+                f"the record of coil {self.number} does not tell what happened: nothing is sealed"
+            )
         summary = summarise(seen.state)
         if seen.state.finished is not None:
             head = self._writer.seal(summary, seen.curve, trace, self._here.wall_time())
@@ -173,18 +177,20 @@ def go_on(
     writer = book.reopen(coil)
     try:
         started = writer.started
-        most = started.total_counts / started.setup.counts_per_turn
-        if at_turn is not None and not 0.0 <= at_turn <= most:
-            raise UsageError(f"--at-turn is {at_turn:g} turns, outside this coil's 0 to {most:g} turns")
+        _check_turn(at_turn, started)
         state = replay(book.events(coil))
         profile = MachineProfile.model_validate_json(started.profile_json)
         resumed = Resumed(0, here.wall_time(), here.operator, __version__)
-        return Winding(
-            book, writer, port, state, here, profile.guide.steps_per_mm, (resumed,), at_turn
-        )
+        return Winding(book, writer, port, state, here, profile.guide.steps_per_mm, (resumed,), at_turn)
     except BaseException:
         writer.close()
         raise
+
+
+def _check_turn(at_turn: float | None, started: CoilStarted) -> None:
+    most = started.total_counts / started.setup.counts_per_turn
+    if at_turn is not None and not 0.0 <= at_turn <= most:
+        raise UsageError(f"--at-turn is {at_turn:g} turns, outside this coil's 0 to {most:g} turns")
 
 
 def _started(order: Order, here: Here) -> CoilStarted:
@@ -216,7 +222,9 @@ def _started(order: Order, here: Here) -> CoilStarted:
             value=float(plan.target_value),
             tolerance_pct=stop.tolerance_pct,
             min_turns=stop.min_turns or 1,
-            max_turns=int(plan.program.turns) if turns_target else (stop.max_turns or int(plan.program.turns)),
+            max_turns=int(plan.program.turns)
+            if turns_target
+            else (stop.max_turns or int(plan.program.turns)),
         ),
         planned_turns=float(plan.turns),
         spool=order.spool,
