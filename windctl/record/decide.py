@@ -40,7 +40,8 @@ MOST_TOP_UPS = 3
 class Decision:
     """`events` to fold first; then `wants` for the board.
 
-    `asks` is "go", "clear", "turn" or None: what only a person can give. `blocked` says in words why the coil cannot go on by itself, where it cannot.
+    `asks` is "go", "clear", "turn" or None: what only a person can give.
+    `blocked` says in words why the coil cannot go on by itself, where it cannot.
     """
 
     events: tuple[Event, ...]

@@ -129,10 +129,11 @@ def _unpack(payload: bytes) -> Iterator[Event]:
                 for row in zip(*table["r"], strict=True)
             ]
         )
-        assert at == len(columns), "bytes left over"
         events: list[Event] = [next(statuses) if letter == "s" else next(readings) for letter in order]
-    except (zlib.error, ValueError, KeyError, TypeError, IndexError, StopIteration, AssertionError) as error:
+    except (zlib.error, ValueError, KeyError, TypeError, IndexError, StopIteration) as error:
         raise RecordBroken(f"a stored chunk of readings cannot be read: {error}") from error
+    if at != len(columns):
+        raise RecordBroken("a stored chunk of readings holds more than its header says")
     yield from events
 
 

@@ -1,6 +1,6 @@
 """The digest of a coil's facts without wall-clock time, ids and names of people: equal for equal runs.
 
-Two runs of the same recipe, profile and simulated fate give the same trace, whenever and however fast they ran.
+Two runs of the same recipe, profile and simulated fate give the same trace, however fast they ran.
 """
 
 from __future__ import annotations

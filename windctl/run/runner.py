@@ -2,8 +2,8 @@
 
 Each round it reads what came, turns it into facts, folds them, decides, hands the facts to the journal, and
 lets the conversation write what follows. Consents reach the conversation only when they are durable; a hold
-goes out before it is recorded. The beat goes out only while the journal is healthy: if this process, its record or its
-line dies, the board stops by itself.
+goes out before it is recorded. The beat goes out only while the journal is healthy: if this process, its
+record or its line dies, the board stops by itself.
 """
 
 from __future__ import annotations

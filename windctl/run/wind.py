@@ -1,8 +1,8 @@
 """One coil from plan to seal, and going on with one: puts book, journal, runner and port together.
 
 A `Winding` is a run in progress. Whoever starts one looks at it (`look`), answers what it asks for
-(`request`), waits for its end (`wait`) and closes it (`close`), which makes the last facts durable and seals a
-finished coil.
+(`request`), waits for its end (`wait`) and closes it (`close`), which makes the last facts durable and seals
+a finished coil.
 """
 
 from __future__ import annotations
