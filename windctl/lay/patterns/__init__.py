@@ -1,0 +1,17 @@
+"""The patterns of a lay: one module each, and this table of them."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+
+from windctl.lay.patterns.even import even
+from windctl.lay.patterns.wander import wander
+from windctl.lay.spec import LaySpec
+from windctl.lay.travel import Travel
+
+Pattern = Callable[[LaySpec], Travel]
+
+PATTERNS: Mapping[str, Pattern] = {
+    "even": even,
+    "wander": wander,
+}
