@@ -13,12 +13,12 @@ MAX_BYTES = 256 * 1024
 _FOREIGN_MARKS = (codecs.BOM_UTF16_LE, codecs.BOM_UTF16_BE, codecs.BOM_UTF32_LE, codecs.BOM_UTF32_BE)
 
 
-def read_text(path: Path, error: type[FileInvalid]) -> str:
+def read_text(path: Path, error: type[FileInvalid], max_bytes: int = MAX_BYTES) -> str:
     """The file's text, which is UTF-8. Raises `error` with one problem when it cannot be had."""
     file = str(path)
     try:
         with path.open("rb") as stream:
-            content = stream.read(MAX_BYTES + 1)
+            content = stream.read(max_bytes + 1)
     except FileNotFoundError:
         reason = "there is no such file"
     except IsADirectoryError:
@@ -28,14 +28,14 @@ def read_text(path: Path, error: type[FileInvalid]) -> str:
     except (OSError, ValueError) as failure:  # ValueError: a zero character in the name
         reason = f"cannot be read: {getattr(failure, 'strerror', None) or failure}"
     else:
-        return text_of(content, file, error)
+        return text_of(content, file, error, max_bytes)
     raise error([Problem(file, 0, 0, reason)])
 
 
-def text_of(content: bytes, file: str, error: type[FileInvalid]) -> str:
+def text_of(content: bytes, file: str, error: type[FileInvalid], max_bytes: int = MAX_BYTES) -> str:
     """The bytes as text. Raises `error` when they are too many, or not UTF-8 text."""
-    if len(content) > MAX_BYTES:
-        raise error([Problem(file, 0, 0, f"is larger than {MAX_BYTES // 1024} KiB, which no such file is")])
+    if len(content) > max_bytes:
+        raise error([Problem(file, 0, 0, f"is larger than {max_bytes // 1024} KiB, which no such file is")])
     if content.startswith(_FOREIGN_MARKS):
         raise error([Problem(file, 1, 1, "is text in UTF-16 or UTF-32; save it as UTF-8")])
     if b"\0" in content:
