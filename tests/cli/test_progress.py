@@ -116,7 +116,7 @@ def test_an_unchanged_picture_writes_nothing() -> None:
 
 def test_plain_lines_come_every_few_seconds_and_at_every_change_of_phase() -> None:
     now = [0.0]
-    stream = io.StringIO()
+    stream = Terminal()
     face = progress.PlainLines(stream, clock=lambda: now[0])
     for second in range(11):
         now[0] = float(second)

@@ -9,7 +9,7 @@ from collections.abc import Sequence
 import click
 
 from windctl import __version__
-from windctl.cli import options
+from windctl.cli import options, present
 from windctl.cli.exit_codes import ExitCode, code_for
 from windctl.cli.lazy import LazyGroup
 from windctl.errors import WindctlError
@@ -61,10 +61,10 @@ def run(arguments: Sequence[str] | None = None) -> ExitCode:
         error.show()
         return code_for(error)
     except WindctlError as error:
-        click.echo(str(error), err=True)
+        present.message(str(error))
         return code_for(error)
     except (click.exceptions.Abort, KeyboardInterrupt) as error:
-        click.echo("interrupted; nothing was turning", err=True)
+        present.message("interrupted; nothing was turning")
         return code_for(error)
     except BrokenPipeError:
         # The reader of our output has gone. Whatever is still buffered must not raise again at exit.
@@ -78,8 +78,8 @@ def _fault(error: Exception) -> ExitCode:
     from windctl.cli.log import log_fault
 
     path = log_fault(error)
-    click.echo(f"windctl met a fault of its own: {type(error).__name__}: {error}", err=True)
-    click.echo(f"The log has the details: {path}" if path else "No log could be written.", err=True)
+    present.message(f"windctl met a fault of its own: {type(error).__name__}: {error}")
+    present.message(f"The log has the details: {path}" if path else "No log could be written.")
     return ExitCode.FAILED
 
 

@@ -33,10 +33,9 @@ class Form(BaseModel):
         `partial`: some keys are unset because they are invalid themselves; checks that rest on them, or on
         something that cannot be worked out without them, are left out.
         """
-        for name in dict.fromkeys(name for kind in type(self).__mro__ for name in vars(kind)):
-            method = getattr(type(self), name, None)
-            if not getattr(method, "is_form_check", False):
-                continue
+        members = (member for kind in type(self).__mro__ for member in vars(kind).items())
+        checks = dict.fromkeys(name for name, member in members if getattr(member, "is_form_check", False))
+        for name in checks:
             try:
                 yield from list(getattr(self, name)())
             except (AttributeError, ValueError):
