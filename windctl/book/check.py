@@ -1,8 +1,8 @@
 """Does one coil's record agree with itself? Pure: rows in, faults out.
 
 Four things are compared, each with the one it stands on: the links with the rows they tie, the coil's row
-with its first fact and its seal, the curve with the seal, and all of them with a fold of the events. A row
-that disagrees with its link is taken both ways for the next one, so that a single change, of the row or of the
+with its first fact and its seal, the curve with the seal, all of them with a fold of the events. A row that
+disagrees with its link is taken both ways for the next one, so that a single change, of the row or of the
 link, gives a single fault at its place.
 """
 
@@ -16,7 +16,7 @@ from dataclasses import dataclass, fields
 
 import windctl
 from windctl.book.heads import NOT_JUDGED, OPEN, SEAL, SEALED_COLUMNS, CoilHead, coil_number, curve_digest
-from windctl.book.queries import StoredRow
+from windctl.book.queries import StoredRow, wrong_kind
 from windctl.errors import RecordBroken
 from windctl.record.chain import genesis, link
 from windctl.record.curve import CurvePoint, review
@@ -92,6 +92,10 @@ class _Walk:
             self.faults.append(Fault(self._next, what))
             self._last = ()
         self._next = row.seq + 1
+        if (name := wrong_kind(row)) is not None:
+            self.faults.append(Fault(row.seq, f"row {row.seq} was altered: its {name} is of the wrong kind"))
+            self._last = ()
+            return
         ties = tuple(link(last, entry.kind, entry.payload) for last in self._last)
         if ties and row.link not in ties:
             what = f"row {row.seq} ({entry.kind!r}) was altered: it does not agree with its link"

@@ -5,7 +5,6 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator
 from dataclasses import dataclass
-from pathlib import Path
 from typing import Any
 
 import sqlalchemy as sa
@@ -107,10 +106,10 @@ def found(store: Store, text: str) -> CoilHead:
     )
 
 
-def stored_rows(store: Store, coil_id: str, stop: int) -> Iterator[StoredRow]:
+def raw_rows(store: Store, coil_id: str, stop: int) -> Iterator[StoredRow]:
     """The rows of a coil's record below `stop`, in order; read in pages, each in a transaction of its own.
 
-    Raises RecordBroken for a row whose values are not of the kind that was stored.
+    Nothing is checked: in a spoilt file any value may be of any kind.
     """
     after = -1
     while True:
@@ -121,11 +120,39 @@ def stored_rows(store: Store, coil_id: str, stop: int) -> Iterator[StoredRow]:
             .limit(PAGE)
         )
         with store.reading() as connection:
-            page = [_stored(store.path, row) for row in _fetched(store.path, connection, query)]
+            page = [
+                StoredRow(row.seq, Entry(row.kind, row.payload, row.events), row.link)
+                for row in connection.execute(query)
+            ]
         yield from page
         if len(page) < PAGE:
             return
         after = page[-1].seq
+
+
+def wrong_kind(row: StoredRow) -> str | None:
+    """The name of a value that is of another kind than what was stored, if there is one."""
+    entry = row.entry
+    kinds = {"kind": (entry.kind, str), "events": (entry.events, int)}
+    kinds |= {"payload": (entry.payload, bytes), "link": (row.link, bytes)}
+    for name, (value, kind) in kinds.items():
+        if not isinstance(value, kind):
+            return name
+    return None
+
+
+def stored_rows(store: Store, coil_id: str, stop: int) -> Iterator[StoredRow]:
+    """The same, for use.
+
+    Raises RecordBroken for a row with a value of another kind than what was stored.
+    """
+    for row in raw_rows(store, coil_id, stop):
+        if (name := wrong_kind(row)) is not None:
+            raise RecordBroken(
+                f"row {row.seq} of the record of coil {coil_id} in {store.path} was altered: "
+                f"its {name} is of the wrong kind; 'windctl coils verify' says more"
+            )
+        yield row
 
 
 def record_entries(store: Store, head: CoilHead) -> Iterator[Entry]:
@@ -142,23 +169,3 @@ def curve_in(connection: sa.Connection, coil_id: str) -> list[tuple[int, CurvePo
         (row.seq, CurvePoint(row.turn, row.ohm_20c, row.final_ohm, row.final_sd))
         for row in connection.execute(query)
     ]
-
-
-def _fetched(path: Path, connection: sa.Connection, query: sa.Select[Any]) -> list[sa.Row[Any]]:
-    try:
-        return list(connection.execute(query))
-    except TypeError as error:  # bytes were stored, something else came back
-        raise RecordBroken(
-            f"the coil book {path} has a value of the wrong kind in a record: {error}"
-        ) from error
-
-
-def _stored(path: Path, row: sa.Row[Any]) -> StoredRow:
-    kinds = (int, str, int, bytes, bytes)
-    values = (row.seq, row.kind, row.events, row.payload, row.link)
-    for value, kind in zip(values, kinds, strict=True):
-        if not isinstance(value, kind):
-            raise RecordBroken(
-                f"the coil book {path} has a value of the wrong kind in row {row.seq} of a record: {value!r}"
-            )
-    return StoredRow(row.seq, Entry(row.kind, row.payload, row.events), row.link)

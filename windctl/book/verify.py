@@ -14,7 +14,7 @@ import sqlalchemy as sa
 from windctl.book.check import Fault, check_record
 from windctl.book.heads import CoilHead, coil_number
 from windctl.book.ledger import names
-from windctl.book.queries import curve_in, head_of, stored_rows
+from windctl.book.queries import curve_in, head_of, raw_rows
 from windctl.book.store import Store
 from windctl.book.tables import coils, curve, entries, ledger, numbers
 from windctl.errors import BookError, RecordBroken
@@ -94,7 +94,7 @@ def _coil(store: Store, coil_id: str) -> Iterator[BrokenCoil]:
         head, points, n_rows = _snapshot(store, coil_id)
         name = head.number
         stop = head.n_entries if isinstance(head.n_entries, int) else n_rows
-        faults = check_record(head, stored_rows(store, coil_id, stop), points)
+        faults = check_record(head, raw_rows(store, coil_id, stop), points)
         if n_rows > stop:
             faults.append(Fault(stop, f"the record has {n_rows} rows, the coil's row says {stop}"))
     except (BookError, RecordBroken) as error:
