@@ -9,7 +9,8 @@
     ├── PlanRefused           the recipe cannot be wound on this machine                         exit 3
     ├── MachineError          no such machine, port busy, board refuses to serve                 exit 4
     ├── RunFailed             the run cannot go on                                               exit 1
-    │   └── LinkLost          the serial line is gone
+    │   ├── LinkLost          the serial line is gone
+    │   └── ProgramMismatch   the board holds another program than the coil's
     ├── BookError             the coil book cannot be read or written                            exit 1
     └── RecordBroken          a stored record does not verify                                    exit 7
 
@@ -79,6 +80,10 @@ class RunFailed(WindctlError):
 
 class LinkLost(RunFailed):
     """The line to the board is gone: unplugged, closed, or silent for too long."""
+
+
+class ProgramMismatch(RunFailed):
+    """What the board was given to wind is not what the record says."""
 
 
 class BookError(WindctlError):
