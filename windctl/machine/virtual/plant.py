@@ -1,12 +1,13 @@
 """The physical world behind a board, a millisecond at a time: spindle, guide, wire, and a coil that grows.
 
 `step` is the twin of the hardware under the firmware: it takes what the board asked for and makes what the
-board sees next. Whatever changes slowly is worked out once per turn or once per block of ticks; a quiet tick is
-a few sums and table look-ups, because a whole coil takes half a million of them.
+board sees next. Whatever changes slowly is worked out once per turn or once per block of ticks; a quiet tick
+is a few sums and table look-ups, because a whole coil takes half a million of them.
 """
 
 from __future__ import annotations
 
+import struct
 from dataclasses import dataclass
 
 from windctl.machine.virtual.coil_growing import Coil, Spool
@@ -17,7 +18,7 @@ from windctl.machine.virtual.guiding import Carriage, Hand
 from windctl.machine.virtual.plant_spec import PlantSpec
 from windctl.machine.virtual.sensing import Sensing
 from windctl.machine.virtual.signals import GUARD_OK, PEDAL_DOWN, STOP_OK, Inputs, Outputs
-from windctl.machine.virtual.spindle import Spindle
+from windctl.machine.virtual.motor import Spindle
 
 _NEVER = 1 << 62
 
@@ -148,6 +149,29 @@ class Plant:
         return PlantTruth(coil.turns + part, coil.ohm + coil.next_ohm * part)
 
     # ------------------------------------------------------------ what people do at the machine
+
+    def wound_already(self, turns: float, segments: bytes) -> None:
+        """Puts a coil of `turns` on the empty spindle, laid as the program's segments (u16, i16 LE) have it.
+
+        For going on with a simulated coil after the process that wound it has ended.
+        """
+        wanted = round(turns * self._counts_per_turn)
+        count = 0
+        for counts, steps in struct.iter_unpack("<Hh", segments):
+            part = min(counts, wanted - count)
+            self.guide.move(steps if part == counts else round(steps * part / counts))
+            count += part
+            while (self.coil.turns + 1) * self._counts_per_turn <= count:
+                self.coil.end_turn(self.guide.next_mm())
+            if count >= wanted:
+                break
+        whole = self.coil.turns * self._steps_per_turn
+        self._turn_start, self._turn_end = self.position + whole, self.position + whole + self._steps_per_turn
+        self.position += round(turns * self._steps_per_turn)
+        self._counted = self.position * self._counts_per_turn // self._steps_per_turn
+        while self._index_at <= self.position:
+            self._index_at += self._steps_per_turn
+        self._look()
 
     def turn_by_hand(self, turns: float) -> None:
         """Turns the spindle slowly, with drives off; negative unwinds."""
