@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 _Z95 = 1.959964  # two-sided 95 % of a normal distribution
 
 
-@click.command()
+@click.command(short_help="What a coil will be.")
 @click.argument("recipe", type=click.Path(path_type=Path))
 @click.option(
     "--turns", type=click.IntRange(min=1), metavar="N", help="Plan this many turns, whatever the target."

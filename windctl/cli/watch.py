@@ -155,7 +155,8 @@ def _question(snapshot: Snapshot) -> str:
     if snapshot.asks == "clear":
         return f"{snapshot.says}. Look to the cause, then type clear and Enter; nothing turns by that."
     if snapshot.turns > 0:
-        return f"{snapshot.says}. Type go and Enter to go on, or end and Enter to end the coil; Ctrl-C leaves it."
+        words = "Type go and Enter to go on, or end and Enter to end the coil here; Ctrl-C leaves it open."
+        return f"{snapshot.says}. {words}"
     return "Type go and Enter to start; Ctrl-C leaves without turning anything."
 
 

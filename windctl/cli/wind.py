@@ -27,7 +27,7 @@ if TYPE_CHECKING:
     from windctl.run.wind import Winding
 
 
-@click.command()
+@click.command(short_help="Wind a coil.")
 @click.argument("recipe", type=click.Path(path_type=Path))
 @takes(
     "machine",
@@ -73,7 +73,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
         return _stand_by(shared, begin(order, book, bench.port, bench.here), bench)
 
 
-@click.command()
+@click.command(short_help="Go on after an interruption.")
 @click.argument("coil", required=False)
 @takes("at_turn", "machine", "port", "speed", "plant_seed", "book", "dry_run", "json", "quiet", "no_input")
 def resume(shared: Shared, coil: str | None) -> ExitCode:

@@ -1,0 +1,105 @@
+"""The bench a coil is wound on: its port, its name, and what only the outermost shell knows of the world."""
+
+from __future__ import annotations
+
+import getpass
+import secrets
+import uuid
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from datetime import datetime
+from typing import TYPE_CHECKING
+
+from windctl.errors import UsageError
+
+if TYPE_CHECKING:
+    from windctl.cli.options import Shared
+    from windctl.machine.ports import Port
+    from windctl.machine.virtual.plant import PlantTruth
+    from windctl.profile.model import MachineProfile
+    from windctl.recipe.model import Recipe
+    from windctl.record.events import CoilStarted
+    from windctl.run.wind import Here
+
+DEFAULT_SEED = 1
+
+_SEED_MARK = ", plant seed "
+
+
+@dataclass(frozen=True, slots=True)
+class Bench:
+    """An open port and what goes with it. `truth` is of a machine simulated in this process, else None."""
+
+    name: str  # as the record keeps it
+    port: Port
+    here: Here
+    truth: Callable[[], PlantTruth] | None
+
+
+@contextmanager
+def open_bench(
+    shared: Shared,
+    profile: MachineProfile,
+    simulated: bool,
+    recipe: Recipe,
+    started: CoilStarted | None = None,
+) -> Iterator[Bench]:
+    """The bench, its port open until the end. `started`: the coil that is gone on with.
+
+    Raises MachineError when the port is not there or busy, UsageError for options that have no meaning on it.
+    """
+    if not simulated:
+        from windctl.machine.serial_port import SerialPort
+
+        for name, value in (("--speed", shared.speed), ("--plant-seed", shared.plant_seed)):
+            if value is not None:
+                raise UsageError(f"{name} is for a machine simulated in this process, not for a port")
+        assert profile.port.url is not None
+        coil = "" if started is None else started.number
+        port = SerialPort(profile.port.url, profile.port.baud, coil=coil)
+        try:
+            yield Bench(profile.name, port, _here(), None)
+        finally:
+            port.close()
+        return
+
+    from windctl.machine.virtual.bench import virtual_bench
+    from windctl.machine.virtual.port import VirtualPort
+
+    seed = shared.plant_seed if shared.plant_seed is not None else _seed_of(started)
+    machine = virtual_bench(recipe, profile, seed)
+    if started is not None and shared.at_turn is not None:
+        from windctl.record.program import unpacked
+
+        # The simulated coil went with the process that wound it: the same wire is laid again up to there.
+        machine.plant.wound_already(shared.at_turn, unpacked(started.program_packed))
+    simulated_port = VirtualPort(machine, shared.speed or 0.0)
+    yield Bench(f"{profile.name}{_SEED_MARK}{seed}", simulated_port, _here(), simulated_port.truth)
+
+
+def _seed_of(started: CoilStarted | None) -> int:
+    """The plant seed that a recorded coil was simulated with, else the usual one."""
+    if started is None:
+        return DEFAULT_SEED
+    _, marked, seed = started.machine.rpartition(_SEED_MARK)
+    return int(seed) if marked and seed.isdecimal() else DEFAULT_SEED
+
+
+def _here() -> Here:
+    from windctl.run.wind import Here
+
+    return Here(
+        wall_time=lambda: datetime.now().astimezone().isoformat(timespec="seconds"),
+        year=datetime.now().astimezone().year,
+        coil_id=str(uuid.uuid4()),
+        nonces=lambda: secrets.randbits(32),
+        operator=_operator(),
+    )
+
+
+def _operator() -> str:
+    try:
+        return getpass.getuser()
+    except (KeyError, OSError):  # no such user in the system's list: nobody to name
+        return ""

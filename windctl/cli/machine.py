@@ -1,0 +1,153 @@
+"""`windctl machine`: the machines that are known, and the virtual one as a process of its own."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import click
+
+from windctl.cli import places, present
+from windctl.cli.machines import VIRTUAL, configured_machine, kept_profiles, profile_of
+from windctl.cli.options import Shared, takes
+from windctl.errors import ProfileError
+
+
+@click.group()
+def machine() -> None:
+    """Machines: their profiles, and the simulated one."""
+
+
+@machine.command("list")
+@takes("json")
+def list_(shared: Shared) -> None:
+    """The machines that have a profile; the usual one is marked."""
+    from windctl.profile.builtin import VIRTUAL as BUILT_IN
+    from windctl.profile.load import load_profile
+
+    usual = configured_machine()
+    rows = [{"machine": VIRTUAL, "bench": BUILT_IN.bench, "port": None, "file": None, "problem": None}]
+    for name, file in kept_profiles().items():
+        try:
+            profile = load_profile(file)
+        except ProfileError as error:
+            problem = str(error.problems[0])
+            rows.append({"machine": name, "bench": None, "port": None, "file": str(file), "problem": problem})
+        else:
+            url = profile.port.url
+            rows.append(
+                {"machine": name, "bench": profile.bench, "port": url, "file": str(file), "problem": None}
+            )
+    if shared.json:
+        present.result_json({"machines": [{**row, "usual": row["machine"] == usual} for row in rows]})
+        return
+    present.table(
+        ["", "machine", "bench", "port"],
+        [
+            [
+                "*" if row["machine"] == usual else "",
+                str(row["machine"]),
+                row["bench"] or "",
+                row["problem"] or row["port"] or "",
+            ]
+            for row in rows
+        ],
+    )
+    present.message(f"profiles are kept in {places.machines_folder()}")
+
+
+@machine.command()
+@click.option(
+    "--recipe",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Whose bobbin and wire are on the bench; else an ordinary single coil.",
+)
+@click.option(
+    "--tcp",
+    metavar="HOST:PORT",
+    default="127.0.0.1:0",
+    show_default=True,
+    help="Where to listen; port 0 takes a free one.",
+)
+@click.option("--pty", is_flag=True, help="A pseudo-terminal instead (POSIX): opens like a serial device.")
+@click.option(
+    "--resets-on-open",
+    is_flag=True,
+    default=None,
+    help="The board restarts whenever its port is opened, as many do; else as the profile says.",
+)
+@click.option(
+    "--trace",
+    type=click.Path(dir_okay=False, path_type=Path),
+    metavar="FILE",
+    help="Write what the board does.",
+)
+@takes("machine", "speed", "plant_seed", "readings")
+def serve(
+    shared: Shared, recipe: Path | None, tcp: str, pty: bool, resets_on_open: bool | None, trace: Path | None
+) -> None:
+    """Run the simulated board as a process of its own, until Ctrl-C or SIGTERM.
+
+    The first line on standard output is the URL for --port. SIGUSR1 resets the board.
+    """
+    from windctl.cli.bench import DEFAULT_SEED
+    from windctl.machine.virtual.serve import serve as serve_machine
+    from windctl.recipe.load import load_recipe, parse_recipe
+
+    wanted = parse_recipe(ORDINARY, "ordinary coil") if recipe is None else load_recipe(recipe)
+    host, port = _address(tcp)
+    serve_machine(
+        wanted,
+        profile_of(shared),
+        seed=shared.plant_seed if shared.plant_seed is not None else DEFAULT_SEED,
+        speed=shared.speed if shared.speed is not None else 1.0,
+        host=host,
+        port=port,
+        pty=pty,
+        trace=trace,
+        resets_on_open=resets_on_open,
+    )
+
+
+def _address(text: str) -> tuple[str, int]:
+    host, _, port = text.rpartition(":")
+    if not host or not port.isdecimal() or int(port) > 65_535:
+        raise click.BadParameter(f"{text!r} is not HOST:PORT, such as 127.0.0.1:7000", param_hint="--tcp")
+    return host.strip("[]"), int(port)
+
+
+# What is on the bench where nobody says: a single coil of common size, invented.
+ORDINARY = """\
+format = 1
+name = "ordinary single coil"
+[bobbin]
+core_length_mm = 56.0
+core_width_mm = 6.0
+corner_radius_mm = 3.0
+flange_gap_mm = 11.0
+flange_depth_mm = 8.5
+[coil]
+direction_from_face = "cw"
+mounted = "face out"
+start_flange = "base"
+[wire]
+gauge = "AWG 42"
+enamel = "grade 1"
+[lay]
+style = "scatter"
+pitch_mm = 0.22
+margin_mm = 0.3
+pattern = "wander"
+amount = 0.4
+seed = 1
+[spindle]
+start_rpm = 150
+start_turns = 20
+cruise_rpm = 1000
+finish_rpm = 120
+finish_turns = 40
+ramp_rpm_per_s = 60
+[stop]
+turns = 8000
+tolerance_pct = 1
+"""
