@@ -23,11 +23,13 @@ class Consents:
         self._used: dict[Kind, Hashable] = {}
         self._given_back: set[Kind] = set()
 
-    def wanted(self, kind: Kind, consent: Hashable | None) -> None:
-        """Note what is wanted now; to be told every time, also that nothing is."""
-        if kind in self._given_back and consent != self._used.get(kind):
-            self._given_back.discard(kind)
-            del self._used[kind]
+    def wanted(self, kind: Kind, consent: Hashable | None) -> bool:
+        """Note what is wanted now, also that nothing is. True: a refused one may be asked for anew."""
+        if kind not in self._given_back or consent == self._used.get(kind):
+            return False
+        self._given_back.discard(kind)
+        del self._used[kind]
+        return True
 
     def good(self, kind: Kind, consent: Hashable | None) -> bool:
         """Whether this consent has not been used."""

@@ -264,7 +264,8 @@ class Conversation:
             (ClearTrip, wants.clear_trip),
             (SetDatum, wants.datum),
         ):
-            self._consents.wanted(kind, consent)
+            if self._consents.wanted(kind, consent):
+                self._refusals.pop(kind, None)
 
     def _numbered(self, wants: Wants, now: float) -> bytes:
         """The outstanding command once more, or the next one."""
