@@ -87,11 +87,11 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
         return replace(estimate, gated=estimate.gated + 1, open_run=estimate.open_run + 1, zero_run=0), False
     if seen.ohm > _ZERO_FROM_OHM and reading.ohm < _ZERO_PART * seen.ohm:
         return replace(estimate, gated=estimate.gated + 1, zero_run=estimate.zero_run + 1, open_run=0), False
-    noise = own_variance(prior, reading, seen.ohm) * estimate.unrest.factor(not reading.resting)
-    sd = sqrt(seen.variance + noise)
+    stated = own_variance(prior, reading, seen.ohm)
+    noise = stated * estimate.unrest.factor(not reading.resting)
     surprise = reading.ohm - seen.ohm
-    unrest = estimate.unrest.heard(surprise, sd)
-    if abs(surprise) <= GATE * sd:
+    if abs(surprise) <= GATE * sqrt(seen.variance + noise):
+        unrest = estimate.unrest.heard(surprise, seen.variance + stated)
         unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * noise
         trust = 1 if unsure else estimate.trust + 1
         anchor = estimate.belief if unsure else estimate.anchor
@@ -99,16 +99,14 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
         return _with(
             estimate, unrest, taken, anchor=anchor if trust < _TRUSTED else None, trust=trust, used=1
         ), True
-    return _kept_out(estimate, unrest, reading, seen.ohm)
+    return _kept_out(estimate, reading, seen.ohm)
 
 
-def _kept_out(
-    estimate: Estimate, unrest: Unrest, reading: Reading, expected_ohm: float
-) -> tuple[Estimate, bool]:
+def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tuple[Estimate, bool]:
     """A reading outside the gate: it feeds the rival, which takes over once enough readings agree with it."""
     rival, agreeing = None, 1
     if estimate.rival is not None:
-        rival = _agreeing(estimate, estimate.rival, unrest, reading)
+        rival = _agreeing(estimate, estimate.rival, reading)
         agreeing = estimate.rival_trust + 1
     if rival is None:
         agreeing = 1
@@ -118,12 +116,12 @@ def _kept_out(
             start = estimate.belief
         else:
             start = opened(estimate.belief, estimate.prior)
-        rival = _forced(estimate, start, unrest, reading)
+        rival = _forced(estimate, start, reading)
     trusted = estimate.trust >= _TRUSTED
     if agreeing < (_UNSEATS_TRUSTED if trusted else _TRUSTED):
         return _with(
             estimate,
-            unrest,
+            estimate.unrest,
             estimate.belief,
             anchor=estimate.anchor,
             trust=estimate.trust,
@@ -131,24 +129,24 @@ def _kept_out(
             rival_trust=agreeing,
         ), False
     jump = Jump(reading.turn, expected_ohm, reading.ohm) if trusted else estimate.jump
-    return replace(_with(estimate, unrest, rival, trust=agreeing, used=1), jump=jump), True
+    return replace(_with(estimate, estimate.unrest, rival, trust=agreeing, used=1), jump=jump), True
 
 
-def _agreeing(estimate: Estimate, rival: Belief, unrest: Unrest, reading: Reading) -> Belief | None:
+def _agreeing(estimate: Estimate, rival: Belief, reading: Reading) -> Belief | None:
     """The rival after a reading inside its own gate, or None."""
     belief = moved(rival, reading.turn, estimate.walk)
     seen = look(belief, reading.celsius, reading.warmth, estimate.prior.contact_length_ohm)
-    noise = own_variance(estimate.prior, reading, seen.ohm) * unrest.factor(not reading.resting)
+    noise = own_variance(estimate.prior, reading, seen.ohm) * estimate.unrest.factor(not reading.resting)
     if abs(reading.ohm - seen.ohm) > GATE * sqrt(seen.variance + noise):
         return None
     return told(belief, seen, reading.ohm, noise)
 
 
-def _forced(estimate: Estimate, start: Belief, unrest: Unrest, reading: Reading) -> Belief:
+def _forced(estimate: Estimate, start: Belief, reading: Reading) -> Belief:
     """A belief that takes a reading at its word, however far off it is."""
     belief = moved(start, reading.turn, estimate.walk)
     seen = look(belief, reading.celsius, reading.warmth, estimate.prior.contact_length_ohm)
-    noise = own_variance(estimate.prior, reading, seen.ohm) * unrest.factor(not reading.resting)
+    noise = own_variance(estimate.prior, reading, seen.ohm) * estimate.unrest.factor(not reading.resting)
     return told(belief, seen, reading.ohm, noise)
 
 
