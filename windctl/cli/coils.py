@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import asdict
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -162,18 +163,13 @@ def verify(shared: Shared, coil: str | None) -> ExitCode:
         else:
             raise BookError(f"no coil {coil!r}: no coil has been wound yet")
     if shared.json:
-        present.result_json({"checked": checked, "broken": [_finding(one) for one in broken]})
+        present.result_json({"checked": checked, "broken": [asdict(one) for one in broken]})
     else:
-        present.result(f"{checked} checked, {len(broken)} broken")
+        present.result(f"{checked} checked, {len({one.coil for one in broken})} broken")
         for one in broken:
-            present.result(str(one))
+            place = "" if one.event_seq is None else f", row {one.event_seq} of its record"
+            present.result(f"{one.coil}{place}: {one.what}")
     return ExitCode.RECORD_BROKEN if broken else ExitCode.DONE
-
-
-def _finding(one: Any) -> dict[str, object]:
-    from dataclasses import asdict
-
-    return asdict(one)
 
 
 @coils.command()

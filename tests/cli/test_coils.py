@@ -1,0 +1,124 @@
+"""`windctl coils` on a small book of demo coils."""
+
+from __future__ import annotations
+
+import json
+import sqlite3
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from tests.book.samples import packed, started, wind, wound
+from windctl.book.export import restored
+from windctl.book.open import open_book
+from windctl.cli.main import run
+
+
+@pytest.fixture
+def book(tmp_path: Path) -> Path:
+    """A closed coil of two turns, then an open one."""
+    path = tmp_path / "shop.book"
+    with open_book(path) as opened:
+        wind(opened, 1, turns=2)
+        with opened.begin_coil("b1", 2026, started(2, wall_time="2026-05-05T08:30:00+02:00")) as writer:
+            writer.commit(packed(wound(writer.started, 1)))
+    return path
+
+
+Printed = pytest.CaptureFixture[str]
+
+
+def asked(capsys: Printed, *arguments: str) -> Any:
+    """The JSON that a call answers with."""
+    assert run([*arguments, "--json"]) == 0
+    answer = json.loads(capsys.readouterr().out)
+    assert answer["format"] == 1
+    return answer
+
+
+def test_list_names_the_coils_the_last_one_first(book: Path, capsys: Printed) -> None:
+    coils = asked(capsys, "coils", "list", "--book", str(book))["coils"]
+    assert [coil["coil"] for coil in coils] == ["b1-2026-0002", "b1-2026-0001"]
+    assert [coil["outcome"] for coil in coils] == ["open", "finished"]
+    assert set(coils[1]) >= {
+        "coil", "id", "recipe", "started", "outcome", "turns", "dcr_20c_ohm", "verdict"
+    }  # fmt: skip
+    assert coils[1]["dcr_20c_ohm"] == 25.512345678901234
+    assert coils[0]["dcr_20c_ohm"] is None
+
+
+def test_list_for_people_is_a_table(book: Path, capsys: Printed) -> None:
+    assert run(["coils", "list", "--book", str(book)]) == 0
+    lines = capsys.readouterr().out.splitlines()
+    assert lines[0].split()[:3] == ["coil", "recipe", "started"]
+    assert "25.51 ± 0.31 ohm" in lines[2]
+    assert len({line.find("demo bridge") for line in lines[1:]}) == 1
+
+
+def test_list_can_be_narrowed(book: Path, capsys: Printed) -> None:
+    common = ("coils", "list", "--book", str(book))
+    assert len(asked(capsys, *common, "--outcome", "finished")["coils"]) == 1
+    assert len(asked(capsys, *common, "--limit", "1")["coils"]) == 1
+    assert len(asked(capsys, *common, "--batch", "demo lot")["coils"]) == 2
+    assert asked(capsys, *common, "--batch", "another")["coils"] == []
+
+
+def test_show_has_events_and_curve(book: Path, capsys: Printed) -> None:
+    coil = asked(capsys, "coils", "show", "1", "--book", str(book))
+    assert coil["coil"] == "b1-2026-0001"
+    assert coil["events"][0]["kind"] == "coil_started"
+    assert coil["events"][-1]["kind"] == "coil_finished"
+    assert coil["curve"]
+
+
+def test_show_for_people_tells_rare_facts_and_counts_the_others(book: Path, capsys: Printed) -> None:
+    assert run(["coils", "show", "b1-2026-0001", "--book", str(book)]) == 0
+    shown = capsys.readouterr().out
+    assert "finished: the target is reached" in shown
+    assert "note made: by Demo Winder, text splice-free" in shown
+    assert "20 board reports and 4 readings besides" in shown
+    assert "status heard" not in shown
+
+
+def test_verify_is_content_with_an_untouched_book(book: Path, capsys: Printed) -> None:
+    assert asked(capsys, "coils", "verify", "--book", str(book)) == {"format": 1, "checked": 2, "broken": []}
+    assert asked(capsys, "coils", "verify", "1", "--book", str(book))["checked"] == 1
+
+
+def test_verify_finds_what_was_changed_and_ends_with_its_own_code(book: Path, capsys: Printed) -> None:
+    with sqlite3.connect(book) as connection:
+        connection.execute("UPDATE coils SET dcr_20c_ohm = 25.0 WHERE number = 'b1-2026-0001'")
+    connection.close()
+    assert run(["coils", "verify", "--book", str(book), "--json"]) == 7
+    answer = json.loads(capsys.readouterr().out)
+    assert {one["coil"] for one in answer["broken"]} == {"b1-2026-0001"}
+    assert run(["coils", "verify", "--book", str(book)]) == 7
+    assert capsys.readouterr().out.startswith("2 checked, 1 broken\n")
+
+
+def test_an_export_stands_by_itself(book: Path, capsys: Printed) -> None:
+    whole = restored(asked(capsys, "coils", "export", "1", "--book", str(book)))
+    assert whole.head.number == "b1-2026-0001"
+
+
+def test_reading_never_makes_a_book(tmp_path: Path, capsys: Printed) -> None:
+    missing = tmp_path / "none.book"
+    assert run(["coils", "list", "--book", str(missing)]) == 1
+    assert not missing.exists()
+    assert asked(capsys, "coils", "list") == {"format": 1, "coils": []}
+    assert asked(capsys, "coils", "verify") == {"format": 1, "checked": 0, "broken": []}
+    assert run(["coils", "verify", "b1-2026-0001"]) == 1
+
+
+def test_the_variable_names_the_book_and_the_option_beats_it(
+    book: Path, tmp_path: Path, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("WINDCTL_BOOK", str(book))
+    assert len(asked(capsys, "coils", "list")["coils"]) == 2
+    assert run(["coils", "list", "--book", str(tmp_path / "none.book")]) == 1
+
+
+def test_an_unknown_coil_is_told_with_the_way_to_find_one(book: Path, capsys: Printed) -> None:
+    assert run(["coils", "show", "b1-2026-0099", "--book", str(book)]) == 1
+    assert "windctl coils list" in capsys.readouterr().err
