@@ -7,7 +7,17 @@ from dataclasses import replace
 
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
-from windctl.protocol.messages import Capability, Cause, Identity, Reading, ReadingFlag, Setup, Status, Trust
+from windctl.protocol.messages import (
+    Capability,
+    Cause,
+    Identity,
+    InputBit,
+    Reading,
+    ReadingFlag,
+    Setup,
+    Status,
+    Trust,
+)
 from windctl.protocol.messages import State as BoardState
 from windctl.record.events import CoilStarted, Target
 from windctl.record.fold import setup_crc
@@ -124,7 +134,7 @@ def status(ticks: int, **changes: int) -> Status:
         cause=Cause.BOOT,
         trip=0,
         trust=3,
-        inputs=27,
+        inputs=int(InputBit.STOP_OK | InputBit.GUARD_OK | InputBit.STANDING),
         count=0,
         guide=0,
         stop_point=NONE,

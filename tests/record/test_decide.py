@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 
 from tests.record import samples
 from tests.record.samples import CPT, identity, reading, started, status
-from windctl.protocol.messages import Cause, Refused, Trip
+from windctl.protocol.messages import Cause, InputBit, Refused, Trip
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, Permission
 from windctl.record.decide import SETTLED_ENOUGH, Decision, decide
@@ -323,9 +323,9 @@ def test_without_readings_a_resistance_is_not_judged() -> None:
 
 def test_a_trip_ends_the_coil_once_it_stands() -> None:
     coil = turning()
-    tripped = status(7_000, state=BoardState.TRIPPED, cause=Cause.TRIP, trip=Trip.SLIP, epoch=12, speed=300)
+    tripped = status(7_000, state=BoardState.TRIPPED, cause=Cause.TRIP, trip=Trip.SLIP, epoch=12, inputs=3)
     assert [type(fact) for fact in coil.hear(StatusHeard(0, tripped))] == [Tripped]
-    coil.hear(StatusHeard(0, replace(tripped, speed=0, count=105 * CPT)))
+    coil.hear(StatusHeard(0, replace(tripped, inputs=3 | InputBit.STANDING, count=105 * CPT)))
     assert coil.state.finished is not None
     assert coil.state.finished.outcome == "tripped" and "slip" in coil.state.finished.reason
 
@@ -359,6 +359,7 @@ boards = st.builds(
     trip=st.sampled_from([0, 4, 7]),
     count=st.integers(0, 2000 * CPT),
     speed=st.sampled_from([0, 50, 6667]),
+    inputs=st.sampled_from([3, 3 | InputBit.STANDING]),
     next=st.integers(0, 200),
 )
 identities = st.builds(

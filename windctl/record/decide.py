@@ -80,14 +80,9 @@ def _noticed(state: State, at_ms: int) -> tuple[Event, ...]:
     if status.state == BoardState.TURNING and not state.turning and state.consented_since_greeting:
         return (WentOn(at_ms, status.count),)
     came_to_rest = state.turning or (state.fit is Fit.SAME and state.held is None)
-    if came_to_rest and _standing(state):
+    if came_to_rest and state.standing:
         return (Held(at_ms, status.ticks, status.count, status.cause),)
     return ()
-
-
-def _standing(state: State) -> bool:
-    status = state.status
-    return status is not None and status.state != BoardState.TURNING and status.speed == 0
 
 
 # ---------------------------------------------------------------- where to stop
@@ -129,12 +124,12 @@ def _stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
 def _ending(state: State, at_ms: int) -> tuple[Event, ...]:
     started, status = state.started, state.status
     assert started is not None
-    if state.tripped is not None and _standing(state):
+    if state.tripped is not None and state.standing:
         trip = Trip(state.tripped.trip)
         return (
             _finished(state, at_ms, "tripped", f"the board tripped: {trip.name.lower().replace('_', ' ')}"),
         )
-    if state.end is not None and _standing(state):
+    if state.end is not None and state.standing:
         return (_finished(state, at_ms, "stopped", state.end.reason),)
     held = state.held
     if status is None or held is None or state.stop_point is None or state.count < state.stop_point:
@@ -245,7 +240,7 @@ def _asks(state: State) -> str | None:
         return None
     if status.state == BoardState.TRIPPED:
         return None if state.clear == permission else "clear"
-    if status.state == BoardState.TURNING or not _standing(state):
+    if status.state == BoardState.TURNING or not state.standing:
         return None
     if state.held is not None and state.stop_point is not None and state.count >= state.stop_point:
         return None  # settling

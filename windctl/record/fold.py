@@ -14,7 +14,7 @@ from enum import Enum
 from windctl.forecast.estimator import Estimate, begin, update
 from windctl.forecast.reading import Reading as CoilReading
 from windctl.protocol.frames import CRC_START
-from windctl.protocol.messages import Identity, ReadingFlag, Refused, Status, Trust
+from windctl.protocol.messages import Identity, InputBit, ReadingFlag, Refused, Status, Trust
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
 from windctl.record.events import (
@@ -97,6 +97,16 @@ class State:
     def turns(self) -> float:
         """Turns on the bobbin as last known."""
         return self.count / self.counts_per_turn
+
+    @property
+    def standing(self) -> bool:
+        """The board says that nothing is driven and nothing turns any more."""
+        status = self.status
+        return (
+            status is not None
+            and status.state != BoardState.TURNING
+            and bool(status.inputs & InputBit.STANDING)
+        )
 
     @property
     def permission(self) -> Permission | None:

@@ -17,7 +17,6 @@ from windctl.errors import BookError, LinkLost, RunFailed, WindctlError
 from windctl.machine.ports import Port
 from windctl.protocol.conversation import Conversation
 from windctl.protocol.messages import Capability, Cause, Identity, Message, Reading, Refused, Status
-from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Wants
 from windctl.record.decide import Decision, decide
 from windctl.record.entries import Packer
@@ -267,15 +266,9 @@ class Runner:
             return Ended(state, "finished", state.finished.reason)
         if self._decision.asks == "turn" and self._leaving is None:
             return Ended(state, "turn wanted", self._decision.blocked or "")
-        if self._leaving is not None and self._stands():
+        if self._leaving is not None and state.standing and not state.turning:
             return Ended(state, "held", self._leaving.reason)
         return None
-
-    def _stands(self) -> bool:
-        status = self._state.status
-        if status is None or status.state == BoardState.TURNING or status.speed > 0:
-            return False
-        return not self._state.turning
 
     def _speak(self) -> None:
         now = self._port.now()
@@ -346,7 +339,7 @@ class Runner:
                     fact = _fact(message, self._at_ms())
                     if isinstance(fact, StatusHeard):
                         self._record_quietly(fact)
-                        if fact.status.state != BoardState.TURNING and fact.status.speed == 0:
+                        if self._state.standing:
                             return True
         except WindctlError:
             return False  # the first error is the one to show; the board stops for want of beats

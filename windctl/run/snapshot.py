@@ -83,7 +83,7 @@ def _phase(state: State) -> str:
         return "tripped"
     if status.state == BoardState.TURNING:
         return "turning"
-    if status.speed > 0:
+    if not state.standing:
         return "stopping"
     if status.state == BoardState.DRIVES_OFF:
         return "setting up"
