@@ -55,6 +55,8 @@ def _wrong_type(kind: str, value: str, given: object, unit: str) -> str | None:
     }.get(kind)
     if needed is None:
         return None
+    if kind == "int_type" and isinstance(given, float):
+        return f"is {given!r}, where {needed} is needed"  # with its point: that is what is wrong
     unquote = kind in ("float_type", "int_type", "bool_type") and isinstance(given, str)
     return f"is {value}, where {needed} is needed" + ("; write it without quotes" if unquote else "")
 
@@ -147,6 +149,8 @@ def _show(value: object, unit: str) -> str:
     """A value as the file has it, a number with its unit; tables and arrays are not spelled out."""
     if isinstance(value, bool):
         return "true" if value else "false"
+    if isinstance(value, int) and abs(value) >= _LONGEST_INTEGER:
+        return "a number of more than 18 digits"
     if isinstance(value, int | float):
         return f"{_number(value)} {unit}" if unit and math.isfinite(value) else _number(value)
     if isinstance(value, str):
@@ -157,7 +161,7 @@ def _show(value: object, unit: str) -> str:
 
 
 def _number(value: float) -> str:
-    """A number as a person writes it; nobody reads 300 digits."""
-    if isinstance(value, int):
-        return str(value) if abs(value) < _LONGEST_INTEGER else "a number of more than 18 digits"
-    return str(int(value)) if value.is_integer() and abs(value) < 1e15 else repr(value)
+    """A number as a person writes it."""
+    if isinstance(value, float) and value.is_integer() and abs(value) < _LONGEST_INTEGER:
+        return f"{value:.0f}"
+    return repr(value)
