@@ -1,10 +1,10 @@
 """The coil on the bobbin, turn by turn: where each turn lands, how long it is, what it adds in resistance.
 
-The gap between the flanges is cut into narrow bins with a build of their own. A turn comes from the spool at
-the guide, follows it with the lag of the free wire, slides down where the build is too steep, and raises the
-bins under it by its area over packing and bin width. Round any convex core a turn lies on the outline grown by
-the build b, P0 + 2 pi b (Steiner); the long sides bow outwards, two shallow arcs of height h over the straight
-s: 16 h^2 / (3 s). Crown, ribbons and edge effects come out of this and are nowhere put in.
+The gap between the flanges is cut into narrow bins with a build of their own. A turn comes from the spool
+at the guide, follows it with the lag of the free wire, slides down where the build is too steep, and raises
+the bins under it by its area over packing and bin width. Round any convex core a turn lies on the outline
+grown by the build b, P0 + 2 pi b (Steiner); the long sides bow outwards, two shallow arcs of height h over
+the straight s: 16 h^2 / (3 s). Crown, ribbons and edge effects come out of this and are nowhere put in.
 """
 
 from __future__ import annotations
@@ -17,8 +17,8 @@ from windctl.machine.virtual.draws import Draws
 from windctl.machine.virtual.fate import Fate
 from windctl.machine.virtual.plant_spec import PlantSpec
 
-_BIN_MM = 0.1
-_SLIDE_BINS = 3
+_BIN_MM = 0.05
+_SLIDE_BINS = 6  # a slope is judged over 0.3 mm, some wires wide
 _TWO_PI = 2.0 * math.pi
 _REMEMBERED = 20_000  # turns that can be taken off again
 
@@ -40,7 +40,7 @@ class _Turn:
 
 
 class Coil:
-    """One bobbin. `ohm`: of the whole turns at 20 degrees C; `next_ohm`: of the turn being laid, once whole."""
+    """One bobbin. `ohm` of its whole turns, `next_ohm` of the turn being laid, both at 20 degrees C."""
 
     __slots__ = (
         "_area",

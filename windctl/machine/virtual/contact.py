@@ -1,8 +1,8 @@
 """The contact and its meter: what a ratio converter with a constant current sees of a growing, turning coil.
 
-Per sample: gain, leads, the wire between coil and contact, mains hum picked up by the turns, the turning coil's
-own voltage where its axis is off, noise, and a contact that bounces. All but what follows the spindle's angle is
-drawn for a block of ticks at a time, so that a sample costs one look-up.
+Per sample: gain, leads, the wire between coil and contact, mains hum picked up by the turns, the turning
+coil's own voltage where its axis is off, noise, and a contact that bounces. All but what follows the
+spindle's angle is drawn for a block of ticks at a time, so that a sample costs one look-up.
 """
 
 from __future__ import annotations
@@ -57,11 +57,11 @@ class Meter:
         self._wander = 0.0
 
     def units(self, coil_ohm: float, contact_wire_ohm: float) -> float:
-        """Units shown for a coil of `coil_ohm` at its temperature, without noise; rounded once cut to whole."""
+        """Units shown for a coil of `coil_ohm` at its temperature, without noise; and a half, to cut."""
         return self.gain * (coil_ohm + contact_wire_ohm + self._constant_ohm) * self.per_ohm + 0.5
 
     def axis_units(self, turns: float, rpm: float) -> float:
-        """Amplitude, in units, of the voltage of a coil turning askew in the earth's field, once a revolution.
+        """Amplitude, in units, of the voltage of a coil turning askew in the earth's field, once a turn.
 
         Faraday: 5 m2 of turns, one degree, 1000 rpm, 50 uT give 0.46 mV.
         """

@@ -1,9 +1,9 @@
 """Chance for the virtual machine: the same numbers from the same seed, on every computer, in every version.
 
-Only two things of the standard library are used: SHA-256, and `random.Random(int).random()`, whose sequence the
-library promises to keep. Normal deviates are sums of twelve uniforms (Irwin and Hall): no logarithm or sine of
-the platform, whose last bit differs from one C library to the next. Every quantity has a stream of its own,
-named by seed and quantity, so that adding one never changes the others.
+Only two things of the standard library are used: SHA-256, and `random.Random(int).random()`, whose sequence
+the library promises to keep. Normal deviates are sums of twelve uniforms (Irwin and Hall): no logarithm or
+sine of the platform, whose last bit differs from one C library to the next. Every quantity has a stream of
+its own, named by seed and quantity, so that adding one never changes the others.
 """
 
 from __future__ import annotations

@@ -17,7 +17,7 @@ from windctl.machine.virtual.plant_spec import PlantSpec
 
 @dataclass(frozen=True, slots=True)
 class Law:
-    """How one quantity is drawn: normal with sd `spread`, again beyond `cut` sd; or uniform, centre +- spread."""
+    """How a quantity is drawn: normal, sd `spread`, again beyond `cut` sd; or uniform, centre +- spread."""
 
     name: str
     shape: Literal["normal", "uniform"]

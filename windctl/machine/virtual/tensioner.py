@@ -1,4 +1,4 @@
-"""The pull on the wire as its sensor shows it: the felt's set value, pulsing twice a turn on a long bobbin."""
+"""The pull on the wire as its sensor shows it: the felt's set value, pulsing twice a turn."""
 
 from __future__ import annotations
 
