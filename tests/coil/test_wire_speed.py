@@ -35,7 +35,7 @@ def string_speeds(outline: Core, rpm: float, distance: float) -> np.ndarray:
         # the tangent on one side: the corner with the extreme bearing as seen from the guide
         along = distance - (x * np.cos(turn) + y * np.sin(turn))
         across = y * np.cos(turn) - x * np.sin(turn)
-        touch = int(np.argmax(np.arctan2(across, along)[:-1]))
+        touch = int(np.argmin(np.arctan2(across, along)[:-1]))
         free = math.hypot(guide[0] - x[touch], guide[1] - y[touch])
         lengths.append((wound[touch], free))
     arc = np.unwrap(np.array([a for a, _ in lengths]), period=float(wound[-1]))

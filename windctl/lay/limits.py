@@ -61,20 +61,19 @@ def check(program: Program, recipe: Recipe, profile: MachineProfile) -> Checked:
         if value > most:
             slower = most / value
             refusals.append(
-                f"at {rpm:g} rpm the guide {what} {value:.3g} mm/s, and the machine's {key} is {most:g} mm/s; turn "
-                f"at most at {rpm * slower:.0f} rpm, or lay with a mean pitch of at most "
-                f"{recipe.pitch_mm * slower:.3g} mm"
+                f"at {rpm:g} rpm the guide {what} {value:.3g} mm/s, and {key} is {most:g} mm/s; at most "
+                f"{rpm * slower:.0f} rpm, or a mean pitch of at most {recipe.pitch_mm * slower:.3g} mm"
             )
     if found.travel_mm > guide.travel_mm:
         refusals.append(
             f"the guide travels {found.travel_mm:.4g} mm, its play included, and the machine's "
-            f"guide.travel_mm is {guide.travel_mm:g} mm; raise lay.margin_mm or choose a machine with more travel"
+            f"guide.travel_mm is {guide.travel_mm:g} mm; raise lay.margin_mm or take a machine with more"
         )
     if found.horizon_turns < found.braking_turns:
         refusals.append(
-            f"at {rpm:g} rpm the spindle needs {found.braking_turns:.3g} turns to stop, and the segments in "
-            f"the board's queue may reach only {found.horizon_turns:.3g} turns ahead; turn more slowly, brake "
-            "harder (spindle.decel_rpm_per_s), or use a board with more board.queue_segments"
+            f"at {rpm:g} rpm the spindle needs {found.braking_turns:.3g} turns to stop, and the segments "
+            f"in the board's queue may reach only {found.horizon_turns:.3g} turns ahead; turn more slowly, "
+            "brake harder (spindle.decel_rpm_per_s), or use a board with more board.queue_segments"
         )
     if refusals:
         raise PlanRefused("\n".join(refusals))

@@ -50,8 +50,8 @@ def spec_of(recipe: Recipe, profile: MachineProfile, turns: int) -> LaySpec:
     stroke = whole_steps(gap - 2 * margin, per_mm)
     if stroke < 1:
         raise PlanRefused(
-            f"lay.margin_mm of {lay.margin_mm:g} mm on each side leaves no travel in a flange gap of "
-            f"{recipe.bobbin.flange_gap_mm:g} mm; at most {float(gap / 2):g} mm"
+            f"between its turn-round points the guide would travel {float(gap - 2 * margin):g} mm, less than "
+            f"one of its steps of {float(1 / per_mm):g} mm; lower lay.margin_mm or use a finer guide"
         )
     spread = whole_steps(exact(lay.reversal_spread_mm or 0.0), per_mm)
     if 2 * spread >= stroke:
