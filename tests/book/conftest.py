@@ -31,10 +31,10 @@ def _finished_book(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """Two closed coils (b1-2026-0001, b2-2026-0001) and an open one (b1-2026-0002)."""
     path = tmp_path_factory.mktemp("finished") / "shop.book"
     with open_book(path) as book:
-        wind(book, 1, turns=4)
-        wind(book, 2, turns=4, bench="b2")
+        wind(book, 1, turns=2)
+        wind(book, 2, turns=1, bench="b2")
         with book.begin_coil("b1", 2026, started(3)) as writer:
-            writer.commit(packed(wound(writer.started, 4)))
+            writer.commit(packed(wound(writer.started, 1)))
     return path
 
 

@@ -63,8 +63,10 @@ def check_record(
     for row in rows:
         walk.step(row)
     faults = [*walk.end()]
-    faults += _row_against_start(head, walk.events[0] if walk.events else None)
-    faults += _row_against_seal(head, walk.seal, curve)
+    if 0 not in {fault.seq for fault in faults}:
+        faults += _row_against_start(head, walk.events[0] if walk.events else None)
+    if walk.seal is not None or not walk.seal_altered:
+        faults += _row_against_seal(head, walk.seal, curve)
     if not walk.faults and walk.events:
         faults += _against_fold(head, walk.events, [point for _, point in curve])
     return faults
@@ -80,6 +82,7 @@ class _Walk:
         self.faults: list[Fault] = []
         self.events: list[Event] = []
         self.seal: dict[str, object] | None = None
+        self.seal_altered = False
 
     def step(self, row: StoredRow) -> None:
         entry = row.entry
@@ -101,6 +104,7 @@ class _Walk:
             what = f"row {row.seq} ({entry.kind!r}) was altered: it does not agree with its link"
             self.faults.append(Fault(row.seq, what))
             self._last = (row.link, *ties)
+            self.seal_altered |= entry.kind == SEAL
             return
         self._last = (row.link,)
         self._read(row)

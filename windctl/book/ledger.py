@@ -81,7 +81,7 @@ def _version_inside(path: Path, connection: sa.Connection) -> int:
         return 0
     if mark != APPLICATION_ID:
         raise BookError(
-            f"{path} is a database, but not a coil book: choose another file with --book; "
+            f"{path} is not a coil book, but some other database: choose another file with --book; "
             "nothing was changed in it"
         )
     version = connection.scalar(sa.select(sa.func.max(ledger.c.version)))

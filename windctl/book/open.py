@@ -9,6 +9,8 @@ from windctl.book.ledger import bring_up
 from windctl.book.store import WAIT_S, Store
 from windctl.errors import BookError
 
+_SQLITE = b"SQLite format 3\0"  # how every file of SQLite begins that is not empty
+
 
 def open_book(
     path: Path | str, *, create: bool = True, readonly: bool = False, wait_s: float = WAIT_S
@@ -34,6 +36,8 @@ def open_book(
             f"there is no coil book {path}: it is made when the first coil is wound; "
             "or choose one with --book"
         )
+    if there:
+        _refuse_something_else(path)
     store = Store(path, "ro" if readonly else "rwc" if create else "rw", wait_s)
     try:
         bring_up(store)
@@ -43,6 +47,23 @@ def open_book(
         store.close()
         raise
     return Book(store)
+
+
+def _refuse_something_else(path: Path) -> None:
+    """SQLite takes some files that are none of its own for empty ones, and would fill them."""
+    if path.with_name(f"{path.name}-journal").exists():
+        return  # a writer died, perhaps while it made the book: SQLite takes its changes back first
+    try:
+        with path.open("rb") as file:
+            beginning = file.read(len(_SQLITE))
+    except OSError as error:
+        raise BookError(
+            f"the coil book {path} cannot be read ({error.strerror}): check the permissions of the file"
+        ) from error
+    if beginning not in (b"", _SQLITE):
+        raise BookError(
+            f"{path} is not a coil book: choose another file with --book; nothing was changed in it"
+        )
 
 
 def _leave_write_ahead_log(store: Store) -> None:
