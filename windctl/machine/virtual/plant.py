@@ -18,7 +18,7 @@ from windctl.machine.virtual.guiding import Carriage, Hand
 from windctl.machine.virtual.plant_spec import PlantSpec
 from windctl.machine.virtual.sensing import Sensing
 from windctl.machine.virtual.signals import GUARD_OK, PEDAL_DOWN, STOP_OK, Inputs, Outputs
-from windctl.machine.virtual.motor import Spindle
+from windctl.machine.virtual.spindle import Spindle
 
 _NEVER = 1 << 62
 
