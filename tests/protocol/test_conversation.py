@@ -15,6 +15,7 @@ from windctl.protocol.messages import (
     Arm,
     Beat,
     BoardMessage,
+    Capability,
     ClearTrip,
     Disarm,
     Go,
@@ -275,6 +276,42 @@ def test_sampling_is_begun_changed_and_ended() -> None:
         assert only(bench.advance(Wants(sampling=sampling))) == expected
         bench.accept(expected)
         assert bench.advance(Wants(sampling=sampling)) == []
+
+
+def test_a_new_place_or_setup_voids_the_stop_point_and_the_pace_that_were_said_before() -> None:
+    bench, wants = ready_to_go()
+    moved = replace(wants, datum=Datum(400, 0, 4, 0, bench.permission))
+    command = only(bench.advance(moved))
+    assert isinstance(command, SetDatum)
+    bench.accept(command)
+    lay_all(bench, moved)
+    assert bench.everything[-1][1] == StopAt(7, 21, 5000)
+
+
+def test_where_a_hand_guides_the_wire_nothing_is_laid_and_go_does_not_wait_for_it() -> None:
+    bench = Bench()
+    bench.greet()
+    wants = replace(prepared(bench), setup=replace(SETUP, fitted=Capability.DRIVE_STEP))
+    for name in ("Setup", "SetDatum", "Arm"):
+        command = only(bench.advance(wants))
+        assert name == command.NAME
+        bench.accept(command, epoch=21 if name == "Arm" else 20)
+    bench.tell(epoch=21, state=State.READY)
+    wants = replace(wants, go=bench.permission)
+    for name in ("StopAt", "Pace", "Measure", "Go"):
+        command = only(bench.advance(wants))
+        assert name == command.NAME
+        bench.accept(command)
+
+
+def test_a_counter_needs_neither_program_nor_pace() -> None:
+    bench = Bench()
+    bench.greet(capabilities=0, state=State.READY)
+    counter = Wants(datum=Datum(0, 0, 0, 0, bench.permission), go=bench.permission, stop_point=40)
+    for name in ("SetDatum", "StopAt", "Go"):
+        command = only(bench.advance(counter))
+        assert name == command.NAME
+        bench.accept(command)
 
 
 # ---------------------------------------------------------------- consent

@@ -19,7 +19,7 @@ from typing import cast
 
 from windctl.errors import LinkLost, MachineError, ProgramMismatch
 from windctl.protocol.consents import Consents
-from windctl.protocol.differences import differences
+from windctl.protocol.differences import differences, fitted
 from windctl.protocol.exchange import Exchange
 from windctl.protocol.feeding import Feed
 from windctl.protocol.frames import DELIMITER, Frame, FrameReader, encode
@@ -30,6 +30,7 @@ from windctl.protocol.messages import (
     Arm,
     Beat,
     BoardMessage,
+    Capability,
     ClearTrip,
     Go,
     Greet,
@@ -254,7 +255,9 @@ class Conversation:
         return max(now, min(due))
 
     def _note(self, wants: Wants) -> None:
-        self._feed.want(wants.program)
+        # Only a board that drives the guide is fed; where a hand guides, the datum alone names the program.
+        guided = fitted(self.board, wants) & Capability.GUIDE_STEP
+        self._feed.want(wants.program if guided else None)
         laid_all = self._feed.all_laid(self.board)
         if laid_all != self.board.laid_all:
             self.board = replace(self.board, laid_all=laid_all)
@@ -376,7 +379,7 @@ class Conversation:
         if self._mismatch_since is None:
             self._mismatch_since = now
         if now - self._mismatch_since >= MISMATCH_S:
-            program = wants.program.id32 if wants.program is not None else 0
+            program = self._feed.program.id32 if self._feed.program is not None else 0
             raise ProgramMismatch(
                 f"the board's program is not the coil's: {board.program:08x} up to segment {board.next}, "
                 f"wanted {program:08x}, or segments of it were damaged; "

@@ -60,10 +60,10 @@ def _in_order(picture: BoardPicture, wants: Wants, feed: Feed, consents: Consent
         yield wants.setup
         return
     datum = wants.datum
-    program = wants.program
-    if datum is not None and program is not None and picture.declared != Declared.of(program.id32, datum):
+    program = wants.program.id32 if wants.program is not None else 0
+    if datum is not None and picture.declared != Declared.of(program, datum):
         if datum.given_for == present and consents.good(SetDatum, datum):
-            yield SetDatum(boot, epoch, program.id32, datum.count, datum.guide, datum.next, datum.into)
+            yield SetDatum(boot, epoch, program, datum.count, datum.guide, datum.next, datum.into)
         yield from measure
         return
 
@@ -85,16 +85,27 @@ def _in_order(picture: BoardPicture, wants: Wants, feed: Feed, consents: Consent
         yield lay
     yield from measure
     prepared = not stop_and_pace and lay is None and not wants.disarmed
-    if wants.go == present and consents.good(Go, present) and prepared and _may_go(picture, wants, agrees):
+    fed = feed.program is not None
+    if (
+        wants.go == present
+        and consents.good(Go, present)
+        and prepared
+        and _may_go(picture, wants, fed, agrees)
+    ):
         yield Go(boot, epoch)
 
 
-def _may_go(picture: BoardPicture, wants: Wants, agrees: bool | None) -> bool:
+def _may_go(picture: BoardPicture, wants: Wants, fed: bool, agrees: bool | None) -> bool:
     """The last look before something starts: the board holds our program, and knows how fast to turn."""
     status = picture.status
-    if wants.program is not None and (agrees is not True or status is None or status.next != picture.next):
+    if fed and (agrees is not True or status is None or status.next != picture.next):
         return False
-    return wants.pace > 0 or not picture.capabilities & Capability.DRIVE_STEP
+    return wants.pace > 0 or not fitted(picture, wants) & Capability.DRIVE_STEP
+
+
+def fitted(picture: BoardPicture, wants: Wants) -> Capability:
+    """What this coil uses of the machine; all of it as long as no Setup is wanted."""
+    return picture.capabilities if wants.setup is None else Capability(wants.setup.fitted)
 
 
 def _stop_point(picture: BoardPicture, wants: Wants, boot: int, epoch: int) -> Iterator[StopAt]:

@@ -54,7 +54,7 @@ class Feed:
             return False
         status, identity = picture.status, picture.identity
         if status is not None:
-            if status.ticks == picture.declared_at:
+            if status.ticks == picture.placed_at:
                 return None
             return self.crc(picture.base, status.next) == status.program_crc
         if identity is not None and picture.greeted:

@@ -29,6 +29,7 @@ from windctl.protocol.messages import (
     Status,
     StopAt,
 )
+from windctl.protocol.rules import NO_STOP_POINT
 from windctl.protocol.wants import Datum, Permission
 
 
@@ -69,7 +70,7 @@ class BoardPicture:
     next: int = 0
     executing: int = 0
     declared: Declared | None = None
-    declared_at: int | None = None  # ticks of the Status before it: a later one tells of the new queue
+    placed_at: int | None = None  # ticks of the Status before that: only a later one tells of the new queue
     pace: tuple[int, int] | None = None  # epoch, steps/s
     stop_asked: tuple[int, int] | None = None  # epoch, count
     measuring: Measure | None = None
@@ -170,7 +171,7 @@ def heard_identity(picture: BoardPicture, identity: Identity) -> BoardPicture:
         next=identity.next,
         executing=identity.executing,
         declared=declared,
-        declared_at=None,
+        placed_at=None,
         pace=None,
         stop_asked=None,
         measuring=None,
@@ -221,18 +222,12 @@ def accepted(picture: BoardPicture, command: HostMessage, answer: Accepted) -> B
     """After the board has executed `command`."""
     picture = with_epoch(picture, answer.epoch)
     match command:
-        case Setup():
-            return replace(picture, setup_crc=crc_hqx(command.encode_body(), CRC_START))
+        case Setup():  # voids the place, the program, the pace and the stop point
+            setup_crc = crc_hqx(command.encode_body(), CRC_START)
+            return replace(_placed(picture, 0, 0), setup_crc=setup_crc, declared=None, pace=None)
         case SetDatum():
-            return replace(
-                picture,
-                program=command.program,
-                base=command.next,
-                next=command.next,
-                executing=command.next,
-                declared=Declared(command.program, command.count, command.guide, command.next, command.into),
-                declared_at=picture.last_ticks,
-            )
+            declared = Declared(command.program, command.count, command.guide, command.next, command.into)
+            return replace(_placed(picture, command.program, command.next), declared=declared)
         case Lay():
             return replace(picture, next=max(picture.next, command.first + command.n))
         case Pace():
@@ -245,6 +240,19 @@ def accepted(picture: BoardPicture, command: HostMessage, answer: Accepted) -> B
             return replace(picture, declared=None)
         case _:
             return picture
+
+
+def _placed(picture: BoardPicture, program: int, first: int) -> BoardPicture:
+    """With an empty queue before segment `first`, and without a stop point."""
+    return replace(
+        picture,
+        program=program,
+        base=first,
+        next=first,
+        executing=first,
+        placed_at=picture.last_ticks,
+        stop_asked=None if picture.epoch is None else (picture.epoch, NO_STOP_POINT),
+    )
 
 
 def refused(picture: BoardPicture, answer: Refused) -> BoardPicture:
