@@ -15,10 +15,10 @@ BUILD_PER_TURN_M = 3.5e-3 / 8000  # 3.5 mm of build in all
 def certain(per_turn: float, growth: float, turns: float = 8000.0) -> Prior:
     """Nothing is unknown and nothing is off: the start of every prior below."""
     return Prior(
-        ohm_per_turn=per_turn, growth=growth, var_ohm_per_turn=0.0, var_growth=0.0, cov=0.0, growth_walk_rel=0.0,
-        turns=turns, offset_ohm=0.0, offset_sd=0.0, gain_sd=0.0, celsius_sd=0.0, coil_over_air_k=0.0,
-        coil_over_air_sd=0.0, noise_rel=0.0, floor_ohm=0.0, contact_length_ohm=0.0, wire_walk_rel=0.0,
-        wire_slope_rel=0.0,
+        ohm_per_turn=per_turn, growth=growth, var_ohm_per_turn=0.0, var_growth=0.0, cov=0.0,
+        growth_walk_rel=0.0, turns=turns, offset_ohm=0.0, offset_sd=0.0, gain_sd=0.0, celsius_sd=0.0,
+        coil_over_air_k=0.0, coil_over_air_sd=0.0, noise_rel=0.0, floor_ohm=0.0, contact_length_ohm=0.0,
+        wire_walk_rel=0.0, wire_slope_rel=0.0,
     )  # fmt: skip
 
 

@@ -1,4 +1,4 @@
-"""The Gaussian recursion: steps that compose, covariances that stay covariances, the batch solution as the judge."""
+"""The Gaussian recursion: steps that compose, covariances that stay so, the batch solution as the judge."""
 
 from __future__ import annotations
 
@@ -18,6 +18,7 @@ from windctl.forecast.belief import (
     PER_TURN,
     Belief,
     first_belief,
+    learnt,
     look,
     moved,
     told,
@@ -80,7 +81,7 @@ def test_the_gradient_is_the_derivative() -> None:
 
 
 def test_equals_the_batch_solution() -> None:
-    """No walks and no products: the recursion against the normal equations with a prior (numpy, in one piece)."""
+    """No walks and no products: the recursion against one solution with a prior (numpy)."""
     prior = worked()
     rng = np.random.default_rng(4)
     turns = np.sort(rng.uniform(10, 6000, 40))
@@ -137,3 +138,16 @@ def test_any_readings_keep_a_covariance(readings: list[tuple[float, float, float
         known = np.diag(cov) > 0.0
         sd_all = np.sqrt(np.diag(cov)[known])
         assert np.linalg.eigvalsh(cov[np.ix_(known, known)] / np.outer(sd_all, sd_all)).min() > -1e-9
+
+
+def test_sharp_readings_far_from_the_prior_do_not_teach_the_common_errors() -> None:
+    """The gain multiplies a resistance that the first reading moves by 8 %: seen through one resistance."""
+    prior = shop()
+    start = moved(first_belief(prior), 8000.0, walk_of(prior))
+    belief = start
+    for ohm in (6150.0, 6150.1, 6149.9, 6150.05):
+        belief = learnt(belief, look(belief, 22.0, 1.0, 0.82), ohm, 0.05**2, 22.0, 1.0, 0.82)
+    for state in (4, 5, 6):
+        assert belief.cov[state][state] == pytest.approx(start.cov[state][state], rel=0.03)
+    common = sqrt(0.003**2 + (0.00393 * 0.5) ** 2 + (0.00393 * 0.7) ** 2)
+    assert sqrt(belief.cov[OHM][OHM]) / belief.mean[OHM] == pytest.approx(common, rel=0.03)

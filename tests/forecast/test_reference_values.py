@@ -77,7 +77,7 @@ def at_origin(estimate: Estimate) -> tuple[float, float, float]:
 
 
 def test_nist_pontius() -> None:
-    """NIST StRD, linear regression, Pontius (quadratic), to six digits, with the certified residual sd fed in."""
+    """NIST StRD, linear regression, Pontius (quadratic), to six digits, with the certified residual sd."""
     x = np.tile(np.arange(150_000, 3_000_001, 150_000), 2)
     y = np.array([float(v) for v in PONTIUS_Y.split()])
     order = np.argsort(x, kind="stable")
@@ -89,7 +89,7 @@ def test_nist_pontius() -> None:
 
 
 def test_gum_h3() -> None:
-    """JCGM 100 (GUM), example H.3: a thermometer's correction as a straight line, and its prediction at 30 degrees C."""
+    """JCGM 100 (GUM), example H.3: a thermometer's correction as a line, and what it gives at 30 degrees C."""
     t = "21.521 22.012 22.512 23.003 23.507 23.999 24.513 25.002 25.503 26.010 26.511"
     b = "-.171 -.169 -.166 -.159 -.164 -.165 -.156 -.157 -.159 -.161 -.160"
     x = np.array([float(v) for v in t.split()]) - 20.0

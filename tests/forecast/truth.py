@@ -1,8 +1,9 @@
 """Coils that grow by their own laws, for judging the forecast: richer than the model it uses.
 
-Turn by turn: the wire's ohm per metre is drawn, walks and slopes along the spool; the packing is drawn and drifts
-through the coil; the enamel's diameter, the crown, the core and the stretch are drawn; the coil warms while it turns.
-The meter has a gain, an offset and noise, the thermometer a bias, the contact bounces. Distributions: see `Truth`.
+Turn by turn: the wire's ohm per metre is drawn, walks and slopes along the spool; the packing is drawn
+and drifts through the coil; the enamel's diameter, the crown, the core and the stretch are drawn; the
+coil warms while it turns. The meter has a gain, an offset and noise, the thermometer a bias, the contact
+bounces. Distributions: see `Truth`.
 """
 
 from __future__ import annotations

@@ -36,6 +36,8 @@ Vector: TypeAlias = tuple[float, float, float, float, float, float, float]
 Matrix: TypeAlias = tuple[Vector, Vector, Vector, Vector, Vector, Vector, Vector]
 
 OHM, PER_TURN, GROWTH, LEADS, GAIN, THERMOMETER, OVER_AIR = range(7)
+_MOST_RELOOKS = 3
+_FAR_MOVE = 9.0  # square of the own sds that a reading may move the resistance without a second look
 WARMTH_WALK_SHARE = 0.5  # part of the variance of coil over air that comes and goes within one coil
 
 
@@ -59,12 +61,11 @@ class Walk:
 
 @dataclass(frozen=True, slots=True)
 class Look:
-    """What a belief expects of one reading: `ohm`, its variance before the reading's own noise, and the
-    gradient."""
+    """What a belief expects of one reading: `ohm`, its variance before the reading's own noise, and how every
+    state goes along with it."""
 
     ohm: float
     variance: float
-    ohm_20c: float  # the part of it that the coil makes up, at 20 degrees C
     spread: Vector  # covariance of every state with the expected reading
 
 
@@ -142,9 +143,12 @@ def moved(belief: Belief, turn: float, walk: Walk) -> Belief:
     )
 
 
-def look(belief: Belief, celsius: float, warmth: float, contact_ohm: float) -> Look:
-    """What this belief expects a reading to show now, with the wire to the contact (`contact_ohm`) in it."""
-    ohm, _, _, leads, gain, bias, over = belief.mean
+def look(belief: Belief, celsius: float, warmth: float, contact_ohm: float, at: Vector | None = None) -> Look:
+    """What this belief expects a reading to show now, with the wire to the contact (`contact_ohm`) in it.
+
+    Linearised at the state `at`, else at the belief's mean.
+    """
+    ohm, _, _, leads, gain, bias, over = at or belief.mean
     scale = 1.0 + gain
     warm = 1.0 + ALPHA_20C * (celsius - bias + warmth * over - 20.0)
     raw = ohm * warm + leads + contact_ohm
@@ -155,7 +159,31 @@ def look(belief: Belief, celsius: float, warmth: float, contact_ohm: float) -> L
         d0 * row[0] + scale * row[3] + raw * row[4] + d5 * row[5] + d6 * row[6] for row in belief.cov
     ]
     variance = d0 * s0 + scale * s3 + raw * s4 + d5 * s5 + d6 * s6
-    return Look(scale * raw, max(variance, 0.0), ohm, (s0, s1, s2, s3, s4, s5, s6))
+    expected = scale * raw
+    if at is not None:
+        m = belief.mean
+        expected += d0 * (m[0] - ohm) + scale * (m[3] - leads) + raw * (m[4] - gain)
+        expected += d5 * (m[5] - bias) + d6 * (m[6] - over)
+    return Look(expected, max(variance, 0.0), (s0, s1, s2, s3, s4, s5, s6))
+
+
+def learnt(
+    belief: Belief, seen: Look, ohm: float, noise: float, celsius: float, warmth: float, contact_ohm: float
+) -> Belief:
+    """The belief after a reading of `ohm` with variance `noise`, `seen` being what it expected of it.
+
+    A reading that moves the resistance by more than its own noise is linearised anew where it leads to
+    (iterated extended Kalman filter). Without that, a first reading far from the prior and a second one
+    near the first would see the gain through two different resistances, and claim to know it from the
+    difference.
+    """
+    for _ in range(_MOST_RELOOKS):
+        step = (ohm - seen.ohm) / (seen.variance + noise)
+        if (seen.spread[OHM] * step) ** 2 <= _FAR_MOVE * noise:
+            break
+        m0, m1, m2, m3, m4, m5, m6 = [m + x * step for m, x in zip(belief.mean, seen.spread, strict=True)]
+        seen = look(belief, celsius, warmth, contact_ohm, (m0, m1, m2, m3, m4, m5, m6))
+    return told(belief, seen, ohm, noise)
 
 
 def told(belief: Belief, seen: Look, ohm: float, noise_variance: float) -> Belief:

@@ -19,7 +19,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field, replace
 from math import isfinite, sqrt
 
-from windctl.forecast.belief import Belief, Walk, first_belief, look, moved, told, walk_of
+from windctl.forecast.belief import Belief, Walk, first_belief, learnt, look, moved, walk_of
 from windctl.forecast.noise import Unrest, own_variance
 from windctl.forecast.reading import Reading
 from windctl.forecast.widen import opened
@@ -88,37 +88,34 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
     if seen.ohm > _ZERO_FROM_OHM and reading.ohm < _ZERO_PART * seen.ohm:
         return replace(estimate, gated=estimate.gated + 1, zero_run=estimate.zero_run + 1, open_run=0), False
     stated = own_variance(prior, reading, seen.ohm)
-    noise = stated * estimate.unrest.factor(not reading.resting)
+    unrest = estimate.unrest
     surprise = reading.ohm - seen.ohm
-    if abs(surprise) <= GATE * sqrt(seen.variance + noise):
-        unrest = estimate.unrest.heard(surprise, seen.variance + stated)
-        unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * noise
-        trust = 1 if unsure else estimate.trust + 1
-        anchor = estimate.belief if unsure else estimate.anchor
-        taken = told(belief, seen, reading.ohm, noise)
-        return _with(
-            estimate, unrest, taken, anchor=anchor if trust < _TRUSTED else None, trust=trust, used=1
-        ), True
-    return _kept_out(estimate, reading, seen.ohm)
+    if abs(surprise) > GATE * sqrt(seen.variance + stated * unrest.spread_factor()):
+        return _kept_out(estimate, reading, seen.ohm)
+    noise = stated * unrest.weight_factor(not reading.resting)
+    unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * stated
+    trust = 1 if unsure else estimate.trust + 1
+    anchor = estimate.belief if unsure else estimate.anchor
+    return _with(
+        estimate,
+        unrest.heard(surprise, seen.variance + stated),
+        learnt(belief, seen, reading.ohm, noise, reading.celsius, reading.warmth, prior.contact_length_ohm),
+        anchor=anchor if trust < _TRUSTED else None,
+        trust=trust,
+        used=1,
+    ), True
 
 
 def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tuple[Estimate, bool]:
     """A reading outside the gate: it feeds the rival, which takes over once enough readings agree with it."""
     rival, agreeing = None, 1
     if estimate.rival is not None:
-        rival = _agreeing(estimate, estimate.rival, reading)
-        agreeing = estimate.rival_trust + 1
+        rival = _taken(estimate, estimate.rival, reading, gated=True)
+        agreeing += estimate.rival_trust
     if rival is None:
-        agreeing = 1
-        if estimate.anchor is not None:
-            start = estimate.anchor
-        elif estimate.trust == 0:
-            start = estimate.belief
-        else:
-            start = opened(estimate.belief, estimate.prior)
-        rival = _forced(estimate, start, reading)
+        rival, agreeing = _taken(estimate, _rivals_start(estimate), reading, gated=False), 1
     trusted = estimate.trust >= _TRUSTED
-    if agreeing < (_UNSEATS_TRUSTED if trusted else _TRUSTED):
+    if rival is None or agreeing < (_UNSEATS_TRUSTED if trusted else _TRUSTED):
         return _with(
             estimate,
             estimate.unrest,
@@ -132,22 +129,24 @@ def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tupl
     return replace(_with(estimate, estimate.unrest, rival, trust=agreeing, used=1), jump=jump), True
 
 
-def _agreeing(estimate: Estimate, rival: Belief, reading: Reading) -> Belief | None:
-    """The rival after a reading inside its own gate, or None."""
-    belief = moved(rival, reading.turn, estimate.walk)
-    seen = look(belief, reading.celsius, reading.warmth, estimate.prior.contact_length_ohm)
-    noise = own_variance(estimate.prior, reading, seen.ohm) * estimate.unrest.factor(not reading.resting)
-    if abs(reading.ohm - seen.ohm) > GATE * sqrt(seen.variance + noise):
-        return None
-    return told(belief, seen, reading.ohm, noise)
+def _rivals_start(estimate: Estimate) -> Belief:
+    """The belief that a reading kept out is to be believed from."""
+    if estimate.anchor is not None:
+        return estimate.anchor
+    return estimate.belief if estimate.trust == 0 else opened(estimate.belief, estimate.prior)
 
 
-def _forced(estimate: Estimate, start: Belief, reading: Reading) -> Belief:
-    """A belief that takes a reading at its word, however far off it is."""
+def _taken(estimate: Estimate, start: Belief, reading: Reading, *, gated: bool) -> Belief | None:
+    """A rival after a reading: None where it is `gated` and does not agree; else taken at its word."""
+    prior, turning = estimate.prior, not reading.resting
     belief = moved(start, reading.turn, estimate.walk)
-    seen = look(belief, reading.celsius, reading.warmth, estimate.prior.contact_length_ohm)
-    noise = own_variance(estimate.prior, reading, seen.ohm) * estimate.unrest.factor(not reading.resting)
-    return told(belief, seen, reading.ohm, noise)
+    seen = look(belief, reading.celsius, reading.warmth, prior.contact_length_ohm)
+    stated = own_variance(prior, reading, seen.ohm)
+    spread = seen.variance + stated * estimate.unrest.spread_factor()
+    if gated and abs(reading.ohm - seen.ohm) > GATE * sqrt(spread):
+        return None
+    noise = stated * estimate.unrest.weight_factor(turning)
+    return learnt(belief, seen, reading.ohm, noise, reading.celsius, reading.warmth, prior.contact_length_ohm)
 
 
 def _with(

@@ -18,9 +18,9 @@ TURNING_NOISE = 2.0  # over a resting reading's: hum and the turning coil's own 
 SMALLEST_SD_OHM = 1e-6
 _AS_STATED = 20.0  # readings that the profile's figure is worth
 _WINDOW = 40.0  # readings after which older ones fade
-_LOUD_FROM = 1.5  # three sd above 1 of the running mean of squares of white noise
+_QUIET_BELOW, _LOUD_FROM = 0.5, 1.5  # three sd around 1 of the running mean of squares of white noise
 _ALIKE_FROM = 0.25  # nearly three sd above 0 of the running sign figure of white noise
-_ALIKE_MOST = 0.8
+_ALIKE_MOST = 0.7  # rho 0.89: a factor of 17
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,13 +32,21 @@ class Unrest:
     last_sign: float = 0.0
     readings: float = 0.0  # counted up to the window
 
-    def factor(self, turning: bool) -> float:
-        """By how much the variance of a reading's noise is to be multiplied, 1 or more."""
-        loud = self.loud if self.loud > _LOUD_FROM else 1.0
+    def spread_factor(self) -> float:
+        """By how much the variance of one reading's noise is to be multiplied, 1 or more."""
+        return self.loud if self.loud > _LOUD_FROM else 1.0
+
+    def weight_factor(self, turning: bool) -> float:
+        """The same for what a reading teaches: turning ones that share their noise with the next teach less.
+
+        (1 + rho)/(1 - rho) is the variance of a mean of many such readings over that of as many
+        independent ones. Readings much quieter than stated may share a good deal before that matters.
+        """
         if not turning or self.alike <= _ALIKE_FROM:
-            return loud
+            return self.spread_factor()
         rho = sin(0.5 * pi * min(self.alike, _ALIKE_MOST))  # of a Gaussian pair, from how often signs agree
-        return loud * (1.0 + rho) / (1.0 - rho)
+        loud = 1.0 if _QUIET_BELOW < self.loud < _LOUD_FROM else self.loud
+        return max(loud * (1.0 + rho) / (1.0 - rho), 1.0)
 
     def heard(self, surprise: float, variance: float) -> Unrest:
         """The figures after one more reading let in, `surprise` ohm off where `variance` was stated."""
