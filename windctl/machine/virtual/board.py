@@ -10,30 +10,26 @@ from __future__ import annotations
 
 from typing import Final
 
-from windctl.machine.virtual import board_reports
+from windctl.machine.virtual import board_reports, board_watch
 from windctl.machine.virtual.board_dialogue import Dialogue
 from windctl.machine.virtual.board_rules import (
     CHECK_EVERY,
     NO_STOP_POINT,
-    PEDAL_DEBOUNCE,
     SILENCE,
     STATUS_EVERY,
     STILL,
     still_ticks,
 )
+from windctl.machine.virtual.board_spindle import BRAKE, REST, RUN, SETTLE, Spindle
 from windctl.machine.virtual.contact_mean import ContactMean
 from windctl.machine.virtual.guide_line import GuideLine
 from windctl.machine.virtual.signals import (
     ALL_OK,
-    GUARD_OK,
     GUIDE_HIGH_OK,
     GUIDE_LOW_OK,
-    PEDAL_DOWN,
-    STOP_OK,
     Inputs,
     Outputs,
 )
-from windctl.machine.virtual.board_spindle import BRAKE, REST, RUN, SETTLE, Spindle
 from windctl.machine.virtual.turns import Turns
 from windctl.protocol.messages import (
     TRIPS,
@@ -75,22 +71,17 @@ class Board:
 
     __slots__ = (
         "_boot_told",
-        "_check_at",
         "_hand_stop_told",
         "_off_at",
-        "_over_counts",
-        "_pedal_at",
-        "_seen_count",
         "_settled_cause",
-        "_slip_limit",
         "_status_at",
         "_status_due",
         "_still_at",
-        "_went_back",
         "away",
         "boot",
         "capabilities",
         "cause",
+        "check_at",
         "contact_scale",
         "count",
         "counts_per_turn",
@@ -103,14 +94,18 @@ class Board:
         "guide_target",
         "line",
         "mean",
+        "over_counts",
+        "pedal_at",
         "pedal_fresh",
         "pins",
         "powered",
         "queue",
         "rotation",
+        "seen_count",
         "setup",
         "setup_crc",
         "silent_at",
+        "slip_limit",
         "speed",
         "spindle",
         "standing",
@@ -122,6 +117,7 @@ class Board:
         "trip",
         "trust",
         "turns",
+        "went_back",
     )
 
     def __init__(
@@ -155,7 +151,7 @@ class Board:
         self.dialogue = Dialogue()
         self._boot_told = False
         self._status_at = STATUS_EVERY
-        self._check_at = CHECK_EVERY
+        self.check_at = CHECK_EVERY
         self._status_due = True
         self.silent_at = 0  # tick
         # the coil's limits
@@ -165,21 +161,21 @@ class Board:
         self.rotation = 0  # u8
         self.counts_per_turn = 1  # u16
         self.stop_point = NO_STOP_POINT  # u32
-        self._slip_limit = 0  # u32, in 1/steps_per_turn count
-        self._over_counts = 0  # u32, counts in 64 ticks that are too fast
+        self.slip_limit = 0  # u32, in 1/steps_per_turn count
+        self.over_counts = 0  # u32, counts in 64 ticks that are too fast
         # the spindle
         self.spindle = Spindle()
         self.powered = False
         self._off_at = 0  # tick at which a tripped board's drives go off
         self.count = 0  # i32
-        self._seen_count = 0  # i32, at the last check
+        self.seen_count = 0  # i32, at the last check
         self.speed = 0  # u16, counts/s over the last 64 ticks
         self.standing = True
         self.still_ticks = STILL  # u16
         self._still_at = 0  # tick
         self._settled_cause: int = Cause.NONE
         self._hand_stop_told = False
-        self._went_back = 0  # u32, counts below the furthest since Go
+        self.went_back = 0  # u32, counts below the furthest since Go
         self.turns = Turns()
         # the guide
         self.line = GuideLine(self.queue)
@@ -190,7 +186,7 @@ class Board:
         self.guide_ramp = 0  # u16, thousandths of a step owed
         # inputs of people
         self.pedal_fresh = False  # pressed since the last stop, and not let go
-        self._pedal_at = 0  # tick at which a press counts
+        self.pedal_at = 0  # tick at which a press counts
         self.mean = ContactMean()
 
     # ------------------------------------------------------------ the tick
@@ -204,12 +200,12 @@ class Board:
         count = self.count
         if counted:
             self.count = count = count + counted
-            if counted < 0 or count >= turns.end or self._went_back or spindle.mode != RUN:
-                self._counted(counted)
+            if counted < 0 or count >= turns.end or self.went_back or spindle.mode != RUN:
+                board_watch.counted(self, counted)
         if inputs.pins != self.pins:
-            self._pins_changed(inputs.pins)
+            board_watch.pins_changed(self, inputs.pins)
         if inputs.index:
-            self._index_seen(counted)
+            board_watch.index_seen(self, counted)
         if inputs.received:
             self.dialogue.hear(self, inputs.received)
             count = self.count
@@ -225,8 +221,8 @@ class Board:
             spindle.step(inputs.steps_issued, count)
             if spindle.mode == REST:
                 self._rests()
-            if ticks == self._pedal_at:
-                self._pedal_pressed()
+            if ticks == self.pedal_at:
+                board_watch.pedal_pressed(self)
             if counted and self.fitted & FITTED_GUIDE:
                 if self.trip == Trip.GUIDE_LIMIT:
                     self.line.wait(counted)
@@ -237,10 +233,10 @@ class Board:
         if guide_steps:
             guide_steps = self._guide_moved(guide_steps)
         turns.tension_sum += inputs.tension
-        if ticks == self._check_at:
-            self._check()
+        if ticks == self.check_at:
+            board_watch.check(self)
         if ticks == self.silent_at:
-            self._silence()
+            board_watch.silence(self)
         if self._status_due or ticks == self._status_at:
             self._tell_status(inputs.celsius_centi)
         if self.mean.active and self.mean.sample(inputs.contact, ticks, count, not self.standing):
@@ -281,9 +277,9 @@ class Board:
         self.mean.counts_per_turn = setup.counts_per_turn
         driven = bool(setup.fitted & FITTED_DRIVE)
         self.still_ticks = still_ticks(driven, setup.counts_per_turn)
-        self._slip_limit = setup.slip_counts * setup.steps_per_turn
+        self.slip_limit = setup.slip_counts * setup.steps_per_turn
         # 64 ticks at 5/4 of max_pace: max_pace * counts_per_turn * (64 * 5 / 4) / (1000 * steps_per_turn)
-        self._over_counts = setup.max_pace * setup.counts_per_turn * 80 // (1000 * setup.steps_per_turn)
+        self.over_counts = setup.max_pace * setup.counts_per_turn * 80 // (1000 * setup.steps_per_turn)
         self.spindle.configure(setup.counts_per_turn, setup.steps_per_turn, setup.accel, setup.decel)
         self.stop_point = NO_STOP_POINT
         self.trust = 0
@@ -297,7 +293,7 @@ class Board:
         moved = count - self.count
         self.count = count
         self.turns.move(moved)
-        self._seen_count += moved
+        self.seen_count += moved
         self.guide = guide
         self.away = 0
         self.line.datum(program, count, first, into)
@@ -309,13 +305,13 @@ class Board:
         self.state = TURNING
         self.cause = Cause.NONE
         self._status_due = True
-        self._moves()
+        self.moves()
         self.silent_at = (self.ticks + SILENCE) & M32
         self.pedal_fresh = False
         self._hand_stop_told = False
-        self._went_back = 0
+        self.went_back = 0
         self.turns.start(self.ticks, self.count)
-        self._seen_count = self.count
+        self.seen_count = self.count
         if self.fitted & FITTED_DRIVE:
             self.spindle.set_out(self.count, self.target())
 
@@ -325,7 +321,7 @@ class Board:
         self.guide_pace = pace
         self.guide_ramp = 0
         self.silent_at = (self.ticks + SILENCE) & M32
-        self._moves()
+        self.moves()
 
     def hold(self, cause: int) -> None:
         """Stop under control and stay powered; also ends a GuideTo. Raises the epoch in every state."""
@@ -349,7 +345,7 @@ class Board:
         self.epoch = (self.epoch + 1) & 0xFFFF
         self._status_due = True
 
-    def _trip(self, trip: int) -> None:
+    def stop_for(self, trip: int) -> None:
         rule = TRIPS[trip]
         if self.state == TRIPPED and (rule.category != 0 or TRIPS[self.trip].category == 0):
             return  # already stopping; only removed power overrides that
@@ -383,10 +379,10 @@ class Board:
 
     def _rests(self) -> None:
         """No more steps are issued; the spindle stands when counts have stayed away for a while."""
-        self._moves()
+        self.moves()
         self._off_at = (self.ticks + STILL) & M32
 
-    def _moves(self) -> None:
+    def moves(self) -> None:
         self.standing = False
         self._still_at = (self.ticks + self.still_ticks) & M32
 
@@ -416,7 +412,7 @@ class Board:
                 steps = self._guide_to()
             elif self.line.lagging and self.trip != Trip.GUIDE_LIMIT:
                 steps = self.line.catch_up()
-                self._moves()
+                self.moves()
         elif counted and self.fitted & FITTED_GUIDE:
             self.line.wait(counted)
         if not self.standing and ticks == self._still_at:
@@ -424,8 +420,8 @@ class Board:
         if self.state == TRIPPED and self.powered and ticks == self._off_at:
             self.powered = False
             self._status_due = True
-        if ticks == self._pedal_at:
-            self._pedal_pressed()
+        if ticks == self.pedal_at:
+            board_watch.pedal_pressed(self)
         by_hand = self.state == TURNING and not self.fitted & FITTED_DRIVE
         if by_hand and not self._hand_stop_told and self.count >= self.target():
             self._hand_stop_told = True
@@ -459,7 +455,7 @@ class Board:
         self.away += steps
         if self.guide + steps == self.guide_target:
             self.guide_pace = 0
-        self._moves()
+        self.moves()
         return steps
 
     def _guide_moved(self, steps: int) -> int:
@@ -469,7 +465,7 @@ class Board:
         guide = self.guide + steps
         if (steps > 0 and guide > setup.guide_max) or (steps < 0 and guide < setup.guide_min):
             self.away -= steps
-            self._trip(Trip.GUIDE_LIMIT)
+            self.stop_for(Trip.GUIDE_LIMIT)
             return 0
         self.guide = guide
         return steps
@@ -477,97 +473,6 @@ class Board:
     def beat(self) -> None:
         """The host is alive."""
         self.silent_at = (self.ticks + SILENCE) & M32
-
-    def _silence(self) -> None:
-        """Two seconds without a Beat: whatever moves stops, and the host must greet anew."""
-        if self.state == TURNING or self.guide_pace:
-            self.hold(Cause.SILENCE)
-            self.state = HELD
-            self.cause = Cause.SILENCE
-            self.dialogue.greeted = False
-
-    # ------------------------------------------------------------ what the inputs tell
-
-    def _counted(self, counted: int) -> None:
-        """Counts that are not just one more bit of a forward turn."""
-        if counted < 0:
-            if self.state == TURNING:
-                self._went_back -= counted
-                setup = self.setup
-                assert setup is not None
-                if self._went_back > setup.reverse_counts:
-                    self._trip(Trip.REVERSE)
-            self.turns.back(self.count)
-        else:
-            if self._went_back:
-                self._went_back = self._went_back - counted if self._went_back > counted else 0
-            if self.count >= self.turns.end:
-                self._turn_passed()
-        if self.spindle.mode != RUN:
-            self._moves()
-
-    def _turn_passed(self) -> None:
-        turns = self.turns
-        whole = turns.passed(self.ticks, self.count)
-        setup = self.setup
-        if whole and self.state == TURNING and self.fitted & FITTED_TENSION and setup is not None:
-            if turns.tension < setup.tension_low:
-                self._trip(Trip.TENSION_LOW)
-            elif turns.tension > setup.tension_high:
-                self._trip(Trip.TENSION_HIGH)
-
-    def _index_seen(self, counted: int) -> None:
-        off = self.turns.index(self.count, counted)
-        setup = self.setup
-        if self.state == TURNING and self.fitted & FITTED_INDEX and setup is not None:
-            if off > setup.slip_counts + abs(counted):
-                self._trip(Trip.INDEX)
-
-    def _pins_changed(self, pins: int) -> None:
-        changed = pins ^ self.pins
-        self.pins = pins
-        if self.powered:
-            if not pins & STOP_OK:
-                self._trip(Trip.STOP_INPUT)
-            elif not pins & GUARD_OK:
-                self._trip(Trip.GUARD)
-            elif self.fitted & FITTED_GUIDE and pins & GUIDE_OK != GUIDE_OK:
-                self._trip(Trip.GUIDE_LIMIT)
-        if changed & PEDAL_DOWN and self.fitted & FITTED_PEDAL:
-            self.pedal_fresh = False
-            if pins & PEDAL_DOWN:
-                self._pedal_at = (self.ticks + PEDAL_DEBOUNCE) & M32
-            elif self.state == TURNING:
-                self.hold(Cause.PEDAL)
-
-    def _pedal_pressed(self) -> None:
-        if self.pins & PEDAL_DOWN and self.fitted & FITTED_PEDAL and self.state in (READY, HELD):
-            self.pedal_fresh = True
-            self.notice(NoticeKind.PEDAL_ASKS, 0, 0)
-
-    def _check(self) -> None:
-        """Every 64 ticks: measured speed, slip, a missing index, and whether this is a state at all."""
-        self._check_at = (self._check_at + CHECK_EVERY) & M32
-        counts = self.count - self._seen_count
-        self._seen_count = self.count
-        speed = counts * 125 // 8 if counts > 0 else 0
-        self.speed = speed if speed < 0xFFFF else 0xFFFF
-        if not DRIVES_OFF <= self.state <= TRIPPED:
-            self._trip(Trip.INTERNAL)
-        setup = self.setup
-        if setup is None:
-            return
-        spindle = self.spindle
-        if spindle.mode != REST:
-            if abs(spindle.check(self.count)) > self._slip_limit:
-                self._trip(Trip.SLIP)
-            if counts > self._over_counts + 1:
-                self._trip(Trip.OVERSPEED)
-            self.aim()
-        if self.state == TURNING and self.fitted & FITTED_INDEX:
-            longest = self.counts_per_turn + self.counts_per_turn // 2 + setup.slip_counts
-            if self.turns.since_index(self.count) > longest:
-                self._trip(Trip.INDEX)
 
     # ------------------------------------------------------------ messages
 
