@@ -94,7 +94,7 @@ def restored(data: Mapping[str, Any]) -> Restored:
         target = data["target"]
         named = {"number": data["coil"], "target_kind": target["kind"], "target_value": target["value"]}
         plain = {field.name: data[field.name] for field in fields(CoilHead) if field.name not in _RENAMED}
-        head = CoilHead(**named, **plain)
+        head = CoilHead(**_floats(CoilHead, {**named, **plain}))
         rows = tuple(
             StoredRow(
                 row["seq"],
@@ -103,13 +103,22 @@ def restored(data: Mapping[str, Any]) -> Restored:
             )
             for row in data["entries"]
         )
-        curve = tuple(CurvePoint(**point) for point in data["curve"])
+        curve = tuple(CurvePoint(**_floats(CurvePoint, point)) for point in data["curve"])
     except (KeyError, TypeError, ValueError) as error:
         raise RecordBroken(f"this export is not whole: {type(error).__name__} {error}") from error
     faults = check_record(head, rows, list(enumerate(curve)))
     if faults:
         raise RecordBroken(f"the export of coil {head.number} was altered: {faults[0].what}")
     return Restored(head, rows, curve)
+
+
+def _floats(kind: type[CoilHead | CurvePoint], values: Mapping[str, Any]) -> dict[str, Any]:
+    """The values, with floats where they belong: JSON has one kind of number, 30.0 may come back as 30."""
+    reals = {field.name for field in fields(kind) if str(field.type).startswith("float")}
+    return {
+        name: float(value) if name in reals and isinstance(value, int) else value
+        for name, value in values.items()
+    }
 
 
 def _curve(store: Store, head: CoilHead) -> list[CurvePoint]:
