@@ -28,6 +28,11 @@ _PARTS: dict[str, type[Any]] = {
     "refused": Refused,
 }
 
+_FIELDS: dict[type[Any], tuple[str, ...]] = {
+    kind: tuple(field.name for field in dataclasses.fields(kind))
+    for kind in (*KINDS.values(), *_PARTS.values())
+}
+
 
 def dumps(value: object) -> bytes:
     """Canonical JSON of plain values.
@@ -39,9 +44,21 @@ def dumps(value: object) -> bytes:
     ).encode()
 
 
+def plain(fact: object) -> dict[str, Any]:
+    """The fields of an event or of a part of one as plain values: `dataclasses.asdict`, several times faster.
+
+    A coil has ten thousand facts, and its end and its verification write all of them anew.
+    """
+    return {
+        name: plain(value) if type(value) in _FIELDS else value
+        for name in _FIELDS[type(fact)]
+        for value in (getattr(fact, name),)
+    }
+
+
 def encode(event: Event) -> bytes:
     """The canonical bytes of an event, without its kind."""
-    return dumps(dataclasses.asdict(event))
+    return dumps(plain(event))
 
 
 def decode(kind: str, payload: bytes) -> Event:

@@ -5,11 +5,10 @@ Two runs of the same recipe, profile and simulated fate give the same trace, how
 
 from __future__ import annotations
 
-import dataclasses
 import hashlib
 from collections.abc import Iterable
 
-from windctl.record.canonical import dumps
+from windctl.record.canonical import dumps, plain
 from windctl.record.events import Event
 
 # Who and when, not what: these differ between two runs of the same coil.
@@ -20,7 +19,7 @@ def trace_digest(events: Iterable[Event]) -> str:
     """SHA-256, hex, over the canonical forms of the events in order, without the fields of `LEFT_OUT`."""
     digest = hashlib.sha256(b"windctl trace 1\0")
     for event in events:
-        fields = {key: value for key, value in dataclasses.asdict(event).items() if key not in LEFT_OUT}
+        fields = {key: value for key, value in plain(event).items() if key not in LEFT_OUT}
         if "setup" in fields:
             fields["setup"] = {k: v for k, v in fields["setup"].items() if k != "coil_token"}
         if "identity" in fields:
