@@ -39,7 +39,7 @@ class Bobbin(Form):
     ]
     core_perimeter_mm: Annotated[
         float | None,
-        quantity("mm", "measured length round the core; beats the computed one", gt=0, le=4 * LONGEST_MM),
+        quantity("mm", "measured length round the core; beats the computed one", gt=0, le=100_000),
     ] = None
     flange_gap_mm: Annotated[float, quantity("mm", "free height between the flanges", gt=0, le=LONGEST_MM)]
     flange_depth_mm: Annotated[
