@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, Literal
 
+from windctl.lay.limits import Checked
 from windctl.lay.program import Program
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
@@ -44,6 +45,7 @@ class Plan:
     wire_speed_mean_m_s: float  # at cruise, on the bare core
     wire_speed_peak_m_s: float
     wire_speed_peak_full_m_s: float  # at cruise, on the finished coil's outline
+    checked: Checked  # what the program asks of the machine
     warnings: tuple[str, ...]
     prior: Prior
     pace: PaceSpec
@@ -82,5 +84,6 @@ class Plan:
                 "digest": self.program.digest,
                 "turns": self.program.turns,
             },
+            "guide_mm_per_s": self.checked.guide_mm_per_s,
             "warnings": list(self.warnings),
         }
