@@ -1,0 +1,48 @@
+"""Who stands at the virtual machine and does what takes a hand; never what a board or a host decides."""
+
+from __future__ import annotations
+
+from windctl.machine.virtual.board import Board
+from windctl.machine.virtual.plant import Plant
+from windctl.protocol.messages import State
+
+LOOKS_EVERY = 50  # ticks
+_REACTION_LOOKS = 6  # 300 ms until a person has let go of their own motor
+_SLOW_FROM_TURNS = 30.0  # a person slows down when the counter comes near the stop point
+_SLOW_RPM = 60.0
+
+
+class Attendant:
+    """Puts on an empty bobbin for a new coil, puts right what tripped, turns what no board drives."""
+
+    __slots__ = ("_board", "_looks_past_stop", "_plant", "_state")
+
+    def __init__(self, board: Board, plant: Plant) -> None:
+        self._board = board
+        self._plant = plant
+        self._state = int(board.state)
+        self._looks_past_stop = 0
+
+    def see(self, state: int) -> None:
+        """The board has come to another state."""
+        before, self._state = self._state, state
+        plant = self._plant
+        if state == State.READY and self._board.count == 0 and plant.truth().true_turns >= 1.0:
+            plant.new_bobbin(self._board.guide)
+        if before == State.TRIPPED and state == State.DRIVES_OFF:
+            plant.put_right()
+
+    def turn_by_motor(self) -> None:
+        """Every LOOKS_EVERY ticks where no board drives the spindle: a person's own motor, by eye."""
+        board, plant = self._board, self._plant
+        left = 0.0
+        if board.state == State.TURNING:
+            left = (board.target() - board.count) / plant.spec.counts_per_turn
+        if left > 0.0:
+            self._looks_past_stop = 0
+            cruise = plant.spec.cruise_rpm
+            plant.own_motor(cruise if left > _SLOW_FROM_TURNS else min(_SLOW_RPM, cruise))
+        elif self._looks_past_stop < _REACTION_LOOKS:
+            self._looks_past_stop += 1
+        else:
+            plant.own_motor(0.0)
