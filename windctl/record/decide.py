@@ -300,13 +300,14 @@ def _wants(state: State) -> Wants:
     program = unpacked(started.program_packed)
     given = _given(state)
     drives_off = status is not None and status.state == BoardState.DRIVES_OFF
-    setting_up = state.fit in (Fit.FRESH, Fit.CORRECTED) and not state.consented_since_greeting
+    to_declare = state.fit in (Fit.FRESH, Fit.CORRECTED)  # until it turns, the board is told where the coil stands
+    setting_up = to_declare and not state.consented_since_greeting
     to_go = given if state.stop_point is not None and state.stop_point > state.count else None
     return Wants(
         beat=True,
         setup=started.setup,
         disarmed=setting_up and not drives_off and state.identity.setup_crc != setup_crc(started),
-        datum=_datum(state, program) if setting_up and drives_off else None,
+        datum=_datum(state, program) if to_declare and drives_off else None,
         program=Segments(started.program_id, program),
         armed=given if drives_off else None,
         pace=pace_for(started.pace, state.count, state.stop_point),
