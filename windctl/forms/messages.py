@@ -42,7 +42,9 @@ def fault_of(error: ErrorDetails, model: type[Form]) -> Fault:
         if path == ("format",):
             words = "must be"  # only one version exists
         return Fault(path, f"is {value}, {words} {_show(limit, unit)}")
-    return Fault(path, _wrong_type(kind, value, error["input"], unit) or _wrong_text(kind, value, error))
+    text = _wrong_type(kind, value, error["input"], unit)
+    meaning = field.description if field is not None and field.description else "its form"
+    return Fault(path, text or _wrong_text(kind, value, error, meaning))
 
 
 def _wrong_type(kind: str, value: str, given: object, unit: str) -> str | None:
@@ -61,7 +63,7 @@ def _wrong_type(kind: str, value: str, given: object, unit: str) -> str | None:
     return f"is {value}, where {needed} is needed" + ("; write it without quotes" if unquote else "")
 
 
-def _wrong_text(kind: str, value: str, error: ErrorDetails) -> str:
+def _wrong_text(kind: str, value: str, error: ErrorDetails, meaning: str) -> str:
     context = error.get("ctx", {})
     if kind == "literal_error":
         choices = re.findall(r"'([^']*)'", str(context["expected"]))
@@ -73,7 +75,7 @@ def _wrong_text(kind: str, value: str, error: ErrorDetails) -> str:
     if kind == "string_too_long":
         return f"has {len(str(error['input']))} characters, at most {context['max_length']} are allowed"
     if kind == "string_pattern_mismatch":
-        return f"is {value}, which does not have the form {context['pattern']}"
+        return f"is {value}, which does not fit: {meaning}"
     if kind in ("text_empty", "text_control"):
         return error["msg"]
     return f"is {value}: {error['msg']}"
