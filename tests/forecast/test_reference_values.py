@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from tests.forecast.priors import certain, worked
-from windctl.forecast.belief import GROWTH, LEADS, OHM, PER_TURN
+from windctl.forecast.belief import GROWTH, LEADS, PER_TURN, SHOWN
 from windctl.forecast.estimator import Estimate, begin, update
 from windctl.forecast.finish import finish_at
 from windctl.forecast.reading import Reading
@@ -72,7 +72,9 @@ def taught(
 def at_origin(estimate: Estimate) -> tuple[float, float, float]:
     """Leads, ohm per turn and growth/2, taken back from the last turn to turn 0."""
     mean, n = estimate.belief.mean, estimate.turn
-    assert mean[OHM] == pytest.approx(mean[PER_TURN] * n - mean[GROWTH] * n * n / 2)  # nothing was wound at 0
+    assert mean[SHOWN] == pytest.approx(
+        mean[PER_TURN] * n - mean[GROWTH] * n * n / 2
+    )  # nothing was wound at 0
     return mean[LEADS], mean[PER_TURN] - mean[GROWTH] * n, mean[GROWTH] / 2
 
 
@@ -89,7 +91,7 @@ def test_nist_pontius() -> None:
 
 
 def test_gum_h3() -> None:
-    """JCGM 100 (GUM), example H.3: a thermometer's correction as a line, and what it gives at 30 degrees C."""
+    """JCGM 100 (GUM), example H.3: a thermometer's correction as a line, and its value at 30 degrees C."""
     t = "21.521 22.012 22.512 23.003 23.507 23.999 24.513 25.002 25.503 26.010 26.511"
     b = "-.171 -.169 -.166 -.159 -.164 -.165 -.156 -.157 -.159 -.161 -.160"
     x = np.array([float(v) for v in t.split()]) - 20.0
@@ -106,7 +108,7 @@ def test_gum_h3() -> None:
     )
     ahead = 10.0 - n
     prediction = (
-        estimate.belief.mean[LEADS] + estimate.belief.mean[OHM] + estimate.belief.mean[PER_TURN] * ahead
+        estimate.belief.mean[LEADS] + estimate.belief.mean[SHOWN] + estimate.belief.mean[PER_TURN] * ahead
     )
     spread = np.array([1.0, ahead, 0, 1.0, 0, 0, 0])
     assert prediction == pytest.approx(-0.149377, abs=1e-6)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import exp, log, sqrt
 
-from windctl.forecast.belief import OHM, moved
+from windctl.forecast.belief import SHOWN, moved
 from windctl.forecast.estimator import Estimate
 
 _RUN = 5  # open circuits, or readings near zero, in a row: a bouncing contact rarely shows two
@@ -83,9 +83,11 @@ def _wire(estimate: Estimate) -> Alarm | None:
         return None
     belief = estimate.belief
     expected = moved(estimate.reference, belief.turn, estimate.walk)
-    grown = expected.mean[OHM] - estimate.reference.mean[OHM]
-    variance = expected.cov[OHM][OHM] - belief.cov[OHM][OHM]  # of the move from the one mean to the other
-    off = belief.mean[OHM] - expected.mean[OHM]
+    grown = expected.mean[SHOWN] - estimate.reference.mean[SHOWN]
+    variance = (
+        expected.cov[SHOWN][SHOWN] - belief.cov[SHOWN][SHOWN]
+    )  # of the move from the one mean to the other
+    off = belief.mean[SHOWN] - expected.mean[SHOWN]
     if grown <= 0.0 or variance <= 0.0 or abs(off) <= _BEYOND * sqrt(variance):
         return None
     ratio, sd = 1.0 + off / grown, sqrt(variance) / grown

@@ -2,48 +2,54 @@
 
 The state, seven numbers:
 
-    0  resistance so far at 20 degrees C        ohm
-    1  ohm per turn, of the turn being laid     ohm
-    2  growth of that per turn                  ohm per turn
+    0  resistance so far, as shown              ohm
+    1  ohm per turn, of the turn being laid     ohm, as shown
+    2  growth of that per turn                  ohm per turn, as shown
     3  leads and contact                        ohm
     4  meter gain error                         relative
     5  thermometer bias                         K, reads too high
     6  coil over air                            K
 
+"As shown" means: as this meter would show it with this thermometer at 20 degrees C beside this warm coil. It
+is the true value at 20 degrees C times
+
+    error = (1 + gain) * (1 + ALPHA * (over - bias))
+
+A reading then is linear in the state: shown * (1 + ALPHA * (celsius - 20)) + leads + wire to the contact.
+The errors 4 to 6 are in the start of the first three states and in the answer, `resistance`, and nowhere
+between: however many readings are taken, and however sharp they are, what they have in common never
+averages away. With the true resistance as the state, sharp readings would bend the belief round a curve
+(gain times resistance) that no Gaussian can follow.
+
 Between turns the first three follow R += r*n + g*n*n/2, r += g*n exactly, while g walks (packing drifts), r
-walks (wire drifts along the spool) and the coil's warmth walks. A reading shows
-
-    y = (1 + gain) * (R * (1 + ALPHA * (celsius - bias + warmth*over - 20)) + leads + wire to the contact)
-
-linearised at the mean: gain and temperature multiply R, all else is linear. The errors 3 to 6 are states,
-so however many readings are taken, what they have in common never averages away.
+walks (wire drifts along the spool) and the coil's warmth walks, which scales all three.
 
 The update is the Joseph form of a scalar measurement, written so that both halves of the covariance come
-out with the same bits (Bierman, Factorization Methods for Discrete Sequential Estimation, 1977, chapter 2,
-from memory).
+out with the same bits (Bierman, Factorization Methods for Discrete Sequential Estimation, 1977, from
+memory).
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import sqrt
+from math import isfinite, sqrt
 from typing import TypeAlias, cast
 
+from windctl.forecast.reading import Reading
 from windctl.material.copper import ALPHA_20C
 from windctl.plan.prior import Prior
 
 Vector: TypeAlias = tuple[float, float, float, float, float, float, float]
 Matrix: TypeAlias = tuple[Vector, Vector, Vector, Vector, Vector, Vector, Vector]
 
-OHM, PER_TURN, GROWTH, LEADS, GAIN, THERMOMETER, OVER_AIR = range(7)
-_MOST_RELOOKS = 3
-_FAR_MOVE = 9.0  # square of the own sds that a reading may move the resistance without a second look
+SHOWN, PER_TURN, GROWTH, LEADS, GAIN, THERMOMETER, OVER_AIR = range(7)
 WARMTH_WALK_SHARE = 0.5  # part of the variance of coil over air that comes and goes within one coil
+SHARPEST_REL = 2e-5  # what the temperature's small products leave out; no reading counts as sharper
 
 
 @dataclass(frozen=True, slots=True)
 class Belief:
-    """Mean and covariance (symmetric, to the bit) of the seven states after `turn` turns."""
+    """Mean and covariance (symmetric to the bit) of the seven states after `turn` turns."""
 
     turn: float
     mean: Vector
@@ -61,8 +67,7 @@ class Walk:
 
 @dataclass(frozen=True, slots=True)
 class Look:
-    """What a belief expects of one reading: `ohm`, its variance before the reading's own noise, and how every
-    state goes along with it."""
+    """What a belief expects of one reading: `ohm`, and its variance before the reading's own noise."""
 
     ohm: float
     variance: float
@@ -72,31 +77,39 @@ class Look:
 def walk_of(prior: Prior) -> Walk:
     """The walks of a prior; each relative sd of the prior is what its walk gathers over the planned turns."""
     turns = max(prior.turns, 1.0)
+    warm = 1.0 + ALPHA_20C * prior.coil_over_air_k  # as shown
     return Walk(
-        growth=(prior.growth_walk_rel * prior.growth) ** 2 / turns,
-        per_turn=(prior.wire_walk_rel * prior.ohm_per_turn) ** 2 / turns,
+        growth=(prior.growth_walk_rel * prior.growth * warm) ** 2 / turns,
+        per_turn=(prior.wire_walk_rel * prior.ohm_per_turn * warm) ** 2 / turns,
         over_air=WARMTH_WALK_SHARE * prior.coil_over_air_sd**2 / turns,
     )
 
 
 def first_belief(prior: Prior) -> Belief:
-    """The belief before the first turn: no resistance yet, everything else as the plan and the profile have
-    it."""
+    """The belief before the first turn: no resistance yet, all else as plan and profile have it."""
     turns = max(prior.turns, 1.0)
     slope = (prior.wire_slope_rel * prior.ohm_per_turn / turns) ** 2
+    gain, thermometer = prior.gain_sd**2, prior.celsius_sd**2
     over = (1.0 - WARMTH_WALK_SHARE) * prior.coil_over_air_sd**2
-    none = (0.0,) * 7
+    warm = 1.0 + ALPHA_20C * prior.coil_over_air_k
+    by_bias, by_over = -ALPHA_20C / warm * thermometer, ALPHA_20C / warm * over  # with the log of `error`
+    error = gain + ALPHA_20C / warm * (by_over - by_bias)  # its relative variance
+    r, g = prior.ohm_per_turn * warm, prior.growth * warm
+    square = warm * warm
+    rr = prior.var_ohm_per_turn * square + error * r * r
+    rg = prior.cov * square + error * r * g
+    gg = (prior.var_growth + slope) * square + error * g * g
     return Belief(
         turn=0.0,
-        mean=(0.0, prior.ohm_per_turn, prior.growth, prior.offset_ohm, 0.0, 0.0, prior.coil_over_air_k),
+        mean=(0.0, r, g, prior.offset_ohm, 0.0, 0.0, prior.coil_over_air_k),
         cov=(
             (0.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0),
-            (0.0, prior.var_ohm_per_turn, prior.cov, 0.0, 0.0, 0.0, 0.0),
-            (0.0, prior.cov, prior.var_growth + slope, 0.0, 0.0, 0.0, 0.0),
-            (*none[:3], prior.offset_sd**2, 0.0, 0.0, 0.0),
-            (*none[:4], prior.gain_sd**2, 0.0, 0.0),
-            (*none[:5], prior.celsius_sd**2, 0.0),
-            (*none[:6], over),
+            (0.0, rr, rg, 0.0, r * gain, r * by_bias, r * by_over),
+            (0.0, rg, gg, 0.0, g * gain, g * by_bias, g * by_over),
+            (0.0, 0.0, 0.0, prior.offset_sd**2, 0.0, 0.0, 0.0),
+            (0.0, r * gain, g * gain, 0.0, gain, 0.0, 0.0),
+            (0.0, r * by_bias, g * by_bias, 0.0, 0.0, thermometer, 0.0),
+            (0.0, r * by_over, g * by_over, 0.0, 0.0, 0.0, over),
         ),
     )
 
@@ -128,9 +141,20 @@ def moved(belief: Belief, turn: float, walk: Walk) -> Belief:
     p11 += r + g * h * (2.0 / 3.0)
     p12 = y2 + 0.5 * g * n
     p22 = c2 + g
+    m0, m1 = m0 + n * m1 + h * m2, m1 + n * m2
+
+    # what the coil's warmth does meanwhile scales all that is shown
+    w = walk.over_air * s
+    if w > 0.0:
+        u = ALPHA_20C / (1.0 + ALPHA_20C * (m6 - m5))
+        u0, u1, u2 = u * m0, u * m1, u * m2
+        v0, v1, v2 = u0 * w, u1 * w, u2 * w
+        p00, p01, p02 = p00 + u0 * v0, p01 + u0 * v1, p02 + u0 * v2
+        p11, p12, p22 = p11 + u1 * v1, p12 + u1 * v2, p22 + u2 * v2
+        a6, b6, c6 = a6 + v0, b6 + v1, c6 + v2
     return Belief(
         turn,
-        (m0 + n * m1 + h * m2, m1 + n * m2, m2, m3, m4, m5, m6),
+        (m0, m1, m2, m3, m4, m5, m6),
         (
             (p00, p01, p02, a3, a4, a5, a6),
             (p01, p11, p12, b3, b4, b5, b6),
@@ -138,57 +162,33 @@ def moved(belief: Belief, turn: float, walk: Walk) -> Belief:
             (a3, b3, c3, *row3[3:]),
             (a4, b4, c4, *row4[3:]),
             (a5, b5, c5, *row5[3:]),
-            (a6, b6, c6, *row6[3:5], row6[5], row6[6] + walk.over_air * s),
+            (a6, b6, c6, *row6[3:6], row6[6] + w),
         ),
     )
 
 
-def look(belief: Belief, celsius: float, warmth: float, contact_ohm: float, at: Vector | None = None) -> Look:
-    """What this belief expects a reading to show now, with the wire to the contact (`contact_ohm`) in it.
-
-    Linearised at the state `at`, else at the belief's mean.
-    """
-    ohm, _, _, leads, gain, bias, over = at or belief.mean
-    scale = 1.0 + gain
-    warm = 1.0 + ALPHA_20C * (celsius - bias + warmth * over - 20.0)
-    raw = ohm * warm + leads + contact_ohm
-    d0 = scale * warm
-    d5 = -scale * ohm * ALPHA_20C
-    d6 = -d5 * warmth
-    s0, s1, s2, s3, s4, s5, s6 = [
-        d0 * row[0] + scale * row[3] + raw * row[4] + d5 * row[5] + d6 * row[6] for row in belief.cov
-    ]
-    variance = d0 * s0 + scale * s3 + raw * s4 + d5 * s5 + d6 * s6
-    expected = scale * raw
-    if at is not None:
-        m = belief.mean
-        expected += d0 * (m[0] - ohm) + scale * (m[3] - leads) + raw * (m[4] - gain)
-        expected += d5 * (m[5] - bias) + d6 * (m[6] - over)
-    return Look(expected, max(variance, 0.0), (s0, s1, s2, s3, s4, s5, s6))
-
-
-def learnt(
-    belief: Belief, seen: Look, ohm: float, noise: float, celsius: float, warmth: float, contact_ohm: float
-) -> Belief:
-    """The belief after a reading of `ohm` with variance `noise`, `seen` being what it expected of it.
-
-    A reading that moves the resistance by more than its own noise is linearised anew where it leads to
-    (iterated extended Kalman filter). Without that, a first reading far from the prior and a second one
-    near the first would see the gain through two different resistances, and claim to know it from the
-    difference.
-    """
-    for _ in range(_MOST_RELOOKS):
-        step = (ohm - seen.ohm) / (seen.variance + noise)
-        if (seen.spread[OHM] * step) ** 2 <= _FAR_MOVE * noise:
-            break
-        m0, m1, m2, m3, m4, m5, m6 = [m + x * step for m, x in zip(belief.mean, seen.spread, strict=True)]
-        seen = look(belief, celsius, warmth, contact_ohm, (m0, m1, m2, m3, m4, m5, m6))
-    return told(belief, seen, ohm, noise)
+def look(belief: Belief, reading: Reading, contact_ohm: float) -> Look:
+    """What this belief expects a reading to show, with the wire to the contact (`contact_ohm`) in it."""
+    shown, _, _, leads, _, bias, over = belief.mean
+    off = over - bias
+    warm = 1.0 + ALPHA_20C * (reading.celsius - 20.0 + off)
+    d0 = warm / (1.0 + ALPHA_20C * off)
+    cooled = 1.0 - reading.warmth
+    if cooled == 0.0:
+        s0, s1, s2, s3, s4, s5, s6 = [d0 * row[0] + row[3] for row in belief.cov]
+        return Look(d0 * shown + leads + contact_ohm, max(d0 * s0 + s3, 0.0), (s0, s1, s2, s3, s4, s5, s6))
+    d0 -= ALPHA_20C * cooled * over / (1.0 + ALPHA_20C * off)
+    d6 = (
+        -ALPHA_20C * cooled * (reading.ohm if isfinite(reading.ohm) else shown)
+    )  # the secant, not the tangent
+    s0, s1, s2, s3, s4, s5, s6 = [d0 * row[0] + row[3] + d6 * row[6] for row in belief.cov]
+    variance = d0 * s0 + s3 + d6 * s6
+    return Look(d0 * shown + leads + contact_ohm, max(variance, 0.0), (s0, s1, s2, s3, s4, s5, s6))
 
 
 def told(belief: Belief, seen: Look, ohm: float, noise_variance: float) -> Belief:
     """The belief after a reading of `ohm`, whose own noise has this variance (above zero)."""
-    total = seen.variance + noise_variance
+    total = seen.variance + max(noise_variance, (SHARPEST_REL * seen.ohm) ** 2)
     v = seen.spread
     k = [x / total for x in v]
     root = sqrt(total)
@@ -200,3 +200,33 @@ def told(belief: Belief, seen: Look, ohm: float, noise_variance: float) -> Belie
         for row, vi, ki, ui in zip(belief.cov, v, k, u, strict=True)
     ]
     return Belief(belief.turn, (m0, m1, m2, m3, m4, m5, m6), cast(Matrix, tuple(rows)))
+
+
+def error_of(belief: Belief) -> float:
+    """What is shown at 20 degrees C over what is true."""
+    _, _, _, _, gain, bias, over = belief.mean
+    return (1.0 + gain) * (1.0 + ALPHA_20C * (over - bias))
+
+
+def answer_gradient(belief: Belief) -> Vector:
+    """How the true resistance at 20 degrees C goes with each state."""
+    shown, _, _, _, gain, bias, over = belief.mean
+    error = error_of(belief)
+    ohm = shown / error
+    by_kelvin = ohm * ALPHA_20C / (1.0 + ALPHA_20C * (over - bias))
+    return (1.0 / error, 0.0, 0.0, 0.0, -ohm / (1.0 + gain), by_kelvin, -by_kelvin)
+
+
+def resistance(belief: Belief) -> tuple[float, float]:
+    """True resistance at 20 degrees C, and its standard deviation with every error in it, ohm."""
+    gradient = answer_gradient(belief)
+    variance = 0.0
+    for di, row in zip(gradient, belief.cov, strict=True):
+        if di != 0.0:
+            variance += di * sum([dj * p for dj, p in zip(gradient, row, strict=True)])
+    return belief.mean[SHOWN] / error_of(belief), sqrt(max(variance, 0.0))
+
+
+def answer_covariance(belief: Belief, seen: Look) -> float:
+    """Covariance of the true resistance with an expected reading."""
+    return sum([d * x for d, x in zip(answer_gradient(belief), seen.spread, strict=True)])

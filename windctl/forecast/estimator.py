@@ -19,7 +19,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field, replace
 from math import isfinite, sqrt
 
-from windctl.forecast.belief import Belief, Walk, first_belief, learnt, look, moved, walk_of
+from windctl.forecast.belief import Belief, Walk, first_belief, look, moved, told, walk_of
 from windctl.forecast.noise import Unrest, own_variance
 from windctl.forecast.reading import Reading
 from windctl.forecast.widen import opened
@@ -82,7 +82,7 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
     """
     prior = estimate.prior
     belief = moved(estimate.belief, reading.turn, estimate.walk)
-    seen = look(belief, reading.celsius, reading.warmth, prior.contact_length_ohm)
+    seen = look(belief, reading, prior.contact_length_ohm)
     if not isfinite(reading.ohm) or reading.ohm > _OPEN_FACTOR * max(seen.ohm, _ZERO_FROM_OHM):
         return replace(estimate, gated=estimate.gated + 1, open_run=estimate.open_run + 1, zero_run=0), False
     if seen.ohm > _ZERO_FROM_OHM and reading.ohm < _ZERO_PART * seen.ohm:
@@ -99,7 +99,7 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
     return _with(
         estimate,
         unrest.heard(surprise, seen.variance + stated),
-        learnt(belief, seen, reading.ohm, noise, reading.celsius, reading.warmth, prior.contact_length_ohm),
+        told(belief, seen, reading.ohm, noise),
         anchor=anchor if trust < _TRUSTED else None,
         trust=trust,
         used=1,
@@ -140,13 +140,13 @@ def _taken(estimate: Estimate, start: Belief, reading: Reading, *, gated: bool) 
     """A rival after a reading: None where it is `gated` and does not agree; else taken at its word."""
     prior, turning = estimate.prior, not reading.resting
     belief = moved(start, reading.turn, estimate.walk)
-    seen = look(belief, reading.celsius, reading.warmth, prior.contact_length_ohm)
+    seen = look(belief, reading, prior.contact_length_ohm)
     stated = own_variance(prior, reading, seen.ohm)
     spread = seen.variance + stated * estimate.unrest.spread_factor()
     if gated and abs(reading.ohm - seen.ohm) > GATE * sqrt(spread):
         return None
     noise = stated * estimate.unrest.weight_factor(turning)
-    return learnt(belief, seen, reading.ohm, noise, reading.celsius, reading.warmth, prior.contact_length_ohm)
+    return told(belief, seen, reading.ohm, noise)
 
 
 def _with(

@@ -9,7 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import sqrt
 
-from windctl.forecast.belief import OHM, PER_TURN, Belief, moved
+from windctl.forecast.belief import PER_TURN, Belief, error_of, moved, resistance
 from windctl.forecast.estimator import Estimate
 
 Z95 = 1.959963984540054  # standard normal, two-sided 95 %
@@ -38,8 +38,7 @@ class TurnFor:
 
 def finish_at(estimate: Estimate, turn: float) -> Finish:
     """What the coil will have once (or had when) `turn` turns are wound."""
-    belief = moved(estimate.belief, turn, estimate.walk)
-    ohm, sd = belief.mean[OHM], sqrt(max(belief.cov[OHM][OHM], 0.0))
+    ohm, sd = resistance(moved(estimate.belief, turn, estimate.walk))
     return Finish(ohm, sd, ohm - Z95 * sd, ohm + Z95 * sd)
 
 
@@ -54,13 +53,13 @@ def turn_for(estimate: Estimate, ohm: float) -> TurnFor:
     turn = max(belief.turn + turns_between(belief, ohm), 0.0)
     there = moved(belief, turn, estimate.walk)
     slope = max(there.mean[PER_TURN], _FLATTEST * estimate.prior.ohm_per_turn)
-    sd = sqrt(max(there.cov[OHM][OHM], 0.0)) / slope
+    sd = resistance(there)[1] * error_of(there) / slope
     return TurnFor(turn, sd, turn - Z95 * sd, turn + Z95 * sd)
 
 
 def turns_between(belief: Belief, ohm: float) -> float:
     """Turns from the belief's own turn to a resistance: R + r*n + g*n*n/2 = ohm; negative to go back."""
-    resistance, per_turn, growth = belief.mean[:3]
-    missing = ohm - resistance
+    shown, per_turn, growth = belief.mean[:3]
+    missing = ohm * error_of(belief) - shown
     slope_there = sqrt(max(per_turn * per_turn + 2.0 * growth * missing, (_FLATTEST * per_turn) ** 2))
     return 2.0 * missing / (abs(per_turn) + slope_there)

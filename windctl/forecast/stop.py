@@ -10,7 +10,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import ceil, floor, sqrt
 
-from windctl.forecast.belief import OHM, PER_TURN, look, moved
+from windctl.forecast.belief import PER_TURN, SHOWN, answer_covariance, error_of, look, moved
 from windctl.forecast.estimator import Estimate
 from windctl.forecast.finish import turn_for, turns_between
 from windctl.forecast.noise import own_variance
@@ -78,8 +78,7 @@ def _to_be_learnt(estimate: Estimate, turn: float) -> float:
     """Sd, in turns, of the move that one settled reading at `turn` is going to make."""
     belief = moved(estimate.belief, turn, estimate.walk)
     prior = estimate.prior
-    seen = look(belief, 20.0, 1.0, prior.contact_length_ohm)
-    rest = Reading(turn, seen.ohm, 20.0, resting=True)
-    noise = own_variance(prior, rest, seen.ohm)
-    move = seen.spread[OHM] ** 2 / (seen.variance + noise)
-    return sqrt(move) / max(belief.mean[PER_TURN], 1e-9)
+    rest = Reading(turn, belief.mean[SHOWN], 20.0, resting=True)
+    seen = look(belief, rest, prior.contact_length_ohm)
+    move = abs(answer_covariance(belief, seen)) / sqrt(seen.variance + own_variance(prior, rest, seen.ohm))
+    return move * error_of(belief) / max(belief.mean[PER_TURN], 1e-9)

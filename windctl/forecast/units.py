@@ -21,7 +21,7 @@ def thousandfold(prior: Prior, lines: Sequence[ReadingLine]) -> float | None:
     finite = [line.reading for line in lines if isfinite(line.reading.ohm) and line.reading.ohm > 0.0]
     start, walk = first_belief(prior), walk_of(prior)
     for reading in finite:
-        expected = look(moved(start, reading.turn, walk), reading.celsius, 1.0, prior.contact_length_ohm).ohm
+        expected = look(moved(start, reading.turn, walk), reading, prior.contact_length_ohm).ohm
         for factor in votes:
             if expected / _NEAR < reading.ohm * factor < expected * _NEAR:
                 votes[factor] += 1

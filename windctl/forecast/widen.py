@@ -6,7 +6,7 @@ from dataclasses import replace
 from math import sqrt
 from typing import cast
 
-from windctl.forecast.belief import GROWTH, OHM, PER_TURN, Belief, Matrix, Vector
+from windctl.forecast.belief import GROWTH, PER_TURN, SHOWN, Belief, Matrix, Vector
 from windctl.plan.prior import Prior
 
 SPLICE_REL = 0.002  # ohm per metre on the two sides of a break: the end was pulled on
@@ -16,7 +16,7 @@ JUMP_REL = 0.5  # an opened resistance may be anything
 
 def with_resistance_variance(belief: Belief, variance: float) -> Belief:
     """Add `variance` (ohm^2), independent of everything else, to the resistance so far."""
-    return _added(belief, {(OHM, OHM): variance})
+    return _added(belief, {(SHOWN, SHOWN): variance})
 
 
 def with_wire_variance(belief: Belief, relative_variance: float, shift: float = 0.0) -> Belief:
@@ -44,7 +44,7 @@ def wire_sd_rel(prior: Prior) -> float:
 
 def opened(belief: Belief, prior: Prior) -> Belief:
     """A belief that has been proven wrong somewhere: resistance free, wire as uncertain as at the start."""
-    free = (JUMP_REL * belief.mean[OHM]) ** 2 + (prior.turns * 0.01 * prior.ohm_per_turn) ** 2
+    free = (JUMP_REL * belief.mean[SHOWN]) ** 2 + (prior.turns * 0.01 * prior.ohm_per_turn) ** 2
     return with_wire_variance(with_resistance_variance(belief, free), wire_sd_rel(prior) ** 2)
 
 
