@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import resource
 import sqlite3
 import sys
 import time
@@ -73,6 +72,8 @@ def hold(path: Path) -> None:
 
 def outgrow(path: Path) -> None:
     """Write to a disk without room, then again when there is some."""
+    import resource  # not on every platform
+
     with open_book(path) as book, book.begin_coil("b1", 2026, started(1)) as writer:
         rows = packed([NoteMade(n, "z" * 5000, "Demo Winder") for n in range(60)])
         room = resource.getrlimit(resource.RLIMIT_FSIZE)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 import time
 from pathlib import Path
 
@@ -13,7 +14,7 @@ from windctl.book.open import open_book
 from windctl.record.events import NoteMade
 
 
-@pytest.mark.parametrize("wait_ms", [0, 7, 23, 61, 110])
+@pytest.mark.parametrize("wait_ms", [0, 23, 80])
 def test_a_writer_killed_at_any_moment_loses_nothing_that_was_committed(path: Path, wait_ms: int) -> None:
     open_book(path).close()
     with child("write", path) as process:
@@ -58,6 +59,7 @@ def test_a_writer_killed_half_way_through_a_commit_leaves_the_state_before(path:
     assert files_beside(path) == []
 
 
+@pytest.mark.skipif(sys.platform == "win32", reason="platform: no limit can be set to a file's size")
 def test_a_disk_without_room_loses_nothing_and_the_commit_can_be_repeated(path: Path) -> None:
     with child("outgrow", path) as process:
         said = line(process)

@@ -9,6 +9,7 @@ import pytest
 from tests.book.processes import child, line
 from tests.book.samples import coil_id, started
 from windctl.book.book import Book
+from windctl.book.heads import coil_number
 from windctl.book.open import open_book
 from windctl.errors import BookError
 
@@ -82,8 +83,13 @@ def test_an_id_that_is_not_written_as_a_uuid_is_refused(book: Book, given: str) 
         book.begin_coil("b1", 2026, started(1, coil_id=given))
 
 
-def test_there_is_a_number_after_9999(book: Book) -> None:
-    from windctl.book.heads import coil_number
+@pytest.mark.parametrize(("field", "value"), [("of", -1), ("of", 10**30), ("operator", "\udcff")])
+def test_a_start_that_cannot_be_stored_is_refused(book: Book, field: str, value: object) -> None:
+    with pytest.raises(BookError, match=r"outside 0|cannot be recorded"):
+        book.begin_coil("b1", 2026, started(1, **{field: value}))
+    assert book.verify().broken == ()
 
+
+def test_there_is_a_number_after_9999() -> None:
     assert coil_number("b1", 2026, 9999) == "b1-2026-9999"
     assert coil_number("b1", 2026, 10_000) == "b1-2026-10000"

@@ -35,7 +35,7 @@ def spoilt(value: object) -> list[object]:
         case float():
             return [math.nextafter(value, math.inf), -value] if value else [5e-324]
         case bytes():
-            return [value[:-1] + bytes([value[-1] ^ 1]), bytes([value[0] ^ 0x80]) + value[1:], value[:-1]]
+            return [value[:-1] + bytes([value[-1] ^ 1]), bytes([value[0] ^ 0x80]) + value[1:]]
         case str() if value:
             return [value[:-1] + chr(ord(value[-1]) ^ 1), chr(ord(value[0]) ^ 1) + value[1:]]
         case str():
@@ -67,10 +67,10 @@ def write(path: Path, table: Table, row: dict[str, object], column: str, value: 
         assert done.rowcount == 1
 
 
-def verified(path: Path) -> tuple[BrokenCoil, ...]:
-    """What is found wrong with the book at `path`."""
+def verified(path: Path, coil: str | None = None) -> tuple[BrokenCoil, ...]:
+    """What is found wrong with the book at `path`, or with one coil in it."""
     with open_book(path, readonly=True) as book:
-        return book.verify().broken
+        return book.verify(coil).broken
 
 
 def names(finding: BrokenCoil, table: Table, column: str, row: dict[str, object]) -> bool:
@@ -109,7 +109,8 @@ def test_an_altered_value_is_found_and_named(copied: Path, table: Table, column:
             with pytest.raises(BookError, match="has schema 1008"):
                 verified(copied)
             return
-        found = verified(copied)
+        within = table.name in ("entries", "curve") and column != "coil"
+        found = verified(copied, str(row["coil"]) if within else None)
         assert any(names(finding, table, column, row) for finding in found), (row, value, found)
         tried += 1
     assert tried > 0
@@ -244,7 +245,7 @@ def test_any_altered_byte_of_the_file_is_found_or_harmless(copied: Path) -> None
     before = content(copied)
     draw = random.Random(20260504)
     found = 0
-    for _ in range(80):
+    for _ in range(60):
         place, bit = draw.randrange(len(pristine)), 1 << draw.randrange(8)
         copied.write_bytes(pristine[:place] + bytes([pristine[place] ^ bit]) + pristine[place + 1 :])
         try:

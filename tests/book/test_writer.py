@@ -269,6 +269,31 @@ def test_a_commit_reported_as_failed_that_reached_the_disk_may_be_repeated(book:
     assert book.verify().good
 
 
+def test_a_seal_reported_as_failed_that_reached_the_disk_may_be_repeated(book: Book) -> None:
+    with book.begin_coil("b1", 2026, started(1)) as writer:
+        writer.commit(packed([*wound(writer.started, 1), finished(1)]))
+        before, head = writer._tail, writer._head
+        sealed = seal(book, writer)
+        writer._tail, writer._head = before, head  # as if it had raised
+        assert seal(book, writer) == sealed
+    assert book.verify().good
+
+
+def test_a_seal_that_fails_may_be_tried_again_or_left(book: Book, path: Path) -> None:
+    with book.begin_coil("b1", 2026, started(1)) as writer:
+        writer.commit(packed([*wound(writer.started, 1), finished(1)]))
+    with sqlite3.connect(path) as connection:
+        connection.execute("UPDATE coils SET n_entries = n_entries + 1")
+    connection.close()
+    with pytest.raises(BookError, match="changed by something else"):
+        seal(book, writer)
+    assert files_beside(path) == []
+    with sqlite3.connect(path) as connection:
+        connection.execute("UPDATE coils SET n_entries = n_entries - 1")
+    connection.close()
+    assert seal(book, writer).sealed
+
+
 def test_an_empty_commit_changes_nothing(book: Book) -> None:
     with book.begin_coil("b1", 2026, started(1)) as writer:
         before = book.find("1")

@@ -75,7 +75,7 @@ class Book:
         with self._store.atomic() as connection:
             serial = _next_serial(connection, bench, year)
             started = replace(started, number=coil_number(bench, year, serial))
-            payload = encode(started)
+            payload = _first_payload(started)
             tie = link(genesis(started.coil_id), started.kind, payload)
             head = opened(started, bench, year, serial, tie)
             if connection.scalar(sa.select(coils.c.number).where(coils.c.id == head.id)) is not None:
@@ -118,7 +118,7 @@ class Book:
         limit: int | None = None,
         offset: int = 0,
     ) -> tuple[CoilHead, ...]:
-        """Coils, the one started last first; a page of them with `limit` and `offset`."""
+        """Coils, the one started last first (by the text of its time); a page with `limit` and `offset`."""
         which = Which(bench=bench, recipe=recipe, batch=batch, outcome=outcome, verdict=verdict)
         return listed(self._store, which, limit, offset)
 
@@ -197,6 +197,13 @@ def _refuse_closed(head: CoilHead) -> None:
         raise BookError(f"coil {head.number} is closed ({head.outcome}): nothing can be added to its record")
 
 
+def _first_payload(started: CoilStarted) -> bytes:
+    try:
+        return encode(started)
+    except ValueError as error:  # a text that is no text, a number that is none
+        raise BookError(f"the start of the coil cannot be recorded: {error}") from error
+
+
 def _next_serial(connection: sa.Connection, bench: str, year: int) -> int:
     """The next number of a bench's year; the transaction's lock keeps others from getting the same."""
     here = (numbers.c.bench == bench, numbers.c.year == year)
@@ -216,6 +223,8 @@ def _check_new(bench: str, year: int, started: CoilStarted) -> None:
         )
     if not 2000 <= year <= 9999:
         raise BookError(f"the year is {year}, outside 2000 to 9999: set the computer's clock")
+    if not 0 <= started.of < 1_000_000:
+        raise BookError(f"the batch is to have {started.of} coils, outside 0 (not counted) to 999 999")
     try:
         proper = str(uuid.UUID(started.coil_id)) == started.coil_id
     except ValueError:

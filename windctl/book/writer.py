@@ -64,8 +64,9 @@ class CoilWriter:
         self._refuse_second_start(entries)
         if not entries:
             return
+        tail, rows = self._tied(entries)
         with self._store.atomic() as connection:
-            tail = self._append(connection, entries)
+            self._append(connection, tail, rows)
         self._tail = tail
 
     def seal(
@@ -86,15 +87,17 @@ class CoilWriter:
         self._refuse_second_start(entries)
         points = plain_curve(self.number, curve)
         head = closed(self._head, summary, trace_digest, ended)
+        tail, rows = self._tied([*entries, Entry(SEAL, seal_payload(head, points), 0)])
+        head = replace(head, n_entries=tail.n, record_digest=tail.link.hex())
         self._lease.take()
-        seal = Entry(SEAL, seal_payload(head, points), 0)
-        with self._store.atomic() as connection:
-            tail = self._append(connection, [*entries, seal])
-            head = replace(head, n_entries=tail.n, record_digest=tail.link.hex())
-            coils = tables.coils
-            connection.execute(sa.update(coils).where(coils.c.id == self.id).values(**head_columns(head)))
-            if points:
-                connection.execute(sa.insert(tables.curve), curve_rows(self.id, points))
+        try:
+            with self._store.atomic() as connection:
+                if self._append(connection, tail, rows):
+                    self._close_record(connection, head, points)
+        except BaseException:
+            if not self._open:
+                self._lease.release()
+            raise
         self._tail, self._head = tail, head
         self.close()
         return head
@@ -112,9 +115,12 @@ class CoilWriter:
     ) -> None:
         self.close()
 
-    def _append(self, connection: sa.Connection, rows: Sequence[Entry]) -> _Tail:
+    def _append(self, connection: sa.Connection, tail: _Tail, rows: list[dict[str, Any]]) -> bool:
+        """Append rows that lead to `tail`; False when they are there already.
+
+        A commit may reach the disk although it is reported as failed; then the same is committed again.
+        """
         coils = tables.coils
-        tail, values = self._tied(rows)
         moved = connection.execute(
             sa.update(coils)
             .where(
@@ -126,18 +132,24 @@ class CoilWriter:
             .values(n_entries=tail.n, record_digest=tail.link.hex())
         )
         if moved.rowcount == 1:
-            connection.execute(sa.insert(tables.entries), values)
-            return tail
-        # A commit may have reached the disk although it was reported as failed: then it is there already.
+            connection.execute(sa.insert(tables.entries), rows)
+            return True
         stored = connection.scalar(sa.select(coils.c.record_digest).where(coils.c.id == self.id))
         if stored == tail.link.hex():
-            return tail
+            return False
         raise BookError(
             f"coil {self.number} was changed by something else while it was being written: "
             "stop winding and check the book with 'windctl coils verify'"
         )
 
+    def _close_record(self, connection: sa.Connection, head: CoilHead, points: Sequence[CurvePoint]) -> None:
+        coils = tables.coils
+        connection.execute(sa.update(coils).where(coils.c.id == self.id).values(**head_columns(head)))
+        if points:
+            connection.execute(sa.insert(tables.curve), curve_rows(self.id, points))
+
     def _tied(self, rows: Sequence[Entry]) -> tuple[_Tail, list[dict[str, Any]]]:
+        """Where the record ends with these rows, and the rows as they are stored."""
         n, last = self._tail.n, self._tail.link
         values: list[dict[str, Any]] = []
         for row in rows:
