@@ -40,7 +40,7 @@ def with_key(text: str, key: str, value: object) -> str:
     return changed
 
 
-# The shipped coil cut short: the same bobbin, wire and lay, a sixth of the turns, so that a test takes a second.
+# The shipped coil cut short: the same bobbin, wire and lay, a sixth of the turns.
 SHORT = with_stop(SHIPPED, dcr_20c_ohm=800, tolerance_pct=3, min_turns=1000, max_turns=1400)
 SHORT_TURNS = with_stop(SHIPPED, turns=400, tolerance_pct=0.5)
 
