@@ -10,7 +10,7 @@ import sys
 import threading
 import time
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
@@ -121,7 +121,9 @@ class Session:
         return self.process.stdout.read()
 
     def _look(self) -> None:
-        if select.select([self.terminal], [], [], 0.05)[0]:
+        if not select.select([self.terminal], [], [], 0.05)[0]:
+            return
+        with suppress(OSError):  # EIO: the program has closed its side
             self.seen += os.read(self.terminal, 65_536).decode(errors="replace")
 
 

@@ -28,11 +28,11 @@ pattern = "wander"
 amount = 0.4
 seed = 1947
 [spindle]
-start_rpm = 150
-start_turns = 5
+start_rpm = 300
+start_turns = 3
 cruise_rpm = 1000
-finish_rpm = 120
-finish_turns = 10
+finish_rpm = 300
+finish_turns = 3
 ramp_rpm_per_s = 300
 [stop]
 {stop}

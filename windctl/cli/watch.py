@@ -56,10 +56,14 @@ def stand_by(run: Watched, face: Face, prompt: Prompt | None) -> Ended:
             while (ended := run.wait(LIVE_PERIOD_S)) is None:
                 snapshot = run.look()
                 face.show(snapshot)
-                if stops.news():
-                    face.say(stops.words)
+                news = stops.news()
+                if news is not None:
+                    face.say(news)
                 elif stops.signal is None:
                     questions.consider(snapshot)
+            news = stops.news()  # a spindle that hardly turned may stand before anybody was told
+            if news is not None:
+                face.say(news)
             face.show(run.look())
         except BaseException:
             # Whatever went wrong on this side, the machine comes first.
@@ -91,15 +95,13 @@ class _Stops:
             self._run.request(Hold("operator", f"interrupted by {self.signal}", leave=True))
         self._heard += 1
 
-    def news(self) -> bool:
-        """True once after each signal."""
-        fresh, self._told = self._heard > self._told, self._heard
-        return fresh
-
-    @property
-    def words(self) -> str:
-        """What to say about the latest signal."""
-        return f"{self.signal}: holding" if self._heard == 1 else _STOPPING_ALREADY
+    def news(self) -> str | None:
+        """What to say about signals not told of yet."""
+        if self._heard == self._told:
+            return None
+        words = _STOPPING_ALREADY if self._told else f"{self.signal}: holding"
+        self._told = self._heard
+        return words
 
 
 class _Questions:

@@ -300,7 +300,7 @@ def _wants(state: State) -> Wants:
     program = unpacked(started.program_packed)
     given = _given(state)
     drives_off = status is not None and status.state == BoardState.DRIVES_OFF
-    to_declare = state.fit in (Fit.FRESH, Fit.CORRECTED)  # until it turns, the board is told where the coil stands
+    to_declare = state.fit in (Fit.FRESH, Fit.CORRECTED)  # until it turns, we say where the coil stands
     setting_up = to_declare and not state.consented_since_greeting
     to_go = given if state.stop_point is not None and state.stop_point > state.count else None
     return Wants(
