@@ -46,10 +46,10 @@ def test_resistance_moves_with_the_coils_temperature() -> None:
 
 
 def test_a_coil_wound_fast_is_warmer_than_the_air_and_cools_in_minutes() -> None:
-    fate = replace(TRUE, warmth_k=1.4, warmth_time_s=60.0)
-    plant = at_turns(3000, fate)
+    fate = replace(TRUE, warmth_k=1.4, warmth_time_s=20.0)  # a small coil, as if hours were minutes
+    plant = at_turns(1200, fate)
     fresh = statistics.fmean(ohms(plant, 100))
-    wind(plant, 240_000, rate=0)
+    wind(plant, 90_000, rate=0)
     rested = statistics.fmean(ohms(plant, 100))
     assert fresh / rested - 1.0 == pytest.approx(1.4 * 0.00393, rel=0.15)
 
@@ -119,8 +119,7 @@ def test_a_reading_scatters_by_about_what_the_profile_says() -> None:
 def test_about_two_per_cent_of_the_readings_of_a_turning_coil_are_spoilt() -> None:
     """Readings of 200 ms, four a second; every kind of bad contact occurs."""
     bad, readings, opened, zeroed, high, low = 0, 0, 0, 0, 0, 0
-    for seed in range(40):
-        meter = Meter(HAND_GUIDED, draw_fate(HAND_GUIDED, seed), seed)
+    for seed in range(30):
         quiet = replace(draw_fate(HAND_GUIDED, seed), hum_field_ut=0.0, reading_noise=0.0, sample_noise=0.0)
         meter = Meter(HAND_GUIDED, quiet, seed)
         for _ in range(400):

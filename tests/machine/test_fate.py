@@ -32,10 +32,10 @@ def test_ohm_per_metre_varies_by_the_wires_tolerance_and_never_leaves_it() -> No
 
 
 def test_overall_diameter_lies_anywhere_in_its_grade() -> None:
-    overall = spread("overall_mm")
-    assert statistics.pstdev(overall) == pytest.approx(BOBBIN.overall_sd_mm, rel=0.08)
-    half_range = 1.732 * BOBBIN.overall_sd_mm
-    assert max(abs(mm - BOBBIN.overall_mm) for mm in overall) <= half_range
+    """A grade's range counts as 4 sd; evenly drawn over all of it, the sd is range / sqrt(12)."""
+    overall, grade_mm = spread("overall_mm"), 4.0 * BOBBIN.overall_sd_mm
+    assert statistics.pstdev(overall) == pytest.approx(grade_mm / 12**0.5, rel=0.08)
+    assert max(abs(mm - BOBBIN.overall_mm) for mm in overall) <= grade_mm / 2.0
 
 
 def test_packing_scatters_about_its_class_and_stays_possible() -> None:

@@ -37,7 +37,7 @@ class Law:
 
 SPOOL_LAWS = (
     Law("ohm_per_m", "normal", 0.0, 1.0, "sd of the wire", "off nominal: 4 % cut at 8 % from a table"),
-    Law("overall", "uniform", 0.0, 1.732, "sd of the wire", "anywhere in its grade"),
+    Law("overall", "uniform", 0.0, 2.0, "sd of the wire", "anywhere in its grade, which is 4 sd wide"),
     Law("slope", "normal", 0.0, 0.0025, "per km", "thinner or thicker towards the spool's end"),
     Law("walk", "uniform", 0.0015, 0.001, "per sqrt(km)", "random walk of ohm per metre"),
 )
@@ -47,7 +47,7 @@ COIL_LAWS = (
     Law("packing", "normal", 0.0, 1.0, "sd of the packing", "mean over the coil"),
     Law("loosening", "uniform", 0.05, 0.05, "relative", "packing lost from the first turn to the last"),
     Law("bulge", "uniform", 0.15, 0.10, "relative", "how much the long sides' build exceeds the mean"),
-    Law("slide", "uniform", 1.0, 0.4, "mm/mm", "steepest slope of the build before turns slide down"),
+    Law("slide", "uniform", 1.2, 0.5, "mm/mm", "steepest; turns stacked like pipes stand at 60 degrees"),
     Law("stretch", "uniform", 0.0015, 0.0015, "relative", "pulled in by the tensioner for good"),
     Law("guide_zero", "normal", 0.0, 0.08, "mm", "the operator sets the guide to its start by eye"),
     Law("warmth", "normal", 0.0, 1.0, "sd of coil over air", "friction at cruise, never below 0"),
