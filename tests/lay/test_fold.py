@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from dataclasses import replace
 from fractions import Fraction
 
@@ -20,14 +21,15 @@ from windctl.lay.turn_rounds import turn_rounds
 
 def ideal(spec: LaySpec, counts: list[int]) -> list[Fraction]:
     """Where the guide should be at each of `counts`, in steps: the pattern's travel, folded pass by pass."""
-    travel = PATTERNS[spec.pattern](spec).sub_steps.tolist()
-    rounds = turn_rounds(spec, travel[-1] // ((spec.stroke - 2 * spec.spread) * SUB) + 2)
+    travel = PATTERNS[spec.pattern](spec)
+    at_counts, gone_to = travel.counts.tolist(), travel.sub_steps.tolist()
+    rounds = turn_rounds(spec, gone_to[-1] // ((spec.stroke - 2 * spec.spread) * SUB) + 2)
     ats, places = rounds.at.tolist(), rounds.places.tolist()
     found = []
     for count in counts:
-        turn = min(count // spec.counts_per_turn, spec.turns - 1)
-        share = Fraction(count - turn * spec.counts_per_turn, spec.counts_per_turn)
-        at = travel[turn] + (travel[turn + 1] - travel[turn]) * share
+        i = min(bisect_right(at_counts, count), len(at_counts) - 1)
+        run, rise = at_counts[i] - at_counts[i - 1], gone_to[i] - gone_to[i - 1]
+        at = gone_to[i - 1] + Fraction(rise * (count - at_counts[i - 1]), run)
         number = max(i for i, reached in enumerate(ats) if reached <= at)
         gone = (at - ats[number]) / SUB
         found.append(places[number] + (gone if number % 2 == 0 else -gone))
@@ -47,7 +49,7 @@ def guide_at(program: Program, counts: list[int]) -> list[int]:
 
 specs = st.builds(
     LaySpec,
-    pattern=st.sampled_from(["even", "wander"]),
+    pattern=st.sampled_from(sorted(PATTERNS)),
     turns=st.integers(1, 120),
     counts_per_turn=st.sampled_from([40, 100, 400]),
     stroke=st.integers(60, 2500),
@@ -141,7 +143,7 @@ def test_the_play_is_taken_up_after_each_turn_round() -> None:
 
 
 def test_a_longer_program_begins_with_the_shorter_one() -> None:
-    for pattern in ("even", "wander"):
+    for pattern in ("even", "wander", "ripple"):
         spec = {
             "counts_per_turn": 400,
             "stroke": 2160,

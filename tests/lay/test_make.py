@@ -25,6 +25,19 @@ def test_a_wandering_program_is_the_same_for_ever() -> None:
     assert program.digest == "273c7c582b02bef24b098f3f56006ecf30c9b40c8f5f94a02c9df77734f6aaa9"
 
 
+@pytest.mark.parametrize(
+    ("pattern", "digest"),
+    [
+        ("stagger", "e77356fc0831d28563ef70ba973d3c9619a5dc2cf30ba47fe0cf33b4ea7229d6"),
+        ("ripple", "78025737c19489bec17aa40fef85c2bcd5a15a83364c86a293c348e5b4f53380"),
+    ],
+)
+def test_the_other_patterns_are_the_same_for_ever(pattern: str, digest: str) -> None:
+    """A digest that changes means that coils can no longer be wound again as their records say."""
+    program = make_program(recipe(WANDER, lay__pattern=f'"{pattern}"'), machine(guide__backlash_mm="0.05"))
+    assert program.digest == digest
+
+
 def test_what_decides_the_bytes() -> None:
     base = make_program(recipe(WANDER), VIRTUAL).digest
     assert (

@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from windctl.lay.fixed import SUB
-from windctl.lay.patterns.wander import ornstein_uhlenbeck, wander
+from windctl.lay.patterns.wander import ornstein_uhlenbeck, travel
 from windctl.lay.spec import LaySpec
 
 TURNS = 200_000
@@ -40,23 +40,23 @@ def test_no_correlation_length_is_white() -> None:
 
 def test_amount_scales_the_pitch_around_its_mean() -> None:
     for amount in (6554, 32768):
-        pitches = np.diff(wander(spec(amount)).sub_steps) / (50 * SUB)
+        pitches = np.diff(travel(spec(amount)).sub_steps) / (50 * SUB)
         assert pitches.mean() == pytest.approx(1, abs=0.01)
         assert pitches.std() == pytest.approx(amount / 65536 / 2, rel=0.05)
 
 
 def test_the_guide_never_stands_however_much_it_wanders() -> None:
-    pitches = np.diff(wander(spec(65536)).sub_steps) / (50 * SUB)
+    pitches = np.diff(travel(spec(65536)).sub_steps) / (50 * SUB)
     assert pitches.min() >= 0.199
     assert pitches.max() <= 1.801
 
 
 def test_no_amount_is_an_even_pitch() -> None:
-    assert np.unique(np.diff(wander(spec(0, turns=500)).sub_steps)).tolist() == [50 * SUB]
+    assert np.unique(np.diff(travel(spec(0, turns=500)).sub_steps)).tolist() == [50 * SUB]
 
 
 def test_seeds_differ() -> None:
-    assert (wander(spec(32768, seed=1)).sub_steps != wander(spec(32768, seed=2)).sub_steps).any()
+    assert (travel(spec(32768, seed=1)).sub_steps != travel(spec(32768, seed=2)).sub_steps).any()
 
 
 def scalar_philox(number: int, seed: int, stream: int) -> list[int]:
@@ -77,7 +77,7 @@ def test_the_same_in_plain_integers() -> None:
     kick = math.isqrt(2**40 - keep**2)
     norm = math.isqrt(3 * 2**64 // (8 * (2**32 - 1)))
     x = 0
-    for turn, pitch in enumerate(np.diff(wander(spec(45_000, turns=300, seed=seed)).sub_steps).tolist()):
+    for turn, pitch in enumerate(np.diff(travel(spec(45_000, turns=300, seed=seed)).sub_steps).tolist()):
         total = sum((word & 0xFFFF) + (word >> 16) for word in scalar_philox(turn, seed, 1))
         drawn = ((2 * total - 8 * 0xFFFF) * norm + 2**15) >> 16
         x = drawn if turn == 0 else (keep * x + kick * drawn + 2**19) >> 20

@@ -30,6 +30,12 @@ class Travel:
     sub_steps: I64
     bends: bool
 
+    def __post_init__(self) -> None:
+        """Raises PlanRefused for a travel whose products would not fit the integers."""
+        longest, slowest = int(np.diff(self.sub_steps).max()), int(np.diff(self.counts).max())
+        if longest * slowest >= _MOST:
+            raise PlanRefused("this pitch needs more turns for a pass than a program can hold")
+
     def at(self, counts: I64) -> I64:
         """Travel at `counts`, sub-steps, rounded down."""
         piece = np.clip(np.searchsorted(self.counts, counts, side="right") - 1, 0, len(self.counts) - 2)
@@ -49,8 +55,7 @@ class Travel:
 
 def by_turn(spec: LaySpec, pitches: I64, *, bends: bool) -> Travel:
     """Travel of `spec.turns` turns, each with its pitch in sub-steps (all of at least 1)."""
-    longest = int(pitches.max()) if len(pitches) else 0
-    if longest * spec.turns >= _MOST or longest * spec.counts_per_turn >= _MOST:
+    if int(pitches.max()) * spec.turns >= _MOST:
         raise PlanRefused(f"{spec.turns} turns of this pitch are more travel than a program can hold")
     travel = np.zeros(spec.turns + 1, dtype=np.int64)
     np.cumsum(pitches, out=travel[1:])

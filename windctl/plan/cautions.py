@@ -101,9 +101,9 @@ def _speed(recipe: Recipe, profile: MachineProfile, outlook: Outlook) -> Iterato
     speed = outlook.full_speed
     if speed.peak_m_s > _FAST_M_S and speed.peak_m_s > _PULSING * speed.mean_m_s:
         yield (
-            f"at {recipe.spindle.cruise_rpm:g} rpm the wire on the finished coil runs at {speed.mean_m_s:.1f} m/s "
-            f"and jerks to {speed.peak_m_s:.1f} m/s twice a turn, pulled by its own inertia: a lower "
-            "spindle.cruise_rpm is gentler on it"
+            f"at {recipe.spindle.cruise_rpm:g} rpm the wire runs onto the finished coil at "
+            f"{speed.mean_m_s:.1f} m/s and jerks to {speed.peak_m_s:.1f} m/s twice a turn, and its inertia "
+            "pulls: a lower spindle.cruise_rpm is gentler on it"
         )
     accel = accel_rpm_per_s(recipe, profile)
     if accel < recipe.spindle.ramp_rpm_per_s:
@@ -118,8 +118,8 @@ def _machine(recipe: Recipe, profile: MachineProfile) -> Iterator[str]:
         yield "no spindle drive is fitted: this program counts and tells, and cannot stop the machine"
     if profile.guide.kind == "hand":
         yield (
-            "the wire is guided by hand: the lay is the hand's, and turns, build and crown are those of the recipe's "
-            "lay laid perfectly"
+            "the wire is guided by hand: the lay is the hand's, and the build foreseen is that of the "
+            "recipe's lay, laid perfectly"
         )
     if not profile.tension.sensor:
         band = recipe.tension is not None and recipe.tension.band_cn is not None

@@ -41,8 +41,8 @@ def rate(rpm_per_s: float, per_turn: int, key: str) -> int:
     steps = nearest(exact(rpm_per_s) * per_turn / 60)
     if steps < LEAST_RATE:
         raise PlanRefused(
-            f"{key} of {rpm_per_s:g} rpm/s is {steps} steps/s2 at {per_turn} steps per turn, and the board takes "
-            f"at least {LEAST_RATE}; at least {LEAST_RATE * 60 / per_turn:g} rpm/s is needed"
+            f"{key} of {rpm_per_s:g} rpm/s is {steps} steps/s2 at {per_turn} steps per turn, and a board "
+            f"takes at least {LEAST_RATE}; {LEAST_RATE * 60 / per_turn:g} rpm/s is the least"
         )
     return steps
 
@@ -92,7 +92,7 @@ def duration_s(spindle: Spindle, accel_rpm_per_s: float, decel_rpm_per_s: float,
 
 
 def _stretch_s(way: float, most: float, first: float, last: float, accel: float, decel: float) -> float:
-    """Seconds for `way` turns from speed `first` to `last`, never above `most`; all in turns/s and turns/s2."""
+    """Seconds for `way` turns from speed `first` to `last`, at most at `most`; in turns/s and turns/s2."""
     if way <= 0:
         return 0.0
     top = min(

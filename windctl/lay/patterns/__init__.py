@@ -4,14 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 
-from windctl.lay.patterns.even import even
-from windctl.lay.patterns.wander import wander
+from windctl.lay.patterns import even, ripple, stagger, wander
 from windctl.lay.spec import LaySpec
 from windctl.lay.travel import Travel
 
 Pattern = Callable[[LaySpec], Travel]
 
 PATTERNS: Mapping[str, Pattern] = {
-    "even": even,
-    "wander": wander,
+    "even": even.travel,
+    "wander": wander.travel,
+    "stagger": stagger.travel,
+    "ripple": ripple.travel,
 }

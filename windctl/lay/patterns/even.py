@@ -8,6 +8,6 @@ from windctl.lay.spec import LaySpec
 from windctl.lay.travel import Travel, by_turn
 
 
-def even(spec: LaySpec) -> Travel:
+def travel(spec: LaySpec) -> Travel:
     """A straight line: whole passes become single segments."""
     return by_turn(spec, np.full(spec.turns, spec.pitch, dtype=np.int64), bends=False)

@@ -9,7 +9,6 @@ from __future__ import annotations
 
 import math
 from fractions import Fraction
-from itertools import accumulate
 
 import numpy as np
 from numpy.typing import NDArray
@@ -24,7 +23,7 @@ _FULL = 1 << 15  # relative standard deviation of the pitch at amount 1, of 6553
 _MOST = 52429  # the pitch never deviates by more than four fifths, of 65536: the guide never stands or turns
 
 
-def wander(spec: LaySpec) -> Travel:
+def travel(spec: LaySpec) -> Travel:
     """One pitch a turn: the mean times 1 + amount / 2 * x, kept between a fifth and nine fifths of it."""
     deviation = np.clip((ornstein_uhlenbeck(spec) * spec.amount >> 16) * _FULL >> 16, -_MOST, _MOST)
     pitches = np.maximum(spec.pitch + (spec.pitch * deviation >> 16), 1)
@@ -42,6 +41,6 @@ def ornstein_uhlenbeck(spec: LaySpec) -> NDArray[np.int64]:
     kick = math.isqrt((1 << 2 * _BITS) - keep * keep)
     drawn = normals(spec.seed, Stream.WANDER, spec.turns)
     driven = drawn * kick + (1 << _BITS - 1)
-    driven[0] = drawn[0]
-    values = accumulate(driven.tolist(), lambda x, d: (keep * x + d) >> _BITS)
-    return np.fromiter(values, dtype=np.int64, count=spec.turns)
+    x = int(drawn[0])
+    rest = driven[1:].tolist()  # plain integers: a recurrence that rounds at each step is no array operation
+    return np.array([x, *[x := (keep * x + d) >> _BITS for d in rest]], dtype=np.int64)
