@@ -84,16 +84,17 @@ def _wire(estimate: Estimate) -> Alarm | None:
     belief = estimate.belief
     expected = moved(estimate.reference, belief.turn, estimate.walk)
     grown = expected.mean[SHOWN] - estimate.reference.mean[SHOWN]
-    variance = (
-        expected.cov[SHOWN][SHOWN] - belief.cov[SHOWN][SHOWN]
-    )  # of the move from the one mean to the other
+    before, after = expected.cov[SHOWN][SHOWN], belief.cov[SHOWN][SHOWN]
+    gained = before - after  # variance of the move from the one mean to the other
     off = belief.mean[SHOWN] - expected.mean[SHOWN]
-    if grown <= 0.0 or variance <= 0.0 or abs(off) <= _BEYOND * sqrt(variance):
+    if grown <= 0.0 or gained <= 0.0 or abs(off) <= _BEYOND * sqrt(gained):
         return None
-    ratio, sd = 1.0 + off / grown, sqrt(variance) / grown
-    steps, odds = likeliest(ratio, sd)
+    pulled = gained / before  # the estimate lies between the prior and what the readings say: take that out
+    off /= pulled
+    read_sd = sqrt(max(after, 0.0) / pulled)
+    steps, odds = likeliest(1.0 + off / grown, sqrt(before) / grown, read_sd / grown)
     side = "above" if off > 0.0 else "below"
-    start = f"the resistance is {abs(100.0 * off / grown):.1f} % {side} what this coil can have"
+    start = f"the resistance is {abs(100.0 * off / grown):.1f} % {side} what is expected of this coil"
     against = f"odds {min(odds, 1e6):.0f} to 1 against the recipe's"
     if steps == 0:
         return Alarm(
@@ -104,20 +105,23 @@ def _wire(estimate: Estimate) -> Alarm | None:
     return Alarm("wire", f"{start}: the wire is probably {numbers} {kind} ({against}); check the spool", odds)
 
 
-def likeliest(ratio: float, sd: float) -> tuple[int, float]:
-    """Which wire best explains `ratio` (resistance over the expected one, relative sd `sd` for any one
-    gauge).
+def likeliest(ratio: float, wire_sd: float, read_sd: float = 0.0) -> tuple[int, float]:
+    """Which wire best explains `ratio`, the resistance read over the one expected.
 
+    `wire_sd` is the relative sd of coils of any one gauge, `read_sd` the sd of the reading of the ratio.
     Returns gauge numbers off (0: none of them, something else) and its odds against the recipe's wire.
     """
-    right = _log_normal(ratio - 1.0, sd)
-    candidates = [(log(_OTHER_ODDS) + _log_normal(ratio - 1.0, sqrt(sd * sd + _OTHER_SD**2)), 0)]
+
+    def fit(centre: float, own_sd: float) -> float:
+        return _log_normal(ratio - centre, sqrt(own_sd**2 + read_sd**2))
+
+    candidates = [(log(_OTHER_ODDS) + fit(1.0, sqrt(wire_sd**2 + _OTHER_SD**2)), 0)]
     for number, odds in _GAUGE_ODDS.items():
         for steps in (number, -number):
             centre = _AREA_PER_GAUGE**steps
-            candidates.append((log(odds) + _log_normal(ratio - centre, centre * sd), steps))
+            candidates.append((log(odds) + fit(centre, centre * wire_sd), steps))
     best, steps = max(candidates)
-    return steps, exp(min(best - right, 700.0))
+    return steps, exp(min(best - fit(1.0, wire_sd), 700.0))
 
 
 def _log_normal(x: float, sd: float) -> float:
