@@ -142,6 +142,8 @@ def _before(shared: Shared, plan: Plan, profile: MachineProfile) -> None:
         present.message(f"caution: {warning}")
     if plan.fits != "yes":
         present.message(f"caution: whether this coil fits its bobbin: {plan.fits}")
+    if profile.readings.mode == "checks":
+        present.message("caution: the run does not stop for checks by itself; it stops where the forecast says")
     if profile.spindle.drive == "none":
         present.message("caution: this machine only counts; windctl cannot stop it")
     if not shared.quiet:
