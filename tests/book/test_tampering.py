@@ -67,10 +67,10 @@ def write(path: Path, table: Table, row: dict[str, object], column: str, value: 
         assert done.rowcount == 1
 
 
-def verified(path: Path, coil: str | None = None) -> tuple[BrokenCoil, ...]:
-    """What is found wrong with the book at `path`, or with one coil in it."""
+def verified(path: Path) -> tuple[BrokenCoil, ...]:
+    """What is found wrong with the book at `path`."""
     with open_book(path, readonly=True) as book:
-        return book.verify(coil).broken
+        return book.verify().broken
 
 
 def names(finding: BrokenCoil, table: Table, column: str, row: dict[str, object]) -> bool:
@@ -100,19 +100,17 @@ def names(finding: BrokenCoil, table: Table, column: str, row: dict[str, object]
 @pytest.mark.parametrize(("table", "column"), COLUMNS, ids=lambda part: getattr(part, "name", part))
 def test_an_altered_value_is_found_and_named(copied: Path, table: Table, column: str) -> None:
     pristine = copied.read_bytes()
-    assert verified(copied) == ()
     tried = 0
-    for row, value in alterations(copied, table, column):
-        copied.write_bytes(pristine)
-        write(copied, table, row, column, value)
-        if table.name == "ledger" and column == "version":
-            with pytest.raises(BookError, match="has schema 1008"):
-                verified(copied)
-            return
-        within = table.name in ("entries", "curve") and column != "coil"
-        found = verified(copied, str(row["coil"]) if within else None)
-        assert any(names(finding, table, column, row) for finding in found), (row, value, found)
-        tried += 1
+    with open_book(copied, readonly=True) as book:
+        assert book.verify().broken == ()
+        for row, value in alterations(copied, table, column):
+            book.close()  # the file is changed under it
+            copied.write_bytes(pristine)
+            write(copied, table, row, column, value)
+            within = table.name in ("entries", "curve") and column != "coil"
+            found = book.verify(str(row["coil"]) if within else None).broken
+            assert any(names(finding, table, column, row) for finding in found), (row, value, found)
+            tried += 1
     assert tried > 0
 
 
