@@ -13,7 +13,7 @@ EVEN = {
     "bobbin.core_width_mm": "6.0",
     "bobbin.corner_radius_mm": "3.0",
     "bobbin.flange_gap_mm": "11.0",
-    "bobbin.flange_depth_mm": "5.0",
+    "bobbin.flange_depth_mm": "7.0",
     "coil.direction_from_face": '"cw"',
     "coil.mounted": '"face out"',
     "coil.start_flange": '"base"',
