@@ -54,7 +54,7 @@ def test_entries_become_durable_in_order() -> None:
 def test_a_consent_is_not_durable_before_its_commit_returned() -> None:
     shelf = Shelf()
     shelf.gate.clear()
-    journal = Journal(shelf)
+    journal = Journal(shelf, linger_s=60.0)
     ticket = journal.put([entry(1)], urgent=True)
     assert shelf.began.wait(10)
     assert not journal.is_durable(ticket)

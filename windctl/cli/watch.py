@@ -116,8 +116,9 @@ class _Questions:
 
     def consider(self, snapshot: Snapshot) -> None:
         """Ask what is newly asked, and pass an answer on."""
-        if snapshot.asks != self._open:
-            self._open = snapshot.asks
+        asks = None if snapshot.asks == "turn" else snapshot.asks  # that one ends the run by itself
+        if asks != self._open:
+            self._open = asks
             if self._open is not None:
                 self._ask(snapshot)
         elif self._open is not None and self._prompt is not None:

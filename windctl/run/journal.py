@@ -15,7 +15,7 @@ from typing import Protocol
 from windctl.errors import BookError, WindctlError
 from windctl.record.entries import Entry
 
-LINGER_S = 0.5  # how long entries may gather before a commit
+LINGER_S = 0.5  # how long entries of a simulated run may gather before a commit; real ones do not wait
 TOO_OLD_S = 3.0  # an uncommitted fact older than this means: hold
 MOST_WAITING = 400  # entries, about 200 s of a coil: a simulated run waits beyond that
 
@@ -38,7 +38,7 @@ class CoilLog(Protocol):
 class Journal:
     """A queue of entries and the thread that commits them."""
 
-    def __init__(self, log: CoilLog, linger_s: float = LINGER_S) -> None:
+    def __init__(self, log: CoilLog, linger_s: float = 0.0) -> None:
         self._log = log
         self._linger_s = linger_s
         self._waiting: list[tuple[float, Entry]] = []

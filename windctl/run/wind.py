@@ -28,7 +28,7 @@ from windctl.record.fold import State, fold, replay, start
 from windctl.record.program import stored
 from windctl.record.summary import summarise
 from windctl.record.trace import trace_digest
-from windctl.run.journal import Journal
+from windctl.run.journal import LINGER_S, Journal
 from windctl.run.outcome import Outcome
 from windctl.run.runner import Ended, Request, Runner
 from windctl.run.snapshot import Snapshot
@@ -76,7 +76,7 @@ class Winding:
         self._book = book
         self._writer = writer
         self._here = here
-        self._journal = Journal(writer)
+        self._journal = Journal(writer, LINGER_S if port.simulated else 0.0)
         self._runner = Runner(
             port,
             self._journal,
