@@ -98,7 +98,7 @@ class Program:
     def __init__(self, random: Random) -> None:
         self.segments: list[tuple[int, int]] = []
         guide = 0
-        for _ in range(random.randint(40, 90)):
+        for _ in range(random.randint(30, 60)):
             counts = random.randint(20, 160)
             steps = random.randint(-counts // 3, counts // 3)
             if abs(guide + steps) > 900:

@@ -240,13 +240,13 @@ def converse(seed: int) -> Counter[str]:
 
 def test_no_board_can_make_the_host_send_what_it_must_not() -> None:
     sent: Counter[str] = Counter()
-    for seed in range(200):
+    for seed in range(100):
         try:
             sent += converse(seed)
         except AssertionError as error:
             raise AssertionError(f"with seed {seed}: {error}") from error
     for name in ("Go", "Arm", "ClearTrip", "SetDatum", "Hold", "Pace", "StopAt", "Disarm"):
-        assert sent[name] > 50, f"too few of {name} to mean anything: {sent}"
+        assert sent[name] > 30, f"too few of {name} to mean anything: {sent}"
 
 
 @given(st.binary(max_size=400))
