@@ -99,7 +99,7 @@ def trial(job: tuple[Path, int]) -> Killed:
         ) as host:
             until(lambda: board.state == BoardState.TURNING, 60)
             time.sleep(random.Random(seed).uniform(0.0, 14.0))
-            turning = board.state == BoardState.TURNING and not served.bench.outputs.rate == 0
+            turning = board.state == BoardState.TURNING and served.bench.outputs.rate != 0
             host.kill()
             killed_at, killed_turn = served.bench.ticks, board.count / board.counts_per_turn
             host.wait(10)
@@ -140,8 +140,8 @@ def kill(folder: Path, n: int) -> None:
     braked = [each.brake_after_beat for each in trials if each.brake_after_beat is not None]
     print(
         f"\n{n} kills between turn {min(t.killed_at_turn for t in trials):.1f} and "
-        f"{max(t.killed_at_turn for t in trials):.1f}: braking at most {max(braked, default=0)} ms after the last "
-        f"beat ({len(braked)} while turning), at most {max(t.lost for t in trials)} ms of facts lost"
+        f"{max(t.killed_at_turn for t in trials):.1f}: braking at most {max(braked, default=0)} ms after "
+        f"the last beat ({len(braked)} while turning), at most {max(t.lost for t in trials)} ms of facts lost"
     )
     assert braked, "no trial caught the spindle turning"
     assert max(braked) <= SILENCE_TICKS
