@@ -27,8 +27,8 @@ STATES = ("rest", "turning")
 MOST_TURNS = 1_000_000
 COLDEST_C, WARMEST_C = -40.0, 150.0
 
-_NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
-_COMMA_NUMBER = re.compile(r"[+-]?(?:\d+[.,]?\d*|[.,]\d+)(?:[eE][+-]?\d+)?")
+_NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?", re.ASCII)
+_COMMA_NUMBER = re.compile(r"[+-]?(?:\d+[.,]?\d*|[.,]\d+)(?:[eE][+-]?\d+)?", re.ASCII)
 _LINE_END = re.compile(r"\r\n|\r|\n")
 _INFINITE = ("inf", "+inf", "infinity", "+infinity")
 
