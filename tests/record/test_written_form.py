@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import hashlib
 import json
+import zlib
 
 import pytest
 from hypothesis import given
@@ -15,7 +16,7 @@ from windctl.errors import RecordBroken
 from windctl.protocol.messages import Reading, Status
 from windctl.record.canonical import decode, encode
 from windctl.record.chain import genesis, link
-from windctl.record.entries import CHUNK, CHUNK_TICKS, Entry, Packer, unpack
+from windctl.record.entries import CHUNK, CHUNK_TICKS, FORMS, NEWEST, Entry, Packer, unpack
 from windctl.record.events import (
     BoardGreeted,
     Event,
@@ -109,6 +110,20 @@ def test_a_chunk_is_complete_after_half_a_second_of_the_boards_clock() -> None:
     entries = packer.add(events)
     assert [entry.events for entry in entries] == [CHUNK_TICKS // 50] * 3
     assert all(entry.kind == CHUNK for entry in entries)
+
+
+def test_the_newest_form_of_a_chunk_holds_every_field_of_the_messages() -> None:
+    assert FORMS[NEWEST].status == tuple(f.name for f in dataclasses.fields(Status))
+    assert FORMS[NEWEST].reading == tuple(f.name for f in dataclasses.fields(Reading))
+
+
+def test_a_chunk_of_form_1_reads_for_ever() -> None:
+    # Written once by hand: one status (all ones), one reading (all twos), at 5 and 6 ms.
+    packed = zlib.compress(b"1 sr\n" + bytes([10] + [2] * 18 + [12] + [4] * 6))
+    assert list(unpack([Entry(CHUNK, packed, 2)])) == [
+        StatusHeard(5, Status(*[1] * 18)),
+        ReadingTaken(6, Reading(*[2] * 6)),
+    ]
 
 
 def test_a_chunk_is_far_smaller_than_its_events() -> None:

@@ -1,29 +1,61 @@
 """Events as rows. A rare fact is a row of its own; runs of dense facts become chunks of about half a second.
 
-A chunk is a small JSON header line (what is in it, under which column names) and zlib-packed columns of
-zigzag varints: the first value, then differences. Nothing is rounded: unpacking gives the same events. Chunks
-end where the board's clock passes a multiple of 500 ticks and before every rare fact, so order is kept and
-the cut depends on facts alone, not on how fast the host happened to run.
+A chunk is, zlib-packed, a header line (the number of its form, a letter for each event: s status, r reading)
+and columns of zigzag varints: the first value, then differences. Nothing is rounded: unpacking gives the same
+events. Chunks end where the board's clock passes a multiple of 500 ticks and before every rare fact, so order
+is kept and the cut depends on facts alone, not on how fast the host happened to run.
 """
 
 from __future__ import annotations
 
-import dataclasses
-import json
 import zlib
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
 
 from windctl.errors import RecordBroken
 from windctl.protocol.messages import Reading, Status
-from windctl.record.canonical import decode, dumps, encode
+from windctl.record.canonical import decode, encode
 from windctl.record.events import DENSE, Event, ReadingTaken, StatusHeard
 
 CHUNK_TICKS = 500
 CHUNK = "chunk"
 
-_STATUS_COLUMNS = tuple(field.name for field in dataclasses.fields(Status))
-_READING_COLUMNS = tuple(field.name for field in dataclasses.fields(Reading))
+
+@dataclass(frozen=True, slots=True)
+class Form:
+    """The columns of a chunk, in order; each list is preceded by its `at_ms`. A form never changes."""
+
+    status: tuple[str, ...]
+    reading: tuple[str, ...]
+
+
+# A message that gets another field gets another form here; the old ones stay, so that old books can be read.
+FORMS = {
+    1: Form(
+        status=(
+            "ticks",
+            "boot",
+            "epoch",
+            "state",
+            "cause",
+            "trip",
+            "trust",
+            "inputs",
+            "count",
+            "guide",
+            "stop_point",
+            "next",
+            "executing",
+            "program_crc",
+            "speed",
+            "tension",
+            "celsius",
+            "bad_frames",
+        ),
+        reading=("ticks", "count", "value", "window", "celsius", "flags"),
+    ),
+}
+NEWEST = max(FORMS)
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,52 +119,43 @@ def _ticks(event: StatusHeard | ReadingTaken) -> int:
 def _pack(events: Sequence[StatusHeard | ReadingTaken]) -> bytes:
     statuses = [event for event in events if isinstance(event, StatusHeard)]
     readings = [event for event in events if isinstance(event, ReadingTaken)]
-    header = dumps(
-        {
-            "order": "".join("s" if isinstance(event, StatusHeard) else "r" for event in events),
-            "status": ["at_ms", *_STATUS_COLUMNS],
-            "reading": ["at_ms", *_READING_COLUMNS],
-        }
-    )
+    order = "".join("s" if isinstance(event, StatusHeard) else "r" for event in events)
     columns = bytearray()
     _put_column(columns, [event.at_ms for event in statuses])
-    for name in _STATUS_COLUMNS:
+    for name in FORMS[NEWEST].status:
         _put_column(columns, [getattr(event.status, name) for event in statuses])
     _put_column(columns, [event.at_ms for event in readings])
-    for name in _READING_COLUMNS:
+    for name in FORMS[NEWEST].reading:
         _put_column(columns, [getattr(event.reading, name) for event in readings])
-    return zlib.compress(header + b"\n" + bytes(columns), 6)
+    return zlib.compress(f"{NEWEST} {order}\n".encode() + bytes(columns), 6)
 
 
 def _unpack(payload: bytes) -> Iterator[Event]:
     try:
         header, _, columns = zlib.decompress(payload).partition(b"\n")
-        about = json.loads(header)
-        order: str = about["order"]
+        number, _, order = header.decode("ascii").partition(" ")
+        form = FORMS[int(number)]
         at = 0
         table: dict[str, list[list[int]]] = {}
-        for letter, names in (("s", about["status"]), ("r", about["reading"])):
-            n = order.count(letter)
+        for letter, names in (("s", form.status), ("r", form.reading)):
             table[letter] = []
-            for _name in names:
-                column, at = _take_column(columns, at, n)
+            for _ in range(1 + len(names)):
+                column, at = _take_column(columns, at, order.count(letter))
                 table[letter].append(column)
-        statuses = iter(
-            [
-                StatusHeard(row[0], Status(**dict(zip(about["status"][1:], row[1:], strict=True))))
-                for row in zip(*table["s"], strict=True)
-            ]
+        statuses = (
+            StatusHeard(at_ms, Status(**dict(zip(form.status, row, strict=True))))
+            for at_ms, *row in zip(*table["s"], strict=True)
         )
-        readings = iter(
-            [
-                ReadingTaken(row[0], Reading(**dict(zip(about["reading"][1:], row[1:], strict=True))))
-                for row in zip(*table["r"], strict=True)
-            ]
+        readings = (
+            ReadingTaken(at_ms, Reading(**dict(zip(form.reading, row, strict=True))))
+            for at_ms, *row in zip(*table["r"], strict=True)
         )
-        events: list[Event] = [next(statuses) if letter == "s" else next(readings) for letter in order]
+        events: list[Event] = []
+        for letter in order:
+            events.append(next(statuses) if letter == "s" else next(readings))
     except (zlib.error, ValueError, KeyError, TypeError, IndexError, StopIteration) as error:
         raise RecordBroken(f"a stored chunk of readings cannot be read: {error}") from error
-    if at != len(columns):
+    if at != len(columns) or order.strip("sr"):
         raise RecordBroken("a stored chunk of readings holds more than its header says")
     yield from events
 
