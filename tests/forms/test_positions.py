@@ -61,7 +61,7 @@ def _meaning_of_key(text: str) -> str:
     return next(iter(tomllib.loads(f"{text} = 0")))
 
 
-@settings(max_examples=300)
+@settings(max_examples=200)
 @given(documents())
 def test_every_path_of_a_document_is_where_the_other_parsers_find_it(text: str) -> None:
     data = tomllib.loads(text)

@@ -37,7 +37,7 @@ def test_utf_8_is_read(tmp_path: Path) -> None:
         ("'é' = 1\n'ü".encode()[:-1], ":2:2: is not UTF-8 text: byte 0xc3; save it as UTF-8"),
         ("a = 1".encode("utf-16"), ":1:1: is text in UTF-16 or UTF-32; save it as UTF-8"),
         ("a = 1".encode("utf-32"), ":1:1: is text in UTF-16 or UTF-32; save it as UTF-8"),
-        (b"#" * (MAX_BYTES + 1), ": is larger than 256 KiB, which no such file is"),
+        (b"#" * (MAX_BYTES + 1), ": is larger than 64 KiB, which no such file is"),
     ],
 )
 def test_what_is_not_text(tmp_path: Path, content: bytes, said: str) -> None:

@@ -177,6 +177,9 @@ def test_all_problems_come_at_once_also_those_between_keys_and_tables() -> None:
         ("a = \x1b[31m\n", ":1:5: is not valid TOML: Invalid value"),
         ("x = 1" + "1" * 5000, ":1:5: is a number with far too many digits"),
         ("x = " + "[" * 50_000, ": has tables or arrays nested too deeply"),
+        ("x = 1\na" + ".a" * 30_000 + " = 1", ":2:1: is a key of more than 40 parts"),
+        ("[a" + " . 'b'" * 41 + "]", ":1:1: is a key of more than 40 parts"),
+        ("x = {" + '"a".' * 41 + "b = 1}", ":1:5: is a key of more than 40 parts"),
         ("x = '\ud800'", ":1:6: is not a character of UTF-8 text"),
     ],
 )

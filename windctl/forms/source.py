@@ -8,7 +8,7 @@ from pathlib import Path
 from windctl.errors import FileInvalid, Problem
 
 # A hand-written form is a few kilobytes. The limit also ends the reading of a device or a pipe without end.
-MAX_BYTES = 256 * 1024
+MAX_BYTES = 64 * 1024
 
 _FOREIGN_MARKS = (codecs.BOM_UTF16_LE, codecs.BOM_UTF16_BE, codecs.BOM_UTF32_LE, codecs.BOM_UTF32_BE)
 

@@ -20,6 +20,11 @@ M = TypeVar("M", bound=Form)
 _PARSER_PLACE = re.compile(
     r"(?P<what>.*) \(at (?:line (?P<line>\d+), column (?P<column>\d+)|end of document)\)"
 )
+# A dotted key of thousands of parts costs the parser and the scanner the square of that in time and memory.
+_DEEP_KEY = re.compile(
+    r"""(?:^|[\[{,])[ \t]*+(?:(?:[A-Za-z0-9_-]++|"(?:\\.|[^"\\\n])*+"|'[^'\n]*+')[ \t]*+\.[ \t]*+){40}""",
+    re.MULTILINE,
+)
 _LONG_NUMBER = re.compile(r"[0-9_]{4000,}")
 
 
@@ -34,6 +39,9 @@ def load_form(text: str, file: str, model: type[M], error: type[FileInvalid]) ->
         raise error(
             [Problem(file, 1, 1, "begins with a byte order mark; save it as plain UTF-8 without one")]
         )
+    if deep := _DEEP_KEY.search(text):
+        spot = _spot_at(text, deep.start())
+        raise error([Problem(file, spot.line, spot.column, "is a key of more than 40 parts")])
     try:
         text.encode()
         data = tomllib.loads(text)
