@@ -169,7 +169,7 @@ def test_a_simulated_coil_that_was_left_goes_on_only_at_a_confirmed_turn(
 
 
 def test_a_served_board_goes_on_by_itself_from_its_own_count(tmp_path: Path, book: Path) -> None:
-    recipe = recipes.to_turns(tmp_path)
+    recipe = recipes.to_turns(tmp_path, 40)
     with served(recipe) as (url, bench):
         port = ("--machine", "virtual", "--port", url)
         interrupted(recipe, book, signal.SIGINT, *port)
@@ -177,9 +177,9 @@ def test_a_served_board_goes_on_by_itself_from_its_own_count(tmp_path: Path, boo
         at = bench.board.count
         done = call("resume", "--book", str(book), "--port", url, "--json", "--no-input")
         assert done.returncode == 0, done.stderr
-        assert answer(done)["turns"] == 150
-        assert bench.plant.truth().true_turns == 150
-        assert 0 < at < 150 * 400
+        assert answer(done)["turns"] == 40
+        assert bench.plant.truth().true_turns == 40
+        assert 0 < at < 40 * 400
         assert "plant" not in answer(done)
 
 

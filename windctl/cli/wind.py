@@ -140,12 +140,8 @@ def _before(shared: Shared, plan: Plan, profile: MachineProfile) -> None:
     """What should be known before the first turn."""
     for warning in plan.warnings:
         present.message(f"caution: {warning}")
-    if plan.fits != "yes":
-        present.message(f"caution: whether this coil fits its bobbin: {plan.fits}")
     if profile.readings.mode == "checks":
-        present.message("caution: the run does not stop for checks by itself; it stops where the forecast says")
-    if profile.spindle.drive == "none":
-        present.message("caution: this machine only counts; windctl cannot stop it")
+        present.message("caution: the run does not stop for checks; it stops where the forecast says")
     if not shared.quiet:
         goal = f"{present.turns(plan.turns)}, {present.ohm(plan.dcr_20c_ohm)} at 20 °C"
         present.message(f"{plan.recipe_name}: {goal}, {present.duration(plan.duration_s)} of winding")
