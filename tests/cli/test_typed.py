@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import io
+
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
@@ -42,3 +44,15 @@ def test_where_nobody_can_be_asked_a_slip_is_refused_with_what_to_write() -> Non
     assert typed.confirm_ohm(7900.0, 8000.0, "a target", may_ask=False) == 7900.0
     with pytest.raises(UsageError, match="7946 ohm"):
         typed.confirm_ohm(7.946, 8000.0, "a target", may_ask=False)
+
+
+def test_nobody_is_asked_with_no_input_nor_without_a_terminal(monkeypatch: pytest.MonkeyPatch) -> None:
+    class Terminal(io.StringIO):
+        def isatty(self) -> bool:
+            return True
+
+    monkeypatch.setattr("sys.stdin", Terminal())
+    assert typed.may_ask(no_input=False)
+    assert not typed.may_ask(no_input=True)
+    monkeypatch.setattr("sys.stdin", io.StringIO("go\n"))
+    assert not typed.may_ask(no_input=False)
