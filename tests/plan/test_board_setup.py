@@ -7,6 +7,8 @@ import pytest
 from tests.lay.recipes import WANDER, machine, recipe
 from windctl.errors import PlanRefused
 from windctl.lay.make import make_program
+from windctl.machine.virtual.board import Board
+from windctl.machine.virtual.board_commands import DONE, HANDLERS
 from windctl.plan.board_setup import board_setup
 from windctl.profile.builtin import VIRTUAL
 from windctl.profile.model import MachineProfile
@@ -97,3 +99,15 @@ def test_without_a_drive_a_turn_has_as_many_steps_as_counts() -> None:
 def test_what_no_board_takes_is_refused(profile: dict[str, str], changes: dict[str, str], says: str) -> None:
     with pytest.raises(PlanRefused, match=says):
         setup(recipe(**changes), machine(**profile))
+
+
+@pytest.mark.parametrize("fitted", ["everything", "guide by hand", "counts only"])
+def test_the_board_s_twin_takes_it(fitted: str) -> None:
+    on = {
+        "everything": VIRTUAL,
+        "guide by hand": machine(guide__kind='"hand"'),
+        "counts only": MachineProfile(format=1),
+    }[fitted]
+    for asked in (recipe(), recipe(WANDER, tension__set_cn="12.0", tension__band_cn="5.0")):
+        board = Board(capabilities=0x7F)
+        assert HANDLERS[Setup.CODE](board, setup(asked, on)) == DONE

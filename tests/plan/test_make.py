@@ -117,7 +117,8 @@ def sampled(plan: Plan, n: int = 40_000) -> np.ndarray:
     rng = np.random.default_rng(7)
     rho = 5.4716 * (1 + math.hypot(0.04, 0.002) * rng.normal(size=n))
     core = plan.perimeter_mm * (1 + 0.004 * rng.normal(size=n))
-    build = math.hypot(2 * 0.001 / 0.072, 0.03 / 0.846027, 0.02)
+    crown = 0.01 + 0.6 * (plan.crown - 1) / plan.crown
+    build = math.hypot(2 * 0.001 / 0.072, 0.05 / 0.846027, crown)
     added = math.pi * plan.build_mm * plan.crown * (1 + build * rng.normal(size=n))
     return rho * (core + added) * plan.turns / 1000
 

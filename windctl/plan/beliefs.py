@@ -15,7 +15,6 @@ from windctl.recipe.model import Recipe
 # practice, no source; random loose packing of disks is about 0.66 (Brouwers, Soft Matter 2023), square
 # packing 0.785.
 PACKING = {"scatter": (0.63, 0.06), "even": (0.74, 0.05)}
-_GIVEN_PACKING_SD = 0.03  # of a packing that a recipe gives without its uncertainty. Our judgement
 
 # A recipe outlives the spool that its ohm per metre was measured on. Without a stated uncertainty the
 # next spool may differ by several per cent: from spool to spool +-8 % are the limits for fine wire, read
@@ -25,7 +24,10 @@ _ANOTHER_SPOOL_REL = 0.04
 _STRETCH_REL = 0.002  # ohm per wound metre rises by about the wire's stretch in winding. Our judgement
 _PERIMETER_REL = 0.004  # of a core known from its drawing, tape and corners included. Our judgement
 _MEASURED_PERIMETER_REL = 0.0015  # 20 wrapped turns against a rule: 2 to 4 mm in 2.4 m. Our judgement
-_CROWN_REL = 0.02  # of the deposit's crown factor, as wire slides on what lies below. Our judgement
+# Loose wire slides off ridges and into gaps, which takes away a good part of what the deposit's crown
+# factor has above 1. How much is not foreseen; the share is one standard deviation. Our judgement.
+_CROWN_REL = 0.01
+_CROWN_SLIDES = 0.6
 _PACKING_DRIFT_REL = 0.05  # of the growth over a coil, as the packing loosens. Our judgement
 
 
@@ -45,10 +47,9 @@ class Beliefs:
         """Of the build per turn: it goes with the wire's area over the packing."""
         return math.hypot(2 * self.overall_rel, self.packing_sd / self.packing)
 
-    @property
-    def growth_rel(self) -> float:
+    def growth_rel(self, crown: float) -> float:
         """Of what the build adds to the length: build per turn and crown factor."""
-        return math.hypot(self.build_rel, _CROWN_REL)
+        return math.hypot(self.build_rel, _CROWN_REL + _CROWN_SLIDES * (crown - 1) / crown)
 
 
 def beliefs_of(recipe: Recipe, wire: Wire) -> Beliefs:
@@ -57,7 +58,7 @@ def beliefs_of(recipe: Recipe, wire: Wire) -> Beliefs:
     packing, packing_sd = PACKING[lay.style]
     if lay.packing is not None:
         packing = lay.packing
-        packing_sd = lay.packing_sd if lay.packing_sd is not None else _GIVEN_PACKING_SD
+        packing_sd = lay.packing_sd if lay.packing_sd is not None else packing_sd
     ohm_rel = wire.ohm_per_m_sd / wire.ohm_per_m
     if recipe.wire.ohm_per_m_sd is None:
         ohm_rel = max(ohm_rel, _ANOTHER_SPOOL_REL)
@@ -82,7 +83,7 @@ def resistance_sd_ohm(beliefs: Beliefs, coil: BuildUp, turns: float) -> float:
     return math.hypot(
         whole * beliefs.ohm_per_m_rel,
         core * beliefs.perimeter_rel,
-        (whole - core) * beliefs.growth_rel,
+        (whole - core) * beliefs.growth_rel(coil.crown),
     )
 
 
@@ -95,7 +96,7 @@ def prior_of(beliefs: Beliefs, coil: BuildUp, turns: float, readings: Readings) 
         ohm_per_turn=per_turn,
         growth=growth,
         var_ohm_per_turn=per_turn**2 * (rho + beliefs.perimeter_rel**2),
-        var_growth=growth**2 * (rho + beliefs.growth_rel**2),
+        var_growth=growth**2 * (rho + beliefs.growth_rel(coil.crown) ** 2),
         cov=per_turn * growth * rho,
         growth_walk_rel=_PACKING_DRIFT_REL,
         turns=turns,
