@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 
 from tests.record import samples
 from tests.record.samples import CPT, identity, reading, started, status
-from windctl.protocol.messages import Cause, InputBit, Refused, Trip
+from windctl.protocol.messages import Cause, Go, InputBit, Refusal, Refused, Trip
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, Permission
 from windctl.record.decide import SETTLED_ENOUGH, Decision, decide
@@ -178,6 +178,16 @@ def test_a_hold_takes_consent_away() -> None:
     assert coil.decision.wants.go is None
     coil.hear(GoGiven(0, 5, 12, "operator"))
     assert coil.decision.wants.go == Permission(5, 12) and not coil.decision.wants.hold
+
+
+def test_a_refused_go_is_spent_and_a_person_is_asked_again() -> None:
+    coil = ready()
+    assert coil.decision.wants.go == Permission(5, 11)
+    coil.hear(CommandRefused(0, Refused(Go.CODE, Refusal.INPUT_OPEN, 11, 0)))
+    assert coil.decision.wants.go is None
+    assert coil.decision.asks == "go" and coil.decision.blocked == "the board refused: input open"
+    coil.hear(GoGiven(0, 5, 11, "operator"))
+    assert coil.decision.wants.go == Permission(5, 11) and coil.decision.blocked is None
 
 
 def test_a_stop_by_the_board_wants_a_new_consent() -> None:

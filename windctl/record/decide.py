@@ -14,7 +14,7 @@ from windctl.forecast.stop import missing_turns, stop_advice
 from windctl.forecast.verdict import verdict
 from windctl.lay.program import Program
 from windctl.plan.pace import pace_for
-from windctl.protocol.messages import Capability, Cause, InputBit, Trip
+from windctl.protocol.messages import Arm, Capability, Cause, ClearTrip, Go, InputBit, Refusal, Trip
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, Permission, Sampling, Segments, Wants
 from windctl.record.events import (
@@ -271,6 +271,9 @@ def _given(state: State) -> Permission | None:
 def _blocked(state: State) -> str | None:
     if state.status is not None and state.status.state == BoardState.TRIPPED:
         return f"the board is tripped ({Trip(state.status.trip).name.lower().replace('_', ' ')})"
+    refused = state.refused
+    if refused is not None and refused.command in (Arm.CODE, Go.CODE, ClearTrip.CODE):
+        return f"the board refused: {Refusal(refused.why).name.lower().replace('_', ' ')}"
     return None
 
 

@@ -14,7 +14,17 @@ from enum import Enum
 from windctl.forecast.estimator import Estimate, begin, update
 from windctl.forecast.reading import Reading as CoilReading
 from windctl.protocol.frames import CRC_START
-from windctl.protocol.messages import Identity, InputBit, ReadingFlag, Refused, Status, Trust
+from windctl.protocol.messages import (
+    Arm,
+    ClearTrip,
+    Go,
+    Identity,
+    InputBit,
+    ReadingFlag,
+    Refused,
+    Status,
+    Trust,
+)
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
 from windctl.record.events import (
@@ -185,7 +195,7 @@ def fold(state: State, event: Event) -> State:
                 state, fit=Fit.CORRECTED, corrected=event, count=round(event.turn * cpt), held=None
             )
         case CommandRefused():
-            return replace(state, refused=event.refused)
+            return _refused(state, event.refused)
         case CoilFinished():
             return replace(state, finished=event, consent=None)
         case NoteMade():
@@ -221,6 +231,15 @@ def _fit(state: State, identity: Identity) -> Fit:
 def setup_crc(started: CoilStarted) -> int:
     """What the board reports as its setup once it has this coil's."""
     return crc_hqx(started.setup.encode_body(), CRC_START)
+
+
+def _refused(state: State, refused: Refused) -> State:
+    """A consent that the board declined is spent: another needs another word from a person."""
+    if refused.command in (Arm.CODE, Go.CODE):
+        return replace(state, refused=refused, consent=None)
+    if refused.command == ClearTrip.CODE:
+        return replace(state, refused=refused, clear=None)
+    return replace(state, refused=refused)
 
 
 def _status(state: State, status: Status) -> State:

@@ -244,6 +244,8 @@ class Runner:
     def _consent_of_virtual(self, decision: Decision) -> tuple[Event, ...]:
         """A simulated machine hurts nobody: it goes where a person would have agreed without a thought."""
         state, permission = self._state, self._state.permission
+        if state.refused is not None:  # what the board declines once is not asked of it again and again
+            return ()
         if (
             state.identity is None
             or permission is None
