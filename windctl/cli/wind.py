@@ -14,7 +14,7 @@ from windctl.cli.exit_codes import ExitCode, code_for, code_for_coil
 from windctl.cli.machines import VIRTUAL, profile_of, simulated_here
 from windctl.cli.options import Shared, takes
 from windctl.cli.plan import show_plan
-from windctl.errors import RecordBroken, UsageError
+from windctl.errors import RecipeError, RecordBroken, UsageError
 
 if TYPE_CHECKING:
     from windctl.book.book import Book
@@ -50,11 +50,15 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     and leaves the coil open, for `windctl resume`. It is no emergency stop: use the hardware stop.
     """
     from windctl.cli.bench import open_bench
+    from windctl.forms.source import read_text
     from windctl.plan.make import make_plan
-    from windctl.recipe.load import load_recipe
+    from windctl.recipe.load import parse_recipe
     from windctl.run.wind import Order, begin
 
-    wanted, profile = load_recipe(recipe), profile_of(shared)
+    if shared.of is not None and shared.batch is None:
+        raise click.UsageError("--of says how many coils a batch is to have: name the batch with --batch.")
+    text = read_text(recipe, RecipeError)
+    wanted, profile = parse_recipe(text, str(recipe)), profile_of(shared)
     simulated = simulated_here(shared, profile)
     plan = make_plan(wanted, profile)
     if shared.dry_run:
@@ -63,7 +67,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     with open_bench(shared, profile, simulated, wanted) as bench, book_to_write(shared) as book:
         order = Order(
             recipe=wanted,
-            recipe_text=recipe.read_text(encoding="utf-8"),
+            recipe_text=text,
             plan=plan,
             profile=profile,
             machine=bench.name,
