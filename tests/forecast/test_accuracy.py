@@ -7,12 +7,12 @@ The long form takes 1000 coils a row, the short one enough coils and readings to
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import sqrt
 
 import numpy as np
 import pytest
 
 from tests.conftest import LONG
+from tests.forecast.bound import bound, grown
 from tests.forecast.truth import (
     DEFAULT,
     FINE,
@@ -152,22 +152,12 @@ def test_a_bad_first_reading_never_starves(long_form: bool) -> None:
 def test_near_the_bound_of_any_linear_estimator(part: float, long_form: bool) -> None:
     """rms over the posterior Cramer-Rao bound of a Gaussian truth with the drawn truths' moments.
 
-    The bound is that of the best linear estimator of those moments (Van Trees, Detection, Estimation, and
-    Modulation Theory, part I, from memory), worked out from other coils than the ones judged.
+    Worked out from other coils than the ones judged.
     """
-    turns = np.arange(50.0, part * TURNS + 1.0, 50.0)
-    turns = turns if long_form else turns[::2]
-    sample = np.array([draw(10_000 + i).ohm for i in range(2000 if long_form else 500)])
-    grown, final = sample[:, turns.astype(int)], sample[:, TURNS]
-    mean = grown.mean(axis=0)
-    moments = np.cov(grown.T, final)
-    common = FINE.gain_sd**2 + (0.00393 * FINE.celsius_sd) ** 2
-    own = (FINE.turning_noise * mean) ** 2 + FINE.floor_ohm**2
-    seen = moments[:-1, :-1] + common * np.outer(mean, mean) + FINE.lead_sd**2 + np.diag(own)
-    along = moments[:-1, -1]
-    bound = sqrt(moments[-1, -1] - along @ np.linalg.solve(seen, along)) / final.mean()
+    turns = np.arange(50.0, part * TURNS + 1.0, 50.0 if long_form else 100.0)
+    least = bound(grown(Truth(), 2000 if long_form else 500), turns, FINE)
     found = score(1000 if long_form else 80, Truth(), FINE, turns)
-    assert 0.85 <= found.rms / bound <= 1.35
+    assert 0.85 <= found.rms / least <= 1.35
 
 
 def test_a_truth_from_outside_the_priors_family(long_form: bool) -> None:
