@@ -70,7 +70,7 @@ def test_a_bad_profile_is_told_with_its_line(tmp_path: Path) -> None:
 
 @pytest.mark.parametrize("text", ["machine = 3\n", "machine = \n"])
 def test_bad_settings_are_told_with_their_file(text: str) -> None:
-    places.config_folder().mkdir(parents=True)
+    places.settings_file().parent.mkdir(parents=True)
     places.settings_file().write_text(text, encoding="utf-8")
     with pytest.raises(FileInvalid, match=r"settings\.toml"):
         configured_machine()

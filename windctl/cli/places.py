@@ -6,10 +6,7 @@ from pathlib import Path
 
 import platformdirs
 
-
-def config_folder() -> Path:
-    """Holds `settings.toml` and the folder `machines` of profiles."""
-    return platformdirs.user_config_path("windctl", appauthor=False)
+from windctl.book.places import config_folder
 
 
 def machines_folder() -> Path:
