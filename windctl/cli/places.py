@@ -6,7 +6,10 @@ from pathlib import Path
 
 import platformdirs
 
-from windctl.book.places import config_folder
+
+def config_folder() -> Path:
+    """Holds `settings.toml` and the folder `machines` of profiles; need not exist yet."""
+    return platformdirs.user_config_path("windctl", appauthor=False)
 
 
 def machines_folder() -> Path:
