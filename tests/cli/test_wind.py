@@ -164,6 +164,9 @@ def test_a_simulated_coil_that_was_left_goes_on_only_at_a_confirmed_turn(
     assert coil["program_digest"] == head.program_digest
     assert coil["turns"] == 150
     assert coil["plant"]["true_turns"] == pytest.approx(150, abs=0.01)
+    whole = wound(capsys, "wind", str(recipes.to_turns(tmp_path)), "--book", str(tmp_path / "whole.book"))
+    assert coil["plant"]["true_dcr_20c_ohm"] == pytest.approx(whole["plant"]["true_dcr_20c_ohm"], rel=0.003)
+    assert coil["dcr_20c_ohm"] == pytest.approx(whole["dcr_20c_ohm"], rel=0.01)
     assert run(common) == 2
     assert "no coil is open" in capsys.readouterr().err
 
