@@ -51,6 +51,11 @@ def test_mean_and_peak_are_those_of_a_wound_string(outline: Core, distance: floa
     speed = wire_speed(outline, 1000)
     assert speed.mean_m_s == pytest.approx(speeds.mean(), rel=1e-3)
     assert speed.peak_m_s == pytest.approx(speeds.max(), rel=5e-3)
+    course = list(over_a_revolution(outline, 1000, distance, points=3600))
+    angles, expected = np.array(course).T
+    midway = 2 * np.pi * (np.arange(len(speeds)) + 0.5) / len(speeds)
+    # this string leaves the outline on the other side: the course mirrored
+    assert np.interp(-midway, angles, expected, period=2 * np.pi) == pytest.approx(speeds, abs=0.05)
 
 
 def test_a_long_bobbin_at_1000_rpm() -> None:

@@ -109,6 +109,10 @@ def test_trailing_is_exact_for_a_straight_path_between_samples() -> None:
     assert coarse == pytest.approx(fine[::100], abs=1e-3)
 
 
+def test_a_wire_behind_a_standing_guide_stands() -> None:
+    assert trailing(np.full(200, 5.0), 3.0) == pytest.approx(np.full(200, 5.0))
+
+
 def test_no_lag_changes_nothing() -> None:
     path = np.array([0.0, 1.0, 3.0])
     assert trailing(path, 0.0) is path

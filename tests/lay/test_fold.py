@@ -16,6 +16,7 @@ from windctl.lay.make import program_of
 from windctl.lay.patterns import PATTERNS
 from windctl.lay.program import Program
 from windctl.lay.spec import LaySpec
+from windctl.lay.travel import Travel
 from windctl.lay.turn_rounds import turn_rounds
 
 
@@ -140,6 +141,26 @@ def test_the_play_is_taken_up_after_each_turn_round() -> None:
     out = [(250, 50 + 30), (9750, 1950)]
     expected = [(10_000, 2000)] + [*back, *out] * 4 + back
     assert list(zip(program.counts.tolist(), program.guide.tolist(), strict=True)) == expected
+
+
+def test_a_turn_round_at_the_very_last_count_is_not_overrun() -> None:
+    # 10 turns of 30.06 steps: the end of the stroke is reached 0.8 counts before the program ends
+    program = program_of(LaySpec("even", 10, 40, 300, 30 * SUB + SUB * 6 // 100), 200.0)
+    assert program.guide.tolist() == [300]
+
+
+def test_play_is_taken_up_within_half_a_pass() -> None:
+    plain = LaySpec("even", 200, 100, 500, 20 * SUB)
+    program = program_of(replace(plain, backlash=30, take_up=10**6), 200.0)
+    later = [count for count in range(0, 20_000, 50) if count % 2500 >= 1300]
+    for here, there in zip(guide_at(program, later), guide_at(program_of(plain, 200.0), later), strict=True):
+        assert abs(here - there) <= 1
+
+
+def test_travel_is_looked_up_both_ways() -> None:
+    travel = Travel(np.array([0, 10, 15, 25]), np.array([0, 100, 100, 300]), bends=True)
+    assert travel.at(np.array([0, 5, 10, 12, 20, 25])).tolist() == [0, 50, 100, 100, 200, 300]
+    assert travel.reached(np.array([1, 95, 100, 101, 300])).tolist() == [1, 10, 10, 16, 25]
 
 
 def test_a_longer_program_begins_with_the_shorter_one() -> None:

@@ -42,6 +42,13 @@ def test_every_pass_of_a_stagger_has_a_pitch_and_a_start_of_its_own() -> None:
     assert len(np.unique(moves)) > 900
 
 
+def test_standing_still_takes_nothing_from_the_mean_of_short_passes() -> None:
+    stands, moves = passes(LaySpec("stagger", 30_000, 400, 2160, 510 * SUB, amount=65536, seed=4))
+    mean = 2160 / 510
+    assert stands.max() <= mean / 8
+    assert moves.mean() + stands.mean() == pytest.approx(mean, rel=4 * 0.3 / 3**0.5 / len(moves) ** 0.5)
+
+
 def test_a_stagger_moves_at_one_speed_within_a_pass() -> None:
     program = program_of(spec("stagger", 0.8, turns=2000), 200.0)
     moving = program.guide != 0

@@ -81,6 +81,14 @@ def test_asking_for_a_resistance_of_a_recipe_by_turns() -> None:
     assert plan.program.turns >= plan.turns + 2.9 * plan.turns_sd
 
 
+def test_the_build_is_that_of_the_planned_turns_not_of_the_whole_program() -> None:
+    plan = make_plan(recipe(), VIRTUAL, dcr_ohm=40.0)  # some 61 turns, not half way across the gap
+    longer = make_plan(recipe(stop__max_turns="8000"), VIRTUAL, dcr_ohm=40.0)
+    assert longer.program.turns == 8000
+    assert longer.crown == pytest.approx(plan.crown, rel=1e-3)
+    assert max(longer.build_profile_mm[40:]) == 0
+
+
 def test_asking_for_turns() -> None:
     plan = make_plan(recipe(**TO_OHM, stop__dcr_20c_ohm="5600.0"), VIRTUAL, turns=123)
     assert (plan.turns, plan.program.turns, plan.turns_sd, plan.target_kind) == (123, 123, 0, "turns")

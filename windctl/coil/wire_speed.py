@@ -4,8 +4,8 @@ A taut wire from a standing guide touches the turning outline at a tangent. Its 
 spindle's angular speed times the distance p from the axis to the wire's line: pull times wire speed is
 the power that the spindle's torque, pull times p, puts in. With the tangent's normal at angle a in the
 bobbin, p is the outline's support function h(a) = R + A|cos a| + B|sin a| (R corner radius, A and B half
-the straight parts), and a guide at distance D from the axis sees that tangent when the bobbin stands at
-a - arccos(h(a) / D). So over a revolution, at whatever distance the guide is,
+the straight parts), and a guide at distance D from the axis has that tangent when its bearing, seen from
+the bobbin, is a - arccos(h(a) / D). So over a revolution, at whatever distance the guide is,
 
     mean speed = w * P / (2 * pi)     P the perimeter; what arccos adds is periodic and has no mean
     peak speed = w * (R + hypot(A, B))
@@ -39,7 +39,7 @@ def wire_speed(outline: Core, rpm: float) -> WireSpeed:
 def over_a_revolution(
     outline: Core, rpm: float, guide_distance_mm: float, points: int = 360
 ) -> Iterator[tuple[float, float]]:
-    """(bobbin angle in radians, wire speed in m/s) over one revolution, in order of the angle.
+    """(the guide's bearing seen from the bobbin, radians; wire speed, m/s) over one revolution, in order.
 
     guide_distance_mm is from the axis to the guide, more than the outline's reach, else ValueError.
     """
