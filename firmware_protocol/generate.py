@@ -13,6 +13,7 @@ from __future__ import annotations
 
 import argparse
 import json
+import math
 import struct
 import sys
 import tomllib
@@ -382,7 +383,39 @@ def vectors(definition: Definition) -> str:
             sequence = (message.code * 3 + pattern) % 256
             entry = {"message": message.name, "code": message.code, "sequence": sequence, "fields": values}
             frames.append({**entry, "frame": frame(message.code, sequence, body).hex()})
-    return json.dumps({"format": 1, "schema": definition.schema, "frames": frames}, indent=1) + "\n"
+    worked = {
+        "guide_line": [guide_line(n, g) for n, g in ((7, 3), (8, -5), (10, 10), (11, 0), (400, 14), (1, -1))],
+        "braking": [braking(decel, left) for decel in (3333, 20_000) for left in (1, 2, 10, 1000, 100_000)],
+        "quadrature": quadrature(),
+    }
+    parts = [f'"format": 1,\n"schema": {definition.schema},\n"frames": [\n']
+    parts.append(",\n".join(json.dumps(entry) for entry in frames) + "\n]")
+    for name, rows in worked.items():
+        parts.append(f',\n"{name}": [\n' + ",\n".join(json.dumps(row) for row in rows) + "\n]")
+    return "{\n" + "".join(parts) + "\n}\n"
+
+
+def guide_line(n: int, g: int) -> dict[str, Any]:
+    """Where the guide stands after 0..n counts of a segment of g steps, by the closed formula."""
+    sign = -1 if g < 0 else 1
+    positions = [sign * ((k * abs(g) + n // 2) // n) for k in range(n + 1)]
+    return {"counts": n, "steps": g, "positions": positions}
+
+
+def braking(decel: int, left: int) -> dict[str, int]:
+    """The highest pace with v*v <= 2*decel*left: from it, `left` steps suffice to stand."""
+    return {"decel": decel, "left": left, "pace": math.isqrt(2 * decel * left)}
+
+
+def quadrature() -> list[dict[str, Any]]:
+    """What each change of the two encoder channels counts; states are channel A * 2 + channel B."""
+    ring = (0b00, 0b01, 0b11, 0b10)  # the order in which counting up goes through them
+    rows = []
+    for before in range(4):
+        for now in range(4):
+            moved = (ring.index(now) - ring.index(before)) % 4
+            rows.append({"index": before << 2 | now, "counts": {0: 0, 1: 1, 3: -1}.get(moved)})
+    return rows
 
 
 # ---------------------------------------------------------------- writing and checking

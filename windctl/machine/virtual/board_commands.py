@@ -11,9 +11,9 @@ from collections.abc import Callable
 from typing import TYPE_CHECKING, Any, Final
 
 from windctl.machine.virtual import board_rules as rules
+from windctl.machine.virtual.board_spindle import RUN, SETTLE
 from windctl.machine.virtual.contact_mean import WINDOW_LIMIT
 from windctl.machine.virtual.signals import GUARD_OK, GUIDE_HIGH_OK, GUIDE_LOW_OK, PEDAL_DOWN, STOP_OK
-from windctl.machine.virtual.board_spindle import RUN
 from windctl.protocol import messages as m
 from windctl.protocol.frames import CRC_START
 from windctl.protocol.messages import Capability, Cause, Refusal, State
@@ -142,7 +142,7 @@ def _stop_at(board: Board, stop: m.StopAt) -> Verdict:
         count = board.count if board.count > 0 else 0
     board.stop_point = count
     board.aim()
-    return ACCEPTED, board.target()
+    return ACCEPTED, board.spindle.goal if board.spindle.mode == SETTLE else board.target()
 
 
 def _go(board: Board, _: m.Go) -> Verdict:
