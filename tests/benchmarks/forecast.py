@@ -77,12 +77,13 @@ def score(row: Situation, first_seed: int, coils: int) -> dict[str, float]:
         finish = finish_at(estimate, TURNS)
         ours.append(finish.ohm / true - 1.0)
         halves.append((finish.high - finish.ohm) / true)
-        if readings:
+        if readings and row.meter.bounce == 0.0:  # one infinite reading spoils the rules of thumb
             rule.append(proportional(prior, readings, TURNS) / true - 1.0)
-        if len(readings) >= 3 and row.meter.bounce == 0.0:  # one infinite reading spoils it
+        if len(readings) >= 3 and row.meter.bounce == 0.0:
             fit.append(parabola(prior, readings, TURNS) / true - 1.0)
-    least = bound(grown(row.truth, 600), row.turns[::4] if len(row.turns) > 50 else row.turns, row.meter,
-                  resting=row.resting, cold=row.cold)  # fmt: skip
+    each = max(1, len(row.turns) // 100)  # many dense readings are as good as few sharper ones
+    places = row.turns[each // 2 :: each]
+    least = bound(grown(row.truth, 1000), places, row.meter, resting=row.resting, cold=row.cold, each=each)
     rms = _rms(ours)
     return {
         "rms": 100 * rms,

@@ -24,11 +24,13 @@ def bound(
     *,
     resting: bool = False,
     cold: bool = False,
+    each: int = 1,
 ) -> float:
     """Relative rms of the finished resistance: the posterior Cramer-Rao bound of a Gaussian truth.
 
     It has the sample's mean and covariance, and readings at `turns` with these instruments (Van Trees,
-    Detection, Estimation, and Modulation Theory, part I, from memory).
+    Detection, Estimation, and Modulation Theory, part I, from memory). Each of `turns` stands for the mean of
+    `each` readings near it.
     """
     final = sample[:, TURNS]
     if len(turns) == 0:
@@ -41,5 +43,5 @@ def bound(
     own = ((meter.noise if resting else meter.turning_noise) * mean) ** 2 + meter.floor_ohm**2
     seen = moments[:-1, :-1] + common * np.outer(mean, mean) + np.outer(warmth, warmth) + meter.lead_sd**2
     along = moments[:-1, -1]
-    variance = moments[-1, -1] - along @ np.linalg.solve(seen + np.diag(own), along)
+    variance = moments[-1, -1] - along @ np.linalg.solve(seen + np.diag(own / each), along)
     return sqrt(variance) / float(final.mean())

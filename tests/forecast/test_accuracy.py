@@ -29,6 +29,8 @@ from windctl.forecast.finish import finish_at
 from windctl.forecast.reading import Reading
 from windctl.plan.prior import Prior
 
+pytestmark = pytest.mark.timeout(3600 if LONG else 300)
+
 MEASURED = Truth(wire_sd=0.005)
 FIRST_SEED = 80_000
 

@@ -9,6 +9,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from tests.conftest import LONG
 from tests.forecast.priors import shop, worked
 from tests.forecast.truth import DEFAULT, TURNS, Coil, draw, prior_for, with_bounce
 from windctl.forecast.estimator import Estimate, begin, update
@@ -16,6 +17,8 @@ from windctl.forecast.finish import finish_at, so_far, turn_for
 from windctl.forecast.reading import Reading
 from windctl.forecast.stop import missing_turns, stop_advice
 from windctl.plan.prior import Prior
+
+pytestmark = pytest.mark.timeout(3600 if LONG else 300)
 
 
 def test_without_a_settled_reading_to_come_the_best_guess_is_the_stop() -> None:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from math import exp, log, sqrt
 
 from windctl.forecast.belief import SHOWN, moved
-from windctl.forecast.estimator import Estimate
+from windctl.forecast.estimator import Estimate, Surprise
 
 _RUN = 5  # open circuits, or readings near zero, in a row: a bouncing contact rarely shows two
 _BEYOND = 3.6  # standard deviations of the prior; a right coil goes there once in 3 000
@@ -25,11 +25,14 @@ _MANY_GATED = 10
 
 @dataclass(frozen=True, slots=True)
 class Alarm:
-    """What is wrong: `kind` is "open", "short", "jump", "wire" or "unsteady"; `odds` for "wire" only."""
+    """What is wrong: `kind` is "open", "short", "wire", "jump", "unsteady" or "doubt".
+
+    `odds`, for "wire" only: of the named reason against everything being right.
+    """
 
     kind: str
     text: str
-    odds: float | None = None  # the named reason against everything being right
+    odds: float | None = None
 
 
 def alarm(estimate: Estimate) -> str | None:
@@ -56,24 +59,33 @@ def find_alarm(estimate: Estimate) -> Alarm | None:
     if wire is not None:
         return wire
     if estimate.jump is not None:
-        return _jump(estimate.jump.turn, estimate.jump.expected_ohm, estimate.jump.seen_ohm)
+        return _jump(estimate.jump)
     if estimate.gated >= _MANY_GATED and estimate.gated > estimate.used:
         return Alarm(
             "unsteady",
             f"{estimate.gated} of {estimate.gated + estimate.used} readings disagree with the others: the "
             "forecast rests on the rest; clean the contact or measure at rest",
         )
-    return None
+    return None if estimate.doubt is None else _doubt(estimate.doubt)
 
 
-def _jump(turn: float, expected: float, seen: float) -> Alarm:
-    if seen < expected:
+def _doubt(doubt: Surprise) -> Alarm:
+    return Alarm(
+        "doubt",
+        f"the reading at rest at turn {doubt.turn:.0f} shows {doubt.seen_ohm:.1f} ohm where "
+        f"{doubt.expected_ohm:.1f} ohm is expected, and is not used: measure again, and check the count",
+    )
+
+
+def _jump(jump: Surprise) -> Alarm:
+    if jump.seen_ohm < jump.expected_ohm:
         why = "shorted turns, a short to the core, or turns that were counted but not wound"
     else:
         why = "a bad joint or contact, or turns that were wound but not counted"
     return Alarm(
         "jump",
-        f"at turn {turn:.0f} the readings went from {expected:.1f} to {seen:.1f} ohm and stayed there: {why}",
+        f"at turn {jump.turn:.0f} the readings went from {jump.expected_ohm:.1f} to {jump.seen_ohm:.1f} ohm "
+        f"and stayed there: {why}",
     )
 
 

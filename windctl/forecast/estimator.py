@@ -35,8 +35,8 @@ _ZERO_FROM_OHM = 20.0  # a coil too short to tell from nothing
 
 
 @dataclass(frozen=True, slots=True)
-class Jump:
-    """A rival took over from a trusted belief: the readings left what was known and stayed there."""
+class Surprise:
+    """A reading, or a run of them, far from what was expected."""
 
     turn: float
     expected_ohm: float
@@ -60,7 +60,8 @@ class Estimate:
     gated: int = 0
     open_run: int = 0  # open circuits since the last other reading
     zero_run: int = 0
-    jump: Jump | None = None
+    jump: Surprise | None = None  # the last time that a rival took over from a trusted belief
+    doubt: Surprise | None = None  # a reading at rest that was kept out, until another one is used
 
     @property
     def turn(self) -> float:
@@ -108,6 +109,7 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
 
 def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tuple[Estimate, bool]:
     """A reading outside the gate: it feeds the rival, which takes over once enough readings agree with it."""
+    surprise = Surprise(reading.turn, expected_ohm, reading.ohm)
     rival, agreeing = None, 1
     if estimate.rival is not None:
         rival = _taken(estimate, estimate.rival, reading, gated=True)
@@ -124,9 +126,10 @@ def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tupl
             trust=estimate.trust,
             rival=rival,
             rival_trust=agreeing,
+            doubt=surprise if reading.resting else estimate.doubt,
         ), False
-    jump = Jump(reading.turn, expected_ohm, reading.ohm) if trusted else estimate.jump
-    return replace(_with(estimate, estimate.unrest, rival, trust=agreeing, used=1), jump=jump), True
+    taken_over = _with(estimate, estimate.unrest, rival, trust=agreeing, used=1)
+    return replace(taken_over, jump=surprise) if trusted else taken_over, True
 
 
 def _rivals_start(estimate: Estimate) -> Belief:
@@ -159,6 +162,7 @@ def _with(
     rival: Belief | None = None,
     rival_trust: int = 0,
     used: int = 0,
+    doubt: Surprise | None = None,
 ) -> Estimate:
     """The next estimate; `dataclasses.replace` would cost as much as the update itself."""
     return Estimate(
@@ -176,4 +180,5 @@ def _with(
         0,
         0,
         estimate.jump,
+        doubt,
     )

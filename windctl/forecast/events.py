@@ -52,6 +52,7 @@ def _anew(estimate: Estimate, belief: Belief) -> Estimate:
         trust=max(estimate.trust, 1) if estimate.used else 0,
         rival=None,
         rival_trust=0,
+        doubt=None,
         open_run=0,
         zero_run=0,
     )
