@@ -1,4 +1,4 @@
-"""A machine without flaws around the board: a step is a step, a count comes when it is due, bytes arrive at once.
+"""A flawless machine around the board: a step is a step, a count comes when due, bytes arrive at once.
 
 What the tests spoil on purpose they spoil here: counts that get lost, pins that open, tension, contact.
 """

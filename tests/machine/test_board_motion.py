@@ -1,4 +1,4 @@
-"""How the board drives the spindle: it ends exactly where it must, by the law v^2 = 2*a*s, and never beyond."""
+"""How the board drives the spindle: to exactly where it must stand, by v^2 = 2*a*s, and never beyond."""
 
 from __future__ import annotations
 

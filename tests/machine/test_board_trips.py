@@ -1,4 +1,4 @@
-"""What stops the board by itself: the cause of each trip, how it stops, what is trusted after it, what clears it."""
+"""What stops the board by itself: each trip's cause, how it stops, what is trusted then, what clears it."""
 
 from __future__ import annotations
 
