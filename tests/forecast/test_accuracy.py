@@ -174,4 +174,4 @@ def test_a_truth_from_outside_the_priors_family(long_form: bool) -> None:
     for coil in coils(number, odd, FINE):
         error, _ = told(prior, coil.readings(live(0.9)), float(coil.ohm[TURNS]))
         errors.append(error)
-    assert np.sqrt(np.mean(np.square(errors))) < 0.001
+    assert np.sqrt(np.mean(np.square(errors))) < (0.001 if long_form else 0.0015)

@@ -20,7 +20,7 @@ from dataclasses import dataclass, field, replace
 from math import isfinite, sqrt
 
 from windctl.forecast.belief import Belief, Walk, first_belief, look, moved, told, walk_of
-from windctl.forecast.noise import Unrest, own_variance
+from windctl.forecast.noise import Unrest, near, own_variance
 from windctl.forecast.reading import Reading
 from windctl.forecast.widen import opened
 from windctl.plan.prior import Prior
@@ -93,13 +93,14 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
     surprise = reading.ohm - seen.ohm
     if abs(surprise) > GATE * sqrt(seen.variance + stated * unrest.spread_factor()):
         return _kept_out(estimate, reading, seen.ohm)
-    noise = stated * unrest.weight_factor(not reading.resting)
+    close = near(reading, estimate.belief.turn)
+    noise = stated * unrest.weight_factor(close)
     unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * stated
     trust = 1 if unsure else estimate.trust + 1
     anchor = estimate.belief if unsure else estimate.anchor
     return _with(
         estimate,
-        unrest.heard(surprise, seen.variance + stated),
+        unrest.heard(surprise, seen.variance + stated, close),
         told(belief, seen, reading.ohm, noise),
         anchor=anchor if trust < _TRUSTED else None,
         trust=trust,
@@ -141,14 +142,14 @@ def _rivals_start(estimate: Estimate) -> Belief:
 
 def _taken(estimate: Estimate, start: Belief, reading: Reading, *, gated: bool) -> Belief | None:
     """A rival after a reading: None where it is `gated` and does not agree; else taken at its word."""
-    prior, turning = estimate.prior, not reading.resting
+    prior = estimate.prior
     belief = moved(start, reading.turn, estimate.walk)
     seen = look(belief, reading, prior.contact_length_ohm)
     stated = own_variance(prior, reading, seen.ohm)
     spread = seen.variance + stated * estimate.unrest.spread_factor()
     if gated and abs(reading.ohm - seen.ohm) > GATE * sqrt(spread):
         return None
-    noise = stated * estimate.unrest.weight_factor(turning)
+    noise = stated * estimate.unrest.weight_factor(near(reading, start.turn))
     return told(belief, seen, reading.ohm, noise)
 
 

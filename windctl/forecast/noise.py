@@ -17,9 +17,11 @@ from windctl.plan.prior import Prior
 TURNING_NOISE = 2.0  # over a resting reading's: hum and the turning coil's own voltage are averaged, not gone
 SMALLEST_SD_OHM = 1e-6
 _AS_STATED = 20.0  # readings that the profile's figure is worth
+_AS_WHITE = 8.0  # readings that the belief in white noise is worth
+_NEAR_TURNS = 60.0  # some seconds; what wanders more slowly is the coil
 _WINDOW = 40.0  # readings after which older ones fade
 _QUIET_BELOW, _LOUD_FROM = 0.5, 1.5  # three sd around 1 of the running mean of squares of white noise
-_ALIKE_FROM = 0.25  # nearly three sd above 0 of the running sign figure of white noise
+_ALIKE_FROM = 0.2  # two sd above 0 of the running sign figure of white noise
 _ALIKE_MOST = 0.7  # rho 0.89: a factor of 17
 
 
@@ -36,28 +38,32 @@ class Unrest:
         """By how much the variance of one reading's noise is to be multiplied, 1 or more."""
         return self.loud if self.loud > _LOUD_FROM else 1.0
 
-    def weight_factor(self, turning: bool) -> float:
-        """The same for what a reading teaches: turning ones that share their noise with the next teach less.
+    def weight_factor(self, near: bool) -> float:
+        """The same for what a reading teaches: `near` ones that share their noise with the next teach less.
 
         (1 + rho)/(1 - rho) is the variance of a mean of many such readings over that of as many
         independent ones. Readings much quieter than stated may share a good deal before that matters.
         """
-        if not turning or self.alike <= _ALIKE_FROM:
+        if not near or self.alike <= _ALIKE_FROM:
             return self.spread_factor()
         rho = sin(0.5 * pi * min(self.alike, _ALIKE_MOST))  # of a Gaussian pair, from how often signs agree
         loud = 1.0 if _QUIET_BELOW < self.loud < _LOUD_FROM else self.loud
         return max(loud * (1.0 + rho) / (1.0 - rho), 1.0)
 
-    def heard(self, surprise: float, variance: float) -> Unrest:
+    def heard(self, surprise: float, variance: float, near: bool) -> Unrest:
         """The figures after one more reading let in, `surprise` ohm off where `variance` was stated."""
-        weight = 1.0 / (_AS_STATED + self.readings + 1.0)
+        readings = self.readings + 1.0
         sign = 1.0 if surprise > 0.0 else -1.0
-        return Unrest(
-            self.loud + weight * (surprise * surprise / variance - self.loud),
-            self.alike + weight * (sign * self.last_sign - self.alike),
-            sign,
-            min(self.readings + 1.0, _WINDOW),
-        )
+        alike = self.alike
+        if near:
+            alike += (sign * self.last_sign - alike) / (_AS_WHITE + readings)
+        loud = self.loud + (surprise * surprise / variance - self.loud) / (_AS_STATED + readings)
+        return Unrest(loud, alike, sign, min(readings, _WINDOW))
+
+
+def near(reading: Reading, last_turn: float) -> bool:
+    """Whether a reading can share its noise with the last one: both turning, seconds apart."""
+    return not reading.resting and abs(reading.turn - last_turn) <= _NEAR_TURNS
 
 
 def own_variance(prior: Prior, reading: Reading, expected_ohm: float) -> float:
