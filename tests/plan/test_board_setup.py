@@ -16,8 +16,8 @@ from windctl.protocol.messages import Capability, Setup
 from windctl.recipe.model import Recipe
 
 
-def setup(asked: Recipe, on: MachineProfile, **more: int) -> Setup:
-    return board_setup(asked, on, make_program(asked, on), 0xC0FFEE, **more)
+def setup(asked: Recipe, on: MachineProfile) -> Setup:
+    return board_setup(asked, on, make_program(asked, on), 0xC0FFEE)
 
 
 def test_the_hard_limits_are_the_program_s() -> None:
@@ -72,7 +72,8 @@ def test_the_tension_band_in_sensor_units() -> None:
     sensed = machine(tension__sensor="true")
     told = setup(asked, sensed)
     assert (told.tension_low, told.tension_high) == (7000, 17_000)  # 0.001 cN each
-    coarse = setup(asked, sensed, tension_scale=100)
+    coarse_tension = sensed.tension.model_copy(update={"unit_cn": 0.01})
+    coarse = setup(asked, sensed.model_copy(update={"tension": coarse_tension}))
     assert (coarse.tension_low, coarse.tension_high) == (700, 1700)
     wide = setup(recipe(tension__set_cn="12.0", tension__band_cn="90.0"), sensed)
     assert (wide.tension_low, wide.tension_high) == (0, 65_535)

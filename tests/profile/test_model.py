@@ -37,7 +37,7 @@ DEFAULTS = {
         "travel_mm": 60.0,
         "distance_mm": 100.0,
     },
-    "tension": {"kind": "felt", "sensor": False},
+    "tension": {"kind": "felt", "sensor": False, "unit_cn": 0.001},
     "pedal": False,
     "readings": {
         "mode": "none",

@@ -17,9 +17,8 @@ from windctl.protocol.messages import Capability, Setup
 from windctl.recipe.model import Recipe
 from windctl.recipe.tables import Tension
 
-TENSION_SCALE = 10  # 0.0001 cN per unit of a board's sensor, unless its Identity says otherwise
-
 _ROTATION = {"cw": 0, "ccw": 1}
+
 _NO_UPPER_BOUND = 0xFFFF
 _SLIP_PART = 20  # of a turn: 18 degrees between issued steps and counted position
 _REVERSE_PART = 8  # of a turn: 45 degrees of backing up, as a belt relaxes
@@ -31,8 +30,6 @@ def board_setup(
     profile: MachineProfile,
     program: Program,
     coil_token: int,
-    *,
-    tension_scale: int = TENSION_SCALE,
 ) -> Setup:
     """The Setup of a coil. Raises PlanRefused where no board takes its ramps or its pace.
 
@@ -56,7 +53,7 @@ def board_setup(
             f"braking from {rpm:g} rpm at the machine's spindle.decel_rpm_per_s of {braking:g} rpm/s takes "
             f"{pace / decel:.3g} s, and a board allows {LONGEST_STOP_S} s; turn more slowly or brake harder"
         )
-    low, high = _tension_band(recipe.tension, profile, tension_scale)
+    low, high = _tension_band(recipe.tension, profile)
     counts = program.counts_per_turn
     return Setup(
         coil_token=coil_token,
@@ -98,8 +95,9 @@ def _least_decel(rpm: float, per_turn: int) -> int:
     return max(LEAST_RATE, -(-steps_per_s(rpm, per_turn) // LONGEST_STOP_S))
 
 
-def _tension_band(tension: Tension | None, profile: MachineProfile, scale: int) -> tuple[int, int]:
+def _tension_band(tension: Tension | None, profile: MachineProfile) -> tuple[int, int]:
     """Bounds of the mean tension of a turn in sensor units; none without a sensor or a band."""
+    scale = profile.tension.unit
     if tension is None or tension.set_cn is None or tension.band_cn is None or not profile.tension.sensor:
         return 0, _NO_UPPER_BOUND
     low = max(0, round((tension.set_cn - tension.band_cn) * 10_000 / scale))

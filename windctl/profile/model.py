@@ -129,6 +129,15 @@ class TensionTable(Form):
     sensor: Annotated[
         bool, about("The pull is measured. Without it a broken wire shows only in the reading.")
     ] = False
+    unit_cn: Annotated[
+        float,
+        quantity("cN", "pull per unit of the board's tension input, as the board reports it", ge=1e-4, le=6),
+    ] = 0.001
+
+    @property
+    def unit(self) -> int:
+        """Pull per unit of the sensor as the board says it, 0.0001 cN."""
+        return round(self.unit_cn * 10_000)
 
 
 class Readings(Form):

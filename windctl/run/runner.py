@@ -38,6 +38,7 @@ from windctl.record.events import LinkLost as LinkLostEvent
 from windctl.record.fold import Fit, State, fold
 from windctl.run.journal import MOST_WAITING, TOO_OLD_S, Journal
 from windctl.run.snapshot import Snapshot, snapshot
+from windctl.run.suits import check_board, check_refusal
 
 WAIT_S = 0.010  # the longest the runner listens before it looks up again
 LAST_HOLD_S = 5.0  # how long a failing run tries to see the spindle stand
@@ -173,6 +174,7 @@ class Runner:
         while True:
             for event in (*self._listen(), *self._requested()):
                 self._record((event,))  # one by one: each fact may have a consequence before the next
+                self._check_suits(event)
                 self._settle_decision()
             ended = self._over()
             self._speak()
@@ -197,6 +199,13 @@ class Runner:
                     facts.append(CountCorrected(at_ms, self._at_turn, "operator", "given when resuming"))
                     self._at_turn = None
         return facts
+
+    def _check_suits(self, event: Event) -> None:
+        started = self._state.started
+        if isinstance(event, BoardGreeted) and started is not None:
+            check_board(started, event.identity)
+        elif isinstance(event, CommandRefused):
+            check_refusal(event.refused)
 
     def _requested(self) -> list[Event]:
         events: list[Event] = []

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from windctl.coil.buildup import BuildUp, build_per_turn_mm
 from windctl.coil.geometry import core_of
-from windctl.machine.virtual.plant_spec import PlantSpec, scale_for, tension_unit_for
+from windctl.machine.virtual.plant_spec import PlantSpec, scale_for
 from windctl.profile.model import MachineProfile
 from windctl.recipe.model import Recipe
 
@@ -61,7 +61,7 @@ def plant_for(recipe: Recipe, profile: MachineProfile) -> PlantSpec:
         distance_mm=guide.distance_mm,
         tension_sensor=profile.tension.sensor,
         tension_cn=tension_cn,
-        tension_unit=tension_unit_for(tension_cn),
+        tension_unit=profile.tension.unit,
         readings=readings.mode,
         milliohm_per_unit=scale_for(most_ohm * _HEAD_ROOM),
         lead_ohm=readings.lead_ohm,

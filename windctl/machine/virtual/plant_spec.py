@@ -71,8 +71,3 @@ class PlantSpec:
 def scale_for(ohm: float) -> int:
     """Milliohm per unit of a contact input that must show `ohm`: the common scale, or a larger coil's."""
     return max(MILLIOHM_PER_UNIT, int(ohm * 1000.0 / LAST_UNIT) + 1)
-
-
-def tension_unit_for(cn: float) -> int:
-    """0.0001 cN per unit of a sensor that must show a mean of `cn` and half as much again in its peaks."""
-    return max(TENSION_UNIT, int(cn * 1.6 * 10_000.0 / LAST_UNIT) + 1)
