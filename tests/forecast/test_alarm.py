@@ -60,6 +60,12 @@ def test_shorted_turns_are_told() -> None:
     assert "at turn 780" in found.text
 
 
+def test_half_a_coil_shorted_is_not_taken_for_another_wire() -> None:
+    found = find_alarm(after(*HISTORY, *(good(720.0 + 20.0 * i, 0.6) for i in range(30))))
+    assert found is not None
+    assert found.kind == "jump"
+
+
 def test_turns_wound_and_not_counted_are_told() -> None:
     found = find_alarm(after(*HISTORY, *(good(720.0 + 20.0 * i, 1.05) for i in range(6))))
     assert found is not None

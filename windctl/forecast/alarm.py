@@ -25,7 +25,7 @@ _MANY_GATED = 10
 
 @dataclass(frozen=True, slots=True)
 class Alarm:
-    """What is wrong: `kind` is "open", "short", "wire", "jump", "unsteady" or "doubt".
+    """What is wrong: `kind` is "open", "short", "jump", "wire", "unsteady" or "doubt".
 
     `odds`, for "wire" only: of the named reason against everything being right.
     """
@@ -55,11 +55,11 @@ def find_alarm(estimate: Estimate) -> Alarm | None:
             f"the last {estimate.zero_run} readings show next to nothing: a short across the coil, to the "
             "core, or between the leads; hold, and measure by hand",
         )
+    if estimate.jump is not None:
+        return _jump(estimate.jump)
     wire = _wire(estimate)
     if wire is not None:
         return wire
-    if estimate.jump is not None:
-        return _jump(estimate.jump)
     if estimate.gated >= _MANY_GATED and estimate.gated > estimate.used:
         return Alarm(
             "unsteady",

@@ -49,8 +49,7 @@ def opened(belief: Belief, prior: Prior) -> Belief:
 
 
 def with_new_wire(belief: Belief, expected: Belief, prior: Prior) -> Belief:
-    """Another spool from here on: what was learnt of the old wire is taken out, what was learnt of the coil
-    stays.
+    """Another spool from here on: what was learnt of the old wire goes, what was learnt of the coil stays.
 
     `expected` is the belief at the same turn had there been no reading. With e the old wire's relative
     deviation and r the ohm per turn, e given r is normal with mean k*(r - r_expected), k =
