@@ -12,8 +12,8 @@ import pytest
 
 from tests.cli import recipes
 from tests.cli.processes import answer, begun, call
-from windctl.cli import places
 from windctl.cli.main import run
+from windctl.desk import places
 
 Printed = pytest.CaptureFixture[str]
 

@@ -6,9 +6,9 @@ from pathlib import Path
 
 import pytest
 
-from windctl.cli import places
-from windctl.cli.machines import configured_machine, kept_profiles, profile_of, simulated_here
 from windctl.cli.options import Shared
+from windctl.desk import places
+from windctl.desk.machines import configured_machine, kept_profiles, profile_of, simulated_here
 from windctl.errors import FileInvalid, MachineError, ProfileError
 from windctl.profile.builtin import VIRTUAL
 

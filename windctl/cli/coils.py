@@ -9,9 +9,9 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from windctl.cli import present
-from windctl.cli.books import book_if_any, book_to_read
 from windctl.cli.exit_codes import ExitCode
 from windctl.cli.options import Shared, takes
+from windctl.desk.books import book_if_any, book_to_read
 from windctl.errors import BookError
 
 if TYPE_CHECKING:

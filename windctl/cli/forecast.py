@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING
 import click
 
 from windctl.cli import present, typed
-from windctl.cli.machines import profile_of
 from windctl.cli.options import Shared, takes
+from windctl.desk.machines import profile_of
 from windctl.errors import UsageError
 
 if TYPE_CHECKING:

@@ -6,9 +6,10 @@ from pathlib import Path
 
 import click
 
-from windctl.cli import places, present
-from windctl.cli.machines import VIRTUAL, configured_machine, kept_profiles, profile_of
+from windctl.cli import present
 from windctl.cli.options import Shared, takes
+from windctl.desk import places
+from windctl.desk.machines import VIRTUAL, configured_machine, kept_profiles, profile_of
 from windctl.errors import ProfileError
 
 
@@ -90,7 +91,7 @@ def serve(
 
     The first line on standard output is the URL for --port. SIGUSR1 resets the board.
     """
-    from windctl.cli.bench import DEFAULT_SEED
+    from windctl.desk.bench import DEFAULT_SEED
     from windctl.machine.virtual.serve import serve as serve_machine
     from windctl.recipe.load import load_recipe, parse_recipe
 

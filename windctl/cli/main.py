@@ -75,7 +75,7 @@ def run(arguments: Sequence[str] | None = None) -> ExitCode:
 
 
 def _fault(error: Exception) -> ExitCode:
-    from windctl.cli.log import log_fault
+    from windctl.desk.log import log_fault
 
     path = log_fault(error)
     present.message(f"windctl met a fault of its own: {type(error).__name__}: {error}")

@@ -8,35 +8,20 @@ from __future__ import annotations
 
 import functools
 from collections.abc import Callable
-from dataclasses import dataclass, fields
+from dataclasses import fields
 from pathlib import Path
 from typing import Any, Concatenate, ParamSpec, TypeVar
 
 import click
 
+from windctl.desk.asked import Shared
+
+__all__ = ["Shared", "all_options", "takes"]
+
 P = ParamSpec("P")
 R = TypeVar("R")
 
 _GIVEN = "windctl.options"
-
-
-@dataclass(frozen=True, slots=True)
-class Shared:
-    """The shared options of one call, wherever they stood. None or False: not given."""
-
-    json: bool = False
-    book: Path | None = None
-    machine: str | None = None
-    port: str | None = None
-    speed: float | None = None
-    plant_seed: int | None = None
-    readings: str | None = None
-    dry_run: bool = False
-    at_turn: float | None = None
-    batch: str | None = None
-    of: int | None = None
-    quiet: bool = False
-    no_input: bool = False
 
 
 def _keep(ctx: click.Context, param: click.Parameter, value: Any) -> None:

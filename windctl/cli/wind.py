@@ -9,20 +9,18 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from windctl.cli import present, typed
-from windctl.cli.books import book_to_read, book_to_write
 from windctl.cli.exit_codes import ExitCode, code_for, code_for_coil
-from windctl.cli.machines import VIRTUAL, profile_of, simulated_here
 from windctl.cli.options import Shared, takes
 from windctl.cli.plan import show_plan
+from windctl.desk.books import book_to_read, book_to_write
+from windctl.desk.going_on import open_coil, recorded_profile
+from windctl.desk.machines import profile_of, simulated_here
 from windctl.errors import RecipeError, RecordBroken, UsageError
 
 if TYPE_CHECKING:
-    from windctl.book.book import Book
-    from windctl.book.heads import CoilHead
-    from windctl.cli.bench import Bench
+    from windctl.desk.bench import Bench
     from windctl.plan.model import Plan
     from windctl.profile.model import MachineProfile
-    from windctl.record.events import CoilStarted
     from windctl.run.outcome import Outcome
     from windctl.run.wind import Winding
 
@@ -49,7 +47,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     On a real machine nothing turns before a typed go or a press of the pedal. Ctrl-C holds the spindle
     and leaves the coil open, for `windctl resume`. It is no emergency stop: use the hardware stop.
     """
-    from windctl.cli.bench import open_bench
+    from windctl.desk.bench import open_bench
     from windctl.forms.source import read_text
     from windctl.plan.make import make_plan
     from windctl.recipe.load import parse_recipe
@@ -85,17 +83,17 @@ def resume(shared: Shared, coil: str | None) -> ExitCode:
 
     The board is asked where the coil stands. Where it no longer knows, count the turns and give --at-turn.
     """
-    from windctl.cli.bench import open_bench
+    from windctl.desk.bench import open_bench
     from windctl.recipe.load import parse_recipe
     from windctl.record.events import CoilStarted
     from windctl.run.wind import go_on
 
     with book_to_read(shared) as book:
-        head = _open_coil(book, coil, None if shared.machine is None else profile_of(shared).bench)
+        head = open_coil(book, coil, None if shared.machine is None else profile_of(shared).bench)
         started = next(iter(book.events(head.number)))
     if not isinstance(started, CoilStarted):
         raise RecordBroken(f"the record of coil {head.number} does not begin with its start")
-    profile = _recorded_profile(shared, started)
+    profile = recorded_profile(shared, started)
     simulated = simulated_here(shared, profile)
     if shared.dry_run:
         where = "on the simulated machine" if simulated else f"on {profile.port.url}"
@@ -105,29 +103,6 @@ def resume(shared: Shared, coil: str | None) -> ExitCode:
     with open_bench(shared, profile, simulated, recipe, started) as bench, book_to_write(shared) as book:
         winding = go_on(head.number, book, bench.port, bench.here, shared.at_turn)
         return _stand_by(shared, winding, bench)
-
-
-def _open_coil(book: Book, coil: str | None, bench: str | None) -> CoilHead:
-    """The coil to go on with: the one named, or the only one open."""
-    if coil is not None:
-        return book.find(coil)
-    heads = book.open_coils(bench)
-    if not heads:
-        raise UsageError("no coil is open: there is nothing to go on with")
-    if len(heads) > 1:
-        named = ", ".join(head.number for head in heads)
-        raise UsageError(f"several coils are open ({named}): say which one to go on with")
-    return heads[0]
-
-
-def _recorded_profile(shared: Shared, started: CoilStarted) -> MachineProfile:
-    """The machine as it was when the coil began; only the port may be another one now."""
-    from windctl.profile.model import MachineProfile
-
-    recorded = MachineProfile.model_validate_json(started.profile_json)
-    now = profile_of(shared) if shared.machine is not None else recorded
-    url = shared.port if shared.port not in (None, VIRTUAL) else now.port.url
-    return recorded.model_copy(update={"port": now.port.model_copy(update={"url": url})})
 
 
 def _dry_run(shared: Shared, plan: Plan) -> ExitCode:
@@ -153,10 +128,10 @@ def _before(shared: Shared, plan: Plan, profile: MachineProfile) -> None:
 
 def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
     """Watch the run to its end, tell how it went, and with which code."""
-    from windctl.cli.log import faults_of_threads
     from windctl.cli.progress import face_for
     from windctl.cli.prompt import Prompt
     from windctl.cli.watch import stand_by
+    from windctl.desk.log import faults_of_threads
 
     if not shared.quiet:
         present.message(f"coil {winding.number} on {bench.name}")

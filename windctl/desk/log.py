@@ -9,7 +9,7 @@ from contextlib import contextmanager
 from logging.handlers import RotatingFileHandler
 from pathlib import Path
 
-from windctl.cli.places import log_file
+from windctl.desk.places import log_file
 
 _BYTES = 500_000
 _FILES = 4

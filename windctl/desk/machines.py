@@ -7,11 +7,11 @@ import tomllib
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from windctl.cli import places
+from windctl.desk import places
 from windctl.errors import FileInvalid, MachineError, Problem
 
 if TYPE_CHECKING:
-    from windctl.cli.options import Shared
+    from windctl.desk.asked import Shared
     from windctl.profile.model import MachineProfile
 
 VIRTUAL = "virtual"

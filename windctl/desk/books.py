@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from windctl.book.book import Book
-    from windctl.cli.options import Shared
+    from windctl.desk.asked import Shared
 
 
 def book_if_any(shared: Shared) -> AbstractContextManager[Book | None]:

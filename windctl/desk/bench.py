@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING
 from windctl.errors import UsageError
 
 if TYPE_CHECKING:
-    from windctl.cli.options import Shared
+    from windctl.desk.asked import Shared
     from windctl.machine.ports import Port
     from windctl.machine.virtual.plant import PlantTruth
     from windctl.profile.model import MachineProfile
