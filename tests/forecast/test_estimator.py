@@ -73,6 +73,24 @@ def test_a_jump_that_stays_is_followed_and_remembered() -> None:
     assert estimate.belief.mean[0] == pytest.approx(expected, rel=2e-3)
 
 
+@pytest.mark.parametrize("from_turn", [0.0, 1500.0])
+@pytest.mark.parametrize(("factor", "off"), [(0.6, 0.0), (2.5, 0.0), (1.0, 60.0), (1.2, -20.0)])
+def test_readings_that_agree_with_each_other_never_starve(
+    factor: float, off: float, from_turn: float
+) -> None:
+    """A leak across the coil, another wire, long leads: whatever the prior holds of it, it is followed."""
+    readings = []
+    for turn in np.arange(60.0, 3000.0, 15.0):
+        right = good(float(turn), resting=False)
+        wrong = replace(right, ohm=right.ohm * factor + off)
+        readings.append(wrong if turn >= from_turn else right)
+    estimate, verdicts = fed(shop(), readings)
+    assert all(verdicts[-60:])
+    assert sum(not used for used in verdicts) <= 16
+    shown = readings[-1].ohm - 1.32
+    assert estimate.belief.mean[0] == pytest.approx(shown, rel=2e-3)
+
+
 def test_scattered_bad_readings_never_unseat_a_trusted_belief() -> None:
     rng = random.Random(3)
     readings = []

@@ -6,9 +6,9 @@ alone can starve: one bad reading let in while little is known shuts out every g
 
 - a reading that is let in while the gate is much wider than the reading's own noise is not yet trusted: the
   belief before it (`anchor`) is kept until later readings agree with it;
-- a reading that is kept out starts a rival belief, from the anchor or, with a trusted past, from the
-  present belief with its resistance opened up. Readings that agree with the rival feed it. When enough have
-  in a row, it takes over.
+- a reading that is kept out starts a rival belief, from the anchor or, with a trusted past or when none has
+  agreed for a while, from the present belief with its resistance opened up. Readings that agree with the
+  rival feed it. When enough have in a row, it takes over.
 
 Open circuits and readings near zero feed nothing; they are counted for the alarm. An estimate has a
 constant size.
@@ -29,6 +29,7 @@ GATE = 4.5  # standard deviations; a good reading falls outside once in 150 000
 _UNSURE = 3.0  # expected sd over own noise from which one reading alone is not trusted
 _TRUSTED = 2  # readings that agree, the first included
 _UNSEATS_TRUSTED = 4  # readings kept out in a row, agreeing among themselves, that unseat a trusted belief
+_OPENS_AFTER = 8  # readings kept out in a row after which a rival no longer starts from the prior
 _OPEN_FACTOR = 5.0  # beyond this multiple of what is expected: an open circuit
 _ZERO_PART = 0.1  # below this part of what is expected: no coil between the probes
 _ZERO_FROM_OHM = 20.0  # a coil too short to tell from nothing
@@ -58,6 +59,7 @@ class Estimate:
     rival_trust: int = 0
     used: int = 0
     gated: int = 0
+    kept_out: int = 0  # in a row, open circuits and readings near zero not counted
     open_run: int = 0  # open circuits since the last other reading
     zero_run: int = 0
     jump: Surprise | None = None  # the last time that a rival took over from a trusted belief
@@ -135,9 +137,9 @@ def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tupl
 
 def _rivals_start(estimate: Estimate) -> Belief:
     """The belief that a reading kept out is to be believed from."""
-    if estimate.anchor is not None:
-        return estimate.anchor
-    return estimate.belief if estimate.trust == 0 else opened(estimate.belief, estimate.prior)
+    if estimate.trust >= _TRUSTED or estimate.kept_out >= _OPENS_AFTER:
+        return opened(estimate.belief, estimate.prior)
+    return estimate.anchor or estimate.belief
 
 
 def _taken(estimate: Estimate, start: Belief, reading: Reading, *, gated: bool) -> Belief | None:
@@ -178,6 +180,7 @@ def _with(
         rival_trust,
         estimate.used + used,
         estimate.gated + 1 - used,
+        0 if used else estimate.kept_out + 1,
         0,
         0,
         estimate.jump,

@@ -11,7 +11,7 @@ from windctl.plan.prior import Prior
 
 SPLICE_REL = 0.002  # ohm per metre on the two sides of a break: the end was pulled on
 SPLICE_TURNS_SD = 1.0  # turns lost or wound twice at a splice
-JUMP_REL = 0.5  # an opened resistance may be anything
+ANYTHING_REL = 0.5  # an opened resistance, and its slope, may be anything
 
 
 def with_resistance_variance(belief: Belief, variance: float) -> Belief:
@@ -43,9 +43,9 @@ def wire_sd_rel(prior: Prior) -> float:
 
 
 def opened(belief: Belief, prior: Prior) -> Belief:
-    """A belief that has been proven wrong somewhere: resistance free, wire as uncertain as at the start."""
-    free = (JUMP_REL * belief.mean[SHOWN]) ** 2 + (prior.turns * 0.01 * prior.ohm_per_turn) ** 2
-    return with_wire_variance(with_resistance_variance(belief, free), wire_sd_rel(prior) ** 2)
+    """A belief that has been proven wrong somewhere: resistance and ohm per turn are to be found anew."""
+    free = (ANYTHING_REL * belief.mean[SHOWN]) ** 2 + (prior.turns * 0.01 * prior.ohm_per_turn) ** 2
+    return with_wire_variance(with_resistance_variance(belief, free), ANYTHING_REL**2)
 
 
 def with_new_wire(belief: Belief, expected: Belief, prior: Prior) -> Belief:
