@@ -9,7 +9,8 @@ from dataclasses import dataclass
 class Prior:
     """Prior of R20(n) = ohm_per_turn * n + growth * n**2 / 2, and of the errors of its readings.
 
-    Both coefficients are at 20 degrees C; rho is in both, so they are correlated. sd_* are standard deviations.
+    Both coefficients are at 20 degrees C; rho is in both, so they are correlated. sd_* are standard
+    deviations.
     """
 
     ohm_per_turn: float  # ohm per turn at the core: rho * P0
