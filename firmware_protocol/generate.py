@@ -3,8 +3,8 @@
     python firmware_protocol/generate.py           write every generated file anew
     python firmware_protocol/generate.py --check   write nothing; exit 1 and name what is stale
 
-Generated: the host's codec `windctl/protocol/messages.py`, the golden frames `vectors.json` and the tables in
-README.md. A writer is a function from the checked `Definition` to text; another language is one more function
+Generated: the host's codec `windctl/protocol/messages.py`, the board's `core/windctl_messages.h` and `.c`, the
+golden frames `vectors.json` and the tables in README.md. A writer is a function from the checked `Definition` to text; another language is one more function
 in `OUTPUTS`. Only the standard library is used, and frames are built here by the letter of the specification
 (bitwise CRC, byte-wise COBS), so that the vectors are a check on the real codecs and not a copy of them.
 """
@@ -24,8 +24,13 @@ from pathlib import Path
 from typing import Any
 
 HERE = Path(__file__).resolve().parent
+sys.path.insert(0, str(HERE))  # also where this file is loaded by its path
+import c_codec  # noqa: E402 - needs the path above
+
 DEFINITION = HERE / "messages.toml"
 CODEC = HERE.parent / "windctl" / "protocol" / "messages.py"
+C_HEADER = HERE / "core" / "windctl_messages.h"
+C_SOURCE = HERE / "core" / "windctl_messages.c"
 VECTORS = HERE / "vectors.json"
 SPECIFICATION = HERE / "README.md"
 
@@ -60,6 +65,11 @@ class Field:
     unit: str
     about: str
 
+    @property
+    def size(self) -> int:
+        """Bytes."""
+        return WIDTH[self.type]
+
 
 @dataclass(frozen=True)
 class Message:
@@ -76,7 +86,7 @@ class Message:
     @property
     def size(self) -> int:
         """Bytes of the body."""
-        return sum(WIDTH[field.type] for field in self.fields)
+        return sum(field.size for field in self.fields)
 
     @property
     def format(self) -> str:
@@ -105,6 +115,13 @@ class Definition:
     tables: dict[str, dict[str, int]]
     messages: tuple[Message, ...]
     trips: tuple[TripRow, ...]
+    body_limit: int = BODY_LIMIT
+    segments: int = SEGMENTS
+
+    def enums(self) -> list[tuple[str, list[tuple[str, int]]]]:
+        """Every table of named values under its name in the codecs, the trips last."""
+        tables = [(name, list(self.tables[table].items())) for table, (name, _) in TABLES.items()]
+        return [*tables, ("Trip", [("none", 0), *((trip.name, trip.code) for trip in self.trips)])]
 
     @property
     def schema(self) -> int:
@@ -422,6 +439,8 @@ def quadrature() -> list[dict[str, Any]]:
 
 OUTPUTS: dict[Path, Callable[[Definition], str]] = {
     CODEC: python_codec,
+    C_HEADER: c_codec.header,
+    C_SOURCE: c_codec.source,
     VECTORS: vectors,
 }
 
