@@ -14,7 +14,8 @@ from tests.record.samples import CPT, identity, reading, started, status
 from windctl.protocol.messages import Cause, Go, InputBit, Refusal, Refused, Trip
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, Permission
-from windctl.record.decide import SETTLED_ENOUGH, Decision, decide
+from windctl.record.decide import Decision, decide
+from windctl.record.ending import SETTLED_ENOUGH
 from windctl.record.events import (
     BoardGreeted,
     ClearGiven,

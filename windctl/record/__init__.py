@@ -4,8 +4,9 @@ events     the facts, named in past tense
 canonical  their one written form
 chain      the digests that tie each fact to all before it
 entries    facts as rows: rare ones singly, dense ones in lossless chunks
+state      what is known of a coil
 fold       state' = fold(state, event)
-decide     (events, wants) = decide(state)
+decide     (events, wants) = decide(state), made of noticing, stopping, ending, consent and wanting
 summary    what the coil book's index says of a coil
 curve      resistance over turns, thinned for eyes and queries
 trace      the digest of a coil's facts without clock and names

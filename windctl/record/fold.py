@@ -6,20 +6,16 @@ consents that still count, and a few counters. Nothing here decides anything; `w
 
 from __future__ import annotations
 
-from binascii import crc_hqx
 from collections.abc import Iterable
-from dataclasses import dataclass, replace
-from enum import Enum
+from dataclasses import replace
 
-from windctl.forecast.estimator import Estimate, begin, update
+from windctl.forecast.estimator import begin, update
 from windctl.forecast.reading import Reading as CoilReading
-from windctl.protocol.frames import CRC_START
 from windctl.protocol.messages import (
     Arm,
     ClearTrip,
     Go,
     Identity,
-    InputBit,
     ReadingFlag,
     Refused,
     Status,
@@ -48,84 +44,12 @@ from windctl.record.events import (
     Tripped,
     WentOn,
 )
+from windctl.record.state import Fit, State, setup_crc
+
+__all__ = ["SETTLE_TICKS", "Fit", "State", "fold", "replay", "setup_crc", "start"]
 
 # A reading at rest counts as settled when its whole window lies this long after the spindle stood.
 SETTLE_TICKS = 500
-
-
-class Fit(Enum):
-    """How the board that answered relates to this coil."""
-
-    UNKNOWN = "unknown"  # nobody has answered yet
-    FRESH = "fresh"  # nothing has ever been let go for this coil: the board is to be set up for it
-    SAME = "same"  # the board has this coil in hand; its count and its place in the program are the coil's
-    LOST = "lost"  # the board does not know where this coil stands: only the operator can tell the turn
-    CORRECTED = "corrected"  # the operator has told the turn: the board is to be set up for it
-
-
-@dataclass(frozen=True, slots=True)
-class State:
-    """One coil as its facts tell it. `None` is "not known" throughout."""
-
-    started: CoilStarted | None = None
-    identity: Identity | None = None  # since the last greeting of this run
-    status: Status | None = None  # of this conversation
-    fit: Fit = Fit.UNKNOWN
-    let_go: bool = False  # a consent was ever given: the spindle may have turned for this coil
-    turning: bool = False
-    boot: int = 0  # the board's boot number and epoch when it was last known to have this coil in hand
-    epoch: int = 0
-    count: int = 0  # the last count that is known for sure
-    next: int = 0  # segments laid by then
-    consent: GoGiven | None = None
-    consented_since_greeting: bool = False
-    hold: HoldRequested | None = None
-    end: EndRequested | None = None
-    clear: Permission | None = None
-    stop_point: int | None = None  # counts
-    stop_choices: int = 0
-    top_ups: int = 0  # stop points chosen after the first stop at the target
-    held: Held | None = None  # since the spindle last came to rest
-    tripped: Tripped | None = None
-    corrected: CountCorrected | None = None  # counts until the board has turned again
-    refused: Refused | None = None  # the last refusal since the last consent
-    link_lost: LinkLost | None = None
-    estimate: Estimate | None = None
-    reading: CoilReading | None = None  # the last one, used or not
-    fresh_reading: bool = False  # the latest word of the board was a reading that taught something
-    readings_used: int = 0
-    readings_gated: int = 0
-    settled_readings: int = 0  # used ones since the spindle came to rest
-    finished: CoilFinished | None = None
-
-    @property
-    def counts_per_turn(self) -> int:
-        """Encoder counts in one turn of the spindle; 1 before the coil has started."""
-        return self.started.setup.counts_per_turn if self.started else 1
-
-    @property
-    def turns(self) -> float:
-        """Turns on the bobbin as last known."""
-        return self.count / self.counts_per_turn
-
-    @property
-    def standing(self) -> bool:
-        """The board says that nothing is driven and nothing turns any more."""
-        status = self.status
-        return (
-            status is not None
-            and status.state != BoardState.TURNING
-            and bool(status.inputs & InputBit.STANDING)
-        )
-
-    @property
-    def permission(self) -> Permission | None:
-        """The board's present boot and epoch: what a consent given now would be good for."""
-        if self.status is not None:
-            return Permission(self.status.boot, self.status.epoch)
-        if self.identity is not None:
-            return Permission(self.identity.boot, self.identity.epoch)
-        return None
 
 
 def start() -> State:
@@ -226,11 +150,6 @@ def _fit(state: State, identity: Identity) -> Fit:
         and identity.next >= state.next
     )
     return Fit.SAME if same else Fit.LOST
-
-
-def setup_crc(started: CoilStarted) -> int:
-    """What the board reports as its setup once it has this coil's."""
-    return crc_hqx(started.setup.encode_body(), CRC_START)
 
 
 def _refused(state: State, refused: Refused) -> State:

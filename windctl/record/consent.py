@@ -1,0 +1,96 @@
+"""Who has consented to what, and what only a person can give next."""
+
+from __future__ import annotations
+
+from windctl.protocol.messages import Arm, Capability, Cause, ClearTrip, Go, InputBit, Refusal, Trip
+from windctl.protocol.messages import State as BoardState
+from windctl.protocol.wants import Permission
+from windctl.record.events import Event, GoGiven
+from windctl.record.state import Fit, State
+
+
+def follows_from_consent(state: State, at_ms: int) -> tuple[Event, ...]:
+    """The starts that follow from a consent already given: after powering the drives, or by the pedal."""
+    status, permission = state.status, state.permission
+    if status is None or permission is None:
+        return ()
+    if not _powered_byfollows_from_consent(state):
+        return ()
+    if _pedal_fitted(state) and not status.inputs & InputBit.PEDAL_DOWN:
+        return ()
+    by = "pedal" if _pedal_fitted(state) else "consent"
+    return (GoGiven(at_ms, permission.boot, permission.epoch, by),)
+
+
+def _powered_byfollows_from_consent(state: State) -> bool:
+    """Exactly the powering that was consented to has happened since the consent, and nothing else."""
+    consent, status = state.consent, state.status
+    return (
+        consent is not None
+        and status is not None
+        and status.state == BoardState.READY
+        and status.cause == Cause.ARM
+        and status.boot == consent.boot
+        and status.epoch == (consent.epoch + 1) & 0xFFFF
+    )
+
+
+def _pedal_fitted(state: State) -> bool:
+    assert state.started is not None
+    return bool(state.started.setup.fitted & Capability.PEDAL)
+
+
+def asks(state: State) -> str | None:
+    status, permission = state.status, state.permission
+    if status is None or permission is None or state.end is not None:
+        return None
+    if status.state == BoardState.TRIPPED:
+        return None if state.clear == permission else "clear"
+    if status.state == BoardState.TURNING or not state.standing:
+        return None
+    if state.held is not None and state.stop_point is not None and state.count >= state.stop_point:
+        return None  # settling
+    if _consented(state):
+        return None
+    if (
+        state.fit is Fit.FRESH
+        and status.state != BoardState.DRIVES_OFF
+        and not state.consented_since_greeting
+    ):
+        return None  # still to be disarmed and set up
+    return "go"
+
+
+def _consented(state: State) -> bool:
+    """A consent is on its way to the board: to power the drives, to start, or it waits for the pedal."""
+    return given(state) is not None or _powered_byfollows_from_consent(state)
+
+
+def given(state: State) -> Permission | None:
+    """The consent that counts for the board as it is now."""
+    consent = state.consent
+    if consent is None or state.permission != Permission(consent.boot, consent.epoch):
+        return None
+    return state.permission
+
+
+def blocked(state: State) -> str | None:
+    if state.status is not None and state.status.state == BoardState.TRIPPED:
+        return f"the board is tripped ({Trip(state.status.trip).name.lower().replace('_', ' ')})"
+    refused = state.refused
+    if refused is not None and refused.command in (Arm.CODE, Go.CODE, ClearTrip.CODE):
+        return f"the board refused: {Refusal(refused.why).name.lower().replace('_', ' ')}"
+    return None
+
+
+def why_lost(state: State) -> str:
+    identity = state.identity
+    assert identity is not None and state.started is not None
+    if identity.boot != state.boot:
+        why = "the board was reset since"
+    elif identity.coil_token != state.started.setup.coil_token:
+        why = "the board has had another coil since"
+    else:
+        why = "what the board reports does not go on from the record"
+    says = identity.count / state.counts_per_turn
+    return f"{why}; the record ends at turn {state.turns:.2f}, the board says {says:.2f}"

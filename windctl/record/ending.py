@@ -1,0 +1,93 @@
+"""How a coil ends: tripped, ended by somebody, or at its target, judged and with a reason."""
+
+from __future__ import annotations
+
+from windctl.forecast.finish import finish_at, so_far
+from windctl.forecast.stop import missing_turns
+from windctl.forecast.verdict import verdict
+from windctl.protocol.messages import Trip
+from windctl.record.events import CoilFinished, Event, StopPointChosen
+from windctl.record.state import State
+
+SETTLED_ENOUGH = 8  # readings at rest before the coil is judged
+SETTLE_LIMIT_TICKS = 8_000  # without them it is judged on what there is
+MOST_TOP_UPS = 3
+
+
+def ending(state: State, at_ms: int) -> tuple[Event, ...]:
+    started, status = state.started, state.status
+    assert started is not None
+    if state.tripped is not None and state.standing:
+        trip = Trip(state.tripped.trip)
+        return (
+            _finished(state, at_ms, "tripped", f"the board tripped: {trip.name.lower().replace('_', ' ')}"),
+        )
+    if state.end is not None and state.standing:
+        return (_finished(state, at_ms, "stopped", state.end.reason),)
+    held = state.held
+    if status is None or held is None or state.stop_point is None or state.count < state.stop_point:
+        return ()
+    if started.readings_mode == "live" and not _settled(state):
+        return ()
+    if started.target.kind == "turns":
+        return (_finished(state, at_ms, "finished", "the turns asked for are wound"),)
+    if started.readings_mode != "live" or state.settled_readings == 0:
+        return (
+            _finished(
+                state, at_ms, "finished", "stopped where the forecast meets the target; no settled reading"
+            ),
+        )
+    return _judge_resistance(state, at_ms)
+
+
+def _settled(state: State) -> bool:
+    assert state.held is not None and state.status is not None
+    return (
+        state.settled_readings >= SETTLED_ENOUGH
+        or state.status.ticks - state.held.ticks >= SETTLE_LIMIT_TICKS
+    )
+
+
+def _judge_resistance(state: State, at_ms: int) -> tuple[Event, ...]:
+    """At rest, with a settled reading: add the turns still missing, or say how many are too many."""
+    started = state.started
+    assert started is not None and state.estimate is not None
+    target = started.target
+    cpt = started.setup.counts_per_turn
+    missing = missing_turns(state.estimate, state.turns, target.value)
+    more = round(missing.turns)
+    room = target.max_turns - round(state.turns)
+    if more >= 1 and room >= 1 and state.top_ups < MOST_TOP_UPS:
+        more = min(more, room)
+        finish = finish_at(state.estimate, state.turns + more)
+        words = f"{more} turns missing after the settled reading"
+        return (StopPointChosen(at_ms, state.count + more * cpt, words, finish.ohm, finish.sd),)
+    if more >= 1 and room < 1:
+        return (
+            _finished(
+                state, at_ms, "finished", f"the most turns allowed are wound; {more} turns are missing"
+            ),
+        )
+    if more <= -1:
+        words = f"unwind {-more} +- {max(1, round(1.96 * missing.sd))} turns to meet the target"
+        return (_finished(state, at_ms, "finished", words),)
+    return (_finished(state, at_ms, "finished", "the target is met"),)
+
+
+def _finished(state: State, at_ms: int, outcome: str, reason: str) -> CoilFinished:
+    started = state.started
+    assert started is not None and state.estimate is not None
+    turns = state.turns
+    finish = so_far(state.estimate, turns)
+    u95 = (finish.high - finish.low) / 2.0
+    target = started.target
+    if target.kind == "turns":
+        low = high = turns
+    else:
+        low, high = finish.low, finish.high
+    judged = (
+        verdict(low, high, target.value, target.tolerance_pct)
+        if outcome == "finished" and (target.kind == "turns" or started.readings_mode != "none")
+        else "not judged"
+    )
+    return CoilFinished(at_ms, outcome, reason, state.count, turns, finish.ohm, u95, judged)

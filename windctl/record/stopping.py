@@ -1,0 +1,38 @@
+"""Where to stop."""
+
+from __future__ import annotations
+
+from windctl.forecast.finish import finish_at
+from windctl.forecast.stop import stop_advice
+from windctl.record.events import Event, StopPointChosen
+from windctl.record.state import State
+
+
+def stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
+    started = state.started
+    assert started is not None and state.estimate is not None
+    target = started.target
+    cpt = started.setup.counts_per_turn
+    if target.kind == "turns":
+        count = round(target.value * cpt)
+        if state.stop_point == count:
+            return ()
+        finish = finish_at(state.estimate, target.value)
+        return (StopPointChosen(at_ms, count, "the turns asked for", finish.ohm, finish.sd),)
+    if state.stop_point is not None and not (state.turning and state.fresh_reading and state.top_ups == 0):
+        return ()  # nothing new to learn; and the last missing turns are counted out, not forecast anew
+    chosen = None if state.stop_point is None else state.stop_point // cpt
+    advice = stop_advice(
+        state.estimate,
+        state.turns,
+        target.value,
+        target.min_turns,
+        target.max_turns,
+        chosen,
+        settles=started.readings_mode == "live",
+    )
+    if advice.turn == chosen:
+        return ()
+    finish = finish_at(state.estimate, advice.turn)
+    words = "the least or most turns allowed" if advice.limited else "where the forecast nears the target"
+    return (StopPointChosen(at_ms, advice.turn * cpt, words, finish.ohm, finish.sd),)
