@@ -22,6 +22,7 @@ from windctl.record.decide import Decision, decide
 from windctl.record.entries import Packer
 from windctl.record.events import (
     BEFORE_ACTING,
+    DENSE,
     BoardGreeted,
     ClearGiven,
     CommandRefused,
@@ -37,6 +38,7 @@ from windctl.record.events import (
 from windctl.record.events import LinkLost as LinkLostEvent
 from windctl.record.fold import Fit, State, fold
 from windctl.run.journal import MOST_WAITING, TOO_OLD_S, Journal
+from windctl.run.outlook import Ahead, outlook
 from windctl.run.snapshot import Snapshot, snapshot
 from windctl.run.suits import check_board, check_refusal
 
@@ -132,6 +134,7 @@ class Runner:
         self._ended: Ended | None = None
         self._done = threading.Event()
         self._begun = False
+        self._rare: list[Event] = []
 
     # ------------------------------------------------------------ for other threads
 
@@ -142,6 +145,14 @@ class Runner:
     def look(self) -> Snapshot:
         """The latest picture of the run."""
         return snapshot(*self._picture, self._steps_per_mm)
+
+    def outlook(self) -> tuple[Ahead, ...]:
+        """The forecast from here to the stop."""
+        return outlook(self._picture[0])
+
+    def facts(self, after: int = 0) -> tuple[Event, ...]:
+        """The rare facts of this run in order, without the first `after` of them."""
+        return tuple(self._rare[after:])
 
     @property
     def greeted(self) -> Identity | None:
@@ -317,6 +328,7 @@ class Runner:
         for event in events:
             state = fold(state, event)
         self._state = state
+        self._rare.extend(event for event in events if not isinstance(event, DENSE))
         entries = self._packer.add(events)
         urgent = any(not isinstance(event, StatusHeard | ReadingTaken) for event in events)
         ticket = self._journal.put(entries, urgent=urgent)

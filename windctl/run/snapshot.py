@@ -36,6 +36,7 @@ class Snapshot:
     asks: str | None
     readings_used: int
     readings_gated: int
+    slow_turn: float | None = None  # where the last slow turns begin
 
 
 def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
@@ -70,6 +71,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         asks=decision.asks,
         readings_used=state.readings_used,
         readings_gated=state.readings_gated,
+        slow_turn=_slow_turn(state, stop),
     )
 
 
@@ -101,8 +103,8 @@ def _says(state: State, decision: Decision) -> str:
     phase = _phase(state)
     if phase == "turning" and state.stop_point is not None and state.started is not None:
         stop = state.stop_point / state.counts_per_turn
-        slow = stop - state.started.pace.finish_counts / state.counts_per_turn
-        if state.turns < slow:
+        slow = _slow_turn(state, stop)
+        if slow is not None and state.turns < slow:
             return f"slows at {slow:.0f}, stops near {stop:.0f}"
         return f"slow to the stop at {stop:.0f}"
     if phase == "held" and state.held is not None:
@@ -120,6 +122,12 @@ def _says(state: State, decision: Decision) -> str:
     return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[
         phase
     ]
+
+
+def _slow_turn(state: State, stop: float | None) -> float | None:
+    if state.started is None or stop is None:
+        return None
+    return stop - state.started.pace.finish_counts / state.counts_per_turn
 
 
 def _seconds_left(state: State, stop: float | None, turns_per_s: float) -> float | None:

@@ -30,6 +30,7 @@ from windctl.record.summary import summarise
 from windctl.record.trace import trace_digest
 from windctl.run.journal import LINGER_S, Journal
 from windctl.run.outcome import Outcome
+from windctl.run.outlook import Ahead
 from windctl.run.runner import Ended, Request, Runner
 from windctl.run.snapshot import Snapshot
 
@@ -105,6 +106,14 @@ class Winding:
     def look(self) -> Snapshot:
         """The latest picture."""
         return self._runner.look()
+
+    def outlook(self) -> tuple[Ahead, ...]:
+        """The forecast from here to the stop."""
+        return self._runner.outlook()
+
+    def facts(self, after: int = 0) -> tuple[Event, ...]:
+        """The rare facts of this run in order, without the first `after` of them."""
+        return self._runner.facts(after)
 
     def request(self, request: Request) -> None:
         """Ask something of the run: go, hold, end, clear, note."""
