@@ -4,19 +4,20 @@ The guide's path is sampled four times a turn; between two samples the wire spre
 between them. The wire trails the guide: laid at x from a guide at g, a free length L away, it runs in at
 the slope (g - x) / L, so dx/ds = (g - x) / L over the wound length s. Its place is that of its middle,
 never nearer to a flange than half its diameter, and a place along the gap builds up as much as wire lies
-over it.
+over it. That is the lay as guided; `Deposit.settled` lets it slide to the slope that loose turns stand at.
 """
 
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import accumulate
 
 import numpy as np
 from numpy.typing import NDArray
 
 from windctl.lay.program import Program
+from windctl.lay.settle import settle
 
 F64 = NDArray[np.float64]
 
@@ -24,6 +25,8 @@ _PER_TURN = 4  # samples of the guide's path
 _BINS_PER_WIRE = 4
 _MOST_BINS = 4096
 _HEAP_WIRES = 6  # the narrowest heap that stands, in wire diameters. Our judgement
+# mm/mm. Turns stacked like pipes stand at 60 degrees, a loose heap at 35 or so; this is 50. Our judgement
+STEEPEST = 1.2
 _FORGOTTEN = 1e-6  # of a guide position, in the wire's place
 
 
@@ -52,6 +55,15 @@ class Deposit:
     def unevenness(self) -> float:
         """Standard deviation of the build along the gap, relative to the mean."""
         return float(self.density.std())
+
+    def settled(self, build_mm: float, gap_mm: float, steepest: float = STEEPEST) -> Deposit:
+        """This lay at a mean build of `build_mm` if it is loose and nothing holds its edges: slid until no
+        slope is steeper than `steepest` (mm/mm). The length of wire goes with the profile as it ends up,
+        whenever the turns slid."""
+        if build_mm <= 0:
+            return self
+        step = steepest * gap_mm / len(self.density)
+        return replace(self, density=settle(self.density * build_mm, step) / build_mm)
 
     def profile(self, parts: int) -> F64:
         """f64[parts]: the density over equal parts of the gap."""

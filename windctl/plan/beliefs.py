@@ -24,10 +24,11 @@ _ANOTHER_SPOOL_REL = 0.04
 _STRETCH_REL = 0.002  # ohm per wound metre rises by about the wire's stretch in winding. Our judgement
 _PERIMETER_REL = 0.004  # of a core known from its drawing, tape and corners included. Our judgement
 _MEASURED_PERIMETER_REL = 0.0015  # 20 wrapped turns against a rule: 2 to 4 mm in 2.4 m. Our judgement
-# Loose wire slides off ridges and into gaps, which takes away a good part of what the deposit's crown
-# factor has above 1. How much is not foreseen; the share is one standard deviation. Our judgement.
+# What slides takes away from what the crown factor has above 1. How steep a scatter stands is foreseen only
+# within 35 to 60 degrees; an even lay is foreseen to hold, and may slide all the same. The share is one
+# standard deviation. Our judgement.
 _CROWN_REL = 0.01
-_CROWN_SLIDES = 0.6
+_CROWN_SLIDES = {"scatter": 0.4, "even": 0.6}
 _PACKING_DRIFT_REL = 0.05  # of the growth over a coil, as the packing loosens. Our judgement
 
 
@@ -41,6 +42,7 @@ class Beliefs:
     packing: float
     packing_sd: float
     overall_rel: float
+    crown_slides: float
 
     @property
     def build_rel(self) -> float:
@@ -49,7 +51,7 @@ class Beliefs:
 
     def growth_rel(self, crown: float) -> float:
         """Of what the build adds to the length: build per turn and crown factor."""
-        return math.hypot(self.build_rel, _CROWN_REL + _CROWN_SLIDES * (crown - 1) / crown)
+        return math.hypot(self.build_rel, _CROWN_REL + self.crown_slides * (crown - 1) / crown)
 
 
 def beliefs_of(recipe: Recipe, wire: Wire) -> Beliefs:
@@ -70,6 +72,7 @@ def beliefs_of(recipe: Recipe, wire: Wire) -> Beliefs:
         packing=packing,
         packing_sd=packing_sd,
         overall_rel=wire.overall_sd_mm / wire.overall_mm,
+        crown_slides=_CROWN_SLIDES[lay.style],
     )
 
 

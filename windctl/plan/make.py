@@ -46,15 +46,20 @@ class _Basis:
         return BuildUp(self.core.perimeter_mm, per_turn, crown)
 
     def deposited(self, program: Program, turns: float) -> Deposit:
-        """The first `turns` turns of the program on the bobbin, the wire trailing its guide."""
-        return deposit(
+        """The first `turns` turns of the program on the bobbin, the wire trailing its guide. A scatter slides
+        off its edges; the turns of an even lay hold each other where they were laid."""
+        gap = self.recipe.bobbin.flange_gap_mm
+        laid = deposit(
             program,
-            gap_mm=self.recipe.bobbin.flange_gap_mm,
+            gap_mm=gap,
             datum_mm=self.recipe.lay.margin_mm,
             overall_mm=self.wire.overall_mm,
             lag_turns=self.profile.guide.distance_mm / self.coil().mean_turn_mm(turns),
             turns=turns,
         )
+        if self.recipe.lay.style == "even":
+            return laid
+        return laid.settled(self.coil().build_mm(turns), gap)
 
 
 def make_plan(
