@@ -1,7 +1,7 @@
 """The board's codec in C99, for the firmware's core: written by generate.py, which see.
 
-Bodies are packed and unpacked by byte shifts, never by laying a struct over bytes; tables are read through the
-core's seam for program memory. A compiler's section garbage collection drops what a port does not use.
+Bodies are packed and unpacked by byte shifts, never by laying a struct over bytes; tables are read through
+the core's seam for program memory. A linker that collects sections drops what a port does not use.
 """
 
 from __future__ import annotations

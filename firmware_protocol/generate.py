@@ -3,10 +3,11 @@
     python firmware_protocol/generate.py           write every generated file anew
     python firmware_protocol/generate.py --check   write nothing; exit 1 and name what is stale
 
-Generated: the host's codec `windctl/protocol/messages.py`, the board's `core/windctl_messages.h` and `.c`, the
-golden frames `vectors.json` and the tables in README.md. A writer is a function from the checked `Definition` to text; another language is one more function
-in `OUTPUTS`. Only the standard library is used, and frames are built here by the letter of the specification
-(bitwise CRC, byte-wise COBS), so that the vectors are a check on the real codecs and not a copy of them.
+Generated: the host's codec `windctl/protocol/messages.py`, the board's `core/windctl_messages.h` and `.c`,
+the golden frames `vectors.json` and the tables in README.md. A writer is a function from the checked
+`Definition` to text; another language is one more function in `OUTPUTS`. Only the standard library is used,
+and frames are built here by the letter of the specification (bitwise CRC, byte-wise COBS), so that the
+vectors are a check on the real codecs and not a copy of them.
 """
 
 from __future__ import annotations
