@@ -65,6 +65,8 @@ def growth_of(recipe: Recipe, profile: MachineProfile, plan: Plan) -> Growth:
                 turns=turn,
             )
             build = plan.build_mm * turn / plan.turns
+            if recipe.lay.style == "scatter":
+                laid = laid.settled(build, recipe.bobbin.flange_gap_mm)
             heights.append(tuple(float(part) * build for part in laid.profile(COLUMNS)))
         else:
             heights.append(tuple(height * turn / plan.turns for height in whole))
