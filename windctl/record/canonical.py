@@ -11,6 +11,7 @@ import json
 from typing import Any
 
 from windctl.errors import RecordBroken
+from windctl.plan.experience.basis import Basis
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
 from windctl.protocol.messages import Identity, Reading, Refused, Setup, Status
@@ -21,6 +22,7 @@ _PARTS: dict[str, type[Any]] = {
     "setup": Setup,
     "pace": PaceSpec,
     "prior": Prior,
+    "basis": Basis,
     "target": Target,
     "identity": Identity,
     "status": Status,

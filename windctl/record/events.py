@@ -10,6 +10,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import ClassVar
 
+from windctl.plan.experience.basis import Basis
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
 from windctl.protocol.messages import Identity, Reading, Refused, Setup, Status
@@ -57,6 +58,7 @@ class CoilStarted:
     spool: str
     batch: str
     of: int  # 0: not part of a counted batch
+    basis: Basis | None = None  # what the coil is compared with when it teaches; None: an older version's
 
 
 @dataclass(frozen=True, slots=True)

@@ -11,8 +11,10 @@ from collections.abc import Iterable
 from windctl.record.canonical import dumps, plain
 from windctl.record.events import Event
 
-# Who and when, not what: these differ between two runs of the same coil.
-LEFT_OUT = frozenset({"coil_id", "number", "wall_time", "operator", "version", "batch", "of", "spool"})
+# Who and when, not what: these differ between two runs of the same coil. The basis repeats recipe and tables.
+LEFT_OUT = frozenset(
+    {"coil_id", "number", "wall_time", "operator", "version", "batch", "of", "spool", "basis"}
+)
 
 
 def trace_digest(events: Iterable[Event]) -> str:

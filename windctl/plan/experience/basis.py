@@ -1,0 +1,53 @@
+"""What a coil was believed to be before anything was learnt.
+
+The next coil of another bobbin or another spool profits from what this one taught because both are told as
+deviations from such a basis: the drawing, the tables, the usual packing.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import pi
+
+from windctl.coil.buildup import BuildUp
+
+
+@dataclass(frozen=True, slots=True)
+class Basis:
+    """Nominal figures of one coil, and how surely each is known. Recorded with the coil, so its names stay.
+
+    `bobbin` and `lay` are keys: coils with the same one share that unknown. `style` is the same for the kind
+    of lay, empty where the recipe states its packing. Relative standard deviations end in `_rel`; resistances
+    are at 20 degrees C.
+    """
+
+    bobbin: str
+    lay: str
+    style: str
+    wire: str  # for people
+    ohm_per_m: float
+    ohm_per_m_rel: float
+    bare_mm: float
+    overall_mm: float
+    overall_rel: float
+    mass_g_per_m: float
+    perimeter_mm: float
+    perimeter_rel: float  # of this kind of bobbin; one from the next differs besides
+    build_per_turn_mm: float
+    crown: float
+    growth_rel: float  # packing and crown; the wire's thickness comes besides
+
+    @property
+    def coil(self) -> BuildUp:
+        """The nominal coil."""
+        return BuildUp(self.perimeter_mm, self.build_per_turn_mm, self.crown)
+
+    @property
+    def ohm_per_turn(self) -> float:
+        """Of the first turn."""
+        return self.ohm_per_m * self.perimeter_mm / 1000.0
+
+    @property
+    def growth_ohm(self) -> float:
+        """By how much a turn has more than the one before."""
+        return self.ohm_per_m * 2.0 * pi * self.build_per_turn_mm * self.crown / 1000.0

@@ -1,0 +1,37 @@
+"""Which coils share what: the keys of bobbins and lays."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+
+from windctl.recipe.model import Recipe
+
+
+def bobbin_key(recipe: Recipe) -> str:
+    """The same for recipes with the same core and flanges."""
+    return _key(recipe.bobbin.model_dump(mode="json", exclude_none=True))
+
+
+def lay_key(recipe: Recipe) -> str:
+    """The same for recipes that pack alike: core, gap, wire, lay and tension.
+
+    What belongs to one spool or one core (measured diameters, resistance, perimeter) is left out, and the
+    scatter's seed: another seed is another scatter of the same kind.
+    """
+    bobbin, wire = recipe.bobbin, recipe.wire
+    tension = None if recipe.tension is None else recipe.tension.set_cn
+    return _key(
+        {
+            "core": [bobbin.core_length_mm, bobbin.core_width_mm, bobbin.corner_radius_mm],
+            "gap": bobbin.flange_gap_mm,
+            "wire": [wire.gauge, wire.diameter_mm, wire.enamel],
+            "lay": recipe.lay.model_dump(mode="json", exclude_none=True, exclude={"seed"}),
+            "tension": tension,
+        }
+    )
+
+
+def _key(content: object) -> str:
+    text = json.dumps(content, sort_keys=True, separators=(",", ":"), allow_nan=False)
+    return hashlib.sha256(text.encode()).hexdigest()[:16]
