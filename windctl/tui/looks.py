@@ -1,0 +1,53 @@
+"""Every state as a word, a glyph and a role that a theme gives a colour: never colour alone."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class Look:
+    """How one state shows. `role` names its colour in the theme."""
+
+    word: str
+    glyph: str
+    role: str
+
+
+LOOKS = {
+    "connecting": Look("connecting", "◌", "waiting"),
+    "setting up": Look("setting up", "◌", "waiting"),
+    "ready": Look("ready", "○", "ready"),
+    "turning": Look("turning", "▶", "turning"),
+    "stopping": Look("stopping", "▷", "stopping"),
+    "held": Look("held", "‖", "held"),
+    "settling": Look("settling", "◇", "settling"),
+    "tripped": Look("tripped", "✖", "alarm"),
+    "ended": Look("ended", "■", "ended"),
+    "no link": Look("no link", "✖", "alarm"),
+    "failed": Look("failed", "✖", "alarm"),
+}
+
+VERDICTS = {
+    "within": Look("within", "✔", "good"),
+    "outside": Look("outside", "✖", "bad"),
+    "not judged": Look("not judged", "○", "unsure"),
+}
+
+OUTCOMES = {
+    "finished": Look("finished", "■", "good"),
+    "stopped": Look("stopped", "‖", "unsure"),
+    "tripped": Look("tripped", "✖", "bad"),
+    "open": Look("open", "◌", "unsure"),
+}
+
+FITS = {
+    "yes": Look("it fits", "✔", "good"),
+    "tight": Look("a tight fit", "○", "unsure"),
+    "no": Look("it will not fit", "✖", "bad"),
+}
+
+
+def look_of(phase: str) -> Look:
+    """The look of a phase; one that has none shows its own word."""
+    return LOOKS.get(phase, Look(phase, "·", "waiting"))

@@ -1,0 +1,1 @@
+"""One room of the interface each."""

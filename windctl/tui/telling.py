@@ -1,0 +1,93 @@
+"""Facts of a run in plain words, for whoever stands at the machine. Pure."""
+
+from __future__ import annotations
+
+from windctl.desk.numbers import duration, grouped, ohm
+from windctl.protocol.messages import Cause, Refusal, Trip
+from windctl.record.events import (
+    BoardGreeted,
+    ClearGiven,
+    CoilFinished,
+    CoilStarted,
+    CommandRefused,
+    CountCorrected,
+    EndRequested,
+    Event,
+    GoGiven,
+    Held,
+    HoldRequested,
+    LinkLost,
+    NoteMade,
+    Resumed,
+    StopPointChosen,
+    Tripped,
+    WentOn,
+)
+
+_CAUSES = {
+    Cause.STOP_POINT: "at the stop point",
+    Cause.QUEUE_END: "out of program",
+}
+
+
+def tell(event: Event, counts_per_turn: int) -> str | None:
+    """One line for one rare fact; None for what goes without saying."""
+
+    def turn(count: int) -> str:
+        return grouped(count / counts_per_turn)
+
+    match event:
+        case CoilStarted():
+            return f"{event.number} begins: {event.recipe_name} on {event.machine}"
+        case Resumed():
+            return "taken up again"
+        case BoardGreeted():
+            return f"the board answers, at turn {turn(event.identity.count)}"
+        case GoGiven():
+            return None if event.by == "consent" else f"go, given by {_by(event.by)}"
+        case WentOn():
+            return f"turns from {turn(event.count)}"
+        case Held():
+            return f"stands at {turn(event.count)}, {_cause(event.cause)}"
+        case HoldRequested():
+            return f"hold, asked for by {_by(event.by)}: {event.reason}"
+        case EndRequested():
+            return f"to be ended here: {event.reason}"
+        case ClearGiven():
+            return f"trip cleared by {_by(event.by)}"
+        case StopPointChosen():
+            finish = ohm(event.finish_ohm, 1.96 * event.finish_sd).replace("kohm", "kΩ").replace("ohm", "Ω")
+            return f"stop at {turn(event.count)}: {event.reason}; finish {finish}"
+        case Tripped():
+            return f"tripped at {turn(event.count)}: {_words(Trip(event.trip).name)}"
+        case LinkLost():
+            return f"the line is gone: {event.reason}"
+        case CountCorrected():
+            return f"turn set to {grouped(event.turn, 1)} by {_by(event.by)}: {event.reason}"
+        case CommandRefused():
+            return f"the board declined: {_words(Refusal(event.refused.why).name)}"
+        case NoteMade():
+            return f"note: {event.text}"
+        case CoilFinished():
+            return f"{event.outcome}: {event.reason}"
+        case _:
+            return _words(event.kind)
+
+
+def when(event: Event) -> str:
+    """Time of a fact since its run began."""
+    at_ms = getattr(event, "at_ms", 0)
+    return duration(at_ms / 1000.0)
+
+
+def _cause(cause: int) -> str:
+    known = Cause(cause)
+    return _CAUSES.get(known, _words(known.name))
+
+
+def _by(who: str) -> str:
+    return {"virtual": "the simulation", "operator": "you"}.get(who, who)
+
+
+def _words(name: str) -> str:
+    return name.lower().replace("_", " ")

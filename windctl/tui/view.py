@@ -1,0 +1,202 @@
+"""What is shown of a run: texts and numbers made from its snapshot. Pure; the widgets only place them."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import Enum
+from math import floor
+
+from windctl.desk.numbers import duration, grouped, ohm
+from windctl.run.outlook import Ahead
+from windctl.run.snapshot import Snapshot
+from windctl.tui.looks import Look, look_of
+from windctl.tui.pictures.curve import Band, Scale
+
+_HEADROOM = 1.08  # of an axis over the most that is foreseen
+
+
+@dataclass(frozen=True, slots=True)
+class Card:
+    """What does not change while a coil is wound. Resistances in ohm at 20 °C."""
+
+    number: str
+    recipe: str
+    machine: str
+    target_kind: str  # "turns" or "dcr_20c_ohm"
+    target_value: float
+    tolerance_pct: float
+    most_turns: float
+    planned_turns: float
+    planned_ohm: float
+    planned_u95: float
+    depth_mm: float
+    batch: str = ""
+    of: int = 0
+    place: int = 0  # of this coil in its batch; 0: not known
+
+    @property
+    def title(self) -> str:
+        """The coil in one line."""
+        parts = [self.recipe, self.number]
+        if self.batch:
+            count = f" {self.place} of {self.of}" if self.place and self.of else ""
+            parts.append(f"{self.batch}{count}")
+        return " · ".join(part for part in parts if part)
+
+    @property
+    def scale(self) -> Scale:
+        """The axes: fixed from the plan, so that the eye can rest on them."""
+        resistance = self.target_kind == "dcr_20c_ohm"
+        middle = self.target_value if resistance else self.planned_ohm
+        return Scale(
+            turns=max(self.most_turns, self.planned_turns) * 1.02,
+            ohm=max(middle, self.planned_ohm + self.planned_u95) * _HEADROOM,
+            finish_ohm=middle,
+            finish_span=max(1.3 * self.planned_u95 / middle, 2.0 * self.tolerance_pct / 100.0, 0.01),
+            target_ohm=middle if resistance else None,
+            target_turns=None if resistance else self.target_value,
+            tolerance=self.tolerance_pct / 100.0 if resistance else 0.0,
+        )
+
+
+@dataclass(frozen=True, slots=True)
+class Next:
+    """What happens next: a few words, and the one figure to look at, which may be empty."""
+
+    words: str
+    figure: str = ""
+    when: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Glance:
+    """Everything on the run screen that is text."""
+
+    look: Look
+    next: Next
+    digits: str
+    under_digits: str
+    part: float  # of the way to the stop, 0 to 1
+    slow_part: float | None  # where the slow turns begin, as such a part
+    rows: tuple[tuple[str, str], ...]  # what is measured, named
+    virtual: bool
+    alarm: str  # what is wrong and what to do; empty when nothing is
+
+
+def glance(snapshot: Snapshot, card: Card, link_lost: str = "") -> Glance:
+    """The texts for one snapshot. `link_lost`: how the run failed, if it did."""
+    goal = snapshot.stop_turn or snapshot.turns_planned or card.planned_turns
+    look = look_of("no link" if link_lost else snapshot.phase)
+    return Glance(
+        look=look,
+        next=Next("see below") if link_lost else next_of(snapshot),
+        digits=grouped(floor(snapshot.turns + 1e-6)),
+        under_digits=_under(snapshot, goal),
+        part=min(1.0, snapshot.turns / goal) if goal > 0 else 0.0,
+        slow_part=min(1.0, snapshot.slow_turn / goal) if snapshot.slow_turn and goal > 0 else None,
+        rows=_rows(snapshot, card),
+        virtual=snapshot.virtual,
+        alarm=link_lost or _alarm(snapshot),
+    )
+
+
+def next_of(snapshot: Snapshot) -> Next:
+    """What happens next, from what is known."""
+    if snapshot.phase == "turning" and snapshot.stop_turn is not None:
+        when = f"in {duration(snapshot.seconds_left)}" if snapshot.seconds_left is not None else ""
+        slow = snapshot.slow_turn
+        if slow is not None and snapshot.turns < slow:
+            return Next("slows at", grouped(slow), f"stops near {grouped(snapshot.stop_turn)}, {when}")
+        return Next("stops at", grouped(snapshot.stop_turn), when)
+    if snapshot.asks == "go":
+        word = "goes on" if snapshot.turns > 0 else "starts"
+        return Next(_sentence(snapshot.says), "", f"{word} when you press G")
+    if snapshot.asks == "clear":
+        return Next(_sentence(snapshot.says), "", "look to the cause, then press C")
+    if snapshot.phase == "stopping":
+        return Next("comes to rest")
+    return Next(_sentence(snapshot.says))
+
+
+def _sentence(words: str) -> str:
+    return words.removeprefix("held: ").removeprefix("tripped: ")
+
+
+def _under(snapshot: Snapshot, goal: float) -> str:
+    about = "about " if snapshot.stop_turn is None else ""
+    part = f" · {min(100, floor(100 * snapshot.turns / goal))} %" if goal > 0 else ""
+    return f"of {about}{grouped(goal)} turns{part}"
+
+
+def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
+    celsius = f" at {snapshot.celsius:.1f} °C" if snapshot.celsius is not None else ""
+    rows = [
+        ("now", "no reading yet" if snapshot.ohm_now is None else _fine_ohm(snapshot.ohm_now) + celsius),
+        ("at 20 °C", "–" if snapshot.ohm_20c_now is None else _fine_ohm(snapshot.ohm_20c_now)),
+        (
+            "finish",
+            "–"
+            if snapshot.finish_ohm is None
+            else f"{_ohm(snapshot.finish_ohm, snapshot.finish_u95 or 0.0)} at 20 °C",
+        ),
+        ("target", target_text(card)),
+        ("pace", f"{snapshot.pace_rpm:.0f} rpm"),
+    ]
+    if snapshot.tension_cn is not None:
+        rows.append(("pull", f"{snapshot.tension_cn:.1f} cN"))
+    if snapshot.guide_mm is not None:
+        rows.append(("guide", f"{snapshot.guide_mm:.2f} mm"))
+    used = grouped(snapshot.readings_used)
+    rows.append(("readings", f"{used} used, {grouped(snapshot.readings_gated)} set aside"))
+    return tuple(rows)
+
+
+def target_text(card: Card) -> str:
+    """The target in words."""
+    if card.target_kind == "turns":
+        return f"{grouped(card.target_value)} turns"
+    return f"{_ohm(card.target_value)} ± {card.tolerance_pct:g} %"
+
+
+def _alarm(snapshot: Snapshot) -> str:
+    if snapshot.phase != "tripped":
+        return ""
+    what = _sentence(snapshot.says)
+    return f"Tripped: {what}. Look to the cause at the machine; C clears it. Nothing turns by that."
+
+
+def _ohm(value: float, half_width: float = 0.0) -> str:
+    """With the sign that meters show."""
+    return ohm(value, half_width).replace("kohm", "kΩ").replace("ohm", "Ω")
+
+
+def _fine_ohm(value: float) -> str:
+    """In ohm, to a tenth: the figure that a meter beside the machine would show."""
+    return f"{grouped(value, 1)} Ω"
+
+
+def bands(ahead: tuple[Ahead, ...]) -> list[Band]:
+    """The fan, as it is drawn."""
+    return [Band(point.turn, point.ohm - point.u95, point.ohm + point.u95) for point in ahead]
+
+
+class Sound(Enum):
+    """Why the bell rings."""
+
+    SLOWS = "slows"
+    STANDS = "stands"
+    ALARM = "alarm"
+
+
+def sound(before: Snapshot | None, now: Snapshot) -> Sound | None:
+    """Whether the bell rings between two looks: eyes are on the wire."""
+    if before is None:
+        return None
+    if now.phase == "tripped" and before.phase != "tripped":
+        return Sound.ALARM
+    moving = ("turning", "stopping")
+    if before.phase in moving and now.phase not in moving:
+        return Sound.STANDS
+    if now.phase == "turning" and now.slow_turn is not None and before.turns < now.slow_turn <= now.turns:
+        return Sound.SLOWS
+    return None

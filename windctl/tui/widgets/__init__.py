@@ -1,0 +1,1 @@
+"""One drawing or panel each. None of them forecasts, talks to a port or writes a book."""
