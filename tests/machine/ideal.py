@@ -68,6 +68,7 @@ class Machine:
         self.tension = 0
         self.contact: Callable[[int], int] = lambda _: 1000
         self.losing = 0  # of so many counts one is lost; 0: none
+        self.lag = 0  # counts by which the counter trails while steps are made, as behind a soft belt
         self.hurry = 100  # per cent of the rate that the port really issues
         self.turned_so_far = 0  # counts turned by hand
         self.index = True
@@ -103,7 +104,9 @@ class Machine:
         before = self.position
         inputs.steps_issued = steps
         self.step += steps
-        self.position = self.step * self.counts_per_turn // self.steps_per_turn + self.turned_so_far
+        true = self.step * self.counts_per_turn // self.steps_per_turn + self.turned_so_far
+        self.position = true if not self.lag else max(before + (0 if steps else 1), true - self.lag)
+        self.position = min(self.position, true)
         counted = self.position - before
         if self.losing:
             counted -= (self.position // self.losing) - (before // self.losing)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from itertools import pairwise
 from pathlib import Path
 
 import pytest
@@ -251,3 +252,20 @@ def test_a_step_beyond_the_limits_is_not_made() -> None:
     assert machine.board.trip == Trip.GUIDE_LIMIT
     assert machine.guide == machine.board.guide == 1000
     assert machine.board.trust == m.Trust.COUNT
+
+
+def test_what_is_pending_is_never_made_up_for_in_one_leap() -> None:
+    laid = [(400, 100)] * 2
+    machine = Machine().prepare(laid)
+    for counts in (8,) * 400 + (-8,) * 350:  # by hand past the end of the queue, and back before it
+        machine.turn(counts)
+        machine.run()
+    machine.run_to_rest()
+    machine.arm(pace=2000)
+    machine.run_to_rest()
+    machine.go()
+    machine.lay([(400, 100)] * 12)
+    machine.run_to_rest()
+    leaps = [abs(b - a) for a, b in pairwise(machine.positions)]
+    assert machine.guide == position([(400, 100)] * 14, 5600) == 1400
+    assert max(leaps) <= 5  # 16 counts of a line of a step in four, and those just made

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import math
+from itertools import pairwise
+
 import pytest
 from hypothesis import assume, given, settings
 from hypothesis import strategies as st
@@ -69,6 +72,55 @@ def test_no_pace_rate_or_resolution_makes_it_pass_the_stop_point(
     assert (board.state, board.trip) == (State.HELD, Trip.NONE)
     assert board.count <= stop
     assert (stop - board.count) * steps < counts  # not a whole step short
+
+
+@settings(max_examples=40)
+@given(
+    way=st.integers(1500, 12_000),
+    accel=st.integers(500, 65_535),
+    decel=st.integers(1500, 65_535),
+    resolution=st.sampled_from([(1, 400), (2, 400), (24, 400), (100, 400), (400, 400), (400, 200)]),
+    phase=st.integers(0, 399),
+)
+def test_it_comes_to_its_stand_without_a_jerk_wherever_the_counter_begins(
+    way: int, accel: int, decel: int, resolution: tuple[int, int], phase: int
+) -> None:
+    counts, steps = resolution
+    stop = way * counts // steps
+    machine = Machine()
+    machine.step = phase
+    machine.position = phase * counts // steps
+    limits = {"counts_per_turn": counts, "steps_per_turn": steps, "accel": accel, "decel": decel}
+    machine.prepare(slip_counts=3, max_count=stop + 2, fitted=HAND_GUIDED, **limits).arm(8000, stop).go()
+    machine.run_until(lambda: machine.board.standing, at_most=40_000)
+    assert machine.board.count <= stop
+    drops = [a - b for a, b in pairwise(machine.paces) if b]
+    assert max(drops, default=0) <= decel // 1000 + 1
+    last = max(a for a, b in pairwise(machine.paces) if not b)
+    # sqrt(2*decel*left) with a few steps left: the dead time of a tick or two, the place of a coarse count
+    assert last <= math.isqrt(2 * decel * 8) + 3 * (decel // 1000 + 1)
+
+
+def test_a_counter_that_trails_behind_the_steps_is_no_overshoot() -> None:
+    machine = Machine()
+    machine.lag = 9
+    machine.prepare(fitted=HAND_GUIDED).arm(stop=30_000).go()
+    highest = 0
+    while machine.board.state == State.TURNING:
+        machine.run()
+        highest = max(highest, machine.position)
+    assert machine.board.count == machine.step == highest == 30_000
+
+
+def test_pushed_onto_the_stop_point_by_hand_it_issues_no_further_step() -> None:
+    machine = Machine().prepare(fitted=HAND_GUIDED, slip_counts=400).arm(pace=3000, stop=30_000).go()
+    machine.run_until(lambda: machine.board.count >= 29_900)
+    machine.turn(30_000 - machine.board.count)
+    machine.run()
+    steps = machine.step
+    machine.run(200)
+    assert machine.step <= steps + 3000 // 1000
+    assert machine.board.state == State.HELD
 
 
 @settings(max_examples=40)

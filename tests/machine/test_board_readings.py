@@ -165,3 +165,12 @@ def test_the_longest_sum_stays_within_sixty_four_bits() -> None:
         assert not mean.sample(65535, tick, 0, True)  # never a whole turn
         assert mean.sum <= 65535 * 100 * 60_000 < 2**64
         assert mean.window_ticks <= 60_000
+
+
+def test_a_guide_on_its_way_does_not_make_a_reading_a_turning_one() -> None:
+    machine = Machine().prepare().arm()
+    machine.do(m.GuideTo(*machine.consent, 4000, 1000))
+    machine.do(m.Measure(300, 0))
+    reading = first_reading(machine)
+    assert (reading.flags, reading.window) == (0, 300)
+    assert machine.board.guide < 1000

@@ -108,6 +108,7 @@ class Board:
         "slip_limit",
         "speed",
         "spindle",
+        "spindle_moves",
         "standing",
         "state",
         "still_ticks",
@@ -170,7 +171,8 @@ class Board:
         self.count = 0  # i32
         self.seen_count = 0  # i32, at the last check
         self.speed = 0  # u16, counts/s over the last 64 ticks
-        self.standing = True
+        self.standing = True  # spindle and guide are at rest
+        self.spindle_moves = False
         self.still_ticks = STILL  # u16
         self._still_at = 0  # tick
         self._settled_cause: int = Cause.NONE
@@ -239,7 +241,7 @@ class Board:
             board_watch.silence(self)
         if self._status_due or ticks == self._status_at:
             self._tell_status(inputs.celsius_centi)
-        if self.mean.active and self.mean.sample(inputs.contact, ticks, count, not self.standing):
+        if self.mean.active and self.mean.sample(inputs.contact, ticks, count, self.spindle_moves):
             self.dialogue.tell(board_reports.reading(self, inputs.celsius_centi))
         outputs.sent = self.dialogue.out
         self.dialogue.out = b""
@@ -321,7 +323,7 @@ class Board:
         self.guide_pace = pace
         self.guide_ramp = 0
         self.silent_at = (self.ticks + SILENCE) & M32
-        self.moves()
+        self._not_standing()
 
     def hold(self, cause: int) -> None:
         """Stop under control and stay powered; also ends a GuideTo. Raises the epoch in every state."""
@@ -383,6 +385,11 @@ class Board:
         self._off_at = (self.ticks + STILL) & M32
 
     def moves(self) -> None:
+        """The spindle moves, or may be about to."""
+        self.spindle_moves = True
+        self._not_standing()
+
+    def _not_standing(self) -> None:
         self.standing = False
         self._still_at = (self.ticks + self.still_ticks) & M32
 
@@ -412,7 +419,7 @@ class Board:
                 steps = self._guide_to()
             elif self.line.lagging and self.trip != Trip.GUIDE_LIMIT:
                 steps = self.line.catch_up()
-                self.moves()
+                self._not_standing()
         elif counted and self.fitted & FITTED_GUIDE:
             self.line.wait(counted)
         if not self.standing and ticks == self._still_at:
@@ -433,6 +440,7 @@ class Board:
             return
         self.spindle.mode = REST
         self.standing = True
+        self.spindle_moves = False
         self._status_due = True
         if self.state == TURNING:
             if self.fitted & FITTED_DRIVE:
@@ -455,7 +463,7 @@ class Board:
         self.away += steps
         if self.guide + steps == self.guide_target:
             self.guide_pace = 0
-        self.moves()
+        self._not_standing()
         return steps
 
     def _guide_moved(self, steps: int) -> int:

@@ -117,7 +117,7 @@ def _pace(board: Board, pace: m.Pace) -> Verdict:
         return Refusal.RANGE, 1
     if pace.pace > setup.max_pace:
         return Refusal.RANGE, setup.max_pace
-    board.spindle.pace = pace.pace
+    board.spindle.set_pace(pace.pace)
     return DONE
 
 
@@ -214,7 +214,7 @@ def _measure(board: Board, measure: m.Measure) -> Verdict:
         return Refusal.NOT_FITTED, 0
     if measure.window > WINDOW_LIMIT or measure.window % 100:
         return Refusal.RANGE, WINDOW_LIMIT
-    board.mean.start(measure.window, measure.every, board.ticks, board.count, not board.standing)
+    board.mean.start(measure.window, measure.every, board.ticks, board.count, board.spindle_moves)
     return DONE
 
 

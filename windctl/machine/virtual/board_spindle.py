@@ -5,7 +5,9 @@ that is the constant-deceleration law v^2 = 2*a*s, without a division. Positions
 steps that were issued (exact, ahead) and counts that were seen (the truth about the wire, late and
 perhaps coarse). `left` believes whichever is nearer to the goal, so a late count is never an overshoot.
 Once everything stands, what is still missing in counts is slip, not lag, and is made up at a creep.
-Widths in the firmware: pace u16; steps, products, ramp u32; err and taken i32 (bounded by the slip trip).
+Where in its count a coarse counter stands is not known at first: until it has counted once, the worst is
+assumed. Widths in the firmware: pace u16; steps, products, ramp u32; err and taken i32 (bounded by the
+slip trip).
 """
 
 from __future__ import annotations
@@ -26,12 +28,16 @@ class Spindle:
     __slots__ = (
         "_accel",
         "_counts_per_turn",
+        "_creep_pace",
+        "_creeping",
         "_decel",
         "_edge_at",
         "_err",
         "_gap_limit",
         "_issued",
         "_left_limit",
+        "_pace_now",
+        "_placed",
         "_ramp",
         "_seen_count",
         "_seen_issued",
@@ -50,6 +56,9 @@ class Spindle:
         self.mode = REST
         self.v = 0  # u16, steps/s
         self.pace = 0  # u16, steps/s asked for
+        self._pace_now = 0  # u16, the same, or less at a creep
+        self._creeping = False
+        self._placed = True  # the place within a count is known
         self.goal = 0  # i32, count to stand at
         self._ramp = 0  # thousandths of a step/s owed to v
         self._issued = 0  # u32, steps since the spindle set out
@@ -71,19 +80,35 @@ class Spindle:
         self._left_limit = M32 // self._two_decel  # beyond, two_decel * left would leave u32
         self._gap_limit = 0x7FFFFFFF // steps_per_turn
         self.coarse = counts_per_turn < steps_per_turn  # a count is more than a step
-        self.pace = 0
+        creep = 1
+        while (creep + 1) * (creep + 1) <= 8 * decel:  # a pace that four steps suffice to stand from
+            creep += 1
+        self._creep_pace = creep
+        self.pace = self._pace_now = 0
+
+    def set_pace(self, pace: int) -> None:
+        """Work towards this pace, steps/s."""
+        self.pace = pace
+        self._choose_pace()
 
     def set_out(self, count: int, goal: int) -> None:
         """Start from a stand towards `goal`."""
         self.mode = RUN
         self.v = self._ramp = 0
         self._issued = self._seen_issued = 0
-        self._err = self._taken = 0
+        self._err = 0
+        self._placed = not self.coarse
+        self._taken = 0 if self._placed else 1 - self._steps_per_turn  # as if it counted with the next step
         self._seen_count = self._edge_at = count
         self.aim(count, goal)
+        self._creeping = False
+        self._choose_pace()
 
     def aim(self, count: int, goal: int) -> None:
         """Stand at `goal`, as far as counts and issued steps now tell."""
+        if goal != self.goal:
+            self._creeping = False
+            self._choose_pace()
         self.goal = goal
         self._stand_at = self._issued + self.steps_to(count, goal)
 
@@ -121,14 +146,12 @@ class Spindle:
                 self.mode = REST
         elif v * v > bound:
             v = self._slower(v, 1)
-        elif v == self.pace:
+        elif v == self._pace_now:
             return
-        elif v > self.pace:
-            v = self._slower(v, self.pace)
+        elif v > self._pace_now:
+            v = self._slower(v, self._pace_now)
         else:
             v = self._faster(v, bound)
-        if v > 1000 and v > 1000 * left:  # never more in one tick than there is left
-            v = 1000 * left
         self.v = v
 
     def brake(self) -> None:
@@ -157,7 +180,13 @@ class Spindle:
             return False
         self.aim(count, self.goal)
         self.mode = RUN
+        self._creeping = True
+        self._choose_pace()
         return True
+
+    def _choose_pace(self) -> None:
+        creeps = self._creeping and self.pace > self._creep_pace
+        self._pace_now = self._creep_pace if creeps else self.pace
 
     def _error(self, count: int) -> int:
         steps = self._issued - self._seen_issued
@@ -174,8 +203,9 @@ class Spindle:
         """A coarse counter has counted: at this very step the place is known better than in between."""
         self._edge_at = count
         error = self._error(count)
-        if error < self._taken:
+        if error < self._taken or not self._placed:
             self._taken = error
+            self._placed = True
         self.aim(count, self.goal)
 
     def _slower(self, v: int, least: int) -> int:
@@ -191,7 +221,7 @@ class Spindle:
         ramp = self._ramp + self._accel
         while ramp >= 1000:
             ramp -= 1000
-            if v < self.pace and (v + 1) * (v + 1) <= bound:
+            if v < self._pace_now and (v + 1) * (v + 1) <= bound:
                 v += 1
         self._ramp = ramp
         return v

@@ -92,14 +92,18 @@ class GuideLine:
                 self._begin()
 
     def follow(self, counts: int) -> int:
-        """Guide steps for this many counts, signed, with the spindle driven and the guide powered."""
+        """Guide steps for this many counts, signed, with the spindle driven and the guide powered.
+
+        What is pending from before is caught up with besides, at 16 counts a call.
+        """
         if counts <= 0:
             self.behind -= counts
             return 0
         if self.behind or self.pending:
+            before = self.pending
             self.wait(counts)
-            counts = self.pending
-            self.pending = 0
+            counts = self.pending - before + min(before, CATCH_UP_COUNTS)
+            self.pending -= counts
         steps = 0
         while counts >= self._left:
             if self._left == 0:  # out of segments
