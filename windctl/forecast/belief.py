@@ -167,13 +167,16 @@ def moved(belief: Belief, turn: float, walk: Walk) -> Belief:
     )
 
 
-def look(belief: Belief, reading: Reading, contact_ohm: float) -> Look:
-    """What this belief expects a reading to show, with the wire to the contact (`contact_ohm`) in it."""
+def look(belief: Belief, reading: Reading, contact_ohm: float, share: float = 1.0) -> Look:
+    """What this belief expects a reading to show, with the wire to the contact (`contact_ohm`) in it.
+
+    `share` of the coil's warmth is left, besides what the reading itself says of it.
+    """
     shown, _, _, leads, _, bias, over = belief.mean
     off = over - bias
     warm = 1.0 + ALPHA_20C * (reading.celsius - 20.0 + off)
     d0 = warm / (1.0 + ALPHA_20C * off)
-    cooled = 1.0 - reading.warmth
+    cooled = 1.0 - reading.warmth * share
     if cooled == 0.0:
         s0, s1, s2, s3, s4, s5, s6 = [d0 * row[0] + row[3] for row in belief.cov]
         return Look(d0 * shown + leads + contact_ohm, max(d0 * s0 + s3, 0.0), (s0, s1, s2, s3, s4, s5, s6))

@@ -19,7 +19,19 @@ from __future__ import annotations
 from dataclasses import dataclass, field, replace
 from math import isfinite, sqrt
 
-from windctl.forecast.belief import Belief, Walk, first_belief, look, moved, told, walk_of
+from windctl.forecast.belief import (
+    OVER_AIR,
+    SHOWN,
+    Belief,
+    Look,
+    Walk,
+    first_belief,
+    look,
+    moved,
+    told,
+    walk_of,
+)
+from windctl.forecast.cooling import cooling_variance, share_left
 from windctl.forecast.noise import Unrest, near, own_variance
 from windctl.forecast.reading import Reading
 from windctl.forecast.widen import opened
@@ -64,6 +76,8 @@ class Estimate:
     zero_run: int = 0
     jump: Surprise | None = None  # the last time that a rival took over from a trusted belief
     doubt: Surprise | None = None  # a reading at rest that was kept out, until another one is used
+    seconds: float | None = None  # when the last reading was taken
+    share: float = 1.0  # of a winding coil's warmth left then
 
     @property
     def turn(self) -> float:
@@ -84,17 +98,18 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
     allowed.
     """
     prior = estimate.prior
+    share = _share_left(estimate, reading)
     belief = moved(estimate.belief, reading.turn, estimate.walk)
-    seen = look(belief, reading, prior.contact_length_ohm)
+    seen = look(belief, reading, prior.contact_length_ohm, share)
     if not isfinite(reading.ohm) or reading.ohm > _OPEN_FACTOR * max(seen.ohm, _ZERO_FROM_OHM):
         return replace(estimate, gated=estimate.gated + 1, open_run=estimate.open_run + 1, zero_run=0), False
     if seen.ohm > _ZERO_FROM_OHM and reading.ohm < _ZERO_PART * seen.ohm:
         return replace(estimate, gated=estimate.gated + 1, zero_run=estimate.zero_run + 1, open_run=0), False
-    stated = own_variance(prior, reading, seen.ohm)
+    stated = _stated_variance(belief, seen, reading, prior, share)
     unrest = estimate.unrest
     surprise = reading.ohm - seen.ohm
     if abs(surprise) > GATE * sqrt(seen.variance + stated * unrest.spread_factor()):
-        return _kept_out(estimate, reading, seen.ohm)
+        return _kept_out(estimate, reading, seen.ohm, share)
     close = near(reading, estimate.belief.turn)
     noise = stated * unrest.weight_factor(close)
     unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * stated
@@ -107,18 +122,39 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
         anchor=anchor if trust < _TRUSTED else None,
         trust=trust,
         used=1,
+        seconds=reading.seconds,
+        share=share,
     ), True
 
 
-def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tuple[Estimate, bool]:
+def _share_left(estimate: Estimate, reading: Reading) -> float:
+    """How warm the coil still is; without times, as warm as it was. It cools where the spindle has stood."""
+    if reading.seconds is None or estimate.seconds is None:
+        return estimate.share
+    standing = reading.resting and reading.turn == estimate.turn
+    return share_left(estimate.share, reading.seconds - estimate.seconds, standing)
+
+
+def _stated_variance(belief: Belief, seen: Look, reading: Reading, prior: Prior, share: float) -> float:
+    """Variance of a reading on its own, as far as can be stated before it is taken."""
+    variance = own_variance(prior, reading, seen.ohm)
+    if share < 1.0:
+        square = belief.mean[OVER_AIR] ** 2 + belief.cov[OVER_AIR][OVER_AIR]
+        variance += cooling_variance(belief.mean[SHOWN], square, share)
+    return variance
+
+
+def _kept_out(
+    estimate: Estimate, reading: Reading, expected_ohm: float, share: float
+) -> tuple[Estimate, bool]:
     """A reading outside the gate: it feeds the rival, which takes over once enough readings agree with it."""
     surprise = Surprise(reading.turn, expected_ohm, reading.ohm)
     rival, agreeing = None, 1
     if estimate.rival is not None:
-        rival = _taken(estimate, estimate.rival, reading, gated=True)
+        rival = _taken(estimate, estimate.rival, reading, share, gated=True)
         agreeing += estimate.rival_trust
     if rival is None:
-        rival, agreeing = _taken(estimate, _rivals_start(estimate), reading, gated=False), 1
+        rival, agreeing = _taken(estimate, _rivals_start(estimate), reading, share, gated=False), 1
     trusted = estimate.trust >= _TRUSTED
     if rival is None or agreeing < (_UNSEATS_TRUSTED if trusted else _TRUSTED):
         return _with(
@@ -130,8 +166,12 @@ def _kept_out(estimate: Estimate, reading: Reading, expected_ohm: float) -> tupl
             rival=rival,
             rival_trust=agreeing,
             doubt=surprise if reading.resting else estimate.doubt,
+            seconds=reading.seconds,
+            share=share,
         ), False
-    taken_over = _with(estimate, estimate.unrest, rival, trust=agreeing, used=1)
+    taken_over = _with(
+        estimate, estimate.unrest, rival, trust=agreeing, used=1, seconds=reading.seconds, share=share
+    )
     return replace(taken_over, jump=surprise) if trusted else taken_over, True
 
 
@@ -142,12 +182,14 @@ def _rivals_start(estimate: Estimate) -> Belief:
     return estimate.anchor or estimate.belief
 
 
-def _taken(estimate: Estimate, start: Belief, reading: Reading, *, gated: bool) -> Belief | None:
+def _taken(
+    estimate: Estimate, start: Belief, reading: Reading, share: float, *, gated: bool
+) -> Belief | None:
     """A rival after a reading: None where it is `gated` and does not agree; else taken at its word."""
     prior = estimate.prior
     belief = moved(start, reading.turn, estimate.walk)
-    seen = look(belief, reading, prior.contact_length_ohm)
-    stated = own_variance(prior, reading, seen.ohm)
+    seen = look(belief, reading, prior.contact_length_ohm, share)
+    stated = _stated_variance(belief, seen, reading, prior, share)
     spread = seen.variance + stated * estimate.unrest.spread_factor()
     if gated and abs(reading.ohm - seen.ohm) > GATE * sqrt(spread):
         return None
@@ -166,6 +208,8 @@ def _with(
     rival_trust: int = 0,
     used: int = 0,
     doubt: Surprise | None = None,
+    seconds: float | None,
+    share: float,
 ) -> Estimate:
     """The next estimate; `dataclasses.replace` would cost as much as the update itself."""
     return Estimate(
@@ -185,4 +229,6 @@ def _with(
         0,
         estimate.jump,
         doubt,
+        estimate.seconds if seconds is None else seconds,
+        share,
     )

@@ -7,7 +7,7 @@ nothing of what the instruments have in common with every other coil's readings.
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from math import sqrt
 
 from windctl.forecast.belief import PER_TURN, SHOWN, Belief, first_belief, moved, resistance, walk_of
@@ -17,7 +17,7 @@ from windctl.plan.experience.lesson import Measured, Resistance, Share
 from windctl.plan.prior import Prior
 
 _WIRE_REL, _CORE_REL, _GROWTH_REL = 0.10, 0.05, 0.40  # next to nothing is known
-_TELLS = 0.7  # a share whose sd is not below this part of what it was tells nothing
+_TELLS = 0.7  # a figure whose sd is not below this part of what it was without readings tells nothing
 
 
 def open_minded(prior: Prior, basis: Basis) -> Prior:
@@ -43,16 +43,24 @@ def taught(estimate: Estimate, turns: float) -> tuple[Measured, ...]:
     if estimate.used == 0:
         return ()
     last = moved(estimate.belief, turns, estimate.walk)
-    ohm, sd = resistance(last)
-    seen: list[Measured] = [Resistance(ohm, sd / ohm)]
-    share = _share(last)
-    before = _share(moved(first_belief(estimate.prior), turns, walk_of(estimate.prior)))
-    if share.sd < _TELLS * before.sd:
-        seen.append(_less(share, before))
+    first = moved(first_belief(estimate.prior), turns, walk_of(estimate.prior))
+    seen: list[Measured] = []
+    ohm = _less(_Figure(*resistance(last)), _Figure(*resistance(first)))
+    if ohm is not None:
+        seen.append(Resistance(ohm.value, ohm.sd / ohm.value))
+    share = _less(_share(last), _share(first))
+    if share is not None:
+        seen.append(Share(share.value, share.sd))
     return tuple(seen)
 
 
-def _share(belief: Belief) -> Share:
+@dataclass(frozen=True, slots=True)
+class _Figure:
+    value: float
+    sd: float
+
+
+def _share(belief: Belief) -> _Figure:
     """With R = r0*n + g*n^2/2 the part that the growth added is r(n)*n/R - 1."""
     ohm, per_turn = belief.mean[SHOWN], belief.mean[PER_TURN]
     by_turn = belief.turn / ohm
@@ -62,11 +70,13 @@ def _share(belief: Belief) -> Share:
         + 2.0 * by_ohm * by_turn * belief.cov[SHOWN][PER_TURN]
         + by_turn**2 * belief.cov[PER_TURN][PER_TURN]
     )
-    return Share(per_turn * belief.turn / ohm - 1.0, sqrt(max(variance, 0.0)))
+    return _Figure(per_turn * belief.turn / ohm - 1.0, sqrt(max(variance, 0.0)))
 
 
-def _less(after: Share, before: Share) -> Share:
-    """What was measured, if `before` became `after` by it."""
+def _less(after: _Figure, before: _Figure) -> _Figure | None:
+    """What was measured, if it made `after` out of `before`; None where that is next to nothing."""
+    if not 0.0 < after.sd < _TELLS * before.sd:
+        return None
     new, old = 1.0 / after.sd**2, 1.0 / before.sd**2
     told = new - old
-    return Share((after.part * new - before.part * old) / told, sqrt(1.0 / told))
+    return _Figure((after.value * new - before.value * old) / told, sqrt(1.0 / told))
