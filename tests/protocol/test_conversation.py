@@ -20,6 +20,7 @@ from windctl.protocol.messages import (
     Disarm,
     Go,
     Greet,
+    GuideTo,
     Hold,
     Lay,
     Measure,
@@ -32,7 +33,7 @@ from windctl.protocol.messages import (
     State,
     StopAt,
 )
-from windctl.protocol.wants import Datum, Permission, Sampling, Wants
+from windctl.protocol.wants import Datum, GuidePlace, Permission, Sampling, Wants
 
 from .talking import AT_REST, IDENTITY, PROGRAM, SETUP, Bench, only
 
@@ -265,6 +266,49 @@ def test_a_datum_is_declared_once_and_again_only_after_the_board_has_turned() ->
     assert isinstance(only(bench.advance(replace(wants, datum=other))), SetDatum)
 
 
+def test_the_guide_is_brought_to_its_place_before_the_place_is_declared_and_before_anything_turns() -> None:
+    bench, ready = ready_to_go()
+    consent = bench.permission
+    wants = replace(
+        ready,
+        guide=GuidePlace(120, 900, consent),
+        datum=Datum(2000, 120, 10, 0, consent),
+        go=consent,
+    )
+    assert only(bench.advance(wants)) == GuideTo(7, 21, 120, 900)
+    bench.accept(GuideTo(7, 21, 120, 900))
+    bench.tell(guide=60, inputs=3)
+    assert bench.advance(wants) == []  # on its way; said once
+    bench.tell(guide=120, inputs=3)
+    assert bench.advance(wants) == []  # there, and not yet at rest
+    bench.tell(inputs=AT_REST)
+    datum = only(bench.advance(wants))
+    assert datum == SetDatum(7, 21, PROGRAM.id32, 2000, 120, 10, 0)
+    bench.accept(datum)
+    bench.tell(next=10, executing=10, program_crc=0xFFFF)
+    sent = [only(bench.advance(wants))]
+    while not isinstance(sent[-1], Go):
+        bench.accept(sent[-1])
+        upto = bench.c.board.next
+        bench.tell(next=upto, program_crc=crc_hqx(PROGRAM.packed[40 : 4 * upto], 0xFFFF))
+        sent.append(only(bench.advance(wants)))
+    assert {type(one) for one in sent} == {Lay, StopAt, Go}  # an emptied queue knows no stop point
+
+
+@pytest.mark.parametrize("state", [State.DRIVES_OFF, State.TRIPPED, State.TURNING])
+def test_the_guide_moves_only_with_the_drives_powered_and_for_its_consent(state: State) -> None:
+    bench = Bench()
+    bench.greet(state=state)
+    assert bench.advance(Wants(guide=GuidePlace(120, 900, bench.permission))) == []
+    bench.tell(state=State.READY)
+    assert bench.advance(Wants(guide=GuidePlace(120, 900, Permission(7, 19)))) == []
+    moved = Wants(guide=GuidePlace(120, 900, bench.permission))
+    assert bench.advance(replace(moved, hold=True)) == [Hold()]
+    bench.tell(epoch=21, state=State.HELD)
+    bench.advance(Wants())
+    assert bench.advance(moved) == []  # the hold voided what was consented to
+
+
 def test_sampling_is_begun_changed_and_ended() -> None:
     bench = Bench()
     bench.greet()
@@ -486,6 +530,18 @@ def test_a_computer_that_slept_does_not_take_its_own_absence_for_the_boards() ->
     bench.now += 100.0
     bench.tell()
     assert bench.advance(go) == [Go(7, 21)]
+
+
+def test_a_pause_of_the_host_is_no_silence_of_the_board_and_no_missing_answer() -> None:
+    bench, go = outstanding_go()
+    for _ in range(11):
+        bench.advance(go, 0.25)
+        bench.tell()
+    bench.now += 100.0
+    bench.c.paused(100.0)
+    bench.advance(go)  # still within the last try's time
+    with pytest.raises(LinkLost):
+        bench.advance(go, 3.1)
 
 
 def test_a_late_status_does_not_move_the_picture_back() -> None:

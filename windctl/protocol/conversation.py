@@ -239,6 +239,13 @@ class Conversation:
         out += self._numbered(wants, now)
         return bytes(out)
 
+    def paused(self, seconds: float) -> None:
+        """The caller did not run for so long: what it did not hear or send in that time says nothing."""
+        if self._heard_at is not None:
+            self._heard_at += seconds
+        if self._exchange is not None and self._exchange.outstanding is not None:
+            self._exchange.outstanding.sent_at += seconds
+
     def next_due(self, now: float) -> float:
         """When `advance` has something to do at the latest, if nothing is heard and wants stay."""
         due = [now + BEAT_S]
@@ -266,6 +273,7 @@ class Conversation:
             (Go, wants.go),
             (ClearTrip, wants.clear_trip),
             (SetDatum, wants.datum),
+            (GuideTo, wants.guide),
         ):
             if self._consents.wanted(kind, consent):
                 self._refusals.pop(kind, None)
@@ -306,6 +314,8 @@ class Conversation:
                 self._consents.use(type(command), self.board.permission)
             case SetDatum():
                 self._consents.use(SetDatum, wants.datum)
+            case GuideTo():
+                self._consents.use(GuideTo, wants.guide)
             case _:
                 pass
 

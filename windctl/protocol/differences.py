@@ -14,6 +14,7 @@ from windctl.protocol.messages import (
     ClearTrip,
     Disarm,
     Go,
+    GuideTo,
     HostMessage,
     Measure,
     Pace,
@@ -58,6 +59,13 @@ def _in_order(picture: BoardPicture, wants: Wants, feed: Feed, consents: Consent
     measure = _measure(picture, wants)
     if wants.setup is not None and picture.setup_crc != crc_hqx(wants.setup.encode_body(), CRC_START):
         yield wants.setup
+        return
+    place, status = wants.guide, picture.status
+    powered = picture.state in (State.READY, State.HELD)
+    if place is not None and powered and status is not None and status.guide != place.guide:
+        if place.given_for == present and consents.good(GuideTo, place):
+            yield GuideTo(boot, epoch, place.guide, place.pace)
+        yield from measure
         return
     datum = wants.datum
     program = wants.program.id32 if wants.program is not None else 0

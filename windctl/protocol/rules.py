@@ -10,6 +10,7 @@ from windctl.protocol.messages import (
     ClearTrip,
     Disarm,
     Go,
+    GuideTo,
     HostMessage,
     Lay,
     Measure,
@@ -76,12 +77,15 @@ TAKEN_IN: Final[dict[type[HostMessage], frozenset[State]]] = {
     Pace: frozenset({State.READY, State.TURNING, State.HELD}),
     StopAt: frozenset({State.READY, State.TURNING, State.HELD}),
     Go: frozenset({State.READY, State.HELD}),
+    GuideTo: frozenset({State.READY, State.HELD}),
     Measure: ANY_STATE,
     ClearTrip: frozenset({State.TRIPPED}),
 }
 
 # With these the spindle and the guide have to be at rest.
-AT_REST: Final[frozenset[type[HostMessage]]] = frozenset({Setup, SetDatum, Arm, Disarm, Go, ClearTrip})
+AT_REST: Final[frozenset[type[HostMessage]]] = frozenset(
+    {Setup, SetDatum, Arm, Disarm, Go, GuideTo, ClearTrip}
+)
 
-# While a hold is wanted nothing of this kind goes out: they start, or say how to.
-NOT_WHILE_HOLDING: Final[frozenset[type[HostMessage]]] = frozenset({Arm, Pace, StopAt, Go})
+# While a hold is wanted nothing of this kind goes out: they move something, or say how.
+NOT_WHILE_HOLDING: Final[frozenset[type[HostMessage]]] = frozenset({Arm, Pace, StopAt, Go, GuideTo})

@@ -32,6 +32,18 @@ class Datum:
 
 
 @dataclass(frozen=True, slots=True)
+class GuidePlace:
+    """Where the guide is to stand, in motor steps, brought there at `pace` steps/s with the spindle at rest.
+
+    It moves something, so it takes a consent: once, for this permission.
+    """
+
+    guide: int
+    pace: int
+    given_for: Permission
+
+
+@dataclass(frozen=True, slots=True)
 class Sampling:
     """Wanted readings of the contact: averaged over `window` ticks, one every `every` ticks."""
 
@@ -59,6 +71,7 @@ class Wants:
     beat: bool = False
     hold: bool = False
     setup: Setup | None = None
+    guide: GuidePlace | None = None  # before the datum: it is declared where it then stands
     datum: Datum | None = None
     program: Segments | None = None
     armed: Permission | None = None  # power the drives, once, for this epoch
