@@ -1,9 +1,9 @@
 """Frames: how messages stand on the line. Bytes in, frames out; no clock, no I/O.
 
 Inside a frame: code u8, sequence u8, body (at most 60 bytes), CRC-16/IBM-3740 big endian over all that.
-On the line: the same, COBS-encoded (Cheshire and Baker 1999), and a closing 0x00. A zero byte occurs nowhere
-else, so a reader finds the next frame after any damage. A damaged COBS code byte moves many bits at once, beyond
-what a CRC promises to find, so the length of a known code is checked too.
+On the line: the same, COBS-encoded (Cheshire and Baker 1999), and a closing 0x00. A zero byte occurs
+nowhere else, so a reader finds the next frame after any damage. A damaged COBS code byte moves many bits at
+once, beyond what a CRC promises to find, so the length of a known code is checked too.
 """
 
 from __future__ import annotations
