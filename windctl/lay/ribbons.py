@@ -12,6 +12,7 @@ just as well: so the shifts are measured on the program, not reckoned from the p
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -23,7 +24,7 @@ MOST_Q = 8
 _SPACINGS = 2.0  # that a pattern must move on over a coil. Our judgement
 _LEAST_SHIFT, _MOST_SHIFT = 0.005, 0.03  # turns: what counts resolve; what is no repetition in any coil
 _LEAST_REPEATS = 4
-_HEADROOM = 0.01  # turns, for a pitch that is offered: a program rounds to whole counts and steps
+_HEADROOM = 0.012  # turns, for a pitch that is offered: a program rounds to whole counts and steps
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,15 +64,20 @@ def is_clear(turns: float, doubles: float) -> bool:
     return all(abs(q * turns - round(q * turns)) > near for q in range(1, MOST_Q + 1))
 
 
-def nearest_clear(value: float, way: float, doubles: float, decimals: int) -> float | None:
-    """The number of so many decimals nearest to `value`, within a tenth of it, that makes a clear lay of
-    way / number turns per double traverse; None where there is none."""
+def nearest_clear(
+    value: float, decimals: int, turns_for: Callable[[float], float], doubles: float
+) -> float | None:
+    """The number of so many decimals nearest to `value`, within a tenth of it, that makes a clear lay.
+
+    turns_for: turns per double traverse that a number makes. None where there is none.
+    """
     unit = 10.0**-decimals
     middle = round(value / unit)
-    for off in range(1, max(2, round(value / 10 / unit))):
-        for candidate in (middle - off, middle + off):
-            if candidate > 0 and is_clear(way / (candidate * unit), doubles):
-                return round(candidate * unit, decimals)
+    for off in range(1, max(2, middle // 10)):
+        for units in (middle - off, middle + off):
+            candidate = round(units * unit, decimals)
+            if candidate > 0 and is_clear(turns_for(candidate), doubles):
+                return candidate
     return None
 
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from windctl.coil.fit import Fit
 from windctl.coil.wire_speed import WireSpeed
+from windctl.lay.ribbons import Ribbon, nearest_clear
 from windctl.material.wire import Wire
 from windctl.plan.speeds import accel_rpm_per_s
 from windctl.profile.model import MachineProfile
@@ -14,18 +15,24 @@ from windctl.recipe.model import Recipe
 
 _BREAKS_N_PER_MM2 = 220.0  # annealed copper, 200 to 250 MPa (from memory)
 _ADVISED_PULL = 0.2  # of what breaks the wire. Our judgement
-_FAST_M_S = 3.0  # peak wire speed from which the pull of a long bobbin is worth a word. Our judgement
+# Peak wire speed on a bobbin that is not round, over the bare diameter. What guides and brakes the wire is
+# jerked twice a turn; on a given bobbin the jerk goes with the square of the speed, and so does a wire's
+# strength with its diameter: so half as thick a wire takes half the speed. Our judgement
+_FASTEST_M_S_PER_MM = 63.0  # 4.0 m/s for 0.063 mm
 _PULSING = 1.15  # peak over mean from which a bobbin counts as long. Our judgement
+_OPEN_LAY = 1.5  # pitch over overall diameter from which ribbons have gaps between them. Our judgement
 
 
 @dataclass(frozen=True, slots=True)
 class Outlook:
-    """wanted_turns: before stop.min_turns and max_turns limit them; full_speed: on the finished coil."""
+    """wanted_turns: before stop.min_turns and max_turns limit them; full_speed: on the finished coil; ribbon:
+    in the program, where a motor guides."""
 
     turns: int
     wanted_turns: float
     fit: Fit
     full_speed: WireSpeed
+    ribbon: Ribbon | None = None
 
 
 def cautions(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlook) -> tuple[str, ...]:
@@ -34,8 +41,9 @@ def cautions(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlo
         *_fit(outlook),
         *_target(recipe, profile, outlook),
         *_lay(recipe, wire),
+        *_ribbons(recipe, wire, outlook),
         *_pull(recipe, wire),
-        *_speed(recipe, profile, outlook),
+        *_speed(recipe, profile, wire, outlook),
         *_machine(recipe, profile),
     )
 
@@ -78,6 +86,33 @@ def _lay(recipe: Recipe, wire: Wire) -> Iterator[str]:
         )
 
 
+def _ribbons(recipe: Recipe, wire: Wire, outlook: Outlook) -> Iterator[str]:
+    found = outlook.ribbon
+    if found is None or recipe.pitch_mm < _OPEN_LAY * wire.overall_mm:
+        return
+    ratio = f"{found.turns:.4g} turns"
+    if found.q > 1:
+        ratio += f", nearly {round(found.turns * found.q)}/{found.q}"
+    again = "every time" if found.q == 1 else f"every {found.q} times"
+    doubles = found.repeats * found.q
+    lay = recipe.lay
+    if lay.pitch_mm is not None:
+        way_mm = found.turns * lay.pitch_mm
+        other = nearest_clear(lay.pitch_mm, 4, lambda pitch: way_mm / pitch, doubles)
+        spread = "" if other is None else f"; lay.pitch_mm of {other:g} mm spreads it"
+    else:
+        assert lay.turns_per_pass is not None  # exactly one is given
+        passes = found.turns / lay.turns_per_pass
+        other = nearest_clear(lay.turns_per_pass, 2, lambda turns: passes * turns, doubles)
+        spread = "" if other is None else f"; lay.turns_per_pass of {other:g} spreads it"
+    if spread and lay.style == "scatter":
+        spread += ", and so does more of lay.amount"
+    yield (
+        f"ribbons: the guide's way there and back takes {ratio}: {again} the wire comes to lie on its own "
+        f"path, and piles up there{spread}"
+    )
+
+
 def _pull(recipe: Recipe, wire: Wire) -> Iterator[str]:
     tension = recipe.tension
     if tension is None or tension.set_cn is None:
@@ -97,13 +132,15 @@ def _pull(recipe: Recipe, wire: Wire) -> Iterator[str]:
         )
 
 
-def _speed(recipe: Recipe, profile: MachineProfile, outlook: Outlook) -> Iterator[str]:
-    speed = outlook.full_speed
-    if speed.peak_m_s > _FAST_M_S and speed.peak_m_s > _PULSING * speed.mean_m_s:
+def _speed(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlook) -> Iterator[str]:
+    speed, rpm = outlook.full_speed, recipe.spindle.cruise_rpm
+    most = _FASTEST_M_S_PER_MM * wire.bare_mm
+    if speed.peak_m_s > most and speed.peak_m_s > _PULSING * speed.mean_m_s:
+        slower = _rounded_down(rpm * most / speed.peak_m_s)
         yield (
-            f"at {recipe.spindle.cruise_rpm:g} rpm the wire runs onto the finished coil at "
-            f"{speed.mean_m_s:.1f} m/s and jerks to {speed.peak_m_s:.1f} m/s twice a turn, and its inertia "
-            "pulls: a lower spindle.cruise_rpm is gentler on it"
+            f"at {rpm:g} rpm the wire runs onto the finished coil at {speed.mean_m_s:.1f} m/s and jerks to "
+            f"{speed.peak_m_s:.1f} m/s twice a turn; for wire of {wire.bare_mm:.3f} mm we advise at most "
+            f"{most:.1f} m/s (our judgement), a spindle.cruise_rpm of {slower}"
         )
     accel = accel_rpm_per_s(recipe, profile)
     if accel < recipe.spindle.ramp_rpm_per_s:
@@ -130,3 +167,9 @@ def _machine(recipe: Recipe, profile: MachineProfile) -> Iterator[str]:
             else "a broken wire does not show until the resistance is read"
         )
         yield f"no tension sensor is fitted: {shows}{watched}"
+
+
+def _rounded_down(rpm: float) -> int:
+    """To tens, and to ones below 100."""
+    unit = 10 if rpm >= 100 else 1
+    return max(1, int(rpm / unit) * unit)

@@ -14,6 +14,7 @@ from windctl.lay.deposit import Deposit, deposit
 from windctl.lay.limits import check
 from windctl.lay.make import make_program
 from windctl.lay.program import Program
+from windctl.lay.ribbons import ribbon
 from windctl.material.wire import Wire
 from windctl.plan.beliefs import Beliefs, beliefs_of, prior_of, resistance_sd_ohm
 from windctl.plan.board_setup import board_setup
@@ -120,7 +121,7 @@ def make_plan(
         wire_speed_peak_m_s=bare.peak_m_s,
         wire_speed_peak_full_m_s=full.peak_m_s,
         checked=checked,
-        warnings=cautions(recipe, profile, wire, Outlook(planned, wanted, fit, full)),
+        warnings=cautions(recipe, profile, wire, Outlook(planned, wanted, fit, full, ribbon(program))),
         prior=prior_of(basis.beliefs, coil, float(planned), profile.readings),
         pace=pace_spec(recipe, profile),
         program=program,
