@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from windctl.forecast.finish import finish_at, so_far
 from windctl.forecast.stop import missing_turns
 from windctl.forecast.verdict import verdict
 from windctl.protocol.messages import Trip
 from windctl.record.events import CoilFinished, Event, StopPointChosen
-from windctl.record.state import State
+from windctl.record.state import Fit, State
 
 SETTLED_ENOUGH = 8  # readings at rest before the coil is judged
 SETTLE_LIMIT_TICKS = 8_000  # without them it is judged on what there is
@@ -15,19 +17,20 @@ MOST_TOP_UPS = 3
 
 
 def ending(state: State, at_ms: int) -> tuple[Event, ...]:
+    """The end of the coil, or the stop point that a last reading adds; nothing while it is to go on."""
     started, status = state.started, state.status
     assert started is not None
-    if state.tripped is not None and state.standing:
-        trip = Trip(state.tripped.trip)
-        return (
-            _finished(state, at_ms, "tripped", f"the board tripped: {trip.name.lower().replace('_', ' ')}"),
-        )
     if state.end is not None and state.standing:
+        if state.tripped is not None:
+            trip = Trip(state.tripped.trip).name.lower().replace("_", " ")
+            return (_finished(state, at_ms, "tripped", f"the board tripped: {trip}"),)
         return (_finished(state, at_ms, "stopped", state.end.reason),)
-    held = state.held
-    if status is None or held is None or state.stop_point is None or state.count < state.stop_point:
+    if status is None or state.stop_point is None or state.count < state.stop_point:
         return ()
-    if started.readings_mode == "live" and not _settled(state):
+    if state.fit is Fit.CORRECTED:  # somebody has said that it is there, and agreed to go on from there
+        if state.consent is None:
+            return ()
+    elif state.held is None or (started.readings_mode == "live" and not _settled(state)):
         return ()
     if started.target.kind == "turns":
         return (_finished(state, at_ms, "finished", "the turns asked for are wound"),)
@@ -68,10 +71,11 @@ def _judge_resistance(state: State, at_ms: int) -> tuple[Event, ...]:
                 state, at_ms, "finished", f"the most turns allowed are wound; {more} turns are missing"
             ),
         )
-    if more <= -1:
+    met = _finished(state, at_ms, "finished", "the target is met")
+    if more <= -1 and met.verdict != "within":
         words = f"unwind {-more} +- {max(1, round(1.96 * missing.sd))} turns to meet the target"
-        return (_finished(state, at_ms, "finished", words),)
-    return (_finished(state, at_ms, "finished", "the target is met"),)
+        return (replace(met, reason=words),)
+    return (met,)
 
 
 def _finished(state: State, at_ms: int, outcome: str, reason: str) -> CoilFinished:
