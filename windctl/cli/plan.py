@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+import sys
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -9,10 +11,12 @@ import click
 
 from windctl.cli import present, typed
 from windctl.cli.options import Shared, takes
+from windctl.cli.section import Pen, Section, drawn
 from windctl.desk.machines import profile_of
 
 if TYPE_CHECKING:
     from windctl.plan.model import Plan
+    from windctl.recipe.model import Recipe
 
 _Z95 = 1.959964  # two-sided 95 % of a normal distribution
 
@@ -45,13 +49,13 @@ def plan(shared: Shared, recipe: Path, turns: int | None, dcr_ohm: float | None)
     if shared.json:
         present.result_json(made.as_json())
     else:
-        show_plan(made)
+        show_plan(made, wanted)
 
 
-def show_plan(made: Plan) -> None:
-    """The plan as a table for people; ± is the half-width of the 95 % interval."""
+def show_plan(made: Plan, recipe: Recipe) -> None:
+    """The plan as a table for people, and its section; ± is the half-width of the 95 % interval."""
     resistance = present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)
-    highest = f"{made.peak_build_mm:.2f} mm at its highest (crown {made.crown:.3f})"
+    highest = f"{made.peak_build_mm:.2f} mm at its highest (unevenness {100 * made.unevenness:.0f} %)"
     peak = f"{made.wire_speed_peak_m_s:.1f} m/s twice a turn"
     segments = present.grouped(made.program.segments)
     present.result(made.recipe_name)
@@ -68,5 +72,21 @@ def show_plan(made: Plan) -> None:
             ("program", f"{segments} segments, {present.short_digest(made.program.digest)}"),
         ]
     )
+    _show_section(made, recipe)
     for warning in made.warnings:
         present.result(f"caution: {warning}")
+
+
+def _show_section(made: Plan, recipe: Recipe) -> None:
+    bulge = made.side_build_mm / made.peak_build_mm
+    heights = [height * bulge for height in made.build_profile_mm]
+    bobbin = recipe.bobbin
+    section = Section(heights, bobbin.flange_gap_mm, bobbin.flange_depth_mm, recipe.coil.start_flange)
+    present.result()
+    for line in drawn(section, Pen.of(sys.stdout, os.environ)):
+        present.result(line)
+    present.result(
+        f"section through a long side, where the winding stands highest: {made.side_build_mm:.2f} mm of "
+        f"{bobbin.flange_depth_mm:g} mm"
+    )
+    present.result()

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from windctl.desk.bench import Bench
     from windctl.plan.model import Plan
     from windctl.profile.model import MachineProfile
+    from windctl.recipe.model import Recipe
     from windctl.run.outcome import Outcome
     from windctl.run.wind import Winding
 
@@ -60,7 +61,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     simulated = simulated_here(shared, profile)
     plan = make_plan(wanted, profile)
     if shared.dry_run:
-        return _dry_run(shared, plan)
+        return _dry_run(shared, plan, wanted)
     _before(shared, plan, profile)
     with open_bench(shared, profile, simulated, wanted) as bench, book_to_write(shared) as book:
         order = Order(
@@ -105,12 +106,12 @@ def resume(shared: Shared, coil: str | None) -> ExitCode:
         return _stand_by(shared, winding, bench)
 
 
-def _dry_run(shared: Shared, plan: Plan) -> ExitCode:
+def _dry_run(shared: Shared, plan: Plan, recipe: Recipe) -> ExitCode:
     """The plan, with nothing connected, moved or recorded."""
     if shared.json:
         present.result_json(plan.as_json())
     else:
-        show_plan(plan)
+        show_plan(plan, recipe)
         present.result("nothing was moved or recorded")
     return ExitCode.DONE
 

@@ -74,6 +74,7 @@ class Plan:
             "side_build_mm": self.side_build_mm,
             "crown": self.crown,
             "unevenness": self.unevenness,
+            "build_profile_mm": list(self.build_profile_mm),
             "fits": self.fits,
             "duration_s": self.duration_s,
             "wire_speed_mean_m_s": self.wire_speed_mean_m_s,
