@@ -114,6 +114,7 @@ class Definition:
 
     protocol: int
     tables: dict[str, dict[str, int]]
+    notes: dict[tuple[str, str], str]  # (table, name): the comment beside a value
     messages: tuple[Message, ...]
     trips: tuple[TripRow, ...]
     body_limit: int = BODY_LIMIT
@@ -158,9 +159,23 @@ def load(text: str) -> Definition:
         for m in data["message"]
     )
     trips = tuple(TripRow(**t) for t in data["trip"])
-    definition = Definition(data["protocol"], {name: data[name] for name in TABLES}, messages, trips)
+    tables = {name: data[name] for name in TABLES}
+    definition = Definition(data["protocol"], tables, _notes(text), messages, trips)
     _check(definition)
     return definition
+
+
+def _notes(text: str) -> dict[tuple[str, str], str]:
+    """The comments beside the values of the tables: what the values mean."""
+    notes: dict[tuple[str, str], str] = {}
+    table = ""
+    for line in text.splitlines():
+        if line.startswith("["):
+            table = line.strip("[] ").split("]")[0]
+        elif table in TABLES and "#" in line:
+            setting, note = line.split("#", 1)
+            notes[table, setting.split("=")[0].strip()] = note.strip()
+    return notes
 
 
 def _check(definition: Definition) -> None:
@@ -436,6 +451,70 @@ def quadrature() -> list[dict[str, Any]]:
     return rows
 
 
+# ---------------------------------------------------------------- the tables of the specification
+
+
+def specification(definition: Definition) -> str:
+    """README.md with the tables between its markers written anew; the rest stays as it is."""
+    text = SPECIFICATION.read_text(encoding="utf-8")
+    tables = {
+        "schema": f"`0x{definition.schema:08X}`, protocol {definition.protocol}",
+        "messages": "\n\n".join(_message_section(message) for message in definition.messages),
+        "trips": _trip_table(definition.trips),
+        **{name: _value_table(definition, name) for name in TABLES},
+    }
+    for name, table in tables.items():
+        begin, end = f"<!-- generated: {name} -->", "<!-- end -->"
+        head, found, rest = text.partition(begin)
+        if not found or end not in rest:
+            raise DefinitionError(f"README.md has no place for the table of {name}")
+        text = f"{head}{begin}\n{table}\n{end}{rest.partition(end)[2]}"
+    return text
+
+
+def _table(head: tuple[str, ...], rows: Iterable[tuple[object, ...]]) -> str:
+    lines = [head, tuple("---" for _ in head), *rows]
+    return "\n".join("| " + " | ".join(str(cell) for cell in line) + " |" for line in lines)
+
+
+def _value_table(definition: Definition, name: str) -> str:
+    rows = [
+        (v, f"`{key}`", definition.notes.get((name, key), "")) for key, v in definition.tables[name].items()
+    ]
+    return _table(("bit" if TABLES[name][1] else "value", "name", "meaning"), rows)
+
+
+def _message_section(message: Message) -> str:
+    traits = [f"{message.size} bytes"]
+    if message.to == "board":
+        traits.append("numbered" if message.numbered else "not numbered")
+    lines = [f"#### {message.name} (0x{message.code:02X}, {', '.join(traits)})", message.about]
+    if message.fields:
+        rows, at = [], 0
+        for field in message.fields:
+            kind = "12 x (u16, i16)" if field.type == "segments" else field.type
+            rows.append((at, f"`{field.name}`", kind, field.unit, field.about))
+            at += WIDTH[field.type]
+        lines.append(_table(("byte", "field", "type", "unit", ""), rows))
+    return "\n\n".join(lines)
+
+
+def _trip_table(trips: tuple[TripRow, ...]) -> str:
+    rows = [
+        (
+            t.code,
+            f"`{t.name}`",
+            t.category,
+            "yes" if t.count else "no",
+            "yes" if t.guide else "no",
+            t.cause,
+            t.clears,
+        )
+        for t in trips
+    ]
+    return _table(("code", "name", "category", "count kept", "guide kept", "cause", "what clears it"), rows)
+
+
 # ---------------------------------------------------------------- writing and checking
 
 OUTPUTS: dict[Path, Callable[[Definition], str]] = {
@@ -443,6 +522,7 @@ OUTPUTS: dict[Path, Callable[[Definition], str]] = {
     C_HEADER: c_codec.header,
     C_SOURCE: c_codec.source,
     VECTORS: vectors,
+    SPECIFICATION: specification,
 }
 
 

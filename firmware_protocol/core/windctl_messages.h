@@ -126,8 +126,7 @@ uint8_t windctl_trip_category(uint8_t trip);
 /* Bits of WINDCTL_TRUST_... that may still be trusted after a trip. After what is no trip: none. */
 uint8_t windctl_trip_trust(uint8_t trip);
 
-/* Greet, host to board. Opens a conversation; everything earlier is dropped. Sets the sequence. While turning
- * it holds. */
+/* Greet, host to board. Opens a conversation and sets the sequence. Stops whatever moves. */
 #define WINDCTL_GREET_CODE 0x01
 #define WINDCTL_GREET_SIZE 8
 struct windctl_greet {
@@ -137,20 +136,23 @@ struct windctl_greet {
 void windctl_decode_greet(const uint8_t *body, struct windctl_greet *message);
 void windctl_encode_greet(const struct windctl_greet *message, uint8_t *body);
 
-/* Setup, host to board. Limits for one coil. Only with drives off. Cannot disable the stop and guard inputs. */
+/* Setup, host to board. Limits for one coil. Another one than the last voids place, program, pace and stop
+ * point. Nothing in it disables the stop and guard inputs. */
 #define WINDCTL_SETUP_CODE 0x02
 #define WINDCTL_SETUP_SIZE 36
 struct windctl_setup {
     uint32_t coil_token; /* names the coil across resets */
-    uint16_t counts_per_turn;
-    uint16_t steps_per_turn; /* spindle steps */
-    uint32_t max_count; /* hard limit, never passed */
-    uint16_t max_pace; /* steps/s: at most 15000; without a drive counts/s */
-    uint16_t accel; /* steps/s2 */
-    uint16_t decel; /* steps/s2 */
+    uint16_t counts_per_turn; /* 1..400 */
+    uint16_t steps_per_turn; /* spindle steps, 1..800 */
+    uint32_t max_count; /* hard limit, never passed; at most 2^30 */
+    uint16_t max_pace; /* steps/s: at most 15000 and 10 * decel */
+    uint16_t accel; /* steps/s2: at least 100 */
+    uint16_t decel; /* steps/s2: at least 100 */
     int32_t guide_min; /* guide steps */
     int32_t guide_max; /* guide steps */
-    uint16_t slip_counts; /* counts: allowed difference of issued and counted; also the index */
+    /* counts: allowed difference of issued and counted, and of the index from its place; at least 2 if a count
+     * is more than a step */
+    uint16_t slip_counts;
     uint16_t reverse_counts; /* counts: allowed way back while turning */
     uint16_t tension_low; /* sensor units: of the mean per turn; 0: no lower bound */
     uint16_t tension_high; /* sensor units: 65535: no upper bound */
@@ -161,7 +163,7 @@ struct windctl_setup {
 void windctl_decode_setup(const uint8_t *body, struct windctl_setup *message);
 void windctl_encode_setup(const struct windctl_setup *message, uint8_t *body);
 
-/* Arm, host to board. drives_off to ready: powers the drives. */
+/* Arm, host to board. Powers the drives: drives_off to ready. */
 #define WINDCTL_ARM_CODE 0x03
 #define WINDCTL_ARM_SIZE 4
 struct windctl_arm {
@@ -171,11 +173,12 @@ struct windctl_arm {
 void windctl_decode_arm(const uint8_t *body, struct windctl_arm *message);
 void windctl_encode_arm(const struct windctl_arm *message, uint8_t *body);
 
-/* Disarm, host to board. ready or held to drives_off, standing only. */
+/* Disarm, host to board. Takes the power off: ready or held to drives_off. */
 #define WINDCTL_DISARM_CODE 0x04
 #define WINDCTL_DISARM_SIZE 0
 
-/* Lay, host to board. Appends segments to the queue; all or nothing, harmless when repeated. */
+/* Lay, host to board. Appends segments to the queue: all or nothing, harmless when repeated. Only with a guide
+ * fitted. */
 #define WINDCTL_LAY_CODE 0x05
 #define WINDCTL_LAY_SIZE 57
 struct windctl_lay {
@@ -187,7 +190,7 @@ struct windctl_lay {
 void windctl_decode_lay(const uint8_t *body, struct windctl_lay *message);
 void windctl_encode_lay(const struct windctl_lay *message, uint8_t *body);
 
-/* Pace, host to board. The pace the spindle works towards, within Setup.max_pace. */
+/* Pace, host to board. The pace the spindle works towards. Kept until the next one, or another Setup. */
 #define WINDCTL_PACE_CODE 0x06
 #define WINDCTL_PACE_SIZE 6
 struct windctl_pace {
@@ -198,8 +201,8 @@ struct windctl_pace {
 void windctl_decode_pace(const uint8_t *body, struct windctl_pace *message);
 void windctl_encode_pace(const struct windctl_pace *message, uint8_t *body);
 
-/* StopAt, host to board. The stop point. Inside the braking distance: brakes now, and Accepted says where it
- * will stand. */
+/* StopAt, host to board. The stop point; 0xFFFFFFFF: none. Inside the braking distance it brakes now. Accepted
+ * says where it will stand. */
 #define WINDCTL_STOP_AT_CODE 0x07
 #define WINDCTL_STOP_AT_SIZE 8
 struct windctl_stop_at {
@@ -210,7 +213,7 @@ struct windctl_stop_at {
 void windctl_decode_stop_at(const uint8_t *body, struct windctl_stop_at *message);
 void windctl_encode_stop_at(const struct windctl_stop_at *message, uint8_t *body);
 
-/* Go, host to board. ready or held to turning. */
+/* Go, host to board. Starts to wind: ready or held to turning. */
 #define WINDCTL_GO_CODE 0x08
 #define WINDCTL_GO_SIZE 4
 struct windctl_go {
@@ -220,24 +223,25 @@ struct windctl_go {
 void windctl_decode_go(const uint8_t *body, struct windctl_go *message);
 void windctl_encode_go(const struct windctl_go *message, uint8_t *body);
 
-/* Hold, host to board. Stop under control and stay powered. Always executed, whatever its number. */
+/* Hold, host to board. Stop under control and stay powered. Always executed, whatever its number; the Status
+ * of the same tick is its answer. */
 #define WINDCTL_HOLD_CODE 0x09
 #define WINDCTL_HOLD_SIZE 0
 
-/* GuideTo, host to board. Moves the guide with the spindle standing, ready or held. */
+/* GuideTo, host to board. Moves the guide while the spindle stands. */
 #define WINDCTL_GUIDE_TO_CODE 0x0A
 #define WINDCTL_GUIDE_TO_SIZE 10
 struct windctl_guide_to {
     uint16_t boot;
     uint16_t epoch;
     int32_t guide; /* guide steps */
-    uint16_t pace; /* guide steps/s */
+    uint16_t pace; /* guide steps/s: 1..4000 */
 };
 void windctl_decode_guide_to(const uint8_t *body, struct windctl_guide_to *message);
 void windctl_encode_guide_to(const struct windctl_guide_to *message, uint8_t *body);
 
-/* SetDatum, host to board. Declares where the machine stands: empties the queue and places it inside segment
- * `next`. */
+/* SetDatum, host to board. Declares where the machine stands, and empties the queue. From then on count and
+ * guide are trusted. */
 #define WINDCTL_SET_DATUM_CODE 0x0B
 #define WINDCTL_SET_DATUM_SIZE 22
 struct windctl_set_datum {
@@ -252,18 +256,18 @@ struct windctl_set_datum {
 void windctl_decode_set_datum(const uint8_t *body, struct windctl_set_datum *message);
 void windctl_encode_set_datum(const struct windctl_set_datum *message, uint8_t *body);
 
-/* Measure, host to board. Readings of the contact: each over `window` ticks (a multiple of 100), while turning
- * extended to whole revolutions; every `every` ticks, 0: once. Window 0 ends it. */
+/* Measure, host to board. Readings of the contact, each a mean over `window` ticks, while turning extended to
+ * whole revolutions. */
 #define WINDCTL_MEASURE_CODE 0x0C
 #define WINDCTL_MEASURE_SIZE 4
 struct windctl_measure {
-    uint16_t window; /* ticks: 100..6000 */
-    uint16_t every; /* ticks */
+    uint16_t window; /* ticks: a multiple of 100, at most 6000; 0 ends the readings */
+    uint16_t every; /* ticks: from the beginning of one to that of the next, if it is over; 0: one reading only */
 };
 void windctl_decode_measure(const uint8_t *body, struct windctl_measure *message);
 void windctl_encode_measure(const struct windctl_measure *message, uint8_t *body);
 
-/* ClearTrip, host to board. tripped to drives_off, when the cause is gone and the spindle stands. */
+/* ClearTrip, host to board. Tripped to drives_off, once the inputs are closed and the spindle stands. */
 #define WINDCTL_CLEAR_TRIP_CODE 0x0D
 #define WINDCTL_CLEAR_TRIP_SIZE 4
 struct windctl_clear_trip {
@@ -358,10 +362,10 @@ void windctl_encode_status(const struct windctl_status *message, uint8_t *body);
 #define WINDCTL_READING_CODE 0x85
 #define WINDCTL_READING_SIZE 17
 struct windctl_reading {
-    uint32_t ticks; /* ms */
-    int32_t count; /* at the middle of the window */
+    uint32_t ticks; /* ms: when it was complete */
+    int32_t count; /* at the middle of it */
     uint32_t value; /* 1/16 unit */
-    uint16_t window; /* ticks */
+    uint16_t window; /* ticks: that were averaged; the boxcar reaches 99 further back */
     int16_t celsius; /* 0.01 degree C */
     uint8_t flags;
 };

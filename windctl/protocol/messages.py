@@ -165,7 +165,7 @@ TRIPS: Final[dict[int, TripRule]] = {
         1,
         True,
         True,
-        "counted speed over 64 ticks exceeds Setup.max_pace by more than a quarter",
+        "while driven, the speed counted over 64 ticks exceeded Setup.max_pace by more than a quarter",
         "ClearTrip",
     ),
     4: TripRule(
@@ -173,7 +173,7 @@ TRIPS: Final[dict[int, TripRule]] = {
         1,
         True,
         True,
-        "issued steps and counted position differ by more than Setup.slip_counts (belt, stall, lost counts)",
+        "issued steps and counted position came to differ by more than Setup.slip_counts (belt, stall, lost counts)",
         "check belt and encoder, then ClearTrip",
     ),
     5: TripRule(
@@ -232,7 +232,7 @@ _GREET = struct.Struct("<II")
 
 @dataclass(frozen=True, slots=True)
 class Greet:
-    """Opens a conversation; everything earlier is dropped. Sets the sequence. While turning it holds."""
+    """Opens a conversation and sets the sequence. Stops whatever moves."""
 
     NAME: ClassVar[str] = "Greet"
     CODE: ClassVar[int] = 0x01
@@ -258,7 +258,9 @@ _SETUP = struct.Struct("<IHHIHHHiiHHHHBB")
 
 @dataclass(frozen=True, slots=True)
 class Setup:
-    """Limits for one coil. Only with drives off. Cannot disable the stop and guard inputs."""
+    """Limits for one coil. Another one than the last voids place, program, pace and stop point. Nothing in
+    it disables the stop and guard inputs.
+    """
 
     NAME: ClassVar[str] = "Setup"
     CODE: ClassVar[int] = 0x02
@@ -267,15 +269,17 @@ class Setup:
     MOVES: ClassVar[bool] = False
 
     coil_token: int  # u32: names the coil across resets
-    counts_per_turn: int  # u16
-    steps_per_turn: int  # u16: spindle steps
-    max_count: int  # u32: hard limit, never passed
-    max_pace: int  # u16, steps/s: at most 15000; without a drive counts/s
-    accel: int  # u16, steps/s2
-    decel: int  # u16, steps/s2
+    counts_per_turn: int  # u16: 1..400
+    steps_per_turn: int  # u16: spindle steps, 1..800
+    max_count: int  # u32: hard limit, never passed; at most 2^30
+    max_pace: int  # u16, steps/s: at most 15000 and 10 * decel
+    accel: int  # u16, steps/s2: at least 100
+    decel: int  # u16, steps/s2: at least 100
     guide_min: int  # i32, guide steps
     guide_max: int  # i32, guide steps
-    slip_counts: int  # u16, counts: allowed difference of issued and counted; also the index
+    # u16, counts: allowed difference of issued and counted, and of the index from its place; at least 2 if a
+    # count is more than a step
+    slip_counts: int
     reverse_counts: int  # u16, counts: allowed way back while turning
     tension_low: int  # u16, sensor units: of the mean per turn; 0: no lower bound
     tension_high: int  # u16, sensor units: 65535: no upper bound
@@ -315,7 +319,7 @@ _ARM = struct.Struct("<HH")
 
 @dataclass(frozen=True, slots=True)
 class Arm:
-    """drives_off to ready: powers the drives."""
+    """Powers the drives: drives_off to ready."""
 
     NAME: ClassVar[str] = "Arm"
     CODE: ClassVar[int] = 0x03
@@ -341,7 +345,7 @@ _DISARM = struct.Struct("<")
 
 @dataclass(frozen=True, slots=True)
 class Disarm:
-    """ready or held to drives_off, standing only."""
+    """Takes the power off: ready or held to drives_off."""
 
     NAME: ClassVar[str] = "Disarm"
     CODE: ClassVar[int] = 0x04
@@ -364,7 +368,7 @@ _LAY = struct.Struct("<IIB48s")
 
 @dataclass(frozen=True, slots=True)
 class Lay:
-    """Appends segments to the queue; all or nothing, harmless when repeated."""
+    """Appends segments to the queue: all or nothing, harmless when repeated. Only with a guide fitted."""
 
     NAME: ClassVar[str] = "Lay"
     CODE: ClassVar[int] = 0x05
@@ -392,7 +396,7 @@ _PACE = struct.Struct("<HHH")
 
 @dataclass(frozen=True, slots=True)
 class Pace:
-    """The pace the spindle works towards, within Setup.max_pace."""
+    """The pace the spindle works towards. Kept until the next one, or another Setup."""
 
     NAME: ClassVar[str] = "Pace"
     CODE: ClassVar[int] = 0x06
@@ -419,7 +423,9 @@ _STOPAT = struct.Struct("<HHI")
 
 @dataclass(frozen=True, slots=True)
 class StopAt:
-    """The stop point. Inside the braking distance: brakes now, and Accepted says where it will stand."""
+    """The stop point; 0xFFFFFFFF: none. Inside the braking distance it brakes now. Accepted says where it
+    will stand.
+    """
 
     NAME: ClassVar[str] = "StopAt"
     CODE: ClassVar[int] = 0x07
@@ -446,7 +452,7 @@ _GO = struct.Struct("<HH")
 
 @dataclass(frozen=True, slots=True)
 class Go:
-    """ready or held to turning."""
+    """Starts to wind: ready or held to turning."""
 
     NAME: ClassVar[str] = "Go"
     CODE: ClassVar[int] = 0x08
@@ -472,7 +478,9 @@ _HOLD = struct.Struct("<")
 
 @dataclass(frozen=True, slots=True)
 class Hold:
-    """Stop under control and stay powered. Always executed, whatever its number."""
+    """Stop under control and stay powered. Always executed, whatever its number; the Status of the same
+    tick is its answer.
+    """
 
     NAME: ClassVar[str] = "Hold"
     CODE: ClassVar[int] = 0x09
@@ -495,7 +503,7 @@ _GUIDETO = struct.Struct("<HHiH")
 
 @dataclass(frozen=True, slots=True)
 class GuideTo:
-    """Moves the guide with the spindle standing, ready or held."""
+    """Moves the guide while the spindle stands."""
 
     NAME: ClassVar[str] = "GuideTo"
     CODE: ClassVar[int] = 0x0A
@@ -506,7 +514,7 @@ class GuideTo:
     boot: int  # u16
     epoch: int  # u16
     guide: int  # i32, guide steps
-    pace: int  # u16, guide steps/s
+    pace: int  # u16, guide steps/s: 1..4000
 
     def encode_body(self) -> bytes:
         """The body as it goes into a frame."""
@@ -523,7 +531,7 @@ _SETDATUM = struct.Struct("<HHIiiIH")
 
 @dataclass(frozen=True, slots=True)
 class SetDatum:
-    """Declares where the machine stands: empties the queue and places it inside segment `next`."""
+    """Declares where the machine stands, and empties the queue. From then on count and guide are trusted."""
 
     NAME: ClassVar[str] = "SetDatum"
     CODE: ClassVar[int] = 0x0B
@@ -562,8 +570,8 @@ _MEASURE = struct.Struct("<HH")
 
 @dataclass(frozen=True, slots=True)
 class Measure:
-    """Readings of the contact: each over `window` ticks (a multiple of 100), while turning extended to
-    whole revolutions; every `every` ticks, 0: once. Window 0 ends it.
+    """Readings of the contact, each a mean over `window` ticks, while turning extended to whole
+    revolutions.
     """
 
     NAME: ClassVar[str] = "Measure"
@@ -572,8 +580,9 @@ class Measure:
     NUMBERED: ClassVar[bool] = True
     MOVES: ClassVar[bool] = False
 
-    window: int  # u16, ticks: 100..6000
-    every: int  # u16, ticks
+    window: int  # u16, ticks: a multiple of 100, at most 6000; 0 ends the readings
+    # u16, ticks: from the beginning of one to that of the next, if it is over; 0: one reading only
+    every: int
 
     def encode_body(self) -> bytes:
         """The body as it goes into a frame."""
@@ -590,7 +599,7 @@ _CLEARTRIP = struct.Struct("<HH")
 
 @dataclass(frozen=True, slots=True)
 class ClearTrip:
-    """tripped to drives_off, when the cause is gone and the spindle stands."""
+    """Tripped to drives_off, once the inputs are closed and the spindle stands."""
 
     NAME: ClassVar[str] = "ClearTrip"
     CODE: ClassVar[int] = 0x0D
@@ -818,10 +827,10 @@ class Reading:
     CODE: ClassVar[int] = 0x85
     SIZE: ClassVar[int] = 17
 
-    ticks: int  # u32, ms
-    count: int  # i32: at the middle of the window
+    ticks: int  # u32, ms: when it was complete
+    count: int  # i32: at the middle of it
     value: int  # u32, 1/16 unit
-    window: int  # u16, ticks
+    window: int  # u16, ticks: that were averaged; the boxcar reaches 99 further back
     celsius: int  # i16, 0.01 degree C
     flags: int  # u8
 
