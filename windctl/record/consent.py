@@ -2,11 +2,26 @@
 
 from __future__ import annotations
 
-from windctl.protocol.messages import Arm, Capability, Cause, ClearTrip, Go, InputBit, Refusal, Trip
+from windctl.protocol.messages import (
+    Arm,
+    Capability,
+    Cause,
+    ClearTrip,
+    Go,
+    GuideTo,
+    InputBit,
+    Refusal,
+    SetDatum,
+    Trip,
+    Trust,
+)
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
 from windctl.record.events import Event, GoGiven
 from windctl.record.state import Fit, State
+
+# Commands whose refusal a person should hear of: they had agreed to something that then did not happen.
+_TOLD = (Arm.CODE, Go.CODE, GuideTo.CODE, SetDatum.CODE, ClearTrip.CODE)
 
 
 def follows_from_consent(state: State, at_ms: int) -> tuple[Event, ...]:
@@ -14,7 +29,7 @@ def follows_from_consent(state: State, at_ms: int) -> tuple[Event, ...]:
     status, permission = state.status, state.permission
     if status is None or permission is None:
         return ()
-    if not _powered_byfollows_from_consent(state):
+    if not _powered_by_consent(state):
         return ()
     if _pedal_fitted(state) and not status.inputs & InputBit.PEDAL_DOWN:
         return ()
@@ -22,7 +37,7 @@ def follows_from_consent(state: State, at_ms: int) -> tuple[Event, ...]:
     return (GoGiven(at_ms, permission.boot, permission.epoch, by),)
 
 
-def _powered_byfollows_from_consent(state: State) -> bool:
+def _powered_by_consent(state: State) -> bool:
     """Exactly the powering that was consented to has happened since the consent, and nothing else."""
     consent, status = state.consent, state.status
     return (
@@ -41,15 +56,23 @@ def _pedal_fitted(state: State) -> bool:
 
 
 def asks(state: State) -> str | None:
+    """What only a person can give now: "go", "clear", "place" or nothing.
+
+    "place": the board has lost the count or the guide's place, and a person has to say at which turn the coil
+    stands.
+    """
     status, permission = state.status, state.permission
     if status is None or permission is None or state.end is not None:
         return None
-    if status.state == BoardState.TRIPPED:
-        return None if state.clear == permission else "clear"
     if status.state == BoardState.TURNING or not state.standing:
         return None
-    if state.held is not None and state.stop_point is not None and state.count >= state.stop_point:
+    if status.state == BoardState.TRIPPED:
+        return None if state.clear == permission else "clear"
+    at_stop = state.stop_point is not None and state.count >= state.stop_point
+    if at_stop and state.held is not None and state.fit is not Fit.CORRECTED:
         return None  # settling
+    if state.hands is not None and status.state != BoardState.DRIVES_OFF:
+        return None  # the drives are going off
     if _consented(state):
         return None
     if (
@@ -58,12 +81,14 @@ def asks(state: State) -> str | None:
         and not state.consented_since_greeting
     ):
         return None  # still to be disarmed and set up
+    if state.fit is Fit.SAME and status.trust != Trust.COUNT | Trust.GUIDE:
+        return "place"
     return "go"
 
 
 def _consented(state: State) -> bool:
     """A consent is on its way to the board: to power the drives, to start, or it waits for the pedal."""
-    return given(state) is not None or _powered_byfollows_from_consent(state)
+    return given(state) is not None or _powered_by_consent(state)
 
 
 def given(state: State) -> Permission | None:
@@ -75,15 +100,19 @@ def given(state: State) -> Permission | None:
 
 
 def blocked(state: State) -> str | None:
-    if state.status is not None and state.status.state == BoardState.TRIPPED:
-        return f"the board is tripped ({Trip(state.status.trip).name.lower().replace('_', ' ')})"
+    """Why the coil cannot go on by itself, in words."""
     refused = state.refused
-    if refused is not None and refused.command in (Arm.CODE, Go.CODE, ClearTrip.CODE):
-        return f"the board refused: {Refusal(refused.why).name.lower().replace('_', ' ')}"
-    return None
+    declined = None
+    if refused is not None and refused.command in _TOLD:
+        declined = f"the board refused: {Refusal(refused.why).name.lower().replace('_', ' ')}"
+    if state.status is not None and state.status.state == BoardState.TRIPPED:
+        trip = f"the board is tripped ({Trip(state.status.trip).name.lower().replace('_', ' ')})"
+        return trip if declined is None else f"{trip}; {declined}"
+    return declined
 
 
 def why_lost(state: State) -> str:
+    """Why the board cannot be asked where the coil stands."""
     identity = state.identity
     assert identity is not None and state.started is not None
     if identity.boot != state.boot:

@@ -59,6 +59,7 @@ class CoilStarted:
     batch: str
     of: int  # 0: not part of a counted batch
     basis: Basis | None = None  # what the coil is compared with when it teaches; None: an older version's
+    guide_pace: int = 200  # motor steps/s at which the guide is brought back to a place, the spindle at rest
 
 
 @dataclass(frozen=True, slots=True)
@@ -208,13 +209,70 @@ class LinkLost:
 
 @dataclass(frozen=True, slots=True)
 class CountCorrected:
-    """The operator declared at which turn the coil stands, because the board could not be asked."""
+    """The operator declared at which turn the coil stands.
+
+    `miscounted`: the wire counted so far lies on the bobbin and only its number was wrong. Otherwise what was
+    counted stays right, and the coil stands elsewhere now: nobody counted, or turns were counted without
+    wire.
+    """
 
     kind: ClassVar[str] = "count_corrected"
     at_ms: int
     turn: float
     by: str
     reason: str
+    miscounted: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class HandsAsked:
+    """Somebody has to reach into the machine: the drives go off, until the next consent."""
+
+    kind: ClassVar[str] = "hands_asked"
+    at_ms: int
+    by: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class WireBroke:
+    """The wire broke when `turn` turns lay on the bobbin; what was counted beyond is without wire."""
+
+    kind: ClassVar[str] = "wire_broke"
+    at_ms: int
+    turn: float
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Spliced:
+    """The wire was joined at `turn`; the same spool goes on."""
+
+    kind: ClassVar[str] = "spliced"
+    at_ms: int
+    turn: float
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class WireChanged:
+    """Another spool of the recipe's wire was joined on at `turn`. `spool`: its name, where it has one."""
+
+    kind: ClassVar[str] = "wire_changed"
+    at_ms: int
+    turn: float
+    spool: str
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Unwound:
+    """The spindle was turned back by hand with the drives off, from count `before` to `count`."""
+
+    kind: ClassVar[str] = "unwound"
+    at_ms: int
+    before: int
+    count: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -264,6 +322,11 @@ Event = (
     | Tripped
     | LinkLost
     | CountCorrected
+    | HandsAsked
+    | WireBroke
+    | Spliced
+    | WireChanged
+    | Unwound
     | NoteMade
     | CoilFinished
 )
@@ -287,6 +350,11 @@ KINDS: dict[str, type[Event]] = {
         Tripped,
         LinkLost,
         CountCorrected,
+        HandsAsked,
+        WireBroke,
+        Spliced,
+        WireChanged,
+        Unwound,
         NoteMade,
         CoilFinished,
     )

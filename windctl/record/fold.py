@@ -9,16 +9,20 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import replace
 
-from windctl.forecast.estimator import begin, update
+from windctl.forecast.estimator import Estimate, begin, update
+from windctl.forecast.events import new_wire, recounted, spliced
 from windctl.forecast.reading import Reading as CoilReading
 from windctl.protocol.messages import (
     Arm,
+    Capability,
     ClearTrip,
     Go,
-    Identity,
+    GuideTo,
     ReadingFlag,
     Refused,
+    SetDatum,
     Status,
+    Trip,
     Trust,
 )
 from windctl.protocol.messages import State as BoardState
@@ -33,23 +37,32 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    HandsAsked,
     Held,
     HoldRequested,
     LinkLost,
     NoteMade,
     ReadingTaken,
     Resumed,
+    Spliced,
     StatusHeard,
     StopPointChosen,
     Tripped,
+    Unwound,
     WentOn,
+    WireBroke,
+    WireChanged,
 )
+from windctl.record.fitting import fit_of, kept_guide
 from windctl.record.state import Fit, State, setup_crc
 
 __all__ = ["SETTLE_TICKS", "Fit", "State", "fold", "replay", "setup_crc", "start"]
 
 # A reading at rest counts as settled when its whole window lies this long after the spindle stood.
 SETTLE_TICKS = 500
+
+# How far off a turn typed by somebody who counted may be.
+MISCOUNT_SD_TURNS = 0.5
 
 
 def start() -> State:
@@ -67,18 +80,19 @@ def fold(state: State, event: Event) -> State:
         case CoilStarted():
             return replace(state, started=event, estimate=begin(event.prior))
         case Resumed():
-            return _link_gone(replace(state, hold=None, end=None, link_lost=None))
+            return _link_gone(replace(state, hold=None, end=None, hands=None, link_lost=None))
         case BoardGreeted():
             return replace(
                 state,
                 identity=event.identity,
                 status=None,
-                fit=_fit(state, event.identity),
+                fit=fit_of(state, event.identity),
                 consent=None,
                 consented_since_greeting=False,
                 clear=None,
                 refused=None,
                 link_lost=None,
+                guide_known=kept_guide(state, event.identity),
             )
         case GoGiven():
             return replace(
@@ -89,6 +103,7 @@ def fold(state: State, event: Event) -> State:
                 boot=event.boot,
                 epoch=event.epoch,
                 hold=None,
+                hands=None,
                 refused=None,
             )
         case ClearGiven():
@@ -105,19 +120,26 @@ def fold(state: State, event: Event) -> State:
                 top_ups=state.top_ups + (1 if state.held is not None else 0),
             )
         case WentOn():
-            moving = replace(state, fit=Fit.SAME, turning=True, held=None, corrected=None, settled_readings=0)
-            return moving if state.status is None else _status(moving, state.status)
+            return _went_on(state)
         case Held():
             return replace(state, turning=False, held=event, settled_readings=0)
         case Tripped():
-            return replace(state, tripped=event, consent=None)
+            return _tripped(state, event)
         case LinkLost():
             return _link_gone(replace(state, link_lost=event))
         case CountCorrected():
-            cpt = state.counts_per_turn
-            return replace(
-                state, fit=Fit.CORRECTED, corrected=event, count=round(event.turn * cpt), held=None
-            )
+            return _corrected(state, event)
+        case HandsAsked():
+            return replace(state, hands=event, consent=None)
+        case WireBroke():
+            return replace(state, broke=event)
+        case Spliced():
+            return _joined(state, None if state.estimate is None else spliced(state.estimate, event.turn))
+        case WireChanged():
+            return _joined(state, None if state.estimate is None else new_wire(state.estimate, event.turn))
+        case Unwound():
+            held = None if state.held is None else replace(state.held, count=event.count)
+            return replace(state, misplaced=_guided(state), held=held)
         case CommandRefused():
             return _refused(state, event.refused)
         case CoilFinished():
@@ -134,27 +156,60 @@ def replay(events: Iterable[Event], state: State | None = None) -> State:
     return state
 
 
-def _fit(state: State, identity: Identity) -> Fit:
-    """A board that was never reset for another coil, and stands where this one can stand, has it in hand."""
-    if not state.let_go or state.started is None:
-        return Fit.FRESH
-    setup = state.started.setup
-    same = (
-        identity.boot == state.boot
-        and identity.trust == Trust.COUNT | Trust.GUIDE
-        and identity.coil_token == setup.coil_token
-        and identity.setup_crc == setup_crc(state.started)
-        and identity.program == state.started.program_id
-        and (identity.epoch - state.epoch) & 0xFFFF < 0x8000
-        and state.count <= identity.count <= state.started.total_counts
-        and identity.next >= state.next
+def _guided(state: State) -> bool:
+    """The guide has a motor, and the board knows where it is."""
+    started = state.started
+    fitted = started is not None and bool(started.setup.fitted & Capability.GUIDE_STEP)
+    return fitted and state.guide_known
+
+
+def _went_on(state: State) -> State:
+    moving = replace(
+        state,
+        fit=Fit.SAME,
+        turning=True,
+        held=None,
+        corrected=None,
+        board_count=None,
+        guide_known=True,
+        misplaced=False,
+        broke_near=None,
+        settled_readings=0,
     )
-    return Fit.SAME if same else Fit.LOST
+    return moving if state.status is None else _status(moving, state.status)
+
+
+def _tripped(state: State, event: Tripped) -> State:
+    """A trip for low tension comes with the turn that was short of it, so the wire broke about one before."""
+    low = event.trip == Trip.TENSION_LOW
+    near = max(0.0, event.count / state.counts_per_turn - 1.0) if low else None
+    return replace(state, tripped=event, consent=None, broke_near=near)
+
+
+def _corrected(state: State, event: CountCorrected) -> State:
+    in_hand, misplaced = state.in_hand, _guided(state)
+    estimate = state.estimate
+    if event.miscounted and estimate is not None:
+        estimate = recounted(estimate, state.turns, event.turn, MISCOUNT_SD_TURNS)
+    return replace(
+        state,
+        fit=Fit.CORRECTED,
+        corrected=event,
+        count=round(event.turn * state.counts_per_turn),
+        held=state.held if in_hand else None,
+        board_count=state.status.count if misplaced and state.status is not None else None,
+        misplaced=misplaced,
+        estimate=estimate,
+    )
+
+
+def _joined(state: State, estimate: Estimate | None) -> State:
+    return replace(state, estimate=estimate, broke=None, broke_near=None, splices=state.splices + 1)
 
 
 def _refused(state: State, refused: Refused) -> State:
     """A consent that the board declined is spent: another needs another word from a person."""
-    if refused.command in (Arm.CODE, Go.CODE):
+    if refused.command in (Arm.CODE, Go.CODE, GuideTo.CODE, SetDatum.CODE):
         return replace(state, refused=refused, consent=None)
     if refused.command == ClearTrip.CODE:
         return replace(state, refused=refused, clear=None)
@@ -163,16 +218,32 @@ def _refused(state: State, refused: Refused) -> State:
 
 def _status(state: State, status: Status) -> State:
     tripped = state.tripped if status.state == BoardState.TRIPPED else None
-    if state.fit is not Fit.SAME:  # the board may still stand where another coil left it
-        return replace(state, status=status, tripped=tripped, fresh_reading=False)
+    guide_known = state.guide_known and bool(status.trust & Trust.GUIDE)
+    if state.fit is Fit.SAME:
+        return replace(
+            state,
+            status=status,
+            tripped=tripped,
+            guide_known=guide_known,
+            count=status.count,
+            next=status.next,
+            boot=status.boot,
+            epoch=status.epoch,
+            fresh_reading=False,
+        )
+    # The board may still stand where another coil left it, or where this one does not stand any more.
+    count, board_count = state.count, state.board_count
+    if board_count is not None:  # turned by hand since the turn was corrected under it
+        unpowered = status.state in (BoardState.DRIVES_OFF, BoardState.TRIPPED)
+        count += status.count - board_count if unpowered else 0
+        board_count = status.count if unpowered else None
     return replace(
         state,
         status=status,
         tripped=tripped,
-        count=status.count,
-        next=status.next,
-        boot=status.boot,
-        epoch=status.epoch,
+        guide_known=guide_known,
+        count=count,
+        board_count=board_count,
         fresh_reading=False,
     )
 
@@ -184,6 +255,8 @@ def _reading(state: State, event: ReadingTaken) -> State:
         return state
     if raw.flags & ReadingFlag.OPEN or raw.count <= 0:
         return replace(state, readings_gated=state.readings_gated + 1)
+    if state.hands is not None or state.broke is not None or state.broke_near is not None:
+        return state  # somebody is at the wire, or it is broken
     resting = not raw.flags & ReadingFlag.TURNING
     reading = CoilReading(
         turn=raw.count / state.counts_per_turn,

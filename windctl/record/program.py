@@ -7,6 +7,7 @@ import zlib
 from functools import lru_cache
 
 from windctl.errors import RecordBroken
+from windctl.lay.program import Place, Program
 
 
 def stored(packed: bytes) -> str:
@@ -24,3 +25,16 @@ def unpacked(text: str) -> bytes:
         return zlib.decompress(base64.b64decode(text, validate=True))
     except (ValueError, zlib.error) as error:
         raise RecordBroken(f"the stored program cannot be read: {error}") from error
+
+
+def place_at(text: str, counts_per_turn: int, count: int) -> Place:
+    """Where a count lies in a stored program, and where its guide is there.
+
+    Raises RecordBroken when the text is not a stored program.
+    """
+    return _program(text, counts_per_turn).place_of(count)
+
+
+@lru_cache(maxsize=4)
+def _program(text: str, counts_per_turn: int) -> Program:
+    return Program.from_packed(unpacked(text), counts_per_turn=counts_per_turn, steps_per_mm=1.0)

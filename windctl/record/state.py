@@ -18,10 +18,12 @@ from windctl.record.events import (
     CountCorrected,
     EndRequested,
     GoGiven,
+    HandsAsked,
     Held,
     HoldRequested,
     LinkLost,
     Tripped,
+    WireBroke,
 )
 
 
@@ -60,6 +62,13 @@ class State:
     held: Held | None = None  # since the spindle last came to rest
     tripped: Tripped | None = None
     corrected: CountCorrected | None = None  # counts until the board has turned again
+    board_count: int | None = None  # the board's own count when the turn was corrected under it
+    guide_known: bool = False  # the board knows where the guide is, for this coil's program
+    misplaced: bool = False  # the guide is to be brought to where the program has it at the count
+    hands: HandsAsked | None = None  # until the next consent
+    broke: WireBroke | None = None  # until the wire is joined
+    broke_near: float | None = None  # turns: where the wire broke, if that is why the board tripped
+    splices: int = 0
     refused: Refused | None = None  # the last refusal since the last consent
     link_lost: LinkLost | None = None
     estimate: Estimate | None = None
@@ -89,6 +98,34 @@ class State:
             and status.state != BoardState.TURNING
             and bool(status.inputs & InputBit.STANDING)
         )
+
+    @property
+    def drives_off(self) -> bool:
+        """Nothing is powered and nothing turns: hands may go in."""
+        status = self.status
+        if status is None or not self.standing:
+            return False
+        return status.state in (BoardState.DRIVES_OFF, BoardState.TRIPPED)
+
+    @property
+    def powered(self) -> bool:
+        """The drives hold the spindle, which stands."""
+        status = self.status
+        return status is not None and status.state in (BoardState.READY, BoardState.HELD)
+
+    @property
+    def in_hand(self) -> bool:
+        """The coil has turns, and how many is known."""
+        return self.fit in (Fit.SAME, Fit.CORRECTED)
+
+    @property
+    def wire_ends_at(self) -> float:
+        """Turns that have wire: those counted, less what was counted after a break."""
+        if self.broke is not None:
+            return min(self.broke.turn, self.turns)
+        if self.broke_near is not None:
+            return min(self.broke_near, self.turns)
+        return self.turns
 
     @property
     def permission(self) -> Permission | None:

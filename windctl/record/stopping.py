@@ -9,6 +9,7 @@ from windctl.record.state import State
 
 
 def stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
+    """Another stop point, if there is a better one than the present."""
     started = state.started
     assert started is not None and state.estimate is not None
     target = started.target

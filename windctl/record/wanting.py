@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from windctl.lay.program import Program
+from windctl.lay.program import Place
 from windctl.plan.pace import pace_for
 from windctl.protocol.messages import State as BoardState
-from windctl.protocol.wants import Datum, Sampling, Segments, Wants
+from windctl.protocol.wants import Datum, GuidePlace, Permission, Sampling, Segments, Wants
 from windctl.record.consent import given
-from windctl.record.program import unpacked
+from windctl.record.program import place_at, unpacked
 from windctl.record.state import Fit, State, setup_crc
 
 WINDOW_TICKS = 200  # of one reading: whole cycles of 50 and 60 Hz mains
@@ -15,24 +15,36 @@ EVERY_TICKS = 250
 
 
 def wanted(state: State) -> Wants:
-    started, status, permission = state.started, state.status, state.permission
+    """The levels that follow from the state of a coil that has started."""
+    started, permission = state.started, state.permission
     assert started is not None
+    hands = state.hands is not None and state.powered
     if state.hold is not None or state.end is not None:
-        return Wants(beat=True, hold=True, sampling=_sampling(state))
+        return Wants(beat=True, hold=True, disarmed=hands, sampling=_sampling(state), clear_trip=state.clear)
     if state.identity is None or permission is None:
         return Wants(beat=True)
-    program = unpacked(started.program_packed)
     consent = given(state)
-    drives_off = status is not None and status.state == BoardState.DRIVES_OFF
+    drives_off = state.status is not None and state.status.state == BoardState.DRIVES_OFF
     to_declare = state.fit in (Fit.FRESH, Fit.CORRECTED)  # until it turns, we say where the coil stands
-    setting_up = to_declare and not state.consented_since_greeting
+    setting_up = to_declare and not state.consented_since_greeting and not drives_off
+    to_set_up = setting_up and state.identity.setup_crc != setup_crc(started)
     to_go = consent if state.stop_point is not None and state.stop_point > state.count else None
+    guide, datum = None, None
+    if state.misplaced:
+        if state.powered and consent is not None:
+            place = _place(state)
+            guide = GuidePlace(place.guide, started.guide_pace, consent)
+            datum = _datum(state.count, place, consent)
+    elif to_declare and drives_off:
+        fresh = state.fit is Fit.FRESH
+        datum = Datum(0, 0, 0, 0, permission) if fresh else _datum(state.count, _place(state), permission)
     return Wants(
         beat=True,
         setup=started.setup,
-        disarmed=setting_up and not drives_off and state.identity.setup_crc != setup_crc(started),
-        datum=_datum(state, program) if to_declare and drives_off else None,
-        program=Segments(started.program_id, program),
+        disarmed=to_set_up or hands,
+        guide=guide,
+        datum=datum,
+        program=Segments(started.program_id, unpacked(started.program_packed)),
         armed=consent if drives_off else None,
         pace=pace_for(started.pace, state.count, state.stop_point),
         stop_point=state.stop_point,
@@ -47,14 +59,10 @@ def _sampling(state: State) -> Sampling | None:
     return Sampling(WINDOW_TICKS, EVERY_TICKS) if state.started.readings_mode == "live" else None
 
 
-def _datum(state: State, program: bytes) -> Datum | None:
-    permission = state.permission
-    assert permission is not None
-    if state.fit is Fit.FRESH:
-        return Datum(count=0, guide=0, next=0, into=0, given_for=permission)
-    place = Program.from_packed(program, counts_per_turn=state.counts_per_turn, steps_per_mm=1.0).place_of(
-        state.count
-    )
-    return Datum(
-        count=state.count, guide=place.guide, next=place.index, into=place.into, given_for=permission
-    )
+def _place(state: State) -> Place:
+    assert state.started is not None
+    return place_at(state.started.program_packed, state.counts_per_turn, state.count)
+
+
+def _datum(count: int, place: Place, permission: Permission) -> Datum:
+    return Datum(count=count, guide=place.guide, next=place.index, into=place.into, given_for=permission)
