@@ -33,7 +33,10 @@ void windctl_enter(struct windctl_core *core, uint8_t state, uint8_t cause);
 /* Stop for a trip, by its category. A trip while tripped changes nothing, unless it removes power. */
 void windctl_stop_for(struct windctl_core *core, uint8_t trip);
 
-/* Something moves: it stands at the earliest `still_ticks` from now. */
+/* Spindle or guide moves: everything stands at the earliest `still_ticks` from now. */
+void windctl_not_standing(struct windctl_core *core);
+
+/* The spindle moves, or may be about to. */
 void windctl_moves(struct windctl_core *core);
 
 /* No more steps are issued; the spindle stands when counts have stayed away for a while. */

@@ -179,7 +179,7 @@ static uint8_t pace(struct windctl_core *core, const uint8_t *body, int32_t *val
     if (!within(next.pace, 1, core->setup.max_pace, value)) {
         return WINDCTL_REFUSAL_RANGE;
     }
-    core->spindle.pace = next.pace;
+    windctl_spindle_set_pace(&core->spindle, next.pace);
     return WINDCTL_ACCEPTED;
 }
 
@@ -236,7 +236,7 @@ static uint8_t go(struct windctl_core *core, int32_t *value)
 {
     int32_t target;
 
-    if (!core->standing || windctl_line_lagging(&core->line)) {
+    if (!core->standing) {
         return WINDCTL_REFUSAL_MOVING;
     }
     if (core->trust != WINDCTL_KNOWN) {
@@ -348,7 +348,8 @@ static uint8_t measure(struct windctl_core *core, const uint8_t *body, int32_t *
         *value = WINDCTL_WINDOW_LIMIT;
         return WINDCTL_REFUSAL_RANGE;
     }
-    windctl_mean_start(&core->mean, next.window, next.every, core->ticks, core->count, !core->standing);
+    windctl_mean_start(&core->mean, next.window, next.every, core->ticks, core->count,
+                       core->spindle_moves);
     return WINDCTL_ACCEPTED;
 }
 

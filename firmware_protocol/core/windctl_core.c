@@ -128,7 +128,7 @@ void windctl_tick(struct windctl_core *core, const struct windctl_inputs *inputs
         windctl_tell_status(core, inputs->celsius_centi);
     }
     if (core->mean.active && windctl_mean_sample(&core->mean, inputs->contact, core->ticks, core->count,
-                                                 !core->standing, core->turns.counts_per_turn)) {
+                                                 core->spindle_moves, core->turns.counts_per_turn)) {
         windctl_tell_reading(core, inputs->celsius_centi);
     }
 

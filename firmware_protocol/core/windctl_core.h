@@ -121,6 +121,7 @@ struct windctl_core {
     uint16_t speed;        /* counts/s over the last 64 ticks */
     uint8_t powered;       /* drives */
     uint8_t standing;      /* spindle and guide are at rest */
+    uint8_t spindle_moves; /* or may be about to; else at most the guide does */
     uint8_t settled_cause; /* why the spindle arrives */
     uint8_t hand_stop_told;
 

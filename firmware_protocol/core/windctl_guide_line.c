@@ -123,9 +123,11 @@ int32_t windctl_line_follow(struct windctl_guide_line *line, int32_t counts)
     }
     go = (uint32_t)counts;
     if (line->behind || line->pending) {
+        uint32_t before = line->pending;
+
         windctl_line_wait(line, counts);
-        go = line->pending;
-        line->pending = 0;
+        go = line->pending - before + (before < WINDCTL_CATCH_UP_COUNTS ? before : WINDCTL_CATCH_UP_COUNTS);
+        line->pending -= go;
     }
     while (go >= line->left) {
         uint16_t rest = line->left;

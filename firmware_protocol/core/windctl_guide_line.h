@@ -45,7 +45,8 @@ uint32_t windctl_line_length(const struct windctl_guide_line *line, uint8_t n, c
 /* Lay n segments that were checked before. */
 void windctl_line_append(struct windctl_guide_line *line, uint8_t n, const uint8_t *packed);
 
-/* Guide steps for this many counts, signed, with the spindle driven and the guide powered. */
+/* Guide steps for this many counts, signed, with the spindle driven and the guide powered. What is pending from
+ * before is caught up with besides, at 16 counts a call. */
 int32_t windctl_line_follow(struct windctl_guide_line *line, int32_t counts);
 
 /* Count without following: the guide is not powered, or follows later. */

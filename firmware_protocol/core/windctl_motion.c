@@ -71,10 +71,16 @@ void windctl_beat(struct windctl_core *core)
     core->silent_at = core->ticks + WINDCTL_SILENCE;
 }
 
-void windctl_moves(struct windctl_core *core)
+void windctl_not_standing(struct windctl_core *core)
 {
     core->standing = 0;
     core->still_at = core->ticks + core->still_ticks;
+}
+
+void windctl_moves(struct windctl_core *core)
+{
+    core->spindle_moves = 1;
+    windctl_not_standing(core);
 }
 
 void windctl_go(struct windctl_core *core)
@@ -100,7 +106,7 @@ void windctl_guide_to(struct windctl_core *core, int32_t guide, uint16_t pace)
     core->guide_pace = pace;
     core->guide_ramp = 0;
     windctl_beat(core);
-    windctl_moves(core);
+    windctl_not_standing(core);
 }
 
 /* Every permission given before is void; the host hears of it at once. */

@@ -21,7 +21,7 @@ static int32_t guide_on(struct windctl_core *core)
     if (at == core->guide_target) {
         core->guide_pace = 0;
     }
-    windctl_moves(core);
+    windctl_not_standing(core);
     return steps;
 }
 
@@ -32,6 +32,7 @@ static void came_to_rest(struct windctl_core *core)
     }
     core->spindle.mode = WINDCTL_REST;
     core->standing = 1;
+    core->spindle_moves = 0;
     core->status_due = 1;
     if (core->state == WINDCTL_STATE_TURNING) {
         if (core->setup.fitted & WINDCTL_CAPABILITY_DRIVE_STEP) {
@@ -59,7 +60,7 @@ int32_t windctl_at_rest(struct windctl_core *core, int16_t counted)
             steps = guide_on(core);
         } else if (core->trip != WINDCTL_TRIP_GUIDE_LIMIT && windctl_line_lagging(&core->line)) {
             steps = windctl_line_catch_up(&core->line);
-            windctl_moves(core);
+            windctl_not_standing(core);
         }
     }
     if (!core->standing && core->ticks == core->still_at) {

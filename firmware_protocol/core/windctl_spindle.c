@@ -2,6 +2,17 @@
 
 #define MILLI 1000u
 
+/* The highest pace with v*v <= 2*decel*4: one that four steps suffice to stand from. */
+static uint16_t creep_pace(uint16_t decel)
+{
+    uint16_t creep = 1;
+
+    while (((uint32_t)creep + 1) * ((uint32_t)creep + 1) <= 8 * (uint32_t)decel) {
+        creep++;
+    }
+    return creep;
+}
+
 void windctl_spindle_configure(struct windctl_spindle *spindle, uint16_t counts_per_turn, uint16_t steps_per_turn,
                                uint16_t accel, uint16_t decel)
 {
@@ -12,7 +23,20 @@ void windctl_spindle_configure(struct windctl_spindle *spindle, uint16_t counts_
     spindle->left_limit = UINT32_MAX / (2 * (uint32_t)decel);
     spindle->gap_limit = INT32_MAX / (int32_t)steps_per_turn;
     spindle->coarse = counts_per_turn < steps_per_turn;
-    spindle->pace = 0;
+    spindle->creep_pace = creep_pace(decel);
+    spindle->pace = spindle->pace_now = 0;
+}
+
+static void choose_pace(struct windctl_spindle *spindle)
+{
+    spindle->pace_now =
+        spindle->creeping && spindle->pace > spindle->creep_pace ? spindle->creep_pace : spindle->pace;
+}
+
+void windctl_spindle_set_pace(struct windctl_spindle *spindle, uint16_t pace)
+{
+    spindle->pace = pace;
+    choose_pace(spindle);
 }
 
 /* Issued minus counted since it set out, in 1/steps_per_turn count. */
@@ -41,13 +65,21 @@ void windctl_spindle_set_out(struct windctl_spindle *spindle, int32_t count, int
     spindle->mode = WINDCTL_RUN;
     spindle->v = spindle->ramp = 0;
     spindle->issued = spindle->seen_issued = 0;
-    spindle->err = spindle->taken = 0;
+    spindle->err = 0;
+    spindle->placed = !spindle->coarse;
+    spindle->taken = spindle->placed ? 0 : 1 - (int32_t)spindle->steps_per_turn; /* as if the next step counted */
     spindle->seen_count = spindle->edge_at = count;
     windctl_spindle_aim(spindle, count, goal);
+    spindle->creeping = 0;
+    choose_pace(spindle);
 }
 
 void windctl_spindle_aim(struct windctl_spindle *spindle, int32_t count, int32_t goal)
 {
+    if (goal != spindle->goal) {
+        spindle->creeping = 0;
+        choose_pace(spindle);
+    }
     spindle->goal = goal;
     spindle->stand_at = spindle->issued + windctl_spindle_steps_to(spindle, count, goal);
 }
@@ -85,8 +117,9 @@ static void edge(struct windctl_spindle *spindle, int32_t count)
     int32_t error = error_at(spindle, count);
 
     spindle->edge_at = count;
-    if (error < spindle->taken) {
+    if (error < spindle->taken || !spindle->placed) {
         spindle->taken = error;
+        spindle->placed = 1;
     }
     windctl_spindle_aim(spindle, count, spindle->goal);
 }
@@ -119,7 +152,7 @@ static uint16_t faster(struct windctl_spindle *spindle, uint16_t v, uint32_t bou
 {
     uint16_t by = change(spindle, spindle->accel);
 
-    while (by && v < spindle->pace && ((uint32_t)v + 1) * ((uint32_t)v + 1) <= bound) {
+    while (by && v < spindle->pace_now && ((uint32_t)v + 1) * ((uint32_t)v + 1) <= bound) {
         v++;
         by--;
     }
@@ -150,16 +183,12 @@ void windctl_spindle_step(struct windctl_spindle *spindle, uint16_t issued, int3
         }
     } else if ((uint32_t)v * v > bound) {
         v = slower(spindle, v, 1);
-    } else if (v == spindle->pace) {
+    } else if (v == spindle->pace_now) {
         return;
-    } else if (v > spindle->pace) {
-        v = slower(spindle, v, spindle->pace);
+    } else if (v > spindle->pace_now) {
+        v = slower(spindle, v, spindle->pace_now);
     } else {
         v = faster(spindle, v, bound);
-    }
-    /* Never more in one tick than there is left; 15000 steps/s are 15 a tick. */
-    if (v > MILLI && left < 15 && v > MILLI * (uint16_t)left) {
-        v = (uint16_t)(MILLI * (uint16_t)left);
     }
     spindle->v = v;
 }
@@ -199,5 +228,7 @@ uint8_t windctl_spindle_creep(struct windctl_spindle *spindle, int32_t count)
     }
     windctl_spindle_aim(spindle, count, spindle->goal);
     spindle->mode = WINDCTL_RUN;
+    spindle->creeping = 1;
+    choose_pace(spindle);
     return 1;
 }

@@ -4,7 +4,8 @@
  * the constant-deceleration law v^2 = 2*a*s, without a division. Positions come from two sources: steps that
  * were issued (exact, ahead) and counts that were seen (the truth about the wire, late and perhaps coarse).
  * `left` believes whichever is nearer to the goal, so a late count is never an overshoot. Once everything
- * stands, what is still missing in counts is slip, not lag, and is made up at a creep. */
+ * stands, what is still missing in counts is slip, not lag, and is made up at a creep. Where in its count a coarse
+ * counter stands is not known at first: until it has counted once, the worst is assumed. */
 #ifndef WINDCTL_SPINDLE_H
 #define WINDCTL_SPINDLE_H
 
@@ -35,14 +36,21 @@ struct windctl_spindle {
     uint16_t decel; /* steps/s2 */
     uint16_t v;     /* steps/s */
     uint16_t pace;  /* steps/s asked for */
+    uint16_t pace_now;   /* the same, or less at a creep */
+    uint16_t creep_pace; /* steps/s that four steps suffice to stand from */
     uint16_t ramp;  /* thousandths of a step/s owed to v */
     uint8_t mode;
     uint8_t coarse; /* a count is more than a step */
+    uint8_t placed; /* the place within a count is known */
+    uint8_t creeping;
 };
 
 /* Take a Setup's figures: all at least 1; rates in steps/s2. */
 void windctl_spindle_configure(struct windctl_spindle *spindle, uint16_t counts_per_turn, uint16_t steps_per_turn,
                                uint16_t accel, uint16_t decel);
+
+/* Work towards this pace, steps/s. */
+void windctl_spindle_set_pace(struct windctl_spindle *spindle, uint16_t pace);
 
 /* Start from a stand at `count` towards the count `goal`. */
 void windctl_spindle_set_out(struct windctl_spindle *spindle, int32_t count, int32_t goal);

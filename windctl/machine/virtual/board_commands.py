@@ -134,8 +134,7 @@ def _stop_at(board: Board, stop: m.StopAt) -> Verdict:
     if board.spindle.mode == RUN:
         nearest = board.spindle.nearest_stand(board.count)
         if count < nearest:  # brake now; where it already had to stand is reachable by construction
-            target = board.target()
-            count = nearest if nearest < target else target
+            count = max(count, min(nearest, board.target()))
     elif count < board.count:
         if board.state != State.TURNING:
             return Refusal.RANGE, board.count

@@ -6,8 +6,7 @@ steps that were issued (exact, ahead) and counts that were seen (the truth about
 perhaps coarse). `left` believes whichever is nearer to the goal, so a late count is never an overshoot.
 Once everything stands, what is still missing in counts is slip, not lag, and is made up at a creep.
 Where in its count a coarse counter stands is not known at first: until it has counted once, the worst is
-assumed. Widths in the firmware: pace u16; steps, products, ramp u32; err and taken i32 (bounded by the
-slip trip).
+assumed. Widths in the firmware: pace u16; steps, products, ramp u32; err and taken i32.
 """
 
 from __future__ import annotations
@@ -20,6 +19,7 @@ BRAKE: Final = 2  # to a stand, wherever that is
 SETTLE: Final = 3  # arrived; waiting until it stands
 
 M32: Final = 0xFFFFFFFF
+ERROR_LIMIT: Final = 1 << 29  # of issued minus counted: beyond every slip limit, and i32 arithmetic holds
 
 
 class Spindle:
@@ -168,7 +168,7 @@ class Spindle:
 
         Returns issued minus counted since it set out, in 1/steps_per_turn count.
         """
-        self._err = self._error(count)
+        self._err = max(-ERROR_LIMIT, min(self._error(count), ERROR_LIMIT))
         self._seen_issued = self._issued
         self._seen_count = count
         return self._err

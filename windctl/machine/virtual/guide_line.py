@@ -63,7 +63,7 @@ class GuideLine:
     @property
     def free(self) -> int:
         """Free places in the queue."""
-        return self._size - (self.next - self.executing)
+        return self._size - ((self.next - self.executing) & 0xFFFFFFFF)
 
     def bad_segment(self, n: int, packed: bytes) -> int:
         """Place of the first of n segments that cannot be followed, or -1."""
