@@ -6,7 +6,7 @@ from collections.abc import Callable
 
 import pytest
 
-from tests.machine.ideal import COUNTER_ONLY, Machine
+from tests.machine.ideal import COUNTER_ONLY, Machine, pack
 from windctl.protocol import messages as m
 from windctl.protocol.messages import TRIPS, Refusal, State, Trip
 
@@ -256,3 +256,48 @@ def test_stop_and_guard_inputs_work_before_any_setup_and_on_a_counter() -> None:
     open_stop(fresh)
     fresh.run(60)
     assert not fresh.statuses()[-1].inputs & m.InputBit.STOP_OK
+
+
+def test_the_way_back_is_counted_anew_from_each_go() -> None:
+    machine = Machine().prepare(reverse_counts=40, slip_counts=400, fitted=3).arm(pace=1000).go()
+    for _ in range(3):
+        machine.run(1000)
+        machine.turn(-30)
+        machine.run()
+        machine.say(m.Hold())
+        machine.run()
+        machine.run_to_rest()
+        machine.turn(-30)
+        machine.run()
+        machine.run_to_rest()
+        machine.go()
+        machine.turn(-30)
+        machine.run()
+    assert machine.board.state == State.TURNING
+
+
+def test_a_datum_lets_the_index_find_its_place_anew() -> None:
+    machine = Machine().prepare(slip_counts=20).arm(stop=2000).go()
+    machine.run_to_rest()
+    machine.do(m.Disarm())
+    machine.turned_so_far -= 60  # while nobody looks, the encoder loses counts
+    machine.position -= 60
+    machine.do(m.SetDatum(*machine.consent, 1, 2000, machine.board.guide, 0, 0))
+    machine.do(m.Lay(1, 0, 1, pack([(60_000, 0)]).ljust(48, b"\0")))
+    machine.arm().go()
+    machine.run(3000)
+    assert machine.board.trip == Trip.NONE
+
+
+def test_the_turn_in_which_winding_begins_is_not_judged_by_its_tension() -> None:
+    machine = Machine()
+    machine.tension = 3000
+    machine.prepare(tension_low=1000).arm(stop=600).go()
+    machine.run_to_rest()
+    machine.do(m.StopAt(*machine.consent, 100_000))
+    machine.tension = 0
+    machine.go()
+    machine.run_until(lambda: machine.board.count > 760)
+    machine.tension = 3000
+    machine.run(3000)
+    assert machine.board.state == State.TURNING
