@@ -72,16 +72,20 @@ class WildHost:
 
     def _in_state(self, rng: random.Random, board: Board) -> None:
         state = board.state
+        if not board.standing and state != State.TURNING and rng.random() < 0.9:
+            return
         if state == State.DRIVES_OFF:
             if board.setup is None or rng.random() < 0.05:
                 self._setup = self._draw_setup()
                 self._say(self._setup)
             elif board.trust != 3 or rng.random() < 0.05:
                 self._say(self._datum())
-            elif rng.random() < 0.1:
+            elif rng.random() < 0.05:
                 self._plant.turn_by_hand(rng.randrange(-40, 80), rng.randrange(1, 400))
+            elif self._guided and rng.random() < 0.6:
+                self._say(self._lay())
             else:
-                self._say(rng.choice((self._lay, self._lay, self._lay, self._measure, self._arm))())
+                self._say(rng.choice((self._measure, self._arm, self._arm, self._arm))())
         elif state in (State.READY, State.HELD):
             self._prepare_to_go(rng, board)
         elif state == State.TURNING:
@@ -98,11 +102,11 @@ class WildHost:
             )
         elif board.spindle.pace == 0 or rng.random() < 0.15:
             self._say(self._pace())
-        elif rng.random() < 0.3:
+        elif self._guided and rng.random() < 0.5:
             self._say(self._lay())
-        elif rng.random() < 0.2:
+        elif rng.random() < 0.3:
             self._say(self._stop_at())
-        elif rng.random() < 0.15:
+        elif rng.random() < 0.1:
             other = (self._disarm, self._datum, self._guide_to, self._measure)
             self._say(rng.choice(other)())
         elif board.fitted & Capability.PEDAL and not board.pedal_fresh and rng.random() < 0.8:
@@ -116,7 +120,8 @@ class WildHost:
     def _while_turning(self, rng: random.Random, board: Board) -> None:
         draw = rng.random()
         if draw < 0.5:
-            self._say(self._lay())
+            if self._guided:
+                self._say(self._lay())
         elif draw < 0.6:
             self._say(self._pace())
         elif draw < 0.7:
@@ -129,6 +134,10 @@ class WildHost:
             self._plant.pedal = False
         elif draw < 0.82 and not board.fitted & Capability.DRIVE_STEP:
             self._plant.turn_by_hand(rng.choice((-20, 1, 16, 100, 300)), rng.choice((50, 1000, 5000)))
+
+    @property
+    def _guided(self) -> bool:
+        return bool(self._board.fitted & Capability.GUIDE_STEP)
 
     # ---------------------------------------------------------------- saying it
 
@@ -220,7 +229,7 @@ class WildHost:
             coil_token=rng.getrandbits(32),
             counts_per_turn=counts,
             steps_per_turn=rng.choice((400, 400, 200, 800, 1, rng.randrange(1, 801))),
-            max_count=rng.choice((1 << 30, 3000 * counts, rng.randrange(1, 60 * counts + 2))),
+            max_count=rng.choice((1 << 30, 3000 * counts, 3000 * counts, rng.randrange(1, 60 * counts + 2))),
             max_pace=min(15_000, 10 * decel, rng.choice((15_000, 8000, rng.randrange(1, 15_001)))),
             accel=rng.choice((2000, 20_000, 65_535, rng.randrange(100, 65_536))),
             decel=decel,
@@ -242,10 +251,15 @@ class WildHost:
 
     def _datum(self) -> m.SetDatum:
         rng, board = self._rng, self._board
-        count = rng.choice((0, 0, board.count, rng.randrange(-5000, 5000), (1 << 30) - 500, -(1 << 30), 1 << 30))
-        if rng.random() < 0.04:
+        count = rng.choice((0, 0, board.count, rng.randrange(-5000, 5000)))
+        draw = rng.random()
+        if draw < 0.06:
+            count = rng.choice(((1 << 30) - 500, -(1 << 30), 1 << 30))
+        elif draw < 0.1:
             count = rng.choice(((1 << 30) + 1, -(1 << 30) - 1, 0x7FFFFFFF, -0x80000000))
-        guide = rng.choice((0, board.guide, rng.randrange(-250, 251), self._setup.guide_max))
+        guide = rng.choice((0, 0, rng.randrange(-250, 251)))
+        if rng.random() < 0.1:
+            guide = rng.choice((board.guide, self._setup.guide_max, self._setup.guide_min))
         if rng.random() < 0.04:
             guide = rng.choice((self._setup.guide_min - 1, self._setup.guide_max + 1))
         first = rng.choice((0, 0, 500, 0xFFFFFFF0, rng.getrandbits(32)))
@@ -264,6 +278,8 @@ class WildHost:
             most = min(length, rng.choice((3, 44, 44, 32_000)))
             if rng.random() < 0.1:
                 self._turn ^= 1
+            if abs(board.guide) > 200 and rng.random() < 0.9:
+                self._turn = int(board.guide > 0)
             steps = rng.randrange(most + 1)
             packed += struct.pack("<Hh", length, -steps if self._turn else steps)
         if rng.random() < 0.03:
@@ -282,13 +298,18 @@ class WildHost:
     def _pace(self) -> m.Pace:
         rng = self._rng
         most = self._setup.max_pace
-        pace = rng.choice((most, most, max(1, most // 2), rng.randrange(1, most + 2), 0, most + 1, 0xFFFF))
+        pace = rng.choice((most, most, max(1, most // 2), rng.randrange(1, most + 2)))
+        if rng.random() < 0.1:
+            pace = rng.choice((0, most + 1, 0xFFFF))
         return m.Pace(*self._consent(), min(pace, 0xFFFF))
 
     def _stop_at(self) -> m.StopAt:
         rng, board = self._rng, self._board
-        near = board.count + rng.choice((0, 1, rng.randrange(-50, 500), rng.randrange(20 * board.counts_per_turn)))
-        count = rng.choice((near, near, near, 0, 0xFFFFFFFF, self._setup.max_count, self._setup.max_count + 1))
+        near = board.count + rng.randrange(20 * board.counts_per_turn)
+        count = rng.choice((near, near, near, 0xFFFFFFFF))
+        if rng.random() < 0.2:
+            close = board.count + rng.randrange(-50, 500)
+            count = rng.choice((0, close, close, self._setup.max_count, self._setup.max_count + 1))
         return m.StopAt(*self._consent(), count & 0xFFFFFFFF)
 
     def _guide_to(self, guide: int | None = None) -> m.GuideTo:
