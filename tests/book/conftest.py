@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from tests.book.samples import packed, started, wind, wound
+from tests.book.samples import packed, started, stocked, wind, wound
 from windctl.book.book import Book
 from windctl.book.open import open_book
 
@@ -28,13 +28,14 @@ def book(path: Path) -> Iterator[Book]:
 
 @pytest.fixture(scope="session")
 def _finished_book(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    """Two closed coils (b1-2026-0001, b2-2026-0001) and an open one (b1-2026-0002)."""
+    """Two closed coils (b1-2026-0001, b2-2026-0001) and an open one (b1-2026-0002); a spool, and a note."""
     path = tmp_path_factory.mktemp("finished") / "shop.book"
     with open_book(path) as book:
         wind(book, 1, turns=2)
         wind(book, 2, turns=1, bench="b2")
         with book.begin_coil("b1", 2026, started(3)) as writer:
             writer.commit(packed(wound(writer.started, 1)))
+        stocked(book)
     return path
 
 

@@ -15,6 +15,7 @@ from windctl.book.writer import CoilWriter
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
 from windctl.protocol.messages import Identity, Reading, ReadingFlag, Setup, State, Status, Trust
+from windctl.record.addenda import CoilMeasured, CoilNoted, SpoolAdded, SpoolWeighed
 from windctl.record.curve import review
 from windctl.record.entries import Entry, Packer
 from windctl.record.events import (
@@ -170,6 +171,14 @@ def wind(book: Book, n: int = 1, *, bench: str = "b1", turns: int = 30, **change
     writer.commit(packed([*wound(writer.started, turns), NoteMade(98_000, "splice-free", "Demo Winder")]))
     writer.commit(packed([finished(turns)]))
     return seal(book, writer)
+
+
+def stocked(book: Book) -> None:
+    """A spool in the book, and something said of the closed coil 1."""
+    added = SpoolAdded(STARTED, "Demo Winder", "s1", "AWG 42", None, "grade 1", None, "polyurethane", "")
+    book.add_spool(added, SpoolWeighed(STARTED, "Demo Winder", 250.0, 0.5))
+    book.amend(coil_id(1), CoilNoted(ENDED, "Demo Winder", "größer als nötig: Ω"))
+    book.amend(coil_id(1), CoilMeasured(ENDED, "Demo Winder", grams=28.4, grams_sd=0.02))
 
 
 def files_beside(path: Path) -> Sequence[str]:

@@ -12,15 +12,17 @@ import sqlalchemy as sa
 from sqlalchemy.dialects import postgresql
 from sqlalchemy.schema import CreateIndex, CreateTable
 
-from tests.book.samples import files_beside, wind
+from tests.book.samples import ENDED, files_beside, wind
 from windctl.book.book import Book
-from windctl.book.ledger import APPLICATION_ID, Step, bring_up, names
+from windctl.book.ledger import APPLICATION_ID, FIRST, STEPS, Step, bring_up, names
 from windctl.book.open import open_book
 from windctl.book.store import Store
 from windctl.book.tables import metadata
 from windctl.errors import BookError
+from windctl.record.addenda import CoilNoted
 
 SCHEMA_1 = Path(__file__).with_name("schema_1.sql")
+SCHEMA_2 = Path(__file__).with_name("schema_2.sql")
 
 
 def add_shelf(connection: sa.Connection) -> None:
@@ -34,7 +36,7 @@ def fail_half_way(connection: sa.Connection) -> None:
     connection.exec_driver_sql("ALTER TABLE absent ADD COLUMN shelf TEXT")
 
 
-LATER = (Step(2, "a shelf for each coil", add_shelf),)
+LATER = (*STEPS, Step(3, "a shelf for each coil", add_shelf))
 
 
 def schema(path: Path) -> str:
@@ -50,10 +52,27 @@ def ledger_of(path: Path) -> list[tuple[int, str]]:
         return connection.execute("SELECT version, name FROM ledger ORDER BY version").fetchall()
 
 
-def test_the_tables_of_schema_1_are_what_they_always_were(book: Book, path: Path) -> None:
+def test_the_tables_of_schema_2_are_what_they_always_were(book: Book, path: Path) -> None:
     """Books with them exist. To change a table, append a step to the ledger and add a schema file."""
-    assert schema(path) == SCHEMA_1.read_text(encoding="utf-8")
-    assert ledger_of(path) == [(1, "coils, entries, curve")] == names()
+    assert schema(path) == SCHEMA_2.read_text(encoding="utf-8")
+    assert ledger_of(path) == [(1, "coils, entries, curve"), (2, "logs, log_entries")] == names()
+
+
+def test_a_book_of_schema_1_becomes_one_of_schema_2(path: Path) -> None:
+    """With a coil in it that was wound before there were logs."""
+    with closing(sqlite3.connect(path)) as connection:
+        connection.executescript(SCHEMA_1.read_text(encoding="utf-8"))
+        connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
+        connection.execute("INSERT INTO ledger VALUES (1, ?)", [FIRST])
+        connection.commit()
+    with pytest.raises(BookError, match="must be brought to 2 first"):
+        open_book(path, readonly=True)
+    with open_book(path) as old:
+        head = wind(old, 1, turns=2)
+        old.amend(head.number, CoilNoted(ENDED, "Demo Winder", "brought along"))
+        assert old.verify().good
+    assert schema(path) == SCHEMA_2.read_text(encoding="utf-8")
+    assert path.with_name("shop.book.before-2").exists()
 
 
 def test_a_book_says_what_it_is(book: Book, path: Path) -> None:
@@ -69,9 +88,9 @@ def test_an_older_book_is_backed_up_and_taken_forward(book: Book, path: Path) ->
     (backup,) = bring_up(store, LATER)
     assert bring_up(store, LATER) == []
     store.close()
-    assert ledger_of(path) == [*names(), (2, "a shelf for each coil")]
-    assert backup == path.with_name("shop.book.before-2")
-    assert files_beside(path) == ["shop.book.before-2"]
+    assert ledger_of(path) == [*names(), (3, "a shelf for each coil")]
+    assert backup == path.with_name("shop.book.before-3")
+    assert files_beside(path) == ["shop.book.before-3"]
     assert ledger_of(backup) == names()
     assert len(backup.read_bytes()) == len(before)
     with open_book(backup, create=False) as old:
@@ -82,11 +101,11 @@ def test_an_older_book_is_backed_up_and_taken_forward(book: Book, path: Path) ->
 
 
 def test_a_backup_never_replaces_another(book: Book, path: Path) -> None:
-    path.with_name("shop.book.before-2").write_bytes(b"kept")
+    path.with_name("shop.book.before-3").write_bytes(b"kept")
     store = Store(path, "rw")
-    assert bring_up(store, LATER) == [path.with_name("shop.book.before-2-2")]
+    assert bring_up(store, LATER) == [path.with_name("shop.book.before-3-2")]
     store.close()
-    assert path.with_name("shop.book.before-2").read_bytes() == b"kept"
+    assert path.with_name("shop.book.before-3").read_bytes() == b"kept"
 
 
 def test_a_step_that_fails_leaves_the_book_as_it_was(book: Book, path: Path) -> None:
@@ -94,7 +113,7 @@ def test_a_step_that_fails_leaves_the_book_as_it_was(book: Book, path: Path) -> 
     before = schema(path)
     store = Store(path, "rw")
     with pytest.raises(BookError, match="no such table: absent"):
-        bring_up(store, (Step(2, "breaks", fail_half_way),))
+        bring_up(store, (*STEPS, Step(3, "breaks", fail_half_way)))
     assert (schema(path), ledger_of(path)) == (before, names())
     assert book.verify().good
     assert bring_up(store, LATER)
@@ -116,8 +135,8 @@ def test_of_two_that_open_an_older_book_at_once_one_takes_the_step(book: Book, p
         thread.start()
     for thread in threads:
         thread.join()
-    assert backups == [path.with_name("shop.book.before-2")]
-    assert ledger_of(path) == [*names(), (2, "a shelf for each coil")]
+    assert backups == [path.with_name("shop.book.before-3")]
+    assert ledger_of(path) == [*names(), (3, "a shelf for each coil")]
 
 
 def test_two_that_make_a_book_at_once_make_one(path: Path) -> None:
@@ -132,7 +151,7 @@ def test_two_that_make_a_book_at_once_make_one(path: Path) -> None:
         thread.start()
     for thread in threads:
         thread.join()
-    assert schema(path) == SCHEMA_1.read_text(encoding="utf-8")
+    assert schema(path) == SCHEMA_2.read_text(encoding="utf-8")
     assert ledger_of(path) == names()
 
 
@@ -140,7 +159,7 @@ def test_a_new_book_of_a_later_version_lists_all_steps(path: Path) -> None:
     store = Store(path, "rwc")
     assert bring_up(store, LATER) == []
     store.close()
-    assert ledger_of(path) == [*names(), (2, "a shelf for each coil")]
+    assert ledger_of(path) == [*names(), (3, "a shelf for each coil")]
     assert files_beside(path) == []
 
 
@@ -150,7 +169,7 @@ def test_a_newer_book_is_left_alone(book: Book, path: Path) -> None:
     store.close()
     before = path.read_bytes()
     for readonly in (False, True):
-        with pytest.raises(BookError, match="has schema 2; this windctl knows schemas up to 1"):
+        with pytest.raises(BookError, match="has schema 3; this windctl knows schemas up to 2"):
             open_book(path, readonly=readonly)
     assert path.read_bytes() == before
 
@@ -158,7 +177,7 @@ def test_a_newer_book_is_left_alone(book: Book, path: Path) -> None:
 def test_an_older_book_is_not_taken_forward_when_only_read(book: Book, path: Path) -> None:
     before = path.read_bytes()
     store = Store(path, "ro")
-    with pytest.raises(BookError, match="must be brought to 2 first"):
+    with pytest.raises(BookError, match="must be brought to 3 first"):
         bring_up(store, LATER)
     store.close()
     assert path.read_bytes() == before

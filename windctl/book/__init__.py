@@ -8,6 +8,8 @@ lease       one live writer per coil
 heads       a coil's row and the seal that closes its record
 writer      one coil being written: durable on return, each row tied to all before it
 queries     lists and look-ups, in SQL
+logs        what is said later of a closed coil, and what is known of a spool: chains of their own
+shelf       spools, addenda, and the lessons of all coils in order
 check       does one coil's record agree with itself?
 verify      the same for the coils of a book, and for the book as a whole
 export      one coil as plain data, lossless

@@ -24,16 +24,30 @@ from windctl.book.queries import (
     record_entries,
     stored_rows,
 )
+from windctl.book.shelf import (
+    CoilLesson,
+    SpoolRecord,
+    add_spool,
+    add_to_spool,
+    addenda_in,
+    amend,
+    lessons_in,
+    spool_in,
+    spools_in,
+    untaught_in,
+)
 from windctl.book.store import Store
 from windctl.book.tables import coils, entries, numbers
-from windctl.book.verify import VerifyReport, verify_book, verify_coils
+from windctl.book.verify import VerifyReport, verify_book, verify_coil
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, RecordBroken
+from windctl.record.addenda import Addendum, SpoolAdded
 from windctl.record.canonical import decode, encode
 from windctl.record.chain import genesis, link
 from windctl.record.curve import CurvePoint
 from windctl.record.entries import Entry, unpack
 from windctl.record.events import CoilStarted, Event
+from windctl.record.lesson import lesson_of
 
 _BENCH = re.compile(r"[a-z0-9]{1,8}")
 
@@ -164,11 +178,43 @@ class Book:
         """`show`, and every row of the record with its digests: enough to check and restore the coil."""
         return exported(self._store, self.find(coil))
 
+    def amend(self, coil: str, *facts: Addendum) -> None:
+        """Say something of a closed coil: its record stays as it is. Raises BookError for an open one."""
+        amend(self._store, self.find(coil), facts)
+
+    def addenda(self, coil: str) -> tuple[Addendum, ...]:
+        """What was said of a coil after it was closed, in order."""
+        return addenda_in(self._store, self.find(coil))
+
+    def add_spool(self, added: SpoolAdded, *more: Addendum) -> None:
+        """Keep a new spool. Raises BookError when there is one of that name."""
+        add_spool(self._store, (added, *more))
+
+    def add_to_spool(self, spool: str, *facts: Addendum) -> None:
+        """Keep more about a spool. Raises BookError when there is none of that name."""
+        add_to_spool(self._store, spool, facts)
+
+    def spools(self) -> tuple[SpoolRecord, ...]:
+        """All spools, in order of their names."""
+        return spools_in(self._store)
+
+    def spool(self, name: str) -> SpoolRecord:
+        """One spool. Raises BookError when there is none of that name."""
+        return spool_in(self._store, name)
+
+    def lessons(self) -> tuple[CoilLesson, ...]:
+        """What every closed coil teaches, in the order in which they were begun, the withdrawn ones too."""
+        missing = (
+            (number, lesson_of(list(self.events(number)), self.find(number).bench))
+            for number in untaught_in(self._store)
+        )
+        return lessons_in(self._store, [(number, one) for number, one in missing if one is not None])
+
     def verify(self, coil: str | None = None) -> VerifyReport:
         """Check one coil, or all of them and the book as a whole, against the chains of digests."""
         if coil is None:
             return verify_book(self._store)
-        return verify_coils(self._store, [self.find(coil).id])
+        return verify_coil(self._store, self.find(coil).id)
 
     def _again(self, head: CoilHead) -> CoilHead:
         with self._store.reading() as connection:

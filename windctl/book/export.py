@@ -13,9 +13,11 @@ from typing import Any
 
 from windctl.book.check import check_record
 from windctl.book.heads import SEAL, CoilHead
+from windctl.book.logs import COIL, Log, LogRow, check_log, facts_of, read
 from windctl.book.queries import StoredRow, curve_in, stored_rows
 from windctl.book.store import Store
 from windctl.errors import RecordBroken
+from windctl.record.addenda import plain
 from windctl.record.canonical import encode
 from windctl.record.chain import genesis
 from windctl.record.curve import CurvePoint
@@ -30,11 +32,12 @@ _RENAMED = ("number", "target_kind", "target_value")
 
 @dataclass(frozen=True, slots=True)
 class Restored:
-    """What an export holds: the coil's row, every row of its record, its curve."""
+    """What an export holds: the coil's row, every row of its record, its curve, and what was said since."""
 
     head: CoilHead
     rows: tuple[StoredRow, ...]
     curve: tuple[CurvePoint, ...]
+    log: Log | None
 
 
 def summary_of(head: CoilHead) -> dict[str, object]:
@@ -55,7 +58,7 @@ def shown(store: Store, head: CoilHead) -> dict[str, object]:
     Raises RecordBroken when a row of the record cannot be read.
     """
     rows = tuple(stored_rows(store, head.id, head.n_entries))
-    return _shown(head, rows, _curve(store, head))
+    return _shown(store, head, rows)
 
 
 def exported(store: Store, head: CoilHead) -> dict[str, object]:
@@ -77,8 +80,26 @@ def exported(store: Store, head: CoilHead) -> dict[str, object]:
         }
         for row in rows
     ]
-    shape = _shown(head, rows, _curve(store, head))
-    return {**shape, "genesis": genesis(head.id).hex(), "entries": plain}
+    shape = _shown(store, head, rows)
+    log = _log(store, head)
+    return {**shape, "genesis": genesis(head.id).hex(), "entries": plain, "log": _exported_log(log)}
+
+
+def _exported_log(log: Log | None) -> dict[str, object] | None:
+    """A log's rows as they are stored, tied like those of the record; the first to SHA-256 of its name behind
+    "windctl log 1" and a zero."""
+    if log is None:
+        return None
+    rows = [
+        {
+            "seq": row.seq,
+            "kind": row.kind,
+            "payload": base64.b64encode(row.payload).decode(),
+            "link": row.link.hex(),
+        }
+        for row in log.rows
+    ]
+    return {"name": log.name, "n": log.n, "digest": log.digest, "entries": rows}
 
 
 def restored(data: Mapping[str, Any]) -> Restored:
@@ -104,12 +125,31 @@ def restored(data: Mapping[str, Any]) -> Restored:
             for row in data["entries"]
         )
         curve = tuple(CurvePoint(**_floats(CurvePoint, point)) for point in data["curve"])
+        log = None if data["log"] is None else _restored_log(data["log"])
     except (KeyError, TypeError, ValueError) as error:
         raise RecordBroken(f"this export is not whole: {type(error).__name__} {error}") from error
     faults = check_record(head, rows, list(enumerate(curve)))
     if faults:
         raise RecordBroken(f"the export of coil {head.number} was altered: {faults[0].what}")
-    return Restored(head, rows, curve)
+    if log is not None and log.name != COIL + head.id:
+        raise RecordBroken(f"the export of coil {head.number} was altered: its log is {log.name!r}")
+    for fault in () if log is None else check_log(log):
+        where = f"row {fault.seq} of what was said since"
+        raise RecordBroken(f"the export of coil {head.number} was altered: {where}: {fault.what}")
+    return Restored(head, rows, curve, log)
+
+
+def _restored_log(data: Mapping[str, Any]) -> Log:
+    rows = tuple(
+        LogRow(
+            row["seq"],
+            row["kind"],
+            base64.b64decode(row["payload"], validate=True),
+            bytes.fromhex(row["link"]),
+        )
+        for row in data["entries"]
+    )
+    return Log(data["name"], data["n"], data["digest"], rows)
 
 
 def _floats(kind: type[CoilHead | CurvePoint], values: Mapping[str, Any]) -> dict[str, Any]:
@@ -126,10 +166,16 @@ def _curve(store: Store, head: CoilHead) -> list[CurvePoint]:
         return [point for _, point in curve_in(connection, head.id)]
 
 
-def _shown(head: CoilHead, rows: Sequence[StoredRow], curve: Sequence[CurvePoint]) -> dict[str, object]:
+def _log(store: Store, head: CoilHead) -> Log | None:
+    with store.reading() as connection:
+        return read(connection, COIL + head.id)
+
+
+def _shown(store: Store, head: CoilHead, rows: Sequence[StoredRow]) -> dict[str, object]:
     events = unpack(row.entry for row in rows if row.entry.kind != SEAL)
     return {
         **summary_of(head),
         "events": [event_data(event) for event in events],
-        "curve": [asdict(point) for point in curve],
+        "curve": [asdict(point) for point in _curve(store, head)],
+        "addenda": [{"kind": fact.kind, **plain(fact)} for fact in facts_of(_log(store, head))],
     }

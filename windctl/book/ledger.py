@@ -17,7 +17,7 @@ from pathlib import Path
 import sqlalchemy as sa
 
 from windctl.book.store import Store
-from windctl.book.tables import SCHEMA, ledger, metadata
+from windctl.book.tables import ledger, log_entries, logs, metadata
 from windctl.errors import BookError
 
 APPLICATION_ID = 0x77434231  # "wCB1"
@@ -34,8 +34,13 @@ class Step:
 
 FIRST = "coils, entries, curve"
 
-# Schema 2 and later are appended here; what is in here never changes.
-STEPS: tuple[Step, ...] = ()
+
+def _add_logs(connection: sa.Connection) -> None:
+    metadata.create_all(connection, tables=[logs, log_entries])
+
+
+# Later schemas are appended here; what is in here never changes.
+STEPS: tuple[Step, ...] = (Step(2, "logs, log_entries", _add_logs),)
 
 
 def names(steps: Sequence[Step] = STEPS) -> list[tuple[int, str]]:
@@ -49,7 +54,7 @@ def bring_up(store: Store, steps: Sequence[Step] = STEPS) -> list[Path]:
     Raises BookError for a file that is no coil book or is newer than this program.
     """
     version = _version(store)
-    newest = steps[-1].version if steps else SCHEMA
+    newest = steps[-1].version
     if version > newest:
         raise BookError(
             f"the coil book {store.path} has schema {version}; this windctl knows schemas up to {newest}: "

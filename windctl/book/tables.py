@@ -1,4 +1,4 @@
-"""The book's tables, schema 1.
+"""The book's tables, as the newest schema has them.
 
 Types are chosen so that PostgreSQL takes the same tables: text, integers, doubles and bytes only, ids and
 digests as text, booleans avoided. Empty text and NULL differ: NULL means "not known yet" (the coil is open).
@@ -11,7 +11,6 @@ from __future__ import annotations
 
 import sqlalchemy as sa
 
-SCHEMA = 1
 CURVE_POINTS = 500  # at most, per coil
 
 metadata = sa.MetaData()
@@ -88,5 +87,25 @@ curve = sa.Table(
     sa.Column("ohm_20c", sa.Double, nullable=False),
     sa.Column("final_ohm", sa.Double, nullable=False),
     sa.Column("final_sd", sa.Double, nullable=False),
+    sqlite_with_rowid=False,
+)
+
+# What is said later about sealed coils, and about spools: chains of their own. `n` rows end in `digest`.
+logs = sa.Table(
+    "logs",
+    metadata,
+    sa.Column("name", sa.Text, primary_key=True),
+    sa.Column("n", sa.Integer, nullable=False),
+    sa.Column("digest", sa.Text, nullable=False),  # the chain's last link, hex
+)
+
+log_entries = sa.Table(
+    "log_entries",
+    metadata,
+    sa.Column("log", sa.Text, sa.ForeignKey("logs.name"), primary_key=True),
+    sa.Column("seq", sa.Integer, primary_key=True, autoincrement=False),
+    sa.Column("kind", sa.Text, nullable=False),
+    sa.Column("payload", sa.LargeBinary, nullable=False),
+    sa.Column("link", sa.LargeBinary(32), nullable=False),
     sqlite_with_rowid=False,
 )

@@ -14,6 +14,7 @@ import sqlalchemy as sa
 from windctl.book.check import Fault, check_record
 from windctl.book.heads import CoilHead, coil_number
 from windctl.book.ledger import names
+from windctl.book.logs import COIL, LogFault, check_log, check_logs, read
 from windctl.book.queries import curve_in, head_of, raw_rows
 from windctl.book.store import Store
 from windctl.book.tables import coils, curve, entries, ledger, numbers
@@ -85,7 +86,37 @@ def verify_book(store: Store) -> VerifyReport:
         broken.append(BrokenCoil(BOOK, None, f"the ledger of schemas was altered: it says {steps!r}"))
     broken += _gaps(allotted, present)
     report = verify_coils(store, ids)
-    return VerifyReport(report.checked, (*broken, *report.broken))
+    return VerifyReport(report.checked, (*broken, *report.broken, *_logs(store)))
+
+
+def verify_coil(store: Store, coil_id: str) -> VerifyReport:
+    """Check one coil, and what was said of it since."""
+    report = verify_coils(store, [coil_id])
+    with store.reading() as connection:
+        log = read(connection, COIL + coil_id)
+        number = connection.scalar(sa.select(coils.c.number).where(coils.c.id == coil_id))
+    faults = () if log is None else tuple(check_log(log))
+    told = [_of_log(fault, {COIL + coil_id: str(number)}) for fault in faults]
+    return VerifyReport(report.checked, (*report.broken, *told))
+
+
+def _logs(store: Store) -> Iterator[BrokenCoil]:
+    with store.reading() as connection:
+        known = [tuple(row) for row in connection.execute(sa.select(coils.c.id, coils.c.number))]
+    numbers_of = {COIL + str(coil_id): str(number) for coil_id, number in known}
+    for fault in check_logs(store, [coil_id for coil_id, _ in known]):
+        yield _of_log(fault, numbers_of)
+
+
+def _of_log(fault: LogFault, numbers_of: dict[str, str]) -> BrokenCoil:
+    """A fault in a log, told of its coil where it is a coil's."""
+    row = "" if fault.seq is None else f"row {fault.seq} of "
+    name = numbers_of.get(fault.log)
+    if name is None:
+        return BrokenCoil(BOOK, None, _printable(f"{row}the log {fault.log!r}: {fault.what}"))
+    return BrokenCoil(
+        _printable(name), None, _printable(f"{row}what was said since it was closed: {fault.what}")
+    )
 
 
 def _coil(store: Store, coil_id: str) -> Iterator[BrokenCoil]:

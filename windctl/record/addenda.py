@@ -1,0 +1,224 @@
+"""Facts that come after a coil's record is sealed, and facts about spools of wire.
+
+They stand in logs of their own, chained as coils are: a sealed record never changes. A log is named after
+what it is about: "coil" and the coil's id, "spool" and the spool's. Written as canonical JSON, like events.
+"""
+
+from __future__ import annotations
+
+import dataclasses
+import hashlib
+import json
+from collections.abc import Iterable
+from dataclasses import dataclass
+from typing import Any, ClassVar
+
+from windctl.errors import RecordBroken
+from windctl.plan.experience.basis import Basis
+from windctl.plan.experience.lesson import Build, Lesson, Mass, Measured, Resistance, Share
+from windctl.record.canonical import dumps
+
+
+@dataclass(frozen=True, slots=True)
+class CoilTaught:
+    """What the record of a coil says for the coils to come. The latest one counts: a later version of the
+    program may read the same record better."""
+
+    kind: ClassVar[str] = "coil_taught"
+    version: str
+    lesson: Lesson
+
+
+@dataclass(frozen=True, slots=True)
+class CoilMeasured:
+    """The finished coil was measured by hand. None: not measured.
+
+    `ohm` is what the meter showed at `celsius`; `dcr_20c_ohm` that at 20 degrees C without the leads, and
+    `dcr_rel` its own relative sd, without what the bench's instruments are off by for every coil.
+    """
+
+    kind: ClassVar[str] = "coil_measured"
+    wall_time: str
+    by: str
+    ohm: float | None = None
+    celsius: float | None = None
+    dcr_20c_ohm: float | None = None
+    dcr_rel: float | None = None
+    grams: float | None = None
+    grams_sd: float | None = None
+    build_mm: float | None = None
+    build_sd_mm: float | None = None
+
+    @property
+    def measured(self) -> tuple[Measured, ...]:
+        """The same as a lesson takes it."""
+        seen: list[Measured] = []
+        if self.dcr_20c_ohm is not None and self.dcr_rel is not None:
+            seen.append(Resistance(self.dcr_20c_ohm, self.dcr_rel))
+        if self.grams is not None and self.grams_sd is not None:
+            seen.append(Mass(self.grams, self.grams_sd))
+        if self.build_mm is not None and self.build_sd_mm is not None:
+            seen.append(Build(self.build_mm, self.build_sd_mm))
+        return tuple(seen)
+
+
+@dataclass(frozen=True, slots=True)
+class CoilWithdrawn:
+    """Somebody says that this coil shall teach nothing."""
+
+    kind: ClassVar[str] = "coil_withdrawn"
+    wall_time: str
+    by: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class CoilReadmitted:
+    """Somebody says that a withdrawn coil shall teach again."""
+
+    kind: ClassVar[str] = "coil_readmitted"
+    wall_time: str
+    by: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class CoilNoted:
+    """Somebody wrote something down about a coil."""
+
+    kind: ClassVar[str] = "coil_noted"
+    wall_time: str
+    by: str
+    text: str
+
+
+@dataclass(frozen=True, slots=True)
+class SpoolAdded:
+    """A spool of wire came to the shop: what is written on it, and its thickness by micrometer."""
+
+    kind: ClassVar[str] = "spool_added"
+    wall_time: str
+    by: str
+    spool: str
+    gauge: str | None
+    diameter_mm: float | None
+    enamel: str | None
+    overall_mm: float | None
+    insulation: str
+    notes: str
+
+
+@dataclass(frozen=True, slots=True)
+class SpoolWeighed:
+    """The wire on a spool weighs so much, the empty spool taken off."""
+
+    kind: ClassVar[str] = "spool_weighed"
+    wall_time: str
+    by: str
+    grams: float
+    grams_sd: float
+
+
+@dataclass(frozen=True, slots=True)
+class SpoolMeasured:
+    """Ohm per metre at 20 degrees C of a piece from the spool's loose end; `rel`: its relative sd."""
+
+    kind: ClassVar[str] = "spool_measured"
+    wall_time: str
+    by: str
+    ohm_per_m: float
+    rel: float
+
+
+@dataclass(frozen=True, slots=True)
+class LogBegun:
+    """Another log exists from here on. Stands in the log of logs, so that none can vanish unseen."""
+
+    kind: ClassVar[str] = "log_begun"
+    log: str
+
+
+Addendum = (
+    CoilTaught
+    | CoilMeasured
+    | CoilWithdrawn
+    | CoilReadmitted
+    | CoilNoted
+    | SpoolAdded
+    | SpoolWeighed
+    | SpoolMeasured
+    | LogBegun
+)
+
+KINDS: dict[str, type[Addendum]] = {
+    cls.kind: cls
+    for cls in (
+        CoilTaught,
+        CoilMeasured,
+        CoilWithdrawn,
+        CoilReadmitted,
+        CoilNoted,
+        SpoolAdded,
+        SpoolWeighed,
+        SpoolMeasured,
+        LogBegun,
+    )
+}
+
+_MEASURED: dict[str, type[Measured]] = {
+    "resistance": Resistance,
+    "share": Share,
+    "mass": Mass,
+    "build": Build,
+}
+_WORDS = {cls: word for word, cls in _MEASURED.items()}
+
+
+def genesis(log: str) -> bytes:
+    """The link before the first fact of a log: no chain fits another one."""
+    return hashlib.sha256(b"windctl log 1\0" + log.encode()).digest()
+
+
+def plain(fact: Addendum) -> dict[str, Any]:
+    """The fields as plain values."""
+    fields = dataclasses.asdict(fact)
+    if isinstance(fact, CoilTaught):
+        fields["lesson"]["measured"] = [
+            {"what": _WORDS[type(one)], **dataclasses.asdict(one)} for one in fact.lesson.measured
+        ]
+    return fields
+
+
+def encode(fact: Addendum) -> bytes:
+    """The canonical bytes of a fact, without its kind. Raises ValueError for NaN and infinities."""
+    return dumps(plain(fact))
+
+
+def decode(kind: str, payload: bytes) -> Addendum:
+    """The fact of `kind` that `payload` describes. Raises RecordBroken when it describes none."""
+    try:
+        fields = json.loads(payload)
+        if kind == CoilTaught.kind:
+            fields["lesson"] = _lesson(fields["lesson"])
+        return KINDS[kind](**fields)
+    except (ValueError, KeyError, TypeError, AttributeError) as error:
+        raise RecordBroken(f"a stored fact of kind {kind!r} cannot be read: {error}") from error
+
+
+def _lesson(fields: dict[str, Any]) -> Lesson:
+    measured = tuple(
+        _MEASURED[one["what"]](**{name: value for name, value in one.items() if name != "what"})
+        for one in fields["measured"]
+    )
+    return Lesson(**{**fields, "basis": Basis(**fields["basis"]), "measured": measured})
+
+
+def withdrawn(facts: Iterable[Addendum]) -> CoilWithdrawn | None:
+    """The withdrawal that now holds, if one does."""
+    last: CoilWithdrawn | None = None
+    for fact in facts:
+        if isinstance(fact, CoilWithdrawn):
+            last = fact
+        elif isinstance(fact, CoilReadmitted):
+            last = None
+    return last
