@@ -1,8 +1,9 @@
 """The journal thread: facts become durable here, and a slow disk never delays the serial line.
 
 The runner hands over entries and goes on; this thread commits them in batches. A ticket tells when a certain
-entry is durable: consents wait for theirs before they act. A failed commit stops the journal for good; the
-runner sees it, stops beating, and the board holds.
+entry is durable: consents wait for theirs before they act. A failed commit stops the journal; the runner sees
+it, holds, and ends. What was not written is kept and tried once more on closing: a disk that has room again
+by then, or a book no longer locked, still gets the facts that say why the coil was held.
 """
 
 from __future__ import annotations
@@ -42,6 +43,7 @@ class Journal:
         self._log = log
         self._linger_s = linger_s
         self._waiting: list[tuple[float, Entry]] = []
+        self._unwritten: list[Entry] = []  # the batch whose commit failed
         self._handed = 0
         self._durable = 0
         self._urgent = False
@@ -82,8 +84,15 @@ class Journal:
 
     @property
     def failure(self) -> WindctlError | None:
-        """Why the journal stopped for good, if it did."""
+        """Why the journal stopped, if it did."""
         return self._failure
+
+    def paused(self, seconds: float) -> None:
+        """This process did not run for so long: that time makes no fact older."""
+        with self._changed:
+            self._waiting = [(at + seconds, entry) for at, entry in self._waiting]
+            if self._oldest_being_written is not None:
+                self._oldest_being_written += seconds
 
     def oldest_s(self) -> float:
         """Age in seconds of the oldest fact not yet durable."""
@@ -94,7 +103,7 @@ class Journal:
             return 0.0 if first is None else time.monotonic() - first
 
     def close(self, timeout_s: float = 30.0) -> None:
-        """Commit what is left and end the thread.
+        """Commit what is left, also what failed before, and end the thread.
 
         Raises BookError when something could not be made durable.
         """
@@ -102,6 +111,8 @@ class Journal:
             self._closing = True
             self._changed.notify_all()
         self._thread.join(timeout_s)
+        if self._durable == self._handed:
+            return
         if self._failure is not None:
             raise self._failure
         if self._thread.is_alive():
@@ -111,21 +122,41 @@ class Journal:
 
     def _work(self) -> None:
         try:
-            while True:
-                batch = self._next_batch()
-                if not batch:
-                    break
-                self._log.commit(batch)
-                with self._changed:
-                    self._durable += len(batch)
-                    self._oldest_being_written = None
-                    self._changed.notify_all()
+            self._commit_until_closed()
         except WindctlError as error:
             self._fail(error)
-        except Exception as error:  # noqa: BLE001 - whatever it is, the record is not safe: the machine stops
+        except BaseException as error:  # noqa: BLE001 - whatever it is, the record is not safe: the machine stops
             self._fail(BookError(f"the journal failed: {type(error).__name__}: {error}"))
+        try:
+            if self._failure is not None:
+                self._try_once_more()
         finally:
             self._log.close()
+
+    def _commit_until_closed(self) -> None:
+        while batch := self._next_batch():
+            self._unwritten = batch
+            self._commit_unwritten()
+
+    def _try_once_more(self) -> None:
+        with self._changed:
+            self._changed.wait_for(lambda: self._closing)
+        try:
+            self._commit_unwritten()  # as it was tried before: it may have reached the disk after all
+            self._commit_until_closed()
+        except WindctlError:
+            return  # `close` raises the first failure
+        except Exception:  # noqa: BLE001 - the failure that stopped the journal is the one to tell
+            return
+
+    def _commit_unwritten(self) -> None:
+        if self._unwritten:
+            self._log.commit(self._unwritten)
+        with self._changed:
+            self._durable += len(self._unwritten)
+            self._unwritten = []
+            self._oldest_being_written = None
+            self._changed.notify_all()
 
     def _next_batch(self) -> list[Entry]:
         """Wait for something to commit; empty when closing and all is done."""

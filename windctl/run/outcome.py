@@ -12,7 +12,8 @@ from windctl.record.summary import CoilSummary
 class Outcome:
     """How one run of one coil ended. `left` is the runner's word for it; digests are hex.
 
-    `record_digest` of an open coil covers what is durable so far.
+    `record_digest` of an open coil covers what is durable so far. Digests are "" where the book could not
+    be read.
     """
 
     number: str
@@ -40,6 +41,6 @@ class Outcome:
             "batch": summary.batch or None,
             "verdict": summary.verdict,
             "program_digest": summary.program_digest,
-            "trace_digest": self.trace_digest,
-            "record_digest": self.record_digest,
+            "trace_digest": self.trace_digest or None,
+            "record_digest": self.record_digest or None,
         }

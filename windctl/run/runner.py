@@ -27,66 +27,27 @@ from windctl.record.events import (
     ClearGiven,
     CommandRefused,
     CountCorrected,
-    EndRequested,
     Event,
     GoGiven,
     HoldRequested,
-    NoteMade,
     ReadingTaken,
     StatusHeard,
 )
 from windctl.record.events import LinkLost as LinkLostEvent
 from windctl.record.fold import Fit, State, fold
+from windctl.run.answers import answer
 from windctl.run.journal import MOST_WAITING, TOO_OLD_S, Journal
 from windctl.run.outlook import Ahead, outlook
+from windctl.run.requests import Clear, End, Go, Hold, Note, Request
 from windctl.run.snapshot import Snapshot, snapshot
 from windctl.run.suits import check_board, check_refusal
+
+__all__ = ["Clear", "End", "Ended", "Go", "Hold", "Note", "Request", "Runner"]
 
 WAIT_S = 0.010  # the longest the runner listens before it looks up again
 LAST_HOLD_S = 5.0  # how long a failing run tries to see the spindle stand
 DURABLE_S = 30.0  # how long a simulated run waits for the disk
-
-
-@dataclass(frozen=True, slots=True)
-class Go:
-    """Somebody gives consent to start."""
-
-    by: str
-
-
-@dataclass(frozen=True, slots=True)
-class Hold:
-    """Somebody asks the spindle to stand. `leave`: this run then ends and the coil stays open."""
-
-    by: str
-    reason: str
-    leave: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class End:
-    """Somebody ends the coil where it stands."""
-
-    by: str
-    reason: str
-
-
-@dataclass(frozen=True, slots=True)
-class Clear:
-    """Somebody looked to the cause of a trip."""
-
-    by: str
-
-
-@dataclass(frozen=True, slots=True)
-class Note:
-    """Somebody writes something down."""
-
-    by: str
-    text: str
-
-
-Request = Go | Hold | End | Clear | Note
+PAUSE_S = 1.5  # two rounds so far apart: this process did not run, and the board may have stopped by itself
 
 
 @dataclass(frozen=True, slots=True)
@@ -129,8 +90,11 @@ class Runner:
         self._decision = Decision((), Wants())
         self._picture = (state, self._decision)
         self._leaving: Hold | None = None
+        self._answers = 0
+        self._answer = ""
         self._consent_ticket = 0
         self._started_at = 0.0
+        self._spoke_at = 0.0
         self._ended: Ended | None = None
         self._done = threading.Event()
         self._begun = False
@@ -144,7 +108,8 @@ class Runner:
 
     def look(self) -> Snapshot:
         """The latest picture of the run."""
-        return snapshot(*self._picture, self._steps_per_mm)
+        picture = snapshot(*self._picture, self._steps_per_mm)
+        return replace(picture, answers=self._answers, answer=self._answer)
 
     def outlook(self) -> tuple[Ahead, ...]:
         """The forecast from here to the stop."""
@@ -179,14 +144,15 @@ class Runner:
             self._done.set()
 
     def _wind(self) -> Ended:
-        self._started_at = self._port.now()
+        self._started_at = self._spoke_at = self._port.now()
         self._record(self._first)
         self._settle_decision()
         while True:
-            for event in (*self._listen(), *self._requested()):
+            for event in self._listen():
                 self._record((event,))  # one by one: each fact may have a consequence before the next
                 self._check_suits(event)
                 self._settle_decision()
+            self._meet_requests()
             ended = self._over()
             self._speak()
             if ended is not None:
@@ -218,36 +184,23 @@ class Runner:
         elif isinstance(event, CommandRefused):
             check_refusal(event.refused)
 
-    def _requested(self) -> list[Event]:
-        events: list[Event] = []
+    def _meet_requests(self) -> None:
         while True:
             try:
                 request = self._requests.get_nowait()
             except queue.Empty:
-                return events
-            event = self._event_of(request)
-            if event is not None:
-                events.append(event)
-
-    def _event_of(self, request: Request) -> Event | None:
-        at_ms, permission = self._at_ms(), self._state.permission
-        match request:
-            case Hold():
-                if request.leave:
-                    self._leaving = request
-                return HoldRequested(at_ms, request.by, request.reason)
-            case End():
-                return EndRequested(at_ms, request.by, request.reason)
-            case Note():
-                return NoteMade(at_ms, request.text, request.by)
-            case Go():
-                if permission is None or self._leaving is not None or self._decision.asks != "go":
-                    return None  # a go that was not asked for starts nothing
-                return GoGiven(at_ms, permission.boot, permission.epoch, request.by)
-            case Clear():
-                if permission is None or self._decision.asks != "clear":
-                    return None
-                return ClearGiven(at_ms, permission.boot, permission.epoch, request.by)
+                return
+            if isinstance(request, Hold) and request.leave:
+                self._leaving = request
+            met = answer(
+                request, self._state, self._decision, self._at_ms(), leaving=self._leaving is not None
+            )
+            for fact in met.facts:
+                self._record((fact,))
+                self._settle_decision()
+            if met.says:
+                self._answer = met.says
+                self._answers += 1
 
     def _settle_decision(self) -> None:
         """Decide, record and fold until nothing more follows."""
@@ -271,6 +224,7 @@ class Runner:
             or permission is None
             or self._leaving is not None
             or state.hold is not None
+            or state.hands is not None
         ):
             return ()
         if not state.identity.capabilities & Capability.VIRTUAL:
@@ -294,24 +248,44 @@ class Runner:
 
     def _speak(self) -> None:
         now = self._port.now()
-        wants = self._decision.wants
         journal = self._journal
         if journal.failure is not None:
             raise journal.failure
         if self._port.simulated:
             if not journal.is_durable(self._consent_ticket) or journal.waiting > MOST_WAITING:
                 self._wait_for_disk()
-        elif not journal.is_durable(self._consent_ticket):
-            wants = replace(wants, armed=None, go=None, datum=None, clear_trip=None)
-        if not self._port.simulated and journal.oldest_s() > TOO_OLD_S and self._state.hold is None:
-            self._port.write(self._talk.advance(replace(wants, beat=False, hold=True), now))
-            self._record(
-                (HoldRequested(self._at_ms(), "windctl", f"the record is {TOO_OLD_S:.0f} s behind"),)
-            )
+            self._say(self._decision.wants, now)
             return
+        self._mind_pause(now)
+        wants = self._decision.wants
+        if not journal.is_durable(self._consent_ticket):
+            wants = replace(wants, armed=None, go=None, guide=None, datum=None, clear_trip=None)
+        if journal.oldest_s() > TOO_OLD_S:
+            self._say(replace(wants, beat=False, hold=True), now)
+            if self._state.hold is None:
+                self._hold_because(f"the record is {TOO_OLD_S:.0f} s behind")
+            return
+        self._say(wants, now)
+
+    def _say(self, wants: Wants, now: float) -> None:
         data = self._talk.advance(wants, now)
         if data:
             self._port.write(data)
+        self._spoke_at = now
+
+    def _mind_pause(self, now: float) -> None:
+        """This process may have stood still: suspended, stopped, or its computer busy with something else."""
+        pause = now - self._spoke_at
+        if pause < PAUSE_S:
+            return
+        self._talk.paused(pause)
+        self._journal.paused(pause)
+        if self._state.turning or self._state.consent is not None:
+            self._hold_because(f"this computer stood still for {pause:.1f} s")
+
+    def _hold_because(self, reason: str) -> None:
+        self._record((HoldRequested(self._at_ms(), "windctl", reason),))
+        self._settle_decision()
 
     def _wait_for_disk(self) -> None:
         ticket = self._journal.put((), urgent=True)
@@ -339,18 +313,12 @@ class Runner:
         """Hold, see the spindle stand if the line allows it, record why, and end."""
         stands = False
         if isinstance(error, LinkLost):
-            self._record_quietly(LinkLostEvent(self._at_ms(), str(error)))
+            self._record((LinkLostEvent(self._at_ms(), str(error)),))
         else:
-            self._record_quietly(HoldRequested(self._at_ms(), "windctl", str(error)))
+            self._record((HoldRequested(self._at_ms(), "windctl", str(error)),))
             stands = self._hold_to_rest()
         left = "failed" if stands or not self._state.turning else "unconfirmed"
         return Ended(self._state, left, str(error), error)
-
-    def _record_quietly(self, event: Event) -> None:
-        if self._journal.failure is None:
-            self._record((event,))
-        else:
-            self._state = fold(self._state, event)
 
     def _hold_to_rest(self) -> bool:
         """Ask for a hold until the board says that it stands; without beats, it also stops by itself."""
@@ -361,7 +329,7 @@ class Runner:
                 for message in self._talk.receive(self._port.read(WAIT_S), self._port.now()):
                     fact = _fact(message, self._at_ms())
                     if isinstance(fact, StatusHeard):
-                        self._record_quietly(fact)
+                        self._record((fact,))
                         if self._state.standing:
                             return True
         except WindctlError:

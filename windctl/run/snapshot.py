@@ -8,10 +8,11 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from windctl.forecast.finish import finish_at, so_far
-from windctl.protocol.messages import Cause, Trip
+from windctl.protocol.messages import Capability, Cause
 from windctl.protocol.messages import State as BoardState
 from windctl.record.decide import Decision
 from windctl.record.fold import Fit, State
+from windctl.record.program import place_at
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,6 +38,14 @@ class Snapshot:
     readings_used: int
     readings_gated: int
     slow_turn: float | None = None  # where the last slow turns begin
+    begun: bool = False  # the spindle may have turned for this coil
+    drives_off: bool = False  # nothing is powered and nothing turns: hands may go in
+    hands: str | None = None  # what somebody reaches into the machine for
+    wire_ends_at: float | None = None  # turns that have wire, where the count says more
+    guide_place_mm: float | None = None  # where the guide belongs at this turn, from its start
+    splices: int = 0
+    answers: int = 0  # requests that were answered in words, and the last answer
+    answer: str = ""
 
 
 def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
@@ -72,6 +81,12 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         readings_used=state.readings_used,
         readings_gated=state.readings_gated,
         slow_turn=_slow_turn(state, stop),
+        begun=state.let_go,
+        drives_off=state.drives_off,
+        hands=state.hands.reason if state.hands else None,
+        wire_ends_at=state.wire_ends_at if state.wire_ends_at < state.turns else None,
+        guide_place_mm=_guide_place(state, steps_per_mm) if decision.asks == "place" else None,
+        splices=state.splices,
     )
 
 
@@ -88,7 +103,7 @@ def _phase(state: State) -> str:
     if not state.standing:
         return "stopping"
     if status.state == BoardState.DRIVES_OFF:
-        return "setting up"
+        return "held" if state.let_go and state.in_hand else "setting up"
     if state.held is not None:
         at_stop = state.stop_point is not None and state.count >= state.stop_point
         return "settling" if at_stop else "held"
@@ -107,14 +122,10 @@ def _says(state: State, decision: Decision) -> str:
         if slow is not None and state.turns < slow:
             return f"slows at {slow:.0f}, stops near {stop:.0f}"
         return f"slow to the stop at {stop:.0f}"
-    if phase == "held" and state.held is not None:
-        if state.hold is not None:
-            return f"held: {state.hold.reason}"
-        return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
+    if phase == "held":
+        return _says_held(state, decision)
     if phase == "settling":
         return "at rest: the reading settles"
-    if phase == "tripped" and state.status is not None:
-        return f"tripped: {Trip(state.status.trip).name.lower().replace('_', ' ')}"
     if phase == "stopping":
         return "stopping"
     if decision.asks == "go":
@@ -122,6 +133,28 @@ def _says(state: State, decision: Decision) -> str:
     return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[
         phase
     ]
+
+
+def _says_held(state: State, decision: Decision) -> str:
+    if decision.asks == "place":
+        return "the board no longer knows where the coil stands"
+    if state.hands is not None:
+        off = "drives off, hands may go in" if state.drives_off else "switching the drives off"
+        return f"{off}: {state.hands.reason}"
+    if state.drives_off:
+        return "held, drives off"
+    if state.hold is not None:
+        return f"held: {state.hold.reason}"
+    if state.held is None:
+        return "held"
+    return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
+
+
+def _guide_place(state: State, steps_per_mm: float) -> float | None:
+    started = state.started
+    if started is None or not started.setup.fitted & Capability.GUIDE_STEP or not steps_per_mm:
+        return None
+    return place_at(started.program_packed, state.counts_per_turn, state.count).guide / steps_per_mm
 
 
 def _slow_turn(state: State, stop: float | None) -> float | None:

@@ -10,12 +10,12 @@ from __future__ import annotations
 import threading
 import zlib
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from windctl import __version__
 from windctl.book.book import Book
 from windctl.book.writer import CoilWriter
-from windctl.errors import MachineError, RecordBroken, UsageError
+from windctl.errors import BookError, MachineError, RecordBroken, UsageError
 from windctl.machine.ports import Port
 from windctl.plan.board_setup import board_setup
 from windctl.plan.model import Plan
@@ -26,13 +26,16 @@ from windctl.record.curve import review
 from windctl.record.events import CoilStarted, Event, Resumed, Target
 from windctl.record.fold import State, fold, replay, start
 from windctl.record.program import stored
-from windctl.record.summary import summarise
+from windctl.record.summary import CoilSummary, summarise
 from windctl.record.trace import trace_digest
 from windctl.run.journal import LINGER_S, Journal
 from windctl.run.outcome import Outcome
 from windctl.run.outlook import Ahead
-from windctl.run.runner import Ended, Request, Runner
+from windctl.run.requests import Request
+from windctl.run.runner import Ended, Runner
 from windctl.run.snapshot import Snapshot
+
+MOST_GUIDE_PACE = 4000  # steps/s at which a board moves the guide by itself
 
 
 @dataclass(frozen=True, slots=True)
@@ -116,7 +119,7 @@ class Winding:
         return self._runner.facts(after)
 
     def request(self, request: Request) -> None:
-        """Ask something of the run: go, hold, end, clear, note."""
+        """Ask something of the run; `windctl.run.requests` has what there is."""
         self._runner.request(request)
 
     def wait(self, timeout_s: float) -> Ended | None:
@@ -126,21 +129,32 @@ class Winding:
     def close(self) -> Outcome:
         """Make the last facts durable, seal the coil if it is finished, and say how it went.
 
-        Raises BookError when the record could not be completed, RecordBroken when it does not tell what
+        A book that cannot be written or read is part of the outcome, as its `error`: whether the spindle was
+        seen standing must not get lost over it. Raises RecordBroken when the record does not tell what
         happened.
         """
         ended = self._runner.wait(60.0)
         self._thread.join(60.0)
         if ended is None:
             raise MachineError("the run did not end within 60 s: use the hardware stop")
-        failure: Exception | None = ended.error
-        if self._journal.failure is None:
-            self._runner.flush()
+        self._runner.flush()
+        failure: BookError | None = None
+        try:
             self._journal.close()
+        except BookError as error:
+            failure = error
+        try:
+            return self._sealed(ended, failure)
+        except BookError as error:
+            unread = summarise(replace(ended.state, finished=None))
+            return self._outcome(ended, failure or error, unread)
+
+    def _sealed(self, ended: Ended, failure: BookError | None) -> Outcome:
+        """The outcome as the record tells it, and sealed if it tells of an end."""
         events = list(self._book.events(self.number))
         seen = review(events)
         trace = trace_digest(events)
-        if self._journal.failure is None and seen.state != ended.state:
+        if failure is None and seen.state != ended.state:
             raise RecordBroken(
                 f"the record of coil {self.number} does not tell what happened: nothing is sealed"
             )
@@ -149,15 +163,28 @@ class Winding:
             head = self._writer.seal(summary, seen.curve, trace, self._here.wall_time())
         else:
             head = self._book.find(self.number)
+        return self._outcome(ended, failure, summary, trace, head.record_digest)
+
+    def _outcome(
+        self,
+        ended: Ended,
+        failure: BookError | None,
+        summary: CoilSummary,
+        trace: str = "",
+        record: str = "",
+    ) -> Outcome:
+        left, why = ended.left, ended.why
+        if failure is not None and left in ("finished", "held"):
+            left, why = "failed", str(failure)
         return Outcome(
             number=self.number,
-            coil_id=head.id,
-            left=ended.left,
-            why=ended.why,
+            coil_id=self._writer.id,
+            left=left,
+            why=why,
             summary=summary,
             trace_digest=trace,
-            record_digest=head.record_digest,
-            error=failure,
+            record_digest=record,
+            error=ended.error or failure,
         )
 
 
@@ -202,6 +229,12 @@ def _check_turn(at_turn: float | None, started: CoilStarted) -> None:
         raise UsageError(f"--at-turn is {at_turn:g} turns, outside this coil's 0 to {most:g} turns")
 
 
+def _guide_pace(profile: MachineProfile) -> int:
+    """Steps/s that the guide takes from rest without a ramp, within what a board issues."""
+    guide = profile.guide
+    return max(1, min(MOST_GUIDE_PACE, int(guide.start_stop_mm_per_s * guide.steps_per_mm)))
+
+
 def _started(order: Order, here: Here) -> CoilStarted:
     recipe, plan, profile = order.recipe, order.plan, order.profile
     token = zlib.crc32(here.coil_id.encode())
@@ -224,6 +257,7 @@ def _started(order: Order, here: Here) -> CoilStarted:
         program_packed=stored(plan.program.packed()),
         total_counts=plan.program.total_counts,
         setup=board_setup(recipe, profile, plan.program, token),
+        guide_pace=_guide_pace(profile),
         pace=plan.pace,
         prior=plan.prior,
         target=Target(

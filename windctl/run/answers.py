@@ -1,0 +1,146 @@
+"""From a request to the facts that follow from it, or to why it cannot be met now. Pure."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from windctl.record.decide import Decision
+from windctl.record.events import (
+    ClearGiven,
+    CountCorrected,
+    EndRequested,
+    Event,
+    GoGiven,
+    HandsAsked,
+    HoldRequested,
+    NoteMade,
+    Spliced,
+    WireBroke,
+    WireChanged,
+)
+from windctl.record.state import State
+from windctl.run.requests import (
+    Broke,
+    Clear,
+    CountIs,
+    DrivesOff,
+    End,
+    Go,
+    Hold,
+    NewWire,
+    Note,
+    Request,
+    Splice,
+    Unwind,
+)
+
+# What a person may be asked for while the coil stands and hands may go in.
+_AT_REST = ("go", "clear", "place")
+
+
+@dataclass(frozen=True, slots=True)
+class Answer:
+    """`facts` to record, none where the request cannot be met; `says` is for whoever asked ("": nothing)."""
+
+    facts: tuple[Event, ...] = ()
+    says: str = ""
+
+
+def answer(request: Request, state: State, decision: Decision, at_ms: int, *, leaving: bool) -> Answer:
+    """What becomes of a request. `leaving`: the run is about to end, so nothing may start any more."""
+    permission = state.permission
+    match request:
+        case Hold():
+            return Answer((HoldRequested(at_ms, request.by, request.reason),))
+        case End():
+            return Answer((EndRequested(at_ms, request.by, request.reason),))
+        case Note():
+            return Answer((NoteMade(at_ms, request.text, request.by),), "noted")
+        case Go():
+            if permission is None or leaving or decision.asks != "go":
+                return Answer()  # a go that was not asked for starts nothing
+            return Answer((GoGiven(at_ms, permission.boot, permission.epoch, request.by),))
+        case Clear():
+            if permission is None or leaving or decision.asks != "clear":
+                return Answer()
+            return Answer((ClearGiven(at_ms, permission.boot, permission.epoch, request.by),))
+        case _:
+            if leaving or decision.asks not in _AT_REST or not state.in_hand or not state.let_go:
+                return Answer(says="that can be said once the coil has turns and stands")
+            return _at_the_wire(request, state, at_ms)
+
+
+def _at_the_wire(
+    request: DrivesOff | Broke | Splice | NewWire | CountIs | Unwind, state: State, at_ms: int
+) -> Answer:
+    by = request.by
+    match request:
+        case DrivesOff():
+            return Answer((HandsAsked(at_ms, by, request.reason),), _OFF)
+        case Unwind():
+            words = "unwind"
+            if request.turns is not None:
+                if not 0.0 < request.turns <= state.turns:
+                    return Answer(
+                        says=f"{request.turns:g} turns cannot be unwound of {state.turns:.2f} turns"
+                    )
+                words = f"unwind {request.turns:g} turns, to turn {state.turns - request.turns:.2f}"
+            return Answer(
+                (HandsAsked(at_ms, by, words),),
+                f"{_OFF} Turn the spindle back by hand: the count follows. Type go when done.",
+            )
+        case Broke():
+            turn = state.wire_ends_at if request.turn is None else request.turn
+            if not 0.0 <= turn <= state.turns:
+                return Answer(says=_outside(turn, state.turns))
+            return Answer((WireBroke(at_ms, turn, by),), f"noted: the wire broke at turn {turn:.2f}")
+        case Splice() | NewWire():
+            if not state.drives_off:
+                return Answer(
+                    (HandsAsked(at_ms, by, "join the wire"),), f"{_OFF} Join the wire, then say so again."
+                )
+            return _joined(request, state, at_ms)
+        case CountIs():
+            return _counted(request, state, at_ms)
+
+
+_OFF = "The drives go off: hands may go in when it says so."
+
+
+def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
+    by = request.by
+    turn = state.wire_ends_at if request.turn is None else request.turn
+    if not 0.0 <= turn <= state.turns:
+        return Answer(says=_outside(turn, state.turns))
+    facts: list[Event] = [HandsAsked(at_ms, by, "join the wire")]
+    if state.broke is None and state.broke_near is not None:
+        facts.append(WireBroke(at_ms, turn, by))
+    if round(turn * state.counts_per_turn) != state.count:
+        facts.append(CountCorrected(at_ms, turn, by, "what was counted beyond is without wire"))
+    if isinstance(request, Splice):
+        facts.append(Spliced(at_ms, turn, by))
+        return Answer(tuple(facts), f"noted: spliced at turn {turn:.2f}, winding goes on from there")
+    facts.append(WireChanged(at_ms, turn, request.spool, by))
+    return Answer(tuple(facts), f"noted: another spool from turn {turn:.2f} on")
+
+
+def _counted(request: CountIs, state: State, at_ms: int) -> Answer:
+    started = state.started
+    most = started.total_counts / state.counts_per_turn if started is not None else 0.0
+    if not 0.0 <= request.turn <= most:
+        return Answer(says=_outside(request.turn, most))
+    if not state.drives_off:
+        return Answer(
+            (HandsAsked(at_ms, request.by, "count the turns"),), f"{_OFF} Count the turns, then say so again."
+        )
+    return Answer(
+        (
+            HandsAsked(at_ms, request.by, "count the turns"),
+            CountCorrected(at_ms, request.turn, request.by, "counted by hand", miscounted=True),
+        ),
+        f"noted: {request.turn:.2f} turns lie on the bobbin",
+    )
+
+
+def _outside(turn: float, most: float) -> str:
+    return f"turn {turn:g} is outside this coil's 0 to {most:.2f} turns"

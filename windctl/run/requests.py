@@ -1,0 +1,96 @@
+"""What somebody may ask of a run, whichever face it comes by. `by` is who: "operator", "windctl"."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class Go:
+    """Somebody gives consent to start."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Hold:
+    """Somebody asks the spindle to stand. `leave`: this run then ends and the coil stays open."""
+
+    by: str
+    reason: str
+    leave: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class End:
+    """Somebody ends the coil where it stands."""
+
+    by: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class Clear:
+    """Somebody looked to the cause of a trip."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Note:
+    """Somebody writes something down."""
+
+    by: str
+    text: str
+
+
+@dataclass(frozen=True, slots=True)
+class DrivesOff:
+    """Somebody wants to reach into the machine; `reason` says what for."""
+
+    by: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
+class Broke:
+    """The wire broke after `turn` turns; None: where the trip tells, else at the present count."""
+
+    by: str
+    turn: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Splice:
+    """The wire is joined; `turn` turns lie on the bobbin. None: those that have wire."""
+
+    by: str
+    turn: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class NewWire:
+    """Another spool, called `spool`, is joined on after `turn` turns; None: those that have wire."""
+
+    by: str
+    spool: str = ""
+    turn: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class CountIs:
+    """The count is wrong: `turn` turns lie on the bobbin."""
+
+    by: str
+    turn: float
+
+
+@dataclass(frozen=True, slots=True)
+class Unwind:
+    """Somebody turns the spindle back by hand; `turns` to take off, None: until they stop."""
+
+    by: str
+    turns: float | None = None
+
+
+Request = Go | Hold | End | Clear | Note | DrivesOff | Broke | Splice | NewWire | CountIs | Unwind
