@@ -9,12 +9,29 @@ from pathlib import Path
 
 import pytest
 
+from windctl.lay.ribbons import ribbon
 from windctl.material.gauge import METRIC
+from windctl.plan.make import make_plan
+from windctl.profile.builtin import VIRTUAL
+from windctl.profile.load import load_profile
+from windctl.profile.model import MachineProfile
 from windctl.recipe.load import load_recipe
 from windctl.recipe.model import Recipe
 
-FOLDER = Path(__file__).parents[2] / "recipes"
+ROOT = Path(__file__).parents[2]
+FOLDER = ROOT / "recipes"
 FILES = sorted(FOLDER.glob("*.toml"))
+MACHINES = sorted((FOLDER / "machines").glob("*.toml"))
+
+# What plan says about a machine rather than about a recipe.
+_OF_THE_MACHINE = ("no spindle drive", "the wire is guided by hand", "no tension sensor")
+
+
+def _machines_of(file: Path) -> list[MachineProfile]:
+    """The profiles that a recipe's comment names, the one it is meant for first."""
+    (line,) = (line for line in file.read_text().splitlines() if line.startswith("# Machine: "))
+    named = [load_profile(ROOT / name) for name in re.findall(r"recipes/machines/[a-z-]+\.toml", line)]
+    return named + [VIRTUAL] * (" virtual" in line)
 
 
 def _build_mm(recipe: Recipe, turns: int) -> float:
@@ -36,7 +53,41 @@ def test_the_folder_holds_what_a_shop_starts_with() -> None:
         "bridge-single-to-turns.toml",
         "hum-pair-north.toml",
         "hum-pair-south.toml",
+        "bass-single-even.toml",
+        "bass-single-scatter.toml",
+        "neck-single-by-hand.toml",
+        "bridge-single-with-checks.toml",
     }
+    assert {file.name for file in MACHINES} == {
+        "guided-live.toml",
+        "guided-checks.toml",
+        "hand-guided.toml",
+        "counter-only.toml",
+    }
+
+
+@pytest.mark.parametrize("file", FILES, ids=lambda file: file.stem)
+def test_it_winds_without_a_caution_on_every_machine_that_it_names(file: Path) -> None:
+    """A caution that a ready recipe raises is one that nobody reads."""
+    recipe = load_recipe(file)
+    machines = _machines_of(file)
+    assert machines
+    for profile in machines:
+        plan = make_plan(recipe, profile)
+        assert plan.fits == "yes"
+        assert [said for said in plan.warnings if not said.startswith(_OF_THE_MACHINE)] == []
+        assert recipe.lay.style == "even" or ribbon(plan.program) is None
+
+
+def test_there_is_a_recipe_for_every_kind_of_machine() -> None:
+    wants = {file.stem: _machines_of(file)[0] for file in FILES}
+    assert wants["neck-single-by-hand"].guide.kind == "hand"
+    assert wants["bridge-single-with-checks"].readings.mode == "checks"
+    assert {profile.readings.mode for profile in wants.values()} == {"live", "checks", "none"}
+    assert {load_profile(file).spindle.drive for file in MACHINES} == {"step", "none"}
+    assert load_recipe(FOLDER / "bass-single-even.toml").lay.style == "even"
+    patterns = {load_recipe(file).lay.pattern for file in FILES}
+    assert patterns >= {"wander", "stagger", "ripple"}
 
 
 @pytest.mark.parametrize("file", FILES, ids=lambda file: file.stem)
@@ -58,9 +109,10 @@ def test_it_is_gentle_with_guide_and_wire(file: Path) -> None:
     assert recipe.tension.set_cn / 100 <= 0.2 * 220 * recipe.wire_data().copper_area_mm2
 
 
-@pytest.mark.parametrize("file", FILES, ids=lambda file: file.stem)
+@pytest.mark.parametrize("file", [*FILES, *MACHINES], ids=lambda file: file.stem)
 def test_it_is_marked_as_a_demo_and_every_key_is_explained(file: Path) -> None:
-    assert "(demo)" in load_recipe(file).name
+    loaded = load_profile(file) if file in MACHINES else load_recipe(file)
+    assert "(demo)" in loaded.name
     lines = file.read_text().splitlines()
     assert any(line.startswith("# DEMO: ") for line in lines)
     assert any(line.startswith("# Use th") for line in lines)  # when to use it

@@ -42,7 +42,7 @@ class Bench:
         board, tick_board, step_plant = self.board, self.board.tick, self.plant.step
         to_board, to_host = self.line.to_board, self.line.to_host
         watch, attendant = self.watch, self._attendant
-        by_hand = not self.plant.spec.drive
+        attended = not self.plant.spec.drive or board.capabilities & Capability.PEDAL
         state = board.state
         passed = 0
         while passed < ticks:
@@ -56,8 +56,8 @@ class Bench:
             if board.state != state:
                 state = board.state
                 attendant.see(state)
-            if by_hand and self.ticks % LOOKS_EVERY == 0:
-                attendant.turn_by_motor()
+            if attended and self.ticks % LOOKS_EVERY == 0:
+                attendant.look()
             if watch is not None:
                 watch(inputs.received)
             if to_host.busy:
