@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import importlib
 import os
 import sys
 from collections.abc import Sequence
@@ -23,6 +24,8 @@ COMMANDS = {
     "machine": "windctl.cli.machine:machine",
     "recipe": "windctl.cli.recipe:recipe",
 }
+
+INTERFACE = ("windctl.tui.start", "start")
 
 _ALONE = """\
 windctl winds pickup coils on a motorised winding machine and keeps a record of every coil.
@@ -48,8 +51,13 @@ windctl winds pickup coils on a motorised winding machine and keeps a record of 
 @click.pass_context
 def root(ctx: click.Context) -> None:
     """Winds pickup coils on a motorised winding machine and keeps a record of every coil."""
-    if ctx.invoked_subcommand is None:
+    if ctx.invoked_subcommand is not None:
+        return
+    if not (sys.stdin.isatty() and sys.stderr.isatty()):
         click.echo(_ALONE, nl=False)
+        return
+    start = getattr(importlib.import_module(INTERFACE[0]), INTERFACE[1])
+    ctx.exit(start(options.given(ctx)))
 
 
 def run(arguments: Sequence[str] | None = None) -> ExitCode:

@@ -16,7 +16,7 @@ import click
 
 from windctl.desk.asked import Shared
 
-__all__ = ["Shared", "all_options", "takes"]
+__all__ = ["Shared", "all_options", "given", "takes"]
 
 P = ParamSpec("P")
 R = TypeVar("R")
@@ -87,6 +87,11 @@ def all_options(command: Callable[..., Any]) -> Callable[..., Any]:
     for option in reversed(_OPTIONS.values()):
         command = option(command)
     return command
+
+
+def given(ctx: click.Context) -> Shared:
+    """What was told before any command's name."""
+    return Shared(**ctx.meta.get(_GIVEN, {}))
 
 
 def takes(*names: str) -> Callable[[Callable[Concatenate[Shared, P], R]], Callable[P, R]]:

@@ -7,7 +7,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from windctl.forecast.estimator import Estimate, begin
 from windctl.forecast.finish import finish_at
+from windctl.plan.prior import Prior
 from windctl.record.fold import State
 
 FAN_POINTS = 9
@@ -29,12 +31,19 @@ def outlook(state: State) -> tuple[Ahead, ...]:
         return ()
     stop = state.stop_point
     end = started.planned_turns if stop is None else stop / state.counts_per_turn
-    here = state.turns
+    return _fan(estimate, state.turns, end)
+
+
+def foreseen(prior: Prior, turns: float) -> tuple[Ahead, ...]:
+    """The same before anything is wound: from the bare bobbin to `turns`."""
+    return _fan(begin(prior), 0.0, turns)
+
+
+def _fan(estimate: Estimate, here: float, end: float) -> tuple[Ahead, ...]:
     last = max(end, here)
-    steps = FAN_POINTS - 1
     points = []
     for step in range(FAN_POINTS):
-        turn = here + (last - here) * step / steps
+        turn = here + (last - here) * step / (FAN_POINTS - 1)
         finish = finish_at(estimate, turn)
         points.append(Ahead(turn, finish.ohm, (finish.high - finish.low) / 2.0))
     return tuple(points)

@@ -1,0 +1,76 @@
+"""What is said before a coil: its figures, what to check at the machine, and what it repeats. Pure."""
+
+from __future__ import annotations
+
+from windctl.book.heads import CoilHead
+from windctl.desk.numbers import duration, grouped, ohm, turns
+from windctl.plan.model import Plan
+from windctl.profile.model import MachineProfile
+from windctl.recipe.model import Recipe
+from windctl.recipe.orientation import Orientation, orientation
+
+_Z95 = 1.959964
+
+
+def figures_of(plan: Plan) -> tuple[tuple[str, str], ...]:
+    """The plan in a few rows."""
+    resistance = ohm(plan.dcr_20c_ohm, _Z95 * plan.dcr_sd_ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
+    return (
+        ("turns", turns(plan.turns, _Z95 * plan.turns_sd).removesuffix(" turns")),
+        ("resistance", f"{resistance} at 20 °C"),
+        ("wire", f"{grouped(plan.wire_length_m)} m, {plan.wire_mass_g:.1f} g"),
+        ("build", f"{plan.build_mm:.2f} mm, {plan.peak_build_mm:.2f} mm at its highest"),
+        ("time", duration(plan.duration_s)),
+        ("wire speed", f"{plan.wire_speed_mean_m_s:.1f} m/s, peaks of {plan.wire_speed_peak_m_s:.1f}"),
+        ("program", f"{grouped(plan.program.segments)} segments, {plan.program.digest[:8]}"),
+    )
+
+
+def orientation_of(recipe: Recipe) -> Orientation:
+    """How the bobbin sits."""
+    coil = recipe.coil
+    return orientation(coil.direction_from_face, coil.mounted, coil.start_flange)
+
+
+def checklist(recipe: Recipe, profile: MachineProfile, simulated: bool) -> tuple[str, ...]:
+    """What to do and to confirm before anything turns, in order."""
+    coil, where = recipe.coil, orientation_of(recipe)
+    way = "clockwise" if where.spindle == "cw" else "counter-clockwise"
+    face = "face towards you" if coil.mounted == "face out" else "face towards the motor"
+    items = [
+        f"bobbin mounted, {face}; it will turn {way}",
+        f"start of the wire at the {coil.start_flange} flange, on the {where.start_side}'s side",
+        f"wire: {_wire(recipe)}",
+    ]
+    if recipe.tension is not None and recipe.tension.set_cn is not None:
+        items.append(f"tension set to {recipe.tension.set_cn:g} cN")
+    if profile.guide.kind == "step":
+        items.append("guide inside the start flange, free to travel")
+    if profile.readings.mode == "live":
+        items.append("contact touches the wire, meter leads on")
+    if not simulated:
+        items += [
+            "guard closed; hands off; hair, sleeves, jewellery away; no gloves",
+            "eye protection on: fine wire whips when it breaks",
+            "hardware stop within reach; this program is no safety function",
+        ]
+    return tuple(items)
+
+
+def _wire(recipe: Recipe) -> str:
+    wire = recipe.wire
+    size = wire.gauge or f"{wire.diameter_mm:g} mm"
+    coat = wire.enamel or f"{wire.overall_mm:g} mm overall"
+    return ", ".join(part for part in (size, coat, wire.insulation or "") if part)
+
+
+def since_last(last: CoilHead | None, recipe: Recipe, plan: Plan) -> str:
+    """What this coil repeats of the last one of its recipe, and what is different."""
+    if last is None:
+        return "The first coil of this recipe in the book."
+    same_recipe = last.recipe_digest == recipe.digest
+    same_program = last.program_digest == plan.program.digest
+    if same_recipe and same_program:
+        return f"The same as {last.number}: recipe, seed and program to the last byte."
+    what = "the recipe was changed" if not same_recipe else "the machine's profile gives another program"
+    return f"Not the same as {last.number}: {what}."

@@ -1,0 +1,54 @@
+"""A line that is typed: a word that gives consent, a note, a figure."""
+
+from __future__ import annotations
+
+from textual import on
+from textual.widget import Widget
+from textual.widgets import Input
+
+from windctl.tui.dialogs.dialog import Dialog
+
+
+class Typed(Dialog[str]):
+    """The line typed, without blanks around it; None if nothing was."""
+
+    def __init__(self, heading: str, words: str, placeholder: str = "") -> None:
+        super().__init__(heading, words)
+        self._placeholder = placeholder
+
+    def body(self) -> list[Widget]:
+        """The line."""
+        return [Input(placeholder=self._placeholder)]
+
+    def on_mount(self) -> None:
+        """Type at once."""
+        self.query_one(Input).focus()
+
+    def how(self) -> str:
+        """How to answer."""
+        return "Enter takes it   Esc leaves it"
+
+    @on(Input.Submitted)
+    def taken(self, event: Input.Submitted) -> None:
+        """The answer, if it will do."""
+        line = event.value.strip()
+        if line and self.will_do(line):
+            self.dismiss(line)
+        else:
+            event.input.value = ""
+
+    def will_do(self, line: str) -> bool:
+        """Whether this line is an answer; any that is not empty."""
+        return bool(line)
+
+
+class Word(Typed):
+    """One certain word, and no other: consent that nobody gives by leaning on a key."""
+
+    def __init__(self, heading: str, words: str, word: str) -> None:
+        super().__init__(heading, words, f"type {word}")
+        self._word = word
+
+    def will_do(self, line: str) -> bool:
+        """Only the word."""
+        return line.lower() == self._word

@@ -1,0 +1,71 @@
+"""Every key of the interface, in one table. Letters, space and function keys; chords for nothing urgent.
+
+Terminals in terminals keep Ctrl+S, Ctrl+Q, Ctrl+J, Ctrl+B and Ctrl+A for themselves, so nothing is on them.
+`keys` in the settings file maps an id to other keys. F8 is the hold key and stays it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+from textual.binding import Binding
+
+HOLD_KEY = "f8"
+SPACE = "space"
+KEPT = (HOLD_KEY, SPACE)  # no other command may take these
+
+_KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
+    "help": ("f1", "help", "Help"),
+    "recipes": ("f2", "room('recipes')", "Recipes"),
+    "coils": ("f3", "room('coils')", "Coils"),
+    "commands": ("f4", "command_palette", "All commands"),
+    "light": ("f6", "switch_light", "Light or dark"),
+    "quit": ("f10", "leave", "Leave"),
+    "leave": ("ctrl+c", "leave", "Leave"),
+    "wind.go": ("g", "go", "Go"),
+    "wind.clear": ("c", "clear", "Clear a trip"),
+    "wind.end": ("e", "end", "End the coil here"),
+    "wind.note": ("n", "note", "Note"),
+    "wind.leave": ("l", "leave_open", "Leave it open"),
+    "wind.closer": ("v", "closer", "Closer look"),
+    "wind.done": ("enter", "done", "Record"),
+    "recipes.wind": ("enter", "wind", "Wind it"),
+    "recipes.resume": ("r", "resume", "Go on with the open coil"),
+    "recipes.again": ("n", "again", "The next, the same"),
+    "recipes.reload": ("f5", "reload", "Look again"),
+    "before.start": ("s", "start", "Start"),
+    "coils.open": ("enter", "open", "Show"),
+    "coils.newer": ("p", "newer", "Newer page"),
+    "coils.older": ("o", "older", "Older page"),
+    "coils.filter": ("f", "filter", "Filter"),
+    "coil.verify": ("v", "verify", "Verify"),
+    "coil.export": ("x", "export", "Export"),
+    "back": ("escape", "back", "Back"),
+}
+
+
+def key(name: str, *, show: bool = True, priority: bool = False) -> Binding:
+    """The binding with this id."""
+    keys, action, words = _KEYS[name]
+    return Binding(keys, action, words, show=show, priority=priority, id=name)
+
+
+def ids() -> tuple[str, ...]:
+    """The ids of all keys that can be given other keys."""
+    return tuple(_KEYS)
+
+
+def checked(wanted: Mapping[str, object]) -> tuple[dict[str, str], list[str]]:
+    """(what can be mapped, what is wrong with the rest)."""
+    good: dict[str, str] = {}
+    wrong: list[str] = []
+    for name, keys in wanted.items():
+        if name not in _KEYS:
+            wrong.append(f"keys.{name}: there is no such command; known: {', '.join(_KEYS)}")
+        elif not isinstance(keys, str) or not keys:
+            wrong.append(f"keys.{name} is {keys!r}, not a key or several with commas between")
+        elif {part.strip() for part in keys.split(",")} & set(KEPT):
+            wrong.append(f"keys.{name} is {keys!r}: {' and '.join(KEPT)} hold the spindle, nothing else")
+        else:
+            good[name] = keys
+    return good, wrong

@@ -1,0 +1,36 @@
+"""What all rooms have in common: the top row with its mark, and the keys at the bottom."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.screen import Screen
+from textual.widgets import Footer
+
+from windctl.tui.session import Session
+from windctl.tui.widgets.title_bar import TitleBar
+
+
+class Room(Screen[None]):
+    """`ABOUT` says what the room is for; `body` what stands between top and bottom."""
+
+    ABOUT: ClassVar[str] = ""
+
+    def __init__(self, session: Session) -> None:
+        super().__init__()
+        self.session = session
+
+    def compose(self) -> ComposeResult:
+        """Top row, body, keys."""
+        yield TitleBar(self.heading(), self.session.machine_words, self.session.simulated, id="title")
+        yield from self.body()
+        yield Footer(show_command_palette=False)
+
+    def heading(self) -> str:
+        """The words in the top row."""
+        return "windctl"
+
+    def body(self) -> ComposeResult:
+        """What the room holds."""
+        yield from ()

@@ -1,0 +1,298 @@
+"""The run screen: for a glance from two metres, with both hands on the wire."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from textual import work
+from textual.app import ComposeResult
+from textual.binding import BindingType
+from textual.containers import Horizontal, Vertical
+from textual.widgets import Static
+
+from windctl.errors import WindctlError
+from windctl.run.outcome import Outcome
+from windctl.run.runner import Clear, End, Ended, Go, Note
+from windctl.run.snapshot import Snapshot
+from windctl.tui.dialogs.confirm import Confirm
+from windctl.tui.dialogs.typed import Typed, Word
+from windctl.tui.keymap import key
+from windctl.tui.looks import look_of
+from windctl.tui.outcome_words import outcome_words
+from windctl.tui.pictures.curve import Point
+from windctl.tui.pictures.section import Filled
+from windctl.tui.recipes import Preview
+from windctl.tui.screens.room import Room
+from windctl.tui.session import Run, Session
+from windctl.tui.telling import tell, when
+from windctl.tui.trail import Trail
+from windctl.tui.view import Glance, Next, bands, glance, sound
+from windctl.tui.widgets.bobbin_section import BobbinSection
+from windctl.tui.widgets.curve import Curve
+from windctl.tui.widgets.figures import Figures
+from windctl.tui.widgets.news import News
+from windctl.tui.widgets.state_band import StateBand
+from windctl.tui.widgets.title_bar import TitleBar
+from windctl.tui.widgets.turn_count import TurnCount
+from windctl.tui.widgets.way import Way
+
+DIGITS_S = 0.1
+CHARTS_S = 0.5
+
+CAUTIONS = """\
+Guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves, eye protection on.
+Never touch the work while it turns. Know where the hardware stop is: this program is no safety function."""
+
+
+class WindScreen(Room):
+    """Looks at the run ten times a second, at its charts twice; asks it for what is pressed."""
+
+    ABOUT = (
+        "The coil on the machine. Large: turns. The band: what the machine does, and what it does next. "
+        "The bobbin fills as the wire lies, early turns dark, late turns light; pale is what it will be. "
+        "The bell rings when it slows, stands, or trips."
+    )
+    BINDINGS: ClassVar[list[BindingType]] = [
+        key("wind.go"),
+        key("wind.clear", show=False),
+        key("wind.end"),
+        key("wind.leave"),
+        key("wind.note"),
+        key("wind.closer", show=False),
+        key("wind.done", show=False),
+        key("recipes.again", show=False),
+    ]
+
+    def __init__(self, session: Session, run: Run, preview: Preview | None = None) -> None:
+        super().__init__(session)
+        self.coil = run
+        self.preview = preview
+        self.trail = Trail(run.before)
+        self.latest: Snapshot | None = None
+        self.glance: Glance | None = None
+        self.ended: Ended | None = None
+        self.outcome: Outcome | None = None
+        self._facts = 0
+        self._lines: list[tuple[str, str]] = []
+        self._asked: str | None = None
+
+    def heading(self) -> str:
+        """Recipe, number, batch."""
+        return self.coil.card.title
+
+    def body(self) -> ComposeResult:
+        """Band, figures on the left, drawings on the right."""
+        yield StateBand(id="band")
+        yield Way(id="way")
+        yield Static("", id="alarm", markup=False)
+        yield Static("", id="verdict", markup=False)
+        with Horizontal(id="wind-body"):
+            with Vertical(id="wind-left"):
+                yield TurnCount(id="turns")
+                yield Static("", id="under", markup=False)
+                yield Figures(id="figures")
+                yield News(id="news")
+            with Vertical(id="wind-right"):
+                yield Curve(id="curve")
+                yield Curve(closer=True, id="closer")
+                yield BobbinSection(id="section")
+
+    def on_mount(self) -> None:
+        """Begin to look."""
+        self.set_interval(DIGITS_S, self.look)
+        self.set_interval(CHARTS_S, self.draw)
+        self.look()
+        self.call_after_refresh(self.draw)
+
+    # ------------------------------------------------------------ looking
+
+    def look(self) -> None:
+        """Texts and digits."""
+        winding = self.coil.winding
+        snapshot = winding.look()
+        if sound(self.latest, snapshot) is not None:
+            self.app.bell()
+        self.latest = snapshot
+        if self.ended is None and (ended := winding.wait(0.0)) is not None:
+            self.ended = ended
+            self.finish()
+        if self.outcome is None:
+            self.show(snapshot)
+
+    def show(self, snapshot: Snapshot) -> None:
+        """Place what the view says."""
+        failed = ""
+        if self.ended is not None and self.ended.left in ("failed", "unconfirmed"):
+            failed = f"{self.ended.why}. What was wound is in the record; go on with it from the recipes (R)."
+            if self.ended.left == "unconfirmed":
+                failed = f"THE STOP IS NOT CONFIRMED: use the hardware stop. {failed}"
+        seen = glance(snapshot, self.coil.card, failed)
+        self.trail.add(Point(snapshot.turns, snapshot.ohm_20c_now, snapshot.finish_ohm, snapshot.finish_u95))
+        if seen == self.glance:
+            return
+        self.glance = seen
+        self.query_one(StateBand).show(seen.look, seen.next)
+        self.query_one(TurnCount).show(seen.digits)
+        self.query_one("#under", Static).update(seen.under_digits, layout=False)
+        self.query_one(Way).show(seen.part, seen.slow_part)
+        self.query_one(Figures).show(seen.rows)
+        self.query_one(TitleBar).show(self.heading(), seen.virtual or self.session.simulated)
+        alarm = self.query_one("#alarm", Static)
+        if str(alarm.content) != seen.alarm:
+            alarm.update(seen.alarm)
+            alarm.set_class(bool(seen.alarm), "-there")
+
+    def draw(self) -> None:
+        """Charts, section and news."""
+        winding, card = self.coil.winding, self.coil.card
+        snapshot = winding.look()
+        fan = bands(winding.outlook()) if self.ended is None else []
+        for curve in self.query(Curve):
+            if curve.display:
+                curve.show(card.scale, self.trail.points, fan)
+        self.query_one(BobbinSection).show(self.coil.growth, Filled(snapshot.turns, snapshot.guide_mm))
+        facts = winding.facts(self._facts)
+        if facts:
+            self._facts += len(facts)
+            cpt = self.coil.counts_per_turn
+            self._lines += [(when(fact), words) for fact in facts if (words := tell(fact, cpt)) is not None]
+            del self._lines[:-50]
+            self.query_one(News).show(self._lines)
+
+    # ------------------------------------------------------------ the end
+
+    @work(thread=True, exclusive=True, group="finish")
+    def finish(self) -> None:
+        """Complete the record."""
+        try:
+            outcome = self.session.finish()
+        except WindctlError as error:
+            self.app.call_from_thread(self.unfinished, str(error))
+        else:
+            if outcome is not None:
+                self.app.call_from_thread(self.finished, outcome)
+
+    def unfinished(self, words: str) -> None:
+        """The record could not be completed."""
+        alarm = self.query_one("#alarm", Static)
+        alarm.update(f"The record is not complete: {words}")
+        alarm.set_class(True, "-there")
+
+    def finished(self, outcome: Outcome) -> None:
+        """Say how it went; Enter shows the record."""
+        self.draw()
+        if outcome.left == "turn wanted":
+            self.dismiss_with(outcome.number)
+            return
+        self.outcome = outcome
+        look, words = outcome_words(outcome, self.coil.truth)
+        coming = Next(look.word, "", "Enter shows the record, N the next one, the same")
+        if outcome.left in ("held", "failed", "unconfirmed"):
+            coming = Next("the coil stays open", "", "Enter goes back; R there goes on with it")
+        self.query_one(StateBand).show(look_of("ended" if outcome.error is None else "failed"), coming)
+        verdict = self.query_one("#verdict", Static)
+        verdict.update(f"{look.glyph} {words}")
+        verdict.styles.color = self.app.theme_variables.get(f"wc-{look.role}", "")
+        verdict.set_class(True, "-there")
+        self.app.bell()
+
+    def dismiss_with(self, number: str) -> None:
+        """Back to the recipes, which ask for the turn."""
+        self.app.pop_screen()
+        ask = getattr(self.app.screen, "_turn_wanted", None)
+        if ask is not None:
+            ask(number)
+
+    def action_done(self) -> None:
+        """From the end of a coil to its record."""
+        from windctl.tui.screens.coil import CoilScreen
+
+        if self.outcome is None:
+            return
+        if self.outcome.summary.outcome == "open":
+            self.app.pop_screen()
+        else:
+            self.app.switch_screen(CoilScreen(self.session, self.outcome.number))
+
+    def action_again(self) -> None:
+        """The next one, the same: back to the check list, which shows what is repeated."""
+        from windctl.tui.screens.before import BeforeScreen
+
+        if self.outcome is not None and self.preview is not None:
+            card = self.coil.card
+            self.app.switch_screen(BeforeScreen(self.session, self.preview, card.batch, card.of))
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Keys of a running coil end with it."""
+        running = self.outcome is None
+        if action in ("go", "clear", "end", "note", "leave_open"):
+            return running
+        if action in ("done", "again"):
+            return not running
+        return super().check_action(action, parameters)
+
+    # ------------------------------------------------------------ asking
+
+    def action_go(self) -> None:
+        """Consent to a start, by a typed word."""
+        snapshot = self.coil.winding.look()
+        if snapshot.asks != "go":
+            self.notify("nothing waits for a go", markup=False)
+            return
+        words = CAUTIONS if not snapshot.virtual else "The simulated machine will turn."
+        self.app.push_screen(Word("Go?", words, "go"), self._went)
+
+    def _went(self, line: str | None) -> None:
+        if line is not None:
+            self.coil.winding.request(Go("operator"))
+
+    def action_clear(self) -> None:
+        """Clear a trip, once its cause was looked to."""
+        snapshot = self.coil.winding.look()
+        if snapshot.asks != "clear":
+            self.notify("nothing is tripped", markup=False)
+            return
+        words = f"{snapshot.says}. Look to the cause at the machine first. Nothing turns by clearing."
+        self.app.push_screen(Word("Clear the trip?", words, "clear"), self._cleared)
+
+    def _cleared(self, line: str | None) -> None:
+        if line is not None:
+            self.coil.winding.request(Clear("operator"))
+
+    def action_end(self) -> None:
+        """End the coil where it stands."""
+        turns = self.coil.winding.look().turns
+        words = (
+            f"It is held, and {self.coil.card.number} ends at about turn {turns:.0f}. Its record is sealed; "
+            "it cannot be gone on with. To go on later, leave it open instead (L)."
+        )
+        self.app.push_screen(Confirm("End the coil here?", words), self._end)
+
+    def _end(self, yes: bool | None) -> None:
+        if yes:
+            self.coil.winding.request(End("operator", "ended by the operator"))
+
+    def action_leave_open(self) -> None:
+        """Hold, and leave the coil for later."""
+        words = f"It is held, and {self.coil.card.number} stays open; R among the recipes goes on with it."
+        self.app.push_screen(Confirm("Leave the coil open?", words), self._leave_open)
+
+    def _leave_open(self, yes: bool | None) -> None:
+        if yes:
+            self.session.hold("left open by the operator", leave=True)
+
+    def action_note(self) -> None:
+        """Write something into the record."""
+        self.app.push_screen(Typed("Note", "It goes into this coil's record.", "a line"), self._noted)
+
+    def _noted(self, line: str | None) -> None:
+        if line is not None:
+            self.coil.winding.request(Note("operator", line))
+
+    def action_closer(self) -> None:
+        """On a small screen: the whole curve, or its finish from closer."""
+        whole, closer = self.query_one("#curve", Curve), self.query_one("#closer", Curve)
+        if whole.display and closer.display:
+            return
+        whole.display, closer.display = closer.display, whole.display
+        self.call_after_refresh(self.draw)

@@ -1,0 +1,91 @@
+"""From the command line into the interface and out again, with nothing left turning."""
+
+from __future__ import annotations
+
+import os
+import signal
+import sys
+import threading
+import tomllib
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from types import FrameType
+from typing import Any
+
+from windctl.desk import places
+from windctl.desk.asked import Shared
+from windctl.tui.app import WindctlApp, farewell
+from windctl.tui.session import Session
+
+INTERRUPTED = 130
+_GRACE_S = 3.0  # for the interface to end by itself once the record is complete
+
+
+def start(shared: Shared) -> int:
+    """Run the interface until it is left; the exit code. Raises WindctlError for an unknown machine."""
+    if os.environ.get("NO_COLOR") == "":
+        del os.environ["NO_COLOR"]  # set and empty means not set
+    session = Session(shared)
+    settings = _settings()
+    app = WindctlApp(session, _table(settings, "keys"), light=settings.get("theme") == "light")
+    stopped = threading.Event()
+    with _signals(session, app, stopped):
+        try:
+            code = app.run()
+        finally:
+            run = session.run
+            outcome = session.leave("the interface ended")  # a screen that failed leaves nothing turning
+            words = farewell(run, outcome) or app.farewell
+    if words:
+        sys.stderr.write(f"{words}\n")
+    return INTERRUPTED if stopped.is_set() else code or 0
+
+
+@contextmanager
+def _signals(session: Session, app: WindctlApp, stopped: threading.Event) -> Iterator[None]:
+    """SIGTERM, SIGHUP: hold at once; the rest follows in a thread, since the terminal may be gone."""
+
+    def leave(reason: str) -> None:
+        session.leave(reason)
+        try:
+            app.call_from_thread(app.exit, INTERRUPTED)
+        except RuntimeError:
+            return  # it has ended already
+        finally:
+            done = threading.Timer(_GRACE_S, _end)
+            done.daemon = True
+            done.start()
+
+    def heard(number: int, _frame: FrameType | None) -> None:
+        reason = f"interrupted by {signal.Signals(number).name}"
+        session.hold(reason, leave=True)
+        if not stopped.is_set():
+            stopped.set()
+            threading.Thread(target=leave, args=(reason,), name="windctl-leaving", daemon=True).start()
+
+    names = [name for name in ("SIGTERM", "SIGHUP", "SIGBREAK") if hasattr(signal, name)]
+    before: dict[str, Callable[..., Any] | int | None] = {
+        name: signal.signal(getattr(signal, name), heard) for name in names
+    }
+    try:
+        yield
+    finally:
+        for name, handler in before.items():
+            signal.signal(getattr(signal, name), handler)
+
+
+def _end() -> None:
+    """The record is complete and the spindle stands, and writing to a terminal that is gone may hang."""
+    os._exit(INTERRUPTED)
+
+
+def _settings() -> dict[str, Any]:
+    try:
+        return tomllib.loads(places.settings_file().read_text(encoding="utf-8"))
+    except (OSError, UnicodeDecodeError, tomllib.TOMLDecodeError):
+        return {}  # a file that cannot be read is told of where the machine is looked up in it
+
+
+def _table(settings: dict[str, Any], name: str) -> dict[str, object]:
+    table = settings.get(name)
+    return table if isinstance(table, dict) else {}

@@ -1,0 +1,73 @@
+"""A widget that shows a picture made of cells."""
+
+from __future__ import annotations
+
+from rich.segment import Segment
+from rich.style import Style
+from textual.strip import Strip
+from textual.widget import Widget
+
+from windctl.tui.pictures.cells import Cell, Ink, Picture
+from windctl.tui.theme import colour_of
+
+
+class Drawing(Widget):
+    """Places cells and gives their inks the theme's colours. What is drawn comes from `drawn`."""
+
+    can_focus = False
+
+    def __init__(self, *, id: str | None = None, classes: str | None = None) -> None:
+        super().__init__(id=id, classes=classes)
+        self._picture: Picture = []
+        self._styles: dict[tuple[Ink, Ink], Style] = {}
+
+    def drawn(self, width: int, height: int) -> Picture:
+        """The picture at this size."""
+        raise NotImplementedError
+
+    def redraw(self) -> None:
+        """Make the picture anew; the screen is told only if it differs."""
+        width, height = self.size.width, self.size.height
+        picture = self.drawn(width, height) if width > 0 and height > 0 else []
+        if picture != self._picture:
+            self._picture = picture
+            self.refresh()
+
+    def on_resize(self) -> None:
+        """Another size, another picture."""
+        self.redraw()
+
+    def notify_style_update(self) -> None:
+        """Another theme, other colours."""
+        self._styles = {}
+        super().notify_style_update()
+
+    def render_line(self, y: int) -> Strip:
+        """One row."""
+        width = self.size.width
+        if y >= len(self._picture):
+            return Strip.blank(width, self.rich_style)
+        segments = []
+        text, last = "", None
+        for cell in self._picture[y][:width]:
+            ink = (cell.ink, cell.paper)
+            if ink != last and text and last is not None:
+                segments.append(Segment(text, self._style(last)))
+                text = ""
+            text, last = text + cell.char, ink
+        if text and last is not None:
+            segments.append(Segment(text, self._style(last)))
+        return Strip(segments).adjust_cell_length(width, self.rich_style)
+
+    def _style(self, inks: tuple[Ink, Ink]) -> Style:
+        style = self._styles.get(inks)
+        if style is None:
+            variables = self.app.theme_variables
+            ink, paper = (colour_of(one, variables) for one in inks)
+            style = self._styles[inks] = self.rich_style + Style(color=ink, bgcolor=paper)
+        return style
+
+
+def row_of(text: str, ink: Ink, paper: Ink, width: int) -> list[Cell]:
+    """A row of `width` cells that begins with `text`."""
+    return [Cell(char, ink, paper) for char in text[:width].ljust(width)]
