@@ -124,7 +124,7 @@ def sampled(plan: Plan, n: int = 40_000) -> np.ndarray:
     """Resistances of coils drawn from the beliefs behind a plan: wire, core, build and crown apart."""
     rng = np.random.default_rng(7)
     rho = 5.4716 * (1 + math.hypot(0.04, 0.002) * rng.normal(size=n))
-    core = plan.perimeter_mm * (1 + 0.004 * rng.normal(size=n))
+    core = plan.perimeter_mm * (1 + 0.005 * rng.normal(size=n))
     crown = 0.01 + 0.6 * (plan.crown - 1) / plan.crown
     build = math.hypot(2 * 0.001 / 0.072, 0.05 / 0.846027, crown)
     added = math.pi * plan.build_mm * plan.crown * (1 + build * rng.normal(size=n))
@@ -146,8 +146,9 @@ def test_the_prior_says_the_same_as_the_plan() -> None:
     how = np.array([n, n**2 / 2])
     assert math.sqrt(how @ spread @ how) == pytest.approx(plan.dcr_sd_ohm)
     assert np.linalg.eigvalsh(spread / np.sqrt(np.outer(spread.diagonal(), spread.diagonal()))).min() > 0
-    # ohm per metre is common to both: what they share is its variance
-    assert prior.cov / (prior.ohm_per_turn * prior.growth) == pytest.approx(0.04**2 + 0.002**2)
+    # ohm per metre is common to both: what they share is its variance, and a little that it wanders to the
+    # coil's middle
+    assert prior.cov / (prior.ohm_per_turn * prior.growth) == pytest.approx(0.04**2 + 0.002**2, rel=2e-3)
 
 
 def test_the_prior_allows_for_another_spool_unless_the_recipe_knows_better() -> None:
@@ -156,7 +157,7 @@ def test_the_prior_allows_for_another_spool_unless_the_recipe_knows_better() -> 
     assert math.sqrt(prior.var_ohm_per_turn) / prior.ohm_per_turn > 0.04
     known = make_plan(recipe(wire__ohm_per_m_sd="0.02"), VIRTUAL).prior
     assert math.sqrt(known.var_ohm_per_turn) / known.ohm_per_turn == pytest.approx(
-        math.hypot(0.02 / 5.4716, 0.002, 0.004)
+        math.hypot(0.02 / 5.4716, 0.002, 0.005), rel=0.03
     )
 
 

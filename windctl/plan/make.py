@@ -16,10 +16,14 @@ from windctl.lay.make import make_program
 from windctl.lay.program import Program
 from windctl.lay.ribbons import ribbon
 from windctl.material.wire import Wire
-from windctl.plan.beliefs import Beliefs, beliefs_of, prior_of, resistance_sd_ohm
+from windctl.plan.beliefs import Beliefs, Believed, basis_of, beliefs_of
 from windctl.plan.board_setup import board_setup
 from windctl.plan.cautions import Outlook, cautions
-from windctl.plan.model import Plan, TargetKind
+from windctl.plan.experience.lesson import Lesson
+from windctl.plan.experience.outlook import outlook
+from windctl.plan.experience.supply import UNKNOWN, Supply
+from windctl.plan.experience.unknowns import meter_rel
+from windctl.plan.model import Learnt, Plan, TargetKind
 from windctl.plan.speeds import accel_rpm_per_s, duration_s, pace_spec
 from windctl.profile.model import MachineProfile
 from windctl.recipe.model import Recipe
@@ -32,63 +36,86 @@ _ENOUGH_SD = 3.0  # a program for a resistance that has no max_turns covers so m
 
 
 @dataclass(frozen=True, slots=True)
-class _Basis:
+class _Given:
     """What does not depend on the target."""
 
     recipe: Recipe
     profile: MachineProfile
+    supply: Supply
     wire: Wire
     core: Core
     beliefs: Beliefs
 
-    def coil(self, crown: float = 1.0) -> BuildUp:
+    def believed(self, turns: float, crown: float = 1.0) -> Believed:
+        """A coil of so many turns, laid with this crown: what the tables say, corrected by experience."""
+        readings = self.profile.readings
         gap = self.recipe.bobbin.flange_gap_mm
         per_turn = build_per_turn_mm(self.wire.overall_mm, self.beliefs.packing, gap)
-        return BuildUp(self.core.perimeter_mm, per_turn, crown)
+        nominal = BuildUp(self.core.perimeter_mm, per_turn, crown)
+        basis = basis_of(self.recipe, self.wire, self.core, self.beliefs, nominal)
+        common = meter_rel(readings.gain_sd_pct / 100, readings.celsius_sd, readings.coil_over_air_sd_k)
+        ahead = Lesson("", self.profile.bench, self.supply.id, basis, turns, common, ())
+        return Believed(basis, outlook(self.supply.experience, ahead))
+
+    def coil(self, turns: float, crown: float = 1.0) -> BuildUp:
+        return self.believed(turns, crown).coil
 
     def deposited(self, program: Program, turns: float) -> Deposit:
         """The first `turns` turns of the program on the bobbin, the wire trailing its guide. A scatter slides
         off its edges; the turns of an even lay hold each other where they were laid."""
         gap = self.recipe.bobbin.flange_gap_mm
+        coil = self.coil(turns)
         laid = deposit(
             program,
             gap_mm=gap,
             datum_mm=self.recipe.lay.margin_mm,
             overall_mm=self.wire.overall_mm,
-            lag_turns=self.profile.guide.distance_mm / self.coil().mean_turn_mm(turns),
+            lag_turns=self.profile.guide.distance_mm / coil.mean_turn_mm(turns),
             turns=turns,
         )
         if self.recipe.lay.style == "even":
             return laid
-        return laid.settled(self.coil().build_mm(turns), gap)
+        return laid.settled(coil.build_mm(turns), gap)
 
 
 def make_plan(
-    recipe: Recipe, profile: MachineProfile, *, turns: int | None = None, dcr_ohm: float | None = None
+    recipe: Recipe,
+    profile: MachineProfile,
+    *,
+    turns: int | None = None,
+    dcr_ohm: float | None = None,
+    supply: Supply = UNKNOWN,
 ) -> Plan:
     """The plan for the recipe's target, or for `turns` or `dcr_ohm` (at 20 degrees C) instead of it.
 
+    `supply`: the spool that the wire comes from and what the shop's coils have taught.
+
     The program covers stop.turns or stop.max_turns, so that a better forecast never changes it; with
     `turns` it covers those, with `dcr_ohm` and no stop.max_turns what the resistance may take at most.
-    Raises UsageError for both targets or an impossible one, PlanRefused for what the machine cannot do.
+    Raises UsageError for both targets, an impossible one or another wire than the spool's, PlanRefused for
+    what the machine cannot do.
     """
     kind, value = _target(recipe, turns, dcr_ohm)
-    wire = recipe.wire_data()
-    basis = _Basis(recipe, profile, wire, core_of(recipe.bobbin), beliefs_of(recipe, wire))
-    covered = _program_turns(basis, kind, value)
+    wire = supply.wire_for(recipe)
+    beliefs = beliefs_of(recipe, wire, spool_known=supply.spool is not None)
+    given = _Given(recipe, profile, supply, wire, core_of(recipe.bobbin), beliefs)
+    covered = _program_turns(given, kind, value)
     program = make_program(recipe, profile, turns=covered)
     checked = check(program, recipe, profile)
     board_setup(recipe, profile, program, 0)  # refuses what no board takes
     lay = program if profile.guide.kind == "step" else _lay_by_hand(recipe, profile, covered)
-    planned, wanted, laid = _solve(basis, lay, kind, value)
+    planned, wanted, laid = _solve(given, lay, kind, value)
 
-    coil = basis.coil(laid.crown)
-    sd = resistance_sd_ohm(basis.beliefs, coil, planned)
+    believed = given.believed(planned, laid.crown)
+    coil, ohm_per_m, known = believed.coil, believed.ohm_per_m, believed.outlook
+    sd = believed.resistance_sd_ohm(planned)
+    packing = beliefs.packing * math.exp(known.packing.mean)
     length = coil.wire_length_m(planned)
     build = coil.build_mm(planned)
-    fit = judge_fit(basis.core, build * laid.peak, basis.beliefs.build_rel, recipe.bobbin.flange_depth_mm)
-    bare = wire_speed(basis.core, recipe.spindle.cruise_rpm)
-    full = wire_speed(basis.core.grown(build), recipe.spindle.cruise_rpm)
+    build_rel = given.believed(planned).build_rel  # a crown that slides makes no higher peak
+    fit = judge_fit(given.core, build * laid.peak, build_rel, recipe.bobbin.flange_depth_mm)
+    bare = wire_speed(given.core, recipe.spindle.cruise_rpm)
+    full = wire_speed(given.core.grown(build), recipe.spindle.cruise_rpm)
     spindle = profile.spindle
     return Plan(
         recipe_name=recipe.name,
@@ -96,17 +123,17 @@ def make_plan(
         target_kind=kind,
         target_value=value,
         turns=planned,
-        turns_sd=sd / (wire.ohm_per_m * coil.metres_per_turn(planned)) if kind == "dcr_20c_ohm" else 0.0,
-        dcr_20c_ohm=resistance_ohm(length, wire.ohm_per_m),
+        turns_sd=sd / (ohm_per_m * coil.metres_per_turn(planned)) if kind == "dcr_20c_ohm" else 0.0,
+        dcr_20c_ohm=resistance_ohm(length, ohm_per_m),
         dcr_sd_ohm=sd,
-        ohm_per_m=wire.ohm_per_m,
+        ohm_per_m=ohm_per_m,
         wire_length_m=length,
         wire_mass_g=length * wire.mass_g_per_m,
-        perimeter_mm=basis.core.perimeter_mm,
+        perimeter_mm=coil.perimeter_mm,
         mean_turn_mm=coil.mean_turn_mm(planned),
         overall_mm=wire.overall_mm,
-        packing=basis.beliefs.packing,
-        packing_sd=basis.beliefs.packing_sd,
+        packing=packing,
+        packing_sd=min(beliefs.packing_sd, packing * known.packing.sd),  # the latter has the crown in it
         build_mm=build,
         peak_build_mm=build * laid.peak,
         side_build_mm=fit.side_build_mm,
@@ -122,7 +149,9 @@ def make_plan(
         wire_speed_peak_full_m_s=full.peak_m_s,
         checked=checked,
         warnings=cautions(recipe, profile, wire, Outlook(planned, wanted, fit, full, ribbon(program))),
-        prior=prior_of(basis.beliefs, coil, float(planned), profile.readings),
+        prior=believed.prior(float(planned), profile.readings),
+        basis=believed.basis,
+        learnt=Learnt(supply.id, known.spool_coils, known.lay_coils),
         pace=pace_spec(recipe, profile),
         program=program,
     )
@@ -145,16 +174,17 @@ def _target(recipe: Recipe, turns: int | None, dcr_ohm: float | None) -> tuple[T
     return "dcr_20c_ohm", recipe.stop.dcr_20c_ohm
 
 
-def _program_turns(basis: _Basis, kind: TargetKind, value: float) -> int:
+def _program_turns(given: _Given, kind: TargetKind, value: float) -> int:
     """How many turns the program covers."""
     if kind == "turns":
         return int(value)
-    if basis.recipe.stop.max_turns is not None:
-        return basis.recipe.stop.max_turns
-    coil = basis.coil()
-    turns = coil.turns_for_length(value / basis.wire.ohm_per_m)
-    sd = resistance_sd_ohm(basis.beliefs, coil, turns)
-    most = math.ceil(turns + _ENOUGH_SD * sd / (basis.wire.ohm_per_m * coil.metres_per_turn(turns)))
+    if given.recipe.stop.max_turns is not None:
+        return given.recipe.stop.max_turns
+    believed = _believed_for(given, value)
+    coil = believed.coil
+    turns = coil.turns_for_length(value / believed.ohm_per_m)
+    sd = believed.resistance_sd_ohm(turns)
+    most = math.ceil(turns + _ENOUGH_SD * sd / (believed.ohm_per_m * coil.metres_per_turn(turns)))
     if most > MOST_TURNS:
         raise PlanRefused(
             f"{value:g} ohm of this wire may take {most} turns; a coil has at most {MOST_TURNS} turns"
@@ -162,25 +192,32 @@ def _program_turns(basis: _Basis, kind: TargetKind, value: float) -> int:
     return most
 
 
-def _solve(basis: _Basis, lay: Program, kind: TargetKind, value: float) -> tuple[int, float, Deposit]:
+def _solve(given: _Given, lay: Program, kind: TargetKind, value: float) -> tuple[int, float, Deposit]:
     """(planned turns, turns that the target asks for, their deposit). The crown depends a little on the
     turns, so turns for a resistance are found by turns, crown, turns again."""
     if kind == "turns":
-        return int(value), value, basis.deposited(lay, value)
-    stop = basis.recipe.stop
+        return int(value), value, given.deposited(lay, value)
+    stop = given.recipe.stop
     least, most = stop.min_turns or 1, stop.max_turns or int(lay.turns)
     crown, wanted, planned = 1.0, 0.0, 0
     laid = None
     for _ in range(_ROUNDS):
-        wanted = basis.coil(crown).turns_for_length(value / basis.wire.ohm_per_m)
+        believed = _believed_for(given, value, crown)
+        wanted = believed.coil.turns_for_length(value / believed.ohm_per_m)
         nearest = min(max(round(wanted), least), most)
         if laid is not None and nearest == planned:
             break
         planned = nearest
-        laid = basis.deposited(lay, planned)
+        laid = given.deposited(lay, planned)
         crown = laid.crown
     assert laid is not None  # the first round makes one
     return planned, wanted, laid
+
+
+def _believed_for(given: _Given, ohm: float, crown: float = 1.0) -> Believed:
+    """A coil of this resistance: about as many turns decide how much of the spool it takes."""
+    nominal = given.believed(1.0, crown).basis
+    return given.believed(nominal.coil.turns_for_length(ohm / nominal.ohm_per_m), crown)
 
 
 def _lay_by_hand(recipe: Recipe, profile: MachineProfile, turns: int) -> Program:

@@ -7,11 +7,21 @@ from typing import Any, Literal
 
 from windctl.lay.limits import Checked
 from windctl.lay.program import Program
+from windctl.plan.experience.basis import Basis
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
 
 Fits = Literal["yes", "tight", "no"]
 TargetKind = Literal["turns", "dcr_20c_ohm"]
+
+
+@dataclass(frozen=True, slots=True)
+class Learnt:
+    """From how many coils the plan knows: of its spool ("" where none is named), and of its lay."""
+
+    spool: str
+    spool_coils: int
+    lay_coils: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,6 +58,8 @@ class Plan:
     checked: Checked  # what the program asks of the machine
     warnings: tuple[str, ...]
     prior: Prior
+    basis: Basis  # what the finished coil is compared with, to learn from it
+    learnt: Learnt
     pace: PaceSpec
     program: Program
 
@@ -86,5 +98,7 @@ class Plan:
                 "turns": self.program.turns,
             },
             "guide_mm_per_s": self.checked.guide_mm_per_s,
+            "spool": self.learnt.spool or None,
+            "learnt_from": {"spool_coils": self.learnt.spool_coils, "lay_coils": self.learnt.lay_coils},
             "warnings": list(self.warnings),
         }

@@ -115,9 +115,9 @@ def basis(ohm_per_m_rel: float = 0.04) -> Basis:
         ohm_per_m=OHM_PER_M * 1.004, ohm_per_m_rel=ohm_per_m_rel, bare_mm=0.0633,
         overall_mm=overall, overall_rel=(OVERALL_MM[1] - OVERALL_MM[0]) / 4.0 / overall,
         mass_g_per_m=8.89 / 58.0 / OHM_PER_M + 1.2 * (pi / 4.0 * overall**2 - 1.0 / 58.0 / OHM_PER_M),
-        perimeter_mm=1000.0 * CORE_M, perimeter_rel=0.004,
+        perimeter_mm=1000.0 * CORE_M, perimeter_rel=0.003, mould_rel=0.004,
         build_per_turn_mm=build_per_turn_mm(overall, packing, GAP_MM), crown=crown,
-        growth_rel=sqrt((0.06 / packing) ** 2 + 0.035**2),
+        growth_rel=0.06 / packing, bed_rel=0.035,
     )  # fmt: skip
 
 

@@ -17,8 +17,9 @@ class Basis:
     """Nominal figures of one coil, and how surely each is known. Recorded with the coil, so its names stay.
 
     `bobbin` and `lay` are keys: coils with the same one share that unknown. `style` is the same for the kind
-    of lay, empty where the recipe states its packing. Relative standard deviations end in `_rel`; resistances
-    are at 20 degrees C.
+    of lay, empty where the recipe states its packing. Relative standard deviations end in `_rel`: those of
+    perimeter and growth are what coils of a kind have in common, `mould_rel` and `bed_rel` how one of them
+    differs from the next besides. Resistances are at 20 degrees C.
     """
 
     bobbin: str
@@ -32,10 +33,12 @@ class Basis:
     overall_rel: float
     mass_g_per_m: float
     perimeter_mm: float
-    perimeter_rel: float  # of this kind of bobbin; one from the next differs besides
+    perimeter_rel: float
+    mould_rel: float
     build_per_turn_mm: float
     crown: float
     growth_rel: float  # packing and crown; the wire's thickness comes besides
+    bed_rel: float
 
     @property
     def coil(self) -> BuildUp:

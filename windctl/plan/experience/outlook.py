@@ -17,9 +17,9 @@ class Outlook:
 
     `wire`: ohm per metre; `core`: perimeter; `growth`: build per turn times crown. `var_flat` is the variance
     of ohm per turn at the core, `var_grown` that of what each turn has more than the one before, `cov` is
-    between the two, `var_growth` is of `growth` alone. `packing`: how much more densely the lay packs than was
-    believed, the wire's thickness left out. `meter_cov`: of ohm per metre with the meter's error, since what
-    was learnt was learnt by this meter.
+    between the two, `var_growth` is of `growth` alone. `packing`: how much more densely the lay packs than
+    was believed, the wire's thickness left out. `meter_cov`: of ohm per turn with the meter's error, since
+    what was learnt was learnt by this meter.
     """
 
     wire: float

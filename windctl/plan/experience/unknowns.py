@@ -33,8 +33,6 @@ from windctl.plan.experience.lesson import Build, Lesson, Mass, Measured, Resist
 WALK_PER_ROOT_KM = 0.0015  # ohm per metre along a spool, wandering
 SLOPE_PER_KM = 0.0018  # and sloping: up to 0.003 either way
 COIL_REL = 0.002  # stretch and whatever else scales all of one coil's resistance
-MOULD_REL = 0.004  # one core's perimeter from the next of its kind
-BED_REL = 0.035  # build per turn of one coil from the next of the same lay
 METAL_REL = 0.004
 JAWS_REL = 0.06
 TREND_SD = 0.02  # of the share that the curve shows: the packing loosens, the wire changes along the coil
@@ -44,7 +42,7 @@ STYLE_SHARE = 0.5  # part of the packing's variance that a shop's coils of one s
 COIL: Name = ("coil", "")
 MOULD: Name = ("mould", "")
 BED: Name = ("bed", "")
-OWN = {COIL: COIL_REL, MOULD: MOULD_REL, BED: BED_REL}
+OWN = (COIL, MOULD, BED)
 
 
 @dataclass(frozen=True, slots=True)
@@ -94,9 +92,8 @@ def with_unknowns(belief: Gaussian, basis: Basis, spool: str, bench: str, meter_
         belief = belief.having(("style", basis.style), sqrt(shared) * basis.growth_rel)
     belief = belief.having(("lay", basis.lay), sqrt(1.0 - shared) * basis.growth_rel)
     belief = belief.having(("jaws", basis.lay), JAWS_REL).having(("meter", bench), meter_rel)
-    for name, sd in OWN.items():
-        belief = belief.having(name, sd)
-    return belief
+    belief = belief.having(COIL, COIL_REL).having(MOULD, basis.mould_rel)
+    return belief.having(BED, basis.bed_rel)
 
 
 def along_the_spool(belief: Gaussian, spool: str, metres: float) -> Gaussian:
