@@ -67,6 +67,14 @@ void windctl_check(struct windctl_core *core);
 /* Take one byte from the host. */
 void windctl_hear(struct windctl_core *core, uint8_t byte);
 
+/* Put a frame into the tick's output. What does not fit is dropped whole. */
+void windctl_send(struct windctl_core *core, uint8_t sequence, uint8_t code, const uint8_t *body, uint8_t size);
+
+/* The same for what is no answer, under a sequence of its own. */
+void windctl_tell(struct windctl_core *core, uint8_t code, const uint8_t *body, uint8_t size);
+
+/* ---- windctl_reports.c: what the board says of itself */
+
 /* Say that something happened. */
 void windctl_notice(struct windctl_core *core, uint8_t kind, int32_t a, int32_t b);
 
@@ -75,6 +83,9 @@ void windctl_tell_status(struct windctl_core *core, int16_t celsius_centi);
 
 /* Say the reading that has just been completed. */
 void windctl_tell_reading(struct windctl_core *core, int16_t celsius_centi);
+
+/* Answer a Greet. */
+void windctl_send_identity(struct windctl_core *core, uint8_t sequence, uint32_t nonce);
 
 /* ---- windctl_commands.c */
 

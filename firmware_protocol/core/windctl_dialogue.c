@@ -3,8 +3,7 @@
 WINDCTL_ASSERT(answers_fit, WINDCTL_ACCEPTED_SIZE <= WINDCTL_REFUSED_SIZE);
 WINDCTL_ASSERT(a_tick_fits_a_byte, WINDCTL_SENT_MAX <= 255);
 
-/* Put a frame into the tick's output. What does not fit is dropped whole. */
-static void send(struct windctl_core *core, uint8_t sequence, uint8_t code, const uint8_t *body, uint8_t size)
+void windctl_send(struct windctl_core *core, uint8_t sequence, uint8_t code, const uint8_t *body, uint8_t size)
 {
     struct windctl_outputs *out = core->outputs;
     uint8_t bytes = WINDCTL_FRAME_BYTES(size);
@@ -17,95 +16,10 @@ static void send(struct windctl_core *core, uint8_t sequence, uint8_t code, cons
     out->sent_end = windctl_write(out->sent, out->sent_end, code, sequence, body, size);
 }
 
-static void tell(struct windctl_core *core, uint8_t code, const uint8_t *body, uint8_t size)
+void windctl_tell(struct windctl_core *core, uint8_t code, const uint8_t *body, uint8_t size)
 {
     core->dialogue.unasked++;
-    send(core, core->dialogue.unasked, code, body, size);
-}
-
-void windctl_notice(struct windctl_core *core, uint8_t kind, int32_t a, int32_t b)
-{
-    uint8_t body[WINDCTL_NOTICE_SIZE];
-    struct windctl_notice notice;
-
-    notice.ticks = core->ticks;
-    notice.kind = kind;
-    notice.a = a;
-    notice.b = b;
-    windctl_encode_notice(&notice, body);
-    tell(core, WINDCTL_NOTICE_CODE, body, sizeof body);
-}
-
-void windctl_tell_status(struct windctl_core *core, int16_t celsius_centi)
-{
-    uint8_t body[WINDCTL_STATUS_SIZE];
-    struct windctl_status status;
-
-    status.ticks = core->ticks;
-    status.boot = core->boot;
-    status.epoch = core->epoch;
-    status.state = core->state;
-    status.cause = core->cause;
-    status.trip = core->trip;
-    status.trust = core->trust;
-    status.inputs = (uint8_t)(core->pins | (core->standing ? WINDCTL_INPUT_BIT_STANDING : 0));
-    status.count = core->count;
-    status.guide = core->guide;
-    status.stop_point = core->stop_point;
-    status.next = core->line.next;
-    status.executing = core->line.executing;
-    status.program_crc = core->line.crc;
-    status.speed = core->setup.fitted & WINDCTL_CAPABILITY_DRIVE_STEP ? core->spindle.v : core->speed;
-    status.tension = core->turns.tension;
-    status.celsius = celsius_centi;
-    status.bad_frames = core->dialogue.reader.bad;
-    windctl_encode_status(&status, body);
-    tell(core, WINDCTL_STATUS_CODE, body, sizeof body);
-}
-
-void windctl_tell_reading(struct windctl_core *core, int16_t celsius_centi)
-{
-    uint8_t body[WINDCTL_READING_SIZE];
-    struct windctl_reading reading;
-
-    reading.ticks = core->ticks;
-    reading.count = core->mean.middle;
-    reading.value = windctl_mean_value(&core->mean);
-    reading.window = core->mean.window_ticks;
-    reading.celsius = celsius_centi;
-    reading.flags = (uint8_t)((core->mean.turned ? WINDCTL_READING_FLAG_TURNING : 0) |
-                              (core->mean.open ? WINDCTL_READING_FLAG_OPEN : 0));
-    windctl_encode_reading(&reading, body);
-    tell(core, WINDCTL_READING_CODE, body, sizeof body);
-}
-
-static void send_identity(struct windctl_core *core, uint8_t sequence, uint32_t nonce)
-{
-    uint8_t body[WINDCTL_IDENTITY_SIZE];
-    struct windctl_identity identity;
-
-    identity.nonce = nonce;
-    identity.schema = WINDCTL_SCHEMA;
-    identity.boot = core->boot;
-    identity.epoch = core->epoch;
-    identity.state = core->state;
-    identity.trip = core->trip;
-    identity.trust = core->trust;
-    identity.capabilities = core->config.capabilities;
-    identity.queue = WINDCTL_QUEUE;
-    identity.coil_token = core->setup.coil_token;
-    identity.setup_crc = core->setup_crc;
-    identity.program = core->line.program;
-    identity.base = core->line.base;
-    identity.next = core->line.next;
-    identity.executing = core->line.executing;
-    identity.program_crc = core->line.crc;
-    identity.count = core->count;
-    identity.guide = core->guide;
-    identity.contact_scale = core->config.contact_scale;
-    identity.tension_scale = core->config.tension_scale;
-    windctl_encode_identity(&identity, body);
-    send(core, sequence, WINDCTL_IDENTITY_CODE, body, sizeof body);
+    windctl_send(core, core->dialogue.unasked, code, body, size);
 }
 
 static void greet(struct windctl_core *core, uint8_t sequence, const uint8_t *body)
@@ -121,7 +35,7 @@ static void greet(struct windctl_core *core, uint8_t sequence, const uint8_t *bo
         dialogue->sequence = sequence;
         dialogue->heard = 0;
     }
-    send_identity(core, sequence, greet.nonce);
+    windctl_send_identity(core, sequence, greet.nonce);
 }
 
 static void encode_refused(const struct windctl_core *core, uint8_t code, uint8_t why, int32_t limit, uint8_t *body)
@@ -141,14 +55,14 @@ static void refuse(struct windctl_core *core, uint8_t sequence, uint8_t code, ui
     uint8_t body[WINDCTL_REFUSED_SIZE];
 
     encode_refused(core, code, why, limit, body);
-    send(core, sequence, WINDCTL_REFUSED_CODE, body, sizeof body);
+    windctl_send(core, sequence, WINDCTL_REFUSED_CODE, body, sizeof body);
 }
 
 static void answer(struct windctl_core *core)
 {
     const struct windctl_dialogue *dialogue = &core->dialogue;
 
-    send(core, dialogue->sequence, dialogue->answer_code, dialogue->answer, dialogue->answer_size);
+    windctl_send(core, dialogue->sequence, dialogue->answer_code, dialogue->answer, dialogue->answer_size);
 }
 
 static void numbered(struct windctl_core *core, uint8_t code, uint8_t sequence, const uint8_t *body)

@@ -141,11 +141,9 @@ static uint16_t change(struct windctl_spindle *spindle, uint16_t rate)
 static uint16_t slower(struct windctl_spindle *spindle, uint16_t v, uint16_t least)
 {
     uint16_t by = change(spindle, spindle->decel);
+    uint16_t most = v > least ? (uint16_t)(v - least) : 0;
 
-    if (v <= least) {
-        return v;
-    }
-    return v - least > by ? (uint16_t)(v - by) : least;
+    return (uint16_t)(v - (by < most ? by : most));
 }
 
 static uint16_t faster(struct windctl_spindle *spindle, uint16_t v, uint32_t bound)

@@ -71,7 +71,7 @@ def wild_ticks(seed: int, ticks: int, trace: Trace, reached: Reached, queue: int
     while trace.ticks < end:
         rng = random.Random(seed)
         seed += 1
-        _episode(rng, min(rng.choice((500, 4000, 12_000)), max(500, end - trace.ticks)), trace, reached, queue)
+        _episode(rng, rng.choice((500, 2000, 6000)), trace, reached, queue)
 
 
 def _episode(rng: random.Random, ticks: int, trace: Trace, reached: Reached, queue: int) -> None:
@@ -86,11 +86,11 @@ def _episode(rng: random.Random, ticks: int, trace: Trace, reached: Reached, que
     )
     if rng.random() < 0.3:
         board.age(0xFFFFFFFF - rng.randrange(ticks), 0xFFFF - rng.randrange(8))
-    plant = WildPlant(rng, faults=rng.choice((0, 20, 100)))
-    host = WildHost(rng, board, plant, hostility=rng.choice((0.0, 0.02, 0.3)))
+    plant = WildPlant(rng, faults=rng.choice((0, 30, 300)))
+    host = WildHost(rng, board, plant)
     inputs, outputs = Inputs(), Outputs()
     reboot_at = rng.randrange(10 * ticks)
-    break_at = rng.randrange(20 * ticks)
+    break_at = rng.randrange(10 * ticks)
     for at in range(ticks):
         if at == reboot_at:
             board.reboot()

@@ -22,13 +22,16 @@ EDGES = (0, 1, 0x7F, 0x80, 0xFF, 0x7FFF, 0x8000, 0xFFFF, 0x40000000, 0x7FFFFFFF,
 
 
 class WildHost:
-    """Bytes for a board, a tick at a time. `hostility`: share of what it says that is meant to harm."""
+    """Bytes for a board, a tick at a time, from a host of a temper drawn for it."""
 
-    def __init__(self, rng: random.Random, board: Board, plant: WildPlant, hostility: float) -> None:
+    def __init__(self, rng: random.Random, board: Board, plant: WildPlant) -> None:
         self._rng = rng
         self._board = board
         self._plant = plant
-        self._hostility = hostility
+        self._hostility = rng.choice((0.0, 0.02, 0.2))  # share of what it says that is meant to harm
+        self._untimely = rng.choice((0.02, 0.02, 0.2))  # share of commands at any time
+        self._fickle = rng.choice((0.1, 0.1, 0.5))  # share of moving the guide, measuring, disarming, before Go
+        self._dumb = rng.choice((0.001, 0.001, 0.05))  # share of falling silent
         self._wire = bytearray()
         self._speed = rng.choice((3, 11, 11, 60, 1000))  # bytes a tick
         self._wait = 0
@@ -48,7 +51,7 @@ class WildHost:
             self._wire += encode(m.Beat.CODE, 0, b"")
         self._wait -= 1
         if self._wait <= 0 and not self._wire:
-            self._wait = self._rng.choice((1, 1, 5, 20, 60, 200))
+            self._wait = self._rng.choice((1, 1, 1, 5, 20, 60))
             self._act()
         piece = bytes(self._wire[: self._speed])
         del self._wire[: self._speed]
@@ -61,10 +64,10 @@ class WildHost:
         draw = rng.random()
         if draw < self._hostility:
             self._harm()
-        elif draw < self._hostility + 0.04:
+        elif board.dialogue.greeted and draw < self._hostility + self._untimely:
             self._say(self._any_command())
-        elif rng.random() < 0.002:
-            self._silent = 2500
+        elif rng.random() < self._dumb:
+            self._silent = 3000
         elif not board.dialogue.greeted:
             self._greet()
         else:
@@ -76,13 +79,14 @@ class WildHost:
             return
         if state == State.DRIVES_OFF:
             if board.setup is None or rng.random() < 0.05:
-                self._setup = self._draw_setup()
+                if rng.random() < 0.9:
+                    self._setup = self._draw_setup()
                 self._say(self._setup)
             elif board.trust != 3 or rng.random() < 0.05:
                 self._say(self._datum())
             elif rng.random() < 0.05:
                 self._plant.turn_by_hand(rng.randrange(-40, 80), rng.randrange(1, 400))
-            elif self._guided and rng.random() < 0.6:
+            elif self._hungry and rng.random() < 0.6:
                 self._say(self._lay())
             else:
                 self._say(rng.choice((self._measure, self._arm, self._arm, self._arm))())
@@ -96,18 +100,19 @@ class WildHost:
             self._say(m.ClearTrip(*self._consent()))
 
     def _prepare_to_go(self, rng: random.Random, board: Board) -> None:
-        if board.away:
-            self._say(
-                self._guide_to(board.guide - board.away) if rng.random() < 0.7 else self._datum()
-            )
+        if board.away and rng.random() < 0.9:
+            self._say(self._guide_to(board.guide - board.away) if rng.random() < 0.7 else self._datum())
         elif board.spindle.pace == 0 or rng.random() < 0.15:
             self._say(self._pace())
-        elif self._guided and rng.random() < 0.5:
+        elif board.target() <= board.count and rng.random() < 0.8:
+            further = (self._datum, self._stop_at, self._lay) if self._guided else (self._datum, self._stop_at)
+            self._say(rng.choice(further)())
+        elif self._hungry and rng.random() < 0.5:
             self._say(self._lay())
-        elif rng.random() < 0.3:
+        elif rng.random() < 0.2:
             self._say(self._stop_at())
-        elif rng.random() < 0.1:
-            other = (self._disarm, self._datum, self._guide_to, self._measure)
+        elif rng.random() < self._fickle:
+            other = (self._disarm, self._datum, self._guide_to, self._guide_to, self._measure)
             self._say(rng.choice(other)())
         elif board.fitted & Capability.PEDAL and not board.pedal_fresh and rng.random() < 0.8:
             self._plant.pedal = not self._plant.pedal
@@ -120,7 +125,7 @@ class WildHost:
     def _while_turning(self, rng: random.Random, board: Board) -> None:
         draw = rng.random()
         if draw < 0.5:
-            if self._guided:
+            if self._hungry:
                 self._say(self._lay())
         elif draw < 0.6:
             self._say(self._pace())
@@ -128,9 +133,9 @@ class WildHost:
             self._say(self._stop_at())
         elif draw < 0.75:
             self._say(self._measure())
-        elif draw < 0.77:
+        elif draw < 0.76:
             self._wire += encode(m.Hold.CODE, rng.getrandbits(8), b"")
-        elif draw < 0.78:
+        elif draw < 0.765:
             self._plant.pedal = False
         elif draw < 0.82 and not board.fitted & Capability.DRIVE_STEP:
             self._plant.turn_by_hand(rng.choice((-20, 1, 16, 100, 300)), rng.choice((50, 1000, 5000)))
@@ -138,6 +143,11 @@ class WildHost:
     @property
     def _guided(self) -> bool:
         return bool(self._board.fitted & Capability.GUIDE_STEP)
+
+    @property
+    def _hungry(self) -> bool:
+        """Whether a Lay makes sense; now and then it is sent without."""
+        return self._guided and (self._board.line.free >= m.SEGMENTS_PER_LAY or self._rng.random() < 0.05)
 
     # ---------------------------------------------------------------- saying it
 
@@ -161,7 +171,7 @@ class WildHost:
     def _harm(self) -> None:
         rng, board = self._rng, self._board
         due = (board.dialogue._sequence + 1) & 0xFF
-        kind = rng.randrange(11)
+        kind = rng.randrange(12)
         if kind == 0:
             self._wire += rng.randbytes(rng.randrange(1, 100))
         elif kind == 1:
@@ -187,8 +197,11 @@ class WildHost:
             self._wire += encode(m.Pace.CODE, rng.getrandbits(8), self._pace().encode_body())
         elif kind == 9:
             self._wire += bytes(rng.randrange(1, 256) for _ in range(rng.randrange(60, 75))) + b"\0"
-        else:
+        elif kind == 10:
             self._greet()
+            self._wire += self._said[-1] * rng.randrange(5)  # more answers than fit into a tick
+        else:
+            self._wire += encode(m.Hold.CODE, due, b"")
 
     # ---------------------------------------------------------------- what to say
 
@@ -224,7 +237,7 @@ class WildHost:
         decel = rng.choice((100, 500, 3333, 20_000, 65_535, rng.randrange(100, 65_536)))
         counts = rng.choice((400, 400, 100, 24, 2, 1, rng.randrange(1, 401)))
         guide = rng.choice((4000, 4000, 300, 0x7FFFFFFF))
-        low = rng.choice((0, 8000, 9020))
+        low = rng.choice((0, 0, 0, 8000, 9990))
         setup = m.Setup(
             coil_token=rng.getrandbits(32),
             counts_per_turn=counts,
@@ -238,15 +251,17 @@ class WildHost:
             slip_counts=rng.choice((20, 20, 3, 0, 1000, 65_535)),
             reverse_counts=rng.choice((40, 3, 0, 1000, 65_535)),
             tension_low=low,
-            tension_high=rng.choice((65_535, 65_535, 12_000, low)),
+            tension_high=rng.choice((65_535, 65_535, 65_535, 12_000, low + 40)),
             fitted=rng.choice((PLAIN, PLAIN, ALL_FITTED, rng.getrandbits(6))) & self._board.capabilities,
             rotation=rng.getrandbits(1),
         )
-        if rng.random() < 0.15:
+        if rng.random() < 0.2:
             field = rng.choice(setup.__slots__)
+            value = rng.choice((*EDGES, rng.getrandbits(32)))
+            if field.startswith("guide"):
+                return replace(setup, **{field: _i32(value)})
             width = {"fitted": 8, "rotation": 8, "coil_token": 32, "max_count": 32}.get(field, 16)
-            value = rng.choice((*EDGES, rng.getrandbits(32))) & ((1 << width) - 1)
-            return replace(setup, **{field: value})
+            return replace(setup, **{field: value & ((1 << width) - 1)})
         return setup
 
     def _datum(self) -> m.SetDatum:
@@ -305,7 +320,7 @@ class WildHost:
 
     def _stop_at(self) -> m.StopAt:
         rng, board = self._rng, self._board
-        near = board.count + rng.randrange(20 * board.counts_per_turn)
+        near = board.count + rng.randrange(40 * board.counts_per_turn)
         count = rng.choice((near, near, near, 0xFFFFFFFF))
         if rng.random() < 0.2:
             close = board.count + rng.randrange(-50, 500)

@@ -17,8 +17,9 @@ from windctl.machine.virtual.signals import (
 )
 
 PINS = (STOP_OK, GUARD_OK, GUIDE_LOW_OK, GUIDE_HIGH_OK, PEDAL_DOWN)
+COUNTS_MOST = 2000  # a port hands over no more in a tick
 FAULTS = (
-    "slip", "stall", "backwards", "jump", "runaway", "no index", "stray index", "slack", "caught", "pin", "open",
+    "slip", "stall", "backwards", "jump", "runaway", "no index", "stray index", "slack", "caught", "open",
 )  # fmt: skip
 
 
@@ -28,9 +29,12 @@ class WildPlant:
     def __init__(self, rng: random.Random, faults: int) -> None:
         self._rng = rng
         self._fault_share = faults / 100_000
+        self._kinds = rng.sample(FAULTS, 3)
         self._fault = ""
         self._fault_left = 0
-        self._pin = 0
+        self._pin_share = rng.choice((0.0, 0.0, 0.002))
+        self._pin = 0  # bits that are not as they should be
+        self._pin_left = 0
         self._owed = 0  # thousandths of a step
         self._units = 0  # steps * counts_per_turn, not yet a count
         self._position = 0
@@ -38,7 +42,7 @@ class WildPlant:
         self._hand = 0  # counts per 16 ticks, by hand or by a motor of one's own
         self._hand_left = 0
         self._hand_acc = 0
-        self._tension = rng.choice((0, 9000, 10_000, 30_000))
+        self._tension = rng.choice((0, 10_000, 10_000, 10_000, 30_000))
         self._contact = rng.randrange(0, 0xFFFF)
         self.counts_per_turn = 400
         self.steps_per_turn = 400
@@ -58,6 +62,7 @@ class WildPlant:
         steps, self._owed = divmod(self._owed, 1000)
         inputs.steps_issued = steps
         counts = self._counts(steps, bool(outputs.drive_enable), fault, rng)
+        counts = max(-COUNTS_MOST, min(counts, COUNTS_MOST))
         inputs.count_delta = counts
         before, self._position = self._position, self._position + counts
         passed = self._position // self.counts_per_turn > before // self.counts_per_turn
@@ -70,7 +75,7 @@ class WildPlant:
         inputs.contact = 0xFFFF if fault == "open" and noise < 20 else min(self._contact + noise, 0xFFFE)
         inputs.celsius_centi = noise * 1000 - 32_768
         pins = ALL_OK | (PEDAL_DOWN if self.pedal else 0)
-        inputs.pins = pins ^ self._pin if fault == "pin" else pins
+        inputs.pins = pins ^ self._pin
 
     def _counts(self, steps: int, driven: bool, fault: str, rng: random.Random) -> int:
         if fault == "jump":
@@ -99,11 +104,17 @@ class WildPlant:
         return made
 
     def _spoil(self, rng: random.Random) -> None:
+        if self._pin_left:
+            self._pin_left -= 1
+        elif self._pin:
+            self._pin = 0
+        elif rng.random() < self._pin_share:
+            self._pin = rng.choice(PINS)
+            self._pin_left = rng.choice((1, 15, 200))
         if self._fault_left:
             self._fault_left -= 1
         elif self._fault:
             self._fault = ""
         elif rng.random() < self._fault_share:
-            self._fault = rng.choice(FAULTS)
+            self._fault = rng.choice(self._kinds)
             self._fault_left = rng.choice((1, 10, 100, 1000))
-            self._pin = rng.choice(PINS)
