@@ -188,14 +188,9 @@ static uint8_t pace(struct windctl_core *core, const uint8_t *body, int32_t *val
 static int32_t reachable(const struct windctl_core *core, int32_t count)
 {
     int32_t nearest = windctl_spindle_nearest_stand(&core->spindle, core->count);
-    int32_t target;
 
-    if (count >= nearest) {
-        return count;
-    }
-    target = windctl_target(core);
-    if (nearest > target) {
-        nearest = target;
+    if (nearest > core->spindle.goal) {
+        nearest = core->spindle.goal;
     }
     return count < nearest ? nearest : count;
 }
@@ -217,7 +212,7 @@ static uint8_t stop_at(struct windctl_core *core, const uint8_t *body, int32_t *
         return WINDCTL_REFUSAL_RANGE;
     }
     count = (int32_t)next.count;
-    if (core->spindle.mode == WINDCTL_RUN) {
+    if (core->spindle.mode == WINDCTL_RUN || core->spindle.mode == WINDCTL_BRAKE) {
         count = reachable(core, count);
     } else if (count < core->count) {
         if (core->state != WINDCTL_STATE_TURNING) {

@@ -158,6 +158,15 @@ def test_a_stop_point_inside_the_braking_distance_brakes_now_and_is_foretold() -
     assert machine.board.cause == Cause.STOP_POINT
 
 
+def test_a_stop_point_that_comes_while_a_hold_brakes_is_not_one_that_is_then_passed() -> None:
+    machine = Machine().winding(pace=8000)
+    machine.say(m.Hold())
+    machine.run(3)
+    answer = machine.do(m.StopAt(*machine.consent, machine.board.count + 5))
+    machine.run_to_rest()
+    assert machine.board.count <= answer.value == machine.board.stop_point
+
+
 def test_a_later_stop_point_lets_it_go_on_without_standing() -> None:
     machine = Machine().prepare().arm(stop=40_000).go()
     machine.run_until(lambda: machine.board.count > 38_000)

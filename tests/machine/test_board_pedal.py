@@ -69,6 +69,14 @@ def test_a_pedal_kept_down_over_a_stop_has_to_be_let_go_first() -> None:
     machine.go()
 
 
+def test_a_hold_makes_a_press_stale() -> None:
+    machine = ready()
+    press(machine)
+    machine.say(m.Hold())
+    machine.run()
+    assert machine.refusal(m.Go(*machine.consent)) == (Refusal.PEDAL_DOWN, 0)
+
+
 def test_a_bounce_is_not_a_press() -> None:
     machine = ready()
     for _ in range(4):

@@ -10,7 +10,7 @@ from __future__ import annotations
 
 from typing import Final
 
-from windctl.machine.virtual import board_reports, board_watch
+from windctl.machine.virtual import board_reports, board_rest, board_watch
 from windctl.machine.virtual.board_dialogue import Dialogue
 from windctl.machine.virtual.board_rules import (
     CHECK_EVERY,
@@ -20,7 +20,7 @@ from windctl.machine.virtual.board_rules import (
     STILL,
     still_ticks,
 )
-from windctl.machine.virtual.board_spindle import BRAKE, REST, RUN, SETTLE, Spindle
+from windctl.machine.virtual.board_spindle import BRAKE, REST, RUN, Spindle
 from windctl.machine.virtual.contact_mean import ContactMean
 from windctl.machine.virtual.guide_line import GuideLine
 from windctl.machine.virtual.signals import (
@@ -71,12 +71,7 @@ class Board:
 
     __slots__ = (
         "_boot_told",
-        "_hand_stop_told",
-        "_off_at",
-        "_settled_cause",
         "_status_at",
-        "_status_due",
-        "_still_at",
         "away",
         "boot",
         "capabilities",
@@ -92,8 +87,10 @@ class Board:
         "guide_pace",
         "guide_ramp",
         "guide_target",
+        "hand_stop_told",
         "line",
         "mean",
+        "off_at",
         "over_counts",
         "pedal_at",
         "pedal_fresh",
@@ -102,6 +99,7 @@ class Board:
         "queue",
         "rotation",
         "seen_count",
+        "settled_cause",
         "setup",
         "setup_crc",
         "silent_at",
@@ -111,6 +109,8 @@ class Board:
         "spindle_moves",
         "standing",
         "state",
+        "status_due",
+        "still_at",
         "still_ticks",
         "stop_point",
         "tension_scale",
@@ -153,7 +153,7 @@ class Board:
         self._boot_told = False
         self._status_at = STATUS_EVERY
         self.check_at = CHECK_EVERY
-        self._status_due = True
+        self.status_due = True
         self.silent_at = 0  # tick
         # the coil's limits
         self.setup: Setup | None = None
@@ -167,16 +167,16 @@ class Board:
         # the spindle
         self.spindle = Spindle()
         self.powered = False
-        self._off_at = 0  # tick at which a tripped board's drives go off
+        self.off_at = 0  # tick at which a tripped board's drives go off
         self.count = 0  # i32
         self.seen_count = 0  # i32, at the last check
         self.speed = 0  # u16, counts/s over the last 64 ticks
         self.standing = True  # spindle and guide are at rest
         self.spindle_moves = False
         self.still_ticks = STILL  # u16
-        self._still_at = 0  # tick
-        self._settled_cause: int = Cause.NONE
-        self._hand_stop_told = False
+        self.still_at = 0  # tick
+        self.settled_cause: int = Cause.NONE
+        self.hand_stop_told = False
         self.went_back = 0  # u32, counts below the furthest since Go
         self.turns = Turns()
         # the guide
@@ -231,15 +231,15 @@ class Board:
                 else:
                     guide_steps = self.line.follow(counted)
         else:
-            guide_steps = self._at_rest(counted)
+            guide_steps = board_rest.at_rest(self, counted)
         if guide_steps:
-            guide_steps = self._guide_moved(guide_steps)
+            guide_steps = board_rest.guide_moved(self, guide_steps)
         turns.tension_sum += inputs.tension
         if ticks == self.check_at:
             board_watch.check(self)
         if ticks == self.silent_at:
             board_watch.silence(self)
-        if self._status_due or ticks == self._status_at:
+        if self.status_due or ticks == self._status_at:
             self._tell_status(inputs.celsius_centi)
         if self.mean.active and self.mean.sample(inputs.contact, ticks, count, self.spindle_moves):
             self.dialogue.tell(board_reports.reading(self, inputs.celsius_centi))
@@ -306,11 +306,11 @@ class Board:
         """Ready or held to turning."""
         self.state = TURNING
         self.cause = Cause.NONE
-        self._status_due = True
+        self.status_due = True
         self.moves()
         self.silent_at = (self.ticks + SILENCE) & M32
         self.pedal_fresh = False
-        self._hand_stop_told = False
+        self.hand_stop_told = False
         self.went_back = 0
         self.turns.start(self.ticks, self.count)
         self.seen_count = self.count
@@ -323,7 +323,7 @@ class Board:
         self.guide_pace = pace
         self.guide_ramp = 0
         self.silent_at = (self.ticks + SILENCE) & M32
-        self._not_standing()
+        self.not_standing()
 
     def hold(self, cause: int) -> None:
         """Stop under control and stay powered; also ends a GuideTo. Raises the epoch in every state."""
@@ -345,7 +345,7 @@ class Board:
     def raise_epoch(self) -> None:
         """Every permission given before is void; the host hears of it at once."""
         self.epoch = (self.epoch + 1) & 0xFFFF
-        self._status_due = True
+        self.status_due = True
 
     def stop_for(self, trip: int) -> None:
         rule = TRIPS[trip]
@@ -382,16 +382,16 @@ class Board:
     def _rests(self) -> None:
         """No more steps are issued; the spindle stands when counts have stayed away for a while."""
         self.moves()
-        self._off_at = (self.ticks + STILL) & M32
+        self.off_at = (self.ticks + STILL) & M32
 
     def moves(self) -> None:
         """The spindle moves, or may be about to."""
         self.spindle_moves = True
-        self._not_standing()
+        self.not_standing()
 
-    def _not_standing(self) -> None:
+    def not_standing(self) -> None:
         self.standing = False
-        self._still_at = (self.ticks + self.still_ticks) & M32
+        self.still_at = (self.ticks + self.still_ticks) & M32
 
     def _arrived(self) -> None:
         """The last step before the target is out."""
@@ -399,84 +399,12 @@ class Board:
         setup = self.setup
         assert setup is not None
         if goal == self.stop_point:
-            self._settled_cause = Cause.STOP_POINT
+            self.settled_cause = Cause.STOP_POINT
         elif goal == setup.max_count:
-            self._settled_cause = Cause.MAX_COUNT
+            self.settled_cause = Cause.MAX_COUNT
         else:
-            self._settled_cause = Cause.QUEUE_END
+            self.settled_cause = Cause.QUEUE_END
         self._rests()
-
-    # ------------------------------------------------------------ ticks in which no step is issued
-
-    def _at_rest(self, counted: int) -> int:
-        """Spindle at rest, settling or turned by hand. Returns guide steps."""
-        ticks = self.ticks
-        steps = 0
-        if self.powered and self.fitted & FITTED_GUIDE:
-            if counted:
-                self.line.wait(counted)
-            if self.guide_pace:
-                steps = self._guide_to()
-            elif self.line.lagging and self.trip != Trip.GUIDE_LIMIT:
-                steps = self.line.catch_up()
-                self._not_standing()
-        elif counted and self.fitted & FITTED_GUIDE:
-            self.line.wait(counted)
-        if not self.standing and ticks == self._still_at:
-            self._came_to_rest()
-        if self.state == TRIPPED and self.powered and ticks == self._off_at:
-            self.powered = False
-            self._status_due = True
-        if ticks == self.pedal_at:
-            board_watch.pedal_pressed(self)
-        by_hand = self.state == TURNING and not self.fitted & FITTED_DRIVE
-        if by_hand and not self._hand_stop_told and self.count >= self.target():
-            self._hand_stop_told = True
-            self.notice(NoticeKind.HAND_STOP_DUE, self.count, 0)
-        return steps
-
-    def _came_to_rest(self) -> None:
-        if self.spindle.mode == SETTLE and self.spindle.creep(self.count):
-            return
-        self.spindle.mode = REST
-        self.standing = True
-        self.spindle_moves = False
-        self._status_due = True
-        if self.state == TURNING:
-            if self.fitted & FITTED_DRIVE:
-                self.enter(HELD, self._settled_cause)
-            elif self._hand_stop_told:
-                at_stop_point = self.stop_point <= self.count
-                self.enter(HELD, Cause.STOP_POINT if at_stop_point else Cause.MAX_COUNT)
-        self.notice(NoticeKind.STANDING, self.count, self.guide)
-
-    def _guide_to(self) -> int:
-        ramp = self.guide_ramp + self.guide_pace
-        steps = 0
-        while ramp >= 1000:
-            ramp -= 1000
-            if self.guide + steps < self.guide_target:
-                steps += 1
-            elif self.guide + steps > self.guide_target:
-                steps -= 1
-        self.guide_ramp = ramp
-        self.away += steps
-        if self.guide + steps == self.guide_target:
-            self.guide_pace = 0
-        self._not_standing()
-        return steps
-
-    def _guide_moved(self, steps: int) -> int:
-        """Steps that may be issued: none if they would leave the limits."""
-        setup = self.setup
-        assert setup is not None
-        guide = self.guide + steps
-        if (steps > 0 and guide > setup.guide_max) or (steps < 0 and guide < setup.guide_min):
-            self.away -= steps
-            self.stop_for(Trip.GUIDE_LIMIT)
-            return 0
-        self.guide = guide
-        return steps
 
     def beat(self) -> None:
         """The host is alive."""
@@ -491,7 +419,7 @@ class Board:
     def _tell_status(self, celsius: int) -> None:
         if self.ticks == self._status_at:
             self._status_at = (self._status_at + STATUS_EVERY) & M32
-        self._status_due = False
+        self.status_due = False
         if not self._boot_told:
             self._boot_told = True
             self.notice(NoticeKind.BOOTED, self.boot, 0)

@@ -11,7 +11,7 @@ from collections.abc import Callable
 from typing import TYPE_CHECKING, Any, Final
 
 from windctl.machine.virtual import board_rules as rules
-from windctl.machine.virtual.board_spindle import RUN, SETTLE
+from windctl.machine.virtual.board_spindle import BRAKE, RUN, SETTLE
 from windctl.machine.virtual.contact_mean import WINDOW_LIMIT
 from windctl.machine.virtual.signals import GUARD_OK, GUIDE_HIGH_OK, GUIDE_LOW_OK, PEDAL_DOWN, STOP_OK
 from windctl.protocol import messages as m
@@ -131,10 +131,10 @@ def _stop_at(board: Board, stop: m.StopAt) -> Verdict:
         return ACCEPTED, board.target()
     if count > setup.max_count:
         return Refusal.RANGE, setup.max_count
-    if board.spindle.mode == RUN:
+    if board.spindle.mode in (RUN, BRAKE):
         nearest = board.spindle.nearest_stand(board.count)
         if count < nearest:  # brake now; where it already had to stand is reachable by construction
-            count = max(count, min(nearest, board.target()))
+            count = max(count, min(nearest, board.spindle.goal))
     elif count < board.count:
         if board.state != State.TURNING:
             return Refusal.RANGE, board.count
