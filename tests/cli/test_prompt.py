@@ -32,7 +32,7 @@ def test_on_a_terminal_what_was_typed_ahead_is_thrown_away_and_what_follows_coun
         prompt.open_question()
         assert waited_for(prompt, 0.3) is None
         os.write(person, b"  Go \n")
-        assert waited_for(prompt) == "go"
+        assert waited_for(prompt) == "Go"
         os.write(person, b"g")
         assert waited_for(prompt, 0.2) is None
         os.write(person, b"o\nend\n")

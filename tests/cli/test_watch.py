@@ -14,9 +14,11 @@ import pytest
 from tests.cli.test_progress import TURNING
 from windctl.cli import watch
 from windctl.cli.prompt import Prompt
+from windctl.cli.questions import CAUTIONS
 from windctl.errors import RunFailed, UsageError
 from windctl.record.fold import start
-from windctl.run.runner import Clear, End, Ended, Go, Hold, Request
+from windctl.run.requests import Clear, End, Go, Hold, Request
+from windctl.run.runner import Ended
 from windctl.run.snapshot import Snapshot
 
 
@@ -131,9 +133,9 @@ def test_a_real_machine_gets_its_go_only_from_a_typed_go_after_the_cautions(keyb
     run = Script([REAL] * 20 + [ASKS_NOTHING] * 5, typing)
     watch.stand_by(run, face, prompt)
     assert run.requests == [Go("operator")]
-    assert said_when_typed[0] == watch.CAUTIONS
-    assert "eye protection" in watch.CAUTIONS
-    assert "hardware stop" in watch.CAUTIONS
+    assert said_when_typed[0] == CAUTIONS
+    assert "eye protection" in CAUTIONS
+    assert "hardware stop" in CAUTIONS
     assert "Type go" in said_when_typed[1]
 
 

@@ -31,7 +31,7 @@ class Prompt:
             continue
 
     def answer(self) -> str | None:
-        """The next line typed, lower case and without blanks around it; None if there is none yet."""
+        """The next line typed, without blanks around it; None if there is none yet."""
         try:
             return self._lines.get_nowait()
         except queue.Empty:
@@ -49,7 +49,7 @@ class Prompt:
                 return
             *lines, rest = (rest + data).split(b"\n")
             for line in lines:
-                self._lines.put(line.decode(errors="replace").strip().lower())
+                self._lines.put(line.decode(errors="replace").strip())
 
 
 def _discard_typed_ahead(descriptor: int) -> None:

@@ -13,6 +13,7 @@ from windctl.protocol.messages import State as BoardState
 from windctl.record.decide import Decision
 from windctl.record.fold import Fit, State
 from windctl.record.program import place_at
+from windctl.run.trips import look_to
 
 
 @dataclass(frozen=True, slots=True)
@@ -114,6 +115,9 @@ def _says(state: State, decision: Decision) -> str:
     if state.finished is not None:
         return state.finished.reason
     if decision.blocked is not None:
+        status = state.status
+        if status is not None and status.state == BoardState.TRIPPED:
+            return f"{decision.blocked}: {look_to(status.trip)}"
         return decision.blocked
     phase = _phase(state)
     if phase == "turning" and state.stop_point is not None and state.started is not None:

@@ -1,0 +1,157 @@
+"""What a run asks of the person at the terminal, and what the person says to it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import TYPE_CHECKING, Protocol
+
+from windctl.cli.progress import Face
+from windctl.cli.prompt import Prompt
+from windctl.cli.words import BY, help_text, request_of
+from windctl.errors import RunFailed, UsageError, WindctlError
+from windctl.run.requests import Clear, End, Go, Hold, Request, Unwind
+
+if TYPE_CHECKING:
+    from windctl.run.snapshot import Snapshot
+
+Hand = Callable[[float], None]  # turns the spindle of a machine simulated here; negative unwinds
+
+CAUTIONS = """\
+Before anything turns: guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves.
+Wear eye protection: fine wire whips when it breaks. Never touch the work while it turns.
+Know where the hardware stop is; this program is not a safety function."""
+
+
+class Asked(Protocol):
+    """Something that takes requests."""
+
+    def request(self, request: Request) -> None: ...
+
+
+class Questions:
+    """What the run asks, put to the person once each time, and what the person says."""
+
+    def __init__(self, run: Asked, face: Face, prompt: Prompt | None, hand: Hand | None) -> None:
+        self._run = run
+        self._face = face
+        self._prompt = prompt
+        self._hand = hand
+        self._open: str | None = None
+        self._put: tuple[object, ...] = ()
+        self._answers = 0
+        self._to_unwind = 0.0
+        self._told_how_to_hold = False
+        self.unanswerable: WindctlError | None = None
+
+    def begin(self) -> None:
+        """From now on the person may say something; whatever was typed before says nothing."""
+        if self._prompt is not None:
+            self._prompt.open_question()
+
+    def consider(self, snapshot: Snapshot) -> None:
+        """Ask what is newly asked, and pass on what was typed."""
+        if snapshot.answers != self._answers:
+            self._answers = snapshot.answers
+            self._face.say(snapshot.answer)
+        self._unwind(snapshot)
+        asks = None if snapshot.asks == "turn" else snapshot.asks  # that one ends the run by itself
+        if asks != self._open:
+            self._open = asks
+            if self._open is not None:
+                self._ask(snapshot)
+                return
+        if self._prompt is None:
+            return
+        if self._open is not None and _situation(snapshot) != self._put:
+            self._put_question(snapshot)
+        if snapshot.phase == "turning" and not self._told_how_to_hold:
+            self._told_how_to_hold = True
+            self._face.say("Enter holds the spindle; Ctrl-C holds it and leaves.")
+        line = self._prompt.answer()
+        if line is not None:
+            self._typed(line, snapshot)
+
+    def _ask(self, snapshot: Snapshot) -> None:
+        if self._prompt is None:
+            self._give_up(snapshot)
+            return
+        if snapshot.asks == "go" and not snapshot.virtual:
+            self._face.say(CAUTIONS)
+        self._prompt.open_question()
+        self._put_question(snapshot)
+
+    def _put_question(self, snapshot: Snapshot) -> None:
+        self._put = _situation(snapshot)
+        self._face.say(_question(snapshot))
+
+    def _give_up(self, snapshot: Snapshot) -> None:
+        why = "nobody to ask"
+        if snapshot.virtual and snapshot.begun and snapshot.asks == "clear":
+            self._run.request(End("windctl", why))  # a trip that nobody looks to is the end of the coil
+            return
+        self.unanswerable = nobody_to_ask(snapshot)
+        # A coil without a turn is no coil to go on with later.
+        unwound = snapshot.turns <= 0
+        self._run.request(End("windctl", why) if unwound else Hold("windctl", why, leave=True))
+
+    def _typed(self, line: str, snapshot: Snapshot) -> None:
+        if self._open is None:
+            if snapshot.phase == "turning" and (not line or isinstance(request_of(line), Hold)):
+                self._run.request(Hold(BY, "held at the keyboard"))
+            return
+        if not line:
+            return
+        request = request_of(line)
+        if line.lower() == "help":
+            self._face.say(help_text())
+        elif request is None:
+            self._face.say(f"{line!r} is not understood; help lists the words. {_question(snapshot)}")
+        elif isinstance(request, End) and snapshot.turns <= 0:
+            self._face.say("There is no turn to end the coil with; Ctrl-C leaves.")
+        elif isinstance(request, Go | Clear) and line.lower() != snapshot.asks:
+            self._face.say(_question(snapshot))
+        else:
+            if isinstance(request, Unwind) and request.turns is not None:
+                self._to_unwind = request.turns
+            self._run.request(request)
+
+    def _unwind(self, snapshot: Snapshot) -> None:
+        """At a simulated machine nobody turns the spindle back but we."""
+        if self._to_unwind and self._hand is not None and snapshot.hands and snapshot.drives_off:
+            self._hand(-self._to_unwind)
+            self._to_unwind = 0.0
+
+
+def _situation(snapshot: Snapshot) -> tuple[object, ...]:
+    """What has to change before the same question is put again."""
+    return (snapshot.asks, snapshot.drives_off, snapshot.hands, snapshot.splices, snapshot.wire_ends_at)
+
+
+def _question(snapshot: Snapshot) -> str:
+    lines = [f"{snapshot.says}."]
+    if snapshot.wire_ends_at is not None:
+        lines.append(f"What was counted beyond turn {snapshot.wire_ends_at:.2f} is without wire.")
+    if snapshot.asks == "place" and snapshot.guide_place_mm is not None:
+        lines.append(f"Put the guide {snapshot.guide_place_mm:.2f} mm from where it began.")
+    lines.append(_ANSWERS[snapshot.asks or "go"])
+    if snapshot.turns <= 0 and snapshot.asks == "go":
+        return "Type go and Enter to start; Ctrl-C leaves without turning anything."
+    return "\n".join(lines)
+
+
+_MORE = "help lists what else can be said; Ctrl-C leaves the coil open."
+_ANSWERS = {
+    "go": f"Type go and Enter to go on, or end and Enter to end the coil here; {_MORE}",
+    "clear": f"Once that is put right, type clear and Enter; nothing turns by that. {_MORE}",
+    "place": f"Count the turns, then type turn, their number and Enter. {_MORE}",
+}
+
+
+def nobody_to_ask(snapshot: Snapshot) -> WindctlError:
+    """Why the run cannot go on where nobody sits at the terminal."""
+    if snapshot.virtual:
+        return RunFailed(f"the run waits for {snapshot.asks!r} ({snapshot.says}) and nobody can be asked")
+    return UsageError(
+        f"this is a real machine: it turns only after {snapshot.asks!r} was typed at a terminal, "
+        "so --no-input and input that is no terminal are refused; nothing was started"
+    )

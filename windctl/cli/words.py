@@ -1,0 +1,119 @@
+"""The words that a person types to a run at the terminal, and the requests they mean."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from windctl.run.requests import (
+    Broke,
+    Clear,
+    CountIs,
+    DrivesOff,
+    End,
+    Go,
+    Hold,
+    NewWire,
+    Note,
+    Request,
+    Splice,
+    Unwind,
+)
+
+BY = "operator"
+_NUMBER = re.compile(r"\d+(?:[.,]\d*)?|[.,]\d+")
+
+
+@dataclass(frozen=True, slots=True)
+class Word:
+    """One word of the vocabulary: how it is written, and what it does."""
+
+    usage: str
+    help: str
+
+    @property
+    def name(self) -> str:
+        """The word itself, without what may follow it."""
+        return re.split(r" (?=[A-Z\[])", self.usage)[0]
+
+
+WORDS = (
+    Word("go", "wind on: powers the drives and starts"),
+    Word("hold", "let the spindle come to rest; Enter alone does the same while it turns"),
+    Word("clear", "the cause of the trip is put right; nothing turns by that"),
+    Word("off", "drives off, so that hands may go in"),
+    Word("broke [TURN]", "the wire broke, at that turn"),
+    Word(
+        "splice [TURN]", "the wire is joined again; it ends at that turn, else where the break is known to be"
+    ),
+    Word("new wire [TURN] [NAME]", "another spool is joined on"),
+    Word("unwind [TURNS]", "drives off; then turn the spindle back by hand, and the count follows"),
+    Word("turn TURN", "the count is wrong: so many turns lie on the bobbin"),
+    Word("note TEXT", "write something into the record"),
+    Word("end", "end the coil here"),
+    Word("help", "this list"),
+)
+
+
+def help_text() -> str:
+    """All words, one a line."""
+    width = max(len(word.usage) for word in WORDS)
+    return "\n".join(f"  {word.usage:<{width}}  {word.help}" for word in WORDS)
+
+
+def request_of(line: str) -> Request | None:
+    """What a typed line asks for; None where it is no word of ours, or lacks what must follow."""
+    text = " ".join(line.split())
+    for word in sorted(WORDS, key=lambda word: -len(word.name)):
+        if text.lower() == word.name or text.lower().startswith(f"{word.name} "):
+            means = _MEANS.get(word.name)
+            return None if means is None else means(text[len(word.name) :].strip())
+    return None
+
+
+def number(text: str) -> float | None:
+    """A number with either decimal sign, or None."""
+    return float(text.replace(",", ".")) if _NUMBER.fullmatch(text) else None
+
+
+def _alone(request: Request) -> Callable[[str], Request | None]:
+    return lambda rest: None if rest else request
+
+
+def _at_a_turn(kind: Callable[[str, float | None], Request]) -> Callable[[str], Request | None]:
+    def make(rest: str) -> Request | None:
+        turn = number(rest)
+        return None if rest and turn is None else kind(BY, turn)
+
+    return make
+
+
+def _new_wire(rest: str) -> Request:
+    first, _, name = rest.partition(" ")
+    turn = number(first)
+    return NewWire(BY, rest if turn is None else name, turn)
+
+
+def _turn(rest: str) -> Request | None:
+    turn = number(rest)
+    return None if turn is None else CountIs(BY, turn)
+
+
+def _note(rest: str) -> Request | None:
+    return Note(BY, rest) if rest else None
+
+
+_MEANS: dict[str, Callable[[str], Request | None]] = {
+    "go": _alone(Go(BY)),
+    "hold": _alone(Hold(BY, "held at the keyboard")),
+    "clear": _alone(Clear(BY)),
+    "off": _alone(DrivesOff(BY, "asked for at the keyboard")),
+    "broke": _at_a_turn(Broke),
+    "splice": _at_a_turn(Splice),
+    "new wire": _new_wire,
+    "unwind": _at_a_turn(Unwind),
+    "turn": _turn,
+    "note": _note,
+    "end": _alone(End(BY, "ended by the operator")),
+}
