@@ -44,7 +44,7 @@ class WindctlApp(App[int], inherit_bindings=False):
     BINDINGS: ClassVar[list[BindingType]] = [
         key("help", show=True),
         key("recipes", show=False),
-        key("coils", show=False),
+        key("coils"),
         key("light", show=False),
         key("quit", show=False),
         key("leave", show=False),

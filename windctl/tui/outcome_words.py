@@ -2,24 +2,34 @@
 
 from __future__ import annotations
 
-from windctl.desk.numbers import ohm, short_digest, turns
+from windctl.desk.numbers import ohm, turns
 from windctl.run.outcome import Outcome
-from windctl.tui.looks import OUTCOMES, VERDICTS, Look
+from windctl.tui.looks import OUTCOMES, VERDICTS, Look, look_of
+from windctl.tui.view import Next
+
+
+def after_words(outcome: Outcome, look: Look) -> tuple[Look, Next]:
+    """The band once a run is over: how it ended, and where to go."""
+    if outcome.error is not None or outcome.left == "unconfirmed":
+        return look_of("failed"), Next("the coil stays open", "", "Enter: back, R there goes on")
+    if outcome.summary.outcome == "open":
+        return look_of("held"), Next("the coil stays open", "", "Enter: back, R there goes on")
+    word = outcome.summary.outcome
+    role = {"finished": "ended", "tripped": "alarm"}.get(word, "held")
+    return Look(word, look.glyph, role), Next(look.word, "", "Enter: its record · N: the next")
 
 
 def outcome_words(outcome: Outcome, truth: str = "") -> tuple[Look, str]:
     """Its look, and what to say. `truth`: of a simulated coil, what it really is."""
     summary = outcome.summary
     look = VERDICTS[summary.verdict] if summary.outcome == "finished" else OUTCOMES[summary.outcome]
-    parts = [f"{summary.outcome}: {outcome.why if summary.outcome == 'open' else summary.reason}"]
+    parts = [outcome.why if summary.outcome == "open" else summary.reason]
     if summary.turns is not None:
         parts.append(turns(summary.turns))
     if summary.dcr_20c_ohm:
         text = ohm(summary.dcr_20c_ohm, summary.dcr_u95_ohm or 0.0)
         parts.append(f"{text.replace('kohm', 'kΩ').replace('ohm', 'Ω')} at 20 °C")
-    if summary.outcome == "finished":
-        parts.append(summary.verdict)
-    parts.append(f"record {short_digest(outcome.record_digest)}")
+    parts.append(f"record {outcome.record_digest[:8]}")
     if truth:
         parts.append(f"really {truth}")
     return look, " · ".join(parts)

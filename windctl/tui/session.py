@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import json
 import threading
-from contextlib import ExitStack
+from contextlib import AbstractContextManager, ExitStack, nullcontext
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
@@ -124,7 +124,7 @@ class Session:
 
     def last_of(self, recipe: str) -> CoilHead | None:
         """The coil of this recipe that was begun last."""
-        with book_if_any(self.shared) as book:
+        with self._book() as book:
             heads = () if book is None else book.list(recipe=recipe, limit=1)
         return heads[0] if heads else None
 
@@ -198,7 +198,7 @@ class Session:
             self.run = run
         return run
 
-    def hold(self, reason: str = "hold key", leave: bool = False) -> bool:
+    def hold(self, reason: str = "the hold key", leave: bool = False) -> bool:
         """Ask the spindle to stand. Only puts a request; True if there is a run to hear it."""
         run = self.run
         if run is None:
@@ -239,14 +239,21 @@ class Session:
 
     def open_coils(self) -> tuple[CoilHead, ...]:
         """Coils that this bench left open; the running one is none of them."""
-        with book_if_any(self.shared) as book:
+        with self._book() as book:
             heads = () if book is None else book.open_coils(self.profile.bench)
         running = self.run.card.number if self.run is not None else ""
         return tuple(head for head in heads if head.number != running)
 
+    def _book(self) -> AbstractContextManager[Book | None]:
+        """The book; None where no coil has been wound yet, also in one that was named."""
+        named = self.shared.book
+        if named is not None and not named.exists():
+            return nullcontext()
+        return book_if_any(self.shared)
+
     def page(self, number: int, outcome: str | None = None) -> Page:
         """One page of coils, the one begun last first."""
-        with book_if_any(self.shared) as book:
+        with self._book() as book:
             if book is None:
                 return Page((), 0, 0)
             total = book.count(outcome=outcome)

@@ -52,7 +52,7 @@ class Card:
             turns=max(self.most_turns, self.planned_turns) * 1.02,
             ohm=max(middle, self.planned_ohm + self.planned_u95) * _HEADROOM,
             finish_ohm=middle,
-            finish_span=max(1.3 * self.planned_u95 / middle, 2.0 * self.tolerance_pct / 100.0, 0.01),
+            finish_span=max(1.6 * self.planned_u95 / middle, 2.0 * self.tolerance_pct / 100.0, 0.01),
             target_ohm=middle if resistance else None,
             target_turns=None if resistance else self.target_value,
             tolerance=self.tolerance_pct / 100.0 if resistance else 0.0,

@@ -68,6 +68,7 @@ def curve_picture(
     known = [(field.x(point.turn), field.y(point.ohm)) for point in past if point.ohm is not None]
     for (x0, y0), (x1, y1) in pairwise(known):
         dots.line(x0, y0, x1, y1, "past")
+        dots.line(x0, y0 + 1, x1, y1 + 1, "past")
     if fan:
         last = fan[-1]
         dots.line(field.x(last.turn), field.y(last.low), field.x(last.turn), field.y(last.high), "finish")
@@ -99,7 +100,7 @@ def finish_picture(width: int, height: int, scale: Scale, past: Sequence[Point],
     x = field.x(end)
     for y in range(0, dots.down, 2):
         dots.dot(x, y, "axis")
-    return field.picture(("past", "target", "axis", "fan"), _per_cent, "%")
+    return field.picture(("past", "target", "axis", "fan"), _per_cent)
 
 
 class _Field:
@@ -129,7 +130,7 @@ class _Field:
                 if y in (low, high) or (x + y) % 2 == 0:
                     self.dots.dot(x, y, layer)
 
-    def picture(self, order: Sequence[str], written: Callable[[float], str], unit: str) -> Picture:
+    def picture(self, order: Sequence[str], written: Callable[[float], str], unit: str = "") -> Picture:
         whole = blank(self._width, self._height)
         for row, cells in enumerate(self.dots.picture(order)):
             whole[row][_MARGIN:] = cells
@@ -140,7 +141,8 @@ class _Field:
             row = rows - 1 - self.y(value) // DOWN
             put(whole, row, 0, written(value).rjust(_MARGIN - 1), "label")
             put(whole, row, _MARGIN - 1, "┤", "axis")
-        put(whole, 0, 0, unit.rjust(_MARGIN - 1), "label")
+        if unit:
+            put(whole, 0, 0, unit.rjust(_MARGIN - 1), "label")
         self._turns(whole)
         return whole
 
@@ -161,4 +163,4 @@ def _kohm(value: float) -> str:
 
 
 def _per_cent(value: float) -> str:
-    return f"{value:+g}" if value else "0"
+    return f"{value:+g}%" if value else "0"

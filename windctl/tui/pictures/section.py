@@ -64,7 +64,7 @@ class Section:
         for row in range(self._rows):
             low = row * 8  # eighths at the cell's lower edge
             place = picture[self._rows - row]
-            ghost: Ink = "ghost" if low < final else None
+            ghost: Ink = "ghost" if final >= low + 8 else None
             if full >= low + 8:
                 upper, lower = self._shade(column, low + 6), self._shade(column, low + 2)
                 place[column + 1] = Cell("▀", upper, lower)

@@ -27,7 +27,6 @@ class CoilsScreen(Room):
 
     ABOUT = "Every coil in the book, the latest first. Enter shows one, F filters by how they ended."
     BINDINGS: ClassVar[list[BindingType]] = [
-        key("coils.open"),
         key("coils.newer"),
         key("coils.older"),
         key("coils.filter"),
@@ -78,7 +77,7 @@ class CoilsScreen(Room):
             table.add_row(*[Text(cell) for cell in cells(head)], key=head.number)
         which = f"only {self.filter}" if self.filter else "all"
         self.query_one("#coils-foot", Static).update(
-            f"{grouped(page.total)} coils, {which} · page {page.number + 1} of {page.pages}"
+            f"{grouped(page.total)} coils, {which} · page {page.number + 1} of {page.pages} · Enter shows one"
         )
 
     def action_newer(self) -> None:
@@ -101,10 +100,6 @@ class CoilsScreen(Room):
         """One coil."""
         if event.row_key.value is not None:
             self.app.push_screen(CoilScreen(self.session, event.row_key.value))
-
-    def action_open(self) -> None:
-        """The same by its key, where the table has not taken it."""
-        self.query_one(DataTable).action_select_cursor()
 
     def action_back(self) -> None:
         """Where one came from."""

@@ -25,7 +25,7 @@ from windctl.tui.recipes import Listed, Preview
 from windctl.tui.screens.before import BeforeScreen
 from windctl.tui.screens.room import Room
 from windctl.tui.screens.wind import WindScreen
-from windctl.tui.session import Run, card_of
+from windctl.tui.session import Run, Session, card_of
 from windctl.tui.view import bands
 from windctl.tui.widgets.bobbin_section import BobbinSection
 from windctl.tui.widgets.curve import Curve
@@ -41,9 +41,13 @@ class RecipesScreen(Room):
     )
     BINDINGS: ClassVar[list[BindingType]] = [
         key("recipes.wind"),
-        key("recipes.resume", show=False),
+        key("recipes.resume"),
         key("recipes.reload", show=False),
     ]
+
+    def heading(self) -> str:
+        """What the room is."""
+        return "windctl · recipes"
 
     def body(self) -> ComposeResult:
         """The list, and the chosen coil."""
@@ -58,11 +62,14 @@ class RecipesScreen(Room):
                 yield Curve(id="preview-curve")
                 yield Static("", id="preview-cautions", markup=False)
 
-    def on_mount(self) -> None:
-        """Look round."""
+    def __init__(self, session: Session) -> None:
+        super().__init__(session)
         self.recipes: list[Listed] = []
         self.chosen: Preview | None = None
         self.open: tuple[CoilHead, ...] = ()
+
+    def on_mount(self) -> None:
+        """Look round."""
         self.action_reload()
 
     def on_screen_resume(self) -> None:
@@ -120,6 +127,7 @@ class RecipesScreen(Room):
             words = f"◌ open: {head.number}, {head.recipe}{more}.  R goes on with it."
         notice.update(words)
         notice.set_class(bool(words), "-there")
+        self.refresh_bindings()
 
     @on(OptionList.OptionHighlighted)
     def highlighted(self, event: OptionList.OptionHighlighted) -> None:
@@ -143,6 +151,7 @@ class RecipesScreen(Room):
         name.update(one.name)
         section.display = not isinstance(made, str)
         figures.display = not isinstance(made, str)
+        cautions.set_class(isinstance(made, str), "-bad")
         if isinstance(made, str):
             self.chosen = None
             cautions.update(made)
@@ -152,9 +161,17 @@ class RecipesScreen(Room):
         section.show(made.growth, Filled(float(made.plan.turns)))
         curve.show(card_of(made, "").scale, [], bands(made.ahead))
         fit = FITS[made.plan.fits]
+        cautions.set_class(fit.role == "good" and not made.plan.warnings, "-good")
+        cautions.set_class(fit.role == "bad", "-bad")
         cautions.update(
             "\n".join([f"{fit.glyph} {fit.word}", *(f"• {words}" for words in made.plan.warnings)])
         )
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Only what can be done is offered."""
+        if action == "resume":
+            return bool(self.open)
+        return super().check_action(action, parameters)
 
     # ------------------------------------------------------------ going on
 

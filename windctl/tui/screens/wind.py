@@ -6,7 +6,7 @@ from typing import ClassVar
 
 from textual import work
 from textual.app import ComposeResult
-from textual.binding import BindingType
+from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import Static
 
@@ -16,9 +16,8 @@ from windctl.run.runner import Clear, End, Ended, Go, Note
 from windctl.run.snapshot import Snapshot
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.typed import Typed, Word
-from windctl.tui.keymap import key
-from windctl.tui.looks import look_of
-from windctl.tui.outcome_words import outcome_words
+from windctl.tui.keymap import HOLD_KEY, key
+from windctl.tui.outcome_words import after_words, outcome_words
 from windctl.tui.pictures.curve import Point
 from windctl.tui.pictures.section import Filled
 from windctl.tui.recipes import Preview
@@ -26,7 +25,7 @@ from windctl.tui.screens.room import Room
 from windctl.tui.session import Run, Session
 from windctl.tui.telling import tell, when
 from windctl.tui.trail import Trail
-from windctl.tui.view import Glance, Next, bands, glance, sound
+from windctl.tui.view import Glance, bands, glance, sound
 from windctl.tui.widgets.bobbin_section import BobbinSection
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
@@ -53,14 +52,15 @@ class WindScreen(Room):
         "The bell rings when it slows, stands, or trips."
     )
     BINDINGS: ClassVar[list[BindingType]] = [
+        Binding(HOLD_KEY, "hold", "HOLD"),
         key("wind.go"),
         key("wind.clear", show=False),
         key("wind.end"),
         key("wind.leave"),
         key("wind.note"),
         key("wind.closer", show=False),
-        key("wind.done", show=False),
-        key("recipes.again", show=False),
+        key("wind.done"),
+        key("recipes.again"),
     ]
 
     def __init__(self, session: Session, run: Run, preview: Preview | None = None) -> None:
@@ -186,10 +186,8 @@ class WindScreen(Room):
             return
         self.outcome = outcome
         look, words = outcome_words(outcome, self.coil.truth)
-        coming = Next(look.word, "", "Enter shows the record, N the next one, the same")
-        if outcome.left in ("held", "failed", "unconfirmed"):
-            coming = Next("the coil stays open", "", "Enter goes back; R there goes on with it")
-        self.query_one(StateBand).show(look_of("ended" if outcome.error is None else "failed"), coming)
+        self.query_one(StateBand).show(*after_words(outcome, look))
+        self.refresh_bindings()
         verdict = self.query_one("#verdict", Static)
         verdict.update(f"{look.glyph} {words}")
         verdict.styles.color = self.app.theme_variables.get(f"wc-{look.role}", "")
@@ -232,6 +230,10 @@ class WindScreen(Room):
         return super().check_action(action, parameters)
 
     # ------------------------------------------------------------ asking
+
+    def action_hold(self) -> None:
+        """The spindle stands. The key acts before this is asked; a click on it comes here."""
+        self.session.hold()
 
     def action_go(self) -> None:
         """Consent to a start, by a typed word."""

@@ -35,7 +35,10 @@ class BobbinSection(Drawing):
         picture = section.picture(self.filled)
         build = max(growth.at(self.filled.turns))
         final = max(growth.heights_mm[-1])
-        words = f" build {build:.1f}, will be {final:.1f} of {growth.depth_mm:g} mm "
-        if len(words) + 16 <= width:
-            put(picture, height - 1, (width - len(words)) // 2, words, "label")
+        deep = f"of {growth.depth_mm:g} mm "
+        coming = f" build {build:.1f}, will be {final:.1f} {deep}"
+        for words in (*([coming] if final - build > 0.05 else []), f" build {build:.1f} {deep}"):
+            if len(words) + 16 <= width:
+                put(picture, height - 1, (width - len(words)) // 2, words, "label")
+                break
         return picture
