@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from windctl.cli.words import BY, WORDS, help_text, number, request_of
+from windctl.desk.words import BY, WORDS, help_text, number, request_of
 from windctl.run.requests import (
     Broke,
     Clear,

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Protocol
 
 from windctl.cli.progress import Face
 from windctl.cli.prompt import Prompt
-from windctl.cli.words import BY, help_text, request_of
+from windctl.desk.words import BY, help_text, request_of
 from windctl.errors import RunFailed, UsageError, WindctlError
 from windctl.run.requests import Clear, End, Go, Hold, Request, Unwind
 

@@ -25,6 +25,7 @@ _KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
     "wind.go": ("g", "go", "Go"),
     "wind.clear": ("c", "clear", "Clear a trip"),
     "wind.end": ("e", "end", "End the coil here"),
+    "wind.tell": ("t", "tell", "Tell: broke, splice ..."),
     "wind.note": ("n", "note", "Note"),
     "wind.leave": ("l", "leave_open", "Leave it open"),
     "wind.closer": ("v", "closer", "Closer look"),

@@ -30,7 +30,7 @@ from windctl.recipe.load import parse_recipe
 from windctl.record.curve import CurvePoint, review
 from windctl.record.events import CoilStarted, Event
 from windctl.run.outcome import Outcome
-from windctl.run.runner import Hold
+from windctl.run.requests import Hold
 from windctl.run.wind import Order, Winding, begin, go_on
 from windctl.tui import recipes
 from windctl.tui.pictures.curve import Point

@@ -14,14 +14,19 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    HandsAsked,
     Held,
     HoldRequested,
     LinkLost,
     NoteMade,
     Resumed,
+    Spliced,
     StopPointChosen,
     Tripped,
+    Unwound,
     WentOn,
+    WireBroke,
+    WireChanged,
 )
 
 _CAUSES = {
@@ -66,6 +71,17 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             return f"turn set to {grouped(event.turn, 1)} by {_by(event.by)}: {event.reason}"
         case CommandRefused():
             return f"the board declined: {_words(Refusal(event.refused.why).name)}"
+        case HandsAsked():
+            return f"drives off: {event.reason}"
+        case WireBroke():
+            return f"the wire broke at turn {grouped(event.turn, 1)}"
+        case Spliced():
+            return f"spliced at turn {grouped(event.turn, 1)}"
+        case WireChanged():
+            name = f" ({event.spool})" if event.spool else ""
+            return f"another spool{name} from turn {grouped(event.turn, 1)} on"
+        case Unwound():
+            return f"unwound from turn {turn(event.before)} to {turn(event.count)}"
         case NoteMade():
             return f"note: {event.text}"
         case CoilFinished():

@@ -112,7 +112,9 @@ def next_of(snapshot: Snapshot) -> Next:
         word = "goes on" if snapshot.turns > 0 else "starts"
         return Next(_sentence(snapshot.says), "", f"{word} when you press G")
     if snapshot.asks == "clear":
-        return Next(_sentence(snapshot.says), "", "look to the cause, then press C")
+        return Next(_sentence(snapshot.says), "", "put it right, then press C")
+    if snapshot.asks == "place":
+        return Next(_sentence(snapshot.says), "", "count the turns, T: turn and their number")
     if snapshot.phase == "stopping":
         return Next("comes to rest")
     return Next(_sentence(snapshot.says))
@@ -161,8 +163,10 @@ def target_text(card: Card) -> str:
 def _alarm(snapshot: Snapshot) -> str:
     if snapshot.phase != "tripped":
         return ""
-    what = _sentence(snapshot.says)
-    return f"Tripped: {what}. Look to the cause at the machine; C clears it. Nothing turns by that."
+    lost = ""
+    if snapshot.wire_ends_at is not None:
+        lost = f" What was counted beyond turn {grouped(snapshot.wire_ends_at, 1)} is without wire."
+    return f"{_sentence(snapshot.says)}.{lost} When it is put right, C clears it; nothing turns by that."
 
 
 def _ohm(value: float, half_width: float = 0.0) -> str:

@@ -10,11 +10,14 @@ from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import Static
 
+from windctl.desk.words import help_text, request_of
 from windctl.errors import WindctlError
 from windctl.run.outcome import Outcome
-from windctl.run.runner import Clear, End, Ended, Go, Note
+from windctl.run.requests import Clear, End, Go, Note
+from windctl.run.runner import Ended
 from windctl.run.snapshot import Snapshot
 from windctl.tui.dialogs.confirm import Confirm
+from windctl.tui.dialogs.tell import Tell
 from windctl.tui.dialogs.typed import Typed, Word
 from windctl.tui.keymap import HOLD_KEY, key
 from windctl.tui.outcome_words import after_words, outcome_words
@@ -55,6 +58,7 @@ class WindScreen(Room):
         Binding(HOLD_KEY, "hold", "HOLD"),
         key("wind.go"),
         key("wind.clear", show=False),
+        key("wind.tell"),
         key("wind.end"),
         key("wind.leave"),
         key("wind.note"),
@@ -112,6 +116,8 @@ class WindScreen(Room):
         snapshot = winding.look()
         if sound(self.latest, snapshot) is not None:
             self.app.bell()
+        if self.latest is not None and snapshot.answers != self.latest.answers:
+            self.notify(snapshot.answer, markup=False)
         self.latest = snapshot
         if self.ended is None and (ended := winding.wait(0.0)) is not None:
             self.ended = ended
@@ -223,7 +229,7 @@ class WindScreen(Room):
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keys of a running coil end with it."""
         running = self.outcome is None
-        if action in ("go", "clear", "end", "note", "leave_open"):
+        if action in ("hold", "go", "clear", "tell", "end", "note", "leave_open"):
             return running
         if action in ("done", "again"):
             return not running
@@ -282,6 +288,18 @@ class WindScreen(Room):
     def _leave_open(self, yes: bool | None) -> None:
         if yes:
             self.session.hold("left open by the operator", leave=True)
+
+    def action_tell(self) -> None:
+        """What happened at the wire, in the words of the vocabulary."""
+        words = f"{self.coil.winding.look().says}\n\n{help_text()}"
+        self.app.push_screen(Tell("What happened?", words, "a line"), self._told)
+
+    def _told(self, line: str | None) -> None:
+        request = None if line is None else request_of(line)
+        if isinstance(request, End):
+            self.action_end()
+        elif request is not None:
+            self.coil.winding.request(request)
 
     def action_note(self) -> None:
         """Write something into the record."""
