@@ -57,6 +57,66 @@ def list_(shared: Shared) -> None:
 
 
 @machine.command()
+@takes("json")
+def ports(shared: Shared) -> None:
+    """The serial ports of this computer: what is on them, whose profile names them, and who has them."""
+    from windctl.machine.port_lock import holder_of
+    from windctl.machine.ports_listed import listed_ports
+
+    owners = _owners()
+    rows = []
+    for port in listed_ports():
+        holder = holder_of(port.url)
+        busy = None if holder is None else {"pid": holder.pid, "coil": holder.coil, "since": holder.since}
+        rows.append(
+            {
+                "port": port.url,
+                "description": port.description,
+                "usb": port.usb or None,
+                "serial_number": port.serial_number or None,
+                "machines": owners.get(port.url, []),
+                "in_use": busy,
+            }
+        )
+    if shared.json:
+        present.result_json({"ports": rows})
+        return
+    if not rows:
+        present.message(
+            "no serial port is there; plug the board in, and on Linux see that you are in group dialout"
+        )
+        return
+    present.table(
+        ["port", "on it", "usb", "machine", ""],
+        [
+            [
+                str(row["port"]),
+                str(row["description"]),
+                str(row["usb"] or ""),
+                ", ".join(owners.get(str(row["port"]), [])),
+                "in use" if row["in_use"] else "",
+            ]
+            for row in rows
+        ],
+    )
+
+
+def _owners() -> dict[str, list[str]]:
+    """Names of kept machines by the port that their profile names. Profiles that are invalid name none."""
+    from windctl.profile.load import load_profile
+
+    owners: dict[str, list[str]] = {}
+    for name, file in kept_profiles().items():
+        try:
+            url = load_profile(file).port.url
+        except ProfileError:
+            continue
+        if url is not None:
+            owners.setdefault(url, []).append(name)
+    return owners
+
+
+@machine.command()
 @click.option(
     "--recipe",
     type=click.Path(path_type=Path),

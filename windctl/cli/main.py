@@ -23,6 +23,7 @@ COMMANDS = {
     "coils": "windctl.cli.coils:coils",
     "machine": "windctl.cli.machine:machine",
     "recipe": "windctl.cli.recipe:recipe",
+    "diagnose": "windctl.cli.diagnose:diagnose",
 }
 
 INTERFACE = ("windctl.tui.start", "start")

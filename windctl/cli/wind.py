@@ -132,7 +132,7 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
     from windctl.cli.progress import face_for
     from windctl.cli.prompt import Prompt
     from windctl.cli.watch import stand_by
-    from windctl.desk.log import faults_of_threads
+    from windctl.desk.log import faults_of_threads, note
 
     if not shared.quiet:
         present.message(f"coil {winding.number} on {bench.name}")
@@ -143,6 +143,7 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
         finally:
             outcome = winding.close()
     answer = outcome.as_json()
+    note(f"coil {outcome.number}: {answer['outcome']}, {answer['reason']}")
     if bench.truth is not None:
         truth = bench.truth()
         answer["plant"] = {

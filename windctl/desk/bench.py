@@ -6,15 +6,18 @@ import getpass
 import secrets
 import uuid
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from datetime import datetime
 from typing import TYPE_CHECKING
 
+from windctl.desk import places
+from windctl.desk.log import note
 from windctl.errors import UsageError
 
 if TYPE_CHECKING:
     from windctl.desk.asked import Shared
+    from windctl.machine.line_trace import LineTrace
     from windctl.machine.ports import Port
     from windctl.machine.virtual.plant import PlantTruth
     from windctl.profile.model import MachineProfile
@@ -50,6 +53,7 @@ def open_bench(
     Raises MachineError when the port is not there or busy, UsageError for options that have no meaning on it.
     """
     if not simulated:
+        from windctl.machine.line_trace import LineTrace
         from windctl.machine.serial_port import SerialPort
 
         for name, value in (("--speed", shared.speed), ("--plant-seed", shared.plant_seed)):
@@ -57,11 +61,15 @@ def open_bench(
                 raise UsageError(f"{name} is for a machine simulated in this process, not for a port")
         assert profile.port.url is not None
         coil = "" if started is None else started.number
-        port = SerialPort(profile.port.url, profile.port.baud, coil=coil)
+        trace = LineTrace()
+        port = SerialPort(profile.port.url, profile.port.baud, coil=coil, trace=trace)
+        note(f"{profile.name}: opened {profile.port.url} at {profile.port.baud} baud for {recipe.name}")
         try:
             yield Bench(profile.name, port, _here(), None)
         finally:
             port.close()
+            note(f"{profile.name}: closed {profile.port.url}")
+            _keep(trace, f"{profile.name} at {profile.port.url}, {recipe.name}")
         return
 
     from windctl.machine.virtual.bench import virtual_bench
@@ -74,8 +82,18 @@ def open_bench(
 
         # The simulated coil went with the process that wound it: the same wire is laid again up to there.
         machine.plant.wound_already(shared.at_turn, unpacked(started.program_packed))
+    note(f"{profile.name}: simulated, plant seed {seed}, for {recipe.name}")
     simulated_port = VirtualPort(machine, shared.speed or 0.0)
     yield Bench(f"{profile.name}{_SEED_MARK}{seed}", simulated_port, _here(), simulated_port.truth)
+
+
+def _keep(trace: LineTrace, about: str) -> None:
+    """Leave the last bytes of the line beside the log, for `windctl diagnose`. A run never ends on it."""
+    file = places.line_trace_file()
+    closed = datetime.now().astimezone().isoformat(timespec="seconds")
+    with suppress(OSError):
+        file.parent.mkdir(parents=True, exist_ok=True)
+        file.write_text(f"# {about}, closed {closed}\n{trace.text()}", encoding="utf-8")
 
 
 def _seed_of(started: CoilStarted | None) -> int:

@@ -37,6 +37,12 @@ def start_log() -> Path | None:
     return path
 
 
+def note(text: str) -> None:
+    """A line about the work: what was begun, on what, and how it ended. Nothing where no log can be kept."""
+    if start_log() is not None:
+        logging.getLogger("windctl").info(text)
+
+
 def log_fault(error: BaseException) -> Path | None:
     """Write an unforeseen exception with its traceback to the log; where that is, or None if it cannot be."""
     path = start_log()

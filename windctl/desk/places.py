@@ -25,3 +25,8 @@ def settings_file() -> Path:
 def log_file() -> Path:
     """The newest of the rotating log files."""
     return platformdirs.user_log_path("windctl", appauthor=False) / "windctl.log"
+
+
+def line_trace_file() -> Path:
+    """The last bytes to and from a real board, beside the log."""
+    return log_file().with_name("last-line.txt")

@@ -109,6 +109,22 @@ def read_holder(path: Path) -> Holder | None:
         return None
 
 
+def holder_of(url: str, folder: Path | None = None) -> Holder | None:
+    """Who uses a port now, or None. Asking takes no lock from anybody and leaves no file behind."""
+    path = (lock_folder() if folder is None else folder) / lock_name(url)
+    try:
+        file = os.open(path, os.O_RDWR)
+    except OSError:
+        return None
+    try:
+        _lock(file)
+    except OSError:
+        return read_holder(path)
+    finally:
+        os.close(file)
+    return None
+
+
 def _busy(url: str, holder: Holder | None) -> str:
     if holder is None:
         return f"port {url} is in use by another windctl process; end that one first"

@@ -14,6 +14,7 @@ from pathlib import Path
 from typing import Protocol
 
 from windctl.errors import LinkLost, MachineError
+from windctl.machine.line_trace import FROM_BOARD, TO_BOARD, LineTrace
 from windctl.machine.port_lock import PortLock
 
 # What one read takes at most, so that a babbling line cannot keep the runner from its work.
@@ -42,7 +43,8 @@ class SerialPort:
     """A `windctl.machine.ports.Port` on a serial line.
 
     `url` is a device ("/dev/ttyUSB0", "COM3") or any pyserial URL ("socket://host:port"), `baud` its rate.
-    Raises MachineError when it cannot be opened or somebody else has it.
+    `trace`, where given, gets the last bytes each way. Raises MachineError when it cannot be opened or
+    somebody else has it.
     """
 
     simulated = False
@@ -55,8 +57,10 @@ class SerialPort:
         coil: str = "",
         lock_folder: Path | None = None,
         open_line: Callable[[str, int], Line] | None = None,
+        trace: LineTrace | None = None,
     ) -> None:
         self.url = url
+        self._trace = trace
         self._lost: str | None = None
         self._lock = PortLock(url, coil=coil, folder=lock_folder)
         try:
@@ -77,12 +81,17 @@ class SerialPort:
             got = bytearray(line.read(1))
             while got and len(got) < READ_LIMIT and (waiting := line.in_waiting):
                 got += line.read(min(waiting, READ_LIMIT - len(got)))
-            return bytes(got)
+        data = bytes(got)
+        if data and self._trace is not None:
+            self._trace.add(time.monotonic(), FROM_BOARD, data)
+        return data
 
     def write(self, data: bytes) -> None:
         """Hand `data` to the line. Raises LinkLost, also when the line does not take it in time."""
         if not data:
             return
+        if self._trace is not None:
+            self._trace.add(time.monotonic(), TO_BOARD, data)
         with self._link() as line:
             line.write(data)
 
