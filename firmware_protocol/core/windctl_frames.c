@@ -77,7 +77,7 @@ uint16_t windctl_read_crc(const struct windctl_reader *reader)
 {
     const uint8_t *crc = reader->inside + 2 + reader->size;
 
-    return (uint16_t)((uint16_t)(crc[0] << 8) | crc[1]);
+    return (uint16_t)((uint16_t)crc[0] << 8 | crc[1]);
 }
 
 /* A COBS block under way: where its code byte goes, and what that will be. */

@@ -2,7 +2,7 @@
 
     python -m tests.firmware.build FOLDER     the core as a shared library, FOLDER/libwindctl.so
 
-A compiler that is missing is a `MissingTool`; conftest.py makes that a skip that says so, and in CI a failure.
+A compiler that is missing is a `MissingTool`; conftest.py makes of it a skip that says so, in CI a failure.
 """
 
 from __future__ import annotations
@@ -23,9 +23,10 @@ CORE: Final = ROOT / "firmware_protocol" / "core"
 HOST: Final = ROOT / "firmware_protocol" / "ports" / "host"
 
 WARNINGS: Final = (
-    "-std=c99 -pedantic -Wall -Wextra -Wconversion -Wsign-conversion -Wshadow -Wmissing-prototypes -Werror"
-).split()
-AVR: Final = "-mmcu=atmega328p -Os".split()
+    "-std=c99", "-pedantic", "-Wall", "-Wextra", "-Wconversion", "-Wsign-conversion", "-Wshadow",
+    "-Wmissing-prototypes", "-Werror",
+)  # fmt: skip
+AVR: Final = ("-mmcu=atmega328p", "-Os")
 PACKAGES: Final = {"cc": "gcc", "gcc": "gcc", "clang": "clang", "avr-gcc": "gcc-avr avr-libc"}
 
 
@@ -55,7 +56,7 @@ def find(tool: str) -> str:
 
 
 def run(tool: str, arguments: Sequence[str | Path], *, cwd: Path | None = None) -> str:
-    """Runs a compiler or binary tool; returns what it printed. Raises BuildError with what it complained of."""
+    """Runs a compiler or binary tool; returns what it printed. Raises BuildError with its complaint."""
     command = [find(tool), *map(str, arguments)]
     done = subprocess.run(command, capture_output=True, text=True, timeout=120, check=False, cwd=cwd)
     if done.returncode:

@@ -1,4 +1,4 @@
-"""What the firmware's tests are built with; a compiler that is missing is said clearly, and in CI is a failure."""
+"""What the firmware's tests are built with; a missing compiler is a skip that says so, in CI a failure."""
 
 from __future__ import annotations
 
@@ -8,6 +8,7 @@ from collections.abc import Callable
 import pytest
 
 from tests.firmware.build import MissingTool, find
+from tests.firmware.recording import Recorded, record
 
 
 @pytest.fixture(scope="session")
@@ -30,3 +31,9 @@ def tool() -> Callable[[str], str]:
 def cc(tool: Callable[[str], str]) -> str:
     """Any C compiler."""
     return tool("cc")
+
+
+@pytest.fixture(scope="session")
+def recorded() -> Recorded:
+    """Plays by hand and random ticks on the virtual machine's board."""
+    return record()

@@ -9,7 +9,7 @@ from tests.machine.ideal import COUNTER_ONLY, HAND_GUIDED, LIMITS, Machine
 from windctl.machine.virtual.board import EVERYTHING
 from windctl.machine.virtual.signals import ALL_OK, GUARD_OK, PEDAL_DOWN, STOP_OK
 from windctl.protocol import messages as m
-from windctl.protocol.messages import Capability, Cause, State, Trip
+from windctl.protocol.messages import Capability, Cause, Refusal, State, Trip
 
 SLOW = {"max_pace": 1000, "accel": 65_535, "decel": 100}
 
@@ -49,6 +49,77 @@ def refusals(trace: Trace) -> None:
     machine.pins &= ~PEDAL_DOWN
     machine.run_to_rest()
     assert machine.board.cause == Cause.PEDAL
+    for count in (-(1 << 30) - 1, (1 << 30) + 1):
+        machine.ask(m.SetDatum(*machine.consent, 1, count, 0, 0, 0))
+    machine = machine_on(trace, capabilities=0)
+    machine.greet()
+    machine.ask(m.Measure(100, 0))  # no contact
+    machine.ask(m.Setup(**LIMITS))  # nothing fitted
+
+
+def ranges(trace: Trace) -> None:
+    """A Setup beyond each of its bounds, and one that is there already."""
+    machine = machine_on(trace)
+    machine.greet()
+    for beyond in (
+        {"counts_per_turn": 0}, {"counts_per_turn": 401}, {"steps_per_turn": 0}, {"steps_per_turn": 801},
+        {"max_count": 0}, {"max_count": (1 << 30) + 1}, {"max_count": 0xFFFFFFFF}, {"max_pace": 0},
+        {"max_pace": 15_001}, {"accel": 99}, {"decel": 99}, {"decel": 799}, {"guide_max": -4001},
+        {"guide_min": 4001}, {"tension_low": 200, "tension_high": 199}, {"rotation": 2},
+    ):  # fmt: skip
+        assert machine.refusal(m.Setup(**LIMITS | beyond))[0] == Refusal.RANGE
+    bounds = {
+        "counts_per_turn": 400, "steps_per_turn": 800, "max_count": 1 << 30, "max_pace": 15_000,
+        "decel": 1500, "accel": 100, "guide_min": -0x80000000, "guide_max": -0x80000000, "tension_low": 65_535,
+        "rotation": 1,
+    }  # fmt: skip
+    machine.do(m.Setup(**LIMITS | bounds))
+    machine.do(m.Setup(**LIMITS | bounds))
+    machine.do(m.SetDatum(*machine.consent, 1, 0, -0x80000000, 0, 0))
+
+
+def late_frames(trace: Trace) -> None:
+    """What was sent before a greeting and arrives after it, under the very number of the greeting."""
+    machine = machine_on(trace)
+    machine.greet(nonce=1)
+    frame = machine.say(m.Setup(**LIMITS))
+    machine.run()
+    machine.wire(frame)
+    machine.run()
+    machine.sequence -= 1
+    machine.greet(nonce=2)
+    machine.wire(frame)
+    machine.run()
+    answers = [h for h in machine.heard if isinstance(h, m.Accepted | m.Refused)]
+    assert [type(answer) for answer in answers] == [m.Accepted, m.Accepted, m.Refused]
+
+
+def lost_index(trace: Trace) -> None:
+    """An index that stays away, and one that comes elsewhere."""
+    machine = machine_on(trace).winding()
+    machine.index = False
+    machine.run_to_rest()
+    assert machine.board.trip == Trip.INDEX
+    machine.do(m.ClearTrip(*machine.consent))
+    machine.arm()
+    assert machine.refusal(m.Go(*machine.consent)) == (Refusal.NO_DATUM, m.Trust.GUIDE)
+    machine = machine_on(trace).winding()
+    machine.turn(60)
+    machine.run(100)
+    machine.run_to_rest()
+    assert machine.board.state == State.TRIPPED
+
+
+def second_lock(trace: Trace) -> None:
+    """Go looks at the inputs itself, though no board comes to be ready with one open unless it is broken."""
+    machine = machine_on(trace).prepare()
+    machine.pins = ALL_OK & ~STOP_OK
+    machine.run()
+    machine.board.set_state(State.READY)
+    assert machine.refusal(m.Go(*machine.consent)) == (Refusal.INPUT_OPEN, machine.pins)
+    machine.board.set_state(99)
+    machine.run(70)
+    assert machine.board.trip == Trip.INTERNAL
 
 
 def inputs(trace: Trace) -> None:
@@ -62,6 +133,11 @@ def inputs(trace: Trace) -> None:
         machine.pins = ALL_OK
         machine.run()
         machine.do(m.ClearTrip(*machine.consent))
+    for tension, trip in ((900, Trip.TENSION_LOW), (2100, Trip.TENSION_HIGH)):
+        machine = machine_on(trace).prepare(tension_low=1000, tension_high=2000).arm().go()
+        machine.tension = tension
+        machine.run_to_rest()
+        assert machine.board.trip == trip
     machine = machine_on(trace).prepare()
     machine.pins = ALL_OK & ~GUARD_OK
     machine.run()
@@ -77,6 +153,27 @@ def inputs(trace: Trace) -> None:
     machine.do(m.GuideTo(*machine.consent, 4000, 1))
     machine.run(2100)  # silence
     assert machine.board.cause == Cause.SILENCE
+
+
+def pedal(trace: Trace) -> None:
+    """Let go, and pressed again while it still brakes."""
+    machine = machine_on(trace).prepare(fitted=HAND_GUIDED | int(Capability.PEDAL), decel=1000)
+    machine.arm(pace=3000)
+    machine.pins |= PEDAL_DOWN
+    machine.run(30)
+    machine.go()
+    machine.run(800)
+    machine.pins &= ~PEDAL_DOWN
+    machine.run(10)
+    machine.pins |= PEDAL_DOWN
+    machine.run(10)
+    machine.pins &= ~PEDAL_DOWN  # bounces
+    machine.run()
+    machine.pins |= PEDAL_DOWN
+    machine.run(30)
+    assert machine.board.pedal_fresh
+    assert not machine.board.standing
+    machine.run_to_rest()
 
 
 def by_hand(trace: Trace) -> None:
@@ -100,11 +197,11 @@ def ends(trace: Trace) -> None:
     machine = machine_on(trace).prepare([(400, 14)] * 3).arm(pace=3000).go()
     machine.run_to_rest()
     assert machine.board.cause == Cause.QUEUE_END
-    machine = machine_on(trace).winding(max_count=8000, fitted=HAND_GUIDED)
+    machine = machine_on(trace).winding(pace=3000, max_count=8000, fitted=HAND_GUIDED)
     machine.run_to_rest()
     assert machine.board.cause == Cause.MAX_COUNT
-    for stop in (0, 4000, 4500, 7990):
-        machine = machine_on(trace).winding(max_count=8000, fitted=HAND_GUIDED)
+    for stop in (0, 4000, 5000, 7990):
+        machine = machine_on(trace).winding(pace=3000, max_count=8000, fitted=HAND_GUIDED)
         machine.losing = 500
         machine.do(m.StopAt(*machine.consent, stop))
         machine.run_to_rest()
@@ -113,7 +210,9 @@ def ends(trace: Trace) -> None:
 
 def ages(trace: Trace) -> None:
     """Turns and revolutions too slow to be waited for."""
-    machine = machine_on(trace).prepare(fitted=HAND_GUIDED | Capability.TENSION, steps_per_turn=70, counts_per_turn=7)
+    machine = machine_on(trace).prepare(
+        fitted=HAND_GUIDED | Capability.TENSION, steps_per_turn=70, counts_per_turn=7
+    )
     machine.arm(pace=1, stop=100)
     machine.do(m.Measure(100, 0))
     machine.go()
@@ -134,5 +233,5 @@ def absurd(trace: Trace) -> None:
         machine.run_to_rest()
 
 
-SHORT = (refusals, inputs, by_hand, ends, absurd)
+SHORT = (refusals, ranges, late_frames, lost_index, second_lock, inputs, pedal, by_hand, ends, absurd)
 LENGTHY = (ages,)

@@ -11,7 +11,7 @@ import pytest
 
 from tests.firmware.build import AVR, CORE, HOST, WARNINGS, core_sources, includes, run
 
-# What a freestanding C compiler may call by itself (C99 4 leaves it to the compiler; gcc's manual lists these four).
+# What a freestanding C compiler may call by itself: gcc's manual, section "Language Standards", lists these.
 COMPILERS_OWN = {"memcpy", "memmove", "memset", "memcmp"}
 
 # Where the core divides, and what for: never in a tick in which nothing but counts, steps and samples come.
@@ -105,7 +105,9 @@ def test_its_memory_leaves_room_on_a_chip_with_2_kilobytes(
     tool: Callable[[str], str], tmp_path: Path
 ) -> None:
     source = tmp_path / "size.c"
-    source.write_text('#include "windctl_core.h"\nchar core[sizeof(struct windctl_core)];\n', encoding="utf-8")
+    source.write_text(
+        '#include "windctl_core.h"\nchar core[sizeof(struct windctl_core)];\n', encoding="utf-8"
+    )
     run(tool("avr-gcc"), [*AVR, "-std=c99", *includes(), "-c", source, "-o", tmp_path / "size.o"])
     [size] = re.findall(r"^\S+ (\S+) . core$", run("avr-nm", ["-S", tmp_path / "size.o"]), re.MULTILINE)
     print(f"struct windctl_core: {int(size, 16)} bytes on the ATmega328P")

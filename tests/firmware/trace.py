@@ -1,4 +1,4 @@
-"""Traces: what a board was given and what it put out, tick by tick, for play.c to compare another core with."""
+"""Traces: what a board was given and what it put out, tick by tick; play.c holds another core to them."""
 
 from __future__ import annotations
 

@@ -30,7 +30,9 @@ class WildHost:
         self._plant = plant
         self._hostility = rng.choice((0.0, 0.02, 0.2))  # share of what it says that is meant to harm
         self._untimely = rng.choice((0.02, 0.02, 0.2))  # share of commands at any time
-        self._fickle = rng.choice((0.1, 0.1, 0.5))  # share of moving the guide, measuring, disarming, before Go
+        self._fickle = rng.choice(
+            (0.1, 0.1, 0.5)
+        )  # share of moving the guide, measuring, disarming, before Go
         self._dumb = rng.choice((0.001, 0.001, 0.05))  # share of falling silent
         self._wire = bytearray()
         self._speed = rng.choice((3, 11, 11, 60, 1000))  # bytes a tick
@@ -50,7 +52,7 @@ class WildHost:
             self._beat_in = self._rng.choice((100, 500, 500, 1900))
             self._wire += encode(m.Beat.CODE, 0, b"")
         self._wait -= 1
-        if self._wait <= 0 and not self._wire:
+        if self._wait <= 0 and not self._wire and not (self._silent and self._rng.random() < 0.95):
             self._wait = self._rng.choice((1, 1, 1, 5, 20, 60))
             self._act()
         piece = bytes(self._wire[: self._speed])
@@ -67,7 +69,7 @@ class WildHost:
         elif board.dialogue.greeted and draw < self._hostility + self._untimely:
             self._say(self._any_command())
         elif rng.random() < self._dumb:
-            self._silent = 3000
+            self._silent = 2200
         elif not board.dialogue.greeted:
             self._greet()
         else:
@@ -105,7 +107,9 @@ class WildHost:
         elif board.spindle.pace == 0 or rng.random() < 0.15:
             self._say(self._pace())
         elif board.target() <= board.count and rng.random() < 0.8:
-            further = (self._datum, self._stop_at, self._lay) if self._guided else (self._datum, self._stop_at)
+            further = (
+                (self._datum, self._stop_at, self._lay) if self._guided else (self._datum, self._stop_at)
+            )
             self._say(rng.choice(further)())
         elif self._hungry and rng.random() < 0.5:
             self._say(self._lay())

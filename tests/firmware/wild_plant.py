@@ -24,7 +24,7 @@ FAULTS = (
 
 
 class WildPlant:
-    """Steps become counts, an index, tension and a contact's reading. `faults`: how often, in 100 000 ticks."""
+    """Steps become counts, an index, tension, a contact's reading. `faults`: how often in 100 000 ticks."""
 
     def __init__(self, rng: random.Random, faults: int) -> None:
         self._rng = rng
