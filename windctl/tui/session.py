@@ -97,6 +97,7 @@ class Session:
         self.shared = shared
         self._folders = folders
         self._lock = threading.Lock()
+        self._leaving = threading.Event()
         self._stack: ExitStack | None = None
         self._bench: Bench | None = None
         self.run: Run | None = None
@@ -192,6 +193,7 @@ class Session:
         return bench, book
 
     def _started(self, stack: ExitStack, run: Run) -> Run:
+        self._leaving.clear()
         run.winding.start()
         with self._lock:
             self._stack = stack.pop_all()
@@ -203,6 +205,8 @@ class Session:
         run = self.run
         if run is None:
             return False
+        if leave:
+            self._leaving.set()
         run.winding.request(Hold("operator", reason, leave=leave))
         return True
 
@@ -231,7 +235,8 @@ class Session:
         run = self.run
         if run is None:
             return None
-        self.hold(reason, leave=True)
+        if not self._leaving.is_set():
+            self.hold(reason, leave=True)
         run.winding.wait(LEAVING_S)
         return self.finish()
 

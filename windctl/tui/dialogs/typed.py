@@ -6,6 +6,7 @@ from textual import on
 from textual.widget import Widget
 from textual.widgets import Input
 
+from windctl.desk.words import number
 from windctl.tui.dialogs.dialog import Dialog
 
 
@@ -52,3 +53,11 @@ class Word(Typed):
     def will_do(self, line: str) -> bool:
         """Only the word."""
         return line.lower() == self._word
+
+
+class Figure(Typed):
+    """A number, with either decimal sign."""
+
+    def will_do(self, line: str) -> bool:
+        """Only a number."""
+        return number(line) is not None

@@ -43,10 +43,10 @@ class CoilScreen(Room):
         with Horizontal(id="coil-body"):
             with Vertical(id="coil-left"):
                 yield Figures(id="coil-figures")
-                yield Static("", id="coil-answer", markup=False)
             with Vertical(id="coil-right"):
                 yield Curve(id="coil-curve")
                 yield Curve(closer=True, id="coil-closer")
+        yield Static("", id="coil-answer", markup=False)
         yield RichLog(id="coil-events", wrap=True, markup=False, highlight=False, auto_scroll=False)
 
     def on_mount(self) -> None:

@@ -13,11 +13,12 @@ from textual.widgets import OptionList, Static
 from textual.widgets.option_list import Option
 
 from windctl.book.heads import CoilHead
+from windctl.desk.words import number
 from windctl.errors import WindctlError
 from windctl.tui.before_words import figures_of
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.say import Say
-from windctl.tui.dialogs.typed import Typed
+from windctl.tui.dialogs.typed import Figure
 from windctl.tui.keymap import key
 from windctl.tui.looks import FITS
 from windctl.tui.pictures.section import Filled
@@ -215,22 +216,17 @@ class RecipesScreen(Room):
 
     def wind(self, run: Run) -> None:
         """To the coil."""
-        self.app.push_screen(WindScreen(self.session, run), self._turn_wanted)
+        self.app.push_screen(WindScreen(self.session, run))
 
-    def _turn_wanted(self, number: str | None) -> None:
-        """The board no longer knew the turn: it is typed, and the coil taken up again."""
-        if number is None:
-            return
+    def ask_turn(self, coil: str, why: str) -> None:
+        """The board no longer knows the turn: it is typed, and the coil taken up again."""
 
         def taken(line: str | None) -> None:
-            if line is None:
-                return
-            try:
-                turn = float(line.replace(",", ".").replace(" ", ""))
-            except ValueError:
-                self.notify(f"{line!r} is no number of turns", severity="error", markup=False)
-                return
-            self.resume(number, turn)
+            turn = None if line is None else number(line)
+            if turn is not None:
+                self.resume(coil, turn)
 
-        words = "The board no longer knows where the coil stands. Count the turns, or read the hand counter."
-        self.app.push_screen(Typed(f"At which turn is {number}?", words, "turns"), taken)
+        words = (
+            f"{why}.\n\nCount the turns, or read the hand counter; a simulated coil is where its record ends."
+        )
+        self.app.push_screen(Figure(f"At which turn is {coil}?", words, "turns"), taken)

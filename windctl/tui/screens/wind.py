@@ -188,7 +188,7 @@ class WindScreen(Room):
         """Say how it went; Enter shows the record."""
         self.draw()
         if outcome.left == "turn wanted":
-            self.dismiss_with(outcome.number)
+            self.back_for_the_turn(outcome)
             return
         self.outcome = outcome
         look, words = outcome_words(outcome, self.coil.truth)
@@ -200,12 +200,12 @@ class WindScreen(Room):
         verdict.set_class(True, "-there")
         self.app.bell()
 
-    def dismiss_with(self, number: str) -> None:
+    def back_for_the_turn(self, outcome: Outcome) -> None:
         """Back to the recipes, which ask for the turn."""
         self.app.pop_screen()
-        ask = getattr(self.app.screen, "_turn_wanted", None)
+        ask = getattr(self.app.screen, "ask_turn", None)
         if ask is not None:
-            ask(number)
+            ask(outcome.number, outcome.why)
 
     def action_done(self) -> None:
         """From the end of a coil to its record."""

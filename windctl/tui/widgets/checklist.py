@@ -13,9 +13,12 @@ from textual.widgets.option_list import Option
 
 
 class Checklist(OptionList):
-    """Enter or Space confirms the line and goes on to the next; again takes it back."""
+    """Enter or Space confirms the line and goes on to the next; Backspace takes it back."""
 
-    BINDINGS: ClassVar[list[BindingType]] = [Binding("space", "select", "Confirm", show=False)]
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("space", "select", "Confirm", show=False),
+        Binding("backspace", "take_back", "Take back", show=False),
+    ]
 
     class Changed(Message):
         """A line was confirmed or taken back."""
@@ -35,13 +38,20 @@ class Checklist(OptionList):
         return all(self.done)
 
     def on_option_list_option_selected(self, event: OptionList.OptionSelected) -> None:
-        """Confirm, or take back."""
+        """Confirm, and go on."""
         event.stop()
-        at = event.option_index
-        self.done[at] = not self.done[at]
+        self._set(event.option_index, True)
+        if event.option_index + 1 < len(self.items):
+            self.highlighted = event.option_index + 1
+
+    def action_take_back(self) -> None:
+        """The line is not confirmed after all."""
+        if self.highlighted is not None:
+            self._set(self.highlighted, False)
+
+    def _set(self, at: int, done: bool) -> None:
+        self.done[at] = done
         self.replace_option_prompt_at_index(at, self._line(at))
-        if self.done[at] and at + 1 < len(self.items):
-            self.highlighted = at + 1
         self.post_message(self.Changed(self.complete))
 
     def _line(self, at: int) -> Content:
