@@ -162,7 +162,7 @@ def seal(book: Book, writer: CoilWriter) -> CoilHead:
     """Close a coil with what its own facts say, as a run does."""
     events = list(book.events(writer.id))
     seen = review(events)
-    return writer.seal(summarise(seen.state), seen.curve, trace_digest(events), ENDED)
+    return writer.seal(summarise(seen.state), seen.curve, trace_digest(book.entries(writer.id)), ENDED)
 
 
 def wind(book: Book, n: int = 1, *, bench: str = "b1", turns: int = 30, **changes: Any) -> CoilHead:

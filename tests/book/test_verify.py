@@ -107,7 +107,7 @@ def test_the_curve_of_another_version_rests_on_its_seal_alone(book: Book, path: 
     events = list(book.events("1"))
     seen = review(events)
     points = [dataclasses.replace(point, final_ohm=point.final_ohm + 1.0) for point in seen.curve]
-    writer.seal(summarise(seen.state), points, trace_digest(events), "2026-05-04T09:00:00+02:00")
+    writer.seal(summarise(seen.state), points, trace_digest(book.entries("1")), "2026-05-04T09:00:00+02:00")
     assert book.verify().broken == ()
     with closing(sqlite3.connect(path, isolation_level=None)) as connection:
         connection.execute("UPDATE curve SET final_ohm = final_ohm + 1e-9 WHERE seq = 0")

@@ -141,7 +141,7 @@ def test_a_closed_coil_has_its_summary_curve_and_digests(book: Book, path: Path)
     assert rows[-1][1] == "sealed"
     events = list(book.events(head.id))
     assert list(book.curve(head.id)) == list(review(events).curve) != []
-    assert head.trace_digest == trace_digest(events)
+    assert head.trace_digest == trace_digest(book.entries(head.id))
     assert files_beside(path) == []
 
 
@@ -170,7 +170,7 @@ def test_the_last_rows_and_the_seal_are_one_transaction(book: Book) -> None:
     with book.begin_coil("b1", 2026, started(1)) as writer:
         rest = [*wound(writer.started), finished()]
         seen = review([writer.started, *rest])
-        trace = trace_digest([writer.started, *rest])
+        trace = trace_digest(packed([writer.started, *rest]))
         points = [*seen.curve, dataclasses.replace(seen.curve[0], ohm_20c=math.nan)]
         with pytest.raises(BookError, match="ohm_20c is nan"):
             writer.seal(summarise(seen.state), points, trace, ENDED, packed(rest))

@@ -20,7 +20,7 @@ from windctl.book.queries import StoredRow, wrong_kind
 from windctl.errors import RecordBroken
 from windctl.record.chain import genesis, link
 from windctl.record.curve import CurvePoint, review
-from windctl.record.entries import unpack
+from windctl.record.entries import Entry, unpack
 from windctl.record.events import CoilStarted, Event, Resumed
 from windctl.record.summary import summarise
 from windctl.record.trace import trace_digest
@@ -68,7 +68,7 @@ def check_record(
     if walk.seal is not None or not walk.seal_altered:
         faults += _row_against_seal(head, walk.seal, curve)
     if not walk.faults and walk.events:
-        faults += _against_fold(head, walk.events, [point for _, point in curve])
+        faults += _against_fold(head, walk.entries, walk.events, [point for _, point in curve])
     return faults
 
 
@@ -81,6 +81,7 @@ class _Walk:
         self._next = 0
         self.faults: list[Fault] = []
         self.events: list[Event] = []
+        self.entries: list[Entry] = []
         self.seal: dict[str, object] | None = None
         self.seal_altered = False
 
@@ -134,6 +135,8 @@ class _Walk:
             what = f"row {row.seq} ({entry.kind!r}) holds {len(held)} events, it says {entry.events}"
             self.faults.append(Fault(row.seq, what))
         self.events += held
+        if entry.kind != SEAL:
+            self.entries.append(entry)
 
 
 def _wrong_kinds(head: CoilHead, curve: Sequence[tuple[int, CurvePoint]]) -> Iterator[Fault]:
@@ -193,12 +196,14 @@ def _row_against_seal(
         yield Fault(None, "the curve was altered: it does not agree with the seal")
 
 
-def _against_fold(head: CoilHead, events: list[Event], curve: list[CurvePoint]) -> Iterator[Fault]:
+def _against_fold(
+    head: CoilHead, entries: list[Entry], events: list[Event], curve: list[CurvePoint]
+) -> Iterator[Fault]:
     """The row and the curve once more, from the facts alone."""
     try:
         reviewed = review(events)
         summary = summarise(reviewed.state)
-        trace = trace_digest(events)
+        trace = trace_digest(entries)
     except _UNFOLLOWABLE as error:
         yield Fault(None, f"the events cannot be followed: {type(error).__name__}: {error}")
         return

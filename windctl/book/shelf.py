@@ -14,9 +14,11 @@ from windctl.book.store import Store
 from windctl.book.tables import coils
 from windctl.errors import BookError, RecordBroken
 from windctl.material.enamel import Grade
-from windctl.plan.experience.fold import Teaching
+from windctl.plan.experience.fold import Experience, Teaching
 from windctl.plan.experience.lesson import Lesson
+from windctl.plan.experience.reel import Weighing, left_on
 from windctl.plan.experience.spool import PieceMeasured, Spool
+from windctl.plan.experience.supply import Left
 from windctl.record.addenda import (
     Addendum,
     CoilMeasured,
@@ -182,6 +184,20 @@ def history(lessons: Iterable[CoilLesson], spools: Iterable[SpoolRecord]) -> tup
             piece = PieceMeasured(record.spool.id, fact.ohm_per_m, fact.rel)
             timed.append((_moment(fact.wall_time), 0, f"{record.spool.id} {at:06d}", piece))
     return tuple(teaching for *_, teaching in sorted(timed, key=lambda each: each[:3]))
+
+
+def left_in(record: SpoolRecord, lessons: Iterable[CoilLesson], experience: Experience) -> Left | None:
+    """The wire left on a spool: its last weighing, less all coils begun since, withdrawn ones too. None where
+    it was never weighed."""
+    if not record.weighed:
+        return None
+    last = record.weighed[-1]
+    since = sum(
+        one.lesson.metres
+        for one in lessons
+        if one.lesson.spool == record.spool.id and _moment(one.began) >= _moment(last.wall_time)
+    )
+    return left_on(record.spool, experience, Weighing(last.grams, last.grams_sd, since))
 
 
 def _moment(text: str) -> float:

@@ -112,6 +112,17 @@ def unpack(entries: Iterable[Entry]) -> Iterator[Event]:
             yield decode(entry.kind, entry.payload)
 
 
+def chunk_bytes(entry: Entry) -> bytes:
+    """What a chunk holds, whatever packed it.
+
+    Raises RecordBroken when it cannot be unpacked.
+    """
+    try:
+        return zlib.decompress(entry.payload)
+    except zlib.error as error:
+        raise RecordBroken(f"a stored chunk of readings cannot be read: {error}") from error
+
+
 def _ticks(event: StatusHeard | ReadingTaken) -> int:
     return event.status.ticks if isinstance(event, StatusHeard) else event.reading.ticks
 

@@ -59,6 +59,8 @@ class CoilStarted:
     batch: str
     of: int  # 0: not part of a counted batch
     basis: Basis | None = None  # what the coil is compared with when it teaches; None: an older version's
+    spool_left_m: float | None = None  # wire on the spool as the coil was begun, as far as was known
+    spool_left_sd_m: float | None = None
     guide_pace: int = 200  # motor steps/s at which the guide is brought back to a place, the spindle at rest
 
 

@@ -9,7 +9,8 @@ from windctl.forecast.alarm import find_alarm
 from windctl.forecast.taught import open_minded, taught
 from windctl.plan.experience.lesson import Lesson, Measured
 from windctl.plan.experience.unknowns import meter_rel
-from windctl.record.events import CoilStarted, Event
+from windctl.protocol.messages import Capability
+from windctl.record.events import BoardGreeted, CoilStarted, Event
 from windctl.record.fold import replay
 from windctl.record.state import State
 
@@ -34,6 +35,14 @@ def lesson_of(events: Sequence[Event], bench: str) -> Lesson | None:
         turns=state.turns,
         meter_rel=meter_rel(prior.gain_sd, prior.celsius_sd, prior.coil_over_air_sd),
         measured=_measured(state),
+        simulated=_simulated(events),
+    )
+
+
+def _simulated(events: Sequence[Event]) -> bool:
+    return any(
+        isinstance(event, BoardGreeted) and event.identity.capabilities & Capability.VIRTUAL
+        for event in events
     )
 
 

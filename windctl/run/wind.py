@@ -10,6 +10,7 @@ from __future__ import annotations
 import threading
 import zlib
 from collections.abc import Callable
+from contextlib import suppress
 from dataclasses import dataclass, replace
 
 from windctl import __version__
@@ -22,9 +23,12 @@ from windctl.plan.model import Plan
 from windctl.profile.model import MachineProfile
 from windctl.protocol.messages import Identity
 from windctl.recipe.model import Recipe
+from windctl.record.addenda import CoilTaught
 from windctl.record.curve import review
+from windctl.record.entries import unpack
 from windctl.record.events import CoilStarted, Event, Resumed, Target
 from windctl.record.fold import State, fold, replay, start
+from windctl.record.lesson import lesson_of
 from windctl.record.program import stored
 from windctl.record.summary import CoilSummary, summarise
 from windctl.record.trace import trace_digest
@@ -58,7 +62,6 @@ class Order:
     plan: Plan
     profile: MachineProfile
     machine: str  # the profile's name; of a simulated machine with its plant seed
-    spool: str = ""
     batch: str = ""
     of: int = 0
 
@@ -151,9 +154,10 @@ class Winding:
 
     def _sealed(self, ended: Ended, failure: BookError | None) -> Outcome:
         """The outcome as the record tells it, and sealed if it tells of an end."""
-        events = list(self._book.events(self.number))
+        entries = list(self._book.entries(self.number))
+        events = list(unpack(entries))
         seen = review(events)
-        trace = trace_digest(events)
+        trace = trace_digest(entries)
         if failure is None and seen.state != ended.state:
             raise RecordBroken(
                 f"the record of coil {self.number} does not tell what happened: nothing is sealed"
@@ -161,9 +165,18 @@ class Winding:
         summary = summarise(seen.state)
         if seen.state.finished is not None:
             head = self._writer.seal(summary, seen.curve, trace, self._here.wall_time())
+            self._teach(events, head.bench)
         else:
             head = self._book.find(self.number)
         return self._outcome(ended, failure, summary, trace, head.record_digest)
+
+    def _teach(self, events: list[Event], bench: str) -> None:
+        """Write down what the coil teaches. Where the book does not take it any more, nothing is lost: the
+        coil is sealed, and the lesson is read from its record whenever it is missing."""
+        lesson = lesson_of(events, bench)
+        if lesson is not None:
+            with suppress(BookError):
+                self._book.amend(self.number, CoilTaught(__version__, lesson))
 
     def _outcome(
         self,
@@ -237,6 +250,7 @@ def _guide_pace(profile: MachineProfile) -> int:
 
 def _started(order: Order, here: Here) -> CoilStarted:
     recipe, plan, profile = order.recipe, order.plan, order.profile
+    left = plan.learnt.left
     token = zlib.crc32(here.coil_id.encode())
     stop = recipe.stop
     turns_target = stop.turns is not None
@@ -270,7 +284,10 @@ def _started(order: Order, here: Here) -> CoilStarted:
             else (stop.max_turns or int(plan.program.turns)),
         ),
         planned_turns=float(plan.turns),
-        spool=order.spool,
+        spool=plan.learnt.spool,
         batch=order.batch,
         of=order.of,
+        basis=plan.basis,
+        spool_left_m=None if left is None else left.metres,
+        spool_left_sd_m=None if left is None else left.sd,
     )
