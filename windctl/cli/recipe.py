@@ -44,3 +44,30 @@ def check(shared: Shared, files: tuple[Path, ...]) -> ExitCode:
         for problem in problems:
             present.message(str(problem))
     return ExitCode.FILE_INVALID if problems else ExitCode.DONE
+
+
+@recipe.command()
+def schema() -> None:
+    """The JSON schema of recipe files, for editors: they complete, explain and check while you write.
+
+    Save it beside your recipes and put `#:schema recipe.schema.json` at the top of each.
+    """
+    import json
+
+    from windctl.forms.schema import form_schema
+    from windctl.recipe.model import Recipe
+
+    click.echo(json.dumps(form_schema(Recipe), indent=2))
+
+
+@recipe.command()
+@click.argument("file", type=click.Path(dir_okay=False, path_type=Path))
+@takes("json", "no_input")
+def new(shared: Shared, file: Path) -> None:
+    """Ask a few questions and write FILE, a recipe with a comment on every line.
+
+    Nothing is written over, and nothing before the last answer.
+    """
+    from windctl.cli.recipe_new import write_new
+
+    write_new(shared, file)

@@ -9,16 +9,18 @@ from windctl.coil.fit import Fit
 from windctl.coil.wire_speed import WireSpeed
 from windctl.lay.ribbons import Ribbon, nearest_clear
 from windctl.material.wire import Wire
+from windctl.plan.experience.supply import Left
 from windctl.plan.speeds import accel_rpm_per_s
 from windctl.profile.model import MachineProfile
 from windctl.recipe.model import Recipe
 
-_BREAKS_N_PER_MM2 = 220.0  # annealed copper, 200 to 250 MPa (from memory)
+BREAKS_N_PER_MM2 = 220.0  # annealed copper, 200 to 250 MPa (from memory)
 _ADVISED_PULL = 0.2  # of what breaks the wire. Our judgement
 # Peak wire speed on a bobbin that is not round, over the bare diameter. What guides and brakes the wire is
 # jerked twice a turn; on a given bobbin the jerk goes with the square of the speed, and so does a wire's
 # strength with its diameter: so half as thick a wire takes half the speed. Our judgement
 _FASTEST_M_S_PER_MM = 63.0  # 4.0 m/s for 0.063 mm
+_SURELY_ENOUGH = 2.0  # standard deviations of the wire left
 _PULSING = 1.15  # peak over mean from which a bobbin counts as long. Our judgement
 _OPEN_LAY = 1.5  # pitch over overall diameter from which ribbons have gaps between them. Our judgement
 
@@ -33,12 +35,15 @@ class Outlook:
     fit: Fit
     full_speed: WireSpeed
     ribbon: Ribbon | None = None
+    wire_m: float = 0.0  # that the coil takes
+    left: Left | None = None  # on its spool
 
 
 def cautions(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlook) -> tuple[str, ...]:
     """Everything that the winder should know before cutting wire, the weightiest first."""
     return (
         *_fit(outlook),
+        *_wire_left(outlook),
         *_target(recipe, profile, outlook),
         *_lay(recipe, wire),
         *_ribbons(recipe, wire, outlook),
@@ -46,6 +51,11 @@ def cautions(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlo
         *_speed(recipe, profile, wire, outlook),
         *_machine(recipe, profile),
     )
+
+
+def fastest_m_s(wire: Wire) -> float:
+    """The peak wire speed that is advised at most on a bobbin that is not round, m/s. Our judgement."""
+    return _FASTEST_M_S_PER_MM * wire.bare_mm
 
 
 def _fit(outlook: Outlook) -> Iterator[str]:
@@ -63,6 +73,17 @@ def _fit(outlook: Outlook) -> Iterator[str]:
             f"it will not fit: {figures}, and the flange is only {fit.room_mm:g} mm deep; "
             f"about {about:.0f} turns would fill it"
         )
+
+
+def _wire_left(outlook: Outlook) -> Iterator[str]:
+    left = outlook.left
+    if left is None or outlook.wire_m < left.metres - _SURELY_ENOUGH * left.sd:
+        return
+    words = "is likely to" if outlook.wire_m > left.metres else "may"
+    yield (
+        f"the spool {words} run out before the stop: about {max(left.metres, 0.0):.0f} m are left, give or "
+        f"take {2 * left.sd:.0f} m, and the coil takes {outlook.wire_m:.0f} m"
+    )
 
 
 def _target(recipe: Recipe, profile: MachineProfile, outlook: Outlook) -> Iterator[str]:
@@ -117,7 +138,7 @@ def _pull(recipe: Recipe, wire: Wire) -> Iterator[str]:
     tension = recipe.tension
     if tension is None or tension.set_cn is None:
         return
-    breaks_cn = 100 * _BREAKS_N_PER_MM2 * wire.copper_area_mm2
+    breaks_cn = 100 * BREAKS_N_PER_MM2 * wire.copper_area_mm2
     highest = tension.set_cn + (tension.band_cn or 0.0)
     if tension.set_cn > _ADVISED_PULL * breaks_cn:
         yield (
@@ -134,7 +155,7 @@ def _pull(recipe: Recipe, wire: Wire) -> Iterator[str]:
 
 def _speed(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlook) -> Iterator[str]:
     speed, rpm = outlook.full_speed, recipe.spindle.cruise_rpm
-    most = _FASTEST_M_S_PER_MM * wire.bare_mm
+    most = fastest_m_s(wire)
     if speed.peak_m_s > most and speed.peak_m_s > _PULSING * speed.mean_m_s:
         slower = _rounded_down(rpm * most / speed.peak_m_s)
         yield (
