@@ -70,8 +70,8 @@ def ranges(trace: Trace) -> None:
         assert machine.refusal(m.Setup(**LIMITS | beyond))[0] == Refusal.RANGE
     bounds = {
         "counts_per_turn": 400, "steps_per_turn": 800, "max_count": 1 << 30, "max_pace": 15_000,
-        "decel": 1500, "accel": 100, "guide_min": -0x80000000, "guide_max": -0x80000000, "tension_low": 65_535,
-        "rotation": 1,
+        "decel": 1500, "accel": 100, "guide_min": -0x80000000, "guide_max": -0x80000000,
+        "tension_low": 65_535, "rotation": 1,
     }  # fmt: skip
     machine.do(m.Setup(**LIMITS | bounds))
     machine.do(m.Setup(**LIMITS | bounds))

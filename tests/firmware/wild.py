@@ -1,4 +1,4 @@
-"""Random ticks: boards, machines and hosts drawn from a seed, recorded; and what of the board they reached."""
+"""Random ticks: boards, machines and hosts drawn from a seed, recorded; and what of it they reached."""
 
 from __future__ import annotations
 
