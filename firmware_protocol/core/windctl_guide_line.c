@@ -112,41 +112,45 @@ static uint16_t advance(struct windctl_guide_line *line, uint16_t counts)
     return steps;
 }
 
-int32_t windctl_line_follow(struct windctl_guide_line *line, int32_t counts)
+/* Along the line over the ends of segments; counts beyond the last are pending. */
+static int32_t walk(struct windctl_guide_line *line, uint32_t counts)
 {
-    uint32_t go;
     int32_t steps = 0;
 
-    if (counts <= 0) {
-        line->behind -= (uint32_t)counts;
-        return 0;
-    }
-    go = (uint32_t)counts;
-    if (line->behind || line->pending) {
-        uint32_t before = line->pending;
-
-        windctl_line_wait(line, counts);
-        go = line->pending - before + (before < WINDCTL_CATCH_UP_COUNTS ? before : WINDCTL_CATCH_UP_COUNTS);
-        line->pending -= go;
-    }
-    while (go >= line->left) {
+    while (counts >= line->left) {
         uint16_t rest = line->left;
 
         if (rest == 0) { /* out of segments */
-            line->pending += go;
+            line->pending += counts;
             return steps;
         }
         steps += line->sign > 0 ? (int32_t)advance(line, rest) : -(int32_t)advance(line, rest);
-        go -= rest;
+        counts -= rest;
         line->executing++;
         line->left = 0;
         if (line->executing != line->next) {
             begin(line);
         }
     }
-    line->left = (uint16_t)(line->left - go);
-    steps += line->sign > 0 ? (int32_t)advance(line, (uint16_t)go) : -(int32_t)advance(line, (uint16_t)go);
+    line->left = (uint16_t)(line->left - counts);
+    steps += line->sign > 0 ? (int32_t)advance(line, (uint16_t)counts) : -(int32_t)advance(line, (uint16_t)counts);
     return steps;
+}
+
+int32_t windctl_line_follow(struct windctl_guide_line *line, int32_t counts)
+{
+    uint32_t go;
+
+    if (line->behind || line->pending || counts <= 0) {
+        uint32_t before = line->pending;
+
+        windctl_line_wait(line, counts);
+        go = line->pending - before + (before < WINDCTL_CATCH_UP_COUNTS ? before : WINDCTL_CATCH_UP_COUNTS);
+        line->pending -= go;
+    } else {
+        go = (uint32_t)counts;
+    }
+    return walk(line, go);
 }
 
 void windctl_line_wait(struct windctl_guide_line *line, int32_t counts)
@@ -169,12 +173,10 @@ int32_t windctl_line_catch_up(struct windctl_guide_line *line)
     uint8_t most = WINDCTL_CATCH_UP_COUNTS;
 
     for (; most && windctl_line_lagging(line); most--) {
-        uint32_t pending = line->pending - 1;
         int32_t step;
 
-        line->pending = 0;
-        step = windctl_line_follow(line, 1);
-        line->pending = pending;
+        line->pending--;
+        step = walk(line, 1);
         if (step) {
             return step;
         }

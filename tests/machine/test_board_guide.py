@@ -199,6 +199,20 @@ def test_turning_forward_by_hand_without_power_is_caught_up_with_at_a_step_a_tic
     assert machine.guide == position(laid, 800)
 
 
+def test_what_was_turned_back_before_arming_does_not_confuse_what_is_caught_up_with() -> None:
+    laid = [(400, 100)] * 10
+    machine = Machine().prepare(laid)
+    for counts in (8,) * 150 + (-8,) * 60:  # to 1200 and back to 720, without power
+        machine.turn(counts)
+        machine.run()
+    machine.run_to_rest()
+    machine.arm()
+    machine.run_to_rest()
+    assert machine.guide == position(laid, 1200)
+    machine.go().run_to_rest()
+    assert (machine.board.count, machine.guide) == (4000, 1000)
+
+
 def test_unwinding_by_hand_is_counted_and_leaves_the_guide_where_it_is() -> None:
     machine = Machine().prepare([(400, 100)] * 50).arm(stop=8000).go()
     machine.run_to_rest()

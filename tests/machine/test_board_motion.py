@@ -6,7 +6,7 @@ import math
 from itertools import pairwise
 
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import assume, example, given, settings
 from hypothesis import strategies as st
 
 from tests.machine.ideal import HAND_GUIDED, Machine
@@ -82,6 +82,10 @@ def test_no_pace_rate_or_resolution_makes_it_pass_the_stop_point(
     resolution=st.sampled_from([(1, 400), (2, 400), (24, 400), (100, 400), (400, 400), (400, 200)]),
     phase=st.integers(0, 399),
 )
+@example(
+    way=1652, accel=36_472, decel=3721, resolution=(1, 400), phase=217
+)  # short, quick to start, slow to stop
+@example(way=4524, accel=38_284, decel=1682, resolution=(1, 400), phase=77)
 def test_it_comes_to_its_stand_without_a_jerk_wherever_the_counter_begins(
     way: int, accel: int, decel: int, resolution: tuple[int, int], phase: int
 ) -> None:
@@ -99,6 +103,45 @@ def test_it_comes_to_its_stand_without_a_jerk_wherever_the_counter_begins(
     last = max(a for a, b in pairwise(machine.paces) if not b)
     # sqrt(2*decel*left) with a few steps left: the dead time of a tick or two, the place of a coarse count
     assert last <= math.isqrt(2 * decel * 8) + 3 * (decel // 1000 + 1)
+
+
+def coarse(turns: int, phase: int = 250) -> Machine:
+    """A counter of one count a turn, setting out from the middle of a count."""
+    machine = Machine()
+    machine.step = phase
+    limits = {"counts_per_turn": 1, "max_count": turns, "slip_counts": 3, "fitted": HAND_GUIDED}
+    return machine.prepare(**limits).arm(8000).go()
+
+
+def stands(machine: Machine) -> int:
+    """How often the rate became 0 after it was not."""
+    return sum(1 for a, b in pairwise(machine.paces) if a and not b)
+
+
+def test_a_coarse_counter_stops_at_its_count_in_one_go() -> None:
+    machine = coarse(20)
+    machine.run_to_rest()
+    assert machine.board.count == 20
+    assert stands(machine) == 1
+
+
+def test_a_coarse_counter_that_comes_early_is_believed_at_once() -> None:
+    machine = coarse(20)
+    machine.run_until(lambda: machine.board.count == 10)
+    machine.step += 150  # the spindle is ahead of its motor
+    machine.run_to_rest()
+    assert (machine.board.count, stands(machine)) == (20, 1)
+    assert max(a for a, b in pairwise(machine.paces) if not b) <= 200
+
+
+def test_what_is_missing_on_a_coarse_counter_is_made_up_for_at_a_creep() -> None:
+    machine = coarse(20)
+    machine.run_until(lambda: machine.board.count == 10)
+    machine.step -= 150  # the belt has slipped
+    machine.run_to_rest()
+    assert (machine.board.count, stands(machine)) == (20, 2)
+    stand = next(i for i, (a, b) in enumerate(pairwise(machine.paces)) if a and not b)
+    assert max(machine.paces[stand + 1 :]) == math.isqrt(8 * 3333)
 
 
 def test_a_counter_that_trails_behind_the_steps_is_no_overshoot() -> None:
@@ -156,6 +199,7 @@ def test_a_stop_point_inside_the_braking_distance_brakes_now_and_is_foretold() -
     machine.run_to_rest()
     assert machine.board.count == again.value
     assert machine.board.cause == Cause.STOP_POINT
+    assert max(a for a, b in pairwise(machine.paces) if not b) <= 200  # and without a jerk
 
 
 def test_a_stop_point_that_comes_while_a_hold_brakes_is_not_one_that_is_then_passed() -> None:

@@ -174,3 +174,10 @@ def test_a_guide_on_its_way_does_not_make_a_reading_a_turning_one() -> None:
     reading = first_reading(machine)
     assert (reading.flags, reading.window) == (0, 300)
     assert machine.board.guide < 1000
+
+
+def test_after_winding_a_reading_is_one_at_rest_again() -> None:
+    machine = Machine().prepare().arm(stop=2000).go()
+    machine.run_to_rest()
+    machine.do(m.Measure(100, 0))
+    assert first_reading(machine).flags == 0

@@ -259,21 +259,26 @@ def test_stop_and_guard_inputs_work_before_any_setup_and_on_a_counter() -> None:
 
 
 def test_the_way_back_is_counted_anew_from_each_go() -> None:
-    machine = Machine().prepare(reverse_counts=40, slip_counts=400, fitted=3).arm(pace=1000).go()
+    machine = Machine().prepare(reverse_counts=40, slip_counts=400, fitted=3).arm(pace=1000)
     for _ in range(3):
-        machine.run(1000)
+        machine.go()
         machine.turn(-30)
         machine.run()
         machine.say(m.Hold())
         machine.run()
         machine.run_to_rest()
-        machine.turn(-30)
-        machine.run()
-        machine.run_to_rest()
-        machine.go()
-        machine.turn(-30)
-        machine.run()
-    assert machine.board.state == State.TURNING
+    assert machine.board.trip == Trip.NONE
+    assert machine.board.count < -80
+
+
+def test_after_a_guide_limit_the_guide_stays_where_it_is() -> None:
+    machine = winding()
+    open_a_limit_switch(machine)
+    machine.run()
+    guide = machine.guide
+    machine.run(3000)
+    assert machine.guide == guide
+    assert machine.board.line.pending > 0
 
 
 def test_a_datum_lets_the_index_find_its_place_anew() -> None:

@@ -96,39 +96,12 @@ class GuideLine:
 
         What is pending from before is caught up with besides, at 16 counts a call.
         """
-        if counts <= 0:
-            self.behind -= counts
-            return 0
-        if self.behind or self.pending:
+        if self.behind or self.pending or counts <= 0:
             before = self.pending
             self.wait(counts)
             counts = self.pending - before + min(before, CATCH_UP_COUNTS)
             self.pending -= counts
-        steps = 0
-        while counts >= self._left:
-            if self._left == 0:  # out of segments
-                self.pending += counts
-                return steps
-            steps += self._advance(self._left)
-            counts -= self._left
-            self.executing = (self.executing + 1) & 0xFFFFFFFF
-            self._left = 0
-            if self.executing != self.next:
-                self._begin()
-        self._left -= counts
-        acc = self._acc + counts * self._slope
-        n = self._n
-        if acc >= n:
-            if self._sign > 0:
-                while acc >= n:
-                    acc -= n
-                    steps += 1
-            else:
-                while acc >= n:
-                    acc -= n
-                    steps -= 1
-        self._acc = acc
-        return steps
+        return self._walk(counts) if counts >= self._left else self._advance(counts)
 
     def wait(self, counts: int) -> None:
         """Count without following: the guide is not powered, or follows later."""
@@ -149,12 +122,24 @@ class GuideLine:
             if not self.lagging:
                 return 0
             self.pending -= 1
-            pending, self.pending = self.pending, 0
-            step = self.follow(1)
-            self.pending = pending
+            step = self._walk(1)
             if step:
                 return step
         return 0
+
+    def _walk(self, counts: int) -> int:
+        """Along the line over the ends of segments; counts beyond the last are pending."""
+        steps = 0
+        while counts >= self._left:
+            if self._left == 0:  # out of segments
+                self.pending += counts
+                return steps
+            counts -= self._left
+            steps += self._advance(self._left)
+            self.executing = (self.executing + 1) & 0xFFFFFFFF
+            if self.executing != self.next:
+                self._begin()
+        return steps + self._advance(counts)
 
     def _begin(self) -> None:
         at = self.executing % self._size
@@ -167,11 +152,15 @@ class GuideLine:
         self._acc = (n // 2 + wound * self._slope) % n
 
     def _advance(self, counts: int) -> int:
+        """Along the line within the executing segment."""
+        self._left -= counts
         acc = self._acc + counts * self._slope
+        n = self._n
         steps = 0
-        while acc >= self._n:
-            acc -= self._n
+        while acc >= n:
+            acc -= n
             steps += self._sign
+        self._acc = acc
         return steps
 
 
