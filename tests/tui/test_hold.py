@@ -126,7 +126,7 @@ def test_no_command_can_be_put_on_the_hold_keys(name: str) -> None:
 
 
 async def test_f8_still_holds_with_every_key_remapped(tmp_path: Path) -> None:
-    keys: dict[str, object] = {name: "f8" for name in ids()}
+    keys: dict[str, object] = dict.fromkeys(ids(), "f8")
     app, winding = WindctlApp(StillSession([tmp_path]), keys), FakeWinding()
     async with app.run_test(size=(80, 24)) as pilot:
         await started(app, pilot, winding)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from windctl.recipe.orientation import Orientation
 from windctl.tui.pictures.cells import Picture, blank, put
 
-WIDTH, HEIGHT = 40, 9
+WIDTH, HEIGHT = 42, 9
 
 
 def bobbin_picture(where: Orientation, face_out: bool) -> Picture:
