@@ -24,14 +24,18 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    HandsAsked,
     Held,
     HoldRequested,
     LinkLost,
     ReadingTaken,
     Resumed,
+    Spliced,
     StatusHeard,
     StopPointChosen,
     WentOn,
+    WireBroke,
+    WireChanged,
 )
 from windctl.record.fold import Fit, State, fold, replay, start
 
@@ -301,7 +305,13 @@ anything = st.one_of(
     st.just(HoldRequested(0, "operator", "hold")),
     st.just(LinkLost(0, "unplugged")),
     st.just(Resumed(0, "later", "somebody", "0.1.0")),
-    st.builds(CountCorrected, st.just(0), st.floats(0, 2000), st.just("operator"), st.just("counted")),
+    st.builds(
+        CountCorrected, st.just(0), st.floats(0, 2000), st.just("operator"), st.just("counted"), st.booleans()
+    ),
+    st.just(HandsAsked(0, "operator", "to look")),
+    st.builds(WireBroke, st.just(0), st.floats(0, 2000), st.just("operator")),
+    st.builds(Spliced, st.just(0), st.floats(0, 2000), st.just("operator")),
+    st.builds(WireChanged, st.just(0), st.floats(0, 2000), st.just("spool 8"), st.just("operator")),
     st.just(CommandRefused(0, Refused(8, 5, 11, 0))),
 )
 
@@ -317,12 +327,15 @@ def test_whatever_happens_the_rules_of_consent_hold(events: list[Event]) -> None
             if isinstance(fact, GoGiven):
                 last = fact
         wants = coil.decision.wants
-        if wants.go is not None or wants.armed is not None:
-            assert last is not None
-            assert (wants.go or wants.armed) == Permission(last.boot, last.epoch)
+        guided = wants.guide.given_for if wants.guide is not None else None
+        for moving in (wants.go, wants.armed, guided):
+            if moving is None:
+                continue
+            assert last is not None and moving == Permission(last.boot, last.epoch)
             assert not wants.hold and coil.state.finished is None and coil.state.fit is not Fit.LOST
-        if isinstance(event, HoldRequested | LinkLost | Resumed | BoardGreeted):
-            assert wants.go is None and wants.armed is None
+            assert coil.state.hands is None and not wants.disarmed
+        if isinstance(event, HoldRequested | LinkLost | Resumed | BoardGreeted | HandsAsked):
+            assert wants.go is None and wants.armed is None and wants.guide is None
         if wants.stop_point is not None:
             assert wants.stop_point <= 2000 * CPT
     assert replay(coil.facts) == coil.state

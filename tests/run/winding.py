@@ -12,6 +12,7 @@ from pathlib import Path
 from windctl.book.open import open_book
 from windctl.machine.ports import Port
 from windctl.machine.virtual.bench import Bench, virtual_bench
+from windctl.machine.virtual.faults import Faults
 from windctl.machine.virtual.plant import PlantTruth
 from windctl.machine.virtual.port import VirtualPort
 from windctl.plan.make import make_plan
@@ -20,6 +21,7 @@ from windctl.profile.model import MachineProfile
 from windctl.recipe.load import parse_recipe
 from windctl.recipe.model import Recipe
 from windctl.run.outcome import Outcome
+from windctl.run.requests import Hold
 from windctl.run.runner import Ended
 from windctl.run.wind import Here, Order, Winding, begin
 
@@ -81,17 +83,22 @@ def wind(
     plant_seed: int = 1,
     profile: MachineProfile = VIRTUAL,
     chance: int | None = None,
+    faults: Faults | None = None,
     port_around: Callable[[VirtualPort], Port] = lambda port: port,
     during: Callable[[Winding, Bench], None] = lambda winding, bench: None,
 ) -> Wound:
     """Wind one coil as fast as possible into `book`; `during` may interfere once it has started."""
     recipe, wanted = order(text, profile, plant_seed)
-    bench = virtual_bench(recipe, profile, plant_seed)
+    bench = virtual_bench(recipe, profile, plant_seed, faults=faults)
     port = VirtualPort(bench)
     with open_book(book) as opened:
         winding = begin(wanted, opened, port_around(port), here(plant_seed if chance is None else chance))
         winding.start()
-        during(winding, bench)
+        try:
+            during(winding, bench)
+        except BaseException:
+            winding.request(Hold("a test", "it went wrong", leave=True))
+            raise
         ended = winding.wait(280.0)
         outcome = winding.close()
     assert ended is not None

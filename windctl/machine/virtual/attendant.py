@@ -32,7 +32,7 @@ class Attendant:
         plant = self._plant
         if state == State.READY and self._board.count == 0 and plant.truth().true_turns >= 1.0:
             plant.new_bobbin(self._board.guide)
-        if before == State.TRIPPED and state == State.DRIVES_OFF:
+        if state == State.DRIVES_OFF and (before == State.TRIPPED or not plant.wire_whole):
             plant.put_right()
         if state == State.READY:
             self._foot_in = _FOOT_LOOKS

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import queue
 import time
 from collections.abc import Callable
 
@@ -37,6 +38,7 @@ class VirtualPort:
         self._clock = clock
         self._sleep = sleep
         self._lost: str | None = None
+        self._by_hand: queue.SimpleQueue[float] = queue.SimpleQueue()
         self._begun_s: float | None = None
         self._begun_tick = 0
 
@@ -48,6 +50,8 @@ class VirtualPort:
         """What came from the board; simulated time goes on until a byte is there, at most `max_wait_s`."""
         self._check()
         bench = self._bench
+        while not self._by_hand.empty():
+            bench.plant.turn_by_hand(self._by_hand.get())
         arrived = bench.take()
         left = max(0, round(max_wait_s * 1000.0))
         while left and not arrived:
@@ -71,6 +75,10 @@ class VirtualPort:
         """Pulls the plug: from now on the line is lost, while board and coil live on."""
         self._lost = "the line to the virtual machine is lost: its plug is pulled"
         self._bench.line.clear()
+
+    def turn_by_hand(self, turns: float) -> None:
+        """Somebody turns the spindle, once no drive holds it; negative unwinds. From any thread."""
+        self._by_hand.put(turns)
 
     def truth(self) -> PlantTruth:
         """What is really on the bobbin; for reports after a run, never for the run."""
