@@ -122,9 +122,9 @@ def autocorrelation(values: F64, most: int) -> F64:
 @pytest.mark.parametrize("amount", [0.5, 1.0])
 @pytest.mark.parametrize("wander_turns", [6.0, 12.0, 40.0])
 def test_a_wander_forgets_within_its_wander_turns(amount: float, wander_turns: float) -> None:
-    """Ornstein-Uhlenbeck: the autocorrelation falls as exp(-lag / wander_turns). By Bartlett's formula its error
-    is about sqrt(wander_turns / turns) at long lags, four of which are allowed; cutting the pitch at four
-    fifths of its mean takes a little off at amount 1."""
+    """Ornstein-Uhlenbeck: the autocorrelation falls as exp(-lag / wander_turns). By Bartlett's formula its
+    error is about sqrt(wander_turns / turns) at long lags, four of which are allowed; cutting the pitch at
+    four fifths of its mean takes a little off at amount 1."""
     pitch = pitches(program("wander", amount, lay__wander_turns=str(wander_turns)))
     measured = autocorrelation(pitch, round(3 * wander_turns))
     lags = np.arange(len(measured))
