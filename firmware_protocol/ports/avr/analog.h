@@ -13,6 +13,9 @@ struct analog {
 
 void analog_start(void);
 
+/* Go on with the round, if a conversion is complete; for whenever there is nothing else to do. */
+void analog_poll(void);
+
 /* Take the round that was begun by the last call, if it is complete, and begin another. */
 void analog_round(struct analog *analog);
 

@@ -8,13 +8,13 @@
 #include "encoder.h"
 #include "pins.h"
 
-/* A step is due this long after its place in the tick, so that the tick's interrupt has always set it up by then. */
-#define LATE 400u /* cycles */
+/* A tick's steps are set up this long before it begins, so that even the first is never missed. */
+#define EARLY 400u /* cycles */
 #define PULSE_US 2
 
 /* Steps at equal distances. */
 struct train {
-    uint16_t first;    /* cycles after the tick, then the timer's own count */
+    uint16_t first;    /* cycles after the tick's beginning, then the timer's own count */
     uint16_t interval; /* cycles */
     uint8_t left;
 };
@@ -38,32 +38,41 @@ static void begin(const struct train *train)
     TIMSK1 |= _BV(OCIE1A);
 }
 
+static void set_up(void)
+{
+    struct train train;
+
+    found.issued += planned.left;
+    if (planned.left == 0) {
+        return;
+    }
+    train.first = tick_at + planned.first;
+    train.interval = planned.interval;
+    train.left = planned.left;
+    planned.left = 0;
+    if (now.left) {
+        next = train;
+    } else {
+        begin(&train);
+    }
+}
+
+/* Twice a tick: steps are set up, and then it begins. */
 ISR(TIMER1_COMPB_vect)
 {
-    int16_t count = encoder_count;
-
-    OCR1B = tick_at + CYCLES_PER_TICK;
-    found.counts += count - counted;
-    counted = count;
+    if (OCR1B != tick_at) {
+        OCR1B = tick_at;
+        set_up();
+        return;
+    }
+    found.counts += encoder_count - counted;
+    counted = encoder_count;
     if (encoder_index) {
         found.index = encoder_index;
         encoder_index = 0;
     }
-    found.issued += planned.left;
-    if (planned.left) {
-        struct train train;
-
-        train.first = tick_at + planned.first;
-        train.interval = planned.interval;
-        train.left = planned.left;
-        planned.left = 0;
-        if (now.left) {
-            next = train;
-        } else {
-            begin(&train);
-        }
-    }
     tick_at += CYCLES_PER_TICK;
+    OCR1B = tick_at - EARLY;
     ticks++;
 }
 
@@ -88,7 +97,7 @@ void clock_start(void)
     TCCR1A = 0;
     TCCR1B = _BV(CS10);
     tick_at = TCNT1 + CYCLES_PER_TICK;
-    OCR1B = tick_at;
+    OCR1B = tick_at - EARLY;
     TIFR1 = _BV(OCF1B);
     TIMSK1 = _BV(OCIE1B);
 }
@@ -134,7 +143,7 @@ void clock_rate(uint16_t rate)
 
         ATOMIC_BLOCK(ATOMIC_FORCEON)
         {
-            planned.first = first + LATE;
+            planned.first = first;
             planned.interval = (uint16_t)period;
             planned.left = steps;
         }

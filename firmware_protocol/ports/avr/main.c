@@ -119,6 +119,7 @@ int main(void)
     sei();
     for (;;) {
         if (!clock_tick(&tick)) {
+            analog_poll();
             continue;
         }
         set_pin(&PORTB, PIN_BUSY, 1);

@@ -36,7 +36,7 @@
 #define PIN_PEDAL PC5         /* pedal: closed to ground while pressed */
 
 /* ---- scale: 65536 units are the reference voltage of 5 V */
-#define CONTACT_SCALE 250 /* milliohm per unit: 16.384 kohm at 5 V, 0.305 mA through the coil */
+#define CONTACT_SCALE 305 /* milliohm per unit: 20 kohm at 5 V, 0.25 mA through the coil */
 #define TENSION_SCALE 10  /* 0.0001 cN per unit: 65.5 cN at 5 V */
 
 /* ---- what this board says it has */
