@@ -202,6 +202,14 @@ def test_a_stop_point_inside_the_braking_distance_brakes_now_and_is_foretold() -
     assert max(a for a, b in pairwise(machine.paces) if not b) <= 200  # and without a jerk
 
 
+def test_braking_now_keeps_to_the_rate_of_braking_to_the_last_step() -> None:
+    machine = Machine().winding(pace=15_000, max_pace=15_000, accel=9000, decel=1500, fitted=HAND_GUIDED)
+    answer = machine.do(m.StopAt(*machine.consent, machine.board.count + 1))
+    machine.run_to_rest()
+    assert machine.board.count == answer.value
+    assert max(a for a, b in pairwise(machine.paces) if not b) <= math.isqrt(2 * 1500 * 6)
+
+
 def test_a_stop_point_that_comes_while_a_hold_brakes_is_not_one_that_is_then_passed() -> None:
     machine = Machine().winding(pace=8000)
     machine.say(m.Hold())
