@@ -17,7 +17,14 @@ DEFAULTS = {
     "format": 1,
     "name": "virtual",
     "bench": "v1",
-    "port": {"url": None, "baud": 115200, "resets_on_open": False},
+    "port": {
+        "url": None,
+        "baud": 115200,
+        "resets_on_open": False,
+        "vendor": None,
+        "product": None,
+        "serial_number": None,
+    },
     "board": {"queue_segments": None},
     "spindle": {
         "drive": "none",
@@ -97,6 +104,10 @@ def test_the_version_of_the_form_is_needed() -> None:
         (
             "[spindle]\nsteps_per_turn = 801",
             "3:18: spindle.steps_per_turn is 801 steps, must be at most 800 steps",
+        ),
+        (
+            "[port]\nvendor = 0x1209",
+            "3:10: port.vendor is 0x1209, and port.product is missing: both find a board",
         ),
         ("[spindle]\nmax_rpm = 0", "3:11: spindle.max_rpm is 0 rpm, must be more than 0 rpm"),
         ('[spindle]\ndrive = "servo"', '3:9: spindle.drive is "servo", must be "step" or "none"'),

@@ -15,7 +15,7 @@ from windctl.cli.plan import show_plan
 from windctl.desk.books import book_to_read, book_to_write
 from windctl.desk.going_on import open_coil, recorded_profile
 from windctl.desk.machines import profile_of, simulated_here
-from windctl.errors import RecipeError, RecordBroken, UsageError
+from windctl.errors import RecipeError, RecordBroken, UsageError, WindctlError
 
 if TYPE_CHECKING:
     from windctl.desk.bench import Bench
@@ -68,7 +68,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
             recipe=wanted,
             recipe_text=text,
             plan=plan,
-            profile=profile,
+            profile=bench.profile,
             machine=bench.name,
             batch=shared.batch or "",
             of=shared.of or 0,
@@ -131,15 +131,19 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
     """Watch the run to its end, tell how it went, and with which code."""
     from windctl.cli.progress import face_for
     from windctl.cli.prompt import Prompt
-    from windctl.cli.watch import stand_by
+    from windctl.cli.watch import deaf, stand_by
     from windctl.desk.log import faults_of_threads, note
 
+    bench.name_coil(winding.number)
     if not shared.quiet:
         present.message(f"coil {winding.number} on {bench.name}")
     prompt = Prompt(sys.stdin.fileno()) if typed.may_ask(shared.no_input) else None
-    with faults_of_threads() as faults:
+    stuck: WindctlError | None = None
+    with faults_of_threads() as faults, deaf():
         try:
-            stand_by(winding, face_for(sys.stderr, quiet=shared.quiet), prompt)
+            stand_by(winding, face_for(sys.stderr, quiet=shared.quiet), prompt, bench.hand)
+        except WindctlError as error:  # nobody to ask: told once it is known how the coil was left
+            stuck = error
         finally:
             outcome = winding.close()
     answer = outcome.as_json()
@@ -156,6 +160,8 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
         _show(outcome, answer)
     if faults:
         present.message(f"The log has the details: {faults[0]}")
+    if stuck is not None and outcome.error is None:
+        raise stuck
     return _ending(outcome)
 
 
@@ -169,7 +175,8 @@ def _show(outcome: Outcome, answer: dict[str, Any]) -> None:
         rows.append(("resistance", f"{present.ohm(summary.dcr_20c_ohm, summary.dcr_u95_ohm or 0)} at 20 °C"))
     aim = present.turns if summary.target_kind == "turns" else present.ohm
     rows.append(("target", f"{aim(summary.target_value)}: {summary.verdict}"))
-    rows.append(("record", present.short_digest(outcome.record_digest)))
+    if outcome.record_digest:
+        rows.append(("record", present.short_digest(outcome.record_digest)))
     if "plant" in answer:
         truth = answer["plant"]
         really = f"{present.turns(truth['true_turns'])}, {present.ohm(truth['true_dcr_20c_ohm'])} at 20 °C"

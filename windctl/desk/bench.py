@@ -38,6 +38,9 @@ class Bench:
     port: Port
     here: Here
     truth: Callable[[], PlantTruth] | None
+    profile: MachineProfile  # with the port as it was found
+    hand: Callable[[float], None] | None = None  # turns the simulated spindle, in turns; negative unwinds
+    name_coil: Callable[[str], None] = lambda _number: None  # for whoever else wants this port
 
 
 @contextmanager
@@ -54,18 +57,20 @@ def open_bench(
     """
     if not simulated:
         from windctl.machine.line_trace import LineTrace
+        from windctl.machine.port_found import found
         from windctl.machine.serial_port import SerialPort
 
         for name, value in (("--speed", shared.speed), ("--plant-seed", shared.plant_seed)):
             if value is not None:
                 raise UsageError(f"{name} is for a machine simulated in this process, not for a port")
-        assert profile.port.url is not None
+        profile = profile.model_copy(update={"port": found(profile.port)})
+        assert profile.port.url is not None  # simulated otherwise
         coil = "" if started is None else started.number
         trace = LineTrace()
         port = SerialPort(profile.port.url, profile.port.baud, coil=coil, trace=trace)
         note(f"{profile.name}: opened {profile.port.url} at {profile.port.baud} baud for {recipe.name}")
         try:
-            yield Bench(profile.name, port, _here(), None)
+            yield Bench(profile.name, port, _here(), None, profile, name_coil=port.name_coil)
         finally:
             port.close()
             note(f"{profile.name}: closed {profile.port.url}")
@@ -84,7 +89,14 @@ def open_bench(
         machine.plant.wound_already(shared.at_turn, unpacked(started.program_packed))
     note(f"{profile.name}: simulated, plant seed {seed}, for {recipe.name}")
     simulated_port = VirtualPort(machine, shared.speed or 0.0)
-    yield Bench(f"{profile.name}{_SEED_MARK}{seed}", simulated_port, _here(), simulated_port.truth)
+    yield Bench(
+        f"{profile.name}{_SEED_MARK}{seed}",
+        simulated_port,
+        _here(),
+        simulated_port.truth,
+        profile,
+        hand=simulated_port.turn_by_hand,
+    )
 
 
 def _keep(trace: LineTrace, about: str) -> None:

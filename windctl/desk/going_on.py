@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from windctl.desk.machines import VIRTUAL, profile_of
+from windctl.desk.machines import VIRTUAL, port_at, profile_of
 from windctl.errors import UsageError
 
 if TYPE_CHECKING:
@@ -29,10 +29,17 @@ def open_coil(book: Book, coil: str | None, bench: str | None) -> CoilHead:
 
 
 def recorded_profile(shared: Shared, started: CoilStarted) -> MachineProfile:
-    """The machine as it was when the coil began; only the port may be another one now."""
+    """The machine as it was when the coil began; only the port may be another one now.
+
+    A board that was found by its USB numbers then is looked for by them, unless a port is named.
+    """
     from windctl.profile.model import MachineProfile
 
     recorded = MachineProfile.model_validate_json(started.profile_json)
     now = profile_of(shared) if shared.machine is not None else recorded
-    url = shared.port if shared.port not in (None, VIRTUAL) else now.port.url
-    return recorded.model_copy(update={"port": now.port.model_copy(update={"url": url})})
+    port = now.port
+    if shared.port is not None and shared.port != VIRTUAL:
+        port = port_at(port, shared.port)
+    elif port.vendor is None and port.url == recorded.port.url:
+        port = recorded.port
+    return recorded.model_copy(update={"port": port})

@@ -12,7 +12,7 @@ from windctl.errors import FileInvalid, MachineError, Problem
 
 if TYPE_CHECKING:
     from windctl.desk.asked import Shared
-    from windctl.profile.model import MachineProfile
+    from windctl.profile.model import MachineProfile, Port
 
 VIRTUAL = "virtual"
 
@@ -64,9 +64,15 @@ def profile_of(shared: Shared) -> MachineProfile:
         readings = profile.readings.model_copy(update={"mode": shared.readings})
         profile = profile.model_copy(update={"readings": readings})
     if shared.port is not None and shared.port != VIRTUAL:
-        port = profile.port.model_copy(update={"url": shared.port})
+        port = port_at(profile.port, shared.port)
         profile = profile.model_copy(update={"port": port})
     return profile
+
+
+def port_at(port: Port, url: str) -> Port:
+    """The port at `url`, whatever board is on it."""
+    named = {"url": url, "vendor": None, "product": None, "serial_number": None}
+    return port.model_copy(update=named)
 
 
 def simulated_here(shared: Shared, profile: MachineProfile) -> bool:
@@ -76,11 +82,12 @@ def simulated_here(shared: Shared, profile: MachineProfile) -> bool:
     """
     if shared.port == VIRTUAL:
         return True
-    if profile.port.url is not None:
+    if profile.port.url is not None or profile.port.vendor is not None:
         return False
     if profile.name == VIRTUAL:
         return True
     raise MachineError(
-        f"the profile {profile.name!r} names no port: give port.url in it, or --port URL; "
+        f"the profile {profile.name!r} names no port: give port.url or port.vendor and port.product in it, "
+        "or --port URL; "
         f"--port {VIRTUAL} simulates that machine."
     )

@@ -24,6 +24,27 @@ class Port(Form):
     url: Annotated[Line | None, about("Any pyserial URL: a device name, or socket://host:port.")] = None
     baud: Annotated[int, quantity("bit/s", "line speed", ge=1200, le=4_000_000)] = 115_200
     resets_on_open: Annotated[bool, about("The board restarts when the port is opened.")] = False
+    vendor: Annotated[
+        int | None, quantity("", "USB vendor number of the board, such as 0x1209", ge=0, le=0xFFFF)
+    ] = None
+    product: Annotated[
+        int | None,
+        quantity("", "its USB product number; `windctl machine ports` shows both", ge=0, le=0xFFFF),
+    ] = None
+    serial_number: Annotated[Line | None, about("Its USB serial number, where it has one.")] = None
+
+    @check
+    def _usb_numbers_come_together(self) -> Iterator[Fault]:
+        if self.vendor is not None and self.product is None:
+            yield Fault(("vendor",), f"is {self.vendor:#06x}, and port.product is missing: both find a board")
+        if self.product is not None and self.vendor is None:
+            yield Fault(
+                ("product",), f"is {self.product:#06x}, and port.vendor is missing: both find a board"
+            )
+        if self.serial_number is not None and self.vendor is None:
+            yield Fault(
+                ("serial_number",), f"is {self.serial_number!r}, and port.vendor and port.product are missing"
+            )
 
 
 class BoardTable(Form):
