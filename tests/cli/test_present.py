@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import io
 import math
 
@@ -67,3 +68,38 @@ def test_signs_are_spelt_out_where_the_stream_lacks_them() -> None:
     assert present.writable("7.946 ± 0.031 kohm at 20 °C", ascii_stream) == "7.946 +- 0.031 kohm at 20 deg C"
     utf8_stream = io.TextIOWrapper(io.BytesIO(), encoding="UTF-8")
     assert present.writable("±", utf8_stream) == "±"
+
+
+class Gone(io.StringIO):
+    """A stream whose far end has gone."""
+
+    encoding = "utf-8"
+
+    def __init__(self, code: int) -> None:
+        super().__init__()
+        self.code = code
+
+    def write(self, text: str) -> int:
+        raise OSError(self.code, "gone")
+
+
+@pytest.mark.parametrize("code", [errno.EIO, errno.EPIPE])
+def test_a_message_that_nobody_can_read_any_more_is_passed_over(
+    code: int, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("sys.stderr", Gone(code))
+    present.message("the spindle stands")
+
+
+def test_a_result_without_a_reader_is_told_and_one_without_a_terminal_is_not(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    monkeypatch.setattr("sys.stdout", Gone(errno.EIO))
+    present.result("150 turns")
+    present.result_json({"turns": 150})
+    monkeypatch.setattr("sys.stdout", Gone(errno.EPIPE))
+    with pytest.raises(BrokenPipeError):
+        present.result("150 turns")
+    monkeypatch.setattr("sys.stdout", Gone(errno.ENOSPC))
+    with pytest.raises(OSError, match="gone"):
+        present.result("150 turns")

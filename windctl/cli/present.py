@@ -5,9 +5,12 @@ Numbers are written as `windctl.desk.numbers` writes them.
 
 from __future__ import annotations
 
+import errno
 import json
+import os
 import sys
 from collections.abc import Sequence
+from contextlib import suppress
 from typing import Any, TextIO
 
 import click
@@ -44,8 +47,8 @@ def writable(text: str, stream: TextIO) -> str:
 
 
 def result(text: str = "") -> None:
-    """A line of the answer itself."""
-    click.echo(writable(text, sys.stdout))
+    """A line of the answer itself. Raises BrokenPipeError where its reader has gone."""
+    _echo(text, sys.stdout)
 
 
 def result_json(answer: dict[str, Any]) -> None:
@@ -53,12 +56,31 @@ def result_json(answer: dict[str, Any]) -> None:
     text = json.dumps(
         {"format": 1, **answer}, ensure_ascii=not takes_unicode(sys.stdout), allow_nan=False, indent=2
     )
-    click.echo(text)
+    _echo(text, sys.stdout)
 
 
 def message(text: str) -> None:
-    """A line about the work: to standard error."""
-    click.echo(writable(text, sys.stderr), err=True)
+    """A line about the work: to standard error. Where nobody can read it any more, the work goes on."""
+    with suppress(BrokenPipeError):
+        _echo(text, sys.stderr)
+
+
+def _echo(text: str, stream: TextIO) -> None:
+    try:
+        click.echo(writable(text, stream), file=stream)
+    except OSError as error:
+        if error.errno in (errno.EIO, errno.EPIPE):  # the terminal was closed, or the reader has gone
+            forget(stream)
+        if error.errno != errno.EIO:
+            raise
+
+
+def forget(stream: TextIO) -> None:
+    """What is still buffered for a stream that nobody reads must not fail once more at exit."""
+    with suppress(OSError, ValueError):
+        nowhere = os.open(os.devnull, os.O_WRONLY)
+        os.dup2(nowhere, stream.fileno())
+        os.close(nowhere)
 
 
 def pairs(rows: Sequence[tuple[str, str]]) -> None:

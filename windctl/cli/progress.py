@@ -136,6 +136,7 @@ class _Stream:
             self._stream.write(present.writable(text, self._stream))
             self._stream.flush()
         except (OSError, ValueError):  # ValueError: closed by whoever lent it
+            present.forget(self._stream)
             self._stream = None
 
 
