@@ -140,10 +140,10 @@ MUTANTS = (
         "line->sign = steps < 0 ? 1 : -1;",
     ),
     Mutant(
-        "going back takes steps back",
+        "going back counts as going on",
         "guide_line",
-        "        line->behind -= (uint32_t)counts;\n        return 0;",
-        "        return counts;",
+        "        line->behind -= (uint32_t)counts;\n",
+        "        line->behind += (uint32_t)counts;\n",
     ),
     Mutant(
         "entering a segment forgets what is wound",
