@@ -14,6 +14,7 @@ from windctl.record.state import Fit, State
 SETTLED_ENOUGH = 8  # readings at rest before the coil is judged
 SETTLE_LIMIT_TICKS = 8_000  # without them it is judged on what there is
 MOST_TOP_UPS = 3
+WORTH_A_START = 0.02  # of the tolerance: fewer missing turns are not worth another start and another settling
 
 
 def ending(state: State, at_ms: int) -> tuple[Event, ...]:
@@ -60,22 +61,26 @@ def _judge_resistance(state: State, at_ms: int) -> tuple[Event, ...]:
     missing = missing_turns(state.estimate, state.turns, target.value)
     more = round(missing.turns)
     room = target.max_turns - round(state.turns)
-    if more >= 1 and room >= 1 and state.top_ups < MOST_TOP_UPS:
+    allowed = missing_turns(state.estimate, state.turns, target.value * (1.0 + target.tolerance_pct / 100.0))
+    worth = max(1, round(WORTH_A_START * (allowed.turns - missing.turns)))
+    if more >= worth and room >= 1 and state.top_ups < MOST_TOP_UPS:
         more = min(more, room)
         finish = finish_at(state.estimate, state.turns + more)
-        words = f"{more} turns missing after the settled reading"
+        words = f"{_turns(more)} missing after the settled reading"
         return (StopPointChosen(at_ms, state.count + more * cpt, words, finish.ohm, finish.sd),)
-    if more >= 1 and room < 1:
+    if more >= worth and room < 1:
         return (
-            _finished(
-                state, at_ms, "finished", f"the most turns allowed are wound; {more} turns are missing"
-            ),
+            _finished(state, at_ms, "finished", f"the most turns allowed are wound; {_turns(more)} missing"),
         )
     met = _finished(state, at_ms, "finished", "the target is met")
     if more <= -1 and met.verdict != "within":
         words = f"unwind {-more} +- {max(1, round(1.96 * missing.sd))} turns to meet the target"
         return (replace(met, reason=words),)
     return (met,)
+
+
+def _turns(n: int) -> str:
+    return "1 turn" if n == 1 else f"{n} turns"
 
 
 def _finished(state: State, at_ms: int, outcome: str, reason: str) -> CoilFinished:
