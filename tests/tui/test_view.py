@@ -67,7 +67,7 @@ def test_a_trip_says_what_to_do() -> None:
     )
     seen = glance(tripped, CARD)
     assert seen.look.glyph == "✖"
-    assert "the wire broke" in seen.alarm
+    assert seen.next.words == "tension low: the wire broke, left its path or ran out"
     assert "beyond turn 4 790.5 is without wire" in seen.alarm
     assert "C clears it" in seen.alarm
     assert "press C" in seen.next.when

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from enum import Enum
 from math import floor
@@ -12,6 +13,7 @@ from windctl.run.snapshot import Snapshot
 from windctl.tui.looks import Look, look_of
 from windctl.tui.pictures.curve import Band, Scale
 
+_TRIPPED = re.compile(r"^the board is tripped \(([^)]*)\): ")
 _HEADROOM = 1.08  # of an axis over the most that is foreseen
 
 
@@ -121,7 +123,7 @@ def next_of(snapshot: Snapshot) -> Next:
 
 
 def _sentence(words: str) -> str:
-    return words.removeprefix("held: ").removeprefix("tripped: ")
+    return _TRIPPED.sub(r"\1: ", words.removeprefix("held: "))
 
 
 def _under(snapshot: Snapshot, goal: float) -> str:
@@ -165,8 +167,10 @@ def _alarm(snapshot: Snapshot) -> str:
         return ""
     lost = ""
     if snapshot.wire_ends_at is not None:
-        lost = f" What was counted beyond turn {grouped(snapshot.wire_ends_at, 1)} is without wire."
-    return f"{_sentence(snapshot.says)}.{lost} When it is put right, C clears it; nothing turns by that."
+        lost = f"What was counted beyond turn {grouped(snapshot.wire_ends_at, 1)} is without wire. "
+    return (
+        f"{lost}When it is put right, C clears it; nothing turns by that. T tells what was done: splice ..."
+    )
 
 
 def _ohm(value: float, half_width: float = 0.0) -> str:

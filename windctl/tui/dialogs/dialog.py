@@ -6,7 +6,7 @@ from typing import ClassVar, Generic, TypeVar
 
 from textual.app import ComposeResult
 from textual.binding import BindingType
-from textual.containers import Vertical
+from textual.containers import VerticalScroll
 from textual.screen import ModalScreen
 from textual.widget import Widget
 from textual.widgets import Static
@@ -27,7 +27,7 @@ class Dialog(ModalScreen[Answer], Generic[Answer]):
 
     def compose(self) -> ComposeResult:
         """Heading, words, whatever a kind of question adds, and how to answer."""
-        with Vertical(classes="dialog"):
+        with VerticalScroll(classes="dialog", can_focus=False):
             yield Static(self.heading, classes="heading", markup=False)
             yield Static(self.words, classes="words", markup=False)
             yield from self.body()

@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
+from itertools import zip_longest
+
 from textual.screen import Screen
 
 from windctl.tui.dialogs.dialog import Dialog
 
 EVERYWHERE = """\
-F8       the spindle holds; works on every screen and in every dialog
-Space    the same while a coil turns and nothing is typed
-F1       this help       F2  recipes      F3  coils      F4  all commands
-F6       light or dark   F10 leave
-
-F8 is no emergency stop, and this program is no safety function: use the hardware stop."""
+F8     the spindle holds, on every screen and in every dialog
+Space  the same while a coil turns and nothing is typed
+F1 help   F2 recipes   F3 coils   F4 commands   F6 light or dark   F10 leave
+F8 is no emergency stop, this program no safety function: use the hardware stop."""
 
 
 class Help(Dialog[None]):
@@ -21,14 +21,20 @@ class Help(Dialog[None]):
     def __init__(self, screen: Screen[object]) -> None:
         about = getattr(screen, "ABOUT", "")
         keys = [
-            f"{active.binding.key.upper() if len(active.binding.key) == 1 else active.binding.key:<9}"
-            f"{active.binding.description}"
+            f"{_written(active.binding.key):<7}{active.binding.description}"
             for active in screen.active_bindings.values()
             if active.binding.id and "." in active.binding.id
         ]
-        words = "\n\n".join(part for part in (about, "\n".join(keys), EVERYWHERE) if part)
+        half = (len(keys) + 1) // 2
+        pairs = zip_longest(keys[:half], keys[half:], fillvalue="")
+        columns = "\n".join(f"{left:<34}{right}".rstrip() for left, right in pairs)
+        words = "\n\n".join(part for part in (about, columns, EVERYWHERE) if part)
         super().__init__("Help", words)
 
     def key_f1(self) -> None:
         """Closes as it opened."""
         self.dismiss(None)
+
+
+def _written(keys: str) -> str:
+    return keys.upper() if len(keys) == 1 else keys.capitalize()
