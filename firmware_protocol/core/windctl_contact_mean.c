@@ -6,8 +6,6 @@
 
 static void begin(struct windctl_contact_mean *mean, uint32_t ticks, int32_t count, uint8_t turning)
 {
-    uint8_t place;
-
     mean->waiting = 0;
     mean->started = ticks;
     mean->turning = turning;
@@ -16,9 +14,6 @@ static void begin(struct windctl_contact_mean *mean, uint32_t ticks, int32_t cou
     mean->at = 0;
     mean->box = 0;
     mean->turn_end = 0;
-    for (place = 0; place < WINDCTL_CONTACT_BOX; place++) {
-        mean->ring[place] = 0;
-    }
     mean->window_ticks = 0;
     mean->sum = 0;
     mean->open = 0;
@@ -69,7 +64,10 @@ uint8_t windctl_mean_sample(struct windctl_contact_mean *mean, uint16_t contact,
         mean->open = 1;
     }
     at = mean->at;
-    mean->box = mean->box + contact - mean->ring[at];
+    mean->box += contact;
+    if (mean->filled == WINDCTL_CONTACT_BOX) {
+        mean->box -= mean->ring[at];
+    }
     mean->ring[at] = contact;
     mean->at = (uint8_t)(at < WINDCTL_CONTACT_BOX - 1 ? at + 1 : 0);
     if (mean->filled < WINDCTL_CONTACT_BOX) {

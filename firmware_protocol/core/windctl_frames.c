@@ -2,8 +2,12 @@
 
 WINDCTL_ASSERT(lengths_fit_a_byte, WINDCTL_ENCODED_LIMIT + 1 < 254);
 
+#ifdef WINDCTL_CRC_BYTE
+#define next_crc WINDCTL_CRC_BYTE
+#else
+
 /* The polynomial 0x1021 for a whole byte at once: what eight single shifts come to. */
-uint16_t windctl_crc(uint16_t crc, uint8_t byte)
+static inline uint16_t next_crc(uint16_t crc, uint8_t byte)
 {
     uint8_t x = (uint8_t)((crc >> 8) ^ byte);
     uint16_t y;
@@ -13,10 +17,17 @@ uint16_t windctl_crc(uint16_t crc, uint8_t byte)
     return (uint16_t)((crc << 8) ^ (y << 12) ^ (y << 5) ^ y);
 }
 
+#endif
+
+uint16_t windctl_crc(uint16_t crc, uint8_t byte)
+{
+    return next_crc(crc, byte);
+}
+
 uint16_t windctl_crc_over(uint16_t crc, const uint8_t *bytes, uint8_t size)
 {
     while (size--) {
-        crc = windctl_crc(crc, *bytes++);
+        crc = next_crc(crc, *bytes++);
     }
     return crc;
 }
@@ -24,7 +35,7 @@ uint16_t windctl_crc_over(uint16_t crc, const uint8_t *bytes, uint8_t size)
 static void keep(struct windctl_reader *reader, uint8_t byte)
 {
     reader->inside[reader->length++] = byte;
-    reader->crc = windctl_crc(reader->crc, byte);
+    reader->crc = next_crc(reader->crc, byte);
 }
 
 static uint8_t is_good(const struct windctl_reader *reader)
@@ -80,55 +91,45 @@ uint16_t windctl_read_crc(const struct windctl_reader *reader)
     return (uint16_t)((uint16_t)crc[0] << 8 | crc[1]);
 }
 
-/* A COBS block under way: where its code byte goes, and what that will be. */
-struct block {
-    uint8_t *ring;
-    uint8_t at;
-    uint8_t code_at;
-    uint8_t code;
-};
-
-static uint8_t after(uint8_t at)
+static inline uint8_t after(uint8_t at)
 {
     return (uint8_t)((at + 1) & (WINDCTL_SENT_RING - 1));
 }
 
-static void begin_block(struct block *block)
-{
-    block->code_at = block->at;
-    block->code = 1;
-    block->at = after(block->at);
-}
-
-static void put(struct block *block, uint8_t byte)
-{
-    if (byte) {
-        block->ring[block->at] = byte;
-        block->at = after(block->at);
-        block->code++;
-    } else {
-        block->ring[block->code_at] = block->code;
-        begin_block(block);
-    }
-}
-
 uint8_t windctl_write(uint8_t *ring, uint8_t at, uint8_t code, uint8_t sequence, const uint8_t *body, uint8_t size)
 {
-    struct block block;
-    uint16_t crc = windctl_crc(windctl_crc(WINDCTL_CRC_START, code), sequence);
+    uint8_t block_at = at; /* where the present block's length goes */
+    uint8_t block = 1;     /* what that will be */
+    uint8_t left = (uint8_t)(size + WINDCTL_FRAME_OVERHEAD);
+    uint8_t byte = code;
+    uint16_t crc = WINDCTL_CRC_START;
 
-    block.ring = ring;
-    block.at = at;
-    begin_block(&block);
-    put(&block, code);
-    put(&block, sequence);
-    while (size--) {
-        crc = windctl_crc(crc, *body);
-        put(&block, *body++);
+    at = after(at);
+    for (;;) {
+        if (byte) {
+            ring[at] = byte;
+            block++;
+        } else { /* a zero ends the block, and the next one's length takes its place */
+            ring[block_at] = block;
+            block_at = at;
+            block = 1;
+        }
+        at = after(at);
+        if (--left == 0) {
+            break;
+        }
+        if (left >= 2) {
+            crc = next_crc(crc, byte);
+        }
+        if (left == size + 2 + 1) {
+            byte = sequence;
+        } else if (left > 2) {
+            byte = *body++;
+        } else {
+            byte = (uint8_t)(left == 2 ? crc >> 8 : crc);
+        }
     }
-    put(&block, (uint8_t)(crc >> 8));
-    put(&block, (uint8_t)crc);
-    ring[block.code_at] = block.code;
-    ring[block.at] = 0;
-    return after(block.at);
+    ring[block_at] = block;
+    ring[at] = 0;
+    return after(at);
 }

@@ -32,6 +32,9 @@
 #define WINDCTL_ROM_U8(address) (*(address))
 #endif
 
+/* A port whose C library has a faster CRC-16 (polynomial 0x1021, nothing reflected) defines WINDCTL_CRC_BYTE as it:
+ *     uint16_t WINDCTL_CRC_BYTE(uint16_t crc, uint8_t byte); */
+
 /* A condition that holds when the core is compiled, or it is not compiled. `name` is unique in its file. */
 #define WINDCTL_ASSERT(name, condition) typedef char windctl_assert_##name[(condition) ? 1 : -1]
 

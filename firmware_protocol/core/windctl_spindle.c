@@ -2,13 +2,19 @@
 
 #define MILLI 1000u
 
-/* The highest pace with v*v <= 2*decel*4: one that four steps suffice to stand from. */
+/* The highest pace with v*v <= 2*decel*4: one that four steps suffice to stand from. Bit by bit: it is below 1024. */
 static uint16_t creep_pace(uint16_t decel)
 {
-    uint16_t creep = 1;
+    uint32_t bound = 8 * (uint32_t)decel;
+    uint16_t creep = 0;
+    uint16_t bit;
 
-    while (((uint32_t)creep + 1) * ((uint32_t)creep + 1) <= 8 * (uint32_t)decel) {
-        creep++;
+    for (bit = 512; bit; bit >>= 1) {
+        uint32_t more = (uint32_t)creep + bit;
+
+        if (more * more <= bound) {
+            creep = (uint16_t)more;
+        }
     }
     return creep;
 }

@@ -23,7 +23,7 @@ from windctl.machine.virtual.spindle import Spindle
 CONTACT_MILLIOHM: Final = 305  # per unit, as pins.h has it
 _SLACK: Final = 200  # cycles before a tick at which the plant's own millisecond begins
 _ADAPTER_BYTES: Final = 62
-_PHASES: Final = ((0, 0), (0, 1), (1, 1), (1, 0))  # channels A, B as the encoder turns clockwise
+_PHASES: Final = ((0, 0), (1, 0), (1, 1), (0, 1))  # channels A, B as the encoder turns clockwise
 
 
 class SteppedSpindle(Spindle):
