@@ -74,7 +74,7 @@ def library(folder: Path, queue: int = 128, tool: str = "cc", flags: Sequence[st
     built = folder / "libwindctl.so"
     sources = [*core_sources(), HOST / "windctl_host.c", HERE / "play.c"]
     define = f"-DWINDCTL_QUEUE={queue}"
-    run(tool, [*WARNINGS, *flags, *includes(), define, "-fPIC", "-shared", "-o", built, *sources])
+    run(tool, ["-std=c99", *flags, *includes(), define, "-fPIC", "-shared", "-o", built, *sources])
     return built
 
 
