@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from windctl.cli import present
+from windctl.cli import coil_addenda, present
 from windctl.cli.exit_codes import ExitCode
 from windctl.cli.options import Shared, takes
 from windctl.desk.books import book_if_any, book_to_read
@@ -118,6 +118,7 @@ def show(shared: Shared, coil: str) -> None:
     ]
     present.pairs([(name, value) for name, value in rows if value])
     _show_events(shown["events"])
+    _show_addenda(shown["addenda"])
 
 
 def _show_events(events: Any) -> None:
@@ -130,6 +131,23 @@ def _show_events(events: Any) -> None:
         else:
             present.result(f"{_since(event)}  {event['kind'].replace('_', ' ')}{_told(event)}")
     present.result(f"{dense['status_heard']} board reports and {dense['reading_taken']} readings besides")
+
+
+def _show_addenda(addenda: Any) -> None:
+    """What was said after the record was closed."""
+    for fact in addenda:
+        if fact["kind"] == "coil_taught":
+            kinds = ", ".join(one["what"] for one in fact["lesson"]["measured"])
+            present.result(f"taught: {kinds or 'nothing, but that it took wire'}")
+            continue
+        said = [
+            f"{name.replace('_', ' ')} {value:g}" if isinstance(value, float) else str(value)
+            for name, value in fact.items()
+            if name not in ("kind", "wall_time", "by") and value not in (None, "")
+        ]
+        when = fact["wall_time"][:16].replace("T", " ")
+        kind = fact["kind"].removeprefix("coil_")
+        present.result(f"{kind} by {fact['by']}, {when}: {', '.join(said)}")
 
 
 def _since(event: Mapping[str, Any]) -> str:
@@ -179,3 +197,7 @@ def export(shared: Shared, coil: str) -> None:
     """The whole record of COIL as JSON, with its digests: enough to check it, and to restore it elsewhere."""
     with book_to_read(shared) as book:
         present.result_json(dict(book.export(coil)))
+
+
+for _command in (coil_addenda.note, coil_addenda.measure, coil_addenda.withdraw):
+    coils.add_command(_command)

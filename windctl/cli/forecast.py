@@ -24,13 +24,14 @@ _Z95 = 1.959964
 @click.command(short_help="A forecast from a readings file.")
 @click.argument("recipe", type=click.Path(path_type=Path))
 @click.argument("readings", type=click.Path(path_type=Path))
-@takes("at_turn", "machine", "json", "no_input")
+@takes("at_turn", "machine", "spool", "book", "json", "no_input")
 def forecast(shared: Shared, recipe: Path, readings: Path) -> None:
     """The forecast for the coil of RECIPE after each reading in the CSV file READINGS.
 
     The forecast is for --at-turn, else the recipe's turns, else the planned ones. How far the meter can be
     trusted comes from the machine's profile.
     """
+    from windctl.desk.supply import supply_of
     from windctl.forecast.readings_file import load_readings
     from windctl.forecast.table import forecast_table
     from windctl.plan.make import make_plan
@@ -38,7 +39,8 @@ def forecast(shared: Shared, recipe: Path, readings: Path) -> None:
 
     wanted = load_recipe(recipe)
     lines = load_readings(readings)
-    plan = make_plan(wanted, profile_of(shared))
+    profile = profile_of(shared)
+    plan = make_plan(wanted, profile, supply=supply_of(shared, profile, wanted))
     lines = _in_ohm(plan.prior, lines, str(readings), typed.may_ask(shared.no_input))
     at_turn = shared.at_turn or float(wanted.stop.turns or plan.turns)
     table = forecast_table(plan.prior, lines, at_turn, wanted.stop.dcr_20c_ohm)

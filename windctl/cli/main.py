@@ -21,6 +21,7 @@ COMMANDS = {
     "resume": "windctl.cli.wind:resume",
     "forecast": "windctl.cli.forecast:forecast",
     "coils": "windctl.cli.coils:coils",
+    "spool": "windctl.cli.spool:spool",
     "machine": "windctl.cli.machine:machine",
     "recipe": "windctl.cli.recipe:recipe",
     "diagnose": "windctl.cli.diagnose:diagnose",

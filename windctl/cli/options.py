@@ -14,6 +14,7 @@ from typing import Any, Concatenate, ParamSpec, TypeVar
 
 import click
 
+from windctl.cli import typed
 from windctl.desk.asked import Shared
 
 __all__ = ["Shared", "all_options", "given", "takes"]
@@ -53,7 +54,7 @@ _OPTIONS: dict[str, _Decorator] = {
     "speed": _shared(
         "--speed",
         metavar="N",
-        type=click.FloatRange(min=0),
+        type=typed.FiniteRange(min=0),
         help="Virtual machine: 1 is real time, 40 forty times that, 0 (the default) as fast as possible.",
     ),
     "plant_seed": _shared(
@@ -67,9 +68,12 @@ _OPTIONS: dict[str, _Decorator] = {
         type=click.Choice(["live", "checks", "none"]),
         help="How the coil is measured while it is wound, in place of what the profile says.",
     ),
+    "spool": _shared(
+        "--spool", metavar="ID", help="The spool that the wire comes from; its coils have taught how it is."
+    ),
     "dry_run": _shared("--dry-run", is_flag=True, help="Say what would be done; move and record nothing."),
     "at_turn": _shared(
-        "--at-turn", metavar="N", type=click.FloatRange(min=0), help="The turn, counted or confirmed by you."
+        "--at-turn", metavar="N", type=typed.FiniteRange(min=0), help="The turn, counted or confirmed by you."
     ),
     "batch": _shared("--batch", metavar="NAME", help="The batch that the coil belongs to."),
     "of": _shared(

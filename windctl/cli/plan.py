@@ -33,19 +33,21 @@ _Z95 = 1.959964  # two-sided 95 % of a normal distribution
     metavar="OHM",
     help="Plan for this resistance at 20 °C, whatever the target; 7.946k and 7,946k are understood.",
 )
-@takes("machine", "readings", "json", "no_input")
+@takes("machine", "readings", "spool", "book", "json", "no_input")
 def plan(shared: Shared, recipe: Path, turns: int | None, dcr_ohm: float | None) -> None:
     """What the coil of RECIPE will be: turns, resistance, wire, fit, time, and what can go wrong."""
+    from windctl.desk.supply import supply_of
     from windctl.plan.make import make_plan
     from windctl.recipe.load import load_recipe
 
     if turns is not None and dcr_ohm is not None:
         raise click.UsageError("--turns and --dcr each name the target: give one of them.")
     wanted, profile = load_recipe(recipe), profile_of(shared)
+    supply = supply_of(shared, profile, wanted)
     if dcr_ohm is not None:
-        expected = make_plan(wanted, profile).dcr_20c_ohm
+        expected = make_plan(wanted, profile, supply=supply).dcr_20c_ohm
         dcr_ohm = typed.confirm_ohm(dcr_ohm, expected, "a target", may_ask=typed.may_ask(shared.no_input))
-    made = make_plan(wanted, profile, turns=turns, dcr_ohm=dcr_ohm)
+    made = make_plan(wanted, profile, turns=turns, dcr_ohm=dcr_ohm, supply=supply)
     if shared.json:
         present.result_json(made.as_json())
     else:
@@ -70,11 +72,32 @@ def show_plan(made: Plan, recipe: Recipe) -> None:
             ("time", present.duration(made.duration_s)),
             ("wire speed", f"{made.wire_speed_mean_m_s:.1f} m/s, {peak}"),
             ("program", f"{segments} segments, {present.short_digest(made.program.digest)}"),
+            *_learnt(made),
         ]
     )
     _show_section(made, recipe)
     for warning in made.warnings:
         present.result(f"caution: {warning}")
+
+
+def _learnt(made: Plan) -> list[tuple[str, str]]:
+    """What the plan rests on besides recipe and tables."""
+    learnt = made.learnt
+    rows = []
+    if learnt.spool:
+        per_m = f"{made.ohm_per_m:.4g} ohm/m"
+        rows.append(
+            ("spool", f"{learnt.spool}, {per_m}, known from {present.counted(learnt.spool_coils, 'coil')}")
+        )
+        if learnt.left is not None:
+            left = present.with_uncertainty(max(learnt.left.metres, 0.0), _Z95 * learnt.left.sd, "m")
+            rows.append(("left on it", f"{left}, before this coil"))
+    if learnt.lay_coils:
+        packing = f"{made.packing:.3f} ± {_Z95 * made.packing_sd:.3f}"
+        rows.append(
+            ("packing", f"{packing}, known from {present.counted(learnt.lay_coils, 'coil')} of this lay")
+        )
+    return rows
 
 
 def _show_section(made: Plan, recipe: Recipe) -> None:

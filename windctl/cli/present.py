@@ -15,9 +15,10 @@ from typing import Any, TextIO
 
 import click
 
-from windctl.desk.numbers import duration, grouped, ohm, short_digest, turns, with_uncertainty
+from windctl.desk.numbers import counted, duration, grouped, ohm, short_digest, turns, with_uncertainty
 
 __all__ = [
+    "counted",
     "duration",
     "grouped",
     "message",

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 import sys
+from typing import Any
 
 import click
 
@@ -22,6 +23,18 @@ def parse_ohm(text: str) -> float:
     if value <= 0 or not math.isfinite(value):
         raise ValueError(f"a resistance is above 0 ohm, not {text.strip()}")
     return value
+
+
+class FiniteRange(click.FloatRange):
+    """A number within limits. Click itself takes "nan" for one, which no limit keeps out."""
+
+    def convert(
+        self, value: Any, param: click.Parameter | None, ctx: click.Context | None
+    ) -> Any:  # as click's own
+        number = super().convert(value, param, ctx)
+        if isinstance(number, float) and not math.isfinite(number):
+            self.fail(f"{value} is not a finite number.", param, ctx)
+        return number
 
 
 def ohm_option(ctx: click.Context, param: click.Parameter, value: str | None) -> float | None:

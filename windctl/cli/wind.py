@@ -34,6 +34,7 @@ if TYPE_CHECKING:
     "speed",
     "plant_seed",
     "readings",
+    "spool",
     "book",
     "batch",
     "of",
@@ -49,6 +50,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     and leaves the coil open, for `windctl resume`. It is no emergency stop: use the hardware stop.
     """
     from windctl.desk.bench import open_bench
+    from windctl.desk.supply import supply_of
     from windctl.forms.source import read_text
     from windctl.plan.make import make_plan
     from windctl.recipe.load import parse_recipe
@@ -59,11 +61,15 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     text = read_text(recipe, RecipeError)
     wanted, profile = parse_recipe(text, str(recipe)), profile_of(shared)
     simulated = simulated_here(shared, profile)
-    plan = make_plan(wanted, profile)
+    supply = supply_of(shared, profile, wanted, simulated=simulated)
+    plan = make_plan(wanted, profile, supply=supply)
     if shared.dry_run:
         return _dry_run(shared, plan, wanted)
     _before(shared, plan, profile)
-    with open_bench(shared, profile, simulated, wanted) as bench, book_to_write(shared) as book:
+    with (
+        open_bench(shared, profile, simulated, wanted, supply=supply) as bench,
+        book_to_write(shared) as book,
+    ):
         order = Order(
             recipe=wanted,
             recipe_text=text,

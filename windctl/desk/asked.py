@@ -17,6 +17,7 @@ class Shared:
     speed: float | None = None
     plant_seed: int | None = None
     readings: str | None = None
+    spool: str | None = None
     dry_run: bool = False
     at_turn: float | None = None
     batch: str | None = None

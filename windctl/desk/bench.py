@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import getpass
+import re
 import secrets
 import uuid
+import zlib
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager, suppress
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import TYPE_CHECKING
 
@@ -20,6 +22,7 @@ if TYPE_CHECKING:
     from windctl.machine.line_trace import LineTrace
     from windctl.machine.ports import Port
     from windctl.machine.virtual.plant import PlantTruth
+    from windctl.plan.experience.supply import Supply
     from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe
     from windctl.record.events import CoilStarted
@@ -27,7 +30,8 @@ if TYPE_CHECKING:
 
 DEFAULT_SEED = 1
 
-_SEED_MARK = ", plant seed "
+# What the record keeps of a simulated machine: enough to simulate the same one again.
+_SIMULATED = re.compile(r", plant seed (\d+)(?:, (\d+) coils and (\d+) m into the spool)?$")
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,8 +54,10 @@ def open_bench(
     simulated: bool,
     recipe: Recipe,
     started: CoilStarted | None = None,
+    supply: Supply | None = None,
 ) -> Iterator[Bench]:
-    """The bench, its port open until the end. `started`: the coil that is gone on with.
+    """The bench, its port open until the end. `started`: the coil that is gone on with. `supply`: the spool
+    that a new one is wound from.
 
     Raises MachineError when the port is not there or busy, UsageError for options that have no meaning on it.
     """
@@ -80,17 +86,26 @@ def open_bench(
     from windctl.machine.virtual.bench import virtual_bench
     from windctl.machine.virtual.port import VirtualPort
 
-    seed = shared.plant_seed if shared.plant_seed is not None else _seed_of(started)
-    machine = virtual_bench(recipe, profile, seed)
+    drawn = _again(started) if started is not None else _anew(supply)
+    if shared.plant_seed is not None:
+        drawn = replace(drawn, seed=shared.plant_seed)
+    machine = virtual_bench(
+        recipe,
+        profile,
+        drawn.seed,
+        spool_seed=drawn.spool_seed,
+        coil=drawn.coils,
+        wound_m=float(drawn.metres),
+    )
     if started is not None and shared.at_turn is not None:
         from windctl.record.program import unpacked
 
         # The simulated coil went with the process that wound it: the same wire is laid again up to there.
         machine.plant.wound_already(shared.at_turn, unpacked(started.program_packed))
-    note(f"{profile.name}: simulated, plant seed {seed}, for {recipe.name}")
+    note(f"{profile.name}: simulated{drawn}, for {recipe.name}")
     simulated_port = VirtualPort(machine, shared.speed or 0.0)
     yield Bench(
-        f"{profile.name}{_SEED_MARK}{seed}",
+        f"{profile.name}{drawn}",
         simulated_port,
         _here(),
         simulated_port.truth,
@@ -108,12 +123,40 @@ def _keep(trace: LineTrace, about: str) -> None:
         file.write_text(f"# {about}, closed {closed}\n{trace.text()}", encoding="utf-8")
 
 
-def _seed_of(started: CoilStarted | None) -> int:
-    """The plant seed that a recorded coil was simulated with, else the usual one."""
-    if started is None:
-        return DEFAULT_SEED
-    _, marked, seed = started.machine.rpartition(_SEED_MARK)
-    return int(seed) if marked and seed.isdecimal() else DEFAULT_SEED
+@dataclass(frozen=True, slots=True)
+class _Drawn:
+    """Which wire and fate a simulated machine is given; `coils` and `metres` were wound from the spool
+    before."""
+
+    seed: int
+    spool: str = ""
+    coils: int = 0
+    metres: int = 0
+
+    @property
+    def spool_seed(self) -> int | None:
+        """A named spool has its own wire, the same for all coils from it."""
+        return zlib.crc32(f"{self.seed} {self.spool}".encode()) if self.spool else None
+
+    def __str__(self) -> str:
+        into = f", {self.coils} coils and {self.metres} m into the spool" if self.spool else ""
+        return f", plant seed {self.seed}{into}"
+
+
+def _anew(supply: Supply | None) -> _Drawn:
+    """The usual, with the wire of the spool that is named."""
+    if supply is None:
+        return _Drawn(DEFAULT_SEED)
+    return _Drawn(DEFAULT_SEED, supply.id, supply.wound_coils, round(supply.wound_m))
+
+
+def _again(started: CoilStarted) -> _Drawn:
+    """What a recorded coil was simulated with, else the usual."""
+    match = _SIMULATED.search(started.machine)
+    if match is None:
+        return _Drawn(DEFAULT_SEED)
+    seed, coils, metres = (int(part or 0) for part in match.groups())
+    return _Drawn(seed, started.spool, coils, metres)
 
 
 def _here() -> Here:
@@ -124,11 +167,12 @@ def _here() -> Here:
         year=datetime.now().astimezone().year,
         coil_id=str(uuid.uuid4()),
         nonces=lambda: secrets.randbits(32),
-        operator=_operator(),
+        operator=operator(),
     )
 
 
-def _operator() -> str:
+def operator() -> str:
+    """Who stands at the bench, as the system knows them."""
     try:
         return getpass.getuser()
     except (KeyError, OSError):  # no such user in the system's list: nobody to name

@@ -26,6 +26,13 @@ def book_if_any(shared: Shared) -> AbstractContextManager[Book | None]:
     return open_book(path, create=False, readonly=True)
 
 
+def there_is_a_book(shared: Shared) -> bool:
+    """Whether the book that is meant was made already."""
+    from windctl.book.places import book_path
+
+    return book_path(shared.book, os.environ).exists()
+
+
 def book_to_read(shared: Shared) -> Book:
     """The book, never changed by reading it. Raises BookError where there is none."""
     from windctl.book.open import open_book

@@ -43,6 +43,11 @@ def turns(value: float, half_width: float = 0.0) -> str:
     return f"{grouped(value, 0 if float(value).is_integer() else 2)} turns"
 
 
+def counted(number: int, what: str) -> str:
+    """`no coil`, `1 coil`, `12 coils`."""
+    return f"no {what}" if number == 0 else f"{grouped(number)} {what}{'' if number == 1 else 's'}"
+
+
 def duration(seconds: float) -> str:
     """`0:45`, `8:05`, `1:02:10`."""
     whole = max(0, round(seconds))

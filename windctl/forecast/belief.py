@@ -94,6 +94,9 @@ def first_belief(prior: Prior) -> Belief:
     warm = 1.0 + ALPHA_20C * prior.coil_over_air_k
     by_bias, by_over = -ALPHA_20C / warm * thermometer, ALPHA_20C / warm * over  # with the log of `error`
     error = gain + ALPHA_20C / warm * (by_over - by_bias)  # its relative variance
+    learnt = 1.0 + prior.meter_cov / error if error > 0.0 else 1.0  # what of it is not in the prior already
+    gain_too, by_bias, by_over = learnt * gain, learnt * by_bias, learnt * by_over
+    error += 2.0 * prior.meter_cov if error > 0.0 else 0.0
     r, g = prior.ohm_per_turn * warm, prior.growth * warm
     square = warm * warm
     rr = prior.var_ohm_per_turn * square + error * r * r
@@ -104,10 +107,10 @@ def first_belief(prior: Prior) -> Belief:
         mean=(0.0, r, g, prior.offset_ohm, 0.0, 0.0, prior.coil_over_air_k),
         cov=(
             (0.0, 0.0, 0.0, 0.0, 0.0, 0.0, 0.0),
-            (0.0, rr, rg, 0.0, r * gain, r * by_bias, r * by_over),
-            (0.0, rg, gg, 0.0, g * gain, g * by_bias, g * by_over),
+            (0.0, rr, rg, 0.0, r * gain_too, r * by_bias, r * by_over),
+            (0.0, rg, gg, 0.0, g * gain_too, g * by_bias, g * by_over),
             (0.0, 0.0, 0.0, prior.offset_sd**2, 0.0, 0.0, 0.0),
-            (0.0, r * gain, g * gain, 0.0, gain, 0.0, 0.0),
+            (0.0, r * gain_too, g * gain_too, 0.0, gain, 0.0, 0.0),
             (0.0, r * by_bias, g * by_bias, 0.0, 0.0, thermometer, 0.0),
             (0.0, r * by_over, g * by_over, 0.0, 0.0, 0.0, over),
         ),

@@ -32,6 +32,7 @@ def open_minded(prior: Prior, basis: Basis) -> Prior:
         cov=_WIRE_REL**2 * flat * grown,
         gain_sd=0.0,
         celsius_sd=0.0,
+        meter_cov=0.0,
     )
 
 

@@ -174,4 +174,5 @@ class Believed:
             noise_rel=readings.noise_pct / 100,
             floor_ohm=readings.floor_ohm,
             contact_length_ohm=self.ohm_per_m * readings.contact_length_mm / 1000,
+            meter_cov=outlook.meter_cov,
         )

@@ -116,6 +116,7 @@ def make_plan(
     fit = judge_fit(given.core, build * laid.peak, build_rel, recipe.bobbin.flange_depth_mm)
     bare = wire_speed(given.core, recipe.spindle.cruise_rpm)
     full = wire_speed(given.core.grown(build), recipe.spindle.cruise_rpm)
+    ahead = Outlook(planned, wanted, fit, full, ribbon(program), length, supply.left)
     spindle = profile.spindle
     return Plan(
         recipe_name=recipe.name,
@@ -128,7 +129,7 @@ def make_plan(
         dcr_sd_ohm=sd,
         ohm_per_m=ohm_per_m,
         wire_length_m=length,
-        wire_mass_g=length * wire.mass_g_per_m,
+        wire_mass_g=length * believed.basis.wire_g_per_m(known.wire),
         perimeter_mm=coil.perimeter_mm,
         mean_turn_mm=coil.mean_turn_mm(planned),
         overall_mm=wire.overall_mm,
@@ -148,10 +149,10 @@ def make_plan(
         wire_speed_peak_m_s=bare.peak_m_s,
         wire_speed_peak_full_m_s=full.peak_m_s,
         checked=checked,
-        warnings=cautions(recipe, profile, wire, Outlook(planned, wanted, fit, full, ribbon(program))),
+        warnings=cautions(recipe, profile, wire, ahead),
         prior=believed.prior(float(planned), profile.readings),
         basis=believed.basis,
-        learnt=Learnt(supply.id, known.spool_coils, known.lay_coils),
+        learnt=Learnt(supply.id, known.spool_coils, known.lay_coils, supply.left),
         pace=pace_spec(recipe, profile),
         program=program,
     )

@@ -8,6 +8,7 @@ from typing import Any, Literal
 from windctl.lay.limits import Checked
 from windctl.lay.program import Program
 from windctl.plan.experience.basis import Basis
+from windctl.plan.experience.supply import Left
 from windctl.plan.pace import PaceSpec
 from windctl.plan.prior import Prior
 
@@ -17,11 +18,13 @@ TargetKind = Literal["turns", "dcr_20c_ohm"]
 
 @dataclass(frozen=True, slots=True)
 class Learnt:
-    """From how many coils the plan knows: of its spool ("" where none is named), and of its lay."""
+    """From how many coils the plan knows: of its spool ("" where none is named), and of its lay. `left`: the
+    wire on the spool, None where it is not known."""
 
     spool: str
     spool_coils: int
     lay_coils: int
+    left: Left | None
 
 
 @dataclass(frozen=True, slots=True)

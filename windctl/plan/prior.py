@@ -32,3 +32,6 @@ class Prior:
     # relative sd over the whole coil: what ohm per metre gathers by wandering, and by a steady slope
     wire_walk_rel: float = 0.0015
     wire_slope_rel: float = 0.0017
+    # covariance of both coefficients, relative, with how much too much the instruments show at 20 degrees C:
+    # below 0 where the wire is known from earlier coils that the same instruments measured
+    meter_cov: float = 0.0

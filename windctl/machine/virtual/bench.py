@@ -111,10 +111,15 @@ def virtual_bench(
     seed: int,
     *,
     spool_seed: int | None = None,
+    coil: int = 0,
+    wound_m: float = 0.0,
     faults: Faults | None = None,
     latency_ticks: int = 0,
 ) -> Bench:
-    """The machine of `profile`, with the bobbin and the wire of `recipe`, as `seed` draws them."""
+    """The machine of `profile`, with the bobbin and the wire of `recipe`, as `seed` draws them.
+
+    `spool_seed`: of a spool from which `coil` coils and `wound_m` metres were wound before.
+    """
     spec = plant_for(recipe, profile)
     board = Board(
         capabilities=fittings(spec, profile),
@@ -122,5 +127,5 @@ def virtual_bench(
         contact_scale=spec.milliohm_per_unit,
         tension_scale=spec.tension_unit,
     )
-    plant = Plant(spec, seed, faults=faults, spool_seed=spool_seed)
+    plant = Plant(spec, seed, faults=faults, spool_seed=spool_seed, coil=coil, wound_m=wound_m)
     return Bench(board, plant, SerialLine(profile.port.baud, latency_ticks))

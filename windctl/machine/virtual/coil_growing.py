@@ -31,6 +31,14 @@ class Spool:
     walk: float = 0.0
 
 
+def walked(fate: Fate, spool_seed: int, metres: float) -> float:
+    """Where the random walk of a spool stands after so many metres that nobody watched."""
+    if metres <= 0.0:
+        return 0.0
+    spread = fate.walk_per_root_km * math.sqrt(metres / 1000.0)
+    return Draws(spool_seed, f"walk to {metres:.0f} m").normal(0.0, spread)
+
+
 @dataclass(frozen=True, slots=True)
 class _Turn:
     ohm: float

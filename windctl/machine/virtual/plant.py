@@ -10,7 +10,7 @@ from __future__ import annotations
 import struct
 from dataclasses import dataclass
 
-from windctl.machine.virtual.coil_growing import Coil, Spool
+from windctl.machine.virtual.coil_growing import Coil, Spool, walked
 from windctl.machine.virtual.contact import BLOCK
 from windctl.machine.virtual.fate import Fate, draw_fate
 from windctl.machine.virtual.faults import Faults, gate_times
@@ -73,8 +73,11 @@ class Plant:
         fate: Fate | None = None,
         faults: Faults | None = None,
         spool_seed: int | None = None,
+        coil: int = 0,
+        wound_m: float = 0.0,
     ) -> None:
-        """`fate` instead of what `seed` would draw; `spool_seed` for a spool that several runs share."""
+        """`fate` instead of what `seed` would draw; `spool_seed` for a spool that several runs share, `coil`
+        and `wound_m` for how many coils and metres they have wound from it."""
         self.spec = spec
         self._seed = seed
         self._spool_seed = seed if spool_seed is None else spool_seed
@@ -82,8 +85,8 @@ class Plant:
         self._faults = faults or Faults()
         self._gates = gate_times(self._faults)
         self._next_gate = self._gates[0][0] if self._gates else _NEVER
-        world = self._fate(0)
-        self._bobbins = 0
+        world = self._fate(coil)
+        self._bobbins = coil
         self.ticks = 0
         self.spindle = Spindle(spec.steps_per_turn)
         self._steps_per_turn = spec.steps_per_turn
@@ -95,7 +98,7 @@ class Plant:
         self._turning = False
         self._index_lost = False
         self._index_at = int(world.index_place * spec.steps_per_turn) if spec.index else _NEVER
-        self._spool = Spool()
+        self._spool = Spool(wound_m, walked(world, self._spool_seed, wound_m))
         self.guide: Carriage | Hand = Carriage(spec, world.guide_zero_mm) if spec.guide else Hand(spec, seed)
         self.wire_whole = True
         self._turn_start = 0

@@ -7,9 +7,12 @@ deviations from such a basis: the drawing, the tables, the usual packing.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import pi
+from math import exp, pi
 
 from windctl.coil.buildup import BuildUp
+from windctl.material.copper import DENSITY_G_CM3 as COPPER_G_CM3
+
+_THINNEST = 0.2  # of the enamel's nominal cross-section: less is no enamel
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,6 +52,21 @@ class Basis:
     def ohm_per_turn(self) -> float:
         """Of the first turn."""
         return self.ohm_per_m * self.perimeter_mm / 1000.0
+
+    def wire_g_per_m(self, level: float = 0.0, area: float = 0.0) -> float:
+        """Mass of a metre of the wound wire, copper and enamel.
+
+        `level`, `area`: by how much its ohm per metre and its cross-section with enamel deviate. Copper goes
+        down as ohm per metre goes up.
+        """
+        copper, bare, overall = self.copper_g_per_m, self.bare_mm**2, self.overall_mm**2
+        thick = (overall * exp(area) - bare * exp(-level)) / (overall - bare) if overall > bare else 1.0
+        return copper * exp(-level) + (self.mass_g_per_m - copper) * max(thick, _THINNEST)
+
+    @property
+    def copper_g_per_m(self) -> float:
+        """Mass of a metre's copper."""
+        return COPPER_G_CM3 * pi / 4.0 * self.bare_mm**2
 
     @property
     def growth_ohm(self) -> float:

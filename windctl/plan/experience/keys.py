@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 
+from windctl.plan.experience.gaussian import Name
 from windctl.recipe.model import Recipe
 
 
@@ -30,6 +31,14 @@ def lay_key(recipe: Recipe) -> str:
             "tension": tension,
         }
     )
+
+
+def asked_for(recipe: Recipe, spool: str, bench: str) -> set[Name]:
+    """The unknowns that a plan of this recipe is made of; `spool` empty where none is meant."""
+    lay = lay_key(recipe)
+    of_spool = {(what, spool) for what in ("level", "slope", "area", "metal")} if spool else set()
+    of_lay = {("lay", lay), ("jaws", lay), ("style", recipe.lay.style)}
+    return of_spool | of_lay | {("core", bobbin_key(recipe)), ("meter", bench)}
 
 
 def _key(content: object) -> str:

@@ -62,6 +62,7 @@ class Lesson:
     turns: float
     meter_rel: float
     measured: tuple[Measured, ...]
+    simulated: bool = False  # such coils teach no real bench
 
     @property
     def source(self) -> str:

@@ -4,11 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.fold import Experience, Known, at_coil
-from windctl.plan.experience.gaussian import Name
 from windctl.plan.experience.lesson import Lesson
-from windctl.plan.experience.unknowns import BED, COIL, MOULD, roles
+from windctl.plan.experience.unknowns import roles
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,10 +59,3 @@ def outlook(experience: Experience, lesson: Lesson) -> Outlook:
         spool_coils=spool_coils,
         lay_coils=lay_coils,
     )
-
-
-def asked_for(basis: Basis, spool: str, bench: str) -> set[Name]:
-    """The unknowns that the outlook of such a coil is made of."""
-    part = roles(basis, spool, bench)
-    names = {*part.wire, *part.core, *part.growth, part.meter, part.metal, part.jaws, ("slope", spool)}
-    return names - {COIL, MOULD, BED}

@@ -25,6 +25,8 @@ class Supply:
     spool: Spool | None = None
     experience: Experience = field(default_factory=Experience)
     left: Left | None = None
+    wound_coils: int = 0  # from this spool
+    wound_m: float = 0.0
 
     @property
     def id(self) -> str:

@@ -21,10 +21,9 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from math import exp, hypot, log, pi, sqrt
+from math import exp, hypot, log, sqrt
 
 from windctl.material.copper import ALPHA_20C
-from windctl.material.copper import DENSITY_G_CM3 as COPPER_G_CM3
 from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.gaussian import Gaussian, Name
 from windctl.plan.experience.lesson import Build, Lesson, Mass, Measured, Resistance, Share
@@ -142,15 +141,11 @@ def expected(belief: Gaussian, lesson: Lesson, measured: Measured) -> Expected:
             return Expected(row, measured.part - share, measured.sd**2 + (TREND_SD * share) ** 2)
         case Mass():
             length = ohm / (basis.ohm_per_m * exp(level))
-            copper = COPPER_G_CM3 * pi / 4.0 * basis.bare_mm**2
-            coat = basis.mass_g_per_m - copper
-            overall = pi / 4.0 * basis.overall_mm**2
-            bare = pi / 4.0 * basis.bare_mm**2
-            area = belief.value(part.area)
-            thick = max((overall * exp(area) - bare * exp(-level)) / (overall - bare), 0.2)
-            per_m = copper * exp(-level) + coat * thick
-            by_area = coat / (overall - bare) * overall * exp(area) / per_m
-            by_wire = (-copper + coat / (overall - bare) * bare) * exp(-level) / per_m
+            area, bare, overall = belief.value(part.area), basis.bare_mm**2, basis.overall_mm**2
+            per_m = basis.wire_g_per_m(level, area)
+            coat = (basis.mass_g_per_m - basis.copper_g_per_m) / max(overall - bare, 1e-9)
+            by_area = coat * overall * exp(area) / per_m
+            by_wire = (coat * bare - basis.copper_g_per_m) * exp(-level) / per_m
             row = _sum((metres, 1.0), (wire, by_wire), ({part.area: 1.0}, by_area), ({part.metal: 1.0}, 1.0))
             off = log(measured.grams / (length * per_m)) - belief.value(part.metal)
             return Expected(row, off, (measured.sd / measured.grams) ** 2)
