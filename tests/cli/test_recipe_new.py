@@ -53,7 +53,10 @@ def test_ten_answers_make_a_recipe(tmp_path: Path, monkeypatch: pytest.MonkeyPat
         (ANSWERS.replace("\n6\n", "\n60\n6\n"), "at most the core's length, 52.5 mm"),
         (ANSWERS.replace("8.5\n\n", "8.5\nleft\n\n"), "'left' is none of cw, ccw"),
         (ANSWERS.replace("AWG 42", "AWG 99\nAWG 42"), "'AWG 99': outside AWG 1 to AWG 56"),
-        (ANSWERS.replace("AWG 42", "42\nAWG 42"), "42 mm bare: it must be from 0.01 to 1 mm; by number it"),
+        (
+            ANSWERS.replace("AWG 42", "42\nAWG 42"),
+            "42 mm bare: it must be from 0.01 to 1 mm; a number is written",
+        ),
         (ANSWERS.replace("42\n\n", "42\n0.05\n\n"), "0.05 mm: it must be from the bare 0.06334 mm to 1.2 mm"),
         (ANSWERS.replace("AWG 42\n\n", "AWG 30\n\n0.28\n"), "measure the wire and give wire.overall_mm"),
         (ANSWERS.replace("8000", "0\n8000"), "0 turns: it must be from 1 to 1000000 turns"),

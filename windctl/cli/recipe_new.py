@@ -141,7 +141,7 @@ def _size(answer: str) -> str:
         pass
     else:
         if not 0.01 <= value <= 1:
-            raise ValueError(f"{answer} mm bare: it must be from 0.01 to 1 mm; by number it is written AWG 42")
+            raise ValueError(f"{answer} mm bare: it must be from 0.01 to 1 mm; a number is written AWG 42")
         return repr(value)
     try:
         bare_mm_of(answer, None)

@@ -109,7 +109,7 @@ class _Reader:
             if name not in NEEDED + OPTIONAL:
                 known = ", ".join(NEEDED + OPTIONAL)
                 self._complain(
-                    number, places[i], f"there is no column {shorten(name)!r}; the columns are {known}"
+                    number, places[i], f"there is no column '{shorten(name)}'; the columns are {known}"
                 )
             elif name in columns[:i]:
                 self._complain(number, places[i], f"the column {name} stands twice")
@@ -142,7 +142,7 @@ class _Reader:
             if text == "" and name in OPTIONAL:
                 return None
             value = self._number(text, ohms)
-            fault = f"is {shorten(text)!r}, not a number" if value is None else check(value)
+            fault = f"is '{shorten(text)}', not a number" if value is None else check(value)
             if fault:
                 self._complain(number, place, f"{name} {fault}")
             return value
@@ -179,7 +179,7 @@ class _Reader:
         if word == "":
             return None
         if word not in allowed:
-            self._complain(number, place, f"{name} is {shorten(text)!r}; it can be {' or '.join(allowed)}")
+            self._complain(number, place, f"{name} is '{shorten(text)}'; it can be {' or '.join(allowed)}")
             return None
         return word
 
