@@ -375,7 +375,7 @@ uint8_t windctl_judge(struct windctl_core *core, uint8_t code, const uint8_t *bo
         *value = core->epoch;
         return WINDCTL_REFUSAL_STALE;
     }
-    if (!(states >> core->state & 1)) {
+    if (core->state > WINDCTL_STATE_TRIPPED || !(states >> core->state & 1)) {
         *value = core->state;
         return WINDCTL_REFUSAL_STATE;
     }

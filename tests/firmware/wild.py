@@ -95,7 +95,7 @@ def _episode(rng: random.Random, ticks: int, trace: Trace, reached: Reached, que
         if at == reboot_at:
             board.reboot()
         if at == break_at:
-            board.set_state(rng.choice((5, 77, 255)))
+            board.set_state(rng.choice((5, 32, 77, 255)))
         inputs.received = host.bytes_for_tick()
         board.tick(inputs, outputs)
         if outputs.sent:
