@@ -12,10 +12,12 @@ from hypothesis import strategies as st
 from tests.record import samples
 from tests.record.following import FRESH_BOARD, Coil, at_rest, measured, ready, settle, true_ohm, turning
 from tests.record.samples import CPT, identity, reading, started, status
-from windctl.protocol.messages import Cause, Go, InputBit, Refusal, Refused
+from windctl.forecast.finish import so_far
+from windctl.protocol.messages import Cause, Go, InputBit, ReadingFlag, Refusal, Refused
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, Permission
 from windctl.record.events import (
+    AlarmRaised,
     BoardGreeted,
     ClearGiven,
     CoilFinished,
@@ -258,12 +260,42 @@ def test_the_operator_can_end_a_coil_where_it_stands() -> None:
     assert (coil.state.finished.outcome, coil.state.finished.reason) == ("stopped", "wrong bobbin")
 
 
-def test_open_contacts_teach_nothing() -> None:
+def opened(ticks: int, turn: float) -> ReadingTaken:
+    flags = int(ReadingFlag.OPEN | ReadingFlag.TURNING)
+    return ReadingTaken(0, replace(reading(ticks, turn, 150.0), flags=flags, value=65535 * 16))
+
+
+def test_open_contacts_teach_nothing_about_the_resistance() -> None:
     coil = turning(200.0)
-    before = coil.state.estimate
-    opened = replace(reading(6_000, 200.0, 150.0), flags=3, value=65535 * 16)
-    coil.hear(ReadingTaken(0, opened))
-    assert coil.state.estimate == before and coil.state.readings_gated == 1
+    before = so_far(coil.state.estimate, 200.0)  # type: ignore[arg-type]  # it has started
+    assert coil.hear(opened(6_000, 200.0)) == []
+    assert so_far(coil.state.estimate, 200.0) == before  # type: ignore[arg-type]
+    assert coil.state.readings_gated == 1 and coil.state.reading is None
+
+
+def test_an_open_circuit_that_stays_is_an_alarm_and_a_hold() -> None:
+    coil = turning(200.0)
+    coil.hear(ReadingTaken(0, reading(5_900, 199.0, measured(199.0))))
+    follows = [fact for i in range(6) for fact in coil.hear(opened(6_000 + 250 * i, 200.0 + i))]
+    assert [type(fact) for fact in follows] == [AlarmRaised, HoldRequested]
+    assert isinstance(follows[0], AlarmRaised) and follows[0].alarm == "open"
+    assert coil.decision.wants.hold and coil.decision.wants.go is None
+    at_rest(coil, 206.0, Cause.HOLD)
+    assert coil.decision.asks == "go"
+    coil.hear(GoGiven(0, 5, 12, "operator"))
+    assert coil.state.alarm is None
+
+
+def test_another_wire_is_an_alarm_and_the_coil_goes_on() -> None:
+    coil = turning(100.0)
+    alarms = []
+    for i in range(1, 60):
+        turn = 100.0 + 6 * i
+        now = status(5_000 + 400 * i, state=BoardState.TURNING, cause=0, epoch=11, count=round(turn * CPT))
+        heard = ReadingTaken(0, reading(now.ticks, turn, 1.26 * measured(turn)))  # one gauge number finer
+        alarms += [fact for fact in coil.hear(heard, StatusHeard(0, now)) if isinstance(fact, AlarmRaised)]
+    assert [fact.alarm for fact in alarms] == ["wire"]
+    assert not coil.decision.wants.hold
 
 
 # ---------------------------------------------------------------- whatever happens

@@ -48,10 +48,15 @@ def stand_by(run: Watched, face: Face, prompt: Prompt | None, hand: Hand | None 
     with _listening(stops.heard):
         run.start()
         questions.begin()
+        alarm = ""
         try:
             while (ended := run.wait(LIVE_PERIOD_S)) is None:
                 snapshot = run.look()
                 face.show(snapshot)
+                if snapshot.alarm != alarm:
+                    alarm = snapshot.alarm
+                    if alarm:
+                        face.say(f"alarm: {alarm}")
                 news = stops.news()
                 if news is not None:
                     face.say(news)

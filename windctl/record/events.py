@@ -171,6 +171,21 @@ class StopPointChosen:
 
 
 @dataclass(frozen=True, slots=True)
+class AlarmRaised:
+    """The readings left what the coil's beginning allows. `alarm`: open, short, jump, wire, unsteady, doubt.
+
+    `odds`: of the named reason against everything being right, where it can be said; else 0.
+    """
+
+    kind: ClassVar[str] = "alarm_raised"
+    at_ms: int
+    turn: float
+    alarm: str
+    text: str
+    odds: float
+
+
+@dataclass(frozen=True, slots=True)
 class WentOn:
     """The spindle began to turn."""
 
@@ -319,6 +334,7 @@ Event = (
     | EndRequested
     | ClearGiven
     | StopPointChosen
+    | AlarmRaised
     | WentOn
     | Held
     | Tripped
@@ -347,6 +363,7 @@ KINDS: dict[str, type[Event]] = {
         EndRequested,
         ClearGiven,
         StopPointChosen,
+        AlarmRaised,
         WentOn,
         Held,
         Tripped,

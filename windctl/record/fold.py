@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import replace
+from math import inf, isfinite
 
 from windctl.forecast.estimator import Estimate, begin, update
 from windctl.forecast.events import new_wire, recounted, spliced
@@ -28,6 +29,7 @@ from windctl.protocol.messages import (
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
 from windctl.record.events import (
+    AlarmRaised,
     BoardGreeted,
     ClearGiven,
     CoilFinished,
@@ -105,6 +107,7 @@ def fold(state: State, event: Event) -> State:
                 hold=None,
                 hands=None,
                 refused=None,
+                alarm=None,
             )
         case ClearGiven():
             return replace(state, clear=Permission(event.boot, event.epoch), refused=None)
@@ -119,6 +122,8 @@ def fold(state: State, event: Event) -> State:
                 stop_choices=state.stop_choices + 1,
                 top_ups=state.top_ups + (1 if state.held is not None else 0),
             )
+        case AlarmRaised():
+            return replace(state, alarm=event)
         case WentOn():
             return _went_on(state)
         case Held():
@@ -230,6 +235,7 @@ def _status(state: State, status: Status) -> State:
             boot=status.boot,
             epoch=status.epoch,
             fresh_reading=False,
+            read_last=False,
         )
     # The board may still stand where another coil left it, or where this one does not stand any more.
     count, board_count = state.count, state.board_count
@@ -245,6 +251,7 @@ def _status(state: State, status: Status) -> State:
         count=count,
         board_count=board_count,
         fresh_reading=False,
+        read_last=False,
     )
 
 
@@ -253,27 +260,29 @@ def _reading(state: State, event: ReadingTaken) -> State:
     raw = event.reading
     if state.started is None or state.identity is None or state.estimate is None or state.fit is not Fit.SAME:
         return state
-    if raw.flags & ReadingFlag.OPEN or raw.count <= 0:
-        return replace(state, readings_gated=state.readings_gated + 1)
+    if raw.count <= 0:
+        return state
     if state.hands is not None or state.broke is not None or state.broke_near is not None:
         return state  # somebody is at the wire, or it is broken
     resting = not raw.flags & ReadingFlag.TURNING
     reading = CoilReading(
         turn=raw.count / state.counts_per_turn,
-        ohm=raw.value * state.identity.contact_scale / 16_000.0,
+        ohm=inf if raw.flags & ReadingFlag.OPEN else raw.value * state.identity.contact_scale / 16_000.0,
         celsius=raw.celsius / 100.0,
         resting=resting,
         seconds=raw.ticks / 1000.0,
     )
     settled = resting and state.held is not None and raw.ticks - raw.window - state.held.ticks >= SETTLE_TICKS
+    shown = reading if isfinite(reading.ohm) else state.reading
     if resting and not settled:
-        return replace(state, reading=reading)
+        return replace(state, reading=shown, read_last=True)
     estimate, used = update(state.estimate, reading)
     return replace(
         state,
         estimate=estimate,
-        reading=reading,
+        reading=shown,
         fresh_reading=used,
+        read_last=True,
         readings_used=state.readings_used + used,
         readings_gated=state.readings_gated + (not used),
         settled_readings=state.settled_readings + (1 if settled and used else 0),

@@ -1,10 +1,14 @@
-"""What the board's words amount to: it began to turn, came to rest, tripped, was turned back by hand."""
+"""What the board's words amount to: it began to turn, came to rest, tripped, was turned back by hand;
+and the readings give cause for an alarm."""
 
 from __future__ import annotations
 
+from windctl.forecast.alarm import find_alarm
 from windctl.protocol.messages import State as BoardState
-from windctl.record.events import Event, Held, Tripped, Unwound, WentOn
+from windctl.record.events import AlarmRaised, Event, Held, HoldRequested, Tripped, Unwound, WentOn
 from windctl.record.state import Fit, State
+
+NO_USE_GOING_ON = ("open", "short")  # every further turn would be wound on a coil that is broken already
 
 
 def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
@@ -20,6 +24,13 @@ def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
     came_to_rest = state.turning or (state.fit is Fit.SAME and state.held is None)
     if came_to_rest and state.standing:
         return (Held(at_ms, status.ticks, status.count, status.cause),)
+    if state.read_last and state.estimate is not None:
+        found = find_alarm(state.estimate)
+        if found is not None and (state.alarm is None or state.alarm.alarm != found.kind):
+            raised = AlarmRaised(at_ms, state.turns, found.kind, found.text, found.odds or 0.0)
+            if found.kind in NO_USE_GOING_ON and state.turning and state.hold is None:
+                return (raised, HoldRequested(at_ms, "windctl", found.text))
+            return (raised,)
     if _unwound(state) and state.held is not None:
         return (Unwound(at_ms, state.held.count, status.count),)
     return ()

@@ -13,6 +13,7 @@ from windctl.protocol.messages import Identity, InputBit, Refused, Status
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
 from windctl.record.events import (
+    AlarmRaised,
     CoilFinished,
     CoilStarted,
     CountCorrected,
@@ -74,6 +75,8 @@ class State:
     estimate: Estimate | None = None
     reading: CoilReading | None = None  # the last one, used or not
     fresh_reading: bool = False  # the latest word of the board was a reading that taught something
+    read_last: bool = False  # the latest word of the board was a reading, of use or not
+    alarm: AlarmRaised | None = None  # the last one, until somebody consents to go on
     readings_used: int = 0
     readings_gated: int = 0
     settled_readings: int = 0  # used ones since the spindle came to rest

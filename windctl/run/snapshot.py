@@ -45,6 +45,7 @@ class Snapshot:
     wire_ends_at: float | None = None  # turns that have wire, where the count says more
     guide_place_mm: float | None = None  # where the guide belongs at this turn, from its start
     splices: int = 0
+    alarm: str = ""  # what the readings say is wrong, until somebody goes on
     answers: int = 0  # requests that were answered in words, and the last answer
     answer: str = ""
 
@@ -88,6 +89,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         wire_ends_at=state.wire_ends_at if state.wire_ends_at < state.turns else None,
         guide_place_mm=_guide_place(state, steps_per_mm) if decision.asks == "place" else None,
         splices=state.splices,
+        alarm=state.alarm.text if state.alarm else "",
     )
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 from windctl.desk.numbers import duration, grouped, ohm
 from windctl.protocol.messages import Cause, Refusal, Trip
 from windctl.record.events import (
+    AlarmRaised,
     BoardGreeted,
     ClearGiven,
     CoilFinished,
@@ -82,6 +83,8 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             return f"another spool{name} from turn {grouped(event.turn, 1)} on"
         case Unwound():
             return f"unwound from turn {turn(event.before)} to {turn(event.count)}"
+        case AlarmRaised():
+            return f"alarm: {event.text}"
         case NoteMade():
             return f"note: {event.text}"
         case CoilFinished():

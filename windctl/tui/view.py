@@ -164,13 +164,11 @@ def target_text(card: Card) -> str:
 
 def _alarm(snapshot: Snapshot) -> str:
     if snapshot.phase != "tripped":
-        return ""
+        return snapshot.alarm
     lost = ""
     if snapshot.wire_ends_at is not None:
         lost = f"What was counted beyond turn {grouped(snapshot.wire_ends_at, 1)} is without wire. "
-    return (
-        f"{lost}When it is put right, C clears it; nothing turns by that. T tells what was done: splice ..."
-    )
+    return f"{lost}When it is put right, C clears it; nothing turns by that. T tells what you did: splice ..."
 
 
 def _ohm(value: float, half_width: float = 0.0) -> str:
