@@ -98,6 +98,11 @@ class WindctlApp(App[int], inherit_bindings=False):
                 return
         await super().on_event(event)
 
+    @property
+    def backlog(self) -> int:
+        """Pieces of output that the terminal has not taken yet."""
+        return getattr(self._driver, "backlog", 0)
+
     # ------------------------------------------------------------ rooms
 
     def action_room(self, name: str) -> None:

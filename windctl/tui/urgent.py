@@ -33,6 +33,13 @@ def with_urgent_keys(base: type[Driver]) -> type[Driver]:
     """A driver that acts on the hold key by itself and then passes it on as `Held`."""
 
     class UrgentKeys(base):  # type: ignore[misc,valid-type]  # the platform's driver is known only here
+        @property
+        def backlog(self) -> int:
+            """Pieces of output that the terminal has not taken yet. The library keeps them to itself; where
+            they cannot be counted, there are none."""
+            queue = getattr(getattr(self, "_writer_thread", None), "_queue", None)
+            return 0 if queue is None else queue.qsize()
+
         def process_message(self, message: Message) -> None:
             if isinstance(message, events.Key):
                 app = cast(Holds, self._app)

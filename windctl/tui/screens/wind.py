@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from time import monotonic
 from typing import ClassVar
 
 from textual import work
@@ -21,6 +22,7 @@ from windctl.tui.dialogs.tell import Tell
 from windctl.tui.dialogs.typed import Typed, Word
 from windctl.tui.keymap import HOLD_KEY, key
 from windctl.tui.outcome_words import after_words, outcome_words
+from windctl.tui.pace import DIGITS_S, Pace
 from windctl.tui.pictures.curve import Point
 from windctl.tui.pictures.section import Filled
 from windctl.tui.recipes import Preview
@@ -38,16 +40,13 @@ from windctl.tui.widgets.title_bar import TitleBar
 from windctl.tui.widgets.turn_count import TurnCount
 from windctl.tui.widgets.way import Way
 
-DIGITS_S = 0.1
-CHARTS_S = 0.5
-
 CAUTIONS = """\
 Guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves, eye protection on.
 Never touch the work while it turns. Know where the hardware stop is: this program is no safety function."""
 
 
 class WindScreen(Room):
-    """Looks at the run ten times a second, at its charts twice; asks it for what is pressed."""
+    """Looks at the run ten times a second, draws as often as the line takes it; asks for what is pressed."""
 
     ABOUT = (
         "The coil on the machine. Large: turns. The band: what the machine does, and what it does next. "
@@ -72,6 +71,7 @@ class WindScreen(Room):
         self.coil = run
         self.preview = preview
         self.trail = Trail(run.before)
+        self.pace = Pace()
         self.latest: Snapshot | None = None
         self.glance: Glance | None = None
         self.ended: Ended | None = None
@@ -104,7 +104,6 @@ class WindScreen(Room):
     def on_mount(self) -> None:
         """Begin to look."""
         self.set_interval(DIGITS_S, self.look)
-        self.set_interval(CHARTS_S, self.draw)
         self.look()
         self.call_after_refresh(self.draw)
 
@@ -122,8 +121,11 @@ class WindScreen(Room):
         if self.ended is None and (ended := winding.wait(0.0)) is not None:
             self.ended = ended
             self.finish()
-        if self.outcome is None:
+        due = self.pace.due(monotonic(), getattr(self.app, "backlog", 0))
+        if due.texts and self.outcome is None:
             self.show(snapshot)
+        if due.charts:
+            self.draw()
 
     def show(self, snapshot: Snapshot) -> None:
         """Place what the view says."""

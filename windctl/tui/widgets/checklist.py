@@ -37,12 +37,19 @@ class Checklist(OptionList):
         """True when every line is confirmed."""
         return all(self.done)
 
+    def action_select(self) -> None:
+        """Confirm, and go on: at once, so that a quick second key means the second line."""
+        at = self.highlighted
+        if at is None:
+            return
+        self._set(at, True)
+        if at + 1 < len(self.items):
+            self.highlighted = at + 1
+
     def on_option_list_option_selected(self, event: OptionList.OptionSelected) -> None:
-        """Confirm, and go on."""
+        """A click on a line."""
         event.stop()
-        self._set(event.option_index, True)
-        if event.option_index + 1 < len(self.items):
-            self.highlighted = event.option_index + 1
+        self.action_select()
 
     def action_take_back(self) -> None:
         """The line is not confirmed after all."""

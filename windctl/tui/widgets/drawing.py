@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from rich.segment import Segment
 from rich.style import Style
+from textual.geometry import Region
 from textual.strip import Strip
 from textual.widget import Widget
 
@@ -26,12 +27,23 @@ class Drawing(Widget):
         raise NotImplementedError
 
     def redraw(self) -> None:
-        """Make the picture anew; the screen is told only if it differs."""
+        """Make the picture anew; the terminal is sent only the rows and columns that differ."""
         width, height = self.size.width, self.size.height
-        picture = self.drawn(width, height) if width > 0 and height > 0 else []
-        if picture != self._picture:
-            self._picture = picture
+        before, self._picture = self._picture, self.drawn(width, height) if width > 0 and height > 0 else []
+        if len(before) != len(self._picture):
             self.refresh()
+            return
+        changed = []
+        for row, (was, now) in enumerate(zip(before, self._picture, strict=True)):
+            if was != now:
+                columns = [
+                    place
+                    for place in range(max(len(was), len(now)))
+                    if was[place : place + 1] != now[place : place + 1]
+                ]
+                changed.append(Region(columns[0], row, columns[-1] - columns[0] + 1, 1))
+        if changed:
+            self.refresh(*changed)
 
     def on_resize(self) -> None:
         """Another size, another picture."""
