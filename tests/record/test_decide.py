@@ -396,3 +396,15 @@ def test_every_kind_of_fact_has_a_place_in_the_fold() -> None:
         CoilFinished(0, "stopped", "x", 0, 0.0, 0.0, 0.0, "not judged"),
     ):
         assert isinstance(fold(start(), fact), State)
+
+
+def test_a_board_that_started_again_does_not_take_its_own_count_for_the_coils() -> None:
+    coil = turning(100.0)
+    anew = status(40, boot=6, epoch=0, count=50, inputs=3)
+    assert coil.hear(StatusHeard(0, anew)) == []
+    assert coil.state.turns == 100.0 and coil.state.boot == 5
+    assert coil.decision.wants.go is None and coil.decision.wants.armed is None
+    coil.hear(BoardGreeted(0, identity(boot=6, epoch=1, state=BoardState.DRIVES_OFF, trust=0, count=60)))
+    assert coil.state.fit is Fit.LOST
+    assert coil.decision.blocked is not None and "the board was reset since" in coil.decision.blocked
+    assert "ends at turn 100.00" in coil.decision.blocked

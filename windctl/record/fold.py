@@ -222,6 +222,8 @@ def _refused(state: State, refused: Refused) -> State:
 
 
 def _status(state: State, status: Status) -> State:
+    if state.fit is Fit.SAME and status.boot != state.boot:
+        return replace(_link_gone(state), status=status)  # it has started again and counts from nothing
     tripped = state.tripped if status.state == BoardState.TRIPPED else None
     guide_known = state.guide_known and bool(status.trust & Trust.GUIDE)
     if state.fit is Fit.SAME:

@@ -312,12 +312,13 @@ class Runner:
     def _fail(self, error: WindctlError) -> Ended:
         """Hold, see the spindle stand if the line allows it, record why, and end."""
         stands = False
+        may_turn = self._state.turning or self._state.consent is not None
         if isinstance(error, LinkLost):
             self._record((LinkLostEvent(self._at_ms(), str(error)),))
         else:
             self._record((HoldRequested(self._at_ms(), "windctl", str(error)),))
             stands = self._hold_to_rest()
-        left = "failed" if stands or not self._state.turning else "unconfirmed"
+        left = "failed" if stands or not may_turn else "unconfirmed"
         return Ended(self._state, left, str(error), error)
 
     def _hold_to_rest(self) -> bool:
