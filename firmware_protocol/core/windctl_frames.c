@@ -19,11 +19,6 @@ static inline uint16_t next_crc(uint16_t crc, uint8_t byte)
 
 #endif
 
-uint16_t windctl_crc(uint16_t crc, uint8_t byte)
-{
-    return next_crc(crc, byte);
-}
-
 uint16_t windctl_crc_over(uint16_t crc, const uint8_t *bytes, uint8_t size)
 {
     while (size--) {

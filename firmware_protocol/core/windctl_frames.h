@@ -24,10 +24,7 @@ struct windctl_reader {
     uint8_t inside[WINDCTL_INSIDE_LIMIT]; /* code, sequence, body, CRC */
 };
 
-/* CRC-16/IBM-3740 of one more byte. */
-uint16_t windctl_crc(uint16_t crc, uint8_t byte);
-
-/* CRC of `size` more bytes. */
+/* CRC-16/IBM-3740 of `size` more bytes. */
 uint16_t windctl_crc_over(uint16_t crc, const uint8_t *bytes, uint8_t size);
 
 /* Take one byte off the line. 1 when it completes a good frame: code, sequence and body then stand in
