@@ -51,12 +51,13 @@ class Lots:
 
 @dataclass(frozen=True)
 class OfLot:
-    """One coil of a lot: what it is, and the wire that it took, m and g, and its mean build, mm."""
+    """One coil of a lot: what it is, the wire that it took, m and g, its mean build, mm, and its crown."""
 
     coil: Coil
     metres: float
     grams: float
     build_mm: float
+    crown: float
 
     @property
     def ohm(self) -> float:
@@ -86,13 +87,13 @@ def lot(seed: int, coils: int, laws: Lots = Lots(), meter: Instruments = DEFAULT
         km = float(length.sum()) / 1000.0
         steps = rng.standard_normal(TURNS) * laws.wire_walk * sqrt(km / TURNS) + slope * km / TURNS
         ohm_per_m = OHM_PER_M * (level + np.cumsum(steps)) * stretch
-        level += float(steps.sum())
+        start, level = level, level + float(steps.sum())
         copper = 8.89 / 58.0 / (OHM_PER_M * level)
         coat = 1.2 * (pi / 4.0 * overall**2 - 1.0 / 58.0 / (OHM_PER_M * level))
         yield OfLot(
             Coil(
                 ohm=np.concatenate([[0.0], np.cumsum(ohm_per_m * length)]),
-                wire=level,
+                wire=start,
                 rng=rng,
                 meter=meter,
                 gain=gain,
@@ -103,6 +104,7 @@ def lot(seed: int, coils: int, laws: Lots = Lots(), meter: Instruments = DEFAULT
             metres=1000.0 * km,
             grams=1000.0 * km * (copper + coat) / stretch,
             build_mm=float(build[-1]),
+            crown=crown,
         )
 
 

@@ -21,6 +21,7 @@ from windctl.plan.experience.unknowns import (
     with_spool,
     with_unknowns,
 )
+from windctl.plan.experience.unrest import Unrest
 
 # A coil whose resistance is further off than this teaches nothing: a shorted turn, a wrong wire or count.
 GATE = 5.0
@@ -61,6 +62,7 @@ class Experience:
     coils: Mapping[Name, int] = field(default_factory=dict)
     past: Mapping[Name, Known] = field(default_factory=dict)
     unfit: tuple[Unfit, ...] = ()
+    unrest: Mapping[str, Unrest] = field(default_factory=dict)  # by lay
 
     def of(self, name: Name) -> Known | None:
         """What is known of one unknown; None where no lesson was about it."""
@@ -103,7 +105,8 @@ def learn(
 def at_coil(before: Experience, lesson: Lesson) -> Experience:
     """What is known as a coil is begun, with all its unknowns, and the spool's level at the coil's middle."""
     source = lesson.source
-    belief = with_unknowns(before.belief, lesson.basis, source, lesson.bench, lesson.meter_rel)
+    unrest = before.unrest.get(lesson.basis.lay, Unrest()).factor
+    belief = with_unknowns(before.belief, lesson.basis, source, lesson.bench, lesson.meter_rel, unrest)
     middle = before.wound.get(source, 0.0) + lesson.metres / 2.0
     return replace(before, belief=belief).moved(source, middle)
 
@@ -114,6 +117,7 @@ def _after_coil(before: Experience, lesson: Lesson) -> Experience:
     wound = {**before.wound, source: before.wound.get(source, 0.0) + lesson.metres}
     there = replace(there, wound=wound)
     unfit = _unfit(there.belief, lesson)
+    there = _heard(before, there, lesson)
     if unfit is not None:
         return replace(there, belief=there.belief.without(OWN), unfit=(*there.unfit, unfit))
     belief = there.belief
@@ -139,6 +143,22 @@ def _unfit(belief: Gaussian, lesson: Lesson) -> Unfit | None:
             if abs(seen.off) > GATE * sd:
                 return Unfit(lesson.coil, lesson.spool, seen.off, sd)
     return None
+
+
+def _heard(before: Experience, there: Experience, lesson: Lesson) -> Experience:
+    """Whether a coil differs from those before as was stated; a first coil, and one far off, says nothing."""
+    lay = lesson.basis.lay
+    taught = min(before.coils.get(name, 0) for name in (("lay", lay), ("level", lesson.source)))
+    ohm = next((each for each in lesson.measured if isinstance(each, Resistance)), None)
+    if taught == 0 or ohm is None:
+        return there
+    seen = expected(there.belief, lesson, ohm)
+    variance = there.belief.covariance(seen.row, seen.row) + seen.variance
+    unrest = before.unrest.get(lay, Unrest())
+    own = {name: seen.row[name] for name in OWN if name in seen.row}
+    stated = variance - (1.0 - 1.0 / unrest.factor) * there.belief.covariance(own, own)
+    surprise = max(-GATE, min(GATE, seen.off / sqrt(variance))) * sqrt(variance)
+    return replace(there, unrest={**before.unrest, lay: unrest.heard(surprise, stated)})
 
 
 def _after_piece(before: Experience, piece: PieceMeasured, spool: Spool) -> Experience:

@@ -82,8 +82,13 @@ def with_spool(belief: Gaussian, spool: str, ohm_per_m_rel: float, overall_rel: 
     return belief.having(("area", spool), 2.0 * overall_rel).having(("metal", spool), METAL_REL)
 
 
-def with_unknowns(belief: Gaussian, basis: Basis, spool: str, bench: str, meter_rel: float) -> Gaussian:
-    """The belief with all that a coil depends on; what is new in it is as uncertain as its basis says."""
+def with_unknowns(
+    belief: Gaussian, basis: Basis, spool: str, bench: str, meter_rel: float, unrest: float = 1.0
+) -> Gaussian:
+    """The belief with all that a coil depends on; what is new in it is as uncertain as its basis says.
+
+    `unrest`: by how much the variance from coil to coil is more than stated.
+    """
     shared = STYLE_SHARE if basis.style else 0.0
     belief = with_spool(belief, spool, basis.ohm_per_m_rel, basis.overall_rel)
     belief = belief.having(("core", basis.bobbin), basis.perimeter_rel)
@@ -91,8 +96,9 @@ def with_unknowns(belief: Gaussian, basis: Basis, spool: str, bench: str, meter_
         belief = belief.having(("style", basis.style), sqrt(shared) * basis.growth_rel)
     belief = belief.having(("lay", basis.lay), sqrt(1.0 - shared) * basis.growth_rel)
     belief = belief.having(("jaws", basis.lay), JAWS_REL).having(("meter", bench), meter_rel)
-    belief = belief.having(COIL, COIL_REL).having(MOULD, basis.mould_rel)
-    return belief.having(BED, basis.bed_rel)
+    more = sqrt(unrest)
+    belief = belief.having(COIL, more * COIL_REL).having(MOULD, more * basis.mould_rel)
+    return belief.having(BED, more * basis.bed_rel)
 
 
 def along_the_spool(belief: Gaussian, spool: str, metres: float) -> Gaussian:
