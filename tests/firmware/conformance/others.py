@@ -69,8 +69,7 @@ def kept(rig: Rig) -> str:
     ):
         must(got == wanted, f"{what} {got}; expected: {wanted}")
     rig.accept(m.Go(*rig.permission))
-    rig.listen(0.3)
-    must(rig.fresh_status().count > stood.count, "it did not go on")
+    must(rig.listen(5.0, lambda: rig.status.count > stood.count), "it did not go on")
     rig.hold()
     rig.settle()
     return f"count {seen.count}"

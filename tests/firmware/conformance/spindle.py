@@ -148,11 +148,21 @@ def braking(rig: Rig) -> str:
     _stands_at(rig, target, Cause.STOP_POINT)
     seen = [s for s in rig.since(begun, m.Status) if s.speed]
     tick = 0.001
+    peak = max(s.ticks for s in seen if s.speed == max(one.speed for one in seen))
+
+    def least(left: float) -> float:
+        """Braking as late as it may, but for what is under way and not counted yet."""
+        late = machine.pace * 0.002 + machine.steps_per_turn / machine.counts_per_turn + machine.dither + 2
+        return 0.85 * math.sqrt(2 * machine.decel * max(0.0, left - late)) - 2
+
     for s in seen:
         left = (target - s.count) * machine.steps_per_turn / machine.counts_per_turn
         # the slowing of the tick in which the limit is met, and the step that is under way
         most = math.sqrt(2 * machine.decel * (left + 1 + machine.dither)) + machine.decel * tick + 1
         must(s.speed <= most, f"{s.speed} steps/s with {left:.0f} steps left; at most {most:.0f}")
+        must(
+            s.speed >= least(left) or s.ticks <= peak, f"{s.speed} steps/s with {left:.0f} left: brakes early"
+        )
     must(len(seen) >= 3, f"{len(seen)} Status on the way")
     return f"{len(seen)} points"
 
@@ -190,8 +200,12 @@ def settling(rig: Rig) -> str:
     must(status.state == State.HELD and status.cause == Cause.STOP_POINT, f"{status}")
     must(abs(2 * turn - status.count) <= max(1, turn // said) + machine.dither, f"stands at {status.count}")
     creep = math.isqrt(8 * machine.decel)
-    late = [s.speed for s in rig.since(begun, m.Status) if s.count > 2 * turn * 39 // 40 and s.speed]
-    must(all(speed <= creep for speed in late[2:]), f"speeds {late} where {creep} steps/s is the creep")
+    speeds = [s.speed for s in rig.since(begun, m.Status) if s.state == State.TURNING]
+    moving = next((at for at, speed in enumerate(speeds) if speed), len(speeds))
+    stood = next((at for at, speed in enumerate(speeds[moving:], moving) if not speed), len(speeds))
+    late = [speed for speed in speeds[stood:] if speed]
+    must(bool(late), "nothing was made up for after it first stood")
+    must(max(late) <= creep, f"made up for at up to {max(late)} steps/s; the creep is {creep}")
     return f"creep at most {creep} steps/s"
 
 

@@ -77,6 +77,9 @@ def index_missing(rig: Rig) -> None:
     begun = rig.mark()
     rig.go(500 * machine.counts_per_turn)
     _tripped(rig, Trip.INDEX, 15.0, begun)
+    rig.clear()
+    rig.arm()
+    rig.refuse(m.Go(*rig.permission), Refusal.NO_DATUM, int(Trust.GUIDE))
 
 
 @clause(9, "", "index: with the true turn it lasts ten turns", needs=DRIVE | Capability.INDEX, moves=True)
