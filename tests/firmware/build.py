@@ -28,6 +28,7 @@ WARNINGS: Final = (
 )  # fmt: skip
 AVR: Final = ("-mmcu=atmega328p", "-Os")
 PACKAGES: Final = {"cc": "gcc", "gcc": "gcc", "clang": "clang", "avr-gcc": "gcc-avr avr-libc"}
+LIBRARIES: Final = {"yasimavr": "pip install yasimavr, which is built with Debian's g++ and libelf-dev"}
 
 
 class MissingTool(Exception):
@@ -35,7 +36,8 @@ class MissingTool(Exception):
 
     def __init__(self, tool: str) -> None:
         self.tool = tool
-        super().__init__(f"no {tool} on this computer (Debian: {PACKAGES.get(tool, tool)})")
+        where = LIBRARIES.get(tool, f"Debian: {PACKAGES.get(tool, tool)}")
+        super().__init__(f"no {tool} on this computer ({where})")
 
 
 class BuildError(Exception):
@@ -85,6 +87,16 @@ def objects(folder: Path, tool: str = "cc", flags: Sequence[str] = ("-O0",)) -> 
         built[source.name] = folder / f"{source.stem}.o"
         run(tool, [*flags, "-std=c99", *includes(), "-c", source, "-o", built[source.name]])
     return built
+
+
+@cache
+def chip_elf(variant: str = "full", more: str = "") -> Path:
+    """The program of the ATmega328P, built by its own Makefile. Raises MissingTool."""
+    find("avr-gcc")
+    folder = Path(tempfile.mkdtemp(prefix="windctl-chip-"))
+    atexit.register(shutil.rmtree, folder, ignore_errors=True)
+    run("make", ["-C", ROOT / "firmware_protocol/ports/avr", f"VARIANT={variant}", f"BUILD={folder}", f"MORE={more}"])
+    return next(folder.glob("*.elf"))
 
 
 @cache

@@ -23,6 +23,7 @@ from windctl.machine.virtual.spindle import Spindle
 CONTACT_MILLIOHM: Final = 305  # per unit, as pins.h has it
 _SLACK: Final = 200  # cycles before a tick at which the plant's own millisecond begins
 _ADAPTER_BYTES: Final = 62
+_PAUSE: Final = 1400  # cycles without a byte, a little more than one takes: the line is idle
 _PHASES: Final = ((0, 0), (1, 0), (1, 1), (0, 1))  # channels A, B as the encoder turns clockwise
 
 
@@ -79,6 +80,7 @@ class ChipBench:
         self.busy = 0  # cycles in all
         self.begun_at = 0  # cycle
         self.last_step_at = 0  # cycle
+        self.on_step: Callable[[int], None] = lambda cycle: None
         self._arrived = bytearray()
         self._coming = bytearray()
         self._came_at = 0
@@ -100,17 +102,18 @@ class ChipBench:
         chip.set("a", 0)
         chip.set("b", 0)
         chip.set("index", 0)
+        chip.set_volts("contact", 0.0)
+        chip.set_volts("tension", 0.0)
+        chip.set_volts("celsius", 0.73)
         self._show_pins(STOP_OK | GUARD_OK | GUIDE_LOW_OK | GUIDE_HIGH_OK)
         self._boot()
 
     def _boot(self) -> None:
         """Lets the chip start, up to the beginning of its first tick."""
-        first = len(self._coming)
         self._busy_since = 0
         while not self._busy_since:
             assert self.chip.running
             self.chip.run(20)
-        assert len(self._coming) == first
         self._next = self._busy_since + CYCLES_PER_TICK - _SLACK
 
     # ------------------------------------------------------------ Bench's face
@@ -137,7 +140,7 @@ class ChipBench:
             if self.watch is not None:
                 self.watch(received)
             if self._coming and (
-                len(self._coming) >= _ADAPTER_BYTES or chip.cycle - self._came_at > CYCLES_PER_TICK // 8
+                len(self._coming) >= _ADAPTER_BYTES or chip.cycle - self._came_at > _PAUSE
             ):
                 self._arrived += self._coming
                 self._coming.clear()
@@ -193,6 +196,7 @@ class ChipBench:
             return
         self.steps += 1
         self.last_step_at = cycle = self.chip.cycle
+        self.on_step(cycle)
         powered = self.chip.high("drive_enable") and bool(self.plant._pins & STOP_OK)
         moved = self._spindle.edge(cycle, powered=powered)
         if moved:

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import importlib.util
 import os
 from collections.abc import Callable
+from pathlib import Path
 
 import pytest
 
-from tests.firmware.build import MissingTool, find
+from tests.firmware.build import MissingTool, chip_elf, find
 from tests.firmware.recording import Recorded, record
 
 
@@ -37,3 +39,16 @@ def cc(tool: Callable[[str], str]) -> str:
 def recorded() -> Recorded:
     """Plays by hand and random ticks on the virtual machine's board."""
     return record()
+
+
+@pytest.fixture(scope="session")
+def chip(tool: Callable[[str], str]) -> Callable[..., Path]:
+    """`chip("hand")` is the program of a variant for the emulated chip, where compiler and emulator are at hand."""
+    tool("avr-gcc")
+    tool("make")
+    if importlib.util.find_spec("yasimavr") is None:
+        missing = MissingTool("yasimavr")
+        if os.environ.get("CI"):
+            pytest.fail(f"{missing}: CI installs it")
+        pytest.skip(f"platform: {missing}")
+    return chip_elf

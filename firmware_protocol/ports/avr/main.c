@@ -12,6 +12,13 @@
 #include "pins.h"
 #include "windctl_core.h"
 
+/* Set only where the chip itself is emulated: a host then needs nobody's consent to turn it. */
+#ifdef WINDCTL_EMULATED
+#define EMULATED WINDCTL_CAPABILITY_VIRTUAL
+#else
+#define EMULATED 0
+#endif
+
 static struct windctl_core core;
 static struct windctl_inputs inputs;
 static struct windctl_outputs outputs;
@@ -104,7 +111,7 @@ static void take(const struct tick *tick)
 
 int main(void)
 {
-    static const struct windctl_config config = {CONTACT_SCALE, TENSION_SCALE, CAPABILITIES};
+    static const struct windctl_config config = {CONTACT_SCALE, TENSION_SCALE, CAPABILITIES | EMULATED};
     struct tick tick;
 
     pins_start();
