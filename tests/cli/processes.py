@@ -108,19 +108,20 @@ class Session:
         end = time.monotonic() + seconds
         while text not in self.seen:
             assert time.monotonic() < end, f"{text!r} was not shown: {self.seen}"
-            self._look()
+            self.look()
 
     def ends(self, code: int, seconds: float = 30.0) -> str:
         """Wait for its end with this exit code; what it wrote to standard output, which is no terminal."""
         end = time.monotonic() + seconds
         while self.process.poll() is None:
             assert time.monotonic() < end, self.seen
-            self._look()
+            self.look()
         assert self.process.returncode == code, self.seen
         assert self.process.stdout is not None
         return self.process.stdout.read()
 
-    def _look(self) -> None:
+    def look(self) -> None:
+        """Take in what is on the screen by now."""
         if not select.select([self.terminal], [], [], 0.05)[0]:
             return
         with suppress(OSError):  # EIO: the program has closed its side

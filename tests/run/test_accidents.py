@@ -12,6 +12,8 @@ from tests.run.winding import SHIPPED, Wound, order, wind, with_key, with_stop
 from windctl.book.open import open_book
 from windctl.machine.virtual.bench import Bench
 from windctl.machine.virtual.faults import Faults
+from windctl.profile.builtin import VIRTUAL
+from windctl.profile.model import MachineProfile
 from windctl.protocol.messages import Cause
 from windctl.protocol.messages import State as BoardState
 from windctl.record.events import (
@@ -73,9 +75,11 @@ def hands(what: Request | Callable[[Bench], None]) -> Step:
     return Step(asked("go", lambda seen: seen.drives_off and seen.hands is not None), what)
 
 
-def wound(folder: Path, *steps: Step, faults: Faults | None = None, text: str = RECIPE) -> Wound:
+def wound(
+    folder: Path, *steps: Step, faults: Faults | None = None, profile: MachineProfile = VIRTUAL
+) -> Wound:
     """A coil with somebody standing by."""
-    return wind(text, folder / "coils.book", faults=faults, during=answering(*steps))
+    return wind(RECIPE, folder / "coils.book", faults=faults, profile=profile, during=answering(*steps))
 
 
 def facts(folder: Path, *kinds: type[Event]) -> list[Event]:
@@ -137,6 +141,22 @@ def test_turns_without_wire_can_be_turned_back_by_hand_instead(tmp_path: Path) -
     assert isinstance(spliced, Spliced) and spliced.turn == pytest.approx(60.0, abs=0.01)
     (unwound,) = facts(tmp_path, Unwound)
     assert isinstance(unwound, Unwound) and unwound.count == pytest.approx(60 * 400, abs=2)
+
+
+def test_without_a_tension_sensor_the_readings_tell_of_a_break_and_hold(tmp_path: Path) -> None:
+    blind = VIRTUAL.model_copy(update={"tension": VIRTUAL.tension.model_copy(update={"sensor": False})})
+    coil = wound(
+        tmp_path,
+        Step(asked("go", lambda seen: "open circuit" in seen.alarm), DrivesOff(ME, "to look")),
+        hands(Splice(ME)),
+        Step(asked("go", lambda seen: seen.splices == 1), Go(ME)),
+        faults=Faults(wire_breaks_at_turn=60),
+        profile=blind,
+    )
+    (spliced,) = facts(tmp_path, Spliced)
+    assert isinstance(spliced, Spliced)
+    assert 55.0 <= spliced.turn <= 61.0  # a reading takes a revolution and comes four times a second
+    came_right(coil, TURNS - 1.0, TURNS + 6.0)
 
 
 def test_another_spool_is_joined_on(tmp_path: Path) -> None:

@@ -2,11 +2,8 @@
 
 from __future__ import annotations
 
-import io
-import json
 import os
 import random
-import threading
 import time
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import dataclass
@@ -15,16 +12,11 @@ from pathlib import Path
 import pytest
 
 from tests.cli.processes import answer, begun, call, until
+from tests.run.bench_side import Served
 from tests.run.winding import SHIPPED, order, with_key, with_stop
 from windctl.book.open import open_book
 from windctl.lay.program import Program
-from windctl.machine.virtual.bench import Bench, virtual_bench
-from windctl.machine.virtual.endpoints import TcpEndpoint
-from windctl.machine.virtual.serve import Server
-from windctl.machine.virtual.trace import Trace
-from windctl.profile.builtin import VIRTUAL
 from windctl.protocol.messages import State as BoardState
-from windctl.recipe.load import parse_recipe
 from windctl.record.events import StatusHeard
 
 TURNS = 150
@@ -51,37 +43,6 @@ class Killed:
     lost: int
     turns: float
     guide_ok: bool
-
-
-class Served:
-    """A board in this process behind a TCP port, at real time, with the instrument clipped on."""
-
-    def __init__(self, text: str) -> None:
-        self.bench: Bench = virtual_bench(parse_recipe(text, "test.toml"), VIRTUAL, seed=3)
-        self.notes = io.StringIO()
-        self.bench.watch = Trace(self.bench, self.notes).see
-        self._endpoint = TcpEndpoint("127.0.0.1", 0)
-        self._server = Server(self.bench, self._endpoint)
-        self._thread = threading.Thread(target=self._server.run)
-        self._thread.start()
-        self.url = self._endpoint.url
-
-    def stop(self) -> None:
-        self._server.stop()
-        self._thread.join(10)
-        self._endpoint.close()
-
-    @property
-    def standing(self) -> bool:
-        return self.bench.board.standing and self.bench.board.state != BoardState.TURNING
-
-    def brake_after_beat(self, since: int) -> int | None:
-        """Ticks from the last Beat to the first braking noted after `since`."""
-        for line in self.notes.getvalue().splitlines():
-            note = json.loads(line)
-            if note["tick"] >= since and note["what"] == "braking":
-                return int(note["tick"] - note["last_beat"])
-        return None
 
 
 def trial(job: tuple[Path, int]) -> Killed:
@@ -118,7 +79,7 @@ def trial(job: tuple[Path, int]) -> Killed:
         assert result["program_digest"] == wanted.plan.program.digest
         assert result["outcome"] == "finished"
         assert call("coils", "verify", *common[:2]).returncode == 0
-        turns = served.bench.plant.truth().true_turns
+        turns = served.true_turns
         assert board.count == TURNS * board.counts_per_turn
         braked = served.brake_after_beat(killed_at) if turning else None
         return Killed(
@@ -173,15 +134,15 @@ def test_a_rebooted_board_makes_the_turn_a_question(tmp_path: Path) -> None:
             host.kill()
             host.wait(10)
         until(lambda: served.standing, 15)
-        turn = served.bench.plant.truth().true_turns
-        served.bench.reboot()
+        turn = served.true_turns
+        served.reboot()
         refused = call("resume", *common, timeout=60)
         assert refused.returncode == 2
         assert "--at-turn" in refused.stderr and "the board was reset since" in refused.stderr
-        assert served.bench.plant.truth().true_turns == turn
+        assert served.true_turns == turn
         told = call("resume", "--at-turn", f"{turn:.4f}", "--json", *common, timeout=120)
         assert told.returncode == 0, told.stderr
         assert answer(told)["turns"] == TURNS
-        assert abs(served.bench.plant.truth().true_turns - TURNS) < 0.01
+        assert abs(served.true_turns - TURNS) < 0.01
     finally:
         served.stop()

@@ -130,7 +130,9 @@ def _situation(snapshot: Snapshot) -> tuple[object, ...]:
 def _question(snapshot: Snapshot) -> str:
     lines = [f"{snapshot.says}."]
     if snapshot.wire_ends_at is not None:
-        lines.append(f"What was counted beyond turn {snapshot.wire_ends_at:.2f} is without wire.")
+        lines.append(
+            f"If the wire broke, it ends near turn {snapshot.wire_ends_at:.1f}: splice goes back there."
+        )
     if snapshot.asks == "place" and snapshot.guide_place_mm is not None:
         lines.append(f"Put the guide {snapshot.guide_place_mm:.2f} mm from where it began.")
     lines.append(_ANSWERS[snapshot.asks or "go"])

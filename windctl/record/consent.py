@@ -11,6 +11,7 @@ from windctl.protocol.messages import (
     GuideTo,
     InputBit,
     Refusal,
+    Refused,
     SetDatum,
     Trip,
     Trust,
@@ -101,14 +102,18 @@ def given(state: State) -> Permission | None:
 
 def blocked(state: State) -> str | None:
     """Why the coil cannot go on by itself, in words."""
-    refused = state.refused
-    declined = None
-    if refused is not None and refused.command in _TOLD:
-        declined = f"the board refused: {Refusal(refused.why).name.lower().replace('_', ' ')}"
+    words = None if state.refused is None else declined(state.refused)
     if state.status is not None and state.status.state == BoardState.TRIPPED:
         trip = f"the board is tripped ({Trip(state.status.trip).name.lower().replace('_', ' ')})"
-        return trip if declined is None else f"{trip}; {declined}"
-    return declined
+        return trip if words is None else f"{trip}; {words}"
+    return words
+
+
+def declined(refused: Refused) -> str | None:
+    """What a person who had agreed to something should hear of its refusal; None: it concerns nobody."""
+    if refused.command not in _TOLD:
+        return None
+    return f"the board refused: {Refusal(refused.why).name.lower().replace('_', ' ')}"
 
 
 def why_lost(state: State) -> str:

@@ -123,7 +123,9 @@ def fold(state: State, event: Event) -> State:
                 top_ups=state.top_ups + (1 if state.held is not None else 0),
             )
         case AlarmRaised():
-            return replace(state, alarm=event)
+            opened = event.alarm == "open" and state.estimate is not None
+            near = state.estimate.turn if opened and state.estimate else state.broke_near
+            return replace(state, alarm=event, broke_near=near)
         case WentOn():
             return _went_on(state)
         case Held():

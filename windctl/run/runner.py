@@ -18,6 +18,7 @@ from windctl.machine.ports import Port
 from windctl.protocol.conversation import Conversation
 from windctl.protocol.messages import Capability, Cause, Identity, Message, Reading, Refused, Status
 from windctl.protocol.wants import Wants
+from windctl.record.consent import declined
 from windctl.record.decide import Decision, decide
 from windctl.record.entries import Packer
 from windctl.record.events import (
@@ -183,6 +184,7 @@ class Runner:
             check_board(started, event.identity)
         elif isinstance(event, CommandRefused):
             check_refusal(event.refused)
+            self._answer_with(declined(event.refused) or "")
 
     def _meet_requests(self) -> None:
         while True:
@@ -198,9 +200,12 @@ class Runner:
             for fact in met.facts:
                 self._record((fact,))
                 self._settle_decision()
-            if met.says:
-                self._answer = met.says
-                self._answers += 1
+            self._answer_with(met.says)
+
+    def _answer_with(self, words: str) -> None:
+        if words:
+            self._answer = words
+            self._answers += 1
 
     def _settle_decision(self) -> None:
         """Decide, record and fold until nothing more follows."""
