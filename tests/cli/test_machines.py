@@ -68,12 +68,29 @@ def test_a_bad_profile_is_told_with_its_line(tmp_path: Path) -> None:
         profile_of(Shared(machine=str(file)))
 
 
-@pytest.mark.parametrize("text", ["machine = 3\n", "machine = \n"])
-def test_bad_settings_are_told_with_their_file(text: str) -> None:
+@pytest.mark.parametrize(
+    ("content", "said"),
+    [
+        (b"# mine\nmachine = 3\n", ":2:11: machine is 3, where the name of a machine in quotes is needed"),
+        (b"machine = ['a']\n", ":1:11: machine is ['a'], where the name of a machine in quotes is needed"),
+        (b"machine = \n", ":1:11: is not valid TOML: Invalid value"),
+        (b"machine = north\n", ":1:11: is not valid TOML: Invalid value"),
+        (b"\xff", ":1:1: is not UTF-8 text: byte 0xff; save it as UTF-8"),
+    ],
+)
+def test_bad_settings_are_told_with_their_place(content: bytes, said: str) -> None:
     places.settings_file().parent.mkdir(parents=True)
-    places.settings_file().write_text(text, encoding="utf-8")
-    with pytest.raises(FileInvalid, match=r"settings\.toml"):
+    places.settings_file().write_bytes(content)
+    with pytest.raises(FileInvalid) as caught:
         configured_machine()
+    assert str(caught.value) == str(places.settings_file()) + said
+
+
+@pytest.mark.parametrize("content", ["", "# nothing yet\n", 'theme = "dark"\n'])
+def test_settings_that_name_no_machine_mean_the_virtual_one(content: str) -> None:
+    places.settings_file().parent.mkdir(parents=True)
+    places.settings_file().write_text(content, encoding="utf-8")
+    assert configured_machine() == "virtual"
 
 
 def test_options_stand_in_for_what_the_profile_says() -> None:

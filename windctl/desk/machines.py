@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import os
-import tomllib
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -20,16 +19,20 @@ VIRTUAL = "virtual"
 def configured_machine() -> str:
     """The name under `machine` in the user's settings, else `virtual`. Raises FileInvalid."""
     file = places.settings_file()
-    try:
-        settings = tomllib.loads(file.read_text(encoding="utf-8"))
-    except FileNotFoundError:
+    if not file.exists():
         return VIRTUAL
-    except (OSError, UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
-        raise FileInvalid([Problem(str(file), 0, 0, f"cannot be read: {error}")]) from error
+    from windctl.forms.source import read_text
+    from windctl.forms.toml_form import parsed
+
+    text = read_text(file, FileInvalid)
+    if not text.strip():
+        return VIRTUAL
+    settings, where = parsed(text, str(file), FileInvalid)
     name = settings.get("machine", VIRTUAL)
     if not isinstance(name, str):
-        text = f"machine is {name!r}, not the name of a machine"
-        raise FileInvalid([Problem(str(file), 0, 0, text)])
+        spot = where["machine",].value
+        text = f"machine is {name!r}, where the name of a machine in quotes is needed"
+        raise FileInvalid([Problem(str(file), spot.line, spot.column, text)])
     return name
 
 

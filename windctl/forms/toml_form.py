@@ -33,6 +33,16 @@ def load_form(text: str, file: str, model: type[M], error: type[FileInvalid]) ->
 
     `file` is only a name for the messages. Nothing else is raised, whatever the text.
     """
+    data, places = parsed(text, file, error)
+    try:
+        return model.model_validate(data)
+    except ValidationError as invalid:
+        faults = all_faults(invalid, model, data)
+    raise error(sorted((_problem(fault, places, file) for fault in faults), key=_order))
+
+
+def parsed(text: str, file: str, error: type[FileInvalid]) -> tuple[dict[str, Any], Mapping[KeyPath, Place]]:
+    """What a TOML text holds, and where. Raises `error` with the one problem of a text that is none."""
     if not text.strip():
         raise error([Problem(file, 0, 0, "is empty")])
     if text.startswith("\ufeff"):
@@ -44,8 +54,7 @@ def load_form(text: str, file: str, model: type[M], error: type[FileInvalid]) ->
         raise error([Problem(file, spot.line, spot.column, "is a key of more than 40 parts")])
     try:
         text.encode()
-        data = tomllib.loads(text)
-        places = find_positions(text)
+        return tomllib.loads(text), find_positions(text)
     except UnicodeEncodeError as failure:
         spot = _spot_at(text, failure.start)
         raise error([Problem(file, spot.line, spot.column, "is not a character of UTF-8 text")]) from None
@@ -57,11 +66,6 @@ def load_form(text: str, file: str, model: type[M], error: type[FileInvalid]) ->
         raise error([Problem(file, spot.line, spot.column, "is a number with far too many digits")]) from None
     except RecursionError:
         raise error([Problem(file, 0, 0, "has tables or arrays nested too deeply")]) from None
-    try:
-        return model.model_validate(data)
-    except ValidationError as invalid:
-        faults = all_faults(invalid, model, data)
-    raise error(sorted((_problem(fault, places, file) for fault in faults), key=_order))
 
 
 def all_faults(invalid: ValidationError, model: type[Form], data: Mapping[str, Any]) -> list[Fault]:
