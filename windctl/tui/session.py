@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import json
 import threading
+from collections.abc import Callable
 from contextlib import AbstractContextManager, ExitStack, nullcontext
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -21,12 +22,15 @@ from windctl.desk.bench import Bench, open_bench
 from windctl.desk.books import book_if_any, book_to_read, book_to_write
 from windctl.desk.going_on import recorded_profile
 from windctl.desk.machines import profile_of, simulated_here
+from windctl.desk.supply import supply_of
 from windctl.errors import RecordBroken, WindctlError
+from windctl.plan.experience.supply import Supply
 from windctl.plan.growth import Growth, growth_of
 from windctl.plan.make import make_plan
 from windctl.plan.model import Plan
 from windctl.profile.model import MachineProfile
 from windctl.recipe.load import parse_recipe
+from windctl.recipe.model import Recipe
 from windctl.record.curve import CurvePoint, review
 from windctl.record.events import CoilStarted, Event
 from windctl.run.outcome import Outcome
@@ -83,6 +87,7 @@ class Run:
         self.before = before  # the curve of earlier runs of this coil
         self.outcome: Outcome | None = None
         self.truth: str = ""
+        self.hand: Callable[[float], None] | None = None  # turns a simulated spindle
 
     @property
     def counts_per_turn(self) -> int:
@@ -121,7 +126,11 @@ class Session:
 
     def preview(self, one: Listed) -> Preview | str:
         """What a recipe will be on this machine, or why not."""
-        return recipes.preview(one, self.profile)
+
+        def supply_for(recipe: Recipe) -> Supply:
+            return supply_of(self.shared, self.profile, recipe, simulated=self.simulated)
+
+        return recipes.preview(one, self.profile, supply_for)
 
     def last_of(self, recipe: str) -> CoilHead | None:
         """The coil of this recipe that was begun last."""
@@ -134,12 +143,12 @@ class Session:
     def begin(self, preview: Preview, batch: str = "", of: int = 0) -> Run:
         """Open the machine, number the coil, and start its run. Raises WindctlError; nothing is open then."""
         with ExitStack() as stack:
-            bench, book = self._open(stack, preview.recipe)
+            bench, book = self._open(stack, preview.recipe, supply=preview.supply)
             order = Order(
                 recipe=preview.recipe,
                 recipe_text=preview.listed.text,
                 plan=preview.plan,
-                profile=self.profile,
+                profile=bench.profile,
                 machine=bench.name,
                 batch=batch,
                 of=of,
@@ -182,18 +191,22 @@ class Session:
         recipe: Any,
         started: CoilStarted | None = None,
         profile: MachineProfile | None = None,
+        supply: Supply | None = None,
     ) -> tuple[Bench, Book]:
         shared = self.shared
         if self.simulated and shared.speed is None:
             shared = replace(shared, speed=REAL_TIME)
         profile = profile or self.profile
-        bench = stack.enter_context(open_bench(shared, profile, self.simulated, recipe, started))
+        bench = stack.enter_context(open_bench(shared, profile, self.simulated, recipe, started, supply))
         book = stack.enter_context(book_to_write(shared))
         self._bench = bench
         return bench, book
 
     def _started(self, stack: ExitStack, run: Run) -> Run:
         self._leaving.clear()
+        if self._bench is not None:
+            self._bench.name_coil(run.card.number)
+            run.hand = self._bench.hand
         run.winding.start()
         with self._lock:
             self._stack = stack.pop_all()
