@@ -15,7 +15,9 @@ _Z95 = 1.959964
 def figures_of(plan: Plan) -> tuple[tuple[str, str], ...]:
     """The plan in a few rows."""
     resistance = ohm(plan.dcr_20c_ohm, _Z95 * plan.dcr_sd_ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
+    spool = [("spool", plan.learnt.spool)] if plan.learnt.spool else []
     return (
+        *spool,
         ("turns", turns(plan.turns, _Z95 * plan.turns_sd).removesuffix(" turns")),
         ("resistance", f"{resistance} at 20 °C"),
         ("wire", f"{grouped(plan.wire_length_m)} m, {plan.wire_mass_g:.1f} g"),

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from pathlib import Path
 
 from windctl.desk import places
 from windctl.errors import FileInvalid, RecipeError, WindctlError
 from windctl.forms.source import read_text
+from windctl.plan.experience.supply import Supply
 from windctl.plan.growth import Growth, growth_of
 from windctl.plan.make import make_plan
 from windctl.plan.model import Plan
@@ -35,6 +36,7 @@ class Preview:
 
     listed: Listed
     recipe: Recipe
+    supply: Supply  # the spool it is planned for, and what coils have taught
     plan: Plan
     growth: Growth
     ahead: tuple[Ahead, ...]
@@ -70,13 +72,14 @@ def _read(path: Path) -> Listed | None:
     return Listed(path, recipe.name, text, recipe, ())
 
 
-def preview(one: Listed, profile: MachineProfile) -> Preview | str:
-    """What the recipe will be on this machine, or why the machine cannot wind it."""
+def preview(one: Listed, profile: MachineProfile, supply_for: Callable[[Recipe], Supply]) -> Preview | str:
+    """What the recipe will be on this machine with this wire, or why it cannot be."""
     if one.recipe is None:
         return "\n".join(one.problems)
     try:
-        plan = make_plan(one.recipe, profile)
+        supply = supply_for(one.recipe)
+        plan = make_plan(one.recipe, profile, supply=supply)
         growth = growth_of(one.recipe, profile, plan)
     except WindctlError as error:
         return str(error)
-    return Preview(one, one.recipe, plan, growth, foreseen(plan.prior, float(plan.turns)))
+    return Preview(one, one.recipe, supply, plan, growth, foreseen(plan.prior, float(plan.turns)))

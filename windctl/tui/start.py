@@ -18,6 +18,7 @@ from windctl.tui.app import WindctlApp, farewell
 from windctl.tui.session import Session
 
 INTERRUPTED = 130
+SWITCH_S = 0.001  # how long a busy thread may keep the others waiting: a fifth of the usual, for the hold key
 _GRACE_S = 3.0  # for the interface to end by itself once the record is complete
 
 
@@ -25,6 +26,7 @@ def start(shared: Shared) -> int:
     """Run the interface until it is left; the exit code. Raises WindctlError for an unknown machine."""
     if os.environ.get("NO_COLOR") == "":
         del os.environ["NO_COLOR"]  # set and empty means not set
+    sys.setswitchinterval(SWITCH_S)
     session = Session(shared)
     settings = _settings()
     app = WindctlApp(session, _table(settings, "keys"), light=settings.get("theme") == "light")

@@ -6,6 +6,8 @@ meet are cut, which makes 0, 3, 6, 8 and 9 round and keeps 1, 4 and 7 sharp.
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 from windctl.tui.pictures.halves import halves
 
 _STROKES = {  # top, upper right, lower right, bottom, lower left, upper left, middle
@@ -47,6 +49,7 @@ def _width(text: str, wide: int) -> int:
     return sum(2 if char in " ." else wide for char in text) + _GAP * (len(text) - 1)
 
 
+@lru_cache(maxsize=128)
 def _glyph(char: str, tall: int, wide: int) -> list[str]:
     if char == " ":
         return [" " * 2] * tall

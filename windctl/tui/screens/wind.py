@@ -14,7 +14,7 @@ from textual.widgets import Static
 from windctl.desk.words import help_text, request_of
 from windctl.errors import WindctlError
 from windctl.run.outcome import Outcome
-from windctl.run.requests import Clear, End, Go, Note
+from windctl.run.requests import Clear, End, Go, Note, Unwind
 from windctl.run.runner import Ended
 from windctl.run.snapshot import Snapshot
 from windctl.tui.dialogs.confirm import Confirm
@@ -77,6 +77,7 @@ class WindScreen(Room):
         self.ended: Ended | None = None
         self.outcome: Outcome | None = None
         self._facts = 0
+        self._to_unwind = 0.0
         self._lines: list[tuple[str, str]] = []
         self._asked: str | None = None
 
@@ -118,6 +119,10 @@ class WindScreen(Room):
         if self.latest is not None and snapshot.answers != self.latest.answers:
             self.notify(snapshot.answer, markup=False)
         self.latest = snapshot
+        hand = self.coil.hand
+        if self._to_unwind and hand is not None and snapshot.hands and snapshot.drives_off:
+            hand(-self._to_unwind)  # nobody stands at a simulated spindle but we
+            self._to_unwind = 0.0
         if self.ended is None and (ended := winding.wait(0.0)) is not None:
             self.ended = ended
             self.finish()
@@ -301,6 +306,8 @@ class WindScreen(Room):
         if isinstance(request, End):
             self.action_end()
         elif request is not None:
+            if isinstance(request, Unwind):
+                self._to_unwind = request.turns or 0.0
             self.coil.winding.request(request)
 
     def action_note(self) -> None:

@@ -57,8 +57,9 @@ class Drawing(Widget):
     def render_line(self, y: int) -> Strip:
         """One row."""
         width = self.size.width
+        ground = self._style((None, None))
         if y >= len(self._picture):
-            return Strip.blank(width, self.rich_style)
+            return Strip.blank(width, ground)
         segments = []
         text, last = "", None
         for cell in self._picture[y][:width]:
@@ -69,7 +70,7 @@ class Drawing(Widget):
             text, last = text + cell.char, ink
         if text and last is not None:
             segments.append(Segment(text, self._style(last)))
-        return Strip(segments).adjust_cell_length(width, self.rich_style)
+        return Strip(segments).adjust_cell_length(width, ground)
 
     def _style(self, inks: tuple[Ink, Ink]) -> Style:
         style = self._styles.get(inks)
