@@ -21,7 +21,7 @@ from windctl.book.open import open_book
 from windctl.machine.virtual.faults import Faults
 from windctl.protocol.messages import Cause
 from windctl.protocol.messages import State as BoardState
-from windctl.record.events import CoilFinished, HoldRequested, LinkLost, Tripped
+from windctl.record.events import BoardGreeted, CoilFinished, HoldRequested, LinkLost, Tripped
 from windctl.run.trips import trip_name
 
 Fact = TypeVar("Fact")
@@ -183,8 +183,16 @@ class Stage:
     def why(self) -> str:
         """What the record gives as reasons: of holds, of a lost line, of the end."""
         reasons: list[str] = []
-        for event in self.facts(HoldRequested, LinkLost, Tripped, CoilFinished):
-            reason = f"trip {trip_name(event.trip)}" if isinstance(event, Tripped) else event.reason
-            if reason not in reasons:
+        boots: set[int] = set()
+        for event in self.facts(BoardGreeted, HoldRequested, LinkLost, Tripped, CoilFinished):
+            match event:
+                case BoardGreeted():
+                    boots.add(event.identity.boot)
+                    reason = "the board started anew" if len(boots) > 1 else ""
+                case Tripped():
+                    reason = f"trip {trip_name(event.trip)}"
+                case _:
+                    reason = event.reason
+            if reason and reason not in reasons:
                 reasons.append(reason)
         return "; ".join(reasons)

@@ -11,7 +11,8 @@ from concurrent.futures import Future, ThreadPoolExecutor
 
 import pytest
 
-from tests.run.faults import FAULTS, MENDED, TOGETHER, Fault, Seen, play_out
+from tests.run.faults import FAULTS, MENDED, TOGETHER, Fault, Seen, expected, play_out
+from tests.run.winding import ROOT
 
 pytest.importorskip("pty", reason="platform: pseudo-terminals are of POSIX")
 
@@ -47,6 +48,11 @@ def test_a_fault_leaves_the_spindle_held_the_record_true_and_the_next_coil_possi
     assert re.search(f"^{fault.why}", seen.why), seen.why
     assert re.search(fault.says, seen.ended.err), told
     assert "Traceback" not in told
+
+
+def test_the_documented_table_is_the_one_that_is_played_out() -> None:
+    developers = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
+    assert expected() in developers, "print it anew: python -m tests.run.faults expected"
 
 
 def test_every_fault_has_a_name_of_its_own_and_is_made_whole() -> None:
