@@ -45,6 +45,7 @@ gain_sd_pct = 0.2
 READINGS = b"turn,ohm,celsius,sd_ohm,state,event\n500,342.1,22.5,,rest,\n1000,0.69k,22.6,1,turning,splice\n"
 
 MANY = settings(max_examples=10_000)
+LONG_TIME = pytest.mark.timeout(3600)
 
 
 def loads_or_says(
@@ -114,6 +115,7 @@ def test_a_recipe_that_loads_is_planned_or_refused(content: bytes) -> None:
 
 
 @pytest.mark.long
+@LONG_TIME
 @MANY
 @given(anything(RECIPE))
 def test_ten_thousand_recipes(content: bytes) -> None:
@@ -121,6 +123,7 @@ def test_ten_thousand_recipes(content: bytes) -> None:
 
 
 @pytest.mark.long
+@LONG_TIME
 @MANY
 @given(anything(PROFILE))
 def test_ten_thousand_profiles(content: bytes) -> None:
@@ -128,6 +131,7 @@ def test_ten_thousand_profiles(content: bytes) -> None:
 
 
 @pytest.mark.long
+@LONG_TIME
 @MANY
 @given(anything(READINGS))
 def test_ten_thousand_readings_files(content: bytes) -> None:
@@ -135,6 +139,7 @@ def test_ten_thousand_readings_files(content: bytes) -> None:
 
 
 @pytest.mark.long
+@LONG_TIME
 @MANY
 @given(spoilt(RECIPE))
 def test_ten_thousand_plans(content: bytes) -> None:
@@ -142,6 +147,7 @@ def test_ten_thousand_plans(content: bytes) -> None:
 
 
 @pytest.mark.long
+@LONG_TIME
 @MANY
 @given(documents())
 def test_positions_of_ten_thousand_documents(text: str) -> None:
