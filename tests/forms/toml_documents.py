@@ -79,10 +79,13 @@ def _inline_tables(values: st.SearchStrategy[str]) -> st.SearchStrategy[str]:
 _VALUES = st.recursive(_SCALARS, lambda inner: _arrays(inner) | _inline_tables(inner), max_leaves=6)
 
 
+_KIND = st.sampled_from(["pair", "pair", "pair", "table", "array", "blank"])
+
+
 @st.composite
 def _lines(draw: st.DrawFn) -> str:
     gap = draw(_GAP)
-    kind = draw(st.sampled_from(["pair", "pair", "pair", "table", "array", "blank"]))
+    kind = draw(_KIND)
     if kind == "blank":
         return gap
     key = draw(_keys())
@@ -95,13 +98,18 @@ def _lines(draw: st.DrawFn) -> str:
     return f"{gap}{key}{gap}={draw(_GAP)}{draw(_VALUES)}"
 
 
+_STATEMENTS = st.lists(_lines(), max_size=10)
+_COMMENT = st.sampled_from(["", "", " # é [x] = \"'"])
+_END = st.sampled_from(["\n", "\r\n"])
+
+
 @st.composite
 def documents(draw: st.DrawFn) -> str:
     """Statements one by one; those that the standard parser refuses after the ones before are left out."""
-    end = draw(st.sampled_from(["\n", "\r\n"]))
+    end = draw(_END)
     text = ""
-    for statement in draw(st.lists(_lines(), max_size=10)):
-        comment = draw(st.sampled_from(["", "", " # é [x] = \"'"]))
+    for statement in draw(_STATEMENTS):
+        comment = draw(_COMMENT)
         longer = text + statement + comment + "\n"
         try:
             tomllib.loads(longer)
