@@ -20,6 +20,7 @@ COMMANDS = {
     "wind": "windctl.cli.wind:wind",
     "resume": "windctl.cli.wind:resume",
     "forecast": "windctl.cli.forecast:forecast",
+    "estimate": "windctl.cli.estimate:estimate",
     "coils": "windctl.cli.coils:coils",
     "spool": "windctl.cli.spool:spool",
     "machine": "windctl.cli.machine:machine",

@@ -69,6 +69,11 @@ def ohm_per_m_of(bare_mm: float, resistivity: float = RESISTIVITY_20C) -> float:
     return resistivity / (math.pi / 4 * bare_mm**2)
 
 
+def bare_mm_for(ohm_per_m: float, resistivity: float = RESISTIVITY_20C) -> float:
+    """Diameter, mm, of a round copper wire that has so much per metre at 20 degrees C."""
+    return math.sqrt(resistivity / (math.pi / 4 * ohm_per_m))
+
+
 def metric_size(bare_mm: float) -> MetricSize | None:
     """The row of the metric table for this nominal diameter, or None between the sizes."""
     return next((size for size in METRIC if math.isclose(size.bare_mm, bare_mm, rel_tol=1e-9)), None)

@@ -78,7 +78,7 @@ def resolve(
     overall, overall_sd, coat = _overall(bare, enamel, overall_mm)
     ohm = table_ohm if ohm_per_m is None else ohm_per_m
     sd = ohm_per_m_sd if ohm_per_m_sd is not None else ohm * _ohm_sd_rel(bare, measured=ohm_per_m is not None)
-    return Wire(bare, overall, overall_sd, ohm, sd, _mass_g_per_m(bare, overall), f"{size}, {coat}")
+    return Wire(bare, overall, overall_sd, ohm, sd, mass_g_per_m(bare, overall), f"{size}, {coat}")
 
 
 def bare_mm_of(gauge: str | None, diameter_mm: float | None) -> float:
@@ -104,8 +104,15 @@ def _ohm_sd_rel(bare: float, *, measured: bool) -> float:
     return _MEASURED_OHM_SD_REL if measured else 2 * tolerance_rel(bare) / _RANGE_IN_SD
 
 
-def _mass_g_per_m(bare: float, overall: float) -> float:
-    """mm2 times g/cm3 is g/m."""
-    copper_mm2 = math.pi / 4 * bare**2
-    enamel_mm2 = math.pi / 4 * (overall**2 - bare**2)
+def mass_g_per_m(bare_mm: float, overall_mm: float) -> float:
+    """Copper and enamel of a metre, g: mm2 times g/cm3 is g/m."""
+    copper_mm2 = math.pi / 4 * bare_mm**2
+    enamel_mm2 = math.pi / 4 * (overall_mm**2 - bare_mm**2)
     return copper_mm2 * COPPER_G_CM3 + enamel_mm2 * ENAMEL_G_CM3
+
+
+def mass_slopes(bare_mm: float, overall_mm: float) -> tuple[float, float]:
+    """How the logarithm of the mass goes with those of the bare and of the overall cross-section."""
+    mass = mass_g_per_m(bare_mm, overall_mm)
+    by_bare = math.pi / 4 * bare_mm**2 * (COPPER_G_CM3 - ENAMEL_G_CM3) / mass
+    return by_bare, math.pi / 4 * overall_mm**2 * ENAMEL_G_CM3 / mass

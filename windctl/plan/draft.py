@@ -13,6 +13,7 @@ from typing import Literal
 from windctl.coil.buildup import BuildUp, build_per_turn_mm
 from windctl.coil.geometry import core_of
 from windctl.coil.wire_speed import wire_speed
+from windctl.material.enamel import Grade
 from windctl.material.wire import Wire, resolve
 from windctl.plan.beliefs import PACKING
 from windctl.plan.cautions import BREAKS_N_PER_MM2, fastest_m_s
@@ -29,7 +30,12 @@ _SPOOLS = 0.1  # relative, either way of the turns foreseen: what a spool and a 
 @dataclass(frozen=True, slots=True)
 class Answers:
     """What only the winder knows. Lengths in mm; `size` is "AWG 42" or a bare diameter in mm; without
-    `overall_mm` the enamel is grade 1; the target is in turns or in ohm at 20 degrees C."""
+    `overall_mm` the enamel is `grade`; the target is in turns or in ohm at 20 degrees C.
+
+    `corner_radius_mm` None: half the width. `packing`, `ohm_per_m` (at 20 degrees C): with their
+    standard deviations, where they are known.
+    `turns`: the least and the most for a resistance target, else a tenth about those foreseen.
+    """
 
     name: str
     core_length_mm: float
@@ -42,6 +48,13 @@ class Answers:
     style: Literal["scatter", "even"]
     target: Literal["turns", "dcr_20c_ohm"]
     amount: float
+    grade: Grade = "grade 1"
+    corner_radius_mm: float | None = None
+    core_perimeter_mm: float | None = None
+    packing: tuple[float, float] | None = None
+    ohm_per_m: tuple[float, float] | None = None
+    turns: tuple[int, int] | None = None
+    heading: str = "A first draft: every value is yours to change. `windctl plan` says what the coil will be."
 
 
 def draft(answers: Answers) -> str:
@@ -50,12 +63,15 @@ def draft(answers: Answers) -> str:
     bobbin = Bobbin(
         core_length_mm=answers.core_length_mm,
         core_width_mm=answers.core_width_mm,
-        corner_radius_mm=answers.core_width_mm / 2,
+        corner_radius_mm=(
+            answers.core_width_mm / 2 if answers.corner_radius_mm is None else answers.corner_radius_mm
+        ),
+        core_perimeter_mm=answers.core_perimeter_mm,
         flange_gap_mm=answers.flange_gap_mm,
         flange_depth_mm=answers.flange_depth_mm,
     )
     blocks = [
-        "# A first draft: every value is yours to change. `windctl plan` says what the coil will be.",
+        "\n".join(f"# {line}" for line in answers.heading.splitlines()),
         _block(
             [
                 ("format = 1", "version of this form"),
@@ -74,7 +90,7 @@ def draft(answers: Answers) -> str:
                 ),
                 (f"core_width_mm = {bobbin.core_width_mm:.10g}", "and the short way"),
                 (f"corner_radius_mm = {bobbin.corner_radius_mm:.10g}", "half the width is a racetrack"),
-                ("# core_perimeter_mm =", "wrap 20 turns of the wire, divide by 20; beats the computed one"),
+                _perimeter_line(bobbin),
                 (f"flange_gap_mm = {bobbin.flange_gap_mm:.10g}", "free height between the flanges"),
                 (
                     f"flange_depth_mm = {bobbin.flange_depth_mm:.10g}",
@@ -117,10 +133,16 @@ def _block(lines: list[tuple[str, str]]) -> str:
     return "\n".join(f"{line:<{width}}  # {said}" if said else line for line, said in lines)
 
 
+def _perimeter_line(bobbin: Bobbin) -> tuple[str, str]:
+    if bobbin.core_perimeter_mm is None:
+        return "# core_perimeter_mm =", "wrap 20 turns of the wire, divide by 20; beats the computed one"
+    return f"core_perimeter_mm = {bobbin.core_perimeter_mm:.10g}", "measured; beats the computed one"
+
+
 def _wire(answers: Answers) -> Wire:
     gauge, diameter_mm = _size(answers.size)
-    enamel = "grade 1" if answers.overall_mm is None else None
-    return resolve(gauge=gauge, diameter_mm=diameter_mm, enamel=enamel, overall_mm=answers.overall_mm)  # type: ignore[arg-type]  # "grade 1" is a grade
+    enamel = answers.grade if answers.overall_mm is None else None
+    return resolve(gauge=gauge, diameter_mm=diameter_mm, enamel=enamel, overall_mm=answers.overall_mm)
 
 
 def _size(text: str) -> tuple[str | None, float | None]:
@@ -136,13 +158,24 @@ def _wire_lines(answers: Answers) -> list[tuple[str, str]]:
     bare = f"gauge = {json.dumps(gauge)}" if gauge is not None else f"diameter_mm = {diameter_mm:.10g}"
     lines = [(bare, "bare conductor")]
     if answers.overall_mm is None:
-        lines.append(('enamel = "grade 1"', "or overall_mm from a micrometer, which is more certain"))
+        grade = f'enamel = "{answers.grade}"'
+        lines.append((grade, "or overall_mm from a micrometer, which is more certain"))
     else:
         lines.append((f"overall_mm = {answers.overall_mm:.10g}", "over the enamel, by micrometer"))
     return [
         *lines,
         ('# insulation = "polyurethane"', "the enamel's kind decides how an end is bared"),
-        ("# ohm_per_m_20c =", "measured on this spool at 20 degrees C, if you did"),
+        *_ohm_per_m_lines(answers),
+    ]
+
+
+def _ohm_per_m_lines(answers: Answers) -> list[tuple[str, str]]:
+    if answers.ohm_per_m is None:
+        return [("# ohm_per_m_20c =", "measured on this spool at 20 degrees C, if you did")]
+    ohm, sd = answers.ohm_per_m
+    return [
+        (f"ohm_per_m_20c = {ohm:.4g}", "at 20 degrees C"),
+        (f"ohm_per_m_sd = {sd:.2g}", "and how surely, as a standard deviation"),
     ]
 
 
@@ -157,6 +190,10 @@ def _lay_lines(answers: Answers, wire: Wire) -> list[tuple[str, str]]:
         ),
         (f"margin_mm = {margin:g}", "the guide turns round this far inside each flange"),
     ]
+    if answers.packing is not None:
+        packing, sd = answers.packing
+        lines.append((f"packing = {packing:.3f}", "share of the window filled with wire"))
+        lines.append((f"packing_sd = {max(sd, 0.001):.3f}", "and how surely, as a standard deviation"))
     if even:
         return lines
     return [
@@ -210,8 +247,10 @@ def _stop_lines(answers: Answers, wire: Wire, bobbin: Bobbin) -> list[tuple[str,
     per_turn = build_per_turn_mm(wire.overall_mm, PACKING[answers.style][0], bobbin.flange_gap_mm)
     turns = BuildUp(core_of(bobbin).perimeter_mm, per_turn).turns_for_length(answers.amount / wire.ohm_per_m)
     unit = 10 if turns > 200 else 1
-    least = math.floor(turns * (1 - _SPOOLS) / unit) * unit
-    most = math.ceil(turns * (1 + _SPOOLS) / unit) * unit
+    least, most = answers.turns or (
+        math.floor(turns * (1 - _SPOOLS) / unit) * unit,
+        math.ceil(turns * (1 + _SPOOLS) / unit) * unit,
+    )
     return [
         (f"dcr_20c_ohm = {answers.amount:.10g}", "target, at 20 degrees C"),
         ("tolerance_pct = 2", "of the resistance; what counts as a good coil"),

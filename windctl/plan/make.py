@@ -15,7 +15,7 @@ from windctl.lay.limits import check
 from windctl.lay.make import make_program
 from windctl.lay.program import Program
 from windctl.lay.ribbons import ribbon
-from windctl.material.wire import Wire
+from windctl.material.wire import Wire, mass_g_per_m
 from windctl.plan.beliefs import Beliefs, Believed, basis_of, beliefs_of
 from windctl.plan.board_setup import board_setup
 from windctl.plan.cautions import Outlook, cautions
@@ -129,7 +129,7 @@ def make_plan(
         dcr_sd_ohm=sd,
         ohm_per_m=ohm_per_m,
         wire_length_m=length,
-        wire_mass_g=length * believed.basis.wire_g_per_m(known.wire),
+        wire_mass_g=length * mass_g_per_m(*believed.basis.wire_sizes(known.wire)),
         perimeter_mm=coil.perimeter_mm,
         mean_turn_mm=coil.mean_turn_mm(planned),
         overall_mm=wire.overall_mm,

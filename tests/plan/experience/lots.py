@@ -114,9 +114,8 @@ def basis(ohm_per_m_rel: float = 0.04) -> Basis:
     packing, crown = 0.63, 1.06
     return Basis(
         bobbin="demo bobbin", lay="demo lay", style="scatter", wire="AWG 42, grade 1",
-        ohm_per_m=OHM_PER_M * 1.004, ohm_per_m_rel=ohm_per_m_rel, bare_mm=0.0633,
+        ohm_per_m=OHM_PER_M * 1.004, ohm_per_m_rel=ohm_per_m_rel,
         overall_mm=overall, overall_rel=(OVERALL_MM[1] - OVERALL_MM[0]) / 4.0 / overall,
-        mass_g_per_m=8.89 / 58.0 / OHM_PER_M + 1.2 * (pi / 4.0 * overall**2 - 1.0 / 58.0 / OHM_PER_M),
         perimeter_mm=1000.0 * CORE_M, perimeter_rel=0.003, mould_rel=0.004,
         build_per_turn_mm=build_per_turn_mm(overall, packing, GAP_MM), crown=crown,
         growth_rel=0.06 / packing, bed_rel=0.035,

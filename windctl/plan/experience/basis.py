@@ -10,9 +10,7 @@ from dataclasses import dataclass
 from math import exp, pi
 
 from windctl.coil.buildup import BuildUp
-from windctl.material.copper import DENSITY_G_CM3 as COPPER_G_CM3
-
-_THINNEST = 0.2  # of the enamel's nominal cross-section: less is no enamel
+from windctl.material.gauge import bare_mm_for
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,10 +29,8 @@ class Basis:
     wire: str  # for people
     ohm_per_m: float
     ohm_per_m_rel: float
-    bare_mm: float
     overall_mm: float
     overall_rel: float
-    mass_g_per_m: float
     perimeter_mm: float
     perimeter_rel: float
     mould_rel: float
@@ -53,20 +49,10 @@ class Basis:
         """Of the first turn."""
         return self.ohm_per_m * self.perimeter_mm / 1000.0
 
-    def wire_g_per_m(self, level: float = 0.0, area: float = 0.0) -> float:
-        """Mass of a metre of the wound wire, copper and enamel.
-
-        `level`, `area`: by how much its ohm per metre and its cross-section with enamel deviate. Copper goes
-        down as ohm per metre goes up.
-        """
-        copper, bare, overall = self.copper_g_per_m, self.bare_mm**2, self.overall_mm**2
-        thick = (overall * exp(area) - bare * exp(-level)) / (overall - bare) if overall > bare else 1.0
-        return copper * exp(-level) + (self.mass_g_per_m - copper) * max(thick, _THINNEST)
-
-    @property
-    def copper_g_per_m(self) -> float:
-        """Mass of a metre's copper."""
-        return COPPER_G_CM3 * pi / 4.0 * self.bare_mm**2
+    def wire_sizes(self, level: float = 0.0, area: float = 0.0) -> tuple[float, float]:
+        """Bare and overall diameter, mm, of a wire whose ohm per metre and cross-section with enamel deviate
+        so much: the copper is as thick as its ohm per metre says."""
+        return bare_mm_for(self.ohm_per_m * exp(level)), self.overall_mm * exp(area / 2.0)
 
     @property
     def growth_ohm(self) -> float:

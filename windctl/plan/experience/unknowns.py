@@ -24,6 +24,7 @@ from dataclasses import dataclass
 from math import exp, hypot, log, sqrt
 
 from windctl.material.copper import ALPHA_20C
+from windctl.material.wire import mass_g_per_m, mass_slopes
 from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.gaussian import Gaussian, Name
 from windctl.plan.experience.lesson import Build, Lesson, Mass, Measured, Resistance, Share
@@ -147,13 +148,10 @@ def expected(belief: Gaussian, lesson: Lesson, measured: Measured) -> Expected:
             return Expected(row, measured.part - share, measured.sd**2 + (TREND_SD * share) ** 2)
         case Mass():
             length = ohm / (basis.ohm_per_m * exp(level))
-            area, bare, overall = belief.value(part.area), basis.bare_mm**2, basis.overall_mm**2
-            per_m = basis.wire_g_per_m(level, area)
-            coat = (basis.mass_g_per_m - basis.copper_g_per_m) / max(overall - bare, 1e-9)
-            by_area = coat * overall * exp(area) / per_m
-            by_wire = (coat * bare - basis.copper_g_per_m) * exp(-level) / per_m
-            row = _sum((metres, 1.0), (wire, by_wire), ({part.area: 1.0}, by_area), ({part.metal: 1.0}, 1.0))
-            off = log(measured.grams / (length * per_m)) - belief.value(part.metal)
+            bare, overall = basis.wire_sizes(level, belief.value(part.area))
+            by_bare, by_area = mass_slopes(bare, overall)
+            row = _sum((metres, 1.0), (wire, -by_bare), ({part.area: 1.0}, by_area), ({part.metal: 1.0}, 1.0))
+            off = log(measured.grams / (length * mass_g_per_m(bare, overall))) - belief.value(part.metal)
             return Expected(row, off, (measured.sd / measured.grams) ** 2)
         case Build():
             mm = basis.build_per_turn_mm * turns * exp(belief.along(growth))
