@@ -15,8 +15,9 @@ from windctl.run.outlook import Ahead
 from windctl.run.requests import Request
 from windctl.run.snapshot import Snapshot
 from windctl.run.wind import Winding
+from windctl.tui.page import Page
 from windctl.tui.pictures.curve import Point
-from windctl.tui.session import Page, Run, Session
+from windctl.tui.session import Run, Session
 from windctl.tui.view import Card
 
 SNAPSHOT = Snapshot(

@@ -52,7 +52,7 @@ def shown(app: WindctlApp) -> str:
     return html.unescape(re.sub(r"<[^>]+>", " ", picture.partition("</style>")[2])).replace("\xa0", " ")
 
 
-async def until(pilot: Pilot[int], what: Callable[[], bool], seconds: float = 30.0) -> None:
+async def until(pilot: Pilot[int], what: Callable[[], bool], seconds: float = 90.0) -> None:
     """Let the interface run until something holds."""
     end = time.monotonic() + seconds
     while not what():

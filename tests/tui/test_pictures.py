@@ -50,9 +50,11 @@ async def picture_of(app: WindctlApp, size: tuple[int, int], snapshot: Snapshot 
         run = run_of(winding)
         app.session.run = run
         await app.push_screen(WindScreen(app.session, run))
-        await pilot.pause(0.2)
-        await pilot.pause()
-        return plain(app.export_screenshot(title="windctl"))
+        before = ""
+        while "build&#160;" not in before or before != app.export_screenshot(title="windctl"):
+            before = app.export_screenshot(title="windctl")  # until everything is placed and drawn
+            await pilot.pause(0.7)
+        return plain(before)
 
 
 def compare(name: str, picture: str) -> None:

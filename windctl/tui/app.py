@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from pathlib import Path
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual import events
 from textual.app import App, SystemCommand
@@ -13,16 +13,18 @@ from textual.driver import Driver
 from textual.screen import Screen
 from textual.widgets import Input, TextArea
 
-from windctl.run.outcome import Outcome
 from windctl.tui import keymap
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.help import Help
 from windctl.tui.keymap import key
 from windctl.tui.screens.coils import CoilsScreen
 from windctl.tui.screens.recipes import RecipesScreen
-from windctl.tui.session import Run, Session
 from windctl.tui.theme import DARK, LIGHT
 from windctl.tui.urgent import Held, with_urgent_keys
+
+if TYPE_CHECKING:
+    from windctl.run.outcome import Outcome
+    from windctl.tui.session import Run, Session
 
 MOVING = ("turning", "stopping")
 

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
-from windctl.book.heads import CoilHead
+from typing import TYPE_CHECKING
+
 from windctl.desk.numbers import duration, grouped, ohm, turns
-from windctl.plan.model import Plan
-from windctl.profile.model import MachineProfile
-from windctl.recipe.model import Recipe
 from windctl.recipe.orientation import Orientation, orientation
+
+if TYPE_CHECKING:
+    from windctl.book.heads import CoilHead
+    from windctl.plan.model import Plan
+    from windctl.profile.model import MachineProfile
+    from windctl.recipe.model import Recipe
 
 _Z95 = 1.959964
 

@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from windctl.desk.numbers import ohm, turns
-from windctl.run.outcome import Outcome
 from windctl.tui.looks import OUTCOMES, VERDICTS, Look, look_of
 from windctl.tui.view import Next
+
+if TYPE_CHECKING:
+    from windctl.run.outcome import Outcome
 
 
 def after_words(outcome: Outcome, look: Look) -> tuple[Look, Next]:

@@ -12,55 +12,37 @@ from collections.abc import Callable
 from contextlib import AbstractContextManager, ExitStack, nullcontext
 from dataclasses import dataclass, replace
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING
 
-from windctl.book.book import Book
-from windctl.book.heads import CoilHead
-from windctl.book.verify import VerifyReport
 from windctl.desk.asked import Shared
-from windctl.desk.bench import Bench, open_bench
 from windctl.desk.books import book_if_any, book_to_read, book_to_write
-from windctl.desk.going_on import recorded_profile
 from windctl.desk.machines import profile_of, simulated_here
-from windctl.desk.supply import supply_of
-from windctl.errors import RecordBroken, WindctlError
-from windctl.plan.experience.supply import Supply
-from windctl.plan.growth import Growth, growth_of
-from windctl.plan.make import make_plan
-from windctl.plan.model import Plan
-from windctl.profile.model import MachineProfile
-from windctl.recipe.load import parse_recipe
-from windctl.recipe.model import Recipe
-from windctl.record.curve import CurvePoint, review
-from windctl.record.events import CoilStarted, Event
-from windctl.run.outcome import Outcome
+from windctl.errors import RecordBroken
 from windctl.run.requests import Hold
-from windctl.run.wind import Order, Winding, begin, go_on
-from windctl.tui import recipes
+from windctl.tui.cards import card_for
+from windctl.tui.page import PAGE, Page
 from windctl.tui.pictures.curve import Point
-from windctl.tui.recipes import Listed, Preview
-from windctl.tui.telling import tell, when
 from windctl.tui.view import Card
 
-PAGE = 100
+if TYPE_CHECKING:
+    from windctl.book.book import Book
+    from windctl.book.heads import CoilHead
+    from windctl.book.verify import VerifyReport
+    from windctl.desk.bench import Bench
+    from windctl.plan.experience.supply import Supply
+    from windctl.plan.growth import Growth
+    from windctl.profile.model import MachineProfile
+    from windctl.recipe.model import Recipe
+    from windctl.record.curve import CurvePoint
+    from windctl.record.events import CoilStarted, Event
+    from windctl.run.outcome import Outcome
+    from windctl.run.wind import Winding
+    from windctl.tui.recipes import Listed, Preview
+
 LEAVING_S = 45.0  # to see the spindle stand and the record complete
 _Z95 = 1.959964
 
 REAL_TIME = 1.0  # the simulated machine's speed where none is asked for: one practises on it
-
-
-@dataclass(frozen=True, slots=True)
-class Page:
-    """One page of the book's list, and how many coils there are in all."""
-
-    heads: tuple[CoilHead, ...]
-    total: int
-    number: int
-
-    @property
-    def pages(self) -> int:
-        """How many pages there are; at least one."""
-        return max(1, -(-self.total // PAGE))
 
 
 @dataclass(frozen=True, slots=True)
@@ -122,10 +104,14 @@ class Session:
 
     def recipes(self) -> list[Listed]:
         """All recipes within reach."""
+        from windctl.tui import recipes
+
         return recipes.listed(recipes.folders() if self._folders is None else self._folders)
 
     def preview(self, one: Listed) -> Preview | str:
         """What a recipe will be on this machine, or why not."""
+        from windctl.desk.supply import supply_of
+        from windctl.tui import recipes
 
         def supply_for(recipe: Recipe) -> Supply:
             return supply_of(self.shared, self.profile, recipe, simulated=self.simulated)
@@ -142,6 +128,8 @@ class Session:
 
     def begin(self, preview: Preview, batch: str = "", of: int = 0) -> Run:
         """Open the machine, number the coil, and start its run. Raises WindctlError; nothing is open then."""
+        from windctl.run.wind import Order, begin
+
         with ExitStack() as stack:
             bench, book = self._open(stack, preview.recipe, supply=preview.supply)
             order = Order(
@@ -155,16 +143,23 @@ class Session:
             )
             place = book.count(batch=batch) + 1 if batch else 0
             winding = begin(order, book, bench.port, bench.here)
-            card = _card(preview.recipe.name, winding.number, bench.name, preview.plan, preview.recipe.stop)
-            card = replace(
-                card, batch=batch, of=of, place=place, depth_mm=preview.recipe.bobbin.flange_depth_mm
-            )
+            recipe = preview.recipe
+            card = card_for(recipe.name, winding.number, bench.name, preview.plan, recipe.stop)
+            card = replace(card, batch=batch, of=of, place=place, depth_mm=recipe.bobbin.flange_depth_mm)
             return self._started(
                 stack, Run(winding, card, preview.growth, self.profile.spindle.counts_per_turn, [])
             )
 
     def go_on(self, number: str, at_turn: float | None = None) -> Run:
         """Take an open coil up where its record ends. Raises WindctlError; nothing is open then."""
+        from windctl.desk.going_on import recorded_profile
+        from windctl.plan.growth import growth_of
+        from windctl.plan.make import make_plan
+        from windctl.recipe.load import parse_recipe
+        from windctl.record.curve import review
+        from windctl.record.events import CoilStarted
+        from windctl.run.wind import go_on
+
         with ExitStack() as stack:
             with book_to_read(self.shared) as book:
                 events = list(book.events(number))
@@ -178,7 +173,7 @@ class Session:
             self.shared = replace(self.shared, at_turn=at_turn)
             bench, book = self._open(stack, recipe, started, profile)
             winding = go_on(number, book, bench.port, bench.here, at_turn)
-            card = _card(recipe.name, number, bench.name, plan, recipe.stop)
+            card = card_for(recipe.name, number, bench.name, plan, recipe.stop)
             card = replace(card, batch=head.batch, of=head.of, depth_mm=recipe.bobbin.flange_depth_mm)
             before = _points(review(events).curve)
             counts_per_turn = started.setup.counts_per_turn
@@ -188,11 +183,13 @@ class Session:
     def _open(
         self,
         stack: ExitStack,
-        recipe: Any,
+        recipe: Recipe,
         started: CoilStarted | None = None,
         profile: MachineProfile | None = None,
         supply: Supply | None = None,
     ) -> tuple[Bench, Book]:
+        from windctl.desk.bench import open_bench
+
         shared = self.shared
         if self.simulated and shared.speed is None:
             shared = replace(shared, speed=REAL_TIME)
@@ -280,6 +277,8 @@ class Session:
 
     def told(self, number: str) -> Told:
         """One coil, as it is shown. Raises BookError, RecordBroken."""
+        from windctl.record.curve import review
+
         with book_to_read(self.shared) as book:
             head = book.find(number)
             events = list(book.events(number))
@@ -300,33 +299,14 @@ class Session:
         return path
 
 
-def _card(recipe: str, number: str, machine: str, plan: Plan, stop: Any) -> Card:
-    return Card(
-        number=number,
-        recipe=recipe,
-        machine=machine,
-        target_kind=plan.target_kind,
-        target_value=plan.target_value,
-        tolerance_pct=stop.tolerance_pct,
-        most_turns=plan.program.turns,
-        planned_turns=float(plan.turns),
-        planned_ohm=plan.dcr_20c_ohm,
-        planned_u95=_Z95 * plan.dcr_sd_ohm,
-        depth_mm=0.0,
-    )
-
-
-def card_of(preview: Preview, machine: str) -> Card:
-    """A coil that is only planned."""
-    card = _card(preview.recipe.name, "", machine, preview.plan, preview.recipe.stop)
-    return replace(card, depth_mm=preview.recipe.bobbin.flange_depth_mm)
-
-
 def _points(curve: tuple[CurvePoint, ...]) -> list[Point]:
     return [Point(one.turn, one.ohm_20c, one.final_ohm, _Z95 * one.final_sd) for one in curve]
 
 
 def _told(head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...]) -> Told:
+    from windctl.record.events import CoilStarted
+    from windctl.tui.telling import tell, when
+
     started = events[0]
     if not isinstance(started, CoilStarted):
         raise RecordBroken(f"the record of coil {head.number} does not begin with its start")
@@ -357,5 +337,3 @@ def _told(head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...]) ->
 
 
 _DENSE = ("status_heard", "reading_taken")
-
-__all__ = ["PAGE", "Page", "Run", "Session", "Told", "WindctlError", "card_of"]

@@ -6,12 +6,15 @@ import re
 from dataclasses import dataclass
 from enum import Enum
 from math import floor
+from typing import TYPE_CHECKING
 
 from windctl.desk.numbers import duration, grouped, ohm
-from windctl.run.outlook import Ahead
-from windctl.run.snapshot import Snapshot
 from windctl.tui.looks import Look, look_of
 from windctl.tui.pictures.curve import Band, Scale
+
+if TYPE_CHECKING:
+    from windctl.run.outlook import Ahead
+    from windctl.run.snapshot import Snapshot
 
 _TRIPPED = re.compile(r"^the board is tripped \(([^)]*)\): ")
 _HEADROOM = 1.08  # of an axis over the most that is foreseen

@@ -8,9 +8,12 @@ with the wire running down to where it lies.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
-from windctl.plan.growth import Growth
 from windctl.tui.pictures.cells import BLANK, Cell, Ink, Picture, blank, put
+
+if TYPE_CHECKING:
+    from windctl.plan.growth import Growth
 
 _EIGHTHS = " ▁▂▃▄▅▆▇█"
 

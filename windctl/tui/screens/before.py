@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual import on, work
 from textual.app import ComposeResult
@@ -14,13 +14,15 @@ from windctl.errors import WindctlError
 from windctl.tui.before_words import checklist, figures_of, orientation_of, since_last
 from windctl.tui.dialogs.say import Say
 from windctl.tui.keymap import key
-from windctl.tui.recipes import Preview
 from windctl.tui.screens.room import Room
 from windctl.tui.screens.wind import WindScreen
-from windctl.tui.session import Run, Session
 from windctl.tui.widgets.checklist import Checklist
 from windctl.tui.widgets.figures import Figures
 from windctl.tui.widgets.orientation import OrientationDrawing
+
+if TYPE_CHECKING:
+    from windctl.tui.recipes import Preview
+    from windctl.tui.session import Run, Session
 
 
 class BeforeScreen(Room):

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from rich.text import Text
 from textual import work
@@ -11,16 +11,18 @@ from textual.binding import BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import RichLog, Static
 
-from windctl.book.verify import VerifyReport
 from windctl.desk.numbers import ohm, turns
 from windctl.errors import WindctlError
 from windctl.tui.keymap import key
 from windctl.tui.looks import OUTCOMES, VERDICTS
 from windctl.tui.screens.room import Room
-from windctl.tui.session import Session, Told
 from windctl.tui.view import target_text
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
+
+if TYPE_CHECKING:
+    from windctl.book.verify import VerifyReport
+    from windctl.tui.session import Session, Told
 
 
 class CoilScreen(Room):

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from rich.text import Text
 from textual import on, work
@@ -10,14 +10,17 @@ from textual.app import ComposeResult
 from textual.binding import BindingType
 from textual.widgets import DataTable, Static
 
-from windctl.book.heads import CoilHead
 from windctl.desk.numbers import grouped, ohm
 from windctl.errors import WindctlError
 from windctl.tui.keymap import key
 from windctl.tui.looks import OUTCOMES, VERDICTS
+from windctl.tui.page import Page
 from windctl.tui.screens.coil import CoilScreen
 from windctl.tui.screens.room import Room
-from windctl.tui.session import Page, Session
+
+if TYPE_CHECKING:
+    from windctl.book.heads import CoilHead
+    from windctl.tui.session import Session
 
 FILTERS = (None, "finished", "open", "stopped", "tripped")
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual import on, work
 from textual.app import ComposeResult
@@ -12,25 +12,28 @@ from textual.content import Content
 from textual.widgets import OptionList, Static
 from textual.widgets.option_list import Option
 
-from windctl.book.heads import CoilHead
 from windctl.desk.words import number
 from windctl.errors import WindctlError
 from windctl.tui.before_words import figures_of
+from windctl.tui.cards import card_of
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.say import Say
 from windctl.tui.dialogs.typed import Figure
 from windctl.tui.keymap import key
 from windctl.tui.looks import FITS
 from windctl.tui.pictures.section import Filled
-from windctl.tui.recipes import Listed, Preview
 from windctl.tui.screens.before import BeforeScreen
 from windctl.tui.screens.room import Room
 from windctl.tui.screens.wind import WindScreen
-from windctl.tui.session import Run, Session, card_of
 from windctl.tui.view import bands
 from windctl.tui.widgets.bobbin_section import BobbinSection
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
+
+if TYPE_CHECKING:
+    from windctl.book.heads import CoilHead
+    from windctl.tui.recipes import Listed, Preview
+    from windctl.tui.session import Run, Session
 
 
 class RecipesScreen(Room):

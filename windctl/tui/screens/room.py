@@ -2,14 +2,16 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
 from textual.screen import Screen
 from textual.widgets import Footer
 
-from windctl.tui.session import Session
 from windctl.tui.widgets.title_bar import TitleBar
+
+if TYPE_CHECKING:
+    from windctl.tui.session import Session
 
 
 class Room(Screen[None]):

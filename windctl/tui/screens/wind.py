@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from time import monotonic
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual import work
 from textual.app import ComposeResult
@@ -13,10 +13,7 @@ from textual.widgets import Static
 
 from windctl.desk.words import help_text, request_of
 from windctl.errors import WindctlError
-from windctl.run.outcome import Outcome
 from windctl.run.requests import Clear, End, Go, Note, Unwind
-from windctl.run.runner import Ended
-from windctl.run.snapshot import Snapshot
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.tell import Tell
 from windctl.tui.dialogs.typed import Typed, Word
@@ -25,10 +22,7 @@ from windctl.tui.outcome_words import after_words, outcome_words
 from windctl.tui.pace import DIGITS_S, Pace
 from windctl.tui.pictures.curve import Point
 from windctl.tui.pictures.section import Filled
-from windctl.tui.recipes import Preview
 from windctl.tui.screens.room import Room
-from windctl.tui.session import Run, Session
-from windctl.tui.telling import tell, when
 from windctl.tui.trail import Trail
 from windctl.tui.view import Glance, bands, glance, sound
 from windctl.tui.widgets.bobbin_section import BobbinSection
@@ -39,6 +33,13 @@ from windctl.tui.widgets.state_band import StateBand
 from windctl.tui.widgets.title_bar import TitleBar
 from windctl.tui.widgets.turn_count import TurnCount
 from windctl.tui.widgets.way import Way
+
+if TYPE_CHECKING:
+    from windctl.run.outcome import Outcome
+    from windctl.run.runner import Ended
+    from windctl.run.snapshot import Snapshot
+    from windctl.tui.recipes import Preview
+    from windctl.tui.session import Run, Session
 
 CAUTIONS = """\
 Guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves, eye protection on.
@@ -164,6 +165,8 @@ class WindScreen(Room):
             if curve.display:
                 curve.show(card.scale, self.trail.points, fan)
         self.query_one(BobbinSection).show(self.coil.growth, Filled(snapshot.turns, snapshot.guide_mm))
+        from windctl.tui.telling import tell, when  # what it needs takes long to load
+
         facts = winding.facts(self._facts)
         if facts:
             self._facts += len(facts)

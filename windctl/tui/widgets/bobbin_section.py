@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
-from windctl.plan.growth import Growth
+from typing import TYPE_CHECKING
+
 from windctl.tui.pictures.cells import Picture, blank, put
 from windctl.tui.pictures.section import Filled, Section
 from windctl.tui.widgets.drawing import Drawing
+
+if TYPE_CHECKING:
+    from windctl.plan.growth import Growth
 
 
 class BobbinSection(Drawing):
