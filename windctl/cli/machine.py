@@ -7,6 +7,7 @@ from pathlib import Path
 import click
 
 from windctl.cli import present
+from windctl.cli.machine_check import check
 from windctl.cli.options import Shared, takes
 from windctl.desk import places
 from windctl.desk.machines import VIRTUAL, configured_machine, kept_profiles, profile_of
@@ -16,6 +17,9 @@ from windctl.errors import ProfileError
 @click.group()
 def machine() -> None:
     """Machines: their profiles, and the simulated one."""
+
+
+machine.add_command(check)
 
 
 @machine.command("list")

@@ -45,7 +45,7 @@ def stand_by(run: Watched, face: Face, prompt: Prompt | None, hand: Hand | None 
     of a simulated machine ends the coil instead.
     """
     stops, questions = _Stops(run), Questions(run, face, prompt, hand)
-    with _listening(stops.heard):
+    with listening(stops.heard):
         run.start()
         questions.begin()
         alarm = ""
@@ -106,12 +106,12 @@ class _Stops:
 @contextmanager
 def deaf() -> Iterator[None]:
     """Ctrl-C, SIGTERM and SIGHUP are passed over: the spindle stands, and the record is being completed."""
-    with _listening(lambda _number, _frame: None):
+    with listening(lambda _number, _frame: None):
         yield
 
 
 @contextmanager
-def _listening(heard: Callable[[int, FrameType | None], None]) -> Iterator[None]:
+def listening(heard: Callable[[int, FrameType | None], None]) -> Iterator[None]:
     """Ctrl-C, SIGTERM and SIGHUP reach `heard` instead of ending the program."""
     if threading.current_thread() is not threading.main_thread():
         yield  # only the main thread can have handlers; whoever runs us elsewhere passes stops on itself

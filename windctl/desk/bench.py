@@ -80,7 +80,7 @@ def open_bench(
         finally:
             port.close()
             note(f"{profile.name}: closed {profile.port.url}")
-            _keep(trace, f"{profile.name} at {profile.port.url}, {recipe.name}")
+            keep_line_trace(trace, f"{profile.name} at {profile.port.url}, {recipe.name}")
         return
 
     from windctl.machine.virtual.bench import virtual_bench
@@ -114,7 +114,7 @@ def open_bench(
     )
 
 
-def _keep(trace: LineTrace, about: str) -> None:
+def keep_line_trace(trace: LineTrace, about: str) -> None:
     """Leave the last bytes of the line beside the log, for `windctl diagnose`. A run never ends on it."""
     file = places.line_trace_file()
     closed = datetime.now().astimezone().isoformat(timespec="seconds")

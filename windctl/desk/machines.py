@@ -41,6 +41,23 @@ def kept_profiles() -> dict[str, Path]:
     return {file.stem: file for file in sorted(places.machines_folder().glob("*.toml"))}
 
 
+def profile_file(shared: Shared) -> Path | None:
+    """The file of the machine asked for; None for the built-in one. Raises MachineError: unknown name."""
+    name = shared.machine or configured_machine()
+    if name == VIRTUAL:
+        return None
+    if name.endswith(".toml") or os.sep in name or "/" in name:
+        return Path(name)
+    kept = kept_profiles()
+    if name not in kept:
+        known = ", ".join([VIRTUAL, *kept])
+        raise MachineError(
+            f"there is no machine {name!r}; known: {known}. "
+            f"Profiles are kept as NAME.toml in {places.machines_folder()}."
+        )
+    return kept[name]
+
+
 def profile_of(shared: Shared) -> MachineProfile:
     """The machine asked for, with --readings and --port in place of what its profile says.
 
@@ -49,20 +66,8 @@ def profile_of(shared: Shared) -> MachineProfile:
     from windctl.profile.builtin import VIRTUAL as BUILT_IN
     from windctl.profile.load import load_profile
 
-    name = shared.machine or configured_machine()
-    if name == VIRTUAL:
-        profile = BUILT_IN
-    elif name.endswith(".toml") or os.sep in name or "/" in name:
-        profile = load_profile(Path(name))
-    else:
-        kept = kept_profiles()
-        if name not in kept:
-            known = ", ".join([VIRTUAL, *kept])
-            raise MachineError(
-                f"there is no machine {name!r}; known: {known}. "
-                f"Profiles are kept as NAME.toml in {places.machines_folder()}."
-            )
-        profile = load_profile(kept[name])
+    file = profile_file(shared)
+    profile = BUILT_IN if file is None else load_profile(file)
     if shared.readings is not None:
         readings = profile.readings.model_copy(update={"mode": shared.readings})
         profile = profile.model_copy(update={"readings": readings})

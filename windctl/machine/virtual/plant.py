@@ -180,6 +180,11 @@ class Plant:
         """Turns the spindle slowly, with drives off; negative unwinds."""
         self.spindle.turn_by_hand(round(turns * self._steps_per_turn))
 
+    def connect(self, ohm: float | None) -> None:
+        """Puts the contact's leads on a resistor (0: together, infinite: on nothing); None: on the wire."""
+        self._sensing.connect(ohm)
+        self._look()
+
     def own_motor(self, rpm: float) -> None:
         """Sets the motor of a machine whose spindle no board drives; 0 lets it coast."""
         self.spindle.own_motor(round(rpm * self._steps_per_turn / 60.0))

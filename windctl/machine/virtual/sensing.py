@@ -25,6 +25,7 @@ class Sensing:
     __slots__ = (
         "_at",
         "_celsius",
+        "_connected",
         "_contact",
         "_lead_mm",
         "_line",
@@ -51,6 +52,7 @@ class Sensing:
         self._table = sine_table(spec.steps_per_turn)
         self._twice = sine_table(spec.steps_per_turn, cycles=2)
         self._touching = spec.readings == "live"
+        self._connected: float | None = None  # ohm of a resistor in the coil's place
         self._contact = [0.0] * BLOCK
         self._pull = [0.0] * BLOCK
         self._at = 0
@@ -68,6 +70,10 @@ class Sensing:
         inputs.tension = OPEN if pull > LAST_UNIT else int(pull) if pull > 0.0 else 0
         inputs.celsius_centi = self._celsius
 
+    def connect(self, ohm: float | None) -> None:
+        """The contact's leads on a resistor (0: together, infinite: on nothing); None: on the wire again."""
+        self._connected = ohm
+
     def new_coil(self, fate: Fate) -> None:
         """Another bobbin: instruments and room stay as they are."""
         self.weather.new_coil(fate)
@@ -81,14 +87,21 @@ class Sensing:
         if self._spec.readings == "checks":
             # the winder bares the wire and touches the contact once the machine stands with its drives off
             self._touching = drives_off and not turning
-        self._contact = self._meter.block(coil.ohm, coil.turns, turning=turning)
+        if self._connected is not None:
+            still = self._connected if self._connected < float("inf") else 0.0
+            self._contact = self._meter.block(still, 0.0, turning=False)
+        else:
+            self._contact = self._meter.block(coil.ohm, coil.turns, turning=turning)
         self._pull = self._tensioner.block()
         self._at = 0
 
     def look(self, coil: Coil, rpm: float, *, wire_whole: bool) -> None:
         """Sets the lines that contact and tension follow until the next turn or block."""
         spec, meter, weather = self._spec, self._meter, self.weather
-        if wire_whole and self._touching:
+        if self._connected is not None:
+            self._line = meter.units(min(self._connected, 1e9), 0.0)
+            self._slope = self._wobble = 0.0
+        elif wire_whole and self._touching:
             warm = 1.0 + ALPHA_20C * (weather.coil_c - 20.0)
             lead = self._lead_mm * 0.001 * coil.ohm_per_m * (1.0 + ALPHA_20C * (weather.air_c - 20.0))
             self._line = meter.units(coil.ohm * warm, lead)
