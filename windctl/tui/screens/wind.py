@@ -121,7 +121,8 @@ class WindScreen(Room):
             self.notify(snapshot.answer, markup=False)
         self.latest = snapshot
         hand = self.coil.hand
-        if self._to_unwind and hand is not None and snapshot.hands and snapshot.drives_off:
+        agreed = (snapshot.hands or "").startswith(f"unwind {self._to_unwind:g} turns")
+        if self._to_unwind and hand is not None and agreed and snapshot.drives_off:
             hand(-self._to_unwind)  # nobody stands at a simulated spindle but we
             self._to_unwind = 0.0
         if self.ended is None and (ended := winding.wait(0.0)) is not None:
