@@ -116,8 +116,10 @@ class Questions:
             self._run.request(request)
 
     def _unwind(self, snapshot: Snapshot) -> None:
-        """At a simulated machine nobody turns the spindle back but we."""
-        if self._to_unwind and self._hand is not None and snapshot.hands and snapshot.drives_off:
+        """At a simulated machine nobody turns the spindle back but we, once the run has agreed to it."""
+        if self._hand is None or not self._to_unwind or not snapshot.drives_off or not snapshot.hands:
+            return
+        if snapshot.hands.startswith(f"unwind {self._to_unwind:g} turns"):
             self._hand(-self._to_unwind)
             self._to_unwind = 0.0
 

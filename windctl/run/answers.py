@@ -81,9 +81,7 @@ def _at_the_wire(
             words = "unwind"
             if request.turns is not None:
                 if not 0.0 < request.turns <= state.turns:
-                    return Answer(
-                        says=f"{request.turns:g} turns cannot be unwound of {state.turns:.2f} turns"
-                    )
+                    return Answer(says=f"{request.turns:g} turns cannot be taken off {state.turns:.2f} turns")
                 words = f"unwind {request.turns:g} turns, to turn {state.turns - request.turns:.2f}"
             return Answer(
                 (HandsAsked(at_ms, by, words),),
@@ -95,10 +93,6 @@ def _at_the_wire(
                 return Answer(says=_outside(turn, state.turns))
             return Answer((WireBroke(at_ms, turn, by),), f"noted: the wire broke at turn {turn:.2f}")
         case Splice() | NewWire():
-            if not state.drives_off:
-                return Answer(
-                    (HandsAsked(at_ms, by, "join the wire"),), f"{_OFF} Join the wire, then say so again."
-                )
             return _joined(request, state, at_ms)
         case CountIs():
             return _counted(request, state, at_ms)
@@ -112,6 +106,8 @@ def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
     turn = state.wire_ends_at if request.turn is None else request.turn
     if not 0.0 <= turn <= state.turns:
         return Answer(says=_outside(turn, state.turns))
+    if not state.drives_off:
+        return Answer((HandsAsked(at_ms, by, "join the wire"),), f"{_OFF} Then say it again.")
     facts: list[Event] = [HandsAsked(at_ms, by, "join the wire")]
     if state.broke is None and state.broke_near is not None:
         facts.append(WireBroke(at_ms, turn, by))
