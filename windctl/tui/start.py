@@ -14,6 +14,7 @@ from typing import Any
 
 from windctl.desk import places
 from windctl.desk.asked import Shared
+from windctl.desk.log import faults_of_threads
 from windctl.tui.app import WindctlApp, farewell
 from windctl.tui.session import Session
 
@@ -31,13 +32,15 @@ def start(shared: Shared) -> int:
     settings = _settings()
     app = WindctlApp(session, _table(settings, "keys"), light=settings.get("theme") == "light")
     stopped = threading.Event()
-    with _signals(session, app, stopped):
+    with faults_of_threads() as faults, _signals(session, app, stopped):
         try:
             code = app.run()
         finally:
             run = session.run
             outcome = session.leave("the interface ended")  # a screen that failed leaves nothing turning
             words = farewell(run, outcome) or app.farewell
+    if faults:
+        words = f"{words}\nThe log has the details: {faults[0]}".strip()
     if words:
         sys.stderr.write(f"{words}\n")
     return INTERRUPTED if stopped.is_set() else code or 0
