@@ -102,3 +102,41 @@ def test_closing_commits_what_is_left() -> None:
     journal.put([entry(1), entry(2)], urgent=False)
     journal.close()
     assert shelf.entries == [entry(1), entry(2)]
+
+
+def test_what_a_failed_commit_left_is_tried_once_more_on_closing() -> None:
+    shelf = Shelf()
+    shelf.error = BookError("locked")
+    journal = Journal(shelf, linger_s=0.0)
+    journal.wait(journal.put([entry(1)], urgent=True), 10)
+    assert journal.failure is shelf.error
+    journal.put([entry(2), entry(3)], urgent=True)  # why it was held
+    shelf.error = None
+    journal.close()
+    assert shelf.entries == [entry(1), entry(2), entry(3)]
+    assert journal.waiting == 0 and shelf.closed
+
+
+def test_a_thread_that_is_torn_down_is_a_failed_journal_not_a_silent_one() -> None:
+    shelf = Shelf()
+    shelf.error = SystemExit()  # type: ignore[assignment]  # no Exception: what ends a thread without a word
+    journal = Journal(shelf, linger_s=0.0)
+    journal.wait(journal.put([entry(1)], urgent=True), 10)
+    assert isinstance(journal.failure, BookError)
+    shelf.error = None
+    journal.close()
+    assert shelf.entries == [entry(1)]
+
+
+def test_time_in_which_this_process_stood_still_makes_no_fact_older() -> None:
+    shelf = Shelf()
+    shelf.gate.clear()
+    journal = Journal(shelf, linger_s=0.0)
+    journal.put([entry(1)], urgent=True)
+    assert shelf.began.wait(10)
+    journal.put([entry(2)], urgent=True)
+    before = journal.oldest_s()
+    journal.paused(100.0)
+    assert journal.oldest_s() <= before - 99.0
+    shelf.gate.set()
+    journal.close()
