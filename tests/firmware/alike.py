@@ -25,8 +25,9 @@ from windctl.run.wind import begin
 
 
 class TellsLate:
-    """A plant whose encoder and index are told a tick later, as a chip is: its steps of a millisecond begin when
-    the core has already been told of those before."""
+    """A plant that tells of encoder and index a tick later.
+
+    A chip's core is told of steps as they are begun, and of the counts they make when they are out."""
 
     def __init__(self, plant: Plant) -> None:
         self._plant = plant
@@ -85,7 +86,9 @@ def on_virtual(text: str, book: Path, seed: int = 1) -> Made:
     return _wind(text, book, bench)
 
 
-def on_chip(elf: Path, text: str, book: Path, seed: int = 1, see: Callable[[ChipBench], None] = lambda b: None) -> Made:
+def on_chip(
+    elf: Path, text: str, book: Path, seed: int = 1, see: Callable[[ChipBench], None] = lambda b: None
+) -> Made:
     """Wound on the emulated chip; `see` may look at it before the host does."""
     recipe, _ = order(text)
     bench = ChipBench(elf, Plant(plant_for(recipe, VIRTUAL), seed))

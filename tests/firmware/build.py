@@ -95,7 +95,10 @@ def chip_elf(variant: str = "full", more: str = "") -> Path:
     find("avr-gcc")
     folder = Path(tempfile.mkdtemp(prefix="windctl-chip-"))
     atexit.register(shutil.rmtree, folder, ignore_errors=True)
-    run("make", ["-C", ROOT / "firmware_protocol/ports/avr", f"VARIANT={variant}", f"BUILD={folder}", f"MORE={more}"])
+    run(
+        "make",
+        ["-C", ROOT / "firmware_protocol/ports/avr", f"VARIANT={variant}", f"BUILD={folder}", f"MORE={more}"],
+    )
     return next(folder.glob("*.elf"))
 
 

@@ -63,7 +63,7 @@ def _core() -> Any:
 
 
 def _mend(descriptors: Any) -> None:
-    """The emulator's table of the converter's clock divisors has one too few: the data sheet's is 2 2 4 .. 128."""
+    """The emulator's table of the converter's clock divisors lacks 64, which the data sheet has."""
     described = descriptors.PeripheralClassDescriptor
     if hasattr(described, "mended"):
         return
@@ -157,10 +157,11 @@ class Chip:
 
     def send(self, data: bytes) -> None:
         """Bytes onto the chip's receive line, one after the other at its own rate."""
-        request = self._core.ctlreq_data_t()
-        request.data = self._core.vardata_t(data)
-        ok, _ = self._device.ctlreq(self._uart, self._core.CTLREQ_USART_BYTES, request)
-        assert ok
+        for byte in data:
+            request = self._core.ctlreq_data_t()
+            request.data = self._core.vardata_t(bytes((byte,)))
+            ok, _ = self._device.ctlreq(self._uart, self._core.CTLREQ_USART_BYTES, request)
+            assert ok
 
     def on_byte(self, call: Callable[[int], None]) -> None:
         """Calls with each byte the chip has sent, when its stop bit is over."""

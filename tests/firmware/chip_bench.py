@@ -139,9 +139,7 @@ class ChipBench:
             self._show()
             if self.watch is not None:
                 self.watch(received)
-            if self._coming and (
-                len(self._coming) >= _ADAPTER_BYTES or chip.cycle - self._came_at > _PAUSE
-            ):
+            if self._coming and (len(self._coming) >= _ADAPTER_BYTES or chip.cycle - self._came_at > _PAUSE):
                 self._arrived += self._coming
                 self._coming.clear()
                 if until_byte:

@@ -43,7 +43,7 @@ def recorded() -> Recorded:
 
 @pytest.fixture(scope="session")
 def chip(tool: Callable[[str], str]) -> Callable[..., Path]:
-    """`chip("hand")` is the program of a variant for the emulated chip, where compiler and emulator are at hand."""
+    """`chip("hand")` is a variant's program, where compiler and emulator are at hand."""
     tool("avr-gcc")
     tool("make")
     if importlib.util.find_spec("yasimavr") is None:

@@ -54,10 +54,15 @@ def memory(elf: Path) -> tuple[int, int]:
     [
         ("full", m.Capability(0)),
         ("hand", m.Capability.GUIDE_STEP),
-        ("counter", m.Capability.GUIDE_STEP | m.Capability.DRIVE_STEP | m.Capability.INDEX | m.Capability.PEDAL),
+        (
+            "counter",
+            m.Capability.GUIDE_STEP | m.Capability.DRIVE_STEP | m.Capability.INDEX | m.Capability.PEDAL,
+        ),
     ],
 )
-def test_it_starts_with_everything_off_and_says_what_it_is(chip: Elf, variant: str, without: m.Capability) -> None:
+def test_it_starts_with_everything_off_and_says_what_it_is(
+    chip: Elf, variant: str, without: m.Capability
+) -> None:
     bench = bench_of(chip(variant))
     host = host_of(bench)
     identity = host.greet()

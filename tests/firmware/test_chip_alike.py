@@ -1,5 +1,4 @@
-"""The whole host winds the same coil on the virtual machine and on the real program: the same facts in the same
-order, tick by tick."""
+"""The whole host winds a coil on the virtual machine and on the real program: the same facts in each tick."""
 
 from __future__ import annotations
 
@@ -34,10 +33,13 @@ def check_alike(virtual: Made, chip: Made, turns: int) -> None:
     assert virtual.ended.left == chip.ended.left == "finished"
     told = [[without_what_is_measured(message) for _, message in made.heard] for made in (virtual, chip)]
     assert told[0] == told[1]
-    assert max(abs(one - other) for (one, _), (other, _) in zip(virtual.heard, chip.heard, strict=True)) <= APART_S
+    pairs = list(zip(virtual.heard, chip.heard, strict=True))
+    # board times are in the messages themselves, and equal; these are the host's, from the greeting on
+    greeted = next(at for at, (_, message) in enumerate(chip.heard) if isinstance(message, Identity))
+    assert max(abs(one - other) for (one, _), (other, _) in pairs[greeted:]) <= APART_S
     assert chip.bench.counts_shown == chip.bench.steps == turns * 400
     assert chip.bench.guide_steps == virtual.bench.plant.guide.motor
-    for (_, one), (_, other) in zip(virtual.heard, chip.heard, strict=True):
+    for (_, one), (_, other) in pairs:
         if isinstance(one, Reading) and isinstance(other, Reading):
             assert abs(one.value - other.value) <= 16 * CONVERTER_UNITS
         if isinstance(one, Status) and isinstance(other, Status):
@@ -57,7 +59,7 @@ def wind_both(chip: Elf, turns: int, folder: Path) -> None:
 
 
 def test_a_coil_is_the_same_on_the_chip(chip: Elf, tmp_path: Path) -> None:
-    wind_both(chip, 150, tmp_path)
+    wind_both(chip, 40, tmp_path)
 
 
 @pytest.mark.long

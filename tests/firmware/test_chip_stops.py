@@ -1,7 +1,8 @@
-"""What stops the chip: silence, inputs, and each trip, as the table of trips and the specification have it."""
+"""What stops the chip: silence, inputs and each trip, as the specification and its table of trips have it."""
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
@@ -14,6 +15,7 @@ from tests.firmware.chip_bench import ChipBench
 from tests.firmware.test_chip import CRUISE, bench_of, host_of
 from tests.machine.bare_host import SETUP, BareHost
 from windctl.protocol import messages as m
+from windctl.protocol.frames import encode
 
 Elf = Callable[..., Path]
 
@@ -39,38 +41,35 @@ def winding(chip: Elf, setup: m.Setup = SETUP, pace: int = PACE) -> tuple[ChipBe
 
 
 def test_silence_brakes_after_two_seconds_and_nothing_turns_afterwards(chip: Elf) -> None:
-    bench, host = winding(chip, pace=CRUISE)
-    host.lay(100)
-    edges: list[int] = []
-    bench.on_step = edges.append
+    setup = replace(SETUP, accel=CRUISE, decel=CRUISE)
+    bench, host = winding(chip, setup, pace=CRUISE)
     sent: list[int] = []
     send = host._send
 
     def watched(data: bytes) -> None:
-        if data == bytes(m_beat):
+        if data == beat:
             sent.append(bench.chip.cycle)
         send(data)
 
-    m_beat = _beat()
+    beat = encode(m.Beat.CODE, 0, b"")
     host._send = watched
     while not sent:
         host.pass_time(10)
     host.beating = False
+    edges: list[int] = []
+    bench.on_step = edges.append
     heard = sent[-1] / HZ + 0.001  # its six bytes take half a millisecond, and a tick takes them
     for _ in range(5):
         host.ask(m.Measure(100, 0))  # other traffic goes on
     while host.status is None or host.status.state == m.State.TURNING:
         host.pass_time(10)
-    host.pass_time(int(1000 * CRUISE / SETUP.decel) + 200)
-    cruise = HZ // CRUISE
-    slower = next(
-        edges[at] for at in range(8, len(edges) - 8) if edges[at + 8] - edges[at] > 8 * (cruise + 2)
-    )
+    host.pass_time(1000 * CRUISE // setup.decel + 200)
+    slower = begins_to_brake(edges)
     took = slower / HZ - heard
     after = sum(edge > slower for edge in edges)
     print(f"braking begins {took:.4f} s after the last Beat; stands {after} steps later")
     assert took == pytest.approx(2.0, abs=0.010)
-    assert after <= CRUISE**2 / (2 * SETUP.decel) + 0.01 * CRUISE
+    assert after <= CRUISE**2 / (2 * setup.decel) + 0.01 * CRUISE
     assert (host.status.state, host.status.cause) == (m.State.HELD, m.Cause.SILENCE)
     stood, counted = bench.steps, host.status.count
     assert counted == bench.counts_shown == stood
@@ -78,10 +77,17 @@ def test_silence_brakes_after_two_seconds_and_nothing_turns_afterwards(chip: Elf
     assert bench.steps == stood
 
 
-def _beat() -> bytes:
-    from windctl.protocol.frames import encode
+def begins_to_brake(edges: list[int]) -> float:
+    """The cycle at which steps begin to stay behind a steady pace.
 
-    return encode(m.Beat.CODE, 0, b"")
+    The first that is clearly late tells, less the time that constant braking takes to make it so: s = a * t^2 / 2."""
+    gap = HZ // CRUISE
+    late = 400  # cycles: more than interrupts can delay a step
+    steady = len(edges) // 4  # no step before has been late
+    at = next(
+        at for at in range(steady, len(edges)) if edges[at] - edges[steady] > gap * (at - steady) + late
+    )
+    return edges[at] - HZ * math.sqrt(2 * (late / gap) / CRUISE)
 
 
 def _slip(bench: ChipBench) -> None:
@@ -102,7 +108,13 @@ def _back(bench: ChipBench) -> None:
 
 
 def _fast(bench: ChipBench) -> None:
-    bench.plant.position += 390
+    until = bench.ticks + 64
+
+    def driven_from_outside(_received: bytes) -> None:
+        if bench.ticks < until:
+            bench.plant.position += 8
+
+    bench.watch = driven_from_outside
 
 
 LOOSE = replace(SETUP, slip_counts=5000)  # so that it is not slip that stops it first
@@ -121,7 +133,9 @@ CASES: list[tuple[str, Callable[[ChipBench], None], m.Setup, m.Trip, int]] = [
 ]
 
 
-@pytest.mark.parametrize(("happens", "setup", "trip", "within"), [c[1:] for c in CASES], ids=[c[0] for c in CASES])
+@pytest.mark.parametrize(
+    ("happens", "setup", "trip", "within"), [c[1:] for c in CASES], ids=[c[0] for c in CASES]
+)
 def test_a_trip_ends_as_the_table_says(
     chip: Elf, happens: Callable[[ChipBench], None], setup: m.Setup, trip: m.Trip, within: int
 ) -> None:
@@ -132,7 +146,9 @@ def test_a_trip_ends_as_the_table_says(
     tripped: list[m.Notice] = []
     while not tripped:
         tripped = [
-            came for came in host.pass_time(10) if isinstance(came, m.Notice) and came.kind == m.NoticeKind.TRIPPED
+            came
+            for came in host.pass_time(10)
+            if isinstance(came, m.Notice) and came.kind == m.NoticeKind.TRIPPED
         ]
         assert bench.ticks < before + within + 100, "it did not trip"
     notice = tripped[0]
