@@ -80,7 +80,9 @@ def test_silence_brakes_after_two_seconds_and_nothing_turns_afterwards(chip: Elf
 def begins_to_brake(edges: list[int]) -> float:
     """The cycle at which steps begin to stay behind a steady pace.
 
-    The first that is clearly late tells, less the time that constant braking takes to make it so: s = a * t^2 / 2."""
+    The first that is clearly late tells, less the time that constant braking takes to make it so:
+    s = a * t^2 / 2.
+    """
     gap = HZ // CRUISE
     late = 400  # cycles: more than interrupts can delay a step
     steady = len(edges) // 4  # no step before has been late
