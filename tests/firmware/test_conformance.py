@@ -1,6 +1,6 @@
 """The conformance kit against the boards that are here: each holds every clause, and a broken one does not.
 
-What the clauses are is firmware_protocol/README.md, section by section; that page is the outside reference here.
+What the clauses are is firmware_protocol/README.md, section by section: the outside reference here.
 """
 
 from __future__ import annotations
