@@ -289,7 +289,8 @@ def test_a_miscount_is_put_right_and_the_guide_goes_where_the_program_has_it(tmp
     ids=["guard", "stop", "belt"],
 )
 def test_a_cause_that_is_put_right_is_cleared_and_the_coil_goes_on(tmp_path: Path, faults: Faults) -> None:
-    coil = wound(tmp_path, CLEAR, GO, faults=faults)
+    put_right = Step(lambda seen, bench: seen.asks == "clear" and bench.ticks > 4510, Clear(ME))
+    coil = wound(tmp_path, put_right, GO, faults=faults)
     came_right(coil, TURNS - 0.1, TURNS + 0.1)
     assert len(facts(tmp_path, Tripped)) == 1
     held = [event.cause for event in facts(tmp_path, Held) if isinstance(event, Held)]

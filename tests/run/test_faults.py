@@ -11,10 +11,18 @@ from concurrent.futures import Future, ThreadPoolExecutor
 
 import pytest
 
-from tests.run.faults import FAULTS, MENDED, TOGETHER, Fault, Seen, expected, play_out
-from tests.run.winding import ROOT
+pytest.importorskip("pty", reason="platform: pseudo-terminals and these signals are of POSIX")
 
-pytest.importorskip("pty", reason="platform: pseudo-terminals are of POSIX")
+from tests.run.faults import (
+    FAULTS,
+    MENDED,
+    TOGETHER,
+    Fault,
+    Seen,
+    expected,
+    play_out,
+)
+from tests.run.winding import ROOT
 
 Playing = dict[str, "Future[Seen]"]
 

@@ -48,6 +48,7 @@ __all__ = ["Clear", "End", "Ended", "Go", "Hold", "Note", "Request", "Runner"]
 WAIT_S = 0.010  # the longest the runner listens before it looks up again
 LAST_HOLD_S = 5.0  # how long a failing run tries to see the spindle stand
 DURABLE_S = 30.0  # how long a simulated run waits for the disk
+ASKED_S = 0.005  # a simulated machine is in no hurry while a person is asked: ten times the real pace
 PAUSE_S = 1.5  # two rounds so far apart: this process did not run, and the board may have stopped by itself
 
 
@@ -187,11 +188,13 @@ class Runner:
             self._answer_with(declined(event.refused) or "")
 
     def _meet_requests(self) -> None:
+        person_is_asked = self._port.simulated and self._decision.asks is not None
         while True:
             try:
-                request = self._requests.get_nowait()
+                request = self._requests.get(timeout=ASKED_S if person_is_asked else 0.0)
             except queue.Empty:
                 return
+            person_is_asked = False
             if isinstance(request, Hold) and request.leave:
                 self._leaving = request
             met = answer(
