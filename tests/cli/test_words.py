@@ -15,7 +15,9 @@ from windctl.run.requests import (
     Hold,
     NewWire,
     Note,
+    Read,
     Request,
+    Skip,
     Splice,
     Unwind,
 )
@@ -41,6 +43,11 @@ from windctl.run.requests import (
         ("unwind 12", Unwind(BY, 12.0)),
         ("turn 800", CountIs(BY, 800.0)),
         ("note Felt is New", Note(BY, "Felt is New")),
+        ("read 5930", Read(BY, 5930.0)),
+        ("read 5,93k 22,5", Read(BY, 5930.0, 22.5)),
+        ("Read 5.93 k 22.5 °C", Read(BY, 5930.0, 22.5)),
+        ("read 812.4 ohm -3", Read(BY, 812.4, -3.0)),
+        ("skip", Skip(BY)),
     ],
 )
 def test_a_line_means_one_request(line: str, meant: Request) -> None:
@@ -49,7 +56,22 @@ def test_a_line_means_one_request(line: str, meant: Request) -> None:
 
 @pytest.mark.parametrize(
     "line",
-    ["", "g", "gone", "go now", "yes", "splice here", "turn", "turn back", "turn -3", "note", "unwind all"],
+    [
+        *(
+            "",
+            "g",
+            "gone",
+            "go now",
+            "yes",
+            "splice here",
+            "turn",
+            "turn back",
+            "turn -3",
+            "note",
+            "unwind all",
+        ),
+        *("read", "read 0", "read -5k", "read 5.93k warm", "read nan", "read 5M", "skip it"),
+    ],
 )
 def test_what_is_no_word_or_half_of_one_asks_for_nothing(line: str) -> None:
     assert request_of(line) is None
@@ -66,5 +88,7 @@ def test_help_has_every_word_and_every_word_but_help_means_something() -> None:
         assert word.usage in text
         assert word.help in text
         filled = word.usage.replace("[TURN]", "").replace("[NAME]", "").replace("[TURNS]", "")
-        filled = filled.replace("TURN", "5").replace("TEXT", "x")
+        filled = (
+            filled.replace("TURN", "5").replace("TEXT", "x").replace("[CELSIUS]", "").replace("OHM", "5k")
+        )
         assert (request_of(filled) is None) == (word.name == "help"), filled

@@ -147,6 +147,9 @@ _MORE = "help lists what else can be said; Ctrl-C leaves the coil open."
 _ANSWERS = {
     "go": f"Type go and Enter to go on, or end and Enter to end the coil here; {_MORE}",
     "clear": f"Once that is put right, type clear and Enter; nothing turns by that. {_MORE}",
+    "reading": "Bare the wire at the guide, never on the coil, and touch the contact; or measure by hand and "
+    "type read, what the meter shows and, where no thermometer is fitted, how warm it is.\n"
+    f"skip and Enter passes the check over; {_MORE}",
     "place": f"Count the turns, then type turn, their number and Enter. {_MORE}",
 }
 

@@ -126,8 +126,6 @@ def _before(shared: Shared, plan: Plan, profile: MachineProfile) -> None:
     """What should be known before the first turn."""
     for warning in plan.warnings:
         present.message(f"caution: {warning}")
-    if profile.readings.mode == "checks":
-        present.message("caution: the run does not stop for checks; it stops where the forecast says")
     if not shared.quiet:
         goal = f"{present.turns(plan.turns)}, {present.ohm(plan.dcr_20c_ohm)} at 20 °C"
         present.message(f"{plan.recipe_name}: {goal}, {present.duration(plan.duration_s)} of winding")

@@ -16,12 +16,17 @@ from windctl.run.requests import (
     Hold,
     NewWire,
     Note,
+    Read,
     Request,
+    Skip,
     Splice,
     Unwind,
 )
 
 BY = "operator"
+_READING = re.compile(
+    r"(\d+(?:[.,]\d*)?|[.,]\d+) ?(k?)(?: ?ohm)?(?: (-?\d+(?:[.,]\d*)?)(?: ?°?c)?)?", re.IGNORECASE
+)
 _NUMBER = re.compile(r"\d+(?:[.,]\d*)?|[.,]\d+")
 
 
@@ -50,6 +55,10 @@ WORDS = (
     Word("new wire [TURN] [NAME]", "another spool is joined on"),
     Word("unwind [TURNS]", "drives off; then turn the spindle back by hand, and the count follows"),
     Word("turn TURN", "the count is wrong: so many turns lie on the bobbin"),
+    Word(
+        "read OHM [CELSIUS]", "the coil as the meter shows it, such as 5.93k 22.5, and how warm it is there"
+    ),
+    Word("skip", "pass over the check that is asked for"),
     Word("note TEXT", "write something into the record"),
     Word("end", "end the coil here"),
     Word("help", "this list"),
@@ -100,6 +109,16 @@ def _turn(rest: str) -> Request | None:
     return None if turn is None else CountIs(BY, turn)
 
 
+def _read(rest: str) -> Request | None:
+    """Resistance, then temperature; a k may stand behind a blank."""
+    match = _READING.fullmatch(rest)
+    if match is None:
+        return None
+    ohm = float(match[1].replace(",", ".")) * (1000.0 if match[2] else 1.0)
+    celsius = None if match[3] is None else float(match[3].replace(",", "."))
+    return Read(BY, ohm, celsius) if ohm > 0 else None
+
+
 def _note(rest: str) -> Request | None:
     return Note(BY, rest) if rest else None
 
@@ -114,6 +133,8 @@ _MEANS: dict[str, Callable[[str], Request | None]] = {
     "new wire": _new_wire,
     "unwind": _at_a_turn(Unwind),
     "turn": _turn,
+    "read": _read,
+    "skip": _alone(Skip(BY)),
     "note": _note,
     "end": _alone(End(BY, "ended by the operator")),
 }

@@ -56,7 +56,7 @@ def stop_advice(
     a little short.
     """
     wanted = turn_for(estimate, target_ohm)
-    short_sd = _to_be_learnt(estimate, wanted.turn) if settles else 0.0
+    short_sd = to_be_learnt(estimate, wanted.turn) if settles else 0.0
     least, most = ceil(max(min_turns, count_turn)), floor(max_turns)
     aim = wanted.turn - SHORT_BY * short_sd
     turn = min(max(floor(aim + 0.5), least), most)
@@ -74,7 +74,7 @@ def missing_turns(estimate: Estimate, turn: float, target_ohm: float) -> Missing
     return MissingTurns(turns_between(belief, target_ohm), wanted.sd)
 
 
-def _to_be_learnt(estimate: Estimate, turn: float) -> float:
+def to_be_learnt(estimate: Estimate, turn: float) -> float:
     """Sd, in turns, of the move that one settled reading at `turn` is going to make."""
     belief = moved(estimate.belief, turn, estimate.walk)
     prior = estimate.prior

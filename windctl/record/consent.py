@@ -21,6 +21,8 @@ from windctl.protocol.wants import Permission
 from windctl.record.events import Event, GoGiven
 from windctl.record.state import Fit, State
 
+PATIENCE_TICKS = 30_000  # for a simulated contact, before somebody is asked
+
 # Commands whose refusal a person should hear of: they had agreed to something that then did not happen.
 _TOLD = (Arm.CODE, Go.CODE, GuideTo.CODE, SetDatum.CODE, ClearTrip.CODE)
 
@@ -57,8 +59,9 @@ def _pedal_fitted(state: State) -> bool:
 
 
 def asks(state: State) -> str | None:
-    """What only a person can give now: "go", "clear", "place" or nothing.
+    """What only a person can give now: "go", "clear", "reading", "place" or nothing.
 
+    "reading": the coil stands for a check, and hands may go in.
     "place": the board has lost the count or the guide's place, and a person has to say at which turn the coil
     stands.
     """
@@ -70,6 +73,8 @@ def asks(state: State) -> str | None:
     if status.state == BoardState.TRIPPED:
         return None if state.clear == permission else "clear"
     at_stop = state.stop_point is not None and state.count >= state.stop_point
+    if state.check is not None:
+        return "reading" if state.drives_off and not _contact_may_come(state) else None
     if at_stop and state.held is not None and state.fit is not Fit.CORRECTED:
         return None  # settling
     if state.hands is not None and status.state != BoardState.DRIVES_OFF:
@@ -85,6 +90,14 @@ def asks(state: State) -> str | None:
     if state.fit is Fit.SAME and status.trust != Trust.COUNT | Trust.GUIDE:
         return "place"
     return "go"
+
+
+def _contact_may_come(state: State) -> bool:
+    """At a simulated machine the contact is put to the wire as soon as the drives are off."""
+    identity, status, held = state.identity, state.status, state.held
+    if identity is None or status is None or held is None or not identity.capabilities & Capability.VIRTUAL:
+        return False
+    return bool(identity.capabilities & Capability.CONTACT) and status.ticks - held.ticks < PATIENCE_TICKS
 
 
 def _consented(state: State) -> bool:

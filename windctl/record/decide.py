@@ -7,6 +7,7 @@ give. `decide` is called again after its events were folded, until it has none l
 noticing   what the board's words amount to
 stopping   where to stop
 ending     how the coil ends
+checking   a check of its resistance while it stands
 consent    who has consented to what, and what is asked for
 wanting    what the board should be
 """
@@ -29,7 +30,7 @@ from windctl.record.wanting import wanted
 class Decision:
     """`events` to fold first; then `wants` for the board.
 
-    `asks` is "go", "clear", "place", "turn" or None: what only a person can give.
+    `asks` is "go", "clear", "reading", "place", "turn" or None: what only a person can give.
     `blocked` says in words why the coil cannot go on by itself, where it cannot.
     """
 

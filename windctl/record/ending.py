@@ -8,6 +8,7 @@ from windctl.forecast.finish import finish_at, so_far
 from windctl.forecast.stop import missing_turns
 from windctl.forecast.verdict import verdict
 from windctl.protocol.messages import Trip
+from windctl.record.checking import checking, to_be_read
 from windctl.record.events import CoilFinished, Event, StopPointChosen
 from windctl.record.state import Fit, State
 
@@ -33,9 +34,11 @@ def ending(state: State, at_ms: int) -> tuple[Event, ...]:
             return ()
     elif state.held is None or (started.readings_mode == "live" and not _settled(state)):
         return ()
+    if to_be_read(state):
+        return checking(state, at_ms)
     if started.target.kind == "turns":
         return (_finished(state, at_ms, "finished", "the turns asked for are wound"),)
-    if started.readings_mode != "live" or state.settled_readings == 0:
+    if state.readings_used == 0 or (started.readings_mode == "live" and state.settled_readings == 0):
         return (
             _finished(
                 state, at_ms, "finished", "stopped where the forecast meets the target; no settled reading"

@@ -283,6 +283,44 @@ class WireChanged:
 
 
 @dataclass(frozen=True, slots=True)
+class CheckAsked:
+    """The coil stands for its resistance to be read: the wire is bared at the guide, and touched.
+
+    The standard deviations are of the resistance at the target, ohm at 20 degrees C, without a reading here
+    and with one.
+    """
+
+    kind: ClassVar[str] = "check_asked"
+    at_ms: int
+    turn: float
+    without_ohm: float
+    with_ohm: float
+
+
+@dataclass(frozen=True, slots=True)
+class ReadingTyped:
+    """Somebody measured the coil by hand after `turn` turns: `ohm` as the meter showed it, at `celsius`."""
+
+    kind: ClassVar[str] = "reading_typed"
+    at_ms: int
+    turn: float
+    ohm: float
+    celsius: float
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class CheckTaken:
+    """The check is over. `read`: a reading was taken, by the contact or by hand; else it was passed over."""
+
+    kind: ClassVar[str] = "check_taken"
+    at_ms: int
+    turn: float
+    read: bool
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
 class Unwound:
     """The spindle was turned back by hand with the drives off, from count `before` to `count`."""
 
@@ -344,6 +382,9 @@ Event = (
     | WireBroke
     | Spliced
     | WireChanged
+    | CheckAsked
+    | ReadingTyped
+    | CheckTaken
     | Unwound
     | NoteMade
     | CoilFinished
@@ -373,6 +414,9 @@ KINDS: dict[str, type[Event]] = {
         WireBroke,
         Spliced,
         WireChanged,
+        CheckAsked,
+        ReadingTyped,
+        CheckTaken,
         Unwound,
         NoteMade,
         CoilFinished,

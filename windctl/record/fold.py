@@ -31,6 +31,8 @@ from windctl.protocol.wants import Permission
 from windctl.record.events import (
     AlarmRaised,
     BoardGreeted,
+    CheckAsked,
+    CheckTaken,
     ClearGiven,
     CoilFinished,
     CoilStarted,
@@ -45,6 +47,7 @@ from windctl.record.events import (
     LinkLost,
     NoteMade,
     ReadingTaken,
+    ReadingTyped,
     Resumed,
     Spliced,
     StatusHeard,
@@ -129,7 +132,7 @@ def fold(state: State, event: Event) -> State:
         case WentOn():
             return _went_on(state)
         case Held():
-            return replace(state, turning=False, held=event, settled_readings=0)
+            return replace(state, turning=False, held=event, settled_readings=0, typed=False)
         case Tripped():
             return _tripped(state, event)
         case LinkLost():
@@ -144,6 +147,13 @@ def fold(state: State, event: Event) -> State:
             return _joined(state, None if state.estimate is None else spliced(state.estimate, event.turn))
         case WireChanged():
             return _joined(state, None if state.estimate is None else new_wire(state.estimate, event.turn))
+        case CheckAsked():
+            return replace(state, check=event)
+        case ReadingTyped():
+            return _typed(state, event)
+        case CheckTaken():
+            checks = state.checks + (1 if event.read else 0)
+            return replace(state, check=None, checks=checks, checked_count=state.count)
         case Unwound():
             held = None if state.held is None else replace(state.held, count=event.count)
             return replace(state, misplaced=_guided(state), held=held)
@@ -182,6 +192,8 @@ def _went_on(state: State) -> State:
         misplaced=False,
         broke_near=None,
         settled_readings=0,
+        check=None,
+        typed=False,
     )
     return moving if state.status is None else _status(moving, state.status)
 
@@ -266,8 +278,12 @@ def _reading(state: State, event: ReadingTaken) -> State:
         return state
     if raw.count <= 0:
         return state
-    if state.hands is not None or state.broke is not None or state.broke_near is not None:
-        return state  # somebody is at the wire, or it is broken
+    if state.broke is not None or state.broke_near is not None:
+        return state  # the wire is broken
+    if state.hands is not None and state.check is None:
+        return state  # somebody is at the wire
+    if state.check is not None and raw.flags & ReadingFlag.OPEN:
+        return state  # nobody touches the contact yet
     resting = not raw.flags & ReadingFlag.TURNING
     reading = CoilReading(
         turn=raw.count / state.counts_per_turn,
@@ -290,6 +306,32 @@ def _reading(state: State, event: ReadingTaken) -> State:
         readings_used=state.readings_used + used,
         readings_gated=state.readings_gated + (not used),
         settled_readings=state.settled_readings + (1 if settled and used else 0),
+    )
+
+
+def _typed(state: State, event: ReadingTyped) -> State:
+    """A reading by hand is a settled one. Where the wire lies bare anyway, it saves a check."""
+    if state.estimate is None:
+        return state
+    status = state.status
+    reading = CoilReading(
+        turn=event.turn,
+        ohm=event.ohm,
+        celsius=event.celsius,
+        resting=True,
+        seconds=None if status is None else status.ticks / 1000.0,
+    )
+    estimate, used = update(state.estimate, reading)
+    return replace(
+        state,
+        estimate=estimate,
+        reading=reading,
+        fresh_reading=used,
+        readings_used=state.readings_used + used,
+        readings_gated=state.readings_gated + (not used),
+        settled_readings=state.settled_readings + used,
+        typed=state.typed or used,
+        checks=state.checks + (1 if used and state.check is None else 0),
     )
 
 

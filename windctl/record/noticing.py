@@ -26,6 +26,8 @@ def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
         return (Held(at_ms, status.ticks, status.count, status.cause),)
     if state.read_last and state.estimate is not None:
         found = find_alarm(state.estimate)
+        if found is not None and found.kind in NO_USE_GOING_ON and state.check is not None:
+            found = None  # the contact is being put to the wire by hand
         if found is not None and (state.alarm is None or state.alarm.alarm != found.kind):
             raised = AlarmRaised(at_ms, state.turns, found.kind, found.text, found.odds or 0.0)
             if found.kind in NO_USE_GOING_ON and state.turning and state.hold is None:

@@ -14,6 +14,7 @@ from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
 from windctl.record.events import (
     AlarmRaised,
+    CheckAsked,
     CoilFinished,
     CoilStarted,
     CountCorrected,
@@ -70,6 +71,10 @@ class State:
     broke: WireBroke | None = None  # until the wire is joined
     broke_near: float | None = None  # turns: where the wire broke, if that is why the board tripped
     splices: int = 0
+    check: CheckAsked | None = None  # until it is taken
+    typed: bool = False  # a reading typed since the spindle came to rest is of use
+    checks: int = 0  # readings for which the coil was stopped, or the wire lay bare anyway
+    checked_count: int | None = None  # where the last check was taken, or passed over
     refused: Refused | None = None  # the last refusal since the last consent
     link_lost: LinkLost | None = None
     estimate: Estimate | None = None

@@ -8,6 +8,11 @@ from windctl.record.events import Event, StopPointChosen
 from windctl.record.state import State
 
 
+def _read_on_the_way(state: State) -> bool:
+    """A reading by hand where the coil stands for another reason than a check."""
+    return state.typed and state.check is None and state.checked_count != state.count
+
+
 def stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
     """Another stop point, if there is a better one than the present."""
     started = state.started
@@ -20,7 +25,8 @@ def stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
             return ()
         finish = finish_at(state.estimate, target.value)
         return (StopPointChosen(at_ms, count, "the turns asked for", finish.ohm, finish.sd),)
-    if state.stop_point is not None and not (state.turning and state.fresh_reading and state.top_ups == 0):
+    learnt = state.fresh_reading and (state.turning or _read_on_the_way(state))
+    if state.stop_point is not None and not (learnt and state.top_ups == 0):
         return ()  # nothing new to learn; and the last missing turns are counted out, not forecast anew
     chosen = None if state.stop_point is None else state.stop_point // cpt
     advice = stop_advice(
@@ -30,7 +36,7 @@ def stop_point(state: State, at_ms: int) -> tuple[Event, ...]:
         target.min_turns,
         target.max_turns,
         chosen,
-        settles=started.readings_mode == "live",
+        settles=started.readings_mode != "none",
     )
     if advice.turn == chosen:
         return ()

@@ -56,7 +56,8 @@ def wanted(state: State) -> Wants:
 
 def _sampling(state: State) -> Sampling | None:
     assert state.started is not None
-    return Sampling(WINDOW_TICKS, EVERY_TICKS) if state.started.readings_mode == "live" else None
+    reads = state.started.readings_mode == "live" or state.check is not None
+    return Sampling(WINDOW_TICKS, EVERY_TICKS) if reads else None
 
 
 def _place(state: State) -> Place:

@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
 from windctl.record.decide import Decision
 from windctl.record.events import (
+    CheckTaken,
     ClearGiven,
     CountCorrected,
     EndRequested,
@@ -29,21 +28,17 @@ from windctl.run.requests import (
     Hold,
     NewWire,
     Note,
+    Read,
     Request,
+    Skip,
     Splice,
     Unwind,
 )
+from windctl.run.said import OFF, Answer
+from windctl.run.typed_readings import typed
 
 # What a person may be asked for while the coil stands and hands may go in.
-_AT_REST = ("go", "clear", "place")
-
-
-@dataclass(frozen=True, slots=True)
-class Answer:
-    """`facts` to record, none where the request cannot be met; `says` is for whoever asked ("": nothing)."""
-
-    facts: tuple[Event, ...] = ()
-    says: str = ""
+_AT_REST = ("go", "clear", "place", "reading")
 
 
 def answer(request: Request, state: State, decision: Decision, at_ms: int, *, leaving: bool) -> Answer:
@@ -71,12 +66,12 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
 
 
 def _at_the_wire(
-    request: DrivesOff | Broke | Splice | NewWire | CountIs | Unwind, state: State, at_ms: int
+    request: DrivesOff | Broke | Splice | NewWire | CountIs | Unwind | Read | Skip, state: State, at_ms: int
 ) -> Answer:
     by = request.by
     match request:
         case DrivesOff():
-            return Answer((HandsAsked(at_ms, by, request.reason),), _OFF)
+            return Answer((HandsAsked(at_ms, by, request.reason),), OFF)
         case Unwind():
             words = "unwind"
             if request.turns is not None:
@@ -85,7 +80,7 @@ def _at_the_wire(
                 words = f"unwind {request.turns:g} turns, to turn {state.turns - request.turns:.2f}"
             return Answer(
                 (HandsAsked(at_ms, by, words),),
-                f"{_OFF} Turn the spindle back by hand: the count follows. Type go when done.",
+                f"{OFF} Turn the spindle back by hand: the count follows. Type go when done.",
             )
         case Broke():
             turn = state.wire_ends_at if request.turn is None else request.turn
@@ -96,9 +91,12 @@ def _at_the_wire(
             return _joined(request, state, at_ms)
         case CountIs():
             return _counted(request, state, at_ms)
-
-
-_OFF = "The drives go off: hands may go in when it says so."
+        case Read():
+            return typed(request, state, at_ms)
+        case Skip():
+            if state.check is None:
+                return Answer(says="there is no check to pass over")
+            return Answer((CheckTaken(at_ms, state.turns, False, by),), "the check is passed over")
 
 
 def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
@@ -107,7 +105,7 @@ def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
     if not 0.0 <= turn <= state.turns:
         return Answer(says=_outside(turn, state.turns))
     if not state.drives_off:
-        return Answer((HandsAsked(at_ms, by, "join the wire"),), f"{_OFF} Then say it again.")
+        return Answer((HandsAsked(at_ms, by, "join the wire"),), f"{OFF} Then say it again.")
     facts: list[Event] = [HandsAsked(at_ms, by, "join the wire")]
     if state.broke is None and state.broke_near is not None:
         facts.append(WireBroke(at_ms, turn, by))
@@ -127,7 +125,7 @@ def _counted(request: CountIs, state: State, at_ms: int) -> Answer:
         return Answer(says=_outside(request.turn, most))
     if not state.drives_off:
         return Answer(
-            (HandsAsked(at_ms, request.by, "count the turns"),), f"{_OFF} Count the turns, then say so again."
+            (HandsAsked(at_ms, request.by, "count the turns"),), f"{OFF} Count the turns, then say so again."
         )
     return Answer(
         (

@@ -93,4 +93,22 @@ class Unwind:
     turns: float | None = None
 
 
-Request = Go | Hold | End | Clear | Note | DrivesOff | Broke | Splice | NewWire | CountIs | Unwind
+@dataclass(frozen=True, slots=True)
+class Read:
+    """The coil was measured by hand: `ohm` as the meter shows it; `celsius` None: what the board's shows."""
+
+    by: str
+    ohm: float
+    celsius: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Skip:
+    """A check is passed over."""
+
+    by: str
+
+
+Request = (
+    Go | Hold | End | Clear | Note | DrivesOff | Broke | Splice | NewWire | CountIs | Unwind | Read | Skip
+)

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from windctl.forecast.finish import finish_at, so_far
+from windctl.forecast.finish import Z95, finish_at, so_far
 from windctl.protocol.messages import Capability, Cause
 from windctl.protocol.messages import State as BoardState
 from windctl.record.decide import Decision
@@ -144,6 +144,8 @@ def _says(state: State, decision: Decision) -> str:
 def _says_held(state: State, decision: Decision) -> str:
     if decision.asks == "place":
         return "the board no longer knows where the coil stands"
+    if state.check is not None:
+        return _says_check(state)
     if state.hands is not None:
         off = "drives off, hands may go in" if state.drives_off else "switching the drives off"
         return f"{off}: {state.hands.reason}"
@@ -154,6 +156,20 @@ def _says_held(state: State, decision: Decision) -> str:
     if state.held is None:
         return "held"
     return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
+
+
+def _says_check(state: State) -> str:
+    """The check that is asked for, and what it gains."""
+    check = state.check
+    assert check is not None
+    off = "drives off, hands may go in" if state.drives_off else "switching the drives off"
+    without, with_it = (_brief(Z95 * sd) for sd in (check.without_ohm, check.with_ohm))
+    gain = f"the finish is known to ±{without} ohm, with a reading to ±{with_it} ohm"
+    return f"{off}: read the resistance at turn {check.turn:.0f}; {gain}"
+
+
+def _brief(ohm: float) -> str:
+    return f"{ohm:.0f}" if ohm >= 10 else f"{ohm:.2g}"
 
 
 def _guide_place(state: State, steps_per_mm: float) -> float | None:

@@ -7,6 +7,8 @@ from windctl.protocol.messages import Cause, Refusal, Trip
 from windctl.record.events import (
     AlarmRaised,
     BoardGreeted,
+    CheckAsked,
+    CheckTaken,
     ClearGiven,
     CoilFinished,
     CoilStarted,
@@ -20,6 +22,7 @@ from windctl.record.events import (
     HoldRequested,
     LinkLost,
     NoteMade,
+    ReadingTyped,
     Resumed,
     Spliced,
     StopPointChosen,
@@ -81,6 +84,15 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
         case WireChanged():
             name = f" ({event.spool})" if event.spool else ""
             return f"another spool{name} from turn {grouped(event.turn, 1)} on"
+        case CheckAsked():
+            gain = f"±{1.96 * event.without_ohm:.0f} to ±{1.96 * event.with_ohm:.0f} Ω"
+            return f"to be read at turn {grouped(event.turn)}: the finish from {gain}"
+        case ReadingTyped():
+            read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C".replace("kohm", "kΩ").replace("ohm", "Ω")
+            return f"read at turn {grouped(event.turn)} by {_by(event.by)}: {read}"
+        case CheckTaken():
+            how = f"read by {'the contact' if event.by == 'contact' else _by(event.by)}"
+            return f"check at turn {grouped(event.turn)}: {how if event.read else 'passed over'}"
         case Unwound():
             return f"unwound from turn {turn(event.before)} to {turn(event.count)}"
         case AlarmRaised():

@@ -120,6 +120,8 @@ def next_of(snapshot: Snapshot) -> Next:
         return Next(_sentence(snapshot.says), "", "put it right, then press C")
     if snapshot.asks == "place":
         return Next(_sentence(snapshot.says), "", "count the turns, T: turn and their number")
+    if snapshot.asks == "reading":
+        return Next(_sentence(snapshot.says), "", "bare the wire, touch the contact; or T: read 5.93k")
     if snapshot.phase == "stopping":
         return Next("comes to rest")
     return Next(_sentence(snapshot.says))
