@@ -26,13 +26,17 @@ def cost(terminal: Terminal, seconds: float) -> tuple[float, float]:
 def run() -> None:
     """Print the figures."""
     for size in ((80, 24), (120, 40)):
-        with tempfile.TemporaryDirectory() as folder:
-            with winding(Path(folder), size=size, status_per_s=20.0) as (terminal, _):
-                cpu, rate = cost(terminal, SECONDS)
-                memory = terminal.memory_mb()
-        print(f"  {size[0]}x{size[1]}: {cpu:.1f} % of a core, {rate:.1f} kB/s, {memory:.0f} MB", flush=True)
-    with tempfile.TemporaryDirectory() as folder:
-        with winding(Path(folder), status_per_s=20.0, bytes_per_s=4_000.0) as (terminal, _):
-            time.sleep(20.0)  # until it has found out
+        with (
+            tempfile.TemporaryDirectory() as folder,
+            winding(Path(folder), size=size, status_per_s=20.0) as (terminal, _),
+        ):
             cpu, rate = cost(terminal, SECONDS)
+            memory = terminal.memory_mb()
+        print(f"  {size[0]}x{size[1]}: {cpu:.1f} % of a core, {rate:.1f} kB/s, {memory:.0f} MB", flush=True)
+    with (
+        tempfile.TemporaryDirectory() as folder,
+        winding(Path(folder), status_per_s=20.0, bytes_per_s=4_000.0) as (terminal, _),
+    ):
+        time.sleep(20.0)  # until it has found out
+        cpu, rate = cost(terminal, SECONDS)
     print(f"  80x24 over a line of 4 kB/s: {cpu:.1f} % of a core, {rate:.1f} kB/s", flush=True)

@@ -173,7 +173,7 @@ TRIPS: Final[dict[int, TripRule]] = {
         1,
         True,
         True,
-        "issued steps and counted position came to differ by more than Setup.slip_counts (belt, stall, lost counts)",
+        "issued and counted steps came to differ by more than Setup.slip_counts (belt, stall, lost counts)",
         "check belt and encoder, then ClearTrip",
     ),
     5: TripRule(
