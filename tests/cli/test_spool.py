@@ -184,3 +184,18 @@ def test_a_slip_by_a_thousand_is_not_kept(book: str, recipe: str, capsys: Printe
         capsys, "coils", "measure", "1", "--ohm", "0.3", "--celsius", "20", "--no-input", "--book", book
     )
     assert "thousand times off" in words
+
+
+def test_a_cold_reading_is_judged(book: str, tmp_path: Path, capsys: Printed) -> None:
+    """By its whole interval: gain 0.3 %, thermometer 0.5 K at 0.393 % each, noise 0.1 %, leads 0.3 and floor
+    0.2 ohm, in quadrature times 1.96: 0.83 % of 200 ohm."""
+    recipe = str(recipes.to_resistance(tmp_path))  # 200 ohm, 2 %
+    wind(capsys, recipe, book)
+    measure = ("coils", "measure", "1", "--machine", "virtual", "--celsius", "20", "--book", book)
+    for ohm, verdict in (("200.5", "within"), ("203.5", "not judged"), ("207", "outside")):
+        kept = asked(capsys, *measure, "--ohm", ohm)
+        assert kept["verdict"] == verdict
+        assert kept["dcr_u95_ohm"] == pytest.approx(0.0083 * 200, rel=0.03)
+    capsys.readouterr()
+    assert run([*measure, "--ohm", "200.5"]) == 0
+    assert "200.0 ± 1.6 ohm at 20 °C: within" in capsys.readouterr().out

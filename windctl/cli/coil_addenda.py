@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from datetime import datetime
 from math import hypot
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import click
 
@@ -16,6 +16,7 @@ from windctl.errors import UsageError
 
 if TYPE_CHECKING:
     from windctl.book.book import Book
+    from windctl.profile.model import Readings
     from windctl.record.addenda import Addendum
 
 _by = click.option("--by", metavar="NAME", help="Who says so; you, if not given.")
@@ -28,15 +29,22 @@ def _signed(by: str | None) -> tuple[str, str]:
     return datetime.now().astimezone().isoformat(timespec="seconds"), by or operator()
 
 
-def _keep(shared: Shared, book: Book, coil: str, fact: Addendum) -> None:
-    from windctl.record.addenda import plain
+def _keep(
+    shared: Shared, book: Book, coil: str, fact: Addendum, judged: dict[str, Any] | None = None
+) -> None:
+    """`judged`: what a reading comes to."""
+    from windctl.record.addenda import CoilMeasured, plain
 
-    head = book.find(coil)
+    head, judged = book.find(coil), judged or {}
     book.amend(head.number, fact)
     if shared.json:
-        present.result_json({"coil": head.number, "id": head.id, "kind": fact.kind, **plain(fact)})
-    else:
-        present.result(f"{head.number}: {fact.kind.removeprefix('coil_')}")
+        present.result_json({"coil": head.number, "id": head.id, "kind": fact.kind, **plain(fact), **judged})
+        return
+    told = fact.kind.removeprefix("coil_")
+    if isinstance(fact, CoilMeasured) and fact.dcr_20c_ohm is not None:
+        told = f"{present.ohm(fact.dcr_20c_ohm, judged.get('dcr_u95_ohm', 0.0))} at 20 °C"
+        told += f": {judged['verdict']}" if "verdict" in judged else ""
+    present.result(f"{head.number}: {told}")
 
 
 @click.command()
@@ -107,7 +115,7 @@ def measure(
     build_sd_mm: float,
     by: str | None,
 ) -> None:
-    """Keep what was measured by hand on the finished COIL; later coils are planned with it.
+    """Keep what was measured by hand on the finished COIL, and judge it; later coils are planned with it.
 
     How far the meter can be trusted comes from the machine's profile.
     """
@@ -141,4 +149,22 @@ def measure(
             build_mm=build_mm,
             build_sd_mm=None if build_mm is None else build_sd_mm,
         )
-        _keep(shared, book, coil, fact)
+        judged = None if at_20c is None or rel is None else _judged(book, coil, at_20c, rel, readings)
+        _keep(shared, book, coil, fact, judged)
+
+
+def _judged(book: Book, coil: str, ohm: float, rel: float, readings: Readings) -> dict[str, Any]:
+    """What a cold reading says of a coil: its 95 % interval with all that the instruments may be off by, and
+    the verdict where the target was a resistance."""
+    from windctl.forecast.finish import Z95
+    from windctl.forecast.verdict import verdict
+    from windctl.material.copper import ALPHA_20C
+    from windctl.record.events import CoilStarted
+
+    half = Z95 * ohm * hypot(rel, readings.gain_sd_pct / 100, ALPHA_20C * readings.celsius_sd)
+    judged: dict[str, Any] = {"dcr_u95_ohm": half}
+    started = next(iter(book.events(coil)))
+    if isinstance(started, CoilStarted) and started.target.kind != "turns":
+        target = started.target
+        judged["verdict"] = verdict(ohm - half, ohm + half, target.value, target.tolerance_pct)
+    return judged

@@ -10,11 +10,13 @@ from typing import TYPE_CHECKING
 import click
 
 from windctl.cli import present, typed
+from windctl.cli.forecast import show_check
 from windctl.cli.options import Shared, takes
 from windctl.cli.section import Pen, Section, drawn
 from windctl.desk.machines import profile_of
 
 if TYPE_CHECKING:
+    from windctl.forecast.checking import Check
     from windctl.plan.model import Plan
     from windctl.recipe.model import Recipe
 
@@ -48,10 +50,25 @@ def plan(shared: Shared, recipe: Path, turns: int | None, dcr_ohm: float | None)
         expected = make_plan(wanted, profile, supply=supply).dcr_20c_ohm
         dcr_ohm = typed.confirm_ohm(dcr_ohm, expected, "a target", may_ask=typed.may_ask(shared.no_input))
     made = make_plan(wanted, profile, turns=turns, dcr_ohm=dcr_ohm, supply=supply)
+    check = _check(made, wanted) if profile.readings.mode == "checks" else None
     if shared.json:
-        present.result_json(made.as_json())
+        present.result_json({**made.as_json(), "check": None if check is None else check.as_json()})
     else:
         show_plan(made, wanted)
+        if check is not None:
+            present.result(show_check(check))
+
+
+def _check(made: Plan, recipe: Recipe) -> Check | None:
+    """Where a coil for a resistance would first be read."""
+    from windctl.forecast.checking import where_to_check
+    from windctl.forecast.estimator import begin
+
+    if made.target_kind == "turns":
+        return None
+    most = float(recipe.stop.max_turns or made.program.turns)
+    least = float(recipe.stop.min_turns or 1)
+    return where_to_check(begin(made.prior), 0.0, made.target_value, least, most)
 
 
 def show_plan(made: Plan, recipe: Recipe) -> None:

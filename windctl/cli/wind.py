@@ -20,7 +20,6 @@ from windctl.errors import RecipeError, RecordBroken, UsageError, WindctlError
 if TYPE_CHECKING:
     from windctl.desk.bench import Bench
     from windctl.plan.model import Plan
-    from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe
     from windctl.run.outcome import Outcome
     from windctl.run.wind import Winding
@@ -65,7 +64,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     plan = make_plan(wanted, profile, supply=supply)
     if shared.dry_run:
         return _dry_run(shared, plan, wanted)
-    _before(shared, plan, profile)
+    _before(shared, plan)
     with (
         open_bench(shared, profile, simulated, wanted, supply=supply) as bench,
         book_to_write(shared) as book,
@@ -122,7 +121,7 @@ def _dry_run(shared: Shared, plan: Plan, recipe: Recipe) -> ExitCode:
     return ExitCode.DONE
 
 
-def _before(shared: Shared, plan: Plan, profile: MachineProfile) -> None:
+def _before(shared: Shared, plan: Plan) -> None:
     """What should be known before the first turn."""
     for warning in plan.warnings:
         present.message(f"caution: {warning}")
@@ -186,6 +185,22 @@ def _show(outcome: Outcome, answer: dict[str, Any]) -> None:
         really = f"{present.turns(truth['true_turns'])}, {present.ohm(truth['true_dcr_20c_ohm'])} at 20 °C"
         rows.append(("simulated", f"really {really}"))
     present.pairs(rows)
+    if summary.target_kind != "turns" and summary.outcome == "finished" and summary.verdict != "within":
+        _show_waiting(outcome)
+
+
+def _show_waiting(outcome: Outcome) -> None:
+    """A cold coil is known better: when to read it again, what it should read, and where to keep that."""
+    again = outcome.waiting
+    if again is None:
+        return
+    reads = f"{present.ohm(again.ohm)} at {again.celsius:.1f} °C, leads included"
+    known = f"±{present.ohm(again.then_u95)} instead of ±{present.ohm(again.now_u95)}"
+    wait = present.counted(again.minutes, "minute")
+    present.result(
+        f"still warm: wait {wait} and read again at its ends; cold it should read {reads}: {known}"
+    )
+    present.result(f"keep the reading: windctl coils measure {outcome.number} --ohm OHM --celsius C")
 
 
 def _ending(outcome: Outcome) -> ExitCode:

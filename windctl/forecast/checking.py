@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from windctl.forecast.belief import PER_TURN, SHOWN, error_of, look, moved, resistance, told
 from windctl.forecast.estimator import Estimate
+from windctl.forecast.finish import Z95
 from windctl.forecast.noise import own_variance
 from windctl.forecast.reading import Reading
 from windctl.forecast.stop import stop_advice, to_be_learnt
@@ -29,10 +30,21 @@ class Check:
     without_ohm: float
     with_ohm: float
 
+    def as_json(self) -> dict[str, float]:
+        """The check as other programs read it; half-widths of 95 % intervals."""
+        return {
+            "turn": self.turn,
+            "of_turn": self.of_turn,
+            "without_u95_ohm": Z95 * self.without_ohm,
+            "with_u95_ohm": Z95 * self.with_ohm,
+        }
 
-def first_check(estimate: Estimate, target_ohm: float, min_turns: float, max_turns: float) -> Check:
-    """Where the first stop on the way to a resistance lies, and what a reading there would gain."""
-    advice = stop_advice(estimate, 0.0, target_ohm, min_turns, max_turns)
+
+def where_to_check(
+    estimate: Estimate, count_turn: float, target_ohm: float, min_turns: float, max_turns: float
+) -> Check:
+    """Where the next stop on the way to a resistance lies, and what a reading there would gain."""
+    advice = stop_advice(estimate, count_turn, target_ohm, min_turns, max_turns)
     of_turn = min(max(advice.target_turn, min_turns), max_turns)
     return check_at(estimate, float(advice.turn), max(of_turn, float(advice.turn)))
 

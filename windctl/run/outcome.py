@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any
 
+from windctl.forecast.waiting import Waiting
 from windctl.record.summary import CoilSummary
 
 
@@ -24,6 +25,7 @@ class Outcome:
     trace_digest: str
     record_digest: str
     error: Exception | None
+    waiting: Waiting | None = None  # what it would gain to read the coil once more when it has cooled
 
     def as_json(self) -> dict[str, Any]:
         """The outcome as other programs read it, format 1."""
@@ -43,4 +45,5 @@ class Outcome:
             "program_digest": summary.program_digest,
             "trace_digest": self.trace_digest or None,
             "record_digest": self.record_digest or None,
+            "read_again": None if self.waiting is None else self.waiting.as_json(),
         }

@@ -17,6 +17,7 @@ from windctl import __version__
 from windctl.book.book import Book
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, MachineError, RecordBroken, UsageError
+from windctl.forecast.waiting import Waiting, waiting
 from windctl.machine.ports import Port
 from windctl.plan.board_setup import board_setup
 from windctl.plan.model import Plan
@@ -198,7 +199,15 @@ class Winding:
             trace_digest=trace,
             record_digest=record,
             error=ended.error or failure,
+            waiting=_waiting(ended.state),
         )
+
+
+def _waiting(state: State) -> Waiting | None:
+    """Of a finished coil that was read at rest."""
+    if state.finished is None or state.estimate is None or state.reading is None or not state.reading.resting:
+        return None
+    return waiting(state.estimate, state.turns, state.reading.celsius)
 
 
 def begin(order: Order, book: Book, port: Port, here: Here) -> Winding:
