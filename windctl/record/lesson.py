@@ -10,7 +10,7 @@ from windctl.forecast.taught import open_minded, taught
 from windctl.plan.experience.lesson import Lesson, Measured
 from windctl.plan.experience.unknowns import meter_rel
 from windctl.protocol.messages import Capability
-from windctl.record.events import BoardGreeted, CoilStarted, Event
+from windctl.record.events import BoardGreeted, CoilStarted, Event, WireChanged
 from windctl.record.fold import replay
 from windctl.record.state import State
 
@@ -20,7 +20,8 @@ _SPOILS = ("open", "short", "jump")  # what these alarms tell of is no property 
 def lesson_of(events: Sequence[Event], bench: str) -> Lesson | None:
     """The lesson of a coil that has ended; None where its record does not say what to compare it with.
 
-    A coil that was not finished, or with which something was wrong, took wire and teaches nothing else.
+    A coil that was not finished, with which something was wrong, or that was wound from two spools took wire
+    and teaches nothing else.
     """
     started = events[0] if events else None
     if not isinstance(started, CoilStarted) or started.basis is None:
@@ -34,7 +35,7 @@ def lesson_of(events: Sequence[Event], bench: str) -> Lesson | None:
         basis=basis,
         turns=state.turns,
         meter_rel=meter_rel(prior.gain_sd, prior.celsius_sd, prior.coil_over_air_sd),
-        measured=_measured(state),
+        measured=() if any(isinstance(event, WireChanged) for event in events) else _measured(state),
         simulated=_simulated(events),
     )
 

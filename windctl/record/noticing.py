@@ -4,6 +4,8 @@ and the readings give cause for an alarm."""
 from __future__ import annotations
 
 from windctl.forecast.alarm import find_alarm
+from windctl.plan.experience.reel import runs_out
+from windctl.plan.experience.supply import Left
 from windctl.protocol.messages import State as BoardState
 from windctl.record.events import AlarmRaised, Event, Held, HoldRequested, Tripped, Unwound, WentOn
 from windctl.record.state import Fit, State
@@ -33,9 +35,32 @@ def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
             if found.kind in NO_USE_GOING_ON and state.turning and state.hold is None:
                 return (raised, HoldRequested(at_ms, "windctl", found.text))
             return (raised,)
+    short = _spool_runs_out(state, at_ms)
+    if short is not None:
+        return (short,)
     if _unwound(state) and state.held is not None:
         return (Unwound(at_ms, state.held.count, status.count),)
     return ()
+
+
+def _spool_runs_out(state: State, at_ms: int) -> AlarmRaised | None:
+    """Told once while it turns: more likely than not the spool ends before the stop point."""
+    started = state.started
+    assert started is not None
+    if not state.turning or state.alarm is not None or state.stop_point is None or started.basis is None:
+        return None
+    left, sd = started.spool_left_m, started.spool_left_sd_m
+    if left is None or sd is None:
+        return None
+    metres = started.basis.coil.wire_length_m(state.stop_point / state.counts_per_turn)
+    chance = runs_out(Left(left, sd), metres)
+    if chance <= 0.5:
+        return None
+    text = (
+        f"the spool is likely to run out before the stop: about {max(left, 0.0):.0f} m were on it, give or "
+        f"take {2.0 * sd:.0f} m, and the coil takes {metres:.0f} m; have the next spool ready to be joined on"
+    )
+    return AlarmRaised(at_ms, state.turns, "spool", text, min(chance / max(1.0 - chance, 1e-6), 1e6))
 
 
 def _unwound(state: State) -> bool:

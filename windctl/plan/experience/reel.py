@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import exp, floor, hypot
+from math import erf, exp, floor, hypot, sqrt
 
 from windctl.plan.experience.fold import Experience
 from windctl.plan.experience.spool import Spool
@@ -32,6 +32,13 @@ def left_on(spool: Spool, experience: Experience, weighing: Weighing) -> Left:
     metres = weighing.grams / g_per_m
     rel = hypot(level_sd, METAL_REL, _COAT_PART, weighing.sd / max(weighing.grams, 1e-9))
     return Left(metres - weighing.since_m, hypot(metres * rel, weighing.since_m * _LENGTH_REL))
+
+
+def runs_out(left: Left, metres: float) -> float:
+    """How probable it is that so much wire is not left: 0 to 1."""
+    if left.sd <= 0.0:
+        return 1.0 if metres > left.metres else 0.0
+    return 0.5 * (1.0 + erf((metres - left.metres) / (left.sd * sqrt(2.0))))
 
 
 def coils_left(left: Left, metres_each: float) -> int:

@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from windctl.errors import UsageError
 from windctl.material.enamel import Grade
 from windctl.material.wire import Wire, resolve
-from windctl.recipe.tables import WireTable
+
+if TYPE_CHECKING:
+    from windctl.recipe.tables import WireTable
 
 
 @dataclass(frozen=True, slots=True)

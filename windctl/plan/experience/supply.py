@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from windctl.material.wire import Wire
 from windctl.plan.experience.fold import Experience
 from windctl.plan.experience.spool import Spool
-from windctl.recipe.model import Recipe
+
+if TYPE_CHECKING:
+    from windctl.recipe.model import Recipe
 
 
 @dataclass(frozen=True, slots=True)
