@@ -13,14 +13,17 @@ from windctl.record.checking import ENOUGH
 from windctl.record.consent import PATIENCE_TICKS
 from windctl.record.events import (
     AlarmRaised,
+    BoardGreeted,
     CheckAsked,
     CheckTaken,
     CoilFinished,
+    CountCorrected,
     Event,
     GoGiven,
     HandsAsked,
     ReadingTaken,
     ReadingTyped,
+    Resumed,
     StatusHeard,
     StopPointChosen,
 )
@@ -183,3 +186,25 @@ def test_a_check_survives_an_interruption() -> None:
     assert again.check == coil.state.check is not None
     assert again == coil.state
     assert identity().capabilities & 128  # the samples' board is a simulated one
+
+
+def test_after_a_restart_of_the_board_the_check_goes_on_where_somebody_says_that_it_stands() -> None:
+    """The board counts from what it is told; its contact and a typed reading are as good as before."""
+    for by_hand in (False, True):
+        coil, _, stop = stopped()
+        off(coil, stop)
+        coil.hear(Resumed(0, "2026-03-02T11:00:00+01:00", "bench one", "0.1.0"))
+        coil.hear(BoardGreeted(0, identity(boot=6, state=BoardState.DRIVES_OFF, coil_token=0, next=0)))
+        assert coil.decision.asks == "turn"
+        coil.hear(CountCorrected(0, stop, "operator", "given when resuming"))
+        at = status(900, boot=6, epoch=1, count=round(stop * CPT))
+        coil.hear(StatusHeard(0, at))
+        assert coil.decision.asks is None  # the simulated contact is on its way
+        follows = coil.hear(typed(stop)) if by_hand else []
+        for i in range(0 if by_hand else ENOUGH):
+            taken = reading(1_500 + 250 * i, stop, measured(stop), resting=True)
+            follows += coil.hear(ReadingTaken(0, taken))
+        assert [type(fact) for fact in follows] == [CheckTaken]
+        assert coil.decision.asks == "go"
+        (more,) = [f for f in coil.hear(GoGiven(0, 6, 1, "operator")) if isinstance(f, StopPointChosen)]
+        assert more.count > round(stop * CPT)

@@ -17,10 +17,10 @@ def to_be_read(state: State) -> bool:
     """
     started, estimate = state.started, state.estimate
     assert started is not None and estimate is not None
+    if state.check is not None:
+        return state.in_hand
     if started.readings_mode != "checks" or state.fit is not Fit.SAME:
         return False
-    if state.check is not None:
-        return True
     if state.checked_count == state.count:
         return False
     if state.checked_count is None:

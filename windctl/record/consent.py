@@ -94,10 +94,11 @@ def asks(state: State) -> str | None:
 
 def _contact_may_come(state: State) -> bool:
     """At a simulated machine the contact is put to the wire as soon as the drives are off."""
-    identity, status, held = state.identity, state.status, state.held
-    if identity is None or status is None or held is None or not identity.capabilities & Capability.VIRTUAL:
+    identity, status = state.identity, state.status
+    if identity is None or status is None or not identity.capabilities & Capability.VIRTUAL:
         return False
-    return bool(identity.capabilities & Capability.CONTACT) and status.ticks - held.ticks < PATIENCE_TICKS
+    since = status.ticks - (0 if state.held is None else state.held.ticks)  # 0: it has just started again
+    return bool(identity.capabilities & Capability.CONTACT) and since < PATIENCE_TICKS
 
 
 def _consented(state: State) -> bool:

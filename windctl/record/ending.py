@@ -29,6 +29,8 @@ def ending(state: State, at_ms: int) -> tuple[Event, ...]:
         return (_finished(state, at_ms, "stopped", state.end.reason),)
     if status is None or state.stop_point is None or state.count < state.stop_point:
         return ()
+    if state.check is not None and state.in_hand:
+        return checking(state, at_ms)
     if state.fit is Fit.CORRECTED:  # somebody has said that it is there, and agreed to go on from there
         if state.consent is None:
             return ()

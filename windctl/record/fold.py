@@ -274,9 +274,11 @@ def _status(state: State, status: Status) -> State:
 def _reading(state: State, event: ReadingTaken) -> State:
     """Only readings of this coil teach: not before it turned, not through an open contact."""
     raw = event.reading
-    if state.started is None or state.identity is None or state.estimate is None or state.fit is not Fit.SAME:
+    if state.started is None or state.identity is None or state.estimate is None:
         return state
-    if raw.count <= 0:
+    # A board that has started again counts as it was told, and a check waits for its reading all the same.
+    told = state.fit is Fit.CORRECTED and state.check is not None and raw.count == state.count
+    if raw.count <= 0 or not (state.fit is Fit.SAME or told):
         return state
     if state.broke is not None or state.broke_near is not None:
         return state  # the wire is broken
@@ -292,7 +294,8 @@ def _reading(state: State, event: ReadingTaken) -> State:
         resting=resting,
         seconds=raw.ticks / 1000.0,
     )
-    settled = resting and state.held is not None and raw.ticks - raw.window - state.held.ticks >= SETTLE_TICKS
+    since = raw.ticks - raw.window - (0 if state.held is None else state.held.ticks)
+    settled = resting and (told or (state.held is not None and since >= SETTLE_TICKS))
     shown = reading if isfinite(reading.ohm) else state.reading
     if resting and not settled:
         return replace(state, reading=shown, read_last=True)
