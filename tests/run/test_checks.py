@@ -9,11 +9,27 @@ from pathlib import Path
 import pytest
 
 from tests.conftest import LONG
+from tests.record.following import Coil, at_rest, measured, turning
+from tests.record.samples import CPT, status
 from tests.run.winding import SHIPPED, SHORT_TURNS, wind, with_key, with_stop
 from windctl.book.open import open_book
 from windctl.profile.builtin import VIRTUAL
-from windctl.record.events import CheckAsked, CheckTaken, GoGiven, HandsAsked, Held, ReadingTaken, WentOn
+from windctl.protocol.messages import Cause
+from windctl.protocol.messages import State as BoardState
+from windctl.record.events import (
+    CheckAsked,
+    CheckTaken,
+    GoGiven,
+    HandsAsked,
+    Held,
+    ReadingTaken,
+    StatusHeard,
+    WentOn,
+)
 from windctl.record.fold import replay
+from windctl.run.answers import answer
+from windctl.run.requests import Read, Request, Skip
+from windctl.run.snapshot import snapshot
 
 CHECKS = VIRTUAL.model_copy(update={"readings": VIRTUAL.readings.model_copy(update={"mode": "checks"})})
 NONE = VIRTUAL.model_copy(update={"readings": VIRTUAL.readings.model_copy(update={"mode": "none"})})
@@ -90,3 +106,60 @@ def test_a_warm_coil_that_cannot_be_judged_is_to_be_read_again(tmp_path: Path) -
     cold = wound.truth.true_dcr_20c_ohm * (1 + 0.00393 * (wait.celsius - 20.0)) + VIRTUAL.readings.lead_ohm
     assert abs(wait.ohm - cold) < 2.0 * wait.now_u95
     assert dataclasses.asdict(wait).keys() >= {"minutes", "ohm", "celsius"}
+
+
+def test_what_is_said_at_a_check_and_after_it() -> None:
+    """Where, what it gains, and that the bared spot is to be insulated again."""
+    coil = turning(mode="checks")
+    assert coil.state.stop_point is not None
+    stop = coil.state.stop_point / CPT
+    at_rest(coil, stop, Cause.STOP_POINT)
+    off = status(95_000, state=BoardState.DRIVES_OFF, epoch=13, count=round(stop * CPT), next=100)
+    coil.hear(StatusHeard(0, off))
+    seen = snapshot(coil.state, coil.decision, 200.0)
+    assert seen.asks == "reading"  # no contact came
+    where = f"drives off, hands may go in: read the resistance at turn {stop:.0f}; the finish is known to"
+    assert seen.says.startswith(where)
+    request = Read("operator", measured(stop), 20.0)
+    replied = answer(request, coil.state, coil.decision, 0, leaving=False)
+    assert "Insulate the bared spot again" in replied.says
+    coil.hear(*replied.facts)
+    seen = snapshot(coil.state, coil.decision, 200.0)
+    assert seen.asks == "go"
+    assert "insulate the bared spot again" in seen.says
+
+
+def at_a_check() -> Coil:
+    coil = turning(mode="checks")
+    assert coil.state.stop_point is not None
+    at_rest(coil, coil.state.stop_point / CPT, Cause.STOP_POINT)
+    off = status(95_000, state=BoardState.DRIVES_OFF, epoch=13, count=coil.state.stop_point, next=100)
+    coil.hear(StatusHeard(0, off))
+    return coil
+
+
+@pytest.mark.parametrize(
+    ("request_", "words", "facts"),
+    [
+        (Read("operator", 0.95), "about a thousand times off the expected", 0),
+        (Read("operator", 950.0, 200.0), "200 °C cannot be", 0),
+        (Read("operator", 1500.0, 20.0), "does not fit the expected", 1),
+        (Skip("operator"), "passed over", 1),
+    ],
+    ids=["kilohm", "too warm", "too much", "skip"],
+)
+def test_what_is_typed_at_a_check(request_: Request, words: str, facts: int) -> None:
+    coil = at_a_check()
+    replied = answer(request_, coil.state, coil.decision, 0, leaving=False)
+    assert words in replied.says
+    assert len(replied.facts) == facts
+
+
+def test_a_reading_by_hand_anywhere_else_wants_the_drives_off_first() -> None:
+    coil = turning(mode="live")
+    at_rest(coil, 500.0, Cause.HOLD)
+    replied = answer(Read("operator", 330.0, 20.0), coil.state, coil.decision, 0, leaving=False)
+    (hands,) = replied.facts
+    assert isinstance(hands, HandsAsked)
+    assert "Then say it again" in replied.says
+    assert answer(Skip("operator"), coil.state, coil.decision, 0, leaving=False).facts == ()

@@ -148,6 +148,8 @@ def _says_held(state: State, decision: Decision) -> str:
         return _says_check(state)
     if state.hands is not None:
         off = "drives off, hands may go in" if state.drives_off else "switching the drives off"
+        if state.hands.by == "windctl" and state.checked_count == state.count:
+            return f"{off}: insulate the bared spot again before it goes on"
         return f"{off}: {state.hands.reason}"
     if state.drives_off:
         return "held, drives off"
