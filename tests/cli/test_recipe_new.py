@@ -122,8 +122,11 @@ def test_at_a_terminal_and_with_ctrl_c(tmp_path: Path) -> None:
         session.shows("What the coil is called")
         session.types("Neck\n")
         session.shows("outside length")
-        # A signal that comes just before Python begins to read is seen only when the next one wakes it.
-        time.sleep(0.3)
-        session.process.send_signal(signal.SIGINT)
+        # A signal that comes just before Python begins to read is seen only when another wakes it.
+        for _ in range(10):
+            time.sleep(1.5)
+            if session.process.poll() is not None:
+                break
+            session.process.send_signal(signal.SIGINT)
         session.ends(130)
     assert list(tmp_path.iterdir()) == []
