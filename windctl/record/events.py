@@ -321,6 +321,26 @@ class CheckTaken:
 
 
 @dataclass(frozen=True, slots=True)
+class ReadingTakenBack:
+    """The reading typed last was a mistake: the coil is where it was before it, with what followed from it."""
+
+    kind: ClassVar[str] = "reading_taken_back"
+    at_ms: int
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class PaceAsked:
+    """Somebody wants the spindle to turn at `pace` steps/s at the most, from now on. Never more than the plan
+    has it, never less than its first turns."""
+
+    kind: ClassVar[str] = "pace_asked"
+    at_ms: int
+    pace: int
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
 class Unwound:
     """The spindle was turned back by hand with the drives off, from count `before` to `count`."""
 
@@ -385,6 +405,8 @@ Event = (
     | CheckAsked
     | ReadingTyped
     | CheckTaken
+    | ReadingTakenBack
+    | PaceAsked
     | Unwound
     | NoteMade
     | CoilFinished
@@ -417,6 +439,8 @@ KINDS: dict[str, type[Event]] = {
         CheckAsked,
         ReadingTyped,
         CheckTaken,
+        ReadingTakenBack,
+        PaceAsked,
         Unwound,
         NoteMade,
         CoilFinished,

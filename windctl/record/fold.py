@@ -59,7 +59,7 @@ from windctl.record.events import (
     WireChanged,
 )
 from windctl.record.fitting import fit_of, kept_guide
-from windctl.record.state import Fit, State, setup_crc
+from windctl.record.state import Fit, State, setup_crc, touched
 
 __all__ = ["SETTLE_TICKS", "Fit", "State", "fold", "replay", "setup_crc", "start"]
 
@@ -241,17 +241,19 @@ def _status(state: State, status: Status) -> State:
     tripped = state.tripped if status.state == BoardState.TRIPPED else None
     guide_known = state.guide_known and bool(status.trust & Trust.GUIDE)
     if state.fit is Fit.SAME:
-        return replace(
+        return touched(
             state,
-            status=status,
-            tripped=tripped,
-            guide_known=guide_known,
-            count=status.count,
-            next=status.next,
-            boot=status.boot,
-            epoch=status.epoch,
-            fresh_reading=False,
-            read_last=False,
+            {
+                "status": status,
+                "tripped": tripped,
+                "guide_known": guide_known,
+                "count": status.count,
+                "next": status.next,
+                "boot": status.boot,
+                "epoch": status.epoch,
+                "fresh_reading": False,
+                "read_last": False,
+            },
         )
     # The board may still stand where another coil left it, or where this one does not stand any more.
     count, board_count = state.count, state.board_count
@@ -259,15 +261,17 @@ def _status(state: State, status: Status) -> State:
         unpowered = status.state in (BoardState.DRIVES_OFF, BoardState.TRIPPED)
         count += status.count - board_count if unpowered else 0
         board_count = status.count if unpowered else None
-    return replace(
+    return touched(
         state,
-        status=status,
-        tripped=tripped,
-        guide_known=guide_known,
-        count=count,
-        board_count=board_count,
-        fresh_reading=False,
-        read_last=False,
+        {
+            "status": status,
+            "tripped": tripped,
+            "guide_known": guide_known,
+            "count": count,
+            "board_count": board_count,
+            "fresh_reading": False,
+            "read_last": False,
+        },
     )
 
 
@@ -300,15 +304,17 @@ def _reading(state: State, event: ReadingTaken) -> State:
     if resting and not settled:
         return replace(state, reading=shown, read_last=True)
     estimate, used = update(state.estimate, reading)
-    return replace(
+    return touched(
         state,
-        estimate=estimate,
-        reading=shown,
-        fresh_reading=used,
-        read_last=True,
-        readings_used=state.readings_used + used,
-        readings_gated=state.readings_gated + (not used),
-        settled_readings=state.settled_readings + (1 if settled and used else 0),
+        {
+            "estimate": estimate,
+            "reading": shown,
+            "fresh_reading": used,
+            "read_last": True,
+            "readings_used": state.readings_used + used,
+            "readings_gated": state.readings_gated + (not used),
+            "settled_readings": state.settled_readings + (1 if settled and used else 0),
+        },
     )
 
 
