@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 import xml.etree.ElementTree as ET
+from itertools import pairwise
 
 import pytest
 from hypothesis import given
@@ -22,9 +23,7 @@ def test_a_step_is_round_and_the_smallest_that_fits(span: float, most: int) -> N
     lead = step / 10 ** math.floor(math.log10(step * (1 + 1e-9)))
     assert min(abs(lead - round_one) for round_one in (1, 2, 2.5, 5)) < 1e-6
     assert step * most >= span * (1 - 1e-6)
-    assert step / 2.5 * most < span * (
-        1 + 1e-6
-    )  # the next smaller one, at most 2.5 times finer, would not fit
+    assert step / 2.5 * most < span * (1 + 1e-6)  # a next finer one would not fit
 
 
 @given(st.floats(-1e6, 1e6), st.floats(1e-3, 1e6), st.integers(2, 12))
@@ -74,7 +73,7 @@ def test_a_missing_value_breaks_a_line() -> None:
 def test_steps_have_only_level_and_upright_parts() -> None:
     (corners,) = points_of(PLOT.steps([(0, 1), (10, 4), (20, 2)]))
     assert len(corners) == 5
-    for (x0, y0), (x1, y1) in zip(corners, corners[1:], strict=False):
+    for (x0, y0), (x1, y1) in pairwise(corners):
         assert x0 == x1 or y0 == y1
 
 
