@@ -2,27 +2,14 @@
 
 from __future__ import annotations
 
-from datetime import datetime
-from math import exp
-from typing import TYPE_CHECKING, Any
-
 import click
 
 from windctl.cli import present, typed
 from windctl.cli.options import Shared, takes
-from windctl.desk.books import book_if_any, book_to_read, book_to_write
+from windctl.desk import spool_words as words
+from windctl.desk.books import book_if_any, book_to_read
+from windctl.desk.spool_keeping import OHM_PER_M_SD_PCT, SCALE_SD_G
 from windctl.errors import UsageError
-
-if TYPE_CHECKING:
-    from windctl.desk.spools import SpoolState
-
-_Z95 = 1.959964
-_SCALE_SD_G = 0.5  # of a workshop's scale, the empty spool's own mass included
-_OHM_PER_M_SD_PCT = 0.5  # of a metre or two measured with a good meter
-
-
-def _now() -> str:
-    return datetime.now().astimezone().isoformat(timespec="seconds")
 
 
 @click.group()
@@ -61,41 +48,25 @@ def add(
     notes: str | None,
 ) -> None:
     """Keep a new spool under ID (write it on the spool), or under the next free number."""
-    from windctl.desk.bench import operator
-    from windctl.desk.spools import check_name, next_name
-    from windctl.material.wire import resolve
-    from windctl.record.addenda import SpoolAdded, SpoolMeasured, SpoolWeighed
+    from windctl.desk.spool_keeping import NewSpool, keep_new
 
     if enamel is None and overall_mm is None:
         raise UsageError("how thick is its enamel? Give --enamel or, better, --overall from a micrometer")
     if ohm_per_m_sd is not None and ohm_per_m is None:
         raise UsageError("--ohm-per-m-sd stands alone: give --ohm-per-m, whose uncertainty it is")
-    try:
-        measured = overall_mm is not None
-        wire = resolve(
-            gauge=gauge, diameter_mm=diameter_mm,
-            enamel=None if measured else enamel, overall_mm=overall_mm,  # type: ignore[arg-type]  # a choice
-        )  # fmt: skip
-    except ValueError as error:
-        raise UsageError(f"there is no such wire: {error}") from None
-    if ohm_per_m is not None and not 0.7 < ohm_per_m / wire.ohm_per_m < 1.4:
-        raise UsageError(
-            f"--ohm-per-m of {ohm_per_m:g} ohm is no wire of this size, which has about "
-            f"{wire.ohm_per_m:.3g} ohm per metre: measure again, or check the gauge"
-        )
-    now, who = _now(), operator()
-    with book_to_write(shared) as book:
-        name = next_name(book.spools()) if spool_id is None else check_name(spool_id)
-        added = SpoolAdded(
-            now, who, name, gauge, diameter_mm, enamel, overall_mm, insulation or "", notes or ""
-        )
-        more: list[Any] = []
-        if grams is not None:
-            more.append(SpoolWeighed(now, who, grams, _SCALE_SD_G))
-        if ohm_per_m is not None:
-            sd = ohm_per_m * _OHM_PER_M_SD_PCT / 100 if ohm_per_m_sd is None else ohm_per_m_sd
-            more.append(SpoolMeasured(now, who, ohm_per_m, sd / ohm_per_m))
-        book.add_spool(added, *more)
+    new = NewSpool(
+        name=spool_id,
+        gauge=gauge,
+        diameter_mm=diameter_mm,
+        enamel=enamel,  # type: ignore[arg-type]  # a choice
+        overall_mm=overall_mm,
+        insulation=insulation or "",
+        grams=grams,
+        ohm_per_m=ohm_per_m,
+        ohm_per_m_sd=ohm_per_m_sd,
+        notes=notes or "",
+    )
+    name = keep_new(shared, new)
     _tell(shared, name)
 
 
@@ -119,8 +90,8 @@ def list_(shared: Shared) -> None:
             [
                 state.id,
                 state.wire,
-                _ohm_per_m(state),
-                _left(state),
+                words.ohm_per_m(state),
+                words.left(state),
                 "" if state.coils_left is None else present.counted(state.coils_left, "coil"),
                 str(state.coils),
             ]
@@ -141,16 +112,14 @@ def show(shared: Shared, spool_id: str) -> None:
 @spool.command()
 @click.argument("spool_id", metavar="ID")
 @click.argument("grams", metavar="G", type=typed.FiniteRange(min=0))
-@click.option("--sd", "sd_g", type=typed.FiniteRange(min=0, min_open=True), default=_SCALE_SD_G,
+@click.option("--sd", "sd_g", type=typed.FiniteRange(min=0, min_open=True), default=SCALE_SD_G,
               show_default=True, metavar="G", help="Standard deviation of the weighing, g.")  # fmt: skip
 @takes("book", "json")
 def weigh(shared: Shared, spool_id: str, grams: float, sd_g: float) -> None:
     """Keep that the wire on spool ID now weighs G grams: the scale's reading less the empty spool."""
-    from windctl.desk.bench import operator
-    from windctl.record.addenda import SpoolWeighed
+    from windctl.desk.spool_keeping import keep_weighing
 
-    with book_to_write(shared) as book:
-        book.add_to_spool(spool_id, SpoolWeighed(_now(), operator(), grams, sd_g))
+    keep_weighing(shared, spool_id, grams, sd_g)
     _tell(shared, spool_id)
 
 
@@ -163,24 +132,14 @@ def weigh(shared: Shared, spool_id: str, grams: float, sd_g: float) -> None:
 @click.option("--celsius", type=typed.FiniteRange(min=-40, max=60), required=True, metavar="C",
               help="Its temperature, °C.")  # fmt: skip
 @click.option("--sd", "sd_pct", type=typed.FiniteRange(min=0, min_open=True, max=50),
-              default=_OHM_PER_M_SD_PCT, show_default=True, metavar="%",
+              default=OHM_PER_M_SD_PCT, show_default=True, metavar="%",
               help="Standard deviation of length, meter and thermometer together, per cent.")  # fmt: skip
 @takes("book", "json")
 def measure(shared: Shared, spool_id: str, metres: float, ohm: float, celsius: float, sd_pct: float) -> None:
     """Keep what a piece from the loose end of spool ID measured: it says more of the wire than the table."""
-    from windctl.desk.bench import operator
-    from windctl.material.copper import to_20c
-    from windctl.record.addenda import SpoolMeasured
+    from windctl.desk.spool_keeping import keep_piece
 
-    ohm_per_m = to_20c(ohm, celsius) / metres
-    with book_to_write(shared) as book:
-        nominal = book.spool(spool_id).spool.wire().ohm_per_m
-        if not 0.7 < ohm_per_m / nominal < 1.4:
-            raise UsageError(
-                f"{ohm_per_m:.3g} ohm per metre is no wire of this size, which has about {nominal:.3g} ohm "
-                "per metre: measure again"
-            )
-        book.add_to_spool(spool_id, SpoolMeasured(_now(), operator(), ohm_per_m, sd_pct / 100))
+    keep_piece(shared, spool_id, metres, ohm, celsius, sd_pct)
     _tell(shared, spool_id)
 
 
@@ -194,43 +153,14 @@ def _tell(shared: Shared, spool_id: str) -> None:
         return
     rows = [
         ("spool", state.id),
-        ("wire", state.wire + (f", {state.insulation}" if state.insulation else "")),
-        ("ohm per metre", _ohm_per_m(state) + f"; the table has {state.nominal_ohm_per_m:.4g} ohm/m"),
-        ("known from", _known_from(state)),
+        ("wire", words.wire(state)),
+        ("ohm per metre", words.ohm_per_m(state) + f"; the table has {state.nominal_ohm_per_m:.4g} ohm/m"),
+        ("known from", words.known_from(state)),
         ("coils wound", str(state.coils)),
-        ("left", _left(state)),
-        ("enough for", _enough(state)),
+        ("left", words.left(state)),
+        ("enough for", words.enough(state)),
         ("notes", state.notes),
     ]
     present.pairs([(name, value) for name, value in rows if value])
-    for one in state.unfit:
-        off = f"{100 * (exp(one.off) - 1):+.1f} % off"
-        present.result(
-            f"coil {one.coil} was {off} and taught nothing: look at the spool's label, the count, the coil"
-        )
-    for coil, reason in state.withdrawn:
-        present.result(f"coil {coil} was withdrawn: {reason}")
-
-
-def _ohm_per_m(state: SpoolState) -> str:
-    return present.with_uncertainty(state.ohm_per_m, _Z95 * state.ohm_per_m_sd, "ohm/m", most_decimals=4)
-
-
-def _known_from(state: SpoolState) -> str:
-    parts = [present.counted(state.taught_by, "coil")] if state.taught_by else []
-    if state.pieces:
-        parts.append(present.counted(state.pieces, "measured piece"))
-    return " and ".join(parts) or "the table only"
-
-
-def _left(state: SpoolState) -> str:
-    if state.left_m is None or state.left_sd_m is None:
-        return ""
-    return present.with_uncertainty(max(state.left_m, 0.0), _Z95 * state.left_sd_m, "m", most_decimals=0)
-
-
-def _enough(state: SpoolState) -> str:
-    if state.coils_left is None or state.metres_each is None:
-        return ""
-    each = present.grouped(state.metres_each)
-    return f"{present.counted(state.coils_left, 'coil')} of {each} m, as wound from it last"
+    for line in words.told(state):
+        present.result(line)
