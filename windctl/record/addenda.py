@@ -18,6 +18,9 @@ from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.lesson import Build, Lesson, Mass, Measured, Resistance, Share
 from windctl.record.canonical import dumps
 
+STAGES = ("on-machine", "leads-on", "potted", "assembled", "returned")  # of a coil's life
+_TEACH_NO_OHM = ("assembled", "returned")
+
 
 @dataclass(frozen=True, slots=True)
 class CoilTaught:
@@ -35,6 +38,11 @@ class CoilMeasured:
 
     `ohm` is what the meter showed at `celsius`; `dcr_20c_ohm` that at 20 degrees C without the leads, and
     `dcr_rel` its own relative sd, without what the bench's instruments are off by for every coil.
+
+    `stage`: where the coil was in its life, one of STAGES. `minutes` since it was wound; None: long since.
+    `meter` and `thermometer` are names, and what follows them is how far both were trusted then, so that no
+    later profile changes what was known. Inductance in henry and quality at `test_hz`; the resonance with
+    `load_pf` and `load_ohm` across the coil.
     """
 
     kind: ClassVar[str] = "coil_measured"
@@ -48,12 +56,31 @@ class CoilMeasured:
     grams_sd: float | None = None
     build_mm: float | None = None
     build_sd_mm: float | None = None
+    stage: str = ""
+    minutes: float | None = None
+    meter: str = ""
+    thermometer: str = ""
+    gain_rel: float | None = None
+    noise_rel: float | None = None
+    floor_ohm: float | None = None
+    lead_ohm: float | None = None
+    lead_sd_ohm: float | None = None
+    celsius_sd: float | None = None
+    over_air_k: float | None = None
+    over_air_sd_k: float | None = None
+    henry: float | None = None
+    quality: float | None = None
+    test_hz: float | None = None
+    resonance_hz: float | None = None
+    load_pf: float | None = None
+    load_ohm: float | None = None
 
     @property
     def measured(self) -> tuple[Measured, ...]:
-        """The same as a lesson takes it."""
+        """The same as a lesson takes it. What has left the bench, or is joined to more than its leads,
+        teaches no resistance."""
         seen: list[Measured] = []
-        if self.dcr_20c_ohm is not None and self.dcr_rel is not None:
+        if self.stage not in _TEACH_NO_OHM and self.dcr_20c_ohm is not None and self.dcr_rel is not None:
             seen.append(Resistance(self.dcr_20c_ohm, self.dcr_rel))
         if self.grams is not None and self.grams_sd is not None:
             seen.append(Mass(self.grams, self.grams_sd))
