@@ -9,7 +9,7 @@ from windctl.cli.progress import Face
 from windctl.cli.prompt import Prompt
 from windctl.desk.words import BY, help_text, request_of
 from windctl.errors import RunFailed, UsageError, WindctlError
-from windctl.run.requests import Clear, End, Go, Hold, Request, Unwind
+from windctl.run.requests import Clear, End, Faster, Go, Hold, Note, Request, Slower, TakeBack, Unwind
 
 if TYPE_CHECKING:
     from windctl.run.snapshot import Snapshot
@@ -66,7 +66,7 @@ class Questions:
             self._put_question(snapshot)
         if snapshot.phase == "turning" and not self._told_how_to_hold:
             self._told_how_to_hold = True
-            self._face.say("Enter holds the spindle; Ctrl-C holds it and leaves.")
+            self._face.say("Enter holds the spindle; slower, faster; Ctrl-C holds it and leaves.")
         line = self._prompt.answer()
         if line is not None:
             self._typed(line, snapshot)
@@ -96,8 +96,11 @@ class Questions:
 
     def _typed(self, line: str, snapshot: Snapshot) -> None:
         if self._open is None:
-            if snapshot.phase == "turning" and (not line or isinstance(request_of(line), Hold)):
+            wanted = request_of(line)
+            if snapshot.phase == "turning" and (not line or isinstance(wanted, Hold)):
                 self._run.request(Hold(BY, "held at the keyboard"))
+            elif isinstance(wanted, Slower | Faster | Note | TakeBack):
+                self._run.request(wanted)
             return
         if not line:
             return

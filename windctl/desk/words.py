@@ -12,6 +12,7 @@ from windctl.run.requests import (
     CountIs,
     DrivesOff,
     End,
+    Faster,
     Go,
     Hold,
     NewWire,
@@ -19,7 +20,9 @@ from windctl.run.requests import (
     Read,
     Request,
     Skip,
+    Slower,
     Splice,
+    TakeBack,
     Unwind,
 )
 
@@ -46,6 +49,8 @@ class Word:
 WORDS = (
     Word("go", "wind on: powers the drives and starts"),
     Word("hold", "let the spindle come to rest; Enter alone does the same while it turns"),
+    Word("slower", "turn a tenth of the plan's pace slower, also while it turns; it stays so"),
+    Word("faster", "and a tenth faster, at the most as planned"),
     Word("clear", "the cause of the trip is put right; nothing turns by that"),
     Word("off", "drives off, so that hands may go in"),
     Word("broke [TURN]", "the wire broke, at that turn"),
@@ -58,6 +63,7 @@ WORDS = (
     Word(
         "read OHM [CELSIUS]", "the coil as the meter shows it, such as 5.93k 22.5, and how warm it is there"
     ),
+    Word("undo", "take the reading typed last back, until you go on or read again"),
     Word("skip", "pass over the check that is asked for"),
     Word("note TEXT", "write something into the record"),
     Word("end", "end the coil here"),
@@ -126,6 +132,8 @@ def _note(rest: str) -> Request | None:
 _MEANS: dict[str, Callable[[str], Request | None]] = {
     "go": _alone(Go(BY)),
     "hold": _alone(Hold(BY, "held at the keyboard")),
+    "slower": _alone(Slower(BY)),
+    "faster": _alone(Faster(BY)),
     "clear": _alone(Clear(BY)),
     "off": _alone(DrivesOff(BY, "asked for at the keyboard")),
     "broke": _at_a_turn(Broke),
@@ -134,6 +142,7 @@ _MEANS: dict[str, Callable[[str], Request | None]] = {
     "unwind": _at_a_turn(Unwind),
     "turn": _turn,
     "read": _read,
+    "undo": _alone(TakeBack(BY)),
     "skip": _alone(Skip(BY)),
     "note": _note,
     "end": _alone(End(BY, "ended by the operator")),

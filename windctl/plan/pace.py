@@ -28,3 +28,15 @@ def pace_for(spec: PaceSpec, count: int, stop_count: int | None) -> int:
     if stop_count is not None and stop_count - count <= spec.finish_counts:
         pace = min(pace, spec.finish_pace)
     return pace
+
+
+def most_pace(spec: PaceSpec, percent: int) -> int:
+    """Steps/s at the most when somebody wants `percent` of the cruising pace: never faster than the plan was
+    checked at, and never slower than its first turns."""
+    least = min(spec.start_pace, spec.cruise_pace)
+    return max(least, min(spec.cruise_pace, spec.cruise_pace * percent // 100))
+
+
+def least_percent(spec: PaceSpec) -> int:
+    """The least percentage that makes a difference."""
+    return min(100, -(-100 * min(spec.start_pace, spec.cruise_pace) // spec.cruise_pace))

@@ -11,6 +11,7 @@ from windctl.protocol.messages import Trip
 from windctl.record.checking import checking, to_be_read
 from windctl.record.events import CoilFinished, Event, StopPointChosen
 from windctl.record.state import Fit, State
+from windctl.record.taking_back import second_thoughts
 
 SETTLED_ENOUGH = 8  # readings at rest before the coil is judged
 SETTLE_LIMIT_TICKS = 8_000  # without them it is judged on what there is
@@ -38,6 +39,14 @@ def ending(state: State, at_ms: int) -> tuple[Event, ...]:
         return ()
     if to_be_read(state):
         return checking(state, at_ms)
+    follows = _at_target(state, at_ms)
+    over = any(isinstance(event, CoilFinished) for event in follows)
+    return () if over and second_thoughts(state) else follows
+
+
+def _at_target(state: State, at_ms: int) -> tuple[Event, ...]:
+    started = state.started
+    assert started is not None
     if started.target.kind == "turns":
         return (_finished(state, at_ms, "finished", "the turns asked for are wound"),)
     if state.readings_used == 0 or (started.readings_mode == "live" and state.settled_readings == 0):

@@ -322,7 +322,7 @@ class CheckTaken:
 
 @dataclass(frozen=True, slots=True)
 class ReadingTakenBack:
-    """The reading typed last was a mistake: the coil is where it was before it, with what followed from it."""
+    """The reading typed last was a mistake: it is as if neither it nor what followed had been."""
 
     kind: ClassVar[str] = "reading_taken_back"
     at_ms: int
@@ -331,12 +331,11 @@ class ReadingTakenBack:
 
 @dataclass(frozen=True, slots=True)
 class PaceAsked:
-    """Somebody wants the spindle to turn at `pace` steps/s at the most, from now on. Never more than the plan
-    has it, never less than its first turns."""
+    """Somebody wants the spindle to turn at `percent` of the planned pace at the most, from now on."""
 
     kind: ClassVar[str] = "pace_asked"
     at_ms: int
-    pace: int
+    percent: int
     by: str
 
 

@@ -46,7 +46,9 @@ from windctl.record.events import (
     HoldRequested,
     LinkLost,
     NoteMade,
+    PaceAsked,
     ReadingTaken,
+    ReadingTakenBack,
     ReadingTyped,
     Resumed,
     Spliced,
@@ -60,6 +62,7 @@ from windctl.record.events import (
 )
 from windctl.record.fitting import fit_of, kept_guide
 from windctl.record.state import Fit, State, setup_crc, touched
+from windctl.record.taking_back import kept, taken_back
 
 __all__ = ["SETTLE_TICKS", "Fit", "State", "fold", "replay", "setup_crc", "start"]
 
@@ -96,6 +99,7 @@ def fold(state: State, event: Event) -> State:
                 consented_since_greeting=False,
                 clear=None,
                 refused=None,
+                before_typed=None,
                 link_lost=None,
                 guide_known=kept_guide(state, event.identity),
             )
@@ -111,6 +115,7 @@ def fold(state: State, event: Event) -> State:
                 hands=None,
                 refused=None,
                 alarm=None,
+                before_typed=None,
             )
         case ClearGiven():
             return replace(state, clear=Permission(event.boot, event.epoch), refused=None)
@@ -153,10 +158,15 @@ def fold(state: State, event: Event) -> State:
             return _typed(state, event)
         case CheckTaken():
             checks = state.checks + (1 if event.read else 0)
-            return replace(state, check=None, checks=checks, checked_count=state.count)
+            before = state.before_typed if event.read else None
+            return replace(state, check=None, checks=checks, checked_count=state.count, before_typed=before)
+        case ReadingTakenBack():
+            return taken_back(state)
+        case PaceAsked():
+            return replace(state, pace_percent=event.percent)
         case Unwound():
             held = None if state.held is None else replace(state.held, count=event.count)
-            return replace(state, misplaced=_guided(state), held=held)
+            return replace(state, misplaced=_guided(state), held=held, before_typed=None)
         case CommandRefused():
             return _refused(state, event.refused)
         case CoilFinished():
@@ -219,11 +229,19 @@ def _corrected(state: State, event: CountCorrected) -> State:
         board_count=state.status.count if misplaced and state.status is not None else None,
         misplaced=misplaced,
         estimate=estimate,
+        before_typed=None,
     )
 
 
 def _joined(state: State, estimate: Estimate | None) -> State:
-    return replace(state, estimate=estimate, broke=None, broke_near=None, splices=state.splices + 1)
+    return replace(
+        state,
+        estimate=estimate,
+        broke=None,
+        broke_near=None,
+        splices=state.splices + 1,
+        before_typed=None,
+    )
 
 
 def _refused(state: State, refused: Refused) -> State:
@@ -314,6 +332,7 @@ def _reading(state: State, event: ReadingTaken) -> State:
             "readings_used": state.readings_used + used,
             "readings_gated": state.readings_gated + (not used),
             "settled_readings": state.settled_readings + (1 if settled and used else 0),
+            "before_typed": None if used else state.before_typed,
         },
     )
 
@@ -341,6 +360,7 @@ def _typed(state: State, event: ReadingTyped) -> State:
         settled_readings=state.settled_readings + used,
         typed=state.typed or used,
         checks=state.checks + (1 if used and state.check is None else 0),
+        before_typed=kept(state),
     )
 
 
@@ -354,4 +374,5 @@ def _link_gone(state: State) -> State:
         consented_since_greeting=False,
         clear=None,
         turning=False,
+        before_typed=None,
     )

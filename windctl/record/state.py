@@ -39,6 +39,25 @@ class Fit(Enum):
     CORRECTED = "corrected"  # the operator has told the turn: the board is to be set up for it
 
 
+@dataclass(frozen=True, slots=True)
+class Before:
+    """What a typed reading changed, as it was before it; `ticks`: the board's, when it was typed."""
+
+    ticks: int
+    estimate: Estimate | None
+    reading: CoilReading | None
+    readings_used: int
+    readings_gated: int
+    settled_readings: int
+    typed: bool
+    check: CheckAsked | None
+    checks: int
+    checked_count: int | None
+    stop_point: int | None
+    top_ups: int
+    alarm: AlarmRaised | None
+
+
 @dataclass(frozen=True)
 class State:
     """One coil as its facts tell it. `None` is "not known" throughout.
@@ -78,6 +97,8 @@ class State:
     typed: bool = False  # a reading typed since the spindle came to rest is of use
     checks: int = 0  # readings for which the coil was stopped, or the wire lay bare anyway
     checked_count: int | None = None  # where the last check was taken, or passed over
+    before_typed: Before | None = None  # while a typed reading can be taken back
+    pace_percent: int = 100  # of the planned cruising pace, that somebody wants at the most
     refused: Refused | None = None  # the last refusal since the last consent
     link_lost: LinkLost | None = None
     estimate: Estimate | None = None

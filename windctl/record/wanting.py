@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from windctl.lay.program import Place
-from windctl.plan.pace import pace_for
+from windctl.plan.pace import most_pace, pace_for
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, GuidePlace, Permission, Sampling, Segments, Wants
 from windctl.record.consent import given
@@ -46,12 +46,20 @@ def wanted(state: State) -> Wants:
         datum=datum,
         program=Segments(started.program_id, unpacked(started.program_packed)),
         armed=consent if drives_off else None,
-        pace=pace_for(started.pace, state.count, state.stop_point),
+        pace=_pace(state),
         stop_point=state.stop_point,
         go=None if drives_off else to_go,
         sampling=_sampling(state),
         clear_trip=state.clear,
     )
+
+
+def _pace(state: State) -> int:
+    """The plan's pace here, and no more than somebody asked for."""
+    assert state.started is not None
+    spec = state.started.pace
+    pace = pace_for(spec, state.count, state.stop_point)
+    return min(pace, most_pace(spec, state.pace_percent))
 
 
 def _sampling(state: State) -> Sampling | None:

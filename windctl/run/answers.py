@@ -13,17 +13,20 @@ from windctl.record.events import (
     HandsAsked,
     HoldRequested,
     NoteMade,
+    ReadingTakenBack,
     Spliced,
     WireBroke,
     WireChanged,
 )
 from windctl.record.state import State
+from windctl.run.pacing import paced
 from windctl.run.requests import (
     Broke,
     Clear,
     CountIs,
     DrivesOff,
     End,
+    Faster,
     Go,
     Hold,
     NewWire,
@@ -31,7 +34,9 @@ from windctl.run.requests import (
     Read,
     Request,
     Skip,
+    Slower,
     Splice,
+    TakeBack,
     Unwind,
 )
 from windctl.run.said import OFF, Answer
@@ -59,6 +64,12 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
             if permission is None or leaving or decision.asks != "clear":
                 return Answer()
             return Answer((ClearGiven(at_ms, permission.boot, permission.epoch, request.by),))
+        case Slower() | Faster():
+            return paced(request, state, at_ms)
+        case TakeBack():
+            if state.before_typed is None or leaving:
+                return Answer(says="there is no typed reading that could still be taken back")
+            return Answer((ReadingTakenBack(at_ms, request.by),), "the reading typed last is taken back")
         case _:
             if leaving or decision.asks not in _AT_REST or not state.in_hand or not state.let_go:
                 return Answer(says="that can be said once the coil has turns and stands")

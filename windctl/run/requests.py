@@ -109,6 +109,42 @@ class Skip:
     by: str
 
 
+@dataclass(frozen=True, slots=True)
+class TakeBack:
+    """The reading typed last was a mistake."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Slower:
+    """Somebody wants the spindle to turn a step slower."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Faster:
+    """Somebody wants the spindle to turn a step faster, at the most as the plan has it."""
+
+    by: str
+
+
 Request = (
-    Go | Hold | End | Clear | Note | DrivesOff | Broke | Splice | NewWire | CountIs | Unwind | Read | Skip
+    Go
+    | Hold
+    | End
+    | Clear
+    | Note
+    | DrivesOff
+    | Broke
+    | Splice
+    | NewWire
+    | CountIs
+    | Unwind
+    | Read
+    | Skip
+    | TakeBack
+    | Slower
+    | Faster
 )

@@ -36,6 +36,7 @@ from windctl.record.events import (
 )
 from windctl.record.events import LinkLost as LinkLostEvent
 from windctl.record.fold import Fit, State, fold
+from windctl.record.taking_back import second_thoughts
 from windctl.run.answers import answer
 from windctl.run.journal import MOST_WAITING, TOO_OLD_S, Journal
 from windctl.run.outlook import Ahead, outlook
@@ -232,6 +233,7 @@ class Runner:
             or permission is None
             or self._leaving is not None
             or state.hold is not None
+            or second_thoughts(state)
             or (state.hands is not None and state.hands.by != "windctl")  # a check is over by itself
         ):
             return ()

@@ -8,12 +8,25 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from windctl.forecast.finish import Z95, finish_at, so_far
+from windctl.plan.pace import most_pace
 from windctl.protocol.messages import Capability, Cause
 from windctl.protocol.messages import State as BoardState
 from windctl.record.decide import Decision
 from windctl.record.fold import Fit, State
 from windctl.record.program import place_at
+from windctl.record.taking_back import second_thoughts
 from windctl.run.trips import look_to
+
+
+@dataclass(frozen=True, slots=True)
+class Check:
+    """A check that is asked for: at which turn, and the finish's 95 % half-width without and with it, ohm."""
+
+    turn: float
+    without_ohm: float
+    with_ohm: float
+    contact: bool  # the board has a contact that can be touched to the wire
+    thermometer: bool  # the board knows how warm it is
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +59,9 @@ class Snapshot:
     guide_place_mm: float | None = None  # where the guide belongs at this turn, from its start
     splices: int = 0
     alarm: str = ""  # what the readings say is wrong, until somebody goes on
+    pace_percent: int = 100  # of the planned pace, that somebody wants at the most
+    check: Check | None = None  # the coil stands to be read
+    can_take_back: bool = False  # a typed reading can still be taken back
     answers: int = 0  # requests that were answered in words, and the last answer
     answer: str = ""
 
@@ -90,6 +106,23 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         guide_place_mm=_guide_place(state, steps_per_mm) if decision.asks == "place" else None,
         splices=state.splices,
         alarm=state.alarm.text if state.alarm else "",
+        pace_percent=state.pace_percent,
+        check=_check(state),
+        can_take_back=state.before_typed is not None and state.finished is None,
+    )
+
+
+def _check(state: State) -> Check | None:
+    asked, identity = state.check, state.identity
+    if asked is None or identity is None:
+        return None
+    has = identity.capabilities
+    return Check(
+        turn=asked.turn,
+        without_ohm=Z95 * asked.without_ohm,
+        with_ohm=Z95 * asked.with_ohm,
+        contact=bool(has & Capability.CONTACT),
+        thermometer=bool(has & Capability.THERMOMETER),
     )
 
 
@@ -146,6 +179,8 @@ def _says_held(state: State, decision: Decision) -> str:
         return "the board no longer knows where the coil stands"
     if state.check is not None:
         return _says_check(state)
+    if second_thoughts(state) and decision.asks is None:
+        return "the reading counts in a moment; undo takes it back"
     if state.hands is not None:
         off = "drives off, hands may go in" if state.drives_off else "switching the drives off"
         if state.hands.by == "windctl" and state.checked_count == state.count:
@@ -195,5 +230,6 @@ def _seconds_left(state: State, stop: float | None, turns_per_s: float) -> float
     pace, cpt, spt = started.pace, state.counts_per_turn, started.setup.steps_per_turn
     left = max(0.0, stop - state.turns)
     slow = min(left, pace.finish_counts / cpt)
-    cruise_tps = max(turns_per_s, pace.cruise_pace / spt) if left > slow else turns_per_s
-    return (left - slow) / cruise_tps + slow * spt / pace.finish_pace
+    most = most_pace(pace, state.pace_percent)
+    cruise_tps = max(turns_per_s, most / spt) if left > slow else turns_per_s
+    return (left - slow) / cruise_tps + slow * spt / min(pace.finish_pace, most)

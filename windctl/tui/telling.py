@@ -22,6 +22,8 @@ from windctl.record.events import (
     HoldRequested,
     LinkLost,
     NoteMade,
+    PaceAsked,
+    ReadingTakenBack,
     ReadingTyped,
     Resumed,
     Spliced,
@@ -90,6 +92,10 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
         case ReadingTyped():
             read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C".replace("kohm", "kΩ").replace("ohm", "Ω")
             return f"read at turn {grouped(event.turn)} by {_by(event.by)}: {read}"
+        case ReadingTakenBack():
+            return f"the reading typed last is taken back by {_by(event.by)}"
+        case PaceAsked():
+            return f"at most {event.percent} % of the planned pace, asked for by {_by(event.by)}"
         case CheckTaken():
             how = f"read by {'the contact' if event.by == 'contact' else _by(event.by)}"
             return f"check at turn {grouped(event.turn)}: {how if event.read else 'passed over'}"
