@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
-from windctl.recipe.tables import Bobbin
+if TYPE_CHECKING:
+    from windctl.recipe.tables import Bobbin
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,17 +58,26 @@ class Core:
 
 
 def core_of(bobbin: Bobbin) -> Core:
-    """The core of a recipe's bobbin. A measured perimeter wins: the outline of the given length, width and
+    """The core of a recipe's bobbin."""
+    return core_from(
+        bobbin.core_length_mm, bobbin.core_width_mm, bobbin.corner_radius_mm, bobbin.core_perimeter_mm
+    )
+
+
+def core_from(
+    length_mm: float, width_mm: float, corner_radius_mm: float, perimeter_mm: float | None = None
+) -> Core:
+    """A core from its dimensions. A measured perimeter wins: the outline of the given length, width and
     corners is grown (or shrunk) evenly until it has that perimeter. Where shrinking uses up the corners'
     radius the straight parts shrink instead, in proportion.
     """
-    half_long = bobbin.core_length_mm / 2 - bobbin.corner_radius_mm
-    half_short = max(bobbin.core_width_mm / 2 - bobbin.corner_radius_mm, 0.0)
-    drawn = Core(half_long, half_short, bobbin.corner_radius_mm)
-    if bobbin.core_perimeter_mm is None:
+    half_long = length_mm / 2 - corner_radius_mm
+    half_short = max(width_mm / 2 - corner_radius_mm, 0.0)
+    drawn = Core(half_long, half_short, corner_radius_mm)
+    if perimeter_mm is None:
         return drawn
-    radius = drawn.radius_mm + (bobbin.core_perimeter_mm - drawn.perimeter_mm) / (2 * math.pi)
+    radius = drawn.radius_mm + (perimeter_mm - drawn.perimeter_mm) / (2 * math.pi)
     if radius >= 0:
         return Core(half_long, half_short, radius)
-    shrink = bobbin.core_perimeter_mm / (4 * (half_long + half_short))
+    shrink = perimeter_mm / (4 * (half_long + half_short))
     return Core(half_long * shrink, half_short * shrink, 0.0)
