@@ -29,6 +29,7 @@ class SpoolState:
     insulation: str
     notes: str
     nominal_ohm_per_m: float
+    nominal_ohm_per_m_sd: float
     ohm_per_m: float
     ohm_per_m_sd: float
     coils: int
@@ -122,6 +123,7 @@ def _state(record: SpoolRecord, lessons: Collection[CoilLesson], learnt: Experie
         insulation=spool.insulation or "",
         notes=record.added.notes,
         nominal_ohm_per_m=wire.ohm_per_m,
+        nominal_ohm_per_m_sd=wire.ohm_per_m_sd,
         ohm_per_m=ohm_per_m,
         ohm_per_m_sd=sd,
         coils=len(own),

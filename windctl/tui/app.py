@@ -17,7 +17,7 @@ from windctl.tui import keymap
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.help import Help
 from windctl.tui.keymap import key
-from windctl.tui.screens.coils import CoilsScreen
+from windctl.tui.screens import rooms
 from windctl.tui.screens.recipes import RecipesScreen
 from windctl.tui.theme import DARK, LIGHT
 from windctl.tui.urgent import Held, with_urgent_keys
@@ -47,6 +47,7 @@ class WindctlApp(App[int], inherit_bindings=False):
         key("help", show=True),
         key("recipes", show=False),
         key("coils"),
+        key("spools", show=False),
         key("light", show=False),
         key("quit", show=False),
         key("leave", show=False),
@@ -109,13 +110,17 @@ class WindctlApp(App[int], inherit_bindings=False):
 
     def action_room(self, name: str) -> None:
         """Go to another room; a coil being wound stays where it is beneath."""
-        if name == "coils":
-            if not isinstance(self.screen, CoilsScreen):
-                self.push_screen(CoilsScreen(self.session))
-        elif self.session.run is not None:
-            self.notify("a coil is on the machine: first finish it or leave it open", markup=False)
-        else:
-            self.pop_to_recipes()
+        if name == "recipes":
+            if self.session.run is not None:
+                self.notify("a coil is on the machine: first finish it or leave it open", markup=False)
+            else:
+                self.pop_to_recipes()
+            return
+        kind = rooms.room_of(name)
+        while not isinstance(self.screen, kind) and isinstance(self.screen, rooms.Between):
+            self.pop_screen()
+        if not isinstance(self.screen, kind):
+            self.push_screen(kind(self.session))
 
     def pop_to_recipes(self) -> None:
         """Back to the first room."""
@@ -135,7 +140,8 @@ class WindctlApp(App[int], inherit_bindings=False):
         """What the command palette offers besides the screen's own keys."""
         yield SystemCommand("Hold", "the spindle stands; F8 does it everywhere", self.hold_at_once)
         yield SystemCommand("Recipes", "choose what to wind", lambda: self.action_room("recipes"))
-        yield SystemCommand("Coils", "what was wound", lambda: self.action_room("coils"))
+        for name, words in rooms.ABOUT.items():
+            yield SystemCommand(name.capitalize(), words, lambda name=name: self.action_room(name))
         yield SystemCommand("Help", "what this screen is for, and its keys", self.action_help)
         yield SystemCommand("Light or dark", "change the colours", self.action_switch_light)
         yield SystemCommand("Picture of this screen", "as an SVG file beside you", self._picture)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from windctl.desk.numbers import duration, grouped, ohm, turns
+from windctl.desk.numbers import counted, duration, grouped, ohm, turns
 from windctl.recipe.orientation import Orientation, orientation
 
 if TYPE_CHECKING:
@@ -19,9 +19,8 @@ _Z95 = 1.959964
 def figures_of(plan: Plan) -> tuple[tuple[str, str], ...]:
     """The plan in a few rows."""
     resistance = ohm(plan.dcr_20c_ohm, _Z95 * plan.dcr_sd_ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
-    spool = [("spool", plan.learnt.spool)] if plan.learnt.spool else []
     return (
-        *spool,
+        ("spool", _spool(plan)),
         ("turns", turns(plan.turns, _Z95 * plan.turns_sd).removesuffix(" turns")),
         ("resistance", f"{resistance} at 20 °C"),
         ("wire", f"{grouped(plan.wire_length_m)} m, {plan.wire_mass_g:.1f} g"),
@@ -30,6 +29,15 @@ def figures_of(plan: Plan) -> tuple[tuple[str, str], ...]:
         ("wire speed", f"{plan.wire_speed_mean_m_s:.1f} m/s, peaks of {plan.wire_speed_peak_m_s:.1f}"),
         ("program", f"{grouped(plan.program.segments)} segments, {plan.program.digest[:8]}"),
     )
+
+
+def _spool(plan: Plan) -> str:
+    learnt = plan.learnt
+    if not learnt.spool:
+        return "none is named: F7 takes one"
+    left = "" if learnt.left is None else f", {grouped(max(learnt.left.metres, 0.0))} m left"
+    coils = f", {counted(learnt.spool_coils, 'coil')} taught" if learnt.spool_coils else ""
+    return f"{learnt.spool}{left}{coils}"
 
 
 def orientation_of(recipe: Recipe) -> Orientation:

@@ -16,10 +16,11 @@ KEPT = (HOLD_KEY, SPACE)  # no other command may take these
 
 _KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
     "help": ("f1", "help", "Help"),
-    "recipes": ("f2", "room('recipes')", "Recipes"),
-    "coils": ("f3", "room('coils')", "Coils"),
+    "recipes": ("f2", "app.room('recipes')", "Recipes"),
+    "coils": ("f3", "app.room('coils')", "Coils"),
     "commands": ("f4", "command_palette", "All commands"),
     "light": ("f6", "switch_light", "Light or dark"),
+    "spools": ("f7", "app.room('spools')", "Spools"),
     "quit": ("f10", "leave", "Leave"),
     "leave": ("ctrl+c", "leave", "Leave"),
     "wind.go": ("g", "go", "Go"),
@@ -40,6 +41,10 @@ _KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
     "coils.filter": ("f", "filter", "Filter"),
     "coil.verify": ("v", "verify", "Verify"),
     "coil.export": ("x", "export", "Export"),
+    "spools.take": ("enter", "take", "For the next coils"),
+    "spools.add": ("a", "add", "Add"),
+    "spools.weigh": ("g", "weigh", "Weigh"),
+    "spools.measure": ("m", "measure", "Measure a piece"),
     "back": ("escape", "back", "Back"),
 }
 

@@ -29,6 +29,7 @@ if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
     from windctl.book.verify import VerifyReport
     from windctl.desk.bench import Bench
+    from windctl.desk.spools import SpoolState
     from windctl.plan.experience.supply import Supply
     from windctl.plan.growth import Growth
     from windctl.profile.model import MachineProfile
@@ -117,6 +118,22 @@ class Session:
             return supply_of(self.shared, self.profile, recipe, simulated=self.simulated)
 
         return recipes.preview(one, self.profile, supply_for)
+
+    @property
+    def spool(self) -> str | None:
+        """The spool that the next coils are wound from, if one is named."""
+        return self.shared.spool
+
+    def take_spool(self, name: str | None) -> None:
+        """Wind the next coils from this spool, or from none that is named."""
+        self.shared = replace(self.shared, spool=name)
+
+    def spools(self) -> tuple[SpoolState, ...]:
+        """All spools in the book, in order of their names."""
+        from windctl.desk.spools import states_of
+
+        with self._book() as book:
+            return () if book is None else states_of(book)
 
     def last_of(self, recipe: str) -> CoilHead | None:
         """The coil of this recipe that was begun last."""

@@ -70,6 +70,26 @@ class BeforeScreen(Room):
         self.compare()
         self._say(False)
 
+    def on_screen_resume(self) -> None:
+        """Back from the spools, another one may have been taken: then it is another coil."""
+        if (self.session.spool or "") != self.preview.supply.id and not self._opening:
+            self.replan()
+
+    @work(thread=True, exclusive=True, group="plan")
+    def replan(self) -> None:
+        """The same recipe with the wire that is taken now."""
+        self.app.call_from_thread(self.planned, self.session.preview(self.preview.listed))
+
+    def planned(self, made: Preview | str) -> None:
+        """Show the other coil, or say why there is none."""
+        if isinstance(made, str):
+            self.app.pop_screen()
+            self.app.push_screen(Say("It cannot be wound so", made))
+            return
+        self.preview = made
+        self.query_one(Figures).show(figures_of(made.plan))
+        self.compare()
+
     @work(thread=True, group="compare")
     def compare(self) -> None:
         """What this coil repeats."""

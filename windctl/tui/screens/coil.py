@@ -15,7 +15,7 @@ from windctl.desk.numbers import ohm, turns
 from windctl.errors import WindctlError
 from windctl.tui.keymap import key
 from windctl.tui.looks import OUTCOMES, VERDICTS
-from windctl.tui.screens.room import Room
+from windctl.tui.screens.between import Between
 from windctl.tui.view import target_text
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
@@ -25,11 +25,11 @@ if TYPE_CHECKING:
     from windctl.tui.session import Session, Told
 
 
-class CoilScreen(Room):
+class CoilScreen(Between):
     """V checks the record against its digests; X writes it out."""
 
     ABOUT = "One coil as its record tells it. V verifies the record, X writes all of it beside you as JSON."
-    BINDINGS: ClassVar[list[BindingType]] = [key("coil.verify"), key("coil.export"), key("back")]
+    BINDINGS: ClassVar[list[BindingType]] = [key("coil.verify"), key("coil.export")]
 
     def __init__(self, session: Session, number: str) -> None:
         super().__init__(session)
@@ -105,10 +105,6 @@ class CoilScreen(Room):
         except (WindctlError, OSError) as error:
             words = f"✖ not written: {error}"
         self.app.call_from_thread(self.answer, words)
-
-    def action_back(self) -> None:
-        """Where one came from."""
-        self.app.pop_screen()
 
 
 def verified(report: VerifyReport) -> str:

@@ -15,8 +15,8 @@ from windctl.errors import WindctlError
 from windctl.tui.keymap import key
 from windctl.tui.looks import OUTCOMES, VERDICTS
 from windctl.tui.page import Page
+from windctl.tui.screens.between import Between
 from windctl.tui.screens.coil import CoilScreen
-from windctl.tui.screens.room import Room
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
@@ -25,7 +25,7 @@ if TYPE_CHECKING:
 FILTERS = (None, "finished", "open", "stopped", "tripped")
 
 
-class CoilsScreen(Room):
+class CoilsScreen(Between):
     """A hundred coils a page; the book sorts and filters."""
 
     ABOUT = "Every coil in the book, the latest first. Enter shows one, F filters by how they ended."
@@ -33,7 +33,6 @@ class CoilsScreen(Room):
         key("coils.newer"),
         key("coils.older"),
         key("coils.filter"),
-        key("back"),
     ]
 
     def __init__(self, session: Session) -> None:
@@ -103,10 +102,6 @@ class CoilsScreen(Room):
         """One coil."""
         if event.row_key.value is not None:
             self.app.push_screen(CoilScreen(self.session, event.row_key.value))
-
-    def action_back(self) -> None:
-        """Where one came from."""
-        self.app.pop_screen()
 
 
 def cells(head: CoilHead) -> tuple[str, ...]:

@@ -47,6 +47,8 @@ class RecipesScreen(Room):
         key("recipes.wind"),
         key("recipes.resume"),
         key("recipes.reload", show=False),
+        key("coils"),
+        key("spools"),
     ]
 
     def heading(self) -> str:
@@ -77,8 +79,11 @@ class RecipesScreen(Room):
         self.action_reload()
 
     def on_screen_resume(self) -> None:
-        """Back from a coil: another may be open now."""
+        """Back from a coil or a room: another may be open now, and the wire may be another."""
         self.find_open()
+        at = self.query_one("#recipe-list", OptionList).highlighted
+        if at is not None and at < len(self.recipes):
+            self.plan(self.recipes[at])
 
     # ------------------------------------------------------------ looking
 
