@@ -78,7 +78,7 @@ async def to_the_machine(app: WindctlApp, pilot: Pilot[int]) -> None:
     await until(pilot, lambda: room.chosen is not None)
     assert NAME in shown(app)
     await press(pilot, "enter")
-    await until(pilot, lambda: isinstance(app.screen, BeforeScreen))
+    await until(pilot, lambda: isinstance(app.screen, BeforeScreen) and bool(app.screen.query(Checklist)))
     checklist = app.screen.query_one(Checklist)
     await press(pilot, "s")
     await pilot.pause()
