@@ -60,6 +60,7 @@ class SerialPort:
         trace: LineTrace | None = None,
     ) -> None:
         self.url = url
+        self._is_socket = url.startswith("socket://")
         self._trace = trace
         self._lost: str | None = None
         self._lock = PortLock(url, coil=coil, folder=lock_folder)
@@ -79,7 +80,10 @@ class SerialPort:
             if line.timeout != max_wait_s:  # setting it costs several system calls
                 line.timeout = max_wait_s
             got = bytearray(line.read(1))
-            while got and len(got) < READ_LIMIT and (waiting := line.in_waiting):
+            if got and self._is_socket:  # which says of any number of bytes that one is waiting
+                line.timeout = 0
+                got += line.read(READ_LIMIT - 1)
+            while got and not self._is_socket and len(got) < READ_LIMIT and (waiting := line.in_waiting):
                 got += line.read(min(waiting, READ_LIMIT - len(got)))
         data = bytes(got)
         if data and self._trace is not None:

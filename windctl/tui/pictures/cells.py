@@ -6,6 +6,7 @@ An ink is a role's name, or a number from 0 to 1: the shade of wire by its turn,
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import lru_cache
 from typing import NamedTuple
 
 Ink = str | float | None
@@ -20,6 +21,13 @@ class Cell(NamedTuple):
 
 
 BLANK = Cell()
+
+
+@lru_cache(maxsize=4096)
+def cell(char: str, ink: Ink = None, paper: Ink = None) -> Cell:
+    """A cell that is made once: text is drawn ten times a second, and most of it is the same."""
+    return Cell(char, ink, paper)
+
 
 Picture = list[list[Cell]]
 
@@ -36,7 +44,7 @@ def put(picture: Picture, row: int, column: int, text: str, ink: Ink = None) -> 
     line = picture[row]
     for place, char in enumerate(text, column):
         if 0 <= place < len(line):
-            line[place] = Cell(char, ink, line[place].paper)
+            line[place] = cell(char, ink, line[place].paper)
 
 
 def texts(picture: Sequence[Sequence[Cell]]) -> list[str]:

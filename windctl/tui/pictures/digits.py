@@ -40,9 +40,8 @@ def big_digits(text: str, height: int, most: int = 1_000) -> list[str]:
     wide = digit_width(height)
     while wide > 5 and _width(text, wide) > most:
         wide -= 1
-    glyphs = [_glyph(char, tall, wide) for char in text]
-    joined = [(" " * _GAP).join(glyph[row] for glyph in glyphs) for row in range(tall)]
-    return halves(joined)
+    glyphs = [_halved(char, tall, wide) for char in text]
+    return [(" " * _GAP).join(glyph[row] for glyph in glyphs) for row in range(height)]
 
 
 def _width(text: str, wide: int) -> int:
@@ -50,6 +49,10 @@ def _width(text: str, wide: int) -> int:
 
 
 @lru_cache(maxsize=128)
+def _halved(char: str, tall: int, wide: int) -> list[str]:
+    return halves(_glyph(char, tall, wide))
+
+
 def _glyph(char: str, tall: int, wide: int) -> list[str]:
     if char == " ":
         return [" " * 2] * tall

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from rich.segment import Segment
 from rich.style import Style
 from textual.geometry import Region
@@ -36,12 +38,8 @@ class Drawing(Widget):
         changed = []
         for row, (was, now) in enumerate(zip(before, self._picture, strict=True)):
             if was != now:
-                columns = [
-                    place
-                    for place in range(max(len(was), len(now)))
-                    if was[place : place + 1] != now[place : place + 1]
-                ]
-                changed.append(Region(columns[0], row, columns[-1] - columns[0] + 1, 1))
+                first, last = _between(was, now)
+                changed.append(Region(first, row, last - first + 1, 1))
         if changed:
             self.refresh(*changed)
 
@@ -79,6 +77,15 @@ class Drawing(Widget):
             ink, paper = (colour_of(one, variables) for one in inks)
             style = self._styles[inks] = self.rich_style + Style(color=ink, bgcolor=paper)
         return style
+
+
+def _between(was: Sequence[Cell], now: Sequence[Cell]) -> tuple[int, int]:
+    """The first and the last column in which two rows that differ do so."""
+    most = min(len(was), len(now))
+    first = next((place for place in range(most) if was[place] != now[place]), most)
+    if len(was) != len(now):
+        return first, max(len(was), len(now)) - 1
+    return first, next(place for place in range(most - 1, -1, -1) if was[place] != now[place])
 
 
 def row_of(text: str, ink: Ink, paper: Ink, width: int) -> list[Cell]:
