@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import signal
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -14,6 +15,10 @@ import pytest
 hypothesis.settings.register_profile("windctl", deadline=None)
 hypothesis.settings.register_profile("ci", deadline=None, derandomize=True, print_blob=True)
 hypothesis.settings.load_profile("ci" if os.environ.get("CI") else "windctl")
+
+# A shell that starts the tests in the background has them ignore Ctrl-C, and so would each windctl they start.
+if signal.getsignal(signal.SIGINT) is signal.SIG_IGN:
+    signal.signal(signal.SIGINT, signal.default_int_handler)
 
 OUTER_ENVIRONMENT = dict(os.environ)  # before any test's own; for what must run as the person outside does
 
