@@ -16,7 +16,7 @@ hypothesis.settings.register_profile("windctl", deadline=None)
 hypothesis.settings.register_profile("ci", deadline=None, derandomize=True, print_blob=True)
 hypothesis.settings.load_profile("ci" if os.environ.get("CI") else "windctl")
 
-# A shell that starts the tests in the background has them ignore Ctrl-C, and so would each windctl they start.
+# A shell that starts the tests in the background has them ignore Ctrl-C, and so would each windctl of theirs.
 if signal.getsignal(signal.SIGINT) is signal.SIG_IGN:
     signal.signal(signal.SIGINT, signal.default_int_handler)
 
