@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any, Final
 
 from tests.firmware.build import MissingTool
+from tests.firmware.chip_receive import receive_buffer
 
 HZ: Final = 16_000_000
 CYCLES_PER_TICK: Final = HZ // 1000
@@ -99,7 +100,7 @@ class Chip:
             name: device.find_pin(pin) for name, pin in (INPUT_PINS | OUTPUT_PINS | ANALOG_PINS).items()
         }
         self._uart = core.IOCTL_UART("0")
-        self.overruns = 0
+        self._received = receive_buffer(core, device)
         self._on_byte: Callable[[int], None] = lambda byte: None
         self._connect(self._uart, self._serial)
         self._paint()
@@ -155,9 +156,15 @@ class Chip:
         self._hooks.append(hook)
         self._pins[name].signal().connect(hook)
 
+    @property
+    def overruns(self) -> int:
+        """Bytes that came while two others were waiting in the receiver."""
+        return int(self._received.overruns)
+
     def send(self, data: bytes) -> None:
         """Bytes onto the chip's receive line, one after the other at its own rate."""
         for byte in data:
+            self._received.coming.append(byte)
             request = self._core.ctlreq_data_t()
             request.data = self._core.vardata_t(bytes((byte,)))
             ok, _ = self._device.ctlreq(self._uart, self._core.CTLREQ_USART_BYTES, request)
@@ -171,8 +178,8 @@ class Chip:
         signals = self._core.UART.SignalId
         if data.sigid == signals.TX_Data:
             self._on_byte(data.data.value())
-        elif data.sigid == signals.RX_Overflow:
-            self.overruns += 1
+        elif data.sigid == signals.RX_Complete:
+            self._received.complete(taken=bool(data.data.value()))
 
     def _connect(self, peripheral: Any, call: Callable[[Any, int], None]) -> None:
         ok, request = self._device.ctlreq(peripheral, self._core.CTLREQ_GET_SIGNAL)

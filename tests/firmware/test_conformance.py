@@ -20,7 +20,7 @@ from tests.firmware.conformance.benches import rig_of, spec, twin
 from tests.firmware.conformance.clause import NOT_ON_THE_LINE, Clause
 from tests.firmware.conformance.machine import Machine
 from tests.firmware.conformance.rig import Rig
-from tests.firmware.conformance.run import Finding, Verdict, clauses, judge, judge_all
+from tests.firmware.conformance.run import Finding, Verdict, clauses, judge_all
 from tests.firmware.host_board import HostBoard
 from windctl.machine.virtual import board_commands
 from windctl.machine.virtual.board import EVERYTHING, Board
@@ -68,25 +68,24 @@ def test_the_core_in_c_holds_every_clause(cc: str) -> None:
     assert not_holding(judge_all(rig_of(HostBoard()), clauses())) == []
 
 
-def on_fresh_chips(elf: Path, chosen: list[Clause]) -> list[Finding]:
-    """Each clause on a chip just started."""
-    findings = []
-    for one in chosen:
-        bench = ChipBench(elf, Plant(spec(), 1))
-        rig = Rig(VirtualPort(cast("Any", bench)), Machine(), PlantHands(bench.plant, bench.brown_out))
-        findings.append(judge(rig, one))
+def on_one_chip(elf: Path, chosen: list[Clause]) -> list[Finding]:
+    """All on the same chip, which starts anew only where a clause asks for it."""
+    bench = ChipBench(elf, Plant(spec(), 1))
+    rig = Rig(VirtualPort(cast("Any", bench)), Machine(), PlantHands(bench.plant, bench.brown_out))
+    findings = judge_all(rig, chosen)
+    assert bench.chip.overruns == bench.chip.peek("line_overruns") == 0
     return findings
 
 
 def test_the_emulated_chip_holds_the_clauses_of_frames_and_trips(chip: Callable[..., Path]) -> None:
     chosen = [one for one in clauses() if one.section == 3 or (one.section == 9 and one.hand)]
     assert len(chosen) >= 10
-    assert not_holding(on_fresh_chips(chip(), chosen)) == []
+    assert not_holding(on_one_chip(chip(), chosen)) == []
 
 
 @pytest.mark.long
 def test_the_emulated_chip_holds_every_clause(chip: Callable[..., Path]) -> None:
-    assert not_holding(on_fresh_chips(chip(), clauses())) == []
+    assert not_holding(on_one_chip(chip(), clauses())) == []
 
 
 def test_a_board_that_only_counts_is_judged_by_what_it_has() -> None:

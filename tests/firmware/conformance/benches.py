@@ -7,7 +7,7 @@ from typing import Any, cast
 from tests.firmware.conformance.bench_hands import PlantHands
 from tests.firmware.conformance.machine import Machine
 from tests.firmware.conformance.rig import Rig
-from windctl.cli.machine import ORDINARY
+from windctl.desk.ordinary import ORDINARY
 from windctl.machine.virtual.bench import Bench
 from windctl.machine.virtual.board import EVERYTHING, Board
 from windctl.machine.virtual.plant import Plant
