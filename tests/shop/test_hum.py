@@ -1,4 +1,4 @@
-"""Hum picked up and hum left, against published levels, a statistics library and fields worked out by hand."""
+"""Hum picked up and hum left, against published levels, a statistics library and textbook fields."""
 
 from __future__ import annotations
 

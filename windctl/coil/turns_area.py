@@ -35,7 +35,7 @@ _BOW_OWN = 0.8
 
 
 def mean_area_mm2(core: Core, growth_mm: float, third: float = 1.0, bow: float = 0.0) -> float:
-    """Mean enclosed area of a turn, mm2: `growth_mm` is G, `third` q, `bow` how much the long sides stand off."""
+    """Mean enclosed area of a turn, mm2, from G, q and how much more the long sides build up."""
     flat = core.area_mm2 + core.perimeter_mm * growth_mm / 2 + third * math.pi * growth_mm**2 / 3
     return flat + 2 / 3 * core.straight_mm * bow * growth_mm
 
