@@ -2,6 +2,7 @@
 
     WindctlError
     ├── UsageError            the options contradict each other or something needed is missing   exit 2
+    │   └── QueryError        a query for coils says something that cannot be looked for
     ├── FileInvalid           a recipe, profile or readings file has problems; carries them all  exit 3
     │   ├── RecipeError
     │   ├── ProfileError
@@ -29,6 +30,15 @@ class WindctlError(Exception):
 
 class UsageError(WindctlError):
     """What was asked for contradicts itself or lacks something that only the operator can give."""
+
+
+class QueryError(UsageError):
+    """A query cannot be understood. `at`: the place in its text, from 0; the message counts from 1."""
+
+    def __init__(self, what: str, at: int) -> None:
+        self.what = what
+        self.at = at
+        super().__init__(f"the query, at character {at + 1}: {what}")
 
 
 @dataclass(frozen=True)

@@ -12,17 +12,19 @@ import sqlalchemy as sa
 from sqlalchemy.dialects import postgresql
 from sqlalchemy.schema import CreateIndex, CreateTable
 
-from tests.book.samples import ENDED, files_beside, wind
+from tests.book.samples import ENDED, files_beside, finished, packed, seal, wind
 from windctl.book.book import Book
-from windctl.book.ledger import APPLICATION_ID, FIRST, STEPS, Step, bring_up, names
+from windctl.book.ledger import APPLICATION_ID, STEPS, Step, bring_up, names
 from windctl.book.open import open_book
 from windctl.book.store import Store
 from windctl.book.tables import metadata
 from windctl.errors import BookError
 from windctl.record.addenda import CoilNoted
+from windctl.record.events import NoteMade
 
-SCHEMA_1 = Path(__file__).with_name("schema_1.sql")
-SCHEMA_2 = Path(__file__).with_name("schema_2.sql")
+HERE = Path(__file__).parent
+NEWEST = 3
+NEXT = NEWEST + 1
 
 
 def add_shelf(connection: sa.Connection) -> None:
@@ -36,7 +38,7 @@ def fail_half_way(connection: sa.Connection) -> None:
     connection.exec_driver_sql("ALTER TABLE absent ADD COLUMN shelf TEXT")
 
 
-LATER = (*STEPS, Step(3, "a shelf for each coil", add_shelf))
+LATER = (*STEPS, Step(NEXT, "a shelf for each coil", add_shelf))
 
 
 def schema(path: Path) -> str:
@@ -52,27 +54,63 @@ def ledger_of(path: Path) -> list[tuple[int, str]]:
         return connection.execute("SELECT version, name FROM ledger ORDER BY version").fetchall()
 
 
-def test_the_tables_of_schema_2_are_what_they_always_were(book: Book, path: Path) -> None:
-    """Books with them exist. To change a table, append a step to the ledger and add a schema file."""
-    assert schema(path) == SCHEMA_2.read_text(encoding="utf-8")
-    assert ledger_of(path) == [(1, "coils, entries, curve"), (2, "logs, log_entries")] == names()
+def statements(schema_number: int) -> str:
+    """What made the tables of a schema."""
+    return (HERE / f"schema_{schema_number}.sql").read_text(encoding="utf-8")
 
 
-def test_a_book_of_schema_1_becomes_one_of_schema_2(path: Path) -> None:
-    """With a coil in it that was wound before there were logs."""
+def shape(path: Path) -> dict[str, list[tuple[object, ...]]]:
+    """What SQLite says of a file's tables and indexes, however they came about."""
+    seen: dict[str, list[tuple[object, ...]]] = {}
     with closing(sqlite3.connect(path)) as connection:
-        connection.executescript(SCHEMA_1.read_text(encoding="utf-8"))
-        connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
-        connection.execute("INSERT INTO ledger VALUES (1, ?)", [FIRST])
-        connection.commit()
-    with pytest.raises(BookError, match="must be brought to 2 first"):
+        for kind, name in connection.execute("SELECT type, name FROM sqlite_schema").fetchall():
+            about = ("index_xinfo",) if kind == "index" else ("table_xinfo", "foreign_key_list")
+            for pragma in about:
+                seen[f"{name} {pragma}"] = connection.execute(f"PRAGMA {pragma}({name!r})").fetchall()
+    return seen
+
+
+def old_book(path: Path, schema_number: int) -> None:
+    """A book as the version of windctl wrote it that had this schema: two closed coils and an open one."""
+    with closing(sqlite3.connect(path)) as connection:
+        connection.executescript((HERE / f"book_of_schema_{schema_number}.sql").read_text(encoding="utf-8"))
+
+
+def test_the_tables_of_the_newest_schema_are_what_they_always_were(book: Book, path: Path) -> None:
+    """Books with them exist. To change a table, append a step to the ledger and add a schema file."""
+    assert schema(path) == statements(NEWEST)
+    assert ledger_of(path) == names()
+    assert names() == [(1, "coils, entries, curve"), (2, "logs, log_entries"), (3, "coils: spool, words")]
+
+
+@pytest.mark.parametrize("old", [1, 2])
+def test_a_book_of_an_older_schema_is_brought_up_with_all_that_is_in_it(
+    path: Path, tmp_path: Path, old: int
+) -> None:
+    old_book(path, old)
+    assert schema(path) == statements(old)
+    with pytest.raises(BookError, match=f"must be brought to {NEWEST} first"):
         open_book(path, readonly=True)
-    with open_book(path) as old:
-        head = wind(old, 1, turns=2)
-        old.amend(head.number, CoilNoted(ENDED, "Demo Winder", "brought along"))
-        assert old.verify().good
-    assert schema(path) == SCHEMA_2.read_text(encoding="utf-8")
-    assert path.with_name("shop.book.before-2").exists()
+    assert schema(path) == statements(old)
+    with open_book(path) as book:
+        assert book.verify().broken == ()
+        assert ledger_of(path) == names()
+        assert [head.number for head in book.list("spool:s1")] == ["b1-2026-0001"]
+        assert [head.number for head in book.list('"SPLICE-free"')] == ["b2-2026-0001", "b1-2026-0001"]
+        later = {2: ["b1-2026-0001"], 1: []}[old]
+        assert [head.number for head in book.list('note:"was damp" GRÖSSER')] == later
+        book.amend("b1-2026-0001", CoilNoted(ENDED, "Demo Winder", "brought along"))
+        assert [head.number for head in book.list('"brought along"')] == ["b1-2026-0001"]
+        with book.reopen("b1-2026-0002") as writer:
+            writer.commit(packed([NoteMade(0, "goes on", "Demo Winder"), finished(1)]))
+            seal(book, writer)
+        assert book.verify().broken == ()
+    new = tmp_path / "new.book"
+    open_book(new).close()
+    assert shape(path) == shape(new)
+    steps = range(old + 1, NEWEST + 1)
+    assert files_beside(path) == sorted(["new.book", *(f"shop.book.before-{step}" for step in steps)])
+    assert schema(path.with_name(f"shop.book.before-{old + 1}")) == statements(old)
 
 
 def test_a_book_says_what_it_is(book: Book, path: Path) -> None:
@@ -88,9 +126,9 @@ def test_an_older_book_is_backed_up_and_taken_forward(book: Book, path: Path) ->
     (backup,) = bring_up(store, LATER)
     assert bring_up(store, LATER) == []
     store.close()
-    assert ledger_of(path) == [*names(), (3, "a shelf for each coil")]
-    assert backup == path.with_name("shop.book.before-3")
-    assert files_beside(path) == ["shop.book.before-3"]
+    assert ledger_of(path) == [*names(), (NEXT, "a shelf for each coil")]
+    assert backup == path.with_name("shop.book.before-4")
+    assert files_beside(path) == ["shop.book.before-4"]
     assert ledger_of(backup) == names()
     assert len(backup.read_bytes()) == len(before)
     with open_book(backup, create=False) as old:
@@ -101,11 +139,11 @@ def test_an_older_book_is_backed_up_and_taken_forward(book: Book, path: Path) ->
 
 
 def test_a_backup_never_replaces_another(book: Book, path: Path) -> None:
-    path.with_name("shop.book.before-3").write_bytes(b"kept")
+    path.with_name("shop.book.before-4").write_bytes(b"kept")
     store = Store(path, "rw")
-    assert bring_up(store, LATER) == [path.with_name("shop.book.before-3-2")]
+    assert bring_up(store, LATER) == [path.with_name("shop.book.before-4-2")]
     store.close()
-    assert path.with_name("shop.book.before-3").read_bytes() == b"kept"
+    assert path.with_name("shop.book.before-4").read_bytes() == b"kept"
 
 
 def test_a_step_that_fails_leaves_the_book_as_it_was(book: Book, path: Path) -> None:
@@ -113,7 +151,7 @@ def test_a_step_that_fails_leaves_the_book_as_it_was(book: Book, path: Path) -> 
     before = schema(path)
     store = Store(path, "rw")
     with pytest.raises(BookError, match="no such table: absent"):
-        bring_up(store, (*STEPS, Step(3, "breaks", fail_half_way)))
+        bring_up(store, (*STEPS, Step(NEXT, "breaks", fail_half_way)))
     assert (schema(path), ledger_of(path)) == (before, names())
     assert book.verify().good
     assert bring_up(store, LATER)
@@ -135,8 +173,8 @@ def test_of_two_that_open_an_older_book_at_once_one_takes_the_step(book: Book, p
         thread.start()
     for thread in threads:
         thread.join()
-    assert backups == [path.with_name("shop.book.before-3")]
-    assert ledger_of(path) == [*names(), (3, "a shelf for each coil")]
+    assert backups == [path.with_name("shop.book.before-4")]
+    assert ledger_of(path) == [*names(), (NEXT, "a shelf for each coil")]
 
 
 def test_two_that_make_a_book_at_once_make_one(path: Path) -> None:
@@ -151,7 +189,7 @@ def test_two_that_make_a_book_at_once_make_one(path: Path) -> None:
         thread.start()
     for thread in threads:
         thread.join()
-    assert schema(path) == SCHEMA_2.read_text(encoding="utf-8")
+    assert schema(path) == statements(NEWEST)
     assert ledger_of(path) == names()
 
 
@@ -159,7 +197,7 @@ def test_a_new_book_of_a_later_version_lists_all_steps(path: Path) -> None:
     store = Store(path, "rwc")
     assert bring_up(store, LATER) == []
     store.close()
-    assert ledger_of(path) == [*names(), (3, "a shelf for each coil")]
+    assert ledger_of(path) == [*names(), (NEXT, "a shelf for each coil")]
     assert files_beside(path) == []
 
 
@@ -169,7 +207,7 @@ def test_a_newer_book_is_left_alone(book: Book, path: Path) -> None:
     store.close()
     before = path.read_bytes()
     for readonly in (False, True):
-        with pytest.raises(BookError, match="has schema 3; this windctl knows schemas up to 2"):
+        with pytest.raises(BookError, match="has schema 4; this windctl knows schemas up to 3"):
             open_book(path, readonly=readonly)
     assert path.read_bytes() == before
 
@@ -177,7 +215,7 @@ def test_a_newer_book_is_left_alone(book: Book, path: Path) -> None:
 def test_an_older_book_is_not_taken_forward_when_only_read(book: Book, path: Path) -> None:
     before = path.read_bytes()
     store = Store(path, "ro")
-    with pytest.raises(BookError, match="must be brought to 3 first"):
+    with pytest.raises(BookError, match="must be brought to 4 first"):
         bring_up(store, LATER)
     store.close()
     assert path.read_bytes() == before

@@ -8,7 +8,6 @@ import pytest
 
 from tests.book.samples import coil_id, finished, packed, seal, started, wind, wound
 from windctl.book.book import Book
-from windctl.book.open import open_book
 from windctl.errors import BookError
 
 
@@ -98,16 +97,3 @@ def test_digits_are_a_serial_number_before_they_are_the_beginning_of_an_id(book:
     assert book.find("0002").number == "b1-2026-0002"
     assert book.find("00020000").id == odd
     assert book.find("0003").id == odd
-
-
-def test_listing_a_large_book_does_not_read_it_whole(path: Path) -> None:
-    """SQLite's own account of its plan: the page comes from the index, without sorting."""
-    import sqlite3
-    from contextlib import closing
-
-    open_book(path).close()
-    with closing(sqlite3.connect(path)) as connection:
-        plan = connection.execute(
-            "EXPLAIN QUERY PLAN SELECT * FROM coils ORDER BY started DESC, number DESC LIMIT 40 OFFSET 80"
-        ).fetchall()
-    assert [row[3] for row in plan] == ["SCAN coils USING INDEX coils_by_start"]

@@ -4,9 +4,13 @@ places      where the book lies when nobody says otherwise
 tables      the tables, in types that PostgreSQL takes as well
 store       one file: connections, transactions, and the only place where SQLite's errors become ours
 ledger      which schema a file has, and the way forward from an older one
+schema_3    the way from schema 2 to 3
 lease       one live writer per coil
 heads       a coil's row and the seal that closes its record
 writer      one coil being written: durable on return, each row tied to all before it
+query       the language in which coils are looked for, pure
+search      a query in SQL
+words       what a search for free text looks through
 queries     lists and look-ups, in SQL
 logs        what is said later of a closed coil, and what is known of a spool: chains of their own
 shelf       spools, addenda, and the lessons of all coils in order

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 import uuid
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
 from types import TracebackType
@@ -15,6 +15,7 @@ from windctl.book.export import exported, shown
 from windctl.book.heads import CoilHead, coil_number, head_columns, opened
 from windctl.book.lease import Lease
 from windctl.book.queries import (
+    HEAD_COLUMNS,
     Which,
     counted,
     curve_in,
@@ -24,6 +25,7 @@ from windctl.book.queries import (
     record_entries,
     stored_rows,
 )
+from windctl.book.query import parse, sorted_by
 from windctl.book.shelf import (
     CoilLesson,
     SpoolRecord,
@@ -39,6 +41,7 @@ from windctl.book.shelf import (
 from windctl.book.store import Store
 from windctl.book.tables import coils, entries, numbers
 from windctl.book.verify import VerifyReport, verify_book, verify_coil
+from windctl.book.words import first_words
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, RecordBroken
 from windctl.record.addenda import Addendum, SpoolAdded
@@ -94,7 +97,8 @@ class Book:
             head = opened(started, bench, year, serial, tie)
             if connection.scalar(sa.select(coils.c.number).where(coils.c.id == head.id)) is not None:
                 raise BookError(f"the coil book {self.path} already has a coil with the id {head.id}")
-            connection.execute(sa.insert(coils), [head_columns(head)])
+            words = first_words(head.recipe, head.number)
+            connection.execute(sa.insert(coils), [{**head_columns(head), "words": words}])
             first = {"coil": head.id, "seq": 0, "kind": started.kind, "events": 1}
             connection.execute(sa.insert(entries), [{**first, "payload": payload, "link": tie}])
         lease = Lease(self.path, started.coil_id, started.number)
@@ -123,7 +127,9 @@ class Book:
 
     def list(
         self,
+        query: str = "",
         *,
+        sort: str = "",
         bench: str | None = None,
         recipe: str | None = None,
         batch: str | None = None,
@@ -132,12 +138,17 @@ class Book:
         limit: int | None = None,
         offset: int = 0,
     ) -> tuple[CoilHead, ...]:
-        """Coils, the one started last first (by the text of its time); a page with `limit` and `offset`."""
-        which = Which(bench=bench, recipe=recipe, batch=batch, outcome=outcome, verdict=verdict)
-        return listed(self._store, which, limit, offset)
+        """Coils that `query` asks for (`windctl.book.query`) and whose row has these very values.
+
+        Sorted by `sort`, fields with commas between, else as the query says, else the one started last first
+        (by the text of its time); a page with `limit` and `offset`. Raises QueryError.
+        """
+        which = Which(parse(query), bench, recipe, batch, outcome, verdict)
+        return listed(self._store, which, limit, offset, sorted_by(sort))
 
     def count(
         self,
+        query: str = "",
         *,
         bench: str | None = None,
         recipe: str | None = None,
@@ -145,9 +156,8 @@ class Book:
         outcome: str | None = None,
         verdict: str | None = None,
     ) -> int:
-        """How many coils `list` has in all its pages."""
-        which = Which(bench=bench, recipe=recipe, batch=batch, outcome=outcome, verdict=verdict)
-        return counted(self._store, which)
+        """How many coils `list` has in all its pages. Raises QueryError."""
+        return counted(self._store, Which(parse(query), bench, recipe, batch, outcome, verdict))
 
     def open_coils(self, bench: str | None = None) -> tuple[CoilHead, ...]:
         """Coils whose record is not closed, the one started last first."""
@@ -180,7 +190,11 @@ class Book:
 
     def amend(self, coil: str, *facts: Addendum) -> None:
         """Say something of a closed coil: its record stays as it is. Raises BookError for an open one."""
-        amend(self._store, self.find(coil), facts)
+        amend(self._store, [(self.find(coil), facts)])
+
+    def amend_each(self, said: Sequence[tuple[str, Sequence[Addendum]]]) -> None:
+        """`amend` for several coils (name, facts), all of it or nothing: what is said of a pair, say."""
+        amend(self._store, [(self.find(coil), facts) for coil, facts in said])
 
     def addenda(self, coil: str) -> tuple[Addendum, ...]:
         """What was said of a coil after it was closed, in order."""
@@ -218,7 +232,7 @@ class Book:
 
     def _again(self, head: CoilHead) -> CoilHead:
         with self._store.reading() as connection:
-            return head_of(connection.execute(sa.select(coils).where(coils.c.id == head.id)).one())
+            return head_of(connection.execute(sa.select(*HEAD_COLUMNS).where(coils.c.id == head.id)).one())
 
     def _checked_start(self, head: CoilHead) -> CoilStarted:
         """The coil's first fact, when all links from there to the end agree."""

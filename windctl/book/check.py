@@ -172,6 +172,7 @@ def _row_against_start(head: CoilHead, started: Event | None) -> Iterator[Fault]
         "target_kind": started.target.kind,
         "target_value": started.target.value,
         "program_digest": started.program_digest,
+        "spool": started.spool,
     }
     yield from _differing(head, said, "its record says")
 

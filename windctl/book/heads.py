@@ -57,6 +57,7 @@ class CoilHead:
     trace_digest: str | None
     n_entries: int
     record_digest: str
+    spool: str
 
     @property
     def sealed(self) -> bool:
@@ -96,6 +97,7 @@ def opened(started: CoilStarted, bench: str, year: int, serial: int, link: bytes
         trace_digest=None,
         n_entries=1,
         record_digest=link.hex(),
+        spool=started.spool,
     )
 
 

@@ -16,6 +16,7 @@ from pathlib import Path
 
 import sqlalchemy as sa
 
+from windctl.book.schema_3 import add_spool_and_words
 from windctl.book.store import Store
 from windctl.book.tables import ledger, log_entries, logs, metadata
 from windctl.errors import BookError
@@ -40,7 +41,10 @@ def _add_logs(connection: sa.Connection) -> None:
 
 
 # Later schemas are appended here; what is in here never changes.
-STEPS: tuple[Step, ...] = (Step(2, "logs, log_entries", _add_logs),)
+STEPS: tuple[Step, ...] = (
+    Step(2, "logs, log_entries", _add_logs),
+    Step(3, "coils: spool, words", add_spool_and_words),
+)
 
 
 def names(steps: Sequence[Step] = STEPS) -> list[tuple[int, str]]:

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, fields
 from typing import Any
 
 import sqlalchemy as sa
 
 from windctl.book.heads import SEAL, CoilHead
+from windctl.book.query import EVERYTHING, Order, Query
+from windctl.book.search import condition, order
 from windctl.book.store import Store
 from windctl.book.tables import coils, curve, entries
 from windctl.errors import BookError, RecordBroken
@@ -21,11 +23,14 @@ _NAMED = 6  # how many candidates an ambiguous name lists
 
 _ID_PREFIX = re.compile(r"[0-9a-f][0-9a-f-]{3,35}")
 
+HEAD_COLUMNS = tuple(coils.c[field.name] for field in fields(CoilHead))
+
 
 @dataclass(frozen=True, slots=True)
 class Which:
-    """Which coils to list. `None` is "any"; texts must match whole."""
+    """Which coils to list: those of a query, of these the ones with these values. `None` is "any"."""
 
+    query: Query = EVERYTHING
     bench: str | None = None
     recipe: str | None = None
     batch: str | None = None
@@ -42,7 +47,7 @@ class Which:
         ]
         if self.sealed is not None:
             parts.append(coils.c.trace_digest.is_not(None) if self.sealed else coils.c.trace_digest.is_(None))
-        return sa.and_(sa.true(), *parts)
+        return sa.and_(condition(self.query), *parts)
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,20 +59,24 @@ class StoredRow:
     link: bytes
 
 
-def head_of(row: sa.Row[Any]) -> CoilHead:
+def head_of(row: sa.Row[Any, *tuple[Any, ...]]) -> CoilHead:
     """A coil's row."""
-    return CoilHead(**row._mapping)
+    return CoilHead(**{column.name: row._mapping[column] for column in HEAD_COLUMNS})
 
 
-def listed(store: Store, which: Which, limit: int | None, offset: int) -> tuple[CoilHead, ...]:
-    """Coils, the one started last first."""
-    query = (
-        sa.select(coils)
-        .where(which.condition())
-        .order_by(coils.c.started.desc(), coils.c.number.desc())
-        .limit(limit)
-        .offset(offset or None)
-    )
+def listed(
+    store: Store, which: Which, limit: int | None, offset: int, orders: Sequence[Order] = ()
+) -> tuple[CoilHead, ...]:
+    """Coils, sorted by `orders` and those of the query, else the one started last first."""
+    sorting = order((*orders, *which.query.orders))
+    query = sa.select(*HEAD_COLUMNS).where(which.condition()).order_by(*sorting)
+    if limit is not None:  # the page is found in an index alone, and only its rows are read
+        page = sa.select(coils.c.number).where(which.condition()).order_by(*sorting)
+        numbers = page.limit(limit).offset(offset or None).subquery()
+        query = sa.select(*HEAD_COLUMNS).where(coils.c.number.in_(sa.select(numbers.c.number)))
+        query = query.order_by(*sorting)
+    elif offset:
+        query = query.offset(offset)
     with store.reading() as connection:
         return tuple(head_of(row) for row in connection.execute(query))
 
@@ -89,9 +98,9 @@ def found(store: Store, text: str) -> CoilHead:
     if re.fullmatch(r"[0-9]{1,6}", name):
         ways.append(coils.c.serial == int(name))
     if _ID_PREFIX.fullmatch(name):
-        ways.append(coils.c.id.startswith(name, autoescape=True))
+        ways.append(sa.and_(coils.c.id >= name, coils.c.id < f"{name}~"))  # a range, which the key serves
     for way in ways:
-        query = sa.select(coils).where(way).order_by(coils.c.started.desc(), coils.c.number.desc())
+        query = sa.select(*HEAD_COLUMNS).where(way).order_by(coils.c.started.desc(), coils.c.number.desc())
         with store.reading() as connection:
             heads = [head_of(row) for row in connection.execute(query.limit(_NAMED))]
         if len(heads) == 1:

@@ -12,6 +12,7 @@ from windctl.book.heads import CoilHead
 from windctl.book.logs import COIL, SPOOL, all_facts, append, facts_of, read
 from windctl.book.store import Store
 from windctl.book.tables import coils
+from windctl.book.words import more_words, said_in
 from windctl.errors import BookError, RecordBroken
 from windctl.material.enamel import Grade
 from windctl.plan.experience.fold import Experience, Teaching
@@ -117,12 +118,17 @@ def _record(facts: Sequence[Addendum]) -> SpoolRecord:
     return SpoolRecord(spool, added, tuple(facts))
 
 
-def amend(store: Store, head: CoilHead, facts: Sequence[Addendum]) -> None:
-    """Say something of a closed coil. Raises BookError for one that is still open."""
-    if not head.sealed:
-        raise BookError(f"coil {head.number} is still open: this is for coils that are finished with")
+def amend(store: Store, said: Sequence[tuple[CoilHead, Sequence[Addendum]]]) -> None:
+    """Say something of closed coils, all of it or nothing. Raises BookError for one that is still open."""
+    for head, _ in said:
+        if not head.sealed:
+            raise BookError(f"coil {head.number} is still open: this is for coils that are finished with")
     with store.atomic() as connection:
-        append(connection, COIL + head.id, facts)
+        for head, facts in said:
+            append(connection, COIL + head.id, facts)
+            if texts := said_in(facts):
+                longer = coils.c.words + more_words(texts)
+                connection.execute(sa.update(coils).where(coils.c.id == head.id).values(words=longer))
 
 
 def addenda_in(store: Store, head: CoilHead) -> tuple[Addendum, ...]:

@@ -59,11 +59,40 @@ coils = sa.Table(
     sa.Column("trace_digest", sa.Text),
     sa.Column("n_entries", sa.Integer, nullable=False),
     sa.Column("record_digest", sa.Text, nullable=False),  # the chain's last link, hex
+    # Since schema 3; a default, as an older book gets them while there are coils in it.
+    sa.Column("spool", sa.Text, nullable=False, server_default=sa.text("''")),  # "" when none was named
+    sa.Column("words", sa.Text, nullable=False, server_default=sa.text("''")),  # what a search looks through
     sa.UniqueConstraint("bench", "year", "serial"),
-    sa.Index("coils_by_start", "started", "number"),
-    sa.Index("coils_by_recipe", "recipe"),
     sa.Index("coils_by_batch", "batch"),
+    sa.Index("coils_by_spool", "spool"),
+    sa.Index("coils_by_serial", "serial"),
 )
+
+# All that a query may ask of, in one narrow index in the order of the list: no query reads the rows
+# themselves but those it answers with. PostgreSQL bounds the size of an entry, and reads the rows.
+coils_found = sa.Index(
+    "coils_found",
+    *(
+        coils.c[name]
+        for name in (
+            "started",
+            "number",
+            "year",
+            "serial",
+            "bench",
+            "recipe",
+            "batch",
+            "spool",
+            "operator",
+            "outcome",
+            "verdict",
+            "turns",
+            "dcr_20c_ohm",
+            "trace_digest",
+            "words",
+        )
+    ),
+).ddl_if(dialect="sqlite")
 
 # `events`: how many events the row holds (a rare fact 1, a chunk many, a seal 0).
 entries = sa.Table(

@@ -14,12 +14,14 @@ import sqlalchemy as sa
 from windctl.book.check import Fault, check_record
 from windctl.book.heads import CoilHead, coil_number
 from windctl.book.ledger import names
-from windctl.book.logs import COIL, LogFault, check_log, check_logs, read
-from windctl.book.queries import curve_in, head_of, raw_rows
+from windctl.book.logs import COIL, Log, LogFault, check_log, check_logs, facts_of, read
+from windctl.book.queries import HEAD_COLUMNS, StoredRow, curve_in, head_of, raw_rows
 from windctl.book.store import Store
 from windctl.book.tables import coils, curve, entries, ledger, numbers
+from windctl.book.words import IN_RECORD, said_in, words_of, written_in
 from windctl.errors import BookError, RecordBroken
 from windctl.record.curve import CurvePoint
+from windctl.record.entries import Entry
 
 BOOK = "book"  # stands for a coil where a fault is of none
 
@@ -57,7 +59,7 @@ class VerifyReport:
 
 
 def verify_coils(store: Store, ids: Iterable[str]) -> VerifyReport:
-    """Check these coils.
+    """Check these coils, and what was said of them since.
 
     Raises BookError when the book itself cannot be read.
     """
@@ -93,7 +95,7 @@ def verify_coil(store: Store, coil_id: str) -> VerifyReport:
     """Check one coil, and what was said of it since."""
     report = verify_coils(store, [coil_id])
     with store.reading() as connection:
-        log = read(connection, COIL + coil_id)
+        log = read(connection, f"{COIL}{coil_id}")
         number = connection.scalar(sa.select(coils.c.number).where(coils.c.id == coil_id))
     faults = () if log is None else tuple(check_log(log))
     told = [_of_log(fault, {COIL + coil_id: str(number)}) for fault in faults]
@@ -122,24 +124,58 @@ def _of_log(fault: LogFault, numbers_of: dict[str, str]) -> BrokenCoil:
 def _coil(store: Store, coil_id: str) -> Iterator[BrokenCoil]:
     name = coil_id
     try:
-        head, points, n_rows = _snapshot(store, coil_id)
-        name = head.number
-        stop = head.n_entries if isinstance(head.n_entries, int) else n_rows
-        faults = check_record(head, raw_rows(store, coil_id, stop), points)
-        if n_rows > stop:
-            faults.append(Fault(stop, f"the record has {n_rows} rows, the coil's row says {stop}"))
+        one = _snapshot(store, coil_id)
+        head, name = one.head, one.head.number
+        stop = head.n_entries if isinstance(head.n_entries, int) else one.n_rows
+        written: list[Entry] = []
+        rows = _noticing(raw_rows(store, coil_id, stop), written)
+        faults = check_record(head, rows, one.points)
+        if one.n_rows > stop:
+            faults.append(Fault(stop, f"the record has {one.n_rows} rows, the coil's row says {stop}"))
+        if not faults:  # else its words could not be told either
+            faults += _against_words(one, written)
     except (BookError, RecordBroken) as error:
         faults = [Fault(None, f"cannot be read: {error}")]
     for fault in faults:
         yield BrokenCoil(_printable(name), fault.seq, fault.what)
 
 
-def _snapshot(store: Store, coil_id: str) -> tuple[CoilHead, list[tuple[int, CurvePoint]], int]:
-    """A coil's row, its curve and how many rows its record has, all of one moment."""
+def _noticing(rows: Iterable[StoredRow], written: list[Entry]) -> Iterator[StoredRow]:
+    """The same rows; those that people wrote are put into `written` on the way."""
+    for row in rows:
+        if row.entry.kind in IN_RECORD:
+            written.append(row.entry)
+        yield row
+
+
+def _against_words(one: _Snapshot, written: Iterable[Entry]) -> Iterator[Fault]:
+    """What is searched, once more from what people wrote."""
+    try:
+        texts = (*written_in(written), *said_in(facts_of(one.log)))
+    except RecordBroken:
+        return  # told where the log is checked
+    said = words_of(one.head.recipe, one.head.number, texts)
+    if one.words != said:
+        yield Fault(None, f"words is {one.words!r}, its record and what was said since give {said!r}")
+
+
+@dataclass(frozen=True, slots=True)
+class _Snapshot:
+    """A coil's row, its words, its curve, how many rows its record has, and its log, all of one moment."""
+
+    head: CoilHead
+    words: object
+    points: list[tuple[int, CurvePoint]]
+    n_rows: int
+    log: Log | None
+
+
+def _snapshot(store: Store, coil_id: str) -> _Snapshot:
     with store.reading() as connection:
-        head = head_of(connection.execute(sa.select(coils).where(coils.c.id == coil_id)).one())
+        row = connection.execute(sa.select(*HEAD_COLUMNS, coils.c.words).where(coils.c.id == coil_id)).one()
         rows = sa.select(sa.func.count()).select_from(entries).where(entries.c.coil == coil_id)
-        return head, curve_in(connection, coil_id), int(connection.scalar(rows) or 0)
+        n_rows, log = int(connection.scalar(rows) or 0), read(connection, f"{COIL}{coil_id}")
+        return _Snapshot(head_of(row), row.words, curve_in(connection, coil_id), n_rows, log)
 
 
 def _damage(store: Store) -> Iterator[BrokenCoil]:

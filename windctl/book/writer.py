@@ -13,6 +13,7 @@ from windctl.book import tables
 from windctl.book.heads import SEAL, CoilHead, closed, curve_rows, head_columns, plain_curve, seal_payload
 from windctl.book.lease import Lease
 from windctl.book.store import Store
+from windctl.book.words import more_words, written_in
 from windctl.errors import BookError
 from windctl.record.chain import link
 from windctl.record.curve import CurvePoint
@@ -133,6 +134,10 @@ class CoilWriter:
         )
         if moved.rowcount == 1:
             connection.execute(sa.insert(tables.entries), rows)
+            written = written_in(Entry(row["kind"], row["payload"], row["events"]) for row in rows)
+            if written:
+                longer = coils.c.words + more_words(written)
+                connection.execute(sa.update(coils).where(coils.c.id == self.id).values(words=longer))
             return True
         stored = connection.scalar(sa.select(coils.c.record_digest).where(coils.c.id == self.id))
         if stored == tail.link.hex():
