@@ -8,16 +8,19 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from windctl.cli import coil_addenda, present
+from windctl.cli import coil_addenda, coil_measure, present
 from windctl.cli.exit_codes import ExitCode
 from windctl.cli.options import Shared, takes
 from windctl.desk.books import book_if_any, book_to_read
-from windctl.errors import BookError
+from windctl.errors import BookError, QueryError, UsageError
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
 
 _DENSE = ("status_heard", "reading_taken")  # thousands of them: counted, not listed
+# Of what was said since: who and when stand before it, and how far a meter was trusted is in the budget.
+_TRUST = ("kind", "wall_time", "by", "thermometer", "dcr_rel", "gain_rel", "noise_rel", "floor_ohm",
+          "lead_ohm", "lead_sd_ohm", "celsius_sd", "over_air_k", "over_air_sd_k")  # fmt: skip
 _UNTOLD = ("kind", "at_ms", "identity", "refused")
 
 
@@ -27,20 +30,52 @@ def coils() -> None:
 
 
 @coils.command("list")
-@click.option("--recipe", metavar="NAME", help="Only coils of this recipe.")
+@click.argument("query", nargs=-1)
+@click.option("--sort", default="", metavar="FIELDS",
+              help="Sort by these, with commas between, - before one for the largest first: "
+                   "started, coil, recipe, batch, spool, outcome, verdict, turns, ohm.")  # fmt: skip
+@click.option("--recipe", metavar="NAME", help="Only coils of this very recipe.")
 @click.option(
     "--outcome",
     type=click.Choice(["open", "finished", "stopped", "tripped"]),
     help="Only coils that ended so; open: not ended yet.",
 )
-@click.option("--limit", type=click.IntRange(min=1), metavar="N", help="Only the last N.")
+@click.option("--limit", type=click.IntRange(min=1), metavar="N", help="Only the first N of them.")
 @takes("book", "batch", "json")
-def list_(shared: Shared, recipe: str | None, outcome: str | None, limit: int | None) -> None:
-    """The coils in the book, the one started last first."""
-    with book_if_any(shared) as book:
-        heads = (
-            () if book is None else book.list(recipe=recipe, batch=shared.batch, outcome=outcome, limit=limit)
-        )
+def list_(
+    shared: Shared,
+    query: tuple[str, ...],
+    sort: str,
+    recipe: str | None,
+    outcome: str | None,
+    limit: int | None,
+) -> None:
+    """The coils in the book, the one started last first; with QUERY those that it asks for.
+
+    \b
+    A query is words, looked for in recipe, number and notes, and conditions:
+      recipe:TEXT note:TEXT by:TEXT     anywhere within
+      coil:NAME batch:NAME spool:NAME   whole, with * for anything
+      outcome:finished verdict:within   open, finished, stopped, tripped; within,
+                                        outside, "not judged"
+      turns:7000..8000 ohm:..3.7k       a range, or a number as it is rounded
+      since:2026-01 until:2026-03-15    also started:2026-02
+      not CONDITION                     all but these
+    All of them must hold; a,b means a or b. Texts with blanks stand in "quotes",
+    the whole query then in 'others'.
+    """
+    asked = " ".join(query)
+    try:
+        with book_if_any(shared) as book:
+            heads = (
+                ()
+                if book is None
+                else book.list(
+                    asked, sort=sort, recipe=recipe, batch=shared.batch, outcome=outcome, limit=limit
+                )
+            )
+    except QueryError as error:
+        raise UsageError(f"{error}\n  {error.text}\n  {' ' * error.at}^") from error
     if shared.json:
         present.result_json({"coils": [_row(head) for head in heads]})
         return
@@ -76,6 +111,7 @@ def _row(head: CoilHead) -> dict[str, object]:
         "dcr_20c_ohm": head.dcr_20c_ohm,
         "verdict": head.verdict,
         "batch": head.batch,
+        "spool": head.spool,
     }
 
 
@@ -106,6 +142,7 @@ def show(shared: Shared, coil: str) -> None:
         ("id", head.id),
         ("recipe", head.recipe),
         ("batch", head.batch),
+        ("spool", head.spool),
         ("started", head.started),
         ("ended", head.ended or ""),
         ("outcome", f"{head.outcome}: {head.reason}" if head.reason else head.outcome),
@@ -143,7 +180,7 @@ def _show_addenda(addenda: Any) -> None:
         said = [
             f"{name.replace('_', ' ')} {value:g}" if isinstance(value, float) else str(value)
             for name, value in fact.items()
-            if name not in ("kind", "wall_time", "by") and value not in (None, "")
+            if name not in _TRUST and value not in (None, "")
         ]
         when = fact["wall_time"][:16].replace("T", " ")
         kind = fact["kind"].removeprefix("coil_")
@@ -199,5 +236,5 @@ def export(shared: Shared, coil: str) -> None:
         present.result_json(dict(book.export(coil)))
 
 
-for _command in (coil_addenda.note, coil_addenda.measure, coil_addenda.withdraw):
+for _command in (coil_addenda.note, coil_measure.measure, coil_measure.budget, coil_addenda.withdraw):
     coils.add_command(_command)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import sys
+from contextlib import suppress
 from typing import Any
 
 import click
@@ -22,6 +23,20 @@ class FiniteRange(click.FloatRange):
         if isinstance(number, float) and not math.isfinite(number):
             self.fail(f"{value} is not a finite number.", param, ctx)
         return number
+
+
+class Figure(FiniteRange):
+    """The same as people write it: either decimal sign, and `k` for thousand behind it."""
+
+    def convert(
+        self, value: Any, param: click.Parameter | None, ctx: click.Context | None
+    ) -> Any:  # as click's own
+        if isinstance(value, str):
+            value = value.strip().replace(",", ".")
+            if value[-1:] in ("k", "K"):
+                with suppress(ValueError):
+                    value = repr(float(value[:-1]) * 1000.0)
+        return super().convert(value, param, ctx)
 
 
 def ohm_option(ctx: click.Context, param: click.Parameter, value: str | None) -> float | None:

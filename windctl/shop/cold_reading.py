@@ -22,6 +22,7 @@ from windctl.forecast.belief import (
     resistance,
 )
 from windctl.forecast.cooling import COOLING_REL, COOLING_S
+from windctl.forecast.finish import Z95
 from windctl.material.copper import ALPHA_20C
 from windctl.profile.model import MachineProfile
 from windctl.record.state import State
@@ -74,7 +75,8 @@ class Source:
 
 @dataclass(frozen=True, slots=True)
 class ColdReading:
-    """`ohm` at 20 degrees C. `bare`: nothing else is joined to the coil. `label` names it to people."""
+    """`ohm` at 20 degrees C. `bare`: nothing else is joined to the coil. `label` names it to people, `number`
+    tells it from others of its coil, from 1; 0 where it stands alone."""
 
     label: str
     when: str
@@ -83,11 +85,28 @@ class ColdReading:
     ohm: float
     sources: tuple[Source, ...]
     bare: bool = True
+    number: int = 0
+
+    @property
+    def u95_ohm(self) -> float:
+        """Half-width of its 95 % interval, every source in it."""
+        return Z95 * self.rel * self.ohm
 
     @property
     def rel(self) -> float:
         """Relative standard uncertainty, every source in it."""
         return hypot(*(source.rel for source in self.sources))
+
+    @property
+    def rel_besides_instruments(self) -> float:
+        """The same without the meter's gain and the thermometer, which are off for every coil alike."""
+        return hypot(
+            *(
+                source.rel
+                for source in self.sources
+                if source.name != PLACING and not source.name.startswith((GAIN_OF, THERMOMETER_OF))
+            )
+        )
 
 
 def meter_of(profile: MachineProfile) -> Meter:

@@ -54,7 +54,7 @@ def readings_of(state: State, facts: Iterable[Addendum]) -> tuple[ColdReading, .
     found = [] if first is None else [first]
     hand = [fact for fact in facts if isinstance(fact, CoilMeasured) and fact.ohm is not None]
     found += [reading for fact in hand if (reading := reading_of(fact, own)) is not None]
-    return tuple(found)
+    return tuple(replace(reading, number=n) for n, reading in enumerate(found, 1))
 
 
 def reading_of(fact: CoilMeasured, own: Meter) -> ColdReading | None:

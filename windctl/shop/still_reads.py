@@ -162,6 +162,19 @@ def _sources(readings: Sequence[ColdReading]) -> dict[str, dict[int, Source]]:
     sources: dict[str, dict[int, Source]] = {}
     for at, reading in enumerate(readings):
         for source in reading.sources:
-            name = f"{source.name} of reading {at + 1}" if source.name in OF_ONE else source.name
+            number = reading.number or at + 1
+            name = f"{source.name} of reading {number}" if source.name in OF_ONE else source.name
             sources.setdefault(name, {})[at] = source
     return sources
+
+
+def hidden_by(said: Still) -> list[tuple[str, float]]:
+    """The sources that matter in the readings and cancel for the most part in their difference, each with
+    what it is in one reading as a 95 % half-width, ohm; the largest first."""
+    largest = max((one.before_ohm for one in said.shared), default=0.0)
+    out = [
+        (one.name, Z95 * one.before_ohm)
+        for one in said.shared
+        if one.left_ohm < 0.5 * one.before_ohm and one.before_ohm > 0.05 * largest
+    ]
+    return sorted(out, key=lambda each: -each[1])
