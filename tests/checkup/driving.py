@@ -9,7 +9,7 @@ from typing import Any
 from windctl.checkup.checkup import Checkup
 from windctl.checkup.plan import chosen
 from windctl.checkup.step import TYPED, Act, Question, Result, Step
-from windctl.cli.machine import ORDINARY
+from windctl.desk.ordinary import ORDINARY
 from windctl.desk.simulated_hand import SimulatedHand
 from windctl.machine.virtual.bench import Bench, virtual_bench
 from windctl.machine.virtual.faults import Faults

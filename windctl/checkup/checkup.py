@@ -13,6 +13,7 @@ from windctl.checkup.step import TYPED, Act, Fault, LeftOut, Need, Question, Res
 from windctl.profile.model import MachineProfile
 from windctl.protocol.conversation import Conversation
 from windctl.protocol.messages import BoardMessage, Capability
+from windctl.protocol.picture import BoardPicture
 from windctl.protocol.wants import Wants
 
 CAUTIONS = """\
@@ -67,9 +68,16 @@ class Checkup:
         """Hold, take the drives off, and end: what was not reached is left out."""
         self._stopping = True
 
-    def receive(self, data: bytes, now: float) -> None:
-        """Bytes from the board."""
-        self._came += self._talk.receive(data, now)
+    @property
+    def board(self) -> BoardPicture:
+        """The board as last heard of."""
+        return self._talk.board
+
+    def receive(self, data: bytes, now: float) -> list[BoardMessage]:
+        """Bytes from the board; what came in them."""
+        came = self._talk.receive(data, now)
+        self._came += came
+        return came
 
     def advance(self, now: float) -> bytes:
         """Goes on as far as it can; what to write. Raises what the conversation raises."""

@@ -10,7 +10,7 @@ from windctl.cli import present
 from windctl.cli.machine_check import check
 from windctl.cli.options import Shared, takes
 from windctl.desk import places
-from windctl.desk.machines import VIRTUAL, configured_machine, kept_profiles, profile_of
+from windctl.desk.machines import kept_profiles, known_machines, profile_of
 from windctl.errors import ProfileError
 
 
@@ -26,35 +26,29 @@ machine.add_command(check)
 @takes("json")
 def list_(shared: Shared) -> None:
     """The machines that have a profile; the usual one is marked."""
-    from windctl.profile.builtin import VIRTUAL as BUILT_IN
-    from windctl.profile.load import load_profile
-
-    usual = configured_machine()
-    rows = [{"machine": VIRTUAL, "bench": BUILT_IN.bench, "port": None, "file": None, "problem": None}]
-    for name, file in kept_profiles().items():
-        try:
-            profile = load_profile(file)
-        except ProfileError as error:
-            problem = str(error.problems[0])
-            rows.append({"machine": name, "bench": None, "port": None, "file": str(file), "problem": problem})
-        else:
-            url = profile.port.url
-            rows.append(
-                {"machine": name, "bench": profile.bench, "port": url, "file": str(file), "problem": None}
-            )
+    known = known_machines()
     if shared.json:
-        present.result_json({"machines": [{**row, "usual": row["machine"] == usual} for row in rows]})
+        present.result_json(
+            {
+                "machines": [
+                    {
+                        "machine": one.name,
+                        "bench": one.bench,
+                        "port": one.port,
+                        "file": None if one.file is None else str(one.file),
+                        "problem": one.problem,
+                        "usual": one.usual,
+                    }
+                    for one in known
+                ]
+            }
+        )
         return
     present.table(
         ["", "machine", "bench", "port"],
         [
-            [
-                "*" if row["machine"] == usual else "",
-                str(row["machine"]),
-                row["bench"] or "",
-                row["problem"] or row["port"] or "",
-            ]
-            for row in rows
+            ["*" if one.usual else "", one.name, one.bench or "", one.problem or one.port or ""]
+            for one in known
         ],
     )
     present.message(f"profiles are kept in {places.machines_folder()}")
@@ -156,6 +150,7 @@ def serve(
     The first line on standard output is the URL for --port. SIGUSR1 resets the board.
     """
     from windctl.desk.bench import DEFAULT_SEED
+    from windctl.desk.ordinary import ORDINARY
     from windctl.machine.virtual.serve import serve as serve_machine
     from windctl.recipe.load import load_recipe, parse_recipe
 
@@ -179,40 +174,3 @@ def _address(text: str) -> tuple[str, int]:
     if not host or not port.isdecimal() or int(port) > 65_535:
         raise click.BadParameter(f"{text!r} is not HOST:PORT, such as 127.0.0.1:7000", param_hint="--tcp")
     return host.strip("[]"), int(port)
-
-
-# What is on the bench where nobody says: a single coil of common size, invented.
-ORDINARY = """\
-format = 1
-name = "ordinary single coil"
-[bobbin]
-core_length_mm = 56.0
-core_width_mm = 6.0
-corner_radius_mm = 3.0
-flange_gap_mm = 11.0
-flange_depth_mm = 8.5
-[coil]
-direction_from_face = "cw"
-mounted = "face out"
-start_flange = "base"
-[wire]
-gauge = "AWG 42"
-enamel = "grade 1"
-[lay]
-style = "scatter"
-pitch_mm = 0.22
-margin_mm = 0.3
-pattern = "wander"
-amount = 0.4
-seed = 1
-[spindle]
-start_rpm = 150
-start_turns = 20
-cruise_rpm = 1000
-finish_rpm = 120
-finish_turns = 40
-ramp_rpm_per_s = 60
-[stop]
-turns = 8000
-tolerance_pct = 1
-"""

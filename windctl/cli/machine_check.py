@@ -82,9 +82,9 @@ def _check(
     from windctl.checkup.checkup import Checkup
     from windctl.checkup.plan import as_json, calibrations, chosen
     from windctl.checkup.step import Verdict
-    from windctl.cli.machine import ORDINARY
     from windctl.cli.prompt import Prompt
     from windctl.desk.checking import open_for_check, save_calibration
+    from windctl.desk.ordinary import ORDINARY
     from windctl.recipe.load import parse_recipe
 
     if save and file is None:

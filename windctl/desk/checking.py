@@ -62,6 +62,28 @@ def open_for_check(
         keep_line_trace(trace, f"{profile.name} at {profile.port.url}, a check")
 
 
+@dataclass(frozen=True, slots=True)
+class Change:
+    """One value of a profile that a check would change. `before` None: the profile does not have it."""
+
+    key: str
+    before: float | int | None
+    after: float | int
+
+
+def changes(profile: MachineProfile, values: dict[str, float | int]) -> tuple[Change, ...]:
+    """What a calibration would change; values that are as they were are left out."""
+    found = []
+    for key, after in values.items():
+        before: object = profile
+        for part in key.split("."):
+            before = getattr(before, part, None)
+        known = before if isinstance(before, int | float) else None
+        if known != after:
+            found.append(Change(key, known, after))
+    return tuple(found)
+
+
 def save_calibration(file: Path, values: dict[str, float | int]) -> None:
     """Writes the values into the profile, whose text else stays. Raises FileInvalid, the file untouched."""
     from windctl.checkup.keep import with_calibration

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import os
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from windctl.desk import places
-from windctl.errors import FileInvalid, MachineError, Problem
+from windctl.errors import FileInvalid, MachineError, Problem, ProfileError
 
 if TYPE_CHECKING:
     from windctl.desk.asked import Shared
@@ -39,6 +40,35 @@ def configured_machine() -> str:
 def kept_profiles() -> dict[str, Path]:
     """Profiles in the user's folder by name, in alphabetical order."""
     return {file.stem: file for file in sorted(places.machines_folder().glob("*.toml"))}
+
+
+@dataclass(frozen=True, slots=True)
+class KnownMachine:
+    """One machine that has a profile. `file` None: the built-in one; `problem`: why its profile is none."""
+
+    name: str
+    bench: str | None
+    port: str | None
+    file: Path | None
+    problem: str | None
+    usual: bool
+
+
+def known_machines() -> tuple[KnownMachine, ...]:
+    """The built-in machine, then the kept ones by name. Raises FileInvalid for settings that are none."""
+    from windctl.profile.builtin import VIRTUAL as BUILT_IN
+    from windctl.profile.load import load_profile
+
+    usual = configured_machine()
+    known = [KnownMachine(VIRTUAL, BUILT_IN.bench, None, None, None, usual == VIRTUAL)]
+    for name, file in kept_profiles().items():
+        try:
+            profile = load_profile(file)
+        except ProfileError as error:
+            known.append(KnownMachine(name, None, None, file, str(error.problems[0]), name == usual))
+        else:
+            known.append(KnownMachine(name, profile.bench, profile.port.url, file, None, name == usual))
+    return tuple(known)
 
 
 def profile_file(shared: Shared) -> Path | None:
