@@ -13,6 +13,7 @@
     │   ├── LinkLost          the serial line is gone
     │   └── ProgramMismatch   the board holds another program than the coil's
     ├── BookError             the coil book cannot be read or written                            exit 1
+    │   └── BookOutdated      it has an older schema and was opened for reading only
     └── RecordBroken          a stored record does not verify                                    exit 7
 
 `windctl.cli.exit_codes` maps each class to its exit code, at one place.
@@ -33,11 +34,12 @@ class UsageError(WindctlError):
 
 
 class QueryError(UsageError):
-    """A query cannot be understood. `at`: the place in its text, from 0; the message counts from 1."""
+    """A query cannot be understood. `at`: the place in its `text`, from 0; the message counts from 1."""
 
-    def __init__(self, what: str, at: int) -> None:
+    def __init__(self, what: str, at: int, text: str = "") -> None:
         self.what = what
         self.at = at
+        self.text = text
         super().__init__(f"the query, at character {at + 1}: {what}")
 
 
@@ -98,6 +100,10 @@ class ProgramMismatch(RunFailed):
 
 class BookError(WindctlError):
     """The coil book cannot be opened, read or written."""
+
+
+class BookOutdated(BookError):
+    """The coil book has an older schema, which only opening it for writing takes forward."""
 
 
 class RecordBroken(WindctlError):

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import sqlite3
+from contextlib import closing
 from pathlib import Path
 from typing import Any
 
@@ -122,3 +123,32 @@ def test_the_variable_names_the_book_and_the_option_beats_it(
 def test_an_unknown_coil_is_told_with_the_way_to_find_one(book: Path, capsys: Printed) -> None:
     assert run(["coils", "show", "b1-2026-0099", "--book", str(book)]) == 1
     assert "windctl coils list" in capsys.readouterr().err
+
+
+def test_list_takes_a_query_in_one_argument_or_several(book: Path, capsys: Printed) -> None:
+    common = ("coils", "list", "--book", str(book))
+    for query in (["demo", "outcome:open"], ["demo outcome:open"], ["not", "outcome:finished"]):
+        assert [coil["coil"] for coil in asked(capsys, *common, *query)["coils"]] == ["b1-2026-0002"]
+    assert asked(capsys, *common, "spool:s*") == {"format": 1, "coils": []}
+    for sort in (["--sort", "-turns"], ["sort:-turns"], ["--sort=outcome"]):
+        coils = asked(capsys, *common, *sort)["coils"]
+        assert [coil["coil"] for coil in coils] == ["b1-2026-0001", "b1-2026-0002"]
+
+
+def test_a_query_that_is_not_understood_is_shown_with_the_place(book: Path, capsys: Printed) -> None:
+    assert run(["coils", "list", "--book", str(book), "demo", "verdict:good"]) == 2
+    said = capsys.readouterr().err.splitlines()
+    assert said[0].startswith("the query, at character 14: verdict is never 'good': it is within, outside or")
+    assert said[1:] == ["  demo verdict:good", "               ^"]
+    assert run(["coils", "list", "--book", str(book), "--sort", "weight"]) == 2
+    assert "sort wants one of started, coil" in capsys.readouterr().err
+
+
+def test_a_book_of_an_older_version_is_taken_forward_when_it_is_read(tmp_path: Path, capsys: Printed) -> None:
+    old = Path(__file__).parents[1] / "book" / "book_of_schema_2.sql"
+    path = tmp_path / "shop.book"
+    with closing(sqlite3.connect(path)) as connection:
+        connection.executescript(old.read_text(encoding="utf-8"))
+    coils = asked(capsys, "coils", "list", "--book", str(path), "spool:s1")["coils"]
+    assert [coil["coil"] for coil in coils] == ["b1-2026-0001"]
+    assert sorted(file.name for file in tmp_path.iterdir()) == ["shop.book", "shop.book.before-3"]

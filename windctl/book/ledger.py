@@ -19,7 +19,7 @@ import sqlalchemy as sa
 from windctl.book.schema_3 import add_spool_and_words
 from windctl.book.store import Store
 from windctl.book.tables import ledger, log_entries, logs, metadata
-from windctl.errors import BookError
+from windctl.errors import BookError, BookOutdated
 
 APPLICATION_ID = 0x77434231  # "wCB1"
 
@@ -67,7 +67,7 @@ def bring_up(store: Store, steps: Sequence[Step] = STEPS) -> list[Path]:
     if version == newest:
         return []
     if store.readonly:
-        raise BookError(
+        raise BookOutdated(
             f"the coil book {store.path} has schema {version} and must be brought to {newest} first, "
             "but it is open for reading only: open it once for writing"
         )

@@ -124,6 +124,13 @@ class _Value:
 
 def parse(text: str) -> Query:
     """The query that `text` says; an empty text asks for everything. Raises QueryError."""
+    try:
+        return _parse(text)
+    except QueryError as error:
+        raise QueryError(error.what, error.at, text) from None
+
+
+def _parse(text: str) -> Query:
     terms: list[Term] = []
     orders: list[Order] = []
     scan = _Scan(text)
@@ -159,12 +166,16 @@ def parse(text: str) -> Query:
 
 def sorted_by(text: str) -> tuple[Order, ...]:
     """The orders that `text`, fields with commas between, names. Raises QueryError."""
-    if not text.strip():
+    text = text.strip()
+    if not text:
         return ()
-    scan = _Scan(text.strip())
-    orders = tuple(_order(value) for value in scan.values("sort"))
+    scan = _Scan(text)
+    try:
+        orders = tuple(_order(value) for value in scan.values("sort"))
+    except QueryError as error:
+        raise QueryError(error.what, error.at, text) from None
     if (at := scan.next_term()) is not None:
-        raise QueryError("fields to sort by have commas between them, and no blanks", at)
+        raise QueryError("fields to sort by have commas between them, and no blanks", at, text)
     return orders
 
 
