@@ -120,6 +120,48 @@ class CoilNoted:
 
 
 @dataclass(frozen=True, slots=True)
+class MagnetTold:
+    """Somebody says which pole of a coil's magnet is towards the strings. Beats what the recipe says: the
+    latest one counts. `pole`: "north" or "south"."""
+
+    kind: ClassVar[str] = "magnet_told"
+    wall_time: str
+    by: str
+    pole: str
+
+
+@dataclass(frozen=True, slots=True)
+class PairMade:
+    """This coil and `partner` (id; `partner_number`) go together. Stands in both coils' logs.
+
+    `joined`: how their leads are joined. Hum left in a uniform field, in dB against both in phase, as it was
+    known then: of the expected square, and the ends of its 95 % interval.
+    """
+
+    kind: ClassVar[str] = "pair_made"
+    wall_time: str
+    by: str
+    partner: str
+    partner_number: str
+    joined: str
+    left_db: float
+    left_low_db: float
+    left_high_db: float
+
+
+@dataclass(frozen=True, slots=True)
+class PairParted:
+    """This coil and `partner` go together no longer. Stands in both coils' logs."""
+
+    kind: ClassVar[str] = "pair_parted"
+    wall_time: str
+    by: str
+    partner: str
+    partner_number: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True)
 class SpoolAdded:
     """A spool of wire came to the shop: what is written on it, and its thickness by micrometer."""
 
@@ -171,6 +213,9 @@ Addendum = (
     | CoilWithdrawn
     | CoilReadmitted
     | CoilNoted
+    | MagnetTold
+    | PairMade
+    | PairParted
     | SpoolAdded
     | SpoolWeighed
     | SpoolMeasured
@@ -185,6 +230,9 @@ KINDS: dict[str, type[Addendum]] = {
         CoilWithdrawn,
         CoilReadmitted,
         CoilNoted,
+        MagnetTold,
+        PairMade,
+        PairParted,
         SpoolAdded,
         SpoolWeighed,
         SpoolMeasured,
@@ -248,4 +296,24 @@ def withdrawn(facts: Iterable[Addendum]) -> CoilWithdrawn | None:
             last = fact
         elif isinstance(fact, CoilReadmitted):
             last = None
+    return last
+
+
+def paired(facts: Iterable[Addendum]) -> PairMade | None:
+    """The pair that a coil is now part of, if it is of one."""
+    last: PairMade | None = None
+    for fact in facts:
+        if isinstance(fact, PairMade):
+            last = fact
+        elif isinstance(fact, PairParted):
+            last = None
+    return last
+
+
+def magnet(facts: Iterable[Addendum]) -> MagnetTold | None:
+    """What was last said of a coil's magnet."""
+    last: MagnetTold | None = None
+    for fact in facts:
+        if isinstance(fact, MagnetTold):
+            last = fact
     return last
