@@ -737,6 +737,15 @@ def test_beats_come_twice_a_second_and_only_while_wanted() -> None:
     assert bench.advance(NOTHING, 1.0) == []
 
 
+def test_a_beat_goes_before_each_word_that_lets_a_motor_turn() -> None:
+    bench, wants = ready_to_go()
+    beating = replace(wants, go=bench.permission, beat=True)
+    assert Beat() in bench.advance(replace(wants, beat=True))
+    assert bench.advance(beating, 0.1) == [Beat(), Go(7, 21)]  # the next one by itself is due in 0.4 s
+    assert bench.advance(beating, 0.26) == [Beat(), Go(7, 21)]  # not answered, said again
+    assert bench.advance(beating, 0.1) == []
+
+
 def test_next_due_is_when_there_is_something_to_say() -> None:
     bench = Bench()
     assert bench.c.next_due(bench.now) == bench.now

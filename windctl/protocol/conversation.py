@@ -230,14 +230,20 @@ class Conversation:
                 return bytes(out)
             raise LinkLost(str(self._lost))
         self._beating = wants.beat
-        if wants.beat and now >= self._beat_at:
+        self._note(wants)
+        self._look_for_mismatch(wants, now)
+        numbered = self._numbered(wants, now)
+        if wants.beat and (now >= self._beat_at or (numbered and self._sets_moving())):
             self._beat_at = now + BEAT_S
             out += _BEAT
             self.counters.sent += 1
-        self._note(wants)
-        self._look_for_mismatch(wants, now)
-        out += self._numbered(wants, now)
-        return bytes(out)
+        return bytes(out) + numbered
+
+    def _sets_moving(self) -> bool:
+        """Whether it lets a motor turn. The board counts its silence from there, too: a beat goes with it, so
+        that nothing turns for more than two seconds after the last beat."""
+        waiting = self._exchange.outstanding if self._exchange is not None else None
+        return waiting is not None and isinstance(waiting.command, Go | GuideTo)
 
     def paused(self, seconds: float) -> None:
         """The caller did not run for so long: what it did not hear or send in that time says nothing."""
