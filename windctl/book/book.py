@@ -13,7 +13,9 @@ import sqlalchemy as sa
 
 from windctl.book.export import exported, shown
 from windctl.book.heads import CoilHead, coil_number, head_columns, opened
+from windctl.book.imports import next_serial
 from windctl.book.lease import Lease
+from windctl.book.pairs import make_pairs, part_pair, stock_facts
 from windctl.book.queries import (
     HEAD_COLUMNS,
     Which,
@@ -39,12 +41,12 @@ from windctl.book.shelf import (
     untaught_in,
 )
 from windctl.book.store import Store
-from windctl.book.tables import coils, entries, numbers
+from windctl.book.tables import coils, entries
 from windctl.book.verify import VerifyReport, verify_book, verify_coil
 from windctl.book.words import first_words
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, RecordBroken
-from windctl.record.addenda import Addendum, SpoolAdded
+from windctl.record.addenda import Addendum, PairMade, SpoolAdded
 from windctl.record.canonical import decode, encode
 from windctl.record.chain import genesis, link
 from windctl.record.curve import CurvePoint
@@ -90,7 +92,7 @@ class Book:
         """
         _check_new(bench, year, started)
         with self._store.atomic() as connection:
-            serial = _next_serial(connection, bench, year)
+            serial = next_serial(connection, bench, year)
             started = replace(started, number=coil_number(bench, year, serial))
             payload = _first_payload(started)
             tie = link(genesis(started.coil_id), started.kind, payload)
@@ -196,6 +198,19 @@ class Book:
         """`amend` for several coils (name, facts), all of it or nothing: what is said of a pair, say."""
         amend(self._store, [(self.find(coil), facts) for coil, facts in said])
 
+    def make_pairs(self, pairs: Sequence[Sequence[tuple[str, PairMade]]]) -> None:
+        """Keep pairs, each as both coils' names and what their logs say; all or none. Raises BookError where
+        a coil has a partner already."""
+        make_pairs(self._store, [tuple((self.find(coil), fact) for coil, fact in pair) for pair in pairs])
+
+    def part_pair(self, coil: str, wall_time: str, by: str, reason: str) -> str:
+        """Part a coil from its partner, whose number is returned. Raises BookError where it has none."""
+        return part_pair(self._store, self.find(coil), wall_time, by, reason)
+
+    def stock_facts(self) -> Mapping[str, Sequence[Addendum]]:
+        """By coil id: what was measured, withdrawn, paired, parted, and said of magnets, in order."""
+        return stock_facts(self._store)
+
     def addenda(self, coil: str) -> tuple[Addendum, ...]:
         """What was said of a coil after it was closed, in order."""
         return addenda_in(self._store, self.find(coil))
@@ -262,18 +277,6 @@ def _first_payload(started: CoilStarted) -> bytes:
         return encode(started)
     except ValueError as error:  # a text that is no text, a number that is none
         raise BookError(f"the start of the coil cannot be recorded: {error}") from error
-
-
-def _next_serial(connection: sa.Connection, bench: str, year: int) -> int:
-    """The next number of a bench's year; the transaction's lock keeps others from getting the same."""
-    here = (numbers.c.bench == bench, numbers.c.year == year)
-    last = connection.scalar(sa.select(numbers.c.last).where(*here).with_for_update())
-    if last is None:
-        connection.execute(sa.insert(numbers), [{"bench": bench, "year": year, "last": 1}])
-        return 1
-    serial = int(last) + 1
-    connection.execute(sa.update(numbers).where(*here).values(last=serial))
-    return serial
 
 
 def _check_new(bench: str, year: int, started: CoilStarted) -> None:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 
@@ -118,12 +118,20 @@ def _record(facts: Sequence[Addendum]) -> SpoolRecord:
     return SpoolRecord(spool, added, tuple(facts))
 
 
-def amend(store: Store, said: Sequence[tuple[CoilHead, Sequence[Addendum]]]) -> None:
-    """Say something of closed coils, all of it or nothing. Raises BookError for one that is still open."""
+def amend(
+    store: Store,
+    said: Sequence[tuple[CoilHead, Sequence[Addendum]]],
+    agreed: Callable[[sa.Connection], None] = lambda _: None,
+) -> None:
+    """Say something of closed coils, all of it or nothing. Raises BookError for one that is still open.
+
+    `agreed` looks at the book as it is while nobody else can write, and raises where it must not be said.
+    """
     for head, _ in said:
         if not head.sealed:
             raise BookError(f"coil {head.number} is still open: this is for coils that are finished with")
     with store.atomic() as connection:
+        agreed(connection)
         for head, facts in said:
             append(connection, COIL + head.id, facts)
             if texts := said_in(facts):

@@ -1,0 +1,93 @@
+"""Pairs in the book: what is said of two coils stands in both their logs, at once or not at all."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import sqlalchemy as sa
+
+from windctl.book.heads import CoilHead
+from windctl.book.logs import COIL, facts_of, read
+from windctl.book.queries import HEAD_COLUMNS, head_of
+from windctl.book.shelf import amend
+from windctl.book.store import Store
+from windctl.book.tables import coils, log_entries
+from windctl.errors import BookError
+from windctl.record.addenda import (
+    Addendum,
+    CoilMeasured,
+    CoilReadmitted,
+    CoilWithdrawn,
+    MagnetTold,
+    PairMade,
+    PairParted,
+    decode,
+    paired,
+)
+
+# What decides whether a coil is in stock, and which way its magnet points.
+_OF_STOCK = tuple(
+    fact.kind for fact in (CoilMeasured, CoilWithdrawn, CoilReadmitted, MagnetTold, PairMade, PairParted)
+)
+
+
+def make_pairs(store: Store, pairs: Sequence[tuple[tuple[CoilHead, PairMade], ...]]) -> None:
+    """Each pair: both coils with what is said in their logs. All pairs or none.
+
+    Raises BookError where a coil has found another partner since, or stands in two of these pairs.
+    """
+    said = [each for pair in pairs for each in pair]
+
+    def free(connection: sa.Connection) -> None:
+        for head, _ in said:
+            other = paired(facts_of(read(connection, COIL + head.id)))
+            if other is not None:
+                raise BookError(
+                    f"coil {head.number} goes with {other.partner_number} already: part them first, with "
+                    "'windctl coils unpair'"
+                )
+
+    if len({head.id for head, _ in said}) < len(said):
+        raise BookError("a coil can only go with one other")
+    amend(store, [(head, (fact,)) for head, fact in said], free)
+
+
+def part_pair(store: Store, coil: CoilHead, wall_time: str, by: str, reason: str) -> str:
+    """Part a coil from its partner, in both logs; in its own alone where the partner is in another book.
+
+    Returns the partner's number. Raises BookError where it has none.
+    """
+    other: PairMade | None
+
+    def still_so(connection: sa.Connection) -> None:
+        if paired(facts_of(read(connection, COIL + coil.id))) != other:
+            raise BookError(f"coil {coil.number} was parted or paired by somebody else just now")
+
+    with store.reading() as connection:
+        other = paired(facts_of(read(connection, COIL + coil.id)))
+    if other is None:
+        raise BookError(f"coil {coil.number} goes with no other")
+    parted: list[tuple[CoilHead, tuple[Addendum, ...]]] = [
+        (coil, (PairParted(wall_time, by, other.partner, other.partner_number, reason),))
+    ]
+    with store.reading() as connection:
+        row = connection.execute(sa.select(*HEAD_COLUMNS).where(coils.c.id == other.partner)).one_or_none()
+    if row is not None:
+        parted.append((head_of(row), (PairParted(wall_time, by, coil.id, coil.number, reason),)))
+    amend(store, parted, still_so)
+    return other.partner_number
+
+
+def stock_facts(store: Store) -> dict[str, list[Addendum]]:
+    """By coil id, in order: what was said of each that decides about stock and magnets. Coils of which
+    nothing of the kind was said are not in it."""
+    facts: dict[str, list[Addendum]] = {}
+    query = (
+        sa.select(log_entries.c.log, log_entries.c.kind, log_entries.c.payload)
+        .where(log_entries.c.kind.in_(_OF_STOCK))
+        .order_by(log_entries.c.log, log_entries.c.seq)
+    )
+    with store.reading() as connection:
+        for log, kind, payload in connection.execute(query):
+            facts.setdefault(log.removeprefix(COIL), []).append(decode(kind, payload))
+    return facts
