@@ -13,7 +13,6 @@ import sqlalchemy as sa
 
 from windctl.book.export import exported, shown
 from windctl.book.heads import CoilHead, coil_number, head_columns, opened
-from windctl.book.imports import next_serial
 from windctl.book.lease import Lease
 from windctl.book.pairs import make_pairs, part_pair, stock_facts
 from windctl.book.queries import (
@@ -41,7 +40,7 @@ from windctl.book.shelf import (
     untaught_in,
 )
 from windctl.book.store import Store
-from windctl.book.tables import coils, entries
+from windctl.book.tables import coils, entries, numbers
 from windctl.book.verify import VerifyReport, verify_book, verify_coil
 from windctl.book.words import first_words
 from windctl.book.writer import CoilWriter
@@ -92,7 +91,7 @@ class Book:
         """
         _check_new(bench, year, started)
         with self._store.atomic() as connection:
-            serial = next_serial(connection, bench, year)
+            serial = _next_serial(connection, bench, year)
             started = replace(started, number=coil_number(bench, year, serial))
             payload = _first_payload(started)
             tie = link(genesis(started.coil_id), started.kind, payload)
@@ -277,6 +276,18 @@ def _first_payload(started: CoilStarted) -> bytes:
         return encode(started)
     except ValueError as error:  # a text that is no text, a number that is none
         raise BookError(f"the start of the coil cannot be recorded: {error}") from error
+
+
+def _next_serial(connection: sa.Connection, bench: str, year: int) -> int:
+    """The next number of a bench's year; the transaction's lock keeps others from getting the same."""
+    here = (numbers.c.bench == bench, numbers.c.year == year)
+    last = connection.scalar(sa.select(numbers.c.last).where(*here).with_for_update())
+    if last is None:
+        connection.execute(sa.insert(numbers), [{"bench": bench, "year": year, "last": 1}])
+        return 1
+    serial = int(last) + 1
+    connection.execute(sa.update(numbers).where(*here).values(last=serial))
+    return serial
 
 
 def _check_new(bench: str, year: int, started: CoilStarted) -> None:
