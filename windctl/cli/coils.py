@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from windctl.cli import coil_addenda, coil_measure, present
+from windctl.cli import coil_addenda, coil_measure, label, present, report
 from windctl.cli.exit_codes import ExitCode
 from windctl.cli.options import Shared, takes
 from windctl.desk.books import book_if_any, book_to_read
@@ -236,5 +236,12 @@ def export(shared: Shared, coil: str) -> None:
         present.result_json(dict(book.export(coil)))
 
 
-for _command in (coil_addenda.note, coil_measure.measure, coil_measure.budget, coil_addenda.withdraw):
+for _command in (
+    report.report,
+    label.label,
+    coil_addenda.note,
+    coil_measure.measure,
+    coil_measure.budget,
+    coil_addenda.withdraw,
+):
     coils.add_command(_command)

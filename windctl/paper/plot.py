@@ -202,9 +202,7 @@ class Plot:
         right, bottom = self.at(self.x.high, self.y.low)
         clip = f"{self.ident}-frame"
         parts = [
-            svg.element(
-                "clipPath", svg.rect(left - 0.5, top - 0.5, right - left + 1, bottom - top + 1), id=clip
-            ),
+            svg.element("clipPath", svg.rect(left - 1, top - 1, right - left + 2, bottom - top + 2), id=clip),
             self._grid(),
             svg.group(*layers, clip_path=f"url(#{clip})"),
             svg.line(left, bottom, right, bottom, Pen(INK, 1.0)),

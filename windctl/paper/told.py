@@ -1,0 +1,203 @@
+"""A coil's rare facts in the words of somebody who tells it later. Pure."""
+
+from __future__ import annotations
+
+import dataclasses
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+from windctl.numbers import duration, grouped, ohm, with_uncertainty
+from windctl.protocol.messages import Cause, Refusal, Trip
+from windctl.record import events as facts
+from windctl.record.addenda import (
+    Addendum,
+    CoilMeasured,
+    CoilNoted,
+    CoilReadmitted,
+    CoilTaught,
+    CoilWithdrawn,
+)
+from windctl.record.events import Event
+
+_Z95 = 1.959964
+_BY = {"virtual": "the simulation", "operator": "the operator", "windctl": "the program"}
+_CAUSES = {
+    Cause.STOP_POINT: "at its stop point",
+    Cause.QUEUE_END: "at the end of its program",
+}
+_ALIKE = 3  # choices of a stop point in a row, from which on only the first and the last are told
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """One fact: when, since its run began; what."""
+
+    when: str
+    what: str
+
+
+def story(rare: Iterable[Event], counts_per_turn: int) -> tuple[Line, ...]:
+    """The facts in order. Of a long row of refined stop points only the first and the last are told."""
+    lines: list[Line] = []
+    choices: list[Line] = []
+    for event in rare:
+        text = told(event, counts_per_turn)
+        if text is None:
+            continue
+        at_ms = getattr(event, "at_ms", None)
+        line = Line("" if at_ms is None else duration(at_ms / 1000.0), text)
+        if isinstance(event, facts.StopPointChosen):
+            choices.append(line)
+            continue
+        lines += _gathered(choices)
+        choices = []
+        lines.append(line)
+    return (*lines, *_gathered(choices))
+
+
+def _gathered(choices: list[Line]) -> list[Line]:
+    if len(choices) < _ALIKE:
+        return choices
+    between = Line("", f"refined {len(choices) - 2} times between")
+    return [choices[0], between, choices[-1]]
+
+
+def told(event: Event, counts_per_turn: int) -> str | None:
+    """One line for one rare fact; None for what goes without saying."""
+
+    def turn(count: int) -> str:
+        return grouped(count / max(counts_per_turn, 1))
+
+    match event:
+        case facts.CoilStarted():
+            return f"Begun by {event.operator} on {event.machine}, {_moment(event.wall_time)}."
+        case facts.Resumed():
+            return f"Taken up again by {event.operator}, {_moment(event.wall_time)}."
+        case facts.BoardGreeted():
+            return f"The machine answered, standing at turn {turn(event.identity.count)}."
+        case facts.GoGiven():
+            return None if event.by == "consent" else f"Go, given by {by(event.by)}."
+        case facts.WentOn():
+            return f"The spindle turned from turn {turn(event.count)} on."
+        case facts.Held():
+            return f"It came to rest at turn {turn(event.count)}, {_cause(event.cause)}."
+        case facts.HoldRequested():
+            return f"Held by {by(event.by)}: {event.reason}."
+        case facts.EndRequested():
+            return f"To be ended there, said {by(event.by)}: {event.reason}."
+        case facts.ClearGiven():
+            return f"The trip was cleared by {by(event.by)}."
+        case facts.StopPointChosen():
+            finish = ohm(event.finish_ohm, _Z95 * event.finish_sd)
+            return f"To stop at turn {turn(event.count)} ({event.reason}); foreseen {finish} at 20 °C."
+        case facts.Tripped():
+            return f"The machine tripped at turn {turn(event.count)}: {_named(Trip, event.trip)}."
+        case facts.LinkLost():
+            return f"The line to the machine was lost: {event.reason}."
+        case facts.CountCorrected():
+            return f"The turn was set to {grouped(event.turn, 1)} by {by(event.by)}: {event.reason}."
+        case facts.CommandRefused():
+            return f"The machine declined a command: {_named(Refusal, event.refused.why)}."
+        case facts.HandsAsked():
+            return f"Drives off: {event.reason}."
+        case facts.WireBroke():
+            return f"The wire broke at turn {grouped(event.turn, 1)}."
+        case facts.Spliced():
+            return f"The wire was spliced at turn {grouped(event.turn, 1)} by {by(event.by)}."
+        case facts.WireChanged():
+            name = f", {event.spool}," if event.spool else ""
+            return f"Another spool{name} was joined on at turn {grouped(event.turn, 1)}."
+        case facts.CheckAsked():
+            before, after = _Z95 * event.without_ohm, _Z95 * event.with_ohm
+            return f"Stopped at turn {grouped(event.turn)} to be read: ±{before:.0f} to ±{after:.0f} ohm."
+        case facts.ReadingTyped():
+            read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C"
+            return f"Read by hand at turn {grouped(event.turn)}: {read}, as the meter showed it."
+        case facts.CheckTaken():
+            how = "the coil was read" if event.read else "passed over"
+            return f"Check at turn {grouped(event.turn)}: {how}."
+        case facts.Unwound():
+            return f"Unwound by hand from turn {turn(event.before)} to {turn(event.count)}."
+        case facts.AlarmRaised():
+            return f"Alarm at turn {grouped(event.turn)}: {event.text}."
+        case facts.NoteMade():
+            return f"Note by {by(event.by)}: {event.text}"
+        case facts.CoilFinished():
+            return f"{event.outcome.capitalize()}: {event.reason}."
+        case _:
+            return f"{plainly(event.kind)}{_fields(event)}."
+
+
+def said_since(fact: Addendum) -> tuple[str, str, str] | None:
+    """(when, who, what) of a fact after the record was closed; None for what only the program needs."""
+    match fact:
+        case CoilTaught():
+            return None
+        case CoilNoted():
+            what = f"Note: {fact.text}"
+        case CoilWithdrawn():
+            what = f"Withdrawn, teaches nothing: {fact.reason}"
+        case CoilReadmitted():
+            what = f"Readmitted, teaches again: {fact.reason}"
+        case CoilMeasured():
+            what = _measured(fact)
+        case _:
+            what = f"{plainly(fact.kind.removeprefix('coil_'))}{_fields(fact)}"
+    return _moment(getattr(fact, "wall_time", "")), str(getattr(fact, "by", "")), what
+
+
+def _measured(fact: CoilMeasured) -> str:
+    parts = []
+    if fact.ohm is not None and fact.celsius is not None:
+        parts.append(f"{ohm(fact.ohm)} at {fact.celsius:.1f} °C, as the meter showed it")
+    if fact.dcr_20c_ohm is not None:
+        parts.append(f"{ohm(fact.dcr_20c_ohm)} at 20 °C without leads")
+    if fact.grams is not None:
+        parts.append(f"wire {with_uncertainty(fact.grams, _Z95 * (fact.grams_sd or 0.0), 'g')}")
+    if fact.build_mm is not None:
+        parts.append(f"build {with_uncertainty(fact.build_mm, _Z95 * (fact.build_sd_mm or 0.0), 'mm')}")
+    return f"Measured: {'; '.join(parts)}" if parts else "Measured"
+
+
+def by(who: str) -> str:
+    """Who did something, as a report names them."""
+    return _BY.get(who, who)
+
+
+def plainly(name: str) -> str:
+    """A name of the program in plain words: `tension_low` to `Tension low`."""
+    return name.lower().replace("_", " ").capitalize()
+
+
+def _moment(text: str) -> str:
+    """A time as recorded, to the minute: `2026-12-01 14:52`."""
+    return text[:16].replace("T", " ")
+
+
+def _cause(cause: int) -> str:
+    try:
+        known = Cause(cause)
+    except ValueError:  # of a later board
+        return f"for cause {cause}"
+    return _CAUSES.get(known, known.name.lower().replace("_", " "))
+
+
+def _named(names: type[Trip] | type[Refusal], value: int) -> str:
+    try:
+        return names(value).name.lower().replace("_", " ")
+    except ValueError:  # of a later board
+        return f"number {value}"
+
+
+def _fields(fact: Event | Addendum) -> str:
+    """A fact's fields, where there are no words for it here."""
+    shown = [
+        f"{field.name.replace('_', ' ')} {value:g}"
+        if isinstance(value, float)
+        else f"{field.name.replace('_', ' ')} {value}"
+        for field in dataclasses.fields(fact)
+        if field.name not in ("at_ms", "wall_time", "by")
+        and (value := getattr(fact, field.name)) not in (None, "")
+        and isinstance(value, str | int | float)
+    ]
+    return f": {', '.join(shown)}" if shown else ""
