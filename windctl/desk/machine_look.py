@@ -74,12 +74,18 @@ class Looked:
     board: BoardSeen | None = None
     checking: bool = False
     stopping: bool = False
+    stopped: bool = False  # the last check was
     step: str = ""
     steps: tuple[StepSeen, ...] = ()
     results: tuple[Result, ...] = ()
     asked: Asked | None = None
     calibration: dict[str, float | int] = field(default_factory=dict)
     unconfirmed: bool = False  # a stop was asked for and the drives were not seen to go off
+
+    @property
+    def turning(self) -> bool:
+        """The spindle turns, or has not come to rest yet."""
+        return self.board is not None and (self.board.state == "turning" or not self.board.standing)
 
 
 @dataclass(frozen=True, slots=True)
@@ -192,7 +198,7 @@ class MachineLook:
         while not self._answers.empty():
             self._answers.get()
         self._say(
-            checking=True, stopping=False, results=(), calibration={}, unconfirmed=False,
+            checking=True, stopping=False, stopped=False, results=(), calibration={}, unconfirmed=False,
             steps=steps_seen(wanted.keys, powered=wanted.powered),
         )  # fmt: skip
         reading: Reading | None = None
@@ -226,8 +232,8 @@ class MachineLook:
                 break
         results = tuple(checkup.results)
         self._say(
-            checking=False, stopping=False, step="", asked=None, results=results,
-            calibration=calibrations(results), unconfirmed=not checkup.done,
+            checking=False, stopping=False, stopped=stopped_at is not None, step="", asked=None,
+            results=results, calibration=calibrations(results), unconfirmed=not checkup.done,
         )  # fmt: skip
 
     def _pass_on(self, checkup: Checkup, question: Question | None) -> None:

@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from windctl.tui.session import Run, Session
 
 MOVING = ("turning", "stopping")
+UNCONFIRMED = "THE STOP IS NOT CONFIRMED: use the hardware stop."
 
 
 class WindctlApp(App[int], inherit_bindings=False):
@@ -48,6 +49,7 @@ class WindctlApp(App[int], inherit_bindings=False):
         key("recipes", show=False),
         key("coils"),
         key("spools", show=False),
+        key("machine", show=False),
         key("light", show=False),
         key("quit", show=False),
         key("leave", show=False),
@@ -84,9 +86,11 @@ class WindctlApp(App[int], inherit_bindings=False):
 
     def space_holds(self) -> bool:
         """Space holds while a coil turns and nothing is being typed."""
-        run = self.session.run
-        if run is None or isinstance(self.focused, Input | TextArea):
+        if isinstance(self.focused, Input | TextArea):
             return False
+        run, bench = self.session.run, self.session.bench
+        if run is None:
+            return bench is not None and bench.look().turning
         return run.winding.look().phase in MOVING
 
     async def on_event(self, event: events.Event) -> None:
@@ -96,7 +100,7 @@ class WindctlApp(App[int], inherit_bindings=False):
             if urgent:
                 if not isinstance(event, Held):
                     self.hold_at_once()
-                if self.session.run is None:
+                if self.session.run is None and self.session.bench is None:
                     self.notify("nothing is being wound", markup=False)
                 return
         await super().on_event(event)
@@ -110,12 +114,17 @@ class WindctlApp(App[int], inherit_bindings=False):
 
     def action_room(self, name: str) -> None:
         """Go to another room; a coil being wound stays where it is beneath."""
-        if name == "recipes":
+        if self.session.checking:
+            self.notify("the machine is being checked: F8 stops that first", markup=False)
+        elif name == "recipes":
             if self.session.run is not None:
                 self.notify("a coil is on the machine: first finish it or leave it open", markup=False)
             else:
                 self.pop_to_recipes()
-            return
+        else:
+            self._to_room(name)
+
+    def _to_room(self, name: str) -> None:
         kind = rooms.room_of(name)
         while not isinstance(self.screen, kind) and isinstance(self.screen, rooms.Between):
             self.pop_screen()
@@ -164,7 +173,7 @@ class WindctlApp(App[int], inherit_bindings=False):
         """Close; where a coil is being wound, ask first, then hold and record."""
         run = self.session.run
         if run is None:
-            self.exit(0)
+            self.run_worker(self._leave, thread=True, name="leave", exit_on_error=True)
         elif not isinstance(self.screen, Confirm):
             self.push_screen(Confirm("Leave windctl?", leaving_words(run)), self._answered_leave)
 
@@ -174,9 +183,10 @@ class WindctlApp(App[int], inherit_bindings=False):
 
     def _leave(self) -> None:
         run = self.session.run
+        stands = self.session.close_bench()
         outcome = self.session.leave("left by the operator")
-        self.farewell = farewell(run, outcome)
-        self.call_from_thread(self.exit, 0 if outcome is None or outcome.left != "unconfirmed" else 1)
+        self.farewell = farewell(run, outcome) if stands else UNCONFIRMED
+        self.call_from_thread(self.exit, 0 if self.farewell != UNCONFIRMED else 1)
 
 
 def leaving_words(run: Run) -> str:
@@ -194,7 +204,7 @@ def farewell(run: Run | None, outcome: Outcome | None) -> str:
     if run is None or outcome is None:
         return ""
     if outcome.left == "unconfirmed":
-        return "THE STOP IS NOT CONFIRMED: use the hardware stop."
+        return UNCONFIRMED
     if outcome.summary.outcome == "open":
         return f"The spindle stands, {outcome.number} stays open: windctl resume {outcome.number}"
     return ""

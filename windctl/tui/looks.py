@@ -24,6 +24,8 @@ LOOKS = {
     "settling": Look("settling", "◇", "settling"),
     "tripped": Look("tripped", "✖", "alarm"),
     "ended": Look("ended", "■", "ended"),
+    "drives off": Look("off", "○", "waiting"),
+    "not open": Look("not open", "○", "waiting"),
     "no link": Look("no link", "✖", "alarm"),
     "failed": Look("failed", "✖", "alarm"),
 }
@@ -39,6 +41,34 @@ OUTCOMES = {
     "stopped": Look("stopped", "‖", "unsure"),
     "tripped": Look("tripped", "✖", "bad"),
     "open": Look("open", "◌", "unsure"),
+}
+
+STEPS = {
+    "good": Look("good", "✔", "good"),
+    "fault": Look("fault", "✖", "bad"),
+    "left out": Look("left out", "–", "unsure"),
+    "not fitted": Look("not fitted", "·", "label"),
+    "now": Look("now", "▶", "past"),
+    "to come": Look("to come", "□", "label"),
+}
+
+INPUTS = {  # of an input: whether it is as it should be for winding
+    "well": Look("closed", "✔", "good"),
+    "open": Look("OPEN", "✖", "bad"),
+    "free": Look("free", "✔", "good"),
+    "pressed": Look("PRESSED", "✖", "bad"),
+    "down": Look("down", "▼", "past"),
+    "up": Look("up", "△", "label"),
+    "standing": Look("stands", "■", "good"),
+    "moving": Look("moves", "▶", "past"),
+    "none": Look("not fitted", "·", "label"),
+    "known": Look("known", "✔", "good"),
+    "unknown": Look("not placed", "○", "unsure"),
+    "reads": Look("reads", "✔", "good"),
+    "waits": Look("no reading", "○", "unsure"),
+    "free leads": Look("open", "○", "unsure"),
+    "fitted": Look("fitted", "✔", "good"),
+    "tripped": Look("TRIPPED", "✖", "bad"),
 }
 
 FITS = {

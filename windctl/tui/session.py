@@ -6,55 +6,38 @@ request into the run's queue and may be called from anywhere, at any time.
 
 from __future__ import annotations
 
-import json
 import threading
 from collections.abc import Callable
-from contextlib import AbstractContextManager, ExitStack, nullcontext
-from dataclasses import dataclass, replace
+from contextlib import ExitStack
+from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from windctl.desk.asked import Shared
-from windctl.desk.books import book_if_any, book_to_read, book_to_write
-from windctl.desk.machines import profile_of, simulated_here
+from windctl.desk.books import book_to_read, book_to_write
 from windctl.errors import RecordBroken
 from windctl.run.requests import Hold
 from windctl.tui.cards import card_for
-from windctl.tui.page import PAGE, Page
 from windctl.tui.pictures.curve import Point
+from windctl.tui.records import Records, points_of
+from windctl.tui.sitting import REAL_TIME
 from windctl.tui.view import Card
 
 if TYPE_CHECKING:
     from windctl.book.book import Book
     from windctl.book.heads import CoilHead
-    from windctl.book.verify import VerifyReport
     from windctl.desk.bench import Bench
-    from windctl.desk.spools import SpoolState
     from windctl.plan.experience.supply import Supply
     from windctl.plan.growth import Growth
     from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe
-    from windctl.record.curve import CurvePoint
-    from windctl.record.events import CoilStarted, Event
+    from windctl.record.events import CoilStarted
     from windctl.run.outcome import Outcome
     from windctl.run.wind import Winding
     from windctl.tui.recipes import Listed, Preview
 
 LEAVING_S = 45.0  # to see the spindle stand and the record complete
 _Z95 = 1.959964
-
-REAL_TIME = 1.0  # the simulated machine's speed where none is asked for: one practises on it
-
-
-@dataclass(frozen=True, slots=True)
-class Told:
-    """A recorded coil as the interface shows it."""
-
-    head: CoilHead
-    card: Card
-    curve: tuple[Point, ...]
-    lines: tuple[tuple[str, str], ...]  # when, what
-    machine: str
 
 
 class Run:
@@ -78,30 +61,19 @@ class Run:
         return self._counts_per_turn
 
 
-class Session:
-    """One sitting at one machine."""
+class Session(Records):
+    """One sitting at one machine, and the coil that is wound on it."""
 
     def __init__(self, shared: Shared, folders: list[Path] | None = None) -> None:
-        self.shared = shared
+        super().__init__(shared)
         self._folders = folders
         self._lock = threading.Lock()
         self._leaving = threading.Event()
         self._stack: ExitStack | None = None
         self._bench: Bench | None = None
         self.run: Run | None = None
-        self.profile: MachineProfile = profile_of(shared)
-        self.simulated = simulated_here(shared, self.profile)
 
     # ------------------------------------------------------------ before
-
-    @property
-    def machine_words(self) -> str:
-        """The machine in a few words."""
-        if not self.simulated:
-            return f"{self.profile.name} · {self.profile.port.url}"
-        speed = self.shared.speed
-        pace = "as fast as possible" if speed == 0 else f"{REAL_TIME if speed is None else speed:g}×"
-        return f"{self.profile.name} · {pace}"
 
     def recipes(self) -> list[Listed]:
         """All recipes within reach."""
@@ -118,22 +90,6 @@ class Session:
             return supply_of(self.shared, self.profile, recipe, simulated=self.simulated)
 
         return recipes.preview(one, self.profile, supply_for)
-
-    @property
-    def spool(self) -> str | None:
-        """The spool that the next coils are wound from, if one is named."""
-        return self.shared.spool
-
-    def take_spool(self, name: str | None) -> None:
-        """Wind the next coils from this spool, or from none that is named."""
-        self.shared = replace(self.shared, spool=name)
-
-    def spools(self) -> tuple[SpoolState, ...]:
-        """All spools in the book, in order of their names."""
-        from windctl.desk.spools import states_of
-
-        with self._book() as book:
-            return () if book is None else states_of(book)
 
     def last_of(self, recipe: str) -> CoilHead | None:
         """The coil of this recipe that was begun last."""
@@ -163,9 +119,8 @@ class Session:
             recipe = preview.recipe
             card = card_for(recipe.name, winding.number, bench.name, preview.plan, recipe.stop)
             card = replace(card, batch=batch, of=of, place=place, depth_mm=recipe.bobbin.flange_depth_mm)
-            return self._started(
-                stack, Run(winding, card, preview.growth, self.profile.spindle.counts_per_turn, [])
-            )
+            run = Run(winding, card, preview.growth, self.profile.spindle.counts_per_turn, [])
+            return self._started(stack, run)
 
     def go_on(self, number: str, at_turn: float | None = None) -> Run:
         """Take an open coil up where its record ends. Raises WindctlError; nothing is open then."""
@@ -192,10 +147,11 @@ class Session:
             winding = go_on(number, book, bench.port, bench.here, at_turn)
             card = card_for(recipe.name, number, bench.name, plan, recipe.stop)
             card = replace(card, batch=head.batch, of=head.of, depth_mm=recipe.bobbin.flange_depth_mm)
-            before = _points(review(events).curve)
+            before = points_of(review(events).curve)
             counts_per_turn = started.setup.counts_per_turn
             growth = growth_of(recipe, profile, plan)
-            return self._started(stack, Run(winding, card, growth, counts_per_turn, before))
+            run = Run(winding, card, growth, counts_per_turn, before)
+            return self._started(stack, run)
 
     def _open(
         self,
@@ -228,10 +184,12 @@ class Session:
         return run
 
     def hold(self, reason: str = "the hold key", leave: bool = False) -> bool:
-        """Ask the spindle to stand. Only puts a request; True if there is a run to hear it."""
-        run = self.run
+        """Ask the spindle to stand. Only puts a request; True if there is somebody to hear it."""
+        run, bench = self.run, self.bench
+        if bench is not None:
+            bench.hold()
         if run is None:
-            return False
+            return bench is not None
         if leave:
             self._leaving.set()
         run.winding.request(Hold("operator", reason, leave=leave))
@@ -259,6 +217,7 @@ class Session:
 
     def leave(self, reason: str) -> Outcome | None:
         """Hold, wait until the spindle stands and the record is complete; the coil stays open."""
+        self.close_bench()
         run = self.run
         if run is None:
             return None
@@ -275,82 +234,3 @@ class Session:
             heads = () if book is None else book.open_coils(self.profile.bench)
         running = self.run.card.number if self.run is not None else ""
         return tuple(head for head in heads if head.number != running)
-
-    def _book(self) -> AbstractContextManager[Book | None]:
-        """The book; None where no coil has been wound yet, also in one that was named."""
-        named = self.shared.book
-        if named is not None and not named.exists():
-            return nullcontext()
-        return book_if_any(self.shared)
-
-    def page(self, number: int, outcome: str | None = None) -> Page:
-        """One page of coils, the one begun last first."""
-        with self._book() as book:
-            if book is None:
-                return Page((), 0, 0)
-            total = book.count(outcome=outcome)
-            heads = book.list(outcome=outcome, limit=PAGE, offset=number * PAGE)
-            return Page(heads, total, number)
-
-    def told(self, number: str) -> Told:
-        """One coil, as it is shown. Raises BookError, RecordBroken."""
-        from windctl.record.curve import review
-
-        with book_to_read(self.shared) as book:
-            head = book.find(number)
-            events = list(book.events(number))
-            curve = book.curve(number) if head.sealed else review(events).curve
-        return _told(head, events, curve)
-
-    def verify(self, number: str) -> VerifyReport:
-        """Check one record against its digests."""
-        with book_to_read(self.shared) as book:
-            return book.verify(number)
-
-    def export(self, number: str) -> Path:
-        """Write the whole record beside the user, as JSON; where it went."""
-        with book_to_read(self.shared) as book:
-            record = {"format": 1, **dict(book.export(number))}
-        path = Path.cwd() / f"{number}.json"
-        path.write_text(json.dumps(record, ensure_ascii=False, indent=2), encoding="utf-8")
-        return path
-
-
-def _points(curve: tuple[CurvePoint, ...]) -> list[Point]:
-    return [Point(one.turn, one.ohm_20c, one.final_ohm, _Z95 * one.final_sd) for one in curve]
-
-
-def _told(head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...]) -> Told:
-    from windctl.record.events import CoilStarted
-    from windctl.tui.telling import tell, when
-
-    started = events[0]
-    if not isinstance(started, CoilStarted):
-        raise RecordBroken(f"the record of coil {head.number} does not begin with its start")
-    target = started.target
-    points = _points(curve)
-    last = points[-1] if points else None
-    card = Card(
-        number=head.number,
-        recipe=head.recipe,
-        machine=started.machine,
-        target_kind=target.kind,
-        target_value=target.value,
-        tolerance_pct=target.tolerance_pct,
-        most_turns=float(target.max_turns),
-        planned_turns=started.planned_turns,
-        planned_ohm=last.finish if last and last.finish else target.value,
-        planned_u95=points[0].u95 or 0.0 if points else 0.0,
-        depth_mm=0.0,
-        batch=head.batch,
-        of=head.of,
-    )
-    lines = []
-    for event in events:
-        text = tell(event, started.setup.counts_per_turn) if event.kind not in _DENSE else None
-        if text is not None:
-            lines.append((when(event), text))
-    return Told(head, card, tuple(points), tuple(lines), started.machine)
-
-
-_DENSE = ("status_heard", "reading_taken")

@@ -2,23 +2,20 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
-
 from textual.binding import BindingType
 
 from windctl.tui.keymap import key
 from windctl.tui.screens.room import Room
 
 
-class Between(Room):
-    """Escape goes back; the keys of the rooms are shown."""
+def ways(here: str = "") -> list[BindingType]:
+    """The keys of the rooms, to stand behind a room's own; that of the room itself is not shown."""
+    rooms = [key(name, show=name != here) for name in ("recipes", "coils", "spools", "machine")]
+    return [*rooms, key("back", show=False)]
 
-    BINDINGS: ClassVar[list[BindingType]] = [
-        key("recipes"),
-        key("coils"),
-        key("spools"),
-        key("back", show=False),
-    ]
+
+class Between(Room):
+    """Escape goes back. `BINDINGS` of a room end with `ways`."""
 
     def on_mount(self) -> None:
         """Colours in tables are painted anew when the theme changes."""

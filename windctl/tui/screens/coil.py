@@ -15,21 +15,22 @@ from windctl.desk.numbers import ohm, turns
 from windctl.errors import WindctlError
 from windctl.tui.keymap import key
 from windctl.tui.looks import OUTCOMES, VERDICTS
-from windctl.tui.screens.between import Between
+from windctl.tui.screens.between import Between, ways
 from windctl.tui.view import target_text
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
 
 if TYPE_CHECKING:
     from windctl.book.verify import VerifyReport
-    from windctl.tui.session import Session, Told
+    from windctl.tui.records import Told
+    from windctl.tui.session import Session
 
 
 class CoilScreen(Between):
     """V checks the record against its digests; X writes it out."""
 
     ABOUT = "One coil as its record tells it. V verifies the record, X writes all of it beside you as JSON."
-    BINDINGS: ClassVar[list[BindingType]] = [key("coil.verify"), key("coil.export")]
+    BINDINGS: ClassVar[list[BindingType]] = [key("coil.verify"), key("coil.export"), *ways()]
 
     def __init__(self, session: Session, number: str) -> None:
         super().__init__(session)

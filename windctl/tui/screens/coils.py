@@ -15,7 +15,7 @@ from windctl.errors import WindctlError
 from windctl.tui.keymap import key
 from windctl.tui.looks import OUTCOMES, VERDICTS
 from windctl.tui.page import Page
-from windctl.tui.screens.between import Between
+from windctl.tui.screens.between import Between, ways
 from windctl.tui.screens.coil import CoilScreen
 
 if TYPE_CHECKING:
@@ -33,6 +33,7 @@ class CoilsScreen(Between):
         key("coils.newer"),
         key("coils.older"),
         key("coils.filter"),
+        *ways("coils"),
     ]
 
     def __init__(self, session: Session) -> None:

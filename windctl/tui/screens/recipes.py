@@ -49,6 +49,7 @@ class RecipesScreen(Room):
         key("recipes.reload", show=False),
         key("coils"),
         key("spools"),
+        key("machine"),
     ]
 
     def heading(self) -> str:

@@ -9,6 +9,7 @@ from windctl.tui.screens.between import Between as Between
 ABOUT: Final = {
     "coils": "what was wound",
     "spools": "wire, and what is left of it",
+    "machine": "inputs as they are now, and the check of board and machine",
 }
 
 
@@ -23,5 +24,9 @@ def room_of(name: str) -> type[Between]:
             from windctl.tui.screens.spools import SpoolsScreen
 
             return SpoolsScreen
+        case "machine":
+            from windctl.tui.screens.machine import MachineScreen
+
+            return MachineScreen
         case _:
             raise ValueError(f"there is no room {name!r}")

@@ -17,7 +17,7 @@ from windctl.tui import spool_forms, spool_view
 from windctl.tui.dialogs.form import Form
 from windctl.tui.field import Field
 from windctl.tui.keymap import key
-from windctl.tui.screens.between import Between
+from windctl.tui.screens.between import Between, ways
 from windctl.tui.widgets.figures import Figures
 from windctl.tui.widgets.known import Known
 from windctl.tui.widgets.news import News
@@ -43,6 +43,7 @@ class SpoolsScreen(Between):
         key("spools.add"),
         key("spools.weigh"),
         key("spools.measure"),
+        *ways("spools"),
     ]
 
     def __init__(self, session: Session) -> None:

@@ -1,0 +1,110 @@
+"""The book as the interface reads it: pages of coils, one coil as it is told, its check, its export."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from windctl.desk.books import book_to_read
+from windctl.errors import RecordBroken
+from windctl.tui.page import PAGE, Page
+from windctl.tui.pictures.curve import Point
+from windctl.tui.sitting import Sitting
+from windctl.tui.view import Card
+
+if TYPE_CHECKING:
+    from windctl.book.heads import CoilHead
+    from windctl.book.verify import VerifyReport
+    from windctl.record.curve import CurvePoint
+    from windctl.record.events import Event
+
+_Z95 = 1.959964
+
+
+@dataclass(frozen=True, slots=True)
+class Told:
+    """A recorded coil as the interface shows it."""
+
+    head: CoilHead
+    card: Card
+    curve: tuple[Point, ...]
+    lines: tuple[tuple[str, str], ...]  # when, what
+    machine: str
+
+
+class Records(Sitting):
+    """What was wound. Everything raises BookError; reading never makes a book."""
+
+    def page(self, number: int, outcome: str | None = None) -> Page:
+        """One page of coils, the one begun last first."""
+        with self._book() as book:
+            if book is None:
+                return Page((), 0, 0)
+            total = book.count(outcome=outcome)
+            heads = book.list(outcome=outcome, limit=PAGE, offset=number * PAGE)
+            return Page(heads, total, number)
+
+    def told(self, number: str) -> Told:
+        """One coil, as it is shown. Raises BookError, RecordBroken."""
+        from windctl.record.curve import review
+
+        with book_to_read(self.shared) as book:
+            head = book.find(number)
+            events = list(book.events(number))
+            curve = book.curve(number) if head.sealed else review(events).curve
+        return _told(head, events, curve)
+
+    def verify(self, number: str) -> VerifyReport:
+        """Check one record against its digests."""
+        with book_to_read(self.shared) as book:
+            return book.verify(number)
+
+    def export(self, number: str) -> Path:
+        """Write the whole record beside the user, as JSON; where it went."""
+        with book_to_read(self.shared) as book:
+            record = {"format": 1, **dict(book.export(number))}
+        path = Path.cwd() / f"{number}.json"
+        path.write_text(json.dumps(record, ensure_ascii=False, indent=2), encoding="utf-8")
+        return path
+
+
+def points_of(curve: tuple[CurvePoint, ...]) -> list[Point]:
+    return [Point(one.turn, one.ohm_20c, one.final_ohm, _Z95 * one.final_sd) for one in curve]
+
+
+def _told(head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...]) -> Told:
+    from windctl.record.events import CoilStarted
+    from windctl.tui.telling import tell, when
+
+    started = events[0]
+    if not isinstance(started, CoilStarted):
+        raise RecordBroken(f"the record of coil {head.number} does not begin with its start")
+    target = started.target
+    points = points_of(curve)
+    last = points[-1] if points else None
+    card = Card(
+        number=head.number,
+        recipe=head.recipe,
+        machine=started.machine,
+        target_kind=target.kind,
+        target_value=target.value,
+        tolerance_pct=target.tolerance_pct,
+        most_turns=float(target.max_turns),
+        planned_turns=started.planned_turns,
+        planned_ohm=last.finish if last and last.finish else target.value,
+        planned_u95=points[0].u95 or 0.0 if points else 0.0,
+        depth_mm=0.0,
+        batch=head.batch,
+        of=head.of,
+    )
+    lines = []
+    for event in events:
+        text = tell(event, started.setup.counts_per_turn) if event.kind not in _DENSE else None
+        if text is not None:
+            lines.append((when(event), text))
+    return Told(head, card, tuple(points), tuple(lines), started.machine)
+
+
+_DENSE = ("status_heard", "reading_taken")
