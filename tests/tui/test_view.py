@@ -7,8 +7,9 @@ from dataclasses import replace
 import pytest
 
 from tests.tui.fakes import CARD, SNAPSHOT
+from windctl.run.snapshot import Check
 from windctl.tui.looks import LOOKS
-from windctl.tui.view import Sound, glance, next_of, sound, target_text
+from windctl.tui.view import Sound, glance, next_of, reading_steps, sound, still, target_text
 
 
 def test_turning_says_where_it_slows_and_stops_and_when() -> None:
@@ -113,3 +114,52 @@ def test_the_bell_rings_when_it_slows_stands_or_trips_and_only_then() -> None:
     assert sound(SNAPSHOT, replace(SNAPSHOT, turns=4813.0)) is None
     assert sound(None, SNAPSHOT) is None
     assert sound(SNAPSHOT, replace(SNAPSHOT, phase="stopping")) is None
+
+
+def test_a_spindle_that_somebody_else_drives_is_theirs_to_slow_and_stop() -> None:
+    own = replace(SNAPSHOT, driven=False, seconds_left=None, turns=7000.0)
+    coming = next_of(own)
+    assert (coming.words, coming.figure, coming.when) == ("slow down at", "7 896", "stop at 7 946")
+    assert next_of(replace(own, turns=7900.0)).words == "stop at"
+    assert dict(glance(own, CARD).rows)["pace"] == "1000 rpm, your own motor's"
+    assert sound(replace(own, turns=7895.9), replace(own, turns=7896.2)) is Sound.SLOWS
+
+
+def test_a_pace_that_somebody_asked_for_is_named() -> None:
+    assert dict(glance(replace(SNAPSHOT, pace_percent=80), CARD).rows)["pace"] == "1000 rpm, slowed to 80 %"
+
+
+CHECKED = replace(
+    SNAPSHOT, phase="held", asks="reading", drives_off=True, check=Check(4812.0, 490.0, 31.0, True, False)
+)
+
+
+def test_a_check_says_what_to_do_in_order_and_what_it_gains() -> None:
+    steps = reading_steps(CHECKED).splitlines()
+    assert steps[0] == "✔ drives off: hands may go in"
+    assert "at the guide, never on the coil" in steps[1]
+    assert "touch the contact" in steps[2]
+    assert "how warm it is" in steps[3]
+    assert "insulate" in steps[4]
+    assert "± 490.0 Ω; with a reading here to ± 31.0 Ω" in steps[5]
+    assert reading_steps(replace(CHECKED, drives_off=False)).startswith("□ wait")
+    coming = next_of(CHECKED)
+    assert (coming.words, coming.figure) == ("read at turn", "4 812")
+
+
+def test_after_a_typed_reading_its_key_takes_it_back() -> None:
+    after = replace(CHECKED, check=None, asks="go", can_take_back=True, says="insulate the bared spot again")
+    coming = next_of(after)
+    assert coming.words == "insulate the bared spot again"
+    assert coming.when == "U takes the reading back, G goes on"
+    assert sound(CHECKED, after) is Sound.READ
+
+
+def test_between_the_charts_only_digits_and_the_state_change() -> None:
+    before = glance(SNAPSHOT, CARD)
+    seen = glance(replace(SNAPSHOT, turns=4815.0, ohm_now=3500.0, seconds_left=190.0), CARD)
+    now = still(seen, before)
+    assert now.digits == "4 815"
+    assert (now.rows, now.next, now.under_digits) == (before.rows, before.next, before.under_digits)
+    held = glance(replace(SNAPSHOT, phase="held", asks="go", says="held: hold"), CARD)
+    assert still(held, before).next == held.next

@@ -71,7 +71,8 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
                 return Answer(says="there is no typed reading that could still be taken back")
             return Answer((ReadingTakenBack(at_ms, request.by),), "the reading typed last is taken back")
         case _:
-            if leaving or decision.asks not in _AT_REST or not state.in_hand or not state.let_go:
+            at_rest = decision.asks in _AT_REST or (state.check is not None and state.drives_off)
+            if leaving or not at_rest or not state.in_hand or not state.let_go:
                 return Answer(says="that can be said once the coil has turns and stands")
             return _at_the_wire(request, state, at_ms)
 

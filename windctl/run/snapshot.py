@@ -59,6 +59,7 @@ class Snapshot:
     guide_place_mm: float | None = None  # where the guide belongs at this turn, from its start
     splices: int = 0
     alarm: str = ""  # what the readings say is wrong, until somebody goes on
+    driven: bool = True  # windctl drives the spindle; else it is somebody's own motor
     pace_percent: int = 100  # of the planned pace, that somebody wants at the most
     check: Check | None = None  # the coil stands to be read
     can_take_back: bool = False  # a typed reading can still be taken back
@@ -106,6 +107,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         guide_place_mm=_guide_place(state, steps_per_mm) if decision.asks == "place" else None,
         splices=state.splices,
         alarm=state.alarm.text if state.alarm else "",
+        driven=started is None or bool(started.setup.fitted & Capability.DRIVE_STEP),
         pace_percent=state.pace_percent,
         check=_check(state),
         can_take_back=state.before_typed is not None and state.finished is None,

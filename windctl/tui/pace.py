@@ -1,4 +1,5 @@
-"""How often the run screen is drawn: ten times a second, its charts twice, and rarely over a slow line.
+"""How often the run screen is drawn: its digits ten times a second, figures and charts twice, and rarely over
+a slow line.
 
 A slow line shows by what it leaves waiting. Pure: time and backlog are handed in.
 """

@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from windctl.book.book import Book
     from windctl.book.heads import CoilHead
     from windctl.desk.bench import Bench
+    from windctl.plan.by_hand import HandLay
     from windctl.plan.experience.supply import Supply
     from windctl.plan.growth import Growth
     from windctl.profile.model import MachineProfile
@@ -50,6 +51,7 @@ class Run:
         self.winding = winding
         self.card = card
         self.growth = growth
+        self.lay_by_hand: HandLay | None = None  # where a hand guides the wire
         self.before = before  # the curve of earlier runs of this coil
         self.outcome: Outcome | None = None
         self.truth: str = ""
@@ -120,7 +122,7 @@ class Session(Records):
             card = card_for(recipe.name, winding.number, bench.name, preview.plan, recipe.stop)
             card = replace(card, batch=batch, of=of, place=place, depth_mm=recipe.bobbin.flange_depth_mm)
             run = Run(winding, card, preview.growth, self.profile.spindle.counts_per_turn, [])
-            return self._started(stack, run)
+            return self._started(stack, run, recipe, bench.profile)
 
     def go_on(self, number: str, at_turn: float | None = None) -> Run:
         """Take an open coil up where its record ends. Raises WindctlError; nothing is open then."""
@@ -151,7 +153,7 @@ class Session(Records):
             counts_per_turn = started.setup.counts_per_turn
             growth = growth_of(recipe, profile, plan)
             run = Run(winding, card, growth, counts_per_turn, before)
-            return self._started(stack, run)
+            return self._started(stack, run, recipe, profile)
 
     def _open(
         self,
@@ -172,8 +174,12 @@ class Session(Records):
         self._bench = bench
         return bench, book
 
-    def _started(self, stack: ExitStack, run: Run) -> Run:
+    def _started(self, stack: ExitStack, run: Run, recipe: Recipe, profile: MachineProfile) -> Run:
+        from windctl.plan.by_hand import hand_lay
+
         self._leaving.clear()
+        if profile.guide.kind == "hand":
+            run.lay_by_hand = hand_lay(recipe)
         if self._bench is not None:
             self._bench.name_coil(run.card.number)
             run.hand = self._bench.hand

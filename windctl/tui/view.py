@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import Enum
 from math import floor
 from typing import TYPE_CHECKING
@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from windctl.run.snapshot import Snapshot
 
 _TRIPPED = re.compile(r"^the board is tripped \(([^)]*)\): ")
+OWN_MOTOR_SLOW_TURNS = 50.0  # before the stop, from where somebody's own motor is to be slowed; our judgement
 _HEADROOM = 1.08  # of an axis over the most that is foreseen
 
 
@@ -105,14 +106,41 @@ def glance(snapshot: Snapshot, card: Card, link_lost: str = "") -> Glance:
     )
 
 
+def still(seen: Glance, before: Glance) -> Glance:
+    """What is new of the digits and the state; the figures and the clock as they were."""
+    next_ = seen.next
+    if (next_.words, next_.figure) == (before.next.words, before.next.figure):
+        next_ = before.next
+    return replace(
+        seen,
+        next=next_,
+        rows=before.rows,
+        part=before.part,
+        slow_part=before.slow_part,
+        under_digits=before.under_digits,
+    )
+
+
 def next_of(snapshot: Snapshot) -> Next:
     """What happens next, from what is known."""
     if snapshot.phase == "turning" and snapshot.stop_turn is not None:
         when = f"in {duration(snapshot.seconds_left)}" if snapshot.seconds_left is not None else ""
         slow = snapshot.slow_turn
+        if not snapshot.driven:  # by somebody's own motor, and by their own hand
+            near = snapshot.stop_turn - OWN_MOTOR_SLOW_TURNS
+            if snapshot.turns < near:
+                stop = f"stop at {grouped(snapshot.stop_turn)}, {when}".removesuffix(", ")
+                return Next("slow down at", grouped(near), stop)
+            return Next("stop at", grouped(snapshot.stop_turn), when)
         if slow is not None and snapshot.turns < slow:
             return Next("slows at", grouped(slow), f"stops near {grouped(snapshot.stop_turn)}, {when}")
         return Next("stops at", grouped(snapshot.stop_turn), when)
+    if snapshot.check is not None and snapshot.phase in ("held", "settling"):
+        how = "touch the contact, or R types it" if snapshot.drives_off else "the drives go off first"
+        return Next("read at turn", grouped(snapshot.check.turn), how)
+    if snapshot.can_take_back and snapshot.asks in (None, "go") and snapshot.phase == "held":
+        goes_on = ", G goes on" if snapshot.asks == "go" else ""
+        return Next(_sentence(snapshot.says), "", f"U takes the reading back{goes_on}")
     if snapshot.asks == "go":
         word = "goes on" if snapshot.turns > 0 else "starts"
         return Next(_sentence(snapshot.says), "", f"{word} when you press G")
@@ -121,7 +149,7 @@ def next_of(snapshot: Snapshot) -> Next:
     if snapshot.asks == "place":
         return Next(_sentence(snapshot.says), "", "count the turns, T: turn and their number")
     if snapshot.asks == "reading":
-        return Next(_sentence(snapshot.says), "", "bare the wire, touch the contact; or T: read 5.93k")
+        return Next(_sentence(snapshot.says), "", "R: type the reading")
     if snapshot.phase == "stopping":
         return Next("comes to rest")
     return Next(_sentence(snapshot.says))
@@ -149,7 +177,7 @@ def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
             else f"{_ohm(snapshot.finish_ohm, snapshot.finish_u95 or 0.0)} at 20 °C",
         ),
         ("target", target_text(card)),
-        ("pace", f"{snapshot.pace_rpm:.0f} rpm"),
+        ("pace", _pace(snapshot)),
     ]
     if snapshot.tension_cn is not None:
         rows.append(("pull", f"{snapshot.tension_cn:.1f} cN"))
@@ -158,6 +186,32 @@ def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
     used = grouped(snapshot.readings_used)
     rows.append(("readings", f"{used} used, {grouped(snapshot.readings_gated)} set aside"))
     return tuple(rows)
+
+
+def _pace(snapshot: Snapshot) -> str:
+    """The spindle's speed now, and whose it is where it is not the plan's."""
+    if not snapshot.driven:
+        return f"{snapshot.pace_rpm:.0f} rpm, your own motor's"
+    slowed = f", slowed to {snapshot.pace_percent} %" if snapshot.pace_percent < 100 else ""
+    return f"{snapshot.pace_rpm:.0f} rpm{slowed}"
+
+
+def reading_steps(snapshot: Snapshot) -> str:
+    """What to do so that the coil can be read, in order."""
+    off = "✔ drives off: hands may go in" if snapshot.drives_off else "□ wait: the drives go off"
+    steps = [off, "□ bare the wire at the guide, never on the coil"]
+    check = snapshot.check
+    if check is not None and check.contact:
+        steps.append("□ touch the contact to it until the bell; or measure it and type")
+    else:
+        steps.append("□ measure it, and type what the meter shows")
+    warm = "" if check is not None and check.thermometer else ", and how warm it is beside the coil"
+    steps.append(f"   such as 5930, 5.93k or 5,93k{warm}")
+    steps.append("□ insulate the bared spot again before you wind on")
+    if check is not None:
+        without, with_it = (_ohm(half) for half in (check.without_ohm, check.with_ohm))
+        steps.append(f"The finish is known to ± {without}; with a reading here to ± {with_it}.")
+    return "\n".join(steps)
 
 
 def target_text(card: Card) -> str:
@@ -197,6 +251,7 @@ class Sound(Enum):
     SLOWS = "slows"
     STANDS = "stands"
     ALARM = "alarm"
+    READ = "read"
 
 
 def sound(before: Snapshot | None, now: Snapshot) -> Sound | None:
@@ -208,6 +263,11 @@ def sound(before: Snapshot | None, now: Snapshot) -> Sound | None:
     moving = ("turning", "stopping")
     if before.phase in moving and now.phase not in moving:
         return Sound.STANDS
-    if now.phase == "turning" and now.slow_turn is not None and before.turns < now.slow_turn <= now.turns:
+    slow = now.slow_turn
+    if not now.driven and now.stop_turn is not None:
+        slow = now.stop_turn - OWN_MOTOR_SLOW_TURNS
+    if now.phase == "turning" and slow is not None and before.turns < slow <= now.turns:
         return Sound.SLOWS
+    if before.check is not None and now.check is None:
+        return Sound.READ
     return None

@@ -30,13 +30,17 @@ class Typed(Dialog[str]):
         return "Enter takes it   Esc leaves it"
 
     @on(Input.Submitted)
-    def taken(self, event: Input.Submitted) -> None:
+    def submitted(self, event: Input.Submitted) -> None:
+        """Enter."""
+        event.stop()
+        self.take(event.value.strip())
+
+    def take(self, line: str) -> None:
         """The answer, if it will do."""
-        line = event.value.strip()
         if line and self.will_do(line):
             self.dismiss(line)
         else:
-            event.input.value = ""
+            self.query_one(Input).value = ""
 
     def will_do(self, line: str) -> bool:
         """Whether this line is an answer; any that is not empty."""

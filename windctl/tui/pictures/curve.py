@@ -65,7 +65,7 @@ def curve_picture(
         x = field.x(scale.target_turns)
         for y in range(0, dots.down, 2):
             dots.dot(x, y, "target")
-    known = [(field.x(point.turn), field.y(point.ohm)) for point in past if point.ohm is not None]
+    known = [(x, field.y(point.ohm)) for x, point in field.thinned(past) if point.ohm is not None]
     for (x0, y0), (x1, y1) in pairwise(known):
         dots.line(x0, y0, x1, y1, "past")
         dots.line(x0, y0 + 1, x1, y1 + 1, "past")
@@ -89,7 +89,7 @@ def finish_picture(width: int, height: int, scale: Scale, past: Sequence[Point],
     for x in range(0, dots.across, 6):
         dots.dot(x, y, "target")
     bands = []
-    for point in past:
+    for _, point in field.thinned(past):
         if point.finish is not None and point.u95 is not None:
             middle = 100.0 * (point.finish / scale.finish_ohm - 1.0)
             half = 100.0 * point.u95 / scale.finish_ohm
@@ -119,6 +119,10 @@ class _Field:
         low, high = self._up
         return round((value - low) / (high - low) * (self.dots.down - 1))
 
+    def thinned(self, past: Sequence[Point]) -> list[tuple[int, Point]]:
+        """Of the points that fall on the same column of dots only the last, each with its column."""
+        return list({self.x(point.turn): point for point in past}.items())
+
     def fill(self, before: Band, after: Band, layer: str) -> None:
         """Every other dot between two bands, and their edges in full."""
         left, right = self.x(before.turn), max(self.x(after.turn), self.x(before.turn) + 1)
@@ -126,9 +130,11 @@ class _Field:
             share = (x - left) / (right - left)
             low = self.y(before.low + share * (after.low - before.low))
             high = self.y(before.high + share * (after.high - before.high))
-            for y in range(max(low, 0), min(high, self.dots.down - 1) + 1):
-                if y in (low, high) or (x + y) % 2 == 0:
-                    self.dots.dot(x, y, layer)
+            bottom, top = max(low, 0), min(high, self.dots.down - 1)
+            for y in range(bottom + (x + bottom) % 2, top + 1, 2):
+                self.dots.dot(x, y, layer)
+            self.dots.dot(x, low, layer)
+            self.dots.dot(x, high, layer)
 
     def picture(self, order: Sequence[str], written: Callable[[float], str], unit: str = "") -> Picture:
         whole = blank(self._width, self._height)

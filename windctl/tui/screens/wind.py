@@ -11,23 +11,19 @@ from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import Static
 
-from windctl.desk.words import help_text, request_of
 from windctl.errors import WindctlError
-from windctl.run.requests import Clear, End, Go, Note, Unwind
-from windctl.tui.dialogs.confirm import Confirm
-from windctl.tui.dialogs.tell import Tell
-from windctl.tui.dialogs.typed import Typed, Word
 from windctl.tui.keymap import HOLD_KEY, key
 from windctl.tui.outcome_words import after_words, outcome_words
 from windctl.tui.pace import DIGITS_S, Pace
 from windctl.tui.pictures.curve import Point
 from windctl.tui.pictures.section import Filled
-from windctl.tui.screens.room import Room
+from windctl.tui.screens.wind_questions import WindQuestions
 from windctl.tui.trail import Trail
-from windctl.tui.view import Glance, bands, glance, sound
+from windctl.tui.view import Glance, bands, glance, sound, still
 from windctl.tui.widgets.bobbin_section import BobbinSection
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
+from windctl.tui.widgets.hand_target import HandTarget
 from windctl.tui.widgets.news import News
 from windctl.tui.widgets.state_band import StateBand
 from windctl.tui.widgets.title_bar import TitleBar
@@ -41,12 +37,22 @@ if TYPE_CHECKING:
     from windctl.tui.recipes import Preview
     from windctl.tui.session import Run, Session
 
-CAUTIONS = """\
-Guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves, eye protection on.
-Never touch the work while it turns. Know where the hardware stop is: this program is no safety function."""
+
+_WHILE_IT_RUNS = (
+    "hold",
+    "go",
+    "clear",
+    "tell",
+    "end",
+    "note",
+    "leave_open",
+    "slower",
+    "faster",
+    "read",
+)
 
 
-class WindScreen(Room):
+class WindScreen(WindQuestions):
     """Looks at the run ten times a second, draws as often as the line takes it; asks for what is pressed."""
 
     ABOUT = (
@@ -59,6 +65,10 @@ class WindScreen(Room):
         key("wind.go"),
         key("wind.clear", show=False),
         key("wind.tell"),
+        key("wind.slower"),
+        key("wind.faster"),
+        key("wind.read", show=False),
+        key("wind.undo", show=False),
         key("wind.end"),
         key("wind.leave"),
         key("wind.note"),
@@ -68,8 +78,8 @@ class WindScreen(Room):
     ]
 
     def __init__(self, session: Session, run: Run, preview: Preview | None = None) -> None:
-        super().__init__(session)
-        self.coil = run
+        super().__init__(session, run)
+        self.set_class(run.lay_by_hand is not None, "-by-hand")
         self.preview = preview
         self.trail = Trail(run.before)
         self.pace = Pace()
@@ -78,9 +88,7 @@ class WindScreen(Room):
         self.ended: Ended | None = None
         self.outcome: Outcome | None = None
         self._facts = 0
-        self._to_unwind = 0.0
         self._lines: list[tuple[str, str]] = []
-        self._asked: str | None = None
 
     def heading(self) -> str:
         """Recipe, number, batch."""
@@ -102,6 +110,7 @@ class WindScreen(Room):
                 yield Curve(id="curve")
                 yield Curve(closer=True, id="closer")
                 yield BobbinSection(id="section")
+                yield HandTarget(self.coil.lay_by_hand, id="hand")
 
     def on_mount(self) -> None:
         """Begin to look."""
@@ -118,8 +127,12 @@ class WindScreen(Room):
         if sound(self.latest, snapshot) is not None:
             self.app.bell()
         if self.latest is not None and snapshot.answers != self.latest.answers:
-            self.notify(snapshot.answer, markup=False)
-        self.latest = snapshot
+            self.tell_answer(snapshot.answer)
+        before, self.latest = self.latest, snapshot
+        if self.ended is None:
+            self.consider_reading(before, snapshot)
+        if before is not None and before.can_take_back != snapshot.can_take_back:
+            self.refresh_bindings()
         hand = self.coil.hand
         agreed = (snapshot.hands or "").startswith(f"unwind {self._to_unwind:g} turns")
         if self._to_unwind and hand is not None and agreed and snapshot.drives_off:
@@ -130,25 +143,29 @@ class WindScreen(Room):
             self.finish()
         due = self.pace.due(monotonic(), getattr(self.app, "backlog", 0))
         if due.texts and self.outcome is None:
-            self.show(snapshot)
+            self.show(snapshot, figures=due.charts)
         if due.charts:
             self.draw()
 
-    def show(self, snapshot: Snapshot) -> None:
-        """Place what the view says."""
+    def show(self, snapshot: Snapshot, *, figures: bool = True) -> None:
+        """Place what the view says. Figures that nobody can read ten times a second come with the charts."""
         failed = ""
         if self.ended is not None and self.ended.left in ("failed", "unconfirmed"):
             failed = f"{self.ended.why}. What was wound is in the record; go on with it from the recipes (R)."
             if self.ended.left == "unconfirmed":
                 failed = f"THE STOP IS NOT CONFIRMED: use the hardware stop. {failed}"
         seen = glance(snapshot, self.coil.card, failed)
+        if self.glance is not None and not figures:
+            seen = still(seen, self.glance)
         self.trail.add(Point(snapshot.turns, snapshot.ohm_20c_now, snapshot.finish_ohm, snapshot.finish_u95))
+        self.query_one(HandTarget).show(snapshot.turns, snapshot.phase == "turning")
         if seen == self.glance:
             return
-        self.glance = seen
+        before, self.glance = self.glance, seen
         self.query_one(StateBand).show(seen.look, seen.next)
         self.query_one(TurnCount).show(seen.digits)
-        self.query_one("#under", Static).update(seen.under_digits, layout=False)
+        if before is None or before.under_digits != seen.under_digits:
+            self.query_one("#under", Static).update(seen.under_digits, layout=False)
         self.query_one(Way).show(seen.part, seen.slow_part)
         self.query_one(Figures).show(seen.rows)
         self.query_one(TitleBar).show(self.heading(), seen.virtual or self.session.simulated)
@@ -240,87 +257,13 @@ class WindScreen(Room):
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keys of a running coil end with it."""
         running = self.outcome is None
-        if action in ("hold", "go", "clear", "tell", "end", "note", "leave_open"):
+        if action == "undo":
+            return running and self.latest is not None and self.latest.can_take_back
+        if action in _WHILE_IT_RUNS:
             return running
         if action in ("done", "again"):
             return not running
         return super().check_action(action, parameters)
-
-    # ------------------------------------------------------------ asking
-
-    def action_hold(self) -> None:
-        """The spindle stands. The key acts before this is asked; a click on it comes here."""
-        self.session.hold()
-
-    def action_go(self) -> None:
-        """Consent to a start, by a typed word."""
-        snapshot = self.coil.winding.look()
-        if snapshot.asks != "go":
-            self.notify("nothing waits for a go", markup=False)
-            return
-        words = CAUTIONS if not snapshot.virtual else "The simulated machine will turn."
-        self.app.push_screen(Word("Go?", words, "go"), self._went)
-
-    def _went(self, line: str | None) -> None:
-        if line is not None:
-            self.coil.winding.request(Go("operator"))
-
-    def action_clear(self) -> None:
-        """Clear a trip, once its cause was looked to."""
-        snapshot = self.coil.winding.look()
-        if snapshot.asks != "clear":
-            self.notify("nothing is tripped", markup=False)
-            return
-        words = f"{snapshot.says}. Look to the cause at the machine first. Nothing turns by clearing."
-        self.app.push_screen(Word("Clear the trip?", words, "clear"), self._cleared)
-
-    def _cleared(self, line: str | None) -> None:
-        if line is not None:
-            self.coil.winding.request(Clear("operator"))
-
-    def action_end(self) -> None:
-        """End the coil where it stands."""
-        turns = self.coil.winding.look().turns
-        words = (
-            f"It is held, and {self.coil.card.number} ends at about turn {turns:.0f}. Its record is sealed; "
-            "it cannot be gone on with. To go on later, leave it open instead (L)."
-        )
-        self.app.push_screen(Confirm("End the coil here?", words), self._end)
-
-    def _end(self, yes: bool | None) -> None:
-        if yes:
-            self.coil.winding.request(End("operator", "ended by the operator"))
-
-    def action_leave_open(self) -> None:
-        """Hold, and leave the coil for later."""
-        words = f"It is held, and {self.coil.card.number} stays open; R among the recipes goes on with it."
-        self.app.push_screen(Confirm("Leave the coil open?", words), self._leave_open)
-
-    def _leave_open(self, yes: bool | None) -> None:
-        if yes:
-            self.session.hold("left open by the operator", leave=True)
-
-    def action_tell(self) -> None:
-        """What happened at the wire, in the words of the vocabulary."""
-        words = f"{self.coil.winding.look().says}\n\n{help_text()}"
-        self.app.push_screen(Tell("What happened?", words, "a line"), self._told)
-
-    def _told(self, line: str | None) -> None:
-        request = None if line is None else request_of(line)
-        if isinstance(request, End):
-            self.action_end()
-        elif request is not None:
-            if isinstance(request, Unwind):
-                self._to_unwind = request.turns or 0.0
-            self.coil.winding.request(request)
-
-    def action_note(self) -> None:
-        """Write something into the record."""
-        self.app.push_screen(Typed("Note", "It goes into this coil's record.", "a line"), self._noted)
-
-    def _noted(self, line: str | None) -> None:
-        if line is not None:
-            self.coil.winding.request(Note("operator", line))
 
     def action_closer(self) -> None:
         """On a small screen: the whole curve, or its finish from closer."""

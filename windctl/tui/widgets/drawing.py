@@ -41,7 +41,7 @@ class Drawing(Widget):
                 first, last = _between(was, now)
                 changed.append(Region(first, row, last - first + 1, 1))
         if changed:
-            self.refresh(*changed)
+            self.refresh(*_joined(changed))
 
     def on_resize(self) -> None:
         """Another size, another picture."""
@@ -77,6 +77,12 @@ class Drawing(Widget):
             ink, paper = (colour_of(one, variables) for one in inks)
             style = self._styles[inks] = self.rich_style + Style(color=ink, bgcolor=paper)
         return style
+
+
+def _joined(rows: list[Region]) -> list[Region]:
+    """One region for all where it is hardly larger: each costs more than a few cells do."""
+    whole = Region.from_union(rows)
+    return [whole] if 4 * whole.area <= 5 * sum(row.area for row in rows) else rows
 
 
 def _between(was: Sequence[Cell], now: Sequence[Cell]) -> tuple[int, int]:
