@@ -1,6 +1,6 @@
 """`python -m tests.benchmarks [NAME...]`: the project's figures of speed, measured on this computer.
 
-Every module of this folder with a `run()` is a benchmark; it prints its own figures.
+Every module of this folder without a leading underscore is a benchmark; its `run()` prints its figures.
 """
 
 from __future__ import annotations
@@ -15,7 +15,9 @@ import tests.benchmarks
 def names() -> list[str]:
     """The benchmarks there are."""
     return [
-        module.name for module in pkgutil.iter_modules(tests.benchmarks.__path__) if module.name != "__main__"
+        module.name
+        for module in pkgutil.iter_modules(tests.benchmarks.__path__)
+        if not module.name.startswith("_")
     ]
 
 

@@ -1,120 +1,124 @@
-"""How well the forecast does on drawn coils, beside its bound and other ways, and what a reading costs.
+"""How well the forecast does on drawn coils, beside its bound and other ways, and what a reading costs; how
+well the next coil of a lot is foreseen; what is found of unknown coils.
 
-`WINDCTL_BENCH_SEED` picks the coils, `WINDCTL_BENCH_COILS` how many (200).
+`WINDCTL_BENCH_SEED` picks the coils, `WINDCTL_BENCH_COILS` how many (200), `WINDCTL_BENCH_LOTS` how many lots
+(100).
 """
 
 from __future__ import annotations
 
 import os
 import time
-from dataclasses import dataclass
+from dataclasses import replace
+from functools import cache
 
-import numpy as np
-from numpy.typing import NDArray
-
-from tests.forecast.bound import bound, grown
-from tests.forecast.rivals import Filterpy, parabola, proportional
-from tests.forecast.truth import DEFAULT, FINE, TURNS, Instruments, Truth, draw, prior_for, with_bounce
+from tests.benchmarks import _learning
+from tests.forecast.bound import bound, grown, least_without_readings
+from tests.forecast.rivals import Filterpy
+from tests.forecast.scoring import Floats, Score, follow, rms, told_apart
+from tests.forecast.situations import EVERY, GAUGE, OUTSIDE, Situation, live, situations
+from tests.forecast.truth import DEFAULT, FINE, TURNS, Truth, draw, prior_for
 from windctl.forecast.estimator import begin, update
 from windctl.forecast.finish import finish_at
 
-Floats = NDArray[np.float64]
-GAUGE, MEASURED = Truth(), Truth(wire_sd=0.005)
-EVEN = Truth(packing=(0.67, 0.80))
-EVERY = 10.0  # turns between live readings
-
-
-@dataclass(frozen=True)
-class Situation:
-    """A row of the table: which readings there are, and the rms that is asked for, in per cent."""
-
-    name: str
-    truth: Truth
-    meter: Instruments
-    turns: Floats
-    asked: float | None
-    resting: bool = False
-    cold: bool = False
-
-
-def live(until: float) -> Floats:
-    return np.arange(EVERY, until * TURNS + 1.0, EVERY)
-
-
-def checks(*parts: float) -> Floats:
-    return np.array(parts) * TURNS
-
-
-SITUATIONS = (
-    Situation("none, gauge table only", GAUGE, FINE, checks(), 4.5),
-    Situation("none, spool measured to 0.5 %", MEASURED, FINE, checks(), 1.4),
-    Situation("one check at 50 %, fine", GAUGE, FINE, checks(0.5), 0.60, resting=True),
-    Situation("checks at 30 and 85 %, fine", GAUGE, FINE, checks(0.3, 0.85), 0.085, resting=True),
-    Situation("live up to 25 %, fine", GAUGE, FINE, live(0.25), 0.28),
-    Situation("live up to 50 %, fine", GAUGE, FINE, live(0.50), 0.12),
-    Situation("live up to 75 %, fine", GAUGE, FINE, live(0.75), 0.065),
-    Situation("live up to 50 %, fine, 2 % bounce", GAUGE, with_bounce(FINE), live(0.50), None),
-    Situation("live up to 50 %, fine, even lay", EVEN, FINE, live(0.50), None),
-    Situation(
-        "settled reading, 0.5 K, 0.3 %, cooled", GAUGE, DEFAULT, checks(1.0), 0.38, resting=True, cold=True
-    ),
-    Situation("settled reading, still warm", GAUGE, DEFAULT, checks(1.0), 0.48, resting=True),
-)
-
-
-def score(row: Situation, first_seed: int, coils: int) -> dict[str, float]:
-    """Relative figures over the coils, in per cent."""
-    prior = prior_for(row.truth, row.meter)
-    ours, halves, rule, fit, gated, read = [], [], [], [], 0, 0
-    for seed in range(first_seed, first_seed + coils):
-        coil = draw(seed, row.truth, row.meter)
-        readings = coil.readings(row.turns, resting=row.resting, cold=row.cold)
-        true = float(coil.ohm[TURNS])
-        estimate = begin(prior)
-        for reading in readings:
-            estimate, used = update(estimate, reading)
-            gated, read = gated + (not used), read + 1
-        finish = finish_at(estimate, TURNS)
-        ours.append(finish.ohm / true - 1.0)
-        halves.append((finish.high - finish.ohm) / true)
-        if readings and row.meter.bounce == 0.0:  # one infinite reading spoils the rules of thumb
-            rule.append(proportional(prior, readings, TURNS) / true - 1.0)
-        if len(readings) >= 3 and row.meter.bounce == 0.0:
-            fit.append(parabola(prior, readings, TURNS) / true - 1.0)
-    each = max(1, len(row.turns) // 100)  # many dense readings are as good as few sharper ones
-    places = row.turns[each // 2 :: each]
-    least = bound(grown(row.truth, 1000), places, row.meter, resting=row.resting, cold=row.cold, each=each)
-    rms = _rms(ours)
-    return {
-        "rms": 100 * rms,
-        "held": 100 * float(np.mean(np.abs(ours) <= np.array(halves))),
-        "sharp": float(np.median(halves)) / rms,
-        "bound": rms / least,
-        "rule": 100 * _rms(rule),
-        "parabola": 100 * _rms(fit),
-        "gated": 100 * gated / max(read, 1),
-    }
-
-
-def _rms(values: list[float]) -> float:
-    return float(np.sqrt(np.mean(np.square(values)))) if values else float("nan")
+_STAGES = (0.125, 0.25, 0.5, 0.75, 0.9)
+_BOUND_COILS = 1000
+_OTHERS = ("rule", "parabola", "filterpy")
 
 
 def run() -> None:
-    """Print the table, and the cost of a reading."""
-    seed = int(os.environ.get("WINDCTL_BENCH_SEED", "1")) * 1_000_000
+    """Print the tables, and the cost of a reading."""
+    seed = int(os.environ.get("WINDCTL_BENCH_SEED", "1"))
     coils = int(os.environ.get("WINDCTL_BENCH_COILS", "200"))
-    print(f"  {coils} coils of {TURNS} turns a row, a live reading every {EVERY:.0f} turns, drawn from")
+    lots = int(os.environ.get("WINDCTL_BENCH_LOTS", "100"))
+    seeds = range(seed * 1_000_000, seed * 1_000_000 + coils)
+    table(seeds)
+    _learning.like_coils(seeds)
+    outside(seeds)
+    cost(seeds[0])
+    _learning.lots(seeds[0], lots)
+    _learning.unknown(seeds[0], coils)
+
+
+def table(seeds: range) -> None:
+    """The table; per cent, and an rms with its standard error. Of the bound, see `bound`."""
+    print(f"  {len(seeds)} coils of {TURNS} turns a row, a live reading every {EVERY:g} turns, drawn from")
     print(f"  {GAUGE}\n  fine {FINE}\n  else {DEFAULT}")
-    print(f"  {'':38} asked   rms %  held %  half/rms  rms/bound  rule %  parabola %  gated %")
-    for row in SITUATIONS:
-        s = score(row, seed, coils)
-        asked = "" if row.asked is None else f"{row.asked:.3f}"
-        print(
-            f"  {row.name:38} {asked:>5} {s['rms']:7.4f} {s['held']:7.1f} {s['sharp']:9.2f} "
-            f"{s['bound']:10.2f} {s['rule']:7.3f} {s['parabola']:11.3f} {s['gated']:8.3f}"
+    print(
+        f"  {'':31}read to  asked  rms %   +-    held %  half/rms  rms/bound  rule %  parabola %  filterpy %"
+    )
+    for row in situations():
+        clean = row.meter.bounce == 0.0  # one infinite reading spoils the other ways
+        others = _OTHERS if clean and len(row.turns) else ()
+        seen = follow(
+            seeds, row.truth, row.meter, row.turns, row.at, resting=row.resting, cold=row.cold, rivals=others
         )
-    cost(seed)
+        for place, ((part, asked), score) in enumerate(zip(row.stages, seen.stages, strict=True)):
+            limit = "" if asked is None else f"{100 * asked:.3f}"
+            best = score.rms / _least(row, part)
+            theirs = [100 * rms(seen.rivals[name][place]) if others else float("nan") for name in _OTHERS]
+            print(
+                f"  {row.name:30} {100 * part:5.1f} % {limit:>6} {_figures(score)} {best:10.2f} "
+                f"{theirs[0]:8.3f} {theirs[1]:10.3f} {theirs[2]:11.4f}"
+            )
+        if not clean:
+            print(f"  {'':30} readings kept out: {100 * seen.gated / seen.read:.2f} %")
+        if not len(row.turns):
+            least, se = least_without_readings(row.truth)
+            print(f"  {'':30} the best that any forecast can do: {100 * least:.3f} +- {100 * se:.3f} %")
+
+
+def _figures(score: Score) -> str:
+    return f"{100 * score.rms:7.4f} {100 * score.rms_se:6.4f} {100 * score.held:6.1f} {score.sharp:9.2f}"
+
+
+def _least(row: Situation, part: float) -> float:
+    """The bound of a row at a stage."""
+    turns = row.turns[row.turns <= part * TURNS]
+    each = max(1, len(turns) // 100)  # many dense readings are as good as few sharper ones
+    if row.resting and len(set(turns)) == 1:
+        turns, each = turns[:1], len(turns)
+    places = turns[each // 2 :: each] if each < len(turns) else turns
+    return bound(_grown(row.truth), places, row.meter, resting=row.resting, cold=row.cold, each=each)
+
+
+@cache
+def _grown(truth: Truth) -> Floats:
+    return grown(truth, _BOUND_COILS)
+
+
+def outside(seeds: range) -> None:
+    """Truths that the prior does not hold, by stage; and whether the readings could have told."""
+    print("  truths from outside the prior's family, live, fine: rms % / held % / half-width over rms")
+    for name, truth, meter in OUTSIDE:
+        print(f"  {name}: {_differences(truth, GAUGE)} {_differences(meter, FINE)}".rstrip())
+    print(f"  {'read to':30}" + "".join(f"{100 * part:16.1f} %  " for part in _STAGES))
+    for name, truth, meter in OUTSIDE:
+        at = [part * TURNS for part in _STAGES]
+        seen = follow(seeds, truth, meter, live(0.9), at, prior=prior_for(GAUGE, FINE))
+        cells = [f"{100 * one.rms:8.3f} /{100 * one.held:5.1f} /{one.sharp:5.2f}" for one in seen.stages]
+        print(f"  {name:30}" + "".join(cells))
+    few = seeds[: min(len(seeds), 200)]
+    print(
+        "  logarithm of the likelihood ratio of a prior with such drifts over the usual one, median of coils;"
+    )
+    print("  where it is below 1, no estimator can know from the readings that the drift is more than stated")
+    for times, (name, truth, _) in zip((2.0, 3.0, 5.0), OUTSIDE[-3:], strict=True):
+        usual = prior_for(GAUGE, FINE)
+        wider = replace(
+            usual, growth_walk_rel=times * usual.growth_walk_rel, wire_walk_rel=times * usual.wire_walk_rel
+        )
+        found = told_apart(few, truth, wider, live(0.9), [part * TURNS for part in _STAGES])
+        print(f"  {name:30}" + "".join(f"{one:18.2f}   " for one in found))
+
+
+def _differences(one: object, other: object) -> str:
+    """What a truth or a meter has that the usual one has not."""
+    return ", ".join(
+        f"{name}={getattr(one, name)}"
+        for name in one.__dataclass_fields__  # type: ignore[attr-defined]  # a dataclass
+        if getattr(one, name) != getattr(other, name)
+    )
 
 
 def cost(seed: int) -> None:
@@ -141,6 +145,6 @@ def cost(seed: int) -> None:
     ohm, sd = other.finish(TURNS)
     ours = finish_at(estimate, TURNS)
     print(
-        f", in filterpy {theirs * 1e6:.1f} us; finished resistance {ours.ohm:.3f} +- {ours.sd:.3f} ohm "
-        f"against {ohm:.3f} +- {sd:.3f} ohm"
+        f", in filterpy {theirs * 1e6:.1f} us: {best / theirs:.2f} times; finished resistance "
+        f"{ours.ohm:.3f} +- {ours.sd:.3f} ohm against {ohm:.3f} +- {sd:.3f} ohm"
     )

@@ -75,8 +75,10 @@ class Filterpy:
         self._filter.update(reading.ohm - self._prior.contact_length_ohm, R=noise, H=h)
 
     def finish(self, turns: float) -> tuple[float, float]:
-        """Finished resistance and its sd."""
+        """Finished resistance and its sd; the filter stays where it is."""
+        here = self._turn, self._filter.x, self._filter.P
         self.move(turns)
         cov: Any = tuple(tuple(float(v) for v in row) for row in self._filter.P)
         mean: Any = tuple(float(v) for v in self._filter.x[:, 0])
+        self._turn, self._filter.x, self._filter.P = here
         return resistance(Belief(turns, mean, cov))

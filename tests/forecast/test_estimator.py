@@ -18,6 +18,7 @@ from windctl.forecast.estimator import Estimate, begin, update
 from windctl.forecast.finish import finish_at
 from windctl.forecast.reading import Reading, canonical_key
 from windctl.plan.prior import Prior
+from windctl.profile.model import MachineProfile
 
 
 def fed(prior: Prior, readings: list[Reading]) -> tuple[Estimate, list[bool]]:
@@ -185,5 +186,12 @@ def test_warmth_left_is_told_apart_from_a_cooled_coil() -> None:
 
 
 def test_instruments_of_the_simulation_have_what_the_default_profile_says() -> None:
-    """The default machine's figures, as the profile documents them; the rest of the tests lean on these."""
-    assert Instruments() == Instruments(0.003, 0.5, 0.7, 0.7, 0.001, 0.001, 0.0, 0.2, 0.5, 0.3, 0.15, 0.0)
+    """The default machine's figures; the rest of the tests lean on these."""
+    ours, profile = Instruments(), MachineProfile(format=1).readings
+    assert ours.gain_sd == profile.gain_sd_pct / 100
+    assert ours.celsius_sd == profile.celsius_sd
+    assert (ours.over_air_k, ours.over_air_sd) == (profile.coil_over_air_k, profile.coil_over_air_sd_k)
+    assert ours.noise == profile.noise_pct / 100
+    assert ours.floor_ohm == profile.floor_ohm
+    assert (ours.lead_ohm, ours.lead_sd) == (profile.lead_ohm, profile.lead_sd_ohm)
+    assert ours.contact_m == profile.contact_length_mm / 1000

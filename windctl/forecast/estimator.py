@@ -32,6 +32,7 @@ from windctl.forecast.belief import (
     walk_of,
 )
 from windctl.forecast.cooling import cooling_variance, share_left
+from windctl.forecast.hindsight import Hindsight, looked_back
 from windctl.forecast.noise import Unrest, near, own_variance
 from windctl.forecast.reading import Reading
 from windctl.forecast.widen import opened
@@ -78,6 +79,7 @@ class Estimate:
     doubt: Surprise | None = None  # a reading at rest that was kept out, until another one is used
     seconds: float | None = None  # when the last reading was taken
     share: float = 1.0  # of a winding coil's warmth left then
+    hindsight: Hindsight = field(default_factory=Hindsight)
 
     @property
     def turn(self) -> float:
@@ -172,6 +174,7 @@ def _kept_out(
     taken_over = _with(
         estimate, estimate.unrest, rival, trust=agreeing, used=1, seconds=reading.seconds, share=share
     )
+    taken_over = replace(taken_over, hindsight=estimate.hindsight.begun_anew(taken_over.used))
     return replace(taken_over, jump=surprise) if trusted else taken_over, True
 
 
@@ -212,9 +215,15 @@ def _with(
     share: float,
 ) -> Estimate:
     """The next estimate; `dataclasses.replace` would cost as much as the update itself."""
+    walk, hindsight = estimate.walk, estimate.hindsight
+    if estimate.used + used >= hindsight.due:
+        hindsight = looked_back(hindsight, belief, estimate.prior, estimate.used + used)
+    if hindsight.doubt != belief.doubt:
+        belief = replace(belief, doubt=hindsight.doubt)
+        walk = walk_of(estimate.prior, hindsight.doubt)
     return Estimate(
         estimate.prior,
-        estimate.walk,
+        walk,
         belief,
         estimate.reference,
         unrest,
@@ -231,4 +240,5 @@ def _with(
         doubt,
         estimate.seconds if seconds is None else seconds,
         share,
+        hindsight,
     )

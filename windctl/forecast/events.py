@@ -55,4 +55,5 @@ def _anew(estimate: Estimate, belief: Belief) -> Estimate:
         doubt=None,
         open_run=0,
         zero_run=0,
+        hindsight=estimate.hindsight.begun_anew(estimate.used),
     )

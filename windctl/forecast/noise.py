@@ -17,11 +17,12 @@ from windctl.plan.prior import Prior
 TURNING_NOISE = 2.0  # over a resting reading's: hum and the turning coil's own voltage are averaged, not gone
 SMALLEST_SD_OHM = 1e-6
 _AS_STATED = 20.0  # readings that the profile's figure is worth
-_AS_WHITE = 8.0  # readings that the belief in white noise is worth
+_ALIKE_AT_FIRST = 0.4  # a contact that follows a wire is not taken for white before it has shown it
+_AS_AT_FIRST = 20.0  # readings that this is worth
 _NEAR_TURNS = 60.0  # some seconds; what wanders more slowly is the coil
-_WINDOW = 40.0  # readings after which older ones fade
-_QUIET_BELOW, _LOUD_FROM = 0.5, 1.5  # three sd around 1 of the running mean of squares of white noise
-_ALIKE_FROM = 0.2  # two sd above 0 of the running sign figure of white noise
+_WINDOW = 80.0  # readings after which older ones fade
+_QUIET_BELOW, _LOUD_FROM = 0.5, 1.5  # three sd around 1 of the mean of squares of few white readings
+_ALIKE_FROM = 0.2  # three sd above 0 of the running sign figure of white noise
 _ALIKE_MOST = 0.7  # rho 0.89: a factor of 17
 
 
@@ -30,7 +31,7 @@ class Unrest:
     """What the readings so far show of their noise beyond the profile's figure."""
 
     loud: float = 1.0  # running mean of squared surprise over its expected variance
-    alike: float = 0.0  # running mean of sign(surprise) * sign(the one before)
+    alike: float = _ALIKE_AT_FIRST  # running mean of sign(surprise) * sign(the one before)
     last_sign: float = 0.0
     readings: float = 0.0  # counted up to the window
 
@@ -55,8 +56,8 @@ class Unrest:
         readings = self.readings + 1.0
         sign = 1.0 if surprise > 0.0 else -1.0
         alike = self.alike
-        if near:
-            alike += (sign * self.last_sign - alike) / (_AS_WHITE + readings)
+        if near and self.last_sign != 0.0:
+            alike += (sign * self.last_sign - alike) / (_AS_AT_FIRST + readings)
         loud = self.loud + (surprise * surprise / variance - self.loud) / (_AS_STATED + readings)
         return Unrest(loud, alike, sign, min(readings, _WINDOW))
 

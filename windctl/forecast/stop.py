@@ -81,4 +81,4 @@ def to_be_learnt(estimate: Estimate, turn: float) -> float:
     rest = Reading(turn, belief.mean[SHOWN], 20.0, resting=True)
     seen = look(belief, rest, prior.contact_length_ohm)
     move = abs(answer_covariance(belief, seen)) / sqrt(seen.variance + own_variance(prior, rest, seen.ohm))
-    return move * error_of(belief) / max(belief.mean[PER_TURN], 1e-9)
+    return sqrt(belief.doubt) * move * error_of(belief) / max(belief.mean[PER_TURN], 1e-9)

@@ -71,7 +71,7 @@ def _share(belief: Belief) -> _Figure:
         + 2.0 * by_ohm * by_turn * belief.cov[SHOWN][PER_TURN]
         + by_turn**2 * belief.cov[PER_TURN][PER_TURN]
     )
-    return _Figure(per_turn * belief.turn / ohm - 1.0, sqrt(max(variance, 0.0)))
+    return _Figure(per_turn * belief.turn / ohm - 1.0, sqrt(max(belief.doubt * variance, 0.0)))
 
 
 def _less(after: _Figure, before: _Figure) -> _Figure | None:

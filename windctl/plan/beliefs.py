@@ -15,6 +15,7 @@ from windctl.material.wire import Wire
 from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.keys import bobbin_key, lay_key
 from windctl.plan.experience.outlook import Outlook
+from windctl.plan.experience.unknowns import SLOPE_PER_KM, WALK_PER_ROOT_KM
 from windctl.plan.prior import Prior
 from windctl.profile.model import Readings
 from windctl.recipe.model import Recipe
@@ -36,7 +37,9 @@ _MEASURED_PERIMETER_REL = 0.0015  # 20 wrapped turns against a rule: 2 to 4 mm i
 # standard deviation. Our judgement.
 _CROWN_REL = 0.01
 _CROWN_SLIDES = {"scatter": 0.4, "even": 0.6}
-_PACKING_DRIFT_REL = 0.05  # of the growth over a coil, as the packing loosens. Our judgement
+# Of the growth over a coil, as the packing loosens: some 5 %, and a little more because that is a guess. Our
+# judgement.
+PACKING_DRIFT_REL = 0.055
 
 
 # How much of that each coil has for itself: one core differs from the next of its kind, one coil packs more
@@ -154,6 +157,7 @@ class Believed:
         """The forecast's. Ohm per metre is in both coefficients, so they go up and down together."""
         coil, outlook = self.coil, self.outlook
         per_turn = self.ohm_per_m * coil.perimeter_mm / 1000
+        km = coil.wire_length_m(turns) / 1000
         growth = self.ohm_per_m * 2 * math.pi * coil.build_per_turn_mm * coil.crown / 1000
         return Prior(
             ohm_per_turn=per_turn,
@@ -161,7 +165,7 @@ class Believed:
             var_ohm_per_turn=per_turn**2 * outlook.var_flat,
             var_growth=growth**2 * outlook.var_grown,
             cov=per_turn * growth * outlook.cov,
-            growth_walk_rel=_PACKING_DRIFT_REL,
+            growth_walk_rel=PACKING_DRIFT_REL,
             turns=turns,
             offset_ohm=readings.lead_ohm,
             offset_sd=readings.lead_sd_ohm,
@@ -172,5 +176,7 @@ class Believed:
             noise_rel=readings.noise_pct / 100,
             floor_ohm=readings.floor_ohm,
             contact_length_ohm=self.ohm_per_m * readings.contact_length_mm / 1000,
+            wire_walk_rel=WALK_PER_ROOT_KM * math.sqrt(km),
+            wire_slope_rel=SLOPE_PER_KM * km,
             meter_cov=outlook.meter_cov,
         )

@@ -1,15 +1,10 @@
-"""How far the next coil of a lot is foreseen, coil by coil, and what is found of unknown coils.
-
-`WINDCTL_BENCH_SEED` picks the lots, `WINDCTL_BENCH_LOTS` how many (100), `WINDCTL_BENCH_COILS` how many
-unknown coils (200).
-"""
+"""How far the next coil of a lot is foreseen, coil by coil, and what is found of unknown coils."""
 
 from __future__ import annotations
 
-import os
-
 import numpy as np
 
+from tests.forecast.scoring import Score
 from tests.forecast.truth import DEFAULT, FINE
 from tests.plan.experience import test_lots
 from tests.plan.experience.lots import Lots
@@ -21,11 +16,16 @@ COILS = 20
 ASKED = {2: "<= 0.30", 20: "<= 0.24"}
 
 
-def run() -> None:
-    """Print both tables."""
-    seed = int(os.environ.get("WINDCTL_BENCH_SEED", "1"))
-    lots(seed * 1_000_000, int(os.environ.get("WINDCTL_BENCH_LOTS", "100")))
-    unknown(seed * 1_000_000, int(os.environ.get("WINDCTL_BENCH_COILS", "200")))
+def like_coils(seeds: range) -> None:
+    """The row of the table after three like coils from the same spool, each read once at rest."""
+    test_lots.FIRST_SEED = seeds[0]
+    for name, meter in (("usual meter", DEFAULT), ("fine meter", FINE)):
+        seen = wind(len(seeds), 4, meter, by_reading)
+        score = Score(seen.errors[:, 3], seen.halves[:, 3])
+        print(
+            f"  {'none, after 3 like, ' + name:38} 1.000 {100 * score.rms:7.4f} {100 * score.rms_se:6.4f} "
+            f"{100 * score.held:6.1f} {score.sharp:9.2f}"
+        )
 
 
 def lots(first_seed: int, number: int) -> None:
