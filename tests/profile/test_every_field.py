@@ -61,6 +61,7 @@ KEYS = (
     Key("tension.sensor", "flag", "true"),
     number("tension.unit_cn", "0.001", "cN", "6", least="0.0001"),
     Key("readings.mode", "choice", '"checks"', choices=("live", "checks", "none")),
+    Key("readings.contact", "flag", "false"),
     number("readings.lead_ohm", "0.4", "ohm", "1000000", least="0"),
     number("readings.lead_sd_ohm", "0.2", "ohm", "1000000", least="0"),
     number("readings.gain_sd_pct", "0.2", "%", "100", least="0"),

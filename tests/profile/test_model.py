@@ -48,6 +48,7 @@ DEFAULTS = {
     "pedal": False,
     "readings": {
         "mode": "none",
+        "contact": True,
         "lead_ohm": 0.5,
         "lead_sd_ohm": 0.3,
         "gain_sd_pct": 0.3,
@@ -218,3 +219,11 @@ def test_profiles_cannot_be_changed() -> None:
         return bool(model.model_config.get("frozen")) and all(frozen(value) for value in inner)
 
     assert frozen(VIRTUAL)
+
+
+def test_live_readings_need_a_contact_and_checks_do_without() -> None:
+    by_hand = 'format = 1\n[readings]\nmode = "checks"\ncontact = false\n'
+    assert not parse_profile(by_hand).readings.by_contact
+    with pytest.raises(ProfileError) as raised:
+        parse_profile(by_hand.replace("checks", "live"))
+    assert "only a contact follows the wire" in str(raised.value)

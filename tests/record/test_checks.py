@@ -7,7 +7,7 @@ from dataclasses import replace
 from tests.record.following import Coil, at_rest, measured, turning
 from tests.record.samples import CPT, identity, reading, status
 from windctl.forecast.finish import finish_at
-from windctl.protocol.messages import Cause, ReadingFlag
+from windctl.protocol.messages import Capability, Cause, ReadingFlag
 from windctl.protocol.messages import State as BoardState
 from windctl.record.checking import ENOUGH
 from windctl.record.consent import PATIENCE_TICKS
@@ -210,3 +210,18 @@ def test_after_a_restart_of_the_board_the_check_goes_on_where_somebody_says_that
         assert coil.decision.asks == "go"
         (more,) = [f for f in coil.hear(GoGiven(0, 6, 1, "operator")) if isinstance(f, StopPointChosen)]
         assert more.count > round(stop * CPT)
+
+
+def test_without_a_contact_a_person_is_asked_at_once_and_nothing_is_measured() -> None:
+    """The board may have a contact; what counts is what the profile says is fitted."""
+    coil = turning(mode="checks")
+    assert coil.state.started is not None and coil.state.stop_point is not None
+    started = coil.state.started
+    bare = replace(started.setup, fitted=started.setup.fitted & ~int(Capability.CONTACT))
+    coil.state = replace(coil.state, started=replace(started, setup=bare))
+    stop = coil.state.stop_point / CPT
+    at_rest(coil, stop, Cause.STOP_POINT)
+    off(coil, stop)
+    assert coil.state.check is not None
+    assert coil.decision.asks == "reading"
+    assert coil.decision.wants.sampling is None

@@ -185,7 +185,7 @@ def fitted_in(profile: MachineProfile) -> Capability:
         (profile.spindle.drive == "step", Capability.DRIVE_STEP),
         (profile.guide.kind == "step", Capability.GUIDE_STEP),
         (profile.spindle.index, Capability.INDEX),
-        (profile.readings.mode != "none", Capability.CONTACT),
+        (profile.readings.by_contact, Capability.CONTACT),
         (profile.tension.sensor, Capability.TENSION),
         (profile.pedal, Capability.PEDAL),
     ):

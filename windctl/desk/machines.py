@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from windctl.desk import places
-from windctl.errors import FileInvalid, MachineError, Problem, ProfileError
+from windctl.errors import FileInvalid, MachineError, Problem, ProfileError, UsageError
 
 if TYPE_CHECKING:
     from windctl.desk.asked import Shared
@@ -91,7 +91,8 @@ def profile_file(shared: Shared) -> Path | None:
 def profile_of(shared: Shared) -> MachineProfile:
     """The machine asked for, with --readings and --port in place of what its profile says.
 
-    Raises MachineError for an unknown name, ProfileError for a bad file.
+    Raises MachineError for an unknown name, ProfileError for a bad file, UsageError where live readings are
+    asked of a machine without a contact.
     """
     from windctl.profile.builtin import VIRTUAL as BUILT_IN
     from windctl.profile.load import load_profile
@@ -99,6 +100,8 @@ def profile_of(shared: Shared) -> MachineProfile:
     file = profile_file(shared)
     profile = BUILT_IN if file is None else load_profile(file)
     if shared.readings is not None:
+        if shared.readings == "live" and not profile.readings.contact:
+            raise UsageError("--readings live needs a contact, and the profile says readings.contact = false")
         readings = profile.readings.model_copy(update={"mode": shared.readings})
         profile = profile.model_copy(update={"readings": readings})
     if shared.port is not None and shared.port != VIRTUAL:

@@ -111,7 +111,7 @@ def _fitted(profile: MachineProfile) -> Capability:
         (Capability.DRIVE_STEP, profile.spindle.drive == "step"),
         (Capability.GUIDE_STEP, profile.guide.kind == "step"),
         (Capability.INDEX, profile.spindle.index),
-        (Capability.CONTACT, profile.readings.mode != "none"),
+        (Capability.CONTACT, profile.readings.by_contact),
         (Capability.TENSION, profile.tension.sensor),
         (Capability.PEDAL, profile.pedal),
     ):

@@ -171,6 +171,13 @@ class Readings(Form):
             "that windctl proposes. none: counted turns only."
         ),
     ] = "none"
+    contact: Annotated[
+        bool,
+        about(
+            "The board has a contact of its own for the wire. live needs it; in checks without it the coil is "
+            "measured by hand and the reading typed."
+        ),
+    ] = True
     lead_ohm: Annotated[float, quantity("ohm", "leads and contact, subtracted", ge=0, le=1e6)] = 0.5
     lead_sd_ohm: Annotated[float, quantity("ohm", "uncertainty of lead_ohm", ge=0, le=1e6)] = 0.3
     gain_sd_pct: Annotated[float, quantity("%", "the meter's gain error", ge=0, le=100)] = 0.3
@@ -186,6 +193,18 @@ class Readings(Form):
     contact_length_mm: Annotated[
         float, quantity("mm", "wire between the coil and the contact, subtracted", ge=0, le=100_000)
     ] = 150.0
+
+    @property
+    def by_contact(self) -> bool:
+        """The board's own contact reads the coil."""
+        return self.mode != "none" and self.contact
+
+    @check
+    def _live_needs_a_contact(self) -> Iterator[Fault]:
+        if self.mode == "live" and not self.contact:
+            yield Fault(
+                ("contact",), 'is false, and readings.mode is "live": only a contact follows the wire'
+            )
 
 
 class MachineProfile(Form):

@@ -98,7 +98,8 @@ def _contact_may_come(state: State) -> bool:
     if identity is None or status is None or not identity.capabilities & Capability.VIRTUAL:
         return False
     since = status.ticks - (0 if state.held is None else state.held.ticks)  # 0: it has just started again
-    return bool(identity.capabilities & Capability.CONTACT) and since < PATIENCE_TICKS
+    fitted = 0 if state.started is None else state.started.setup.fitted
+    return bool(fitted & Capability.CONTACT) and since < PATIENCE_TICKS
 
 
 def _consented(state: State) -> bool:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from windctl.lay.program import Place
 from windctl.plan.pace import most_pace, pace_for
+from windctl.protocol.messages import Capability
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, GuidePlace, Permission, Sampling, Segments, Wants
 from windctl.record.consent import given
@@ -64,7 +65,8 @@ def _pace(state: State) -> int:
 
 def _sampling(state: State) -> Sampling | None:
     assert state.started is not None
-    reads = state.started.readings_mode == "live" or state.check is not None
+    contact = bool(state.started.setup.fitted & Capability.CONTACT)
+    reads = state.started.readings_mode == "live" or (state.check is not None and contact)
     return Sampling(WINDOW_TICKS, EVERY_TICKS) if reads else None
 
 

@@ -79,6 +79,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         finish = finish_at(state.estimate, max(stop or started.planned_turns, state.turns))
         if state.readings_used:
             now_20c = so_far(state.estimate, state.turns).ohm
+    guided = started is None or bool(started.setup.fitted & Capability.GUIDE_STEP)
     scale = identity.tension_scale if identity else 0
     return Snapshot(
         phase=_phase(state),
@@ -93,7 +94,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         finish_ohm=finish.ohm if finish else None,
         finish_u95=(finish.high - finish.low) / 2.0 if finish else None,
         tension_cn=status.tension * scale / 10_000.0 if status and scale else None,
-        guide_mm=status.guide / steps_per_mm if status and steps_per_mm else None,
+        guide_mm=status.guide / steps_per_mm if status and steps_per_mm and guided else None,
         seconds_left=_seconds_left(state, stop, speed / spt),
         virtual=bool(identity and identity.capabilities & 128),
         asks=decision.asks,
@@ -115,16 +116,15 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
 
 
 def _check(state: State) -> Check | None:
-    asked, identity = state.check, state.identity
-    if asked is None or identity is None:
+    asked, started, identity = state.check, state.started, state.identity
+    if asked is None or started is None or identity is None:
         return None
-    has = identity.capabilities
     return Check(
         turn=asked.turn,
         without_ohm=Z95 * asked.without_ohm,
         with_ohm=Z95 * asked.with_ohm,
-        contact=bool(has & Capability.CONTACT),
-        thermometer=bool(has & Capability.THERMOMETER),
+        contact=bool(started.setup.fitted & Capability.CONTACT),
+        thermometer=bool(identity.capabilities & Capability.THERMOMETER),
     )
 
 
