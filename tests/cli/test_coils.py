@@ -152,3 +152,89 @@ def test_a_book_of_an_older_version_is_taken_forward_when_it_is_read(tmp_path: P
     coils = asked(capsys, "coils", "list", "--book", str(path), "spool:s1")["coils"]
     assert [coil["coil"] for coil in coils] == ["b1-2026-0001"]
     assert sorted(file.name for file in tmp_path.iterdir()) == ["shop.book", "shop.book.before-3"]
+
+
+def test_coils_go_from_book_to_book_in_a_file(book: Path, tmp_path: Path, capsys: Printed) -> None:
+    file, other, again = tmp_path / "coils.jsonl", tmp_path / "other.book", tmp_path / "again.jsonl"
+    said = asked(capsys, "coils", "export", "--to", str(file), "--book", str(book))
+    assert (said["coils"], said["left_out"]) == (["b1-2026-0001"], ["b1-2026-0002"])
+    assert said["bytes"] == file.stat().st_size
+    said = asked(capsys, "coils", "import", str(file), "--book", str(other))
+    assert said["coils"] == [{"coil": "b1-2026-0001", "recorded": "b1-2026-0001", "how": "new"}]
+    assert asked(capsys, "coils", "verify", "--book", str(other))["checked"] == 1
+    assert run(["coils", "export", "--to", str(again), "--book", str(other)]) == 0
+    assert again.read_bytes() == file.read_bytes()
+    assert run(["coils", "export", "--to", str(again), "--book", str(other)]) == 2
+    assert "write over it with --replace" in capsys.readouterr().err
+    assert run(["coils", "export", "--query", "outcome:open", "--to", str(again), "--replace",
+                "--book", str(other)]) == 0  # fmt: skip
+    assert capsys.readouterr().out.startswith("no coil in ")
+    assert run(["coils", "import", str(file), "--book", str(other), "--teach"]) == 0
+    assert capsys.readouterr().out == "1 coil here already; it teaches from now on\n"
+    assert run(["coils", "export", "--book", str(book)]) == 2
+    assert "name one coil, or with --to the file" in capsys.readouterr().err
+
+
+def test_an_import_says_what_was_refused(book: Path, tmp_path: Path, capsys: Printed) -> None:
+    file, other = tmp_path / "coils.jsonl", tmp_path / "other.book"
+    with open_book(book) as opened:
+        wind(opened, 5, turns=1)
+    with open_book(other) as opened:
+        wind(opened, 1, turns=1)
+    assert run(["coils", "export", "--to", str(file), "--book", str(book)]) == 0
+    capsys.readouterr()
+    assert run(["coils", "import", str(file), "--book", str(other)]) == 1
+    said = capsys.readouterr().out
+    assert "1 coil imported" in said
+    assert "refused: coil b1-2026-0001: the book has another record under the same id" in said
+    lines = file.read_bytes().splitlines(keepends=True)
+    file.write_bytes(lines[0] + lines[1].replace(b'"turns":', b'"Turns":') + lines[2])
+    assert run(["coils", "import", str(file), "--book", str(tmp_path / "third.book")]) == 7
+    said = capsys.readouterr().out
+    assert "1 coil imported" in said
+    assert "refused: this export is not whole" in said
+
+
+def test_verify_takes_digests_from_elsewhere(book: Path, tmp_path: Path, capsys: Printed) -> None:
+    digest = asked(capsys, "coils", "show", "1", "--book", str(book))["record_digest"]
+    ident = asked(capsys, "coils", "show", "1", "--book", str(book))["id"]
+    common = ("coils", "verify", "--book", str(book))
+    for way in (["1", "--digest", digest], ["--digest", digest[:12].upper()]):
+        assert asked(capsys, *common, *way) == {"format": 1, "checked": 1, "broken": []}
+    page = tmp_path / "report.html"
+    page.write_text(f'<meta name="windctl-record" content="b1-2026-0001 {ident} {digest}">', encoding="utf-8")
+    assert asked(capsys, *common, str(page), "2")["checked"] == 2
+    other = "0" * 63 + "1"
+    page.write_text(f'<meta name="windctl-record" content="b1-2026-0001 {ident} {other}">', encoding="utf-8")
+    for way in ([str(page)], ["1", "--digest", other]):
+        assert run([*common, *way, "--json"]) == 7
+        (broken,) = json.loads(capsys.readouterr().out)["broken"]
+        assert (broken["coil"], type(broken["event_seq"])) == ("b1-2026-0001", int)
+        assert "its end was cut off or exchanged" in broken["what"]
+    assert run([*common, "--digest", other]) == 7
+    assert run([*common, str(page), "--digest", digest]) == 2
+    assert run([*common, "1", "2", "--digest", digest]) == 2
+    assert run([*common, "1", "--digest", "12"]) == 2
+
+
+def test_verify_takes_a_file_of_coils_that_are_not_here(book: Path, tmp_path: Path, capsys: Printed) -> None:
+    file, other = tmp_path / "coils.jsonl", tmp_path / "other.book"
+    assert run(["coils", "export", "--to", str(file), "--book", str(book)]) == 0
+    open_book(other).close()
+    capsys.readouterr()
+    assert run(["coils", "verify", str(file), "--book", str(other)]) == 0
+    assert capsys.readouterr() == ("1 checked, 0 broken\n",
+                                   "coils.jsonl, b1-2026-0001: whole, and not in this book\n")  # fmt: skip
+    assert run(["coils", "verify", str(file), "--book", str(book)]) == 0
+
+
+def test_a_book_is_backed_up_and_restored(book: Path, tmp_path: Path, capsys: Printed) -> None:
+    kept, new = tmp_path / "kept.book", tmp_path / "new.book"
+    assert asked(capsys, "coils", "backup", str(kept), "--book", str(book))["checked"] == 2
+    assert run(["coils", "backup", str(kept), "--book", str(book)]) == 1
+    assert "say --replace" in capsys.readouterr().err
+    assert run(["coils", "restore", str(kept), "--book", str(new)]) == 0
+    assert capsys.readouterr().out == f"2 coils in {new}, all verified\n"
+    assert run(["coils", "restore", str(kept), "--book", str(new), "--replace"]) == 0
+    assert f"the book before it is kept as {new}.before-restore" in capsys.readouterr().out
+    assert asked(capsys, "coils", "verify", "--book", str(new))["checked"] == 2

@@ -17,6 +17,10 @@ shelf       spools, addenda, and the lessons of all coils in order
 check       does one coil's record agree with itself?
 verify      the same for the coils of a book, and for the book as a whole
 export      one coil as plain data, lossless
+exchange    many coils in a file, from one book to another
+imports     which coils came from elsewhere, and which numbers were passed over for them
+claims      digests that paper and files carry, and the book held against them
+backup      the whole book to another file and back
 book        the whole, as the rest of the program sees it
 open        a path becomes a book
 

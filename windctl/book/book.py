@@ -11,8 +11,11 @@ from types import TracebackType
 
 import sqlalchemy as sa
 
-from windctl.book.export import exported, shown
+from windctl.book.claims import Claim, claimed, held_against
+from windctl.book.exchange import Hand, Taken, lines_of, take_in
+from windctl.book.export import Restored, exported, shown
 from windctl.book.heads import CoilHead, coil_number, head_columns, opened
+from windctl.book.imports import next_serial
 from windctl.book.lease import Lease
 from windctl.book.pairs import make_pairs, part_pair, stock_facts
 from windctl.book.queries import (
@@ -40,8 +43,8 @@ from windctl.book.shelf import (
     untaught_in,
 )
 from windctl.book.store import Store
-from windctl.book.tables import coils, entries, numbers
-from windctl.book.verify import VerifyReport, verify_book, verify_coil
+from windctl.book.tables import coils, entries
+from windctl.book.verify import BrokenCoil, VerifyReport, verify_book, verify_coil
 from windctl.book.words import first_words
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, RecordBroken
@@ -91,7 +94,7 @@ class Book:
         """
         _check_new(bench, year, started)
         with self._store.atomic() as connection:
-            serial = _next_serial(connection, bench, year)
+            serial = next_serial(connection, bench, year)
             started = replace(started, number=coil_number(bench, year, serial))
             payload = _first_payload(started)
             tie = link(genesis(started.coil_id), started.kind, payload)
@@ -189,6 +192,17 @@ class Book:
         """`show`, and every row of the record with its digests: enough to check and restore the coil."""
         return exported(self._store, self.find(coil))
 
+    def export_lines(self, heads: Sequence[CoilHead]) -> Iterator[bytes]:
+        """A file of these coils, line by line, for `coils_in` and `take_in` of another book."""
+        return lines_of(self._store, heads)
+
+    def take_in(self, coil: Restored, hand: Hand) -> Taken:
+        """Import a coil, as `coil_of` gives it.
+
+        Raises BookError when it is open, or the book has another one under the same id; nothing was changed.
+        """
+        return take_in(self._store, coil, hand)
+
     def amend(self, coil: str, *facts: Addendum) -> None:
         """Say something of a closed coil: its record stays as it is. Raises BookError for an open one."""
         amend(self._store, [(self.find(coil), facts)])
@@ -244,6 +258,20 @@ class Book:
             return verify_book(self._store)
         return verify_coil(self._store, self.find(coil).id)
 
+    def check_claim(self, claim: Claim, where: str) -> VerifyReport:
+        """Check the coil that a report, a label or a file tells of, and that it is the one told of.
+
+        `where`: stands for the coil where the book has none such.
+        """
+        coil_id = claimed(self._store, claim)
+        if coil_id is None:
+            what = "no record of this book is the one told of: it is missing, or was exchanged"
+            return VerifyReport(0, (BrokenCoil(where, None, what),))
+        report = verify_coil(self._store, coil_id)
+        if report.broken:
+            return report
+        return VerifyReport(report.checked, tuple(held_against(self._store, self.find(coil_id), claim)))
+
     def _again(self, head: CoilHead) -> CoilHead:
         with self._store.reading() as connection:
             return head_of(connection.execute(sa.select(*HEAD_COLUMNS).where(coils.c.id == head.id)).one())
@@ -276,18 +304,6 @@ def _first_payload(started: CoilStarted) -> bytes:
         return encode(started)
     except ValueError as error:  # a text that is no text, a number that is none
         raise BookError(f"the start of the coil cannot be recorded: {error}") from error
-
-
-def _next_serial(connection: sa.Connection, bench: str, year: int) -> int:
-    """The next number of a bench's year; the transaction's lock keeps others from getting the same."""
-    here = (numbers.c.bench == bench, numbers.c.year == year)
-    last = connection.scalar(sa.select(numbers.c.last).where(*here).with_for_update())
-    if last is None:
-        connection.execute(sa.insert(numbers), [{"bench": bench, "year": year, "last": 1}])
-        return 1
-    serial = int(last) + 1
-    connection.execute(sa.update(numbers).where(*here).values(last=serial))
-    return serial
 
 
 def _check_new(bench: str, year: int, started: CoilStarted) -> None:

@@ -13,6 +13,7 @@ from typing import Any
 
 from windctl.book.check import check_record
 from windctl.book.heads import SEAL, CoilHead
+from windctl.book.imports import recorded_head
 from windctl.book.logs import COIL, Log, LogRow, check_log, facts_of, read
 from windctl.book.queries import StoredRow, curve_in, stored_rows
 from windctl.book.store import Store
@@ -22,12 +23,14 @@ from windctl.record.canonical import encode
 from windctl.record.chain import genesis
 from windctl.record.curve import CurvePoint
 from windctl.record.entries import Entry, unpack
-from windctl.record.events import Event
+from windctl.record.events import CoilStarted, Event
 
 FORMAT = 1
 
 # The row's columns that the export names otherwise.
 _RENAMED = ("number", "target_kind", "target_value")
+# Columns that older exports lack: the first fact has them.
+_LATER = ("spool",)
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,11 +64,12 @@ def shown(store: Store, head: CoilHead) -> dict[str, object]:
     return _shown(store, head, rows)
 
 
-def exported(store: Store, head: CoilHead) -> dict[str, object]:
-    """`shown`, and the rows of the record as they are stored.
+def exported(store: Store, head: CoilHead, *, told: bool = True) -> dict[str, object]:
+    """`shown`, and the rows of the record as they are stored; not `told`: without events and addenda, which
+    repeat the rows in a form to be read.
 
-    Each: `seq`, `kind`, `events` (how many it holds), `payload` (base64), `link` (hex): SHA-256 over the link
-    before, the length of the kind (u16, big endian), the kind, the payload.
+    Each row: `seq`, `kind`, `events` (how many it holds), `payload` (base64), `link` (hex): SHA-256 over the
+    link before, the length of the kind (u16, big endian), the kind, the payload.
 
     Raises RecordBroken when a row of the record cannot be read.
     """
@@ -80,9 +84,19 @@ def exported(store: Store, head: CoilHead) -> dict[str, object]:
         }
         for row in rows
     ]
-    shape = _shown(store, head, rows)
+    head = _as_recorded(head, rows)
+    if told:
+        shape = _shown(store, head, rows)
+    else:
+        shape = {**summary_of(head), "curve": [asdict(point) for point in _curve(store, head)]}
     log = _log(store, head)
     return {**shape, "genesis": genesis(head.id).hex(), "entries": plain, "log": _exported_log(log)}
+
+
+def _as_recorded(head: CoilHead, rows: Sequence[StoredRow]) -> CoilHead:
+    """An imported coil goes out under the number that its record has."""
+    started = next(unpack(row.entry for row in rows), None)
+    return recorded_head(head, started.number) if isinstance(started, CoilStarted) else head
 
 
 def _exported_log(log: Log | None) -> dict[str, object] | None:
@@ -114,8 +128,8 @@ def restored(data: Mapping[str, Any]) -> Restored:
             )
         target = data["target"]
         named = {"number": data["coil"], "target_kind": target["kind"], "target_value": target["value"]}
-        plain = {field.name: data[field.name] for field in fields(CoilHead) if field.name not in _RENAMED}
-        head = CoilHead(**_floats(CoilHead, {**named, **plain}))
+        names = [field.name for field in fields(CoilHead) if field.name not in (*_RENAMED, *_LATER)]
+        plain = {name: data[name] for name in names}
         rows = tuple(
             StoredRow(
                 row["seq"],
@@ -124,6 +138,8 @@ def restored(data: Mapping[str, Any]) -> Restored:
             )
             for row in data["entries"]
         )
+        later = {name: data.get(name, _of_start(rows, name)) for name in _LATER}
+        head = CoilHead(**_floats(CoilHead, {**named, **plain, **later}))
         curve = tuple(CurvePoint(**_floats(CurvePoint, point)) for point in data["curve"])
         log = None if data["log"] is None else _restored_log(data["log"])
     except (KeyError, TypeError, ValueError) as error:
@@ -137,6 +153,11 @@ def restored(data: Mapping[str, Any]) -> Restored:
         where = f"row {fault.seq} of what was said since"
         raise RecordBroken(f"the export of coil {head.number} was altered: {where}: {fault.what}")
     return Restored(head, rows, curve, log)
+
+
+def _of_start(rows: Sequence[StoredRow], name: str) -> object:
+    """What the first fact says. Raises RecordBroken when it cannot be read."""
+    return getattr(next(unpack(row.entry for row in rows), None), name, "")
 
 
 def _restored_log(data: Mapping[str, Any]) -> Log:

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import contextlib
 import errno
+import glob
 import os
 import sys
 from pathlib import Path
@@ -60,6 +61,23 @@ class Lease:
         with contextlib.suppress(OSError):
             self._path.unlink()
         os.close(handle)
+
+
+def written_now(book: Path) -> list[str]:
+    """Who is writing coils into a book at this moment, in words."""
+    holders: list[str] = []
+    for path in sorted(book.parent.glob(f"{glob.escape(book.name)}.*.writing")):
+        try:
+            handle = os.open(path, os.O_RDWR)
+        except FileNotFoundError:
+            continue
+        try:
+            _lock(handle)
+        except OSError:
+            holders.append(_holder(handle))
+        finally:
+            os.close(handle)
+    return holders
 
 
 def _take(path: Path, number: str) -> int:

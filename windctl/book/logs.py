@@ -19,6 +19,7 @@ from windctl.record.chain import link
 
 LOGS = "logs"  # the log of logs
 COIL, SPOOL = "coil ", "spool "
+IMPORTS = "imports"  # which coils came from other books, and which numbers were passed over for them
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +47,11 @@ def append(connection: sa.Connection, name: str, facts: Sequence[Addendum]) -> N
 
     Raises BookError for a fact that cannot be kept as it is.
     """
+    append_stored(connection, name, [(fact.kind, _payload(fact)) for fact in facts])
+
+
+def append_stored(connection: sa.Connection, name: str, facts: Sequence[tuple[str, bytes]]) -> None:
+    """The same with facts as they are stored: kind and payload."""
     tail = connection.execute(sa.select(logs.c.n, logs.c.digest).where(logs.c.name == name)).one_or_none()
     if tail is None:
         if name != LOGS:
@@ -55,10 +61,9 @@ def append(connection: sa.Connection, name: str, facts: Sequence[Addendum]) -> N
     else:
         n, last = int(tail.n), bytes.fromhex(tail.digest)
     values = []
-    for fact in facts:
-        payload = _payload(fact)
-        last = link(last, fact.kind, payload)
-        values.append({"log": name, "seq": n, "kind": fact.kind, "payload": payload, "link": last})
+    for kind, payload in facts:
+        last = link(last, kind, payload)
+        values.append({"log": name, "seq": n, "kind": kind, "payload": payload, "link": last})
         n += 1
     connection.execute(sa.insert(log_entries), values)
     connection.execute(sa.update(logs).where(logs.c.name == name).values(n=n, digest=last.hex()))

@@ -9,6 +9,7 @@ from datetime import UTC, datetime
 import sqlalchemy as sa
 
 from windctl.book.heads import CoilHead
+from windctl.book.imports import imports_in
 from windctl.book.logs import COIL, SPOOL, all_facts, append, facts_of, read
 from windctl.book.store import Store
 from windctl.book.tables import coils
@@ -155,11 +156,13 @@ def untaught_in(store: Store) -> tuple[str, ...]:
     query = sa.select(coils.c.id, coils.c.number).where(coils.c.trace_digest.is_not(None))
     with store.reading() as connection:
         rows = [tuple(row) for row in connection.execute(query.order_by(coils.c.started, coils.c.number))]
-    return tuple(number for coil, number in rows if coil not in taught)
+        silent = imports_in(connection).silent
+    return tuple(number for coil, number in rows if coil not in taught and coil not in silent)
 
 
 def lessons_in(store: Store, unwritten: Iterable[tuple[str, Lesson]] = ()) -> tuple[CoilLesson, ...]:
-    """The lessons of all closed coils that have one, in the order in which the coils were begun.
+    """The lessons of all closed coils that have one, in the order in which the coils were begun. Imported
+    coils have one only where they are to teach here.
 
     `unwritten`: by coil number, those that are not written down.
     """
@@ -168,8 +171,11 @@ def lessons_in(store: Store, unwritten: Iterable[tuple[str, Lesson]] = ()) -> tu
     with store.reading() as connection:
         query = sa.select(coils.c.id, coils.c.number, coils.c.started, coils.c.outcome)
         rows = [tuple(row) for row in connection.execute(query)]
+        silent = imports_in(connection).silent
     found = []
     for coil, number, started, outcome in sorted(rows, key=lambda row: (_moment(row[2]), row[1])):
+        if coil in silent:
+            continue
         facts = said.get(coil, [])
         lesson = given.get(number)
         for fact in facts:

@@ -13,6 +13,7 @@ import sqlalchemy as sa
 
 from windctl.book.check import Fault, check_record
 from windctl.book.heads import CoilHead, coil_number
+from windctl.book.imports import Imports, gaps, imports_in, recorded_head
 from windctl.book.ledger import names
 from windctl.book.logs import COIL, Log, LogFault, check_log, check_logs, facts_of, read
 from windctl.book.queries import HEAD_COLUMNS, StoredRow, curve_in, head_of, raw_rows
@@ -20,6 +21,7 @@ from windctl.book.store import Store
 from windctl.book.tables import coils, curve, entries, ledger, numbers
 from windctl.book.words import IN_RECORD, said_in, words_of, written_in
 from windctl.errors import BookError, RecordBroken
+from windctl.record.addenda import CoilImported
 from windctl.record.curve import CurvePoint
 from windctl.record.entries import Entry
 
@@ -58,8 +60,8 @@ class VerifyReport:
         return not self.broken
 
 
-def verify_coils(store: Store, ids: Iterable[str]) -> VerifyReport:
-    """Check these coils, and what was said of them since.
+def verify_coils(store: Store, ids: Iterable[str], imports: Imports) -> VerifyReport:
+    """Check these coils.
 
     Raises BookError when the book itself cannot be read.
     """
@@ -67,7 +69,7 @@ def verify_coils(store: Store, ids: Iterable[str]) -> VerifyReport:
     broken: list[BrokenCoil] = []
     for coil_id in ids:
         checked += 1
-        broken += _coil(store, coil_id)
+        broken += _coil(store, coil_id, imports.coils.get(coil_id))
     return VerifyReport(checked, tuple(broken))
 
 
@@ -80,20 +82,23 @@ def verify_book(store: Store) -> VerifyReport:
     with store.reading() as connection:
         steps = [tuple(row) for row in connection.execute(sa.select(ledger).order_by(ledger.c.version))]
         allotted = [tuple(row) for row in connection.execute(sa.select(numbers))]
-        here = sa.select(coils.c.bench, coils.c.year, coils.c.serial)
+        here = sa.select(coils.c.id, coils.c.bench, coils.c.year, coils.c.serial)
         present = [tuple(row) for row in connection.execute(here)]
+        imports = imports_in(connection)
         ids = list(connection.scalars(sa.select(coils.c.id).order_by(coils.c.started, coils.c.number)))
         broken += _orphans(connection)
     if steps != names():
         broken.append(BrokenCoil(BOOK, None, f"the ledger of schemas was altered: it says {steps!r}"))
-    broken += _gaps(allotted, present)
-    report = verify_coils(store, ids)
+    broken += [*_gaps(allotted, present, imports), *_lost(imports, present)]
+    report = verify_coils(store, ids, imports)
     return VerifyReport(report.checked, (*broken, *report.broken, *_logs(store)))
 
 
 def verify_coil(store: Store, coil_id: str) -> VerifyReport:
     """Check one coil, and what was said of it since."""
-    report = verify_coils(store, [coil_id])
+    with store.reading() as connection:
+        imports = imports_in(connection)
+    report = verify_coils(store, [coil_id], imports)
     with store.reading() as connection:
         log = read(connection, f"{COIL}{coil_id}")
         number = connection.scalar(sa.select(coils.c.number).where(coils.c.id == coil_id))
@@ -121,7 +126,7 @@ def _of_log(fault: LogFault, numbers_of: dict[str, str]) -> BrokenCoil:
     )
 
 
-def _coil(store: Store, coil_id: str) -> Iterator[BrokenCoil]:
+def _coil(store: Store, coil_id: str, imported: CoilImported | None) -> Iterator[BrokenCoil]:
     name = coil_id
     try:
         one = _snapshot(store, coil_id)
@@ -129,7 +134,10 @@ def _coil(store: Store, coil_id: str) -> Iterator[BrokenCoil]:
         stop = head.n_entries if isinstance(head.n_entries, int) else one.n_rows
         written: list[Entry] = []
         rows = _noticing(raw_rows(store, coil_id, stop), written)
-        faults = check_record(head, rows, one.points)
+        faults = check_record(_as_recorded(head, imported), rows, one.points)
+        if imported is not None and head.number != imported.number:
+            what = f"number is {head.number!r}, it was imported as {imported.number!r}"
+            faults.append(Fault(None, what))
         if one.n_rows > stop:
             faults.append(Fault(stop, f"the record has {one.n_rows} rows, the coil's row says {stop}"))
         if not faults:  # else its words could not be told either
@@ -170,6 +178,15 @@ class _Snapshot:
     log: Log | None
 
 
+def _as_recorded(head: CoilHead, imported: CoilImported | None) -> CoilHead:
+    """The row with the number that the record has, where an imported coil is called otherwise here."""
+    if imported is None or imported.recorded == imported.number or head.number != imported.number:
+        return head
+    if head.number != coil_number(head.bench, head.year, head.serial):
+        return head  # told as it is
+    return recorded_head(head, imported.recorded)
+
+
 def _snapshot(store: Store, coil_id: str) -> _Snapshot:
     with store.reading() as connection:
         row = connection.execute(sa.select(*HEAD_COLUMNS, coils.c.words).where(coils.c.id == coil_id)).one()
@@ -202,29 +219,43 @@ def _orphans(connection: sa.Connection) -> Iterator[BrokenCoil]:
 
 
 def _gaps(
-    allotted: Iterable[tuple[Any, Any, Any]], present: Iterable[tuple[Any, Any, Any]]
+    allotted: Iterable[tuple[Any, Any, Any]],
+    present: Iterable[tuple[Any, Any, Any, Any]],
+    imports: Imports,
 ) -> Iterator[BrokenCoil]:
-    """Numbers that were given to a coil which is not here. Both are (bench, year, serial number)."""
+    """Numbers that were given to a coil which is not here. `allotted`: (bench, year, last serial number);
+    `present`: (id, bench, year, serial number)."""
     last = {(bench, year): serial for bench, year, serial in allotted}
-    serials: dict[tuple[str, int], list[int]] = {key: [] for key in last}
-    for bench, year, serial in present:
+    taken: dict[tuple[str, int], list[tuple[int, int]]] = {key: [] for key in last}
+    own: dict[tuple[str, int], int] = {}
+    for coil, bench, year, serial in present:
         if isinstance(serial, int):  # else the coil's own check says so
-            serials.setdefault((bench, year), []).append(serial)
-    for (bench, year), here in serials.items():
-        here.sort()
-        highest = here[-1] if here else 0
-        count = last.get((bench, year))
-        if count is None or not isinstance(count, int) or count < highest:
+            taken.setdefault((bench, year), []).append((serial, serial))
+            if coil not in imports.coils:
+                own[bench, year] = max(serial, own.get((bench, year), 0))
+    for one in imports.passed:
+        taken.setdefault((one.bench, one.year), []).append((one.first, one.last))
+    for (bench, year), here in taken.items():
+        highest = own.get((bench, year), 0)
+        count = last.get((bench, year), 0)
+        if not isinstance(count, int) or count < highest:
             what = (
-                f"bench {bench!r}, {year}: {highest} numbers are in use, the count of numbers says {count!r}"
+                f"bench {bench!r}, {year}: {highest} numbers are in use, the count of numbers says "
+                f"{last.get((bench, year))!r}"
             )
             yield BrokenCoil(BOOK, None, what)
             count = highest
-        before = 0
-        for serial in [*here, count + 1]:
-            if serial - before > 1:
-                yield _missing(bench, year, before + 1, serial - 1)
-            before = serial
+        for first, upto in gaps(here, 1, count):
+            yield _missing(bench, year, first, upto)
+
+
+def _lost(imports: Imports, present: Iterable[tuple[Any, Any, Any, Any]]) -> Iterator[BrokenCoil]:
+    """Imported coils that are not here any more."""
+    here = {coil for coil, *_ in present}
+    for coil, fact in imports.coils.items():
+        if coil not in here:
+            what = f"missing: it was imported {fact.wall_time}, and is not in the book (id {coil})"
+            yield BrokenCoil(_printable(fact.number), None, what)
 
 
 def _missing(bench: str, year: int, first: int, last: int) -> BrokenCoil:

@@ -3,16 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import asdict
 from typing import TYPE_CHECKING, Any
 
 import click
 
-from windctl.cli import coil_addenda, coil_measure, label, present, report
-from windctl.cli.exit_codes import ExitCode
+from windctl.cli import (
+    coil_addenda,
+    coil_backup,
+    coil_exchange,
+    coil_measure,
+    coil_proof,
+    label,
+    present,
+    report,
+)
 from windctl.cli.options import Shared, takes
 from windctl.desk.books import book_if_any, book_to_read
-from windctl.errors import BookError, QueryError, UsageError
+from windctl.errors import QueryError, UsageError
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
@@ -204,39 +211,12 @@ def _told(event: Mapping[str, Any]) -> str:
     return f": {', '.join(parts)}" if parts else ""
 
 
-@coils.command()
-@click.argument("coil", required=False)
-@takes("book", "json")
-def verify(shared: Shared, coil: str | None) -> ExitCode:
-    """Check the record of COIL, or of all coils, against its digests: any change to it shows."""
-    with book_if_any(shared) as book:
-        if book is not None:
-            report = book.verify(coil)
-            checked, broken = report.checked, list(report.broken)
-        elif coil is None:
-            checked, broken = 0, []
-        else:
-            raise BookError(f"no coil {coil!r}: no coil has been wound yet")
-    if shared.json:
-        present.result_json({"checked": checked, "broken": [asdict(one) for one in broken]})
-    else:
-        present.result(f"{checked} checked, {len({one.coil for one in broken})} broken")
-        for one in broken:
-            place = "" if one.event_seq is None else f", row {one.event_seq} of its record"
-            present.result(f"{one.coil}{place}: {one.what}")
-    return ExitCode.RECORD_BROKEN if broken else ExitCode.DONE
-
-
-@coils.command()
-@click.argument("coil")
-@takes("book", "json")
-def export(shared: Shared, coil: str) -> None:
-    """The whole record of COIL as JSON, with its digests: enough to check it, and to restore it elsewhere."""
-    with book_to_read(shared) as book:
-        present.result_json(dict(book.export(coil)))
-
-
 for _command in (
+    coil_proof.verify,
+    coil_exchange.export,
+    coil_exchange.import_,
+    coil_backup.backup,
+    coil_backup.restore,
     report.report,
     label.label,
     coil_addenda.note,

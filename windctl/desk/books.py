@@ -37,6 +37,13 @@ def there_is_a_book(shared: Shared) -> bool:
     return book_path(shared.book, os.environ).exists()
 
 
+def where_the_book_is(shared: Shared) -> Path:
+    """Where the book that is meant lies, or will."""
+    from windctl.book.places import book_path
+
+    return book_path(shared.book, os.environ)
+
+
 def book_to_read(shared: Shared) -> Book:
     """The book, never changed by reading it. Raises BookError where there is none."""
     from windctl.book.places import book_path

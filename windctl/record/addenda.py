@@ -200,6 +200,34 @@ class SpoolMeasured:
 
 
 @dataclass(frozen=True, slots=True)
+class CoilImported:
+    """A coil was taken over from another book, with its record and all that was said of it.
+
+    `number` is what it is called here, `recorded` what its record calls it: they differ where the number was
+    another coil's here already. It teaches only when `teaches`; the latest of these counts.
+    """
+
+    kind: ClassVar[str] = "coil_imported"
+    wall_time: str
+    by: str
+    coil: str  # its id
+    number: str
+    recorded: str
+    teaches: bool
+
+
+@dataclass(frozen=True, slots=True)
+class NumbersPassed:
+    """Numbers of a bench that this book never gave to a coil: it went on behind those of imported coils."""
+
+    kind: ClassVar[str] = "numbers_passed"
+    bench: str
+    year: int
+    first: int
+    last: int
+
+
+@dataclass(frozen=True, slots=True)
 class LogBegun:
     """Another log exists from here on. Stands in the log of logs, so that none can vanish unseen."""
 
@@ -219,6 +247,8 @@ Addendum = (
     | SpoolAdded
     | SpoolWeighed
     | SpoolMeasured
+    | CoilImported
+    | NumbersPassed
     | LogBegun
 )
 
@@ -236,6 +266,8 @@ KINDS: dict[str, type[Addendum]] = {
         SpoolAdded,
         SpoolWeighed,
         SpoolMeasured,
+        CoilImported,
+        NumbersPassed,
         LogBegun,
     )
 }
