@@ -10,6 +10,7 @@ import click
 from windctl.cli import (
     coil_addenda,
     coil_backup,
+    coil_compare,
     coil_exchange,
     coil_measure,
     coil_proof,
@@ -222,6 +223,7 @@ for _command in (
     coil_addenda.note,
     coil_measure.measure,
     coil_measure.budget,
+    coil_compare.compare,
     coil_addenda.withdraw,
 ):
     coils.add_command(_command)

@@ -22,6 +22,7 @@ COMMANDS = {
     "forecast": "windctl.cli.forecast:forecast",
     "estimate": "windctl.cli.estimate:estimate",
     "coils": "windctl.cli.coils:coils",
+    "chart": "windctl.cli.chart:chart",
     "spool": "windctl.cli.spool:spool",
     "machine": "windctl.cli.machine:machine",
     "recipe": "windctl.cli.recipe:recipe",

@@ -18,6 +18,7 @@ from itertools import pairwise
 from math import copysign, inf
 from statistics import fmean
 
+_OF_THE_CENTRE = ("above", "below")
 D2, D4 = 1.128, 3.267  # of moving ranges of two
 
 
@@ -70,11 +71,16 @@ class Rule:
     words: str
     window: int
     broken: Callable[[Sequence[float]], tuple[int, int] | None]
+    sides: tuple[str, str] = _OF_THE_CENTRE  # what its sides are called
 
     @property
     def name(self) -> str:
         """As it is cited."""
         return f"{self.set} rule {self.number}"
+
+    def speaks_of(self, side: int, off: float) -> bool:
+        """Whether a value `off` the centre, in a row that broke the rule on `side`, is one of those meant."""
+        return side == 0 or self.sides != _OF_THE_CENTRE or side * off > 0.0
 
 
 def individuals(values: Sequence[float], baseline: int | None = None) -> Chart:
@@ -185,7 +191,7 @@ WESTERN_ELECTRIC = (
 NELSON = (
     Rule(_N, 1, "beyond the three-sigma limit", 1, _beyond(3.0, 1)),
     Rule(_N, 2, "nine in a row on one side of the centre", 9, _beyond(0.0, 9)),
-    Rule(_N, 3, "six in a row, each further the same way", 6, _trend(6)),
+    Rule(_N, 3, "six in a row, each further than the one before", 6, _trend(6), ("rising", "falling")),
     Rule(_N, 4, "fourteen in a row, up and down by turns", 14, _alternating(14)),
     Rule(_N, 5, "two of three beyond two sigma", 3, _beyond(2.0, 2)),
     Rule(_N, 6, "four of five beyond one sigma", 5, _beyond(1.0, 4)),
