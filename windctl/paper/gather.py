@@ -11,7 +11,8 @@ from windctl.paper.history import history_of
 from windctl.paper.report import CoilFacts
 from windctl.record.addenda import Addendum
 from windctl.record.events import CoilStarted, Event
-from windctl.shop.life import life_of, readings_of
+from windctl.record.state import State
+from windctl.shop.life import Life, life_of, readings_of
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
@@ -39,7 +40,16 @@ def gathered(
         state=seen.state,
         course=course_of(started, all_events, turns),
         curve=seen.points,
-        life=life_of(readings_of(seen.state, addenda)),
+        life=_life(seen.state, addenda),
         addenda=tuple(addenda),
         schema=schema,
     )
+
+
+def _life(state: State, addenda: Sequence[Addendum]) -> Life | None:
+    """None where the recorded profile is of a form that this version does not read: what the readings were
+    taken with is not known then."""
+    try:
+        return life_of(readings_of(state, addenda))
+    except ValueError:
+        return None

@@ -65,8 +65,10 @@ code, .digest { font-family: ui-monospace, 'DejaVu Sans Mono', 'Liberation Mono'
 .proof { display: flex; gap: 7mm; align-items: flex-start; break-inside: avoid; }
 .proof > div { min-width: 0; flex: 1; }
 .proof figure { flex: 0 0 31mm; }
-@media screen and (max-width: 600px) { .title, .proof { flex-direction: column; align-items: flex-start; }
-  .key { grid-template-columns: 1fr 1fr; row-gap: 3mm; } .columns { columns: 1; }
+@media screen and (max-width: 600px) { body { padding: 4mm; } .n { white-space: normal; }
+  .title, .proof { flex-direction: column; align-items: flex-start; }
+  .key { grid-template-columns: 1fr 1fr; row-gap: 3mm; } .key dd { white-space: normal; }
+  .columns { columns: 1; }
   .title figure { flex-basis: auto; width: 100%; max-width: 78mm; } }
 @media print {
   html { font-size: 9.6pt; }

@@ -21,12 +21,15 @@ _BUDGET = (
 )
 
 
-def measured_section(life: Life, addenda: Sequence[Addendum], hum: Hum | None) -> Markup:
+def measured_section(life: Life | None, addenda: Sequence[Addendum], hum: Hum | None) -> Markup:
     """Readings, their budgets, what else was measured, and the hum that follows."""
     parts = []
-    if len(life.readings) > 1 or life.made is None:
-        parts += [_readings(life)] if life.readings else []
-    if life.made is not None and life.now is not None:
+    if life is not None and (len(life.readings) > 1 or (life.readings and life.made is None)):
+        parts.append(_readings(life))
+    if life is None:
+        words = "The machine's profile in this record has a form that this version of windctl does not read."
+        parts.append(tag("p", words))
+    elif life.made is not None and life.now is not None:
         if life.changed:
             parts += [_budget("As it was made", life.made), _budget("As it is now", life.now)]
         else:

@@ -50,14 +50,15 @@ _WAYS = {
 @dataclass(frozen=True, slots=True)
 class CoilFacts:
     """What a report is made from: the coil's row, its folded facts and their course, what was known as it
-    grew, its readings since, and all else that was said. `schema`: of the book it came from."""
+    grew, its readings since (None where this version cannot tell), and all else that was said. `schema`: of
+    the book it came from."""
 
     head: CoilHead
     started: CoilStarted
     state: State
     course: Course
     curve: tuple[CurvePoint, ...]
-    life: Life
+    life: Life | None
     addenda: tuple[Addendum, ...]
     schema: int
 
@@ -69,7 +70,7 @@ class CoilFacts:
     @property
     def cold(self) -> tuple[float, float] | None:
         """The coil's resistance now, ohm at 20 degrees C by all its readings, and its 95 % half-width."""
-        now = self.life.now
+        now = None if self.life is None else self.life.now
         return self.final if now is None else (now.ohm, now.u95)
 
     @property
@@ -149,7 +150,7 @@ def _resistance_words(coil: CoilFacts) -> tuple[str, str]:
     cold = coil.cold
     if cold is None:
         return "not known", ""
-    if coil.life.changed:
+    if coil.life is not None and coil.life.changed:
         return ohm(*cold), "changed since it was made"
     return ohm(*cold), "± is the 95 % interval" if cold[1] > 0 else ""
 

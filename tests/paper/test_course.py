@@ -1,0 +1,108 @@
+"""Speed, tension and growth as a page shows them, from facts made by hand."""
+
+from __future__ import annotations
+
+import dataclasses
+
+import pytest
+
+from tests.book.samples import made, started
+from windctl.book.book import Book
+from windctl.desk.papers import coil_facts
+from windctl.paper.course import course_of
+from windctl.paper.layers import growth_of
+from windctl.paper.recorded import Bobbin, bobbin_of, recipe_of, settings
+from windctl.paper.told import story, told
+from windctl.protocol.messages import Capability, Identity, Setup, State, Status
+from windctl.record.events import KINDS, BoardGreeted, Event, StatusHeard, StopPointChosen
+
+
+def turning(ticks: int, turn: float, speed: int, tension: int = 0) -> StatusHeard:
+    status = made(
+        Status, ticks=ticks, count=round(turn * 400), speed=speed, tension=tension, state=int(State.TURNING)
+    )
+    return StatusHeard(ticks, status)
+
+
+def test_speed_and_tension_are_in_the_units_of_the_board() -> None:
+    """Speed is in motor steps a second, tension in units of which the greeting tells the size in 0.0001 cN:
+    the protocol's specification."""
+    begun = dataclasses.replace(
+        started(), setup=made(Setup, counts_per_turn=400, steps_per_turn=200, fitted=255)
+    )
+    greeted = BoardGreeted(0, made(Identity, tension_scale=50, capabilities=int(Capability.VIRTUAL)))
+    events: list[Event] = [begun, greeted]
+    events += [turning(50 * n, n / 10, 2000, 2400 if n % 2 else 2600) for n in range(1, 101)]
+    course = course_of(begun, events, 10.0)
+    assert {span.mean for span in course.speed_rpm} == {600.0}
+    assert min(span.low for span in course.tension_cn) == 12.0
+    assert max(span.high for span in course.tension_cn) == 13.0
+    assert course.seconds == pytest.approx(99 * 0.05)
+    assert course.simulated and len(course.rare) == 2
+    assert all(0 < span.turn <= 10.1 for span in course.speed_rpm)
+
+
+def test_a_long_coil_is_thinned_and_loses_no_peak() -> None:
+    begun = dataclasses.replace(started(), setup=made(Setup, counts_per_turn=400, steps_per_turn=400))
+    events: list[Event] = [begun, BoardGreeted(0, made(Identity, tension_scale=10_000))]
+    events += [turning(50 * n, n / 2, 400, 12 if n != 7777 else 19) for n in range(1, 16_001)]
+    course = course_of(begun, events, 8000.0)
+    assert len(course.speed_rpm) <= 301
+    assert max(span.high for span in course.tension_cn) == 19.0
+
+
+def bobbin(book: Book) -> Bobbin:
+    found = bobbin_of(recipe_of(coil_facts(book, book.find("1")).started))
+    assert found is not None
+    return found
+
+
+def test_a_coil_grows_outward_layer_by_layer_to_its_build(book: Book) -> None:
+    facts = coil_facts(book, book.find("1"))
+    growth = growth_of(facts.started, bobbin(book), 120.0)
+    assert growth is not None and not growth.by_hand
+    assert [layer.turn for layer in growth.layers] == pytest.approx([20, 40, 60, 80, 100, 120])
+    for inner, outer in zip(growth.layers, growth.layers[1:], strict=False):
+        assert all(low <= high for low, high in zip(inner.heights_mm, outer.heights_mm, strict=True))
+    # As much wire lies along the gap as the mean build says, bulged by 15 % on sides this long.
+    last = growth.layers[-1].heights_mm
+    assert sum(last) / len(last) == pytest.approx(1.15 * growth.build_mm, rel=0.02)
+
+
+def test_a_hand_that_nobody_recorded_is_drawn_even_and_said_to_be(book: Book) -> None:
+    facts = coil_facts(book, book.find("1"))
+    setup = dataclasses.replace(facts.started.setup, fitted=0)
+    growth = growth_of(dataclasses.replace(facts.started, setup=setup), bobbin(book), 120.0)
+    assert growth is not None and growth.by_hand
+    assert len(set(growth.layers[-1].heights_mm)) == 1
+
+
+def test_every_kind_of_fact_has_words_of_its_own() -> None:
+    """A fact without a case is told by its fields, and begins with its name."""
+    for name, kind in KINDS.items():
+        if name in ("status_heard", "reading_taken"):
+            continue
+        event = made(kind)
+        if name in ("coil_started", "resumed"):
+            event = dataclasses.replace(event, wall_time="2026-05-04T08:30")
+        elif name == "board_greeted":
+            event = dataclasses.replace(event, identity=made(Identity))
+        elif name == "command_refused":
+            event = dataclasses.replace(event, refused=made(__import__("windctl").protocol.messages.Refused))
+        elif name == "coil_finished":
+            event = dataclasses.replace(event, outcome="finished", reason="so")
+        text = told(event, 400)
+        assert text is None or text[0].isupper() or text[0] == "+"
+
+
+def test_a_long_row_of_stop_points_is_told_by_its_ends() -> None:
+    chosen = [StopPointChosen(1000 * n, 400 * n, "near", 100.0 + n, 1.0) for n in range(1, 8)]
+    lines = story(chosen, 400)
+    assert len(lines) == 3
+    assert "turn 1 " in lines[0].what and "turn 7 " in lines[2].what and "5 times" in lines[1].what
+    assert len(story(chosen[:2], 400)) == 2
+
+
+def test_a_key_that_no_version_knows_is_shown_all_the_same() -> None:
+    (table,) = settings({"bobbin": {"later_thing_mm": 1.5, "flag": True}, "name": "x"})
+    assert table == ("bobbin", [("later thing", "1.5 mm"), ("flag", "yes")])
