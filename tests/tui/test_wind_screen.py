@@ -53,7 +53,7 @@ async def test_slower_and_faster_are_a_key_each(tmp_path: Path, key: str, meant:
 
 async def test_a_check_opens_its_prompt_once_and_takes_the_reading(tmp_path: Path) -> None:
     winding = FakeWinding(TO_READ)
-    async with at_the_coil(tmp_path, winding) as (app, screen, pilot):
+    async with at_the_coil(tmp_path, winding) as (app, _, pilot):
         await pilot.pause(0.3)
         prompt = app.screen
         assert isinstance(prompt, ReadingPrompt)

@@ -174,8 +174,8 @@ class Readings(Form):
     contact: Annotated[
         bool,
         about(
-            "The board has a contact for the wire. live needs it; without it, in checks, the coil is measured "
-            "by hand and the reading typed."
+            "The board has a contact for the wire. live needs one; without it, checks are readings by hand "
+            "that are typed."
         ),
     ] = True
     lead_ohm: Annotated[float, quantity("ohm", "leads and contact, subtracted", ge=0, le=1e6)] = 0.5
