@@ -38,3 +38,12 @@ def test_its_head_tells_the_lot(book: Book) -> None:
 def test_a_batch_that_nobody_wound_is_refused(book: Book) -> None:
     with pytest.raises(UsageError, match="no coil of batch 'another'"):
         batch_coils(book, "another")
+
+
+def test_a_batch_of_one_recipe_has_its_control_chart(book: Book) -> None:
+    """Two of the three went to turns, so resistance was free; the third is of another target."""
+    _, text = batch_text(book, BATCH)
+    root = page(text)
+    titles = [one.all("title")[0].text for one in root.all("svg")]
+    assert any(title.startswith("Individual values") for title in titles)
+    assert root.all("li")

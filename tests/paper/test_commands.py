@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 import xml.etree.ElementTree as ET
 from pathlib import Path
 
@@ -80,3 +81,16 @@ def test_what_cannot_be_meant_is_refused(
 def test_a_file_that_cannot_be_written_is_named(book_path: Path, here: Path, capsys: Printed) -> None:
     assert run(["coils", "report", "2", "-o", "no/such/folder.html", "--book", str(book_path)]) == 1
     assert "folder.html cannot be written" in capsys.readouterr().err
+
+
+def test_a_report_and_labels_are_held_against_the_book(book_path: Path, here: Path, capsys: Printed) -> None:
+    common = ["--book", str(book_path)]
+    assert run(["coils", "report", "2", "-o", "two.html", *common]) == 0
+    assert run(["coils", "label", "1", "3", "-o", "labels.html", *common]) == 0
+    assert run(["coils", "verify", "two.html", "labels.html", *common]) == 0
+    text = (here / "two.html").read_text(encoding="utf-8")
+    digest = re.findall(r"[0-9a-f]{64}", text)[0]
+    forged = "0" * 64 if digest[0] != "0" else "1" * 64
+    (here / "two.html").write_text(text.replace(digest, forged), encoding="utf-8")
+    assert run(["coils", "verify", "two.html", *common]) == 7
+    assert "0002" in capsys.readouterr().out

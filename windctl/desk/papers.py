@@ -13,6 +13,7 @@ if TYPE_CHECKING:
     from windctl.paper.label import Label
     from windctl.paper.report import CoilFacts
     from windctl.record.addenda import Addendum
+    from windctl.shop.lot import Lot
 
 
 def coil_facts(book: Book, head: CoilHead) -> CoilFacts:
@@ -35,7 +36,20 @@ def batch_text(book: Book, batch: str) -> tuple[tuple[CoilHead, ...], str]:
 
     heads = batch_coils(book, batch)
     simulated = [head.number for head in heads if _simulated(book.addenda(head.number))]
-    return heads, batch_report(batch, heads, schema(), simulated)
+    return heads, batch_report(batch, heads, schema(), simulated, _lot(book, heads))
+
+
+def _lot(book: Book, heads: Sequence[CoilHead]) -> Lot | None:
+    """The control chart that `windctl chart --batch` draws; None for too few coils, or of several recipes."""
+    from windctl.desk.lots import gather
+    from windctl.shop.control import WESTERN_ELECTRIC
+    from windctl.shop.lot import free_quantity, lot_of
+
+    try:
+        coils = gather(book, heads).coils
+        return lot_of(coils, free_quantity(coils), WESTERN_ELECTRIC)
+    except (UsageError, ValueError):
+        return None
 
 
 def batch_coils(book: Book, batch: str) -> tuple[CoilHead, ...]:

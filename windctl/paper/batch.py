@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 
 from windctl.numbers import counted, grouped, ohm
 from windctl.paper import svg
+from windctl.paper.control_chart import individuals_svg, ranges_svg
 from windctl.paper.html import (
     Column,
     Markup,
@@ -23,9 +24,11 @@ from windctl.paper.look import report_css
 from windctl.paper.plot import Entry, Plot, axis_over, categories
 from windctl.paper.proof import META, Proof
 from windctl.paper.svg import INK, Pen
+from windctl.shop.lot import capability_words, says
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
+    from windctl.shop.lot import Lot
 
 _MEAN = Pen(INK, 0.9, "7 3")
 
@@ -35,10 +38,11 @@ def batch_report(
     heads: Sequence[CoilHead],
     schema: int,
     simulated: Collection[str] = (),
-    charts: Sequence[Markup] = (),
+    lot: Lot | None = None,
 ) -> str:
     """The page. `heads`: the batch's coils in the order in which they were begun, at least one;
-    `simulated`: the numbers of those that no machine wound; `charts`: of the lot, as figures."""
+    `simulated`: the numbers of those that no machine wound; `lot`: their control chart, where
+    there are coils enough of one recipe."""
     return page(
         f"Batch {batch}",
         report_css(f"batch {batch} · {counted(len(heads), 'coil')}"),
@@ -46,7 +50,7 @@ def batch_report(
         tag(
             "main",
             _drawn(heads),
-            *charts,
+            Markup("") if lot is None else _control(lot),
             section("The coils", _table(heads)),
             _proofs(heads, schema),
         ),
@@ -112,7 +116,9 @@ def _drawn(heads: Sequence[CoilHead]) -> Markup:
     bars = [(n, (value - half) / per, (value + half) / per) for n, value, half in known]
     mean = sum(value for _, value, _ in known) / len(known) / per
     y = axis_over([end for _, low, high in bars for end in (low, high)], f"{unit} at 20 °C", most=5)
-    plot = Plot("lot", categories([f"{head.serial}" for head in heads], "coil (last digits)"), y, height=240)
+    plot = Plot(
+        "coils", categories([f"{head.serial}" for head in heads], "coil (last digits)"), y, height=240
+    )
     drawn = plot.drawn(
         "Resistance of the coils",
         f"{counted(len(known), 'coil')}, {ohm(mean * per)} in the mean.",
@@ -123,6 +129,17 @@ def _drawn(heads: Sequence[CoilHead]) -> Markup:
     )
     words = "Resistance at 20 °C of each coil. The bars hold what all share, such as the meter's gain."
     return section("Resistance", figure(drawn, words))
+
+
+def _control(lot: Lot) -> Markup:
+    """The control charts, and what they say."""
+    said = [tag("li", line) for line in (*says(lot), *capability_words(lot))]
+    return section(
+        "Alike?",
+        figure(individuals_svg(lot), "Coil by coil, with limits at three standard deviations."),
+        figure(ranges_svg(lot), "By how much each coil differs from the one before."),
+        tag("ul", *said),
+    )
 
 
 def _table(heads: Sequence[CoilHead]) -> Markup:

@@ -18,6 +18,7 @@ h1, h2 { font-family: SERIF; font-weight: 600; line-height: 1.15; margin: 0; tex
 h1 { font-size: 27pt; letter-spacing: -0.01em; }
 h2 { font-size: 14pt; margin: 0 0 2.5mm; padding-top: 1.6mm; border-top: 0.5mm solid var(--copper);
   break-after: avoid; }
+ul { margin: 0 0 3mm; padding-left: 5mm; }
 p { margin: 0 0 2mm; max-width: 66em; text-wrap: pretty; }
 section { margin: 7mm 0 0; }
 .title { display: flex; gap: 6mm; justify-content: space-between; align-items: flex-end; }
