@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import shutil
 import sqlite3
 import sys
 import time
 from pathlib import Path
 
-from tests.book.samples import coil_id, packed, started, wound
+from tests.book.samples import ENDED, coil_id, finished, packed, seal, started, wind, wound
+from windctl.book.exchange import Hand, coil_of, coils_in
 from windctl.book.open import open_book
 from windctl.errors import BookError
+from windctl.record.addenda import CoilMeasured, CoilNoted
 from windctl.record.events import NoteMade
 
 
@@ -70,6 +73,54 @@ def hold(path: Path) -> None:
         sys.stdin.read()
 
 
+def shift(path: Path, first: str, n: str) -> None:
+    """Wind, seal, measure and note `n` coils, each as a run and a person do; say their numbers."""
+    with open_book(path, wait_s=60.0) as book:
+        say("ready")
+        sys.stdin.readline()
+        for k in range(int(first), int(first) + int(n)):
+            writer = book.begin_coil("b1", 2026, started(k, spool="s1"))
+            for row in packed([*wound(writer.started, 2), finished(2)]):
+                writer.commit([row])
+            seal(book, writer)
+            book.amend(writer.id, CoilMeasured(ENDED, "Demo Winder", grams=1.0 + k, grams_sd=0.02))
+            latest = next(head for head in book.list(limit=3) if head.sealed)  # perhaps the other one's
+            book.amend(latest.id, CoilNoted(ENDED, "Demo Winder", f"seen by {first}"))
+            say(writer.number)
+
+
+def wind_on(path: Path) -> None:
+    """Wind and seal one coil after the other without end."""
+    with open_book(path) as book:
+        say("ready")
+        n = 1
+        while True:
+            wind(book, n, turns=1)
+            n += 1
+
+
+def migrate(path: Path, old: str) -> None:
+    """Put the older book `old` in place and take it forward, over and over."""
+    half = path.with_name("half")
+    say("ready")
+    while True:
+        shutil.copyfile(old, half)
+        half.replace(path)
+        open_book(path, create=False).close()
+        for backup in path.parent.glob("*.before-*"):
+            backup.unlink()
+
+
+def take_in(path: Path, file: str) -> None:
+    """Import a file of coils."""
+    with open_book(path) as book:
+        say("ready")
+        for text in coils_in(Path(file))[1]:
+            book.take_in(coil_of(text), Hand(ENDED, "Demo Winder", False))
+    say("done")
+    time.sleep(60)
+
+
 def outgrow(path: Path) -> None:
     """Write to a disk without room, then again when there is some."""
     import resource  # not on every platform
@@ -92,5 +143,6 @@ def outgrow(path: Path) -> None:
 
 
 if __name__ == "__main__":
-    tasks = {task.__name__: task for task in (number, write, write_half, hold, outgrow)}
+    every = (number, write, write_half, hold, outgrow, shift, wind_on, migrate, take_in)
+    tasks = {task.__name__: task for task in every}
     tasks[sys.argv[1]](Path(sys.argv[2]), *sys.argv[3:])

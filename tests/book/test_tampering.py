@@ -76,6 +76,7 @@ def verified(path: Path) -> tuple[BrokenCoil, ...]:
 def names(finding: BrokenCoil, table: Table, column: str, row: dict[str, object]) -> bool:
     """Whether a finding tells where to look."""
     numbers = {coil_id(1): "b1-2026-0001", coil_id(2): "b2-2026-0001", coil_id(3): "b1-2026-0002"}
+    numbers[coil_id(5)] = "b3-2026-0001"
     match table.name:
         case "ledger":
             return finding.coil == "book" and "ledger of schemas" in finding.what

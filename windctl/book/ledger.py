@@ -19,7 +19,7 @@ import sqlalchemy as sa
 from windctl.book.schema_3 import add_spool_and_words
 from windctl.book.store import Store
 from windctl.book.tables import ledger, log_entries, logs, metadata
-from windctl.errors import BookError, BookOutdated
+from windctl.errors import BookError, BookOutdated, RecordBroken
 
 APPLICATION_ID = 0x77434231  # "wCB1"
 
@@ -55,7 +55,8 @@ def names(steps: Sequence[Step] = STEPS) -> list[tuple[int, str]]:
 def bring_up(store: Store, steps: Sequence[Step] = STEPS) -> list[Path]:
     """Make the tables of an empty file, or take an older book forward; the backups that were written.
 
-    Raises BookError for a file that is no coil book or is newer than this program.
+    Raises BookError for a file that is no coil book or is newer than this program, RecordBroken for one that
+    tells of schemas that never followed each other.
     """
     version = _version(store)
     newest = steps[-1].version
@@ -93,10 +94,15 @@ def _version_inside(path: Path, connection: sa.Connection) -> int:
             f"{path} is not a coil book, but some other database: choose another file with --book; "
             "nothing was changed in it"
         )
-    version = connection.scalar(sa.select(sa.func.max(ledger.c.version)))
-    if not isinstance(version, int) or version < 1:
+    versions = list(connection.scalars(sa.select(ledger.c.version).order_by(ledger.c.version)))
+    if not versions:
         raise BookError(f"the coil book {path} does not say which schema it has: go back to a backup of it")
-    return version
+    if versions != list(range(1, len(versions) + 1)):
+        raise RecordBroken(
+            f"the coil book {path}: the ledger of schemas was altered, it lists {versions!r}: "
+            "go back to a backup of it; nothing was changed in it"
+        )
+    return len(versions)
 
 
 def _create(store: Store, steps: Sequence[Step]) -> None:
