@@ -6,8 +6,8 @@ by hand agrees.
 
 Two published sets of rules, both from memory: those of the Western Electric Company's Statistical Quality
 Control Handbook (1956), which in a steady process speak once in 92 coils on average (Champ and Woodall,
-Technometrics 29, 1987), and those of Nelson (Journal of Quality Technology 16, 1984), of which the tests of
-ISO 7870-2 were taken.
+Technometrics 29, 1987), and those of Nelson (Journal of Quality Technology 16, 1984), which ISO 8258, the
+forerunner of ISO 7870-2, has too.
 """
 
 from __future__ import annotations
