@@ -33,7 +33,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import isfinite, sqrt
-from typing import TypeAlias, cast
+from typing import TypeAlias
 
 from windctl.forecast.reading import Reading
 from windctl.material.copper import ALPHA_20C
@@ -189,17 +189,28 @@ def look(belief: Belief, reading: Reading, contact_ohm: float, share: float = 1.
     warm = 1.0 + ALPHA_20C * (reading.celsius - 20.0 + off)
     d0 = warm / (1.0 + ALPHA_20C * off)
     cooled = 1.0 - reading.warmth * share
-    row0, row3 = belief.cov[SHOWN], belief.cov[LEADS]  # symmetric, so rows will do for columns
-    if cooled == 0.0:
-        spread = [d0 * p + q for p, q in zip(row0, row3, strict=True)]
-        variance = d0 * spread[SHOWN] + spread[LEADS]
-    else:
+    a0, a1, a2, a3, a4, a5, a6 = belief.cov[SHOWN]  # symmetric, so rows will do for columns
+    b0, b1, b2, b3, b4, b5, b6 = belief.cov[LEADS]
+    if cooled != 0.0:
         d0 -= ALPHA_20C * cooled * over / (1.0 + ALPHA_20C * off)
         seen = reading.ohm if isfinite(reading.ohm) else shown
         d6 = -ALPHA_20C * cooled * seen  # the secant, not the tangent
-        spread = [d0 * p + q + d6 * w for p, q, w in zip(row0, row3, belief.cov[OVER_AIR], strict=True)]
-        variance = d0 * spread[SHOWN] + spread[LEADS] + d6 * spread[OVER_AIR]
-    return Look(d0 * shown + leads + contact_ohm, max(variance, 0.0), cast(Vector, tuple(spread)))
+        c0, c1, c2, c3, c4, c5, c6 = belief.cov[OVER_AIR]
+        b0, b1, b2, b3, b4, b5 = (
+            b0 + d6 * c0,
+            b1 + d6 * c1,
+            b2 + d6 * c2,
+            b3 + d6 * c3,
+            b4 + d6 * c4,
+            b5 + d6 * c5,
+        )
+        b6 += d6 * c6
+    s0, s3, s6 = d0 * a0 + b0, d0 * a3 + b3, d0 * a6 + b6
+    variance = d0 * s0 + s3
+    if cooled != 0.0:
+        variance += d6 * s6
+    spread = (s0, d0 * a1 + b1, d0 * a2 + b2, s3, d0 * a4 + b4, d0 * a5 + b5, s6)
+    return Look(d0 * shown + leads + contact_ohm, max(variance, 0.0), spread)
 
 
 def told(belief: Belief, seen: Look, ohm: float, noise_variance: float) -> Belief:
