@@ -126,15 +126,36 @@ def test_each_coil_teaches_the_next_and_withdrawing_it_restores_the_prior(
     assert asked(capsys, "plan", recipe, "--spool", "s1", "--book", book) == plans[2]
     assert "withdrawn already" in refused(capsys, *withdraw)
     shown = asked(capsys, "spool", "show", "s1", "--book", book)
-    assert (
-        shown["withdrawn"] == [{"coil": "v1-2026-0003", "reason": "the core was warped"}]
-        or shown["withdrawn"]
-    )
+    (gone,) = shown["withdrawn"]
+    assert gone["reason"] == "the core was warped"
+    assert gone["coil"].startswith("v1-") and gone["coil"].endswith("-0003")
     assert (shown["coils"], shown["taught_by"]) == (3, 2)  # its wire is gone all the same
     assert run([*withdraw, "--undo"]) == 0
     assert asked(capsys, "plan", recipe, "--spool", "s1", "--book", book) == last
     assert "is not withdrawn" in refused(capsys, *withdraw, "--undo")
     assert run(["coils", "verify", "--book", book]) == 0
+
+
+def test_a_spool_says_for_how_many_coils_it_is_enough(book: str, recipe: str, capsys: Printed) -> None:
+    """From what its last coil took; a spool that nothing was wound from, from the last coil of such wire."""
+    assert run([*NEW, "--net", "25", "--book", book]) == 0
+    planned = asked(capsys, "plan", recipe, "--spool", "s1", "--book", book)["wire_length_m"]
+    assert asked(capsys, "spool", "show", "s1", "--book", book)["coils_left"] is None
+    wind(capsys, recipe, book, "--spool", "s1")
+    assert run([*NEW, "--net", "25", "--book", book]) == 0
+    assert (
+        run(["spool", "add", "--gauge", "AWG 43", "--enamel", "grade 1", "--net", "25", "--book", book]) == 0
+    )
+    for name in ("s1", "s2"):
+        seen = asked(capsys, "spool", "show", name, "--book", book)
+        assert seen["metres_each"] == pytest.approx(planned, rel=0.01)
+        least = seen["left_m"] - 1.645 * (850.0 * 0.04)  # 4 % is how little the table knows of the wire
+        assert seen["coils_left"] == pytest.approx(least / planned, abs=1.5)
+        assert seen["coil_each"].endswith("-0001")
+    assert asked(capsys, "spool", "show", "s3", "--book", book)["coils_left"] is None  # no coil of AWG 43
+    capsys.readouterr()
+    assert run(["plan", recipe, "--spool", "s2", "--book", book]) == 0
+    assert "such coils" in capsys.readouterr().out
 
 
 def test_without_a_spool_a_simulated_coil_comes_out_the_same_again(

@@ -99,6 +99,8 @@ def show_plan(made: Plan, recipe: Recipe) -> None:
 
 def _learnt(made: Plan) -> list[tuple[str, str]]:
     """What the plan rests on besides recipe and tables."""
+    from windctl.plan.experience.reel import coils_left
+
     learnt = made.learnt
     rows = []
     if learnt.spool:
@@ -108,7 +110,8 @@ def _learnt(made: Plan) -> list[tuple[str, str]]:
         )
         if learnt.left is not None:
             left = present.with_uncertainty(max(learnt.left.metres, 0.0), _Z95 * learnt.left.sd, "m")
-            rows.append(("left on it", f"{left}, before this coil"))
+            such = present.counted(coils_left(learnt.left, made.wire_length_m), "such coil")
+            rows.append(("left on it", f"{left}, enough for {such}"))
     if learnt.lay_coils:
         packing = f"{made.packing:.3f} ± {_Z95 * made.packing_sd:.3f}"
         rows.append(

@@ -42,7 +42,8 @@ def enough(state: SpoolState) -> str:
     """For how many coils; empty where that is not known."""
     if state.coils_left is None or state.metres_each is None:
         return ""
-    return f"{counted(state.coils_left, 'coil')} of {grouped(state.metres_each)} m, as wound from it last"
+    coils, each = counted(state.coils_left, "coil"), grouped(state.metres_each)
+    return f"{coils} of {each} m, what coil {state.coil_each} took"
 
 
 def told(state: SpoolState) -> tuple[str, ...]:

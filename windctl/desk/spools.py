@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Collection
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 from math import exp
 from typing import TYPE_CHECKING, Any
@@ -37,11 +37,12 @@ class SpoolState:
     pieces: int
     left_m: float | None
     left_sd_m: float | None
-    metres_each: float | None  # of the coil wound last
+    metres_each: float | None  # of the coil wound from it last, else of the last one of such wire
     coils_left: int | None
     unfit: tuple[Unfit, ...]
     withdrawn: tuple[tuple[str, str], ...]  # coil, reason
     facts: tuple[dict[str, Any], ...]
+    coil_each: str = ""  # whose metres those are
 
     def as_json(self) -> dict[str, Any]:
         """The spool as other programs read it, format 1."""
@@ -60,6 +61,8 @@ class SpoolState:
             "left_m": self.left_m,
             "left_sd_m": self.left_sd_m,
             "coils_left": self.coils_left,
+            "metres_each": self.metres_each,
+            "coil_each": self.coil_each or None,
             "unfit": [{"coil": one.coil, "off": exp(one.off) - 1.0} for one in self.unfit],
             "withdrawn": [{"coil": coil, "reason": reason} for coil, reason in self.withdrawn],
             "facts": list(self.facts),
@@ -105,7 +108,7 @@ def state_of(book: Book, spool: str) -> SpoolState:
     return _state(record, lessons, learnt)
 
 
-def _state(record: SpoolRecord, lessons: Collection[CoilLesson], learnt: Experience) -> SpoolState:
+def _state(record: SpoolRecord, lessons: Sequence[CoilLesson], learnt: Experience) -> SpoolState:
     from windctl.book.shelf import left_in
     from windctl.plan.experience.reel import coils_left
     from windctl.record.addenda import plain
@@ -116,7 +119,8 @@ def _state(record: SpoolRecord, lessons: Collection[CoilLesson], learnt: Experie
     ohm_per_m = wire.ohm_per_m if level is None else wire.ohm_per_m * exp(level.mean)
     sd = wire.ohm_per_m_sd if level is None else ohm_per_m * level.sd
     left = left_in(record, lessons, learnt)
-    each = own[-1].lesson.metres if own else None
+    like = own or [one for one in lessons if one.lesson.basis.wire.partition(",")[0] == spool.size]
+    each = like[-1].lesson.metres if like else None
     return SpoolState(
         id=spool.id,
         wire=wire.label,
@@ -136,4 +140,5 @@ def _state(record: SpoolRecord, lessons: Collection[CoilLesson], learnt: Experie
         unfit=tuple(one for one in learnt.unfit if one.spool == spool.id),
         withdrawn=tuple((one.lesson.coil, one.withdrawn) for one in own if one.withdrawn is not None),
         facts=tuple({"kind": fact.kind, **plain(fact)} for fact in record.facts),
+        coil_each=like[-1].lesson.coil if like else "",
     )
