@@ -19,7 +19,7 @@ BENCH = MachineProfile.model_validate(
 
 
 def test_an_older_fact_was_taken_with_the_meter_of_its_coil() -> None:
-    """As it was stored before stages and meters were kept: the ten fields of then, in their canonical form."""
+    """As it was stored before stages and meters were kept: the fields of then, in canonical form."""
     stored = (
         b'{"build_mm":null,"build_sd_mm":null,"by":"Demo Winder","celsius":22.0,"dcr_20c_ohm":7900.0,'
         b'"dcr_rel":0.001,"grams":null,"grams_sd":null,"ohm":7963.6,"wall_time":"2026-03-01T09:30:00+01:00"}'

@@ -119,6 +119,9 @@ def _tell(lot: Lot, gathered: Gathered) -> None:
         f"{name_of(lot.quantity)} of {present.counted(len(lot.coils), 'coil')}, {lot.coils[0].number} to "
         f"{lot.coils[-1].number}: {gathered.recipe}"
     )
+    drawn = sum(place >= 0 for place in _places(len(lot.coils))[1])
+    if drawn < len(lot.coils):
+        present.result(f"the last {drawn} of them drawn; a wider terminal or --svg shows more")
     for line in _individuals(lot):
         present.result(line)
     present.result()

@@ -131,7 +131,8 @@ def _value(value: object) -> str:
 def _tell_curves(coils: list[Compared], drawn: Curves) -> None:
     for coil in coils:
         if len(coil.curve) < 2:
-            present.result(f"{coil.number} has no curve: its resistance was not read while it was wound")
+            why = "it is still open" if coil.still_open else "its resistance was not read while it was wound"
+            present.result(f"{coil.number} has no curve: {why}")
     if not drawn.turns:
         present.result("no two curves to compare")
         return

@@ -12,6 +12,7 @@ from windctl.cli.coil_addenda import by_option, signed
 from windctl.cli.options import Shared, takes
 from windctl.desk.books import book_to_read, book_to_write
 from windctl.desk.machines import profile_of
+from windctl.errors import BookError
 
 if TYPE_CHECKING:
     from windctl.desk.measuring import Judged
@@ -22,6 +23,7 @@ F = TypeVar("F", bound=Callable[..., Any])
 
 _STAGES = ("on-machine", "leads-on", "potted", "assembled", "returned")
 _ABOVE_0: dict[str, Any] = {"min": 0, "min_open": True}
+_UNLIKELY = 0.05
 _WARM_MINUTES = 15.0  # a coil that was finished less long ago may still be warm
 _STATED = {"same": "it still reads the same", "changed": "it has changed", "cannot be told": "cannot be told"}
 
@@ -167,6 +169,8 @@ def budget(shared: Shared, coil: str, change_pct: float) -> None:
 
     with book_to_read(shared) as book:
         head = book.find(coil)
+        if not head.sealed:
+            raise BookError(f"coil {head.number} is still open: this is for coils that are finished with")
         lived = life(book.events(head.number), book.addenda(head.number), change_pct)
     if not shared.json:
         _tell_life(head.number, lived)
@@ -237,3 +241,9 @@ def _tell_value(name: str, value: ColdValue) -> None:
     present.table(
         ["source", "standard deviation", "of the resistance", "of the variance"], rows, right=" rrr"
     )
+    if value.chance is not None:
+        agree = "agree" if value.chance >= _UNLIKELY else "scatter more than they should"
+        present.result(
+            f"the readings {agree}: chi-square {value.residual_square:.2g} at {value.freedom}, "
+            f"which {100.0 * value.chance:.2g} % of such sets exceed"
+        )

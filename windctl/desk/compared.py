@@ -49,4 +49,5 @@ def gather(book: Book, head: CoilHead) -> Compared:
         head.program_digest,
         tuple((point.turn, point.ohm_20c) for point in book.curve(head.number)),
         settings,
+        still_open=not head.sealed,
     )

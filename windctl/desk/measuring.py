@@ -175,7 +175,11 @@ def cold_json(value: ColdValue) -> dict[str, Any]:
         "dcr_20c_ohm": value.ohm,
         "dcr_sd_ohm": value.sd,
         "dcr_u95_ohm": value.u95,
-        "scatter": {"square": value.residual_square, "freedom": value.freedom},
+        "scatter": {
+            "square": value.residual_square,
+            "freedom": value.freedom,
+            "chance": value.chance,
+        },
         "readings": [
             {"label": reading.label, "weight": weight}
             for reading, weight in zip(value.readings, value.weights, strict=True)

@@ -29,6 +29,7 @@ class Compared:
     program_digest: str
     curve: tuple[tuple[float, float], ...]
     settings: Mapping[str, Setting]
+    still_open: bool = False  # its curve is kept when it ends
 
 
 @dataclass(frozen=True, slots=True)

@@ -16,6 +16,7 @@ from math import sqrt
 from typing import Literal, TypeAlias
 
 from windctl.forecast.finish import Z95
+from windctl.shop.chi_square import beyond
 from windctl.shop.cold_reading import OF_ONE, ColdReading, Source
 from windctl.shop.uncertainty import Matrix, least_squares, propagated
 
@@ -90,6 +91,11 @@ class ColdValue:
     def u95(self) -> float:
         """Half-width of the 95 % interval, ohm."""
         return Z95 * self.sd
+
+    @property
+    def chance(self) -> float | None:
+        """How often readings of one resistance scatter as far as these or further; None for a single one."""
+        return beyond(self.residual_square, self.freedom) if self.freedom > 0 else None
 
 
 def covariance(readings: Sequence[ColdReading], about: float) -> Matrix:
