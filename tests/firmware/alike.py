@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, cast
+from typing import Any, Final, cast
 
 from tests.firmware.chip_bench import ChipBench
 from tests.run.winding import here, order
@@ -22,6 +22,8 @@ from windctl.protocol.messages import Message, decode
 from windctl.run.outcome import Outcome
 from windctl.run.runner import Ended
 from windctl.run.wind import begin
+
+BAUD: Final = 115_200
 
 
 class TellsLate:
@@ -67,13 +69,40 @@ class Made:
     ended: Ended
     outcome: Outcome
     heard: list[tuple[float, Message]]
+    frames_out: list[float]
     bench: Any
+
+
+class TimedWay(Way):
+    """Keeps when each frame's last byte is out, ms."""
+
+    __slots__ = ("_free_at", "_new", "frames_out")
+
+    def __init__(self, baud: int) -> None:
+        super().__init__(baud, 0, whole=True)
+        self.frames_out: list[float] = []
+        self._free_at = 0.0
+        self._new = b""
+
+    def put(self, data: bytes) -> None:
+        """Bytes to send."""
+        super().put(data)
+        self._new += data
+
+    def pull(self, tick: int) -> bytes:
+        """What arrives at this tick, in which the new bytes were put."""
+        for frame in self._new.split(b"\0")[:-1]:
+            self._free_at = max(self._free_at, tick) + 10 * (len(frame) + 1) / (BAUD / 1000)
+            self.frames_out.append(self._free_at)
+        self._new = b""
+        return super().pull(tick)
 
 
 def _line() -> SerialLine:
     """A byte is a chip's when its stop bit is over: a tick later than a simulated board's."""
     line = SerialLine()
-    line.to_board = Way(115_200, 1, whole=False)
+    line.to_board = Way(BAUD, 1, whole=False)
+    line.to_host = TimedWay(BAUD)
     return line
 
 
@@ -83,7 +112,7 @@ def on_virtual(text: str, book: Path, seed: int = 1) -> Made:
     bench = virtual_bench(recipe, VIRTUAL, seed)
     bench.plant = cast(Plant, TellsLate(bench.plant))
     bench.line = _line()
-    return _wind(text, book, bench)
+    return _wind(text, book, bench, bench.line.to_host.frames_out)
 
 
 def on_chip(
@@ -93,10 +122,10 @@ def on_chip(
     recipe, _ = order(text)
     bench = ChipBench(elf, Plant(plant_for(recipe, VIRTUAL), seed))
     see(bench)
-    return _wind(text, book, cast(Bench, bench))
+    return _wind(text, book, cast(Bench, bench), bench.frames_out)
 
 
-def _wind(text: str, book: Path, bench: Bench) -> Made:
+def _wind(text: str, book: Path, bench: Bench, frames_out: list[float]) -> Made:
     _, wanted = order(text)
     port = HeardPort(bench)
     with open_book(book) as opened:
@@ -105,4 +134,4 @@ def _wind(text: str, book: Path, bench: Bench) -> Made:
         ended = winding.wait(280.0)
         outcome = winding.close()
     assert ended is not None
-    return Made(ended, outcome, port.heard, bench)
+    return Made(ended, outcome, port.heard, frames_out, bench)

@@ -96,6 +96,7 @@ class Chip:
         self._firmware = firmware
         self._probe = core.DeviceDebugProbe(device)
         self._hooks: list[Any] = []
+        self._driven: dict[str, bool] = {}  # inputs and their levels
         self._pins = {
             name: device.find_pin(pin) for name, pin in (INPUT_PINS | OUTPUT_PINS | ANALOG_PINS).items()
         }
@@ -128,13 +129,21 @@ class Chip:
         return bool(self._device.state() == self._core.Device.State.Running)
 
     def brown_out(self) -> None:
-        """The supply dips: the chip is reset, its memory stays."""
+        """The supply dips: the chip is reset, its memory stays.
+
+        The emulator clears the registers that show the pins' levels as well, and writes them only when a
+        level changes: what is high would read as low, an open guard as closed. So each is changed once.
+        """
         self._device.reset(int(self._core.Device.ResetFlag.BOD))
+        for name, high in self._driven.items():
+            self._pins[name].set_external_state("L" if high else "H")
+            self.set(name, high)
 
     # ------------------------------------------------------------ pins and line
 
     def set(self, name: str, high: bool | int) -> None:
         """Drives an input."""
+        self._driven[name] = bool(high)
         self._pins[name].set_external_state("H" if high else "L")
 
     def set_volts(self, name: str, volts: float) -> None:
@@ -199,8 +208,15 @@ class Chip:
 
     def peek(self, name: str) -> int:
         """An unsigned variable of the program."""
-        address, size = self.symbol(name)
-        return int.from_bytes(bytes(self._probe.read_data(address, size)), "little")
+        return int.from_bytes(self.peek_bytes(name), "little")
+
+    def peek_bytes(self, name: str) -> bytes:
+        """Any variable of the program."""
+        return bytes(self._probe.read_data(*self.symbol(name)))
+
+    def poke(self, name: str, at: int, value: int) -> None:
+        """Writes a byte of a variable of the program."""
+        self._probe.write_data(self.symbol(name)[0] + at, bytes((value,)))
 
     def _paint(self) -> None:
         first, end = RAM

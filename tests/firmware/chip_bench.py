@@ -81,6 +81,8 @@ class ChipBench:
         self.begun_at = 0  # cycle
         self.last_step_at = 0  # cycle
         self.on_step: Callable[[int], None] = lambda cycle: None
+        self.frames_out: list[float] = []  # ms, as `ticks` count them: when each frame's last byte was out
+        self.on_guide_step: Callable[[int], None] = lambda step: None
         self._arrived = bytearray()
         self._coming = bytearray()
         self._came_at = 0
@@ -115,6 +117,7 @@ class ChipBench:
             assert self.chip.running
             self.chip.run(20)
         self._next = self._busy_since + CYCLES_PER_TICK - _SLACK
+        self._first_tick_at = self._busy_since - self.ticks * CYCLES_PER_TICK
 
     # ------------------------------------------------------------ Bench's face
 
@@ -178,7 +181,9 @@ class ChipBench:
 
     def _byte(self, byte: int) -> None:
         self._coming.append(byte)
-        self._came_at = self.chip.cycle
+        self._came_at = cycle = self.chip.cycle
+        if byte == 0:
+            self.frames_out.append(1.0 + (cycle - self._first_tick_at) / CYCLES_PER_TICK)
 
     def _busy(self, high: bool) -> None:
         cycle = self.chip.cycle
@@ -205,6 +210,7 @@ class ChipBench:
             step = -1 if self.chip.high("guide_way") else 1
             self.guide_steps += step
             self._guide_now += step
+            self.on_guide_step(step)
 
     def _rate(self) -> int:
         """Steps per second, as they come at present."""

@@ -171,11 +171,15 @@ def test_the_boot_number_outlives_a_brown_out_in_mid_coil(chip: Elf) -> None:
     host.go(100 * 400, 4000)
     host.pass_time(1500)
     assert bench.chip.high("drive_enable")
+    bench.plant.set_guard(closed=False)
+    host.pass_time(1)
     bench.brown_out()
     assert not bench.chip.high("drive_enable")
     assert not bench.chip.high("guide_enable")
     steps = bench.steps
     identity = host.greet()
     assert (identity.boot, identity.state, identity.trust) == (2, m.State.DRIVES_OFF, 0)
-    host.pass_time(1000)
+    host.pass_time(500)
     assert bench.steps == steps
+    assert host.status is not None
+    assert host.status.inputs & (m.InputBit.GUARD_OK | m.InputBit.STOP_OK) == m.InputBit.STOP_OK

@@ -9,12 +9,12 @@ from pathlib import Path
 import pytest
 
 from tests.firmware.alike import Made, on_chip, on_virtual
-from tests.run.winding import SHIPPED, with_stop
+from tests.run.winding import SHIPPED, with_key, with_stop
 from windctl.protocol.messages import Identity, Message, Reading, Status
 
 Elf = Callable[..., Path]
 
-APART_S = 0.002
+APART_MS = 2.0
 CONVERTER_UNITS = 64  # one step of ten bits, in units of sixteen
 
 
@@ -34,9 +34,11 @@ def check_alike(virtual: Made, chip: Made, turns: int) -> None:
     told = [[without_what_is_measured(message) for _, message in made.heard] for made in (virtual, chip)]
     assert told[0] == told[1]
     pairs = list(zip(virtual.heard, chip.heard, strict=True))
-    # board times are in the messages themselves, and equal; these are the host's, from the greeting on
-    greeted = next(at for at, (_, message) in enumerate(chip.heard) if isinstance(message, Identity))
-    assert max(abs(one - other) for (one, _), (other, _) in pairs[greeted:]) <= APART_S
+    # Board times are in the messages themselves, and equal. These are the line's: what an adapter hands over
+    # together, and so when a host hears of it, hangs on fractions of a millisecond.
+    apart = max(abs(a - b) for a, b in zip(virtual.frames_out, chip.frames_out, strict=True))
+    assert len(chip.frames_out) >= len(chip.heard)
+    assert apart <= APART_MS
     assert chip.bench.counts_shown == chip.bench.steps == turns * 400
     assert chip.bench.guide_steps == virtual.bench.plant.guide.motor
     for (_, one), (_, other) in pairs:
@@ -46,23 +48,23 @@ def check_alike(virtual: Made, chip: Made, turns: int) -> None:
             assert abs(one.tension - other.tension) <= CONVERTER_UNITS
     bench = chip.bench
     print(
-        f"{turns} turns, {bench.ticks / 1000:.1f} s, {len(chip.heard)} messages: load {bench.load:.1%}, "
-        f"worst tick {bench.worst_busy / 16000:.3f} ms, overruns {bench.chip.overruns}"
+        f"{turns} turns, {bench.ticks / 1000:.1f} s, {len(chip.heard)} messages, at most {apart:.2f} ms "
+        f"apart: load {bench.load:.1%}, worst tick {bench.worst_busy / 16000:.3f} ms"
     )
     assert bench.chip.overruns == bench.chip.peek("line_overruns") == 0
 
 
-def wind_both(chip: Elf, turns: int, folder: Path) -> None:
-    text = with_stop(SHIPPED, turns=turns, tolerance_pct=0.5)
+def wind_both(chip: Elf, recipe: str, turns: int, folder: Path) -> None:
+    text = with_stop(recipe, turns=turns, tolerance_pct=0.5)
     virtual = on_virtual(text, folder / "virtual.db")
     check_alike(virtual, on_chip(chip("full", "-DWINDCTL_EMULATED"), text, folder / "chip.db"), turns)
 
 
 def test_a_coil_is_the_same_on_the_chip(chip: Elf, tmp_path: Path) -> None:
-    wind_both(chip, 40, tmp_path)
+    wind_both(chip, with_key(with_key(SHIPPED, "start_turns", 4), "finish_turns", 6), 30, tmp_path)
 
 
 @pytest.mark.long
 @pytest.mark.timeout(1200)
 def test_a_thousand_turns_are_the_same_on_the_chip(chip: Elf, tmp_path: Path) -> None:
-    wind_both(chip, 1000, tmp_path)
+    wind_both(chip, SHIPPED, 1000, tmp_path)

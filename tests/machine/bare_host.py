@@ -127,13 +127,13 @@ class BareHost:
         assert self.status is not None
         return self.status.boot, self.status.epoch
 
-    def make_ready(self, setup: m.Setup = SETUP, *, count: int = 0, guide: int = 0) -> None:
-        """From drives off to ready, at a place of the program that begins there."""
+    def make_ready(self, setup: m.Setup = SETUP, *, count: int = 0, guide: int = 0, turns: int = 120) -> None:
+        """From drives off to ready, at a place of the program that begins there; `turns` of it are laid."""
         self.ask(setup)
         self.ask(m.SetDatum(*self.permission, PROGRAM, count, guide, 0, 0))
         self._laid, self._guide, self._way = 0, guide, 1
         if setup.fitted & m.Capability.GUIDE_STEP:
-            self.lay(120)
+            self.lay(turns)
         self.ask(m.Arm(*self.permission))
 
     def go(self, stop_count: int, pace: int = 6667) -> None:
