@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
-from windctl.protocol.messages import Capability, Identity, ReadingFlag
+from windctl.protocol.messages import Capability, ReadingFlag
 from windctl.protocol.messages import State as BoardState
 from windctl.record.events import (
     BoardGreeted,
@@ -17,6 +17,7 @@ from windctl.record.events import (
 )
 
 _PARTS = 300  # of the turns: narrower than a line is wide
+_GAP_TICKS = 1000  # ms: reports further apart than this belong to two starts
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,41 +50,38 @@ def course_of(started: CoilStarted, events: Iterable[Event], turns: float) -> Co
     """The course of a coil that has come to `turns` turns."""
     per_turn = max(started.setup.counts_per_turn, 1)
     per_speed = max(started.setup.steps_per_turn, 1)
-    speed, tension = _Parts(turns), _Parts(turns)
+    turned: list[tuple[int, int, int, int]] = []  # ticks, count, speed, temperature, while it turned
+    pulled: list[tuple[int, float]] = []  # count, cN
     rare: list[Event] = []
     typed: list[tuple[float, float, float]] = []
-    identity: Identity | None = None
-    simulated = False
-    seconds = readings = resting = 0
-    coldest, warmest = 32767, -32768
-    last = None
+    scale, simulated = 0.0, False
+    ticks_turned = readings = resting = 0
     for event in events:
         if isinstance(event, StatusHeard):
             status = event.status
             if status.state == BoardState.TURNING:
-                if last is not None and 0 < status.ticks - last < 1000:
-                    seconds += status.ticks - last
-                turn = status.count / per_turn
-                speed.add(turn, status.speed * 60.0 / per_speed)
-                if identity is not None and identity.tension_scale and status.tension:
-                    tension.add(turn, status.tension * identity.tension_scale / 10_000.0)
-                coldest, warmest = min(coldest, status.celsius), max(warmest, status.celsius)
-            last = status.ticks
+                if turned and 0 < status.ticks - turned[-1][0] < _GAP_TICKS:
+                    ticks_turned += status.ticks - turned[-1][0]
+                turned.append((status.ticks, status.count, status.speed, status.celsius))
+                if scale and status.tension:
+                    pulled.append((status.count, status.tension * scale))
         elif isinstance(event, ReadingTaken):
             readings += 1
             resting += not event.reading.flags & ReadingFlag.TURNING
         else:
             rare.append(event)
             if isinstance(event, BoardGreeted):
-                identity, last = event.identity, None
-                simulated = simulated or bool(identity.capabilities & Capability.VIRTUAL)
+                scale = event.identity.tension_scale / 10_000.0
+                simulated = simulated or bool(event.identity.capabilities & Capability.VIRTUAL)
             elif isinstance(event, ReadingTyped):
                 typed.append((event.turn, event.ohm, event.celsius))
+    celsius = [moment[3] / 100.0 for moment in turned]
+    speeds = [(count, speed * 60.0 / per_speed) for _, count, speed, _ in turned]
     return Course(
-        speed_rpm=speed.spans(),
-        tension_cn=tension.spans(),
-        seconds=seconds / 1000.0,
-        celsius=None if warmest < coldest else (coldest / 100.0, warmest / 100.0),
+        speed_rpm=_spans(speeds, per_turn, turns),
+        tension_cn=_spans(pulled, per_turn, turns),
+        seconds=ticks_turned / 1000.0,
+        celsius=(min(celsius), max(celsius)) if celsius else None,
         readings=readings,
         resting_readings=resting,
         rare=tuple(rare),
@@ -92,25 +90,14 @@ def course_of(started: CoilStarted, events: Iterable[Event], turns: float) -> Co
     )
 
 
-class _Parts:
-    """Lowest, mean and highest of a quantity in equal parts of the turns."""
-
-    def __init__(self, turns: float) -> None:
-        self._wide = max(turns, 1.0) / _PARTS
-        self._parts: dict[int, list[float]] = {}
-
-    def add(self, turn: float, value: float) -> None:
-        part = self._parts.get(at := int(turn / self._wide))
-        if part is None:
-            self._parts[at] = [value, value, value, 1.0]
-        else:
-            part[0] = min(part[0], value)
-            part[1] += value
-            part[2] = max(part[2], value)
-            part[3] += 1.0
-
-    def spans(self) -> tuple[Span, ...]:
-        return tuple(
-            Span((at + 0.5) * self._wide, low, total / n, high)
-            for at, (low, total, high, n) in sorted(self._parts.items())
-        )
+def _spans(values: Sequence[tuple[int, float]], per_turn: int, turns: float) -> tuple[Span, ...]:
+    """Lowest, mean and highest of (count, value) in equal parts of the turns."""
+    wide = max(turns, 1.0) / _PARTS
+    parts: dict[int, list[float]] = {}
+    counts = wide * per_turn
+    for count, value in values:
+        parts.setdefault(int(count / counts), []).append(value)
+    return tuple(
+        Span((at + 0.5) * wide, min(some), sum(some) / len(some), max(some))
+        for at, some in sorted(parts.items())
+    )
