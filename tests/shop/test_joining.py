@@ -146,12 +146,15 @@ def test_the_text_drawing_has_both_ways_both_poles_and_the_joint() -> None:
 
 
 def test_the_svg_drawing_is_one_whole_image_that_asks_for_nothing() -> None:
-    text = as_svg(join(Handed("a <1>", "cw", "north"), Handed("b & 2", "cw", "south")))
+    first = join(Handed("a <1>", "cw", "north"), Handed("b & 2", "cw", "south"))
+    second = join(Handed("c", "cw", "north"), Handed("d", "ccw", "south"))
+    text = as_svg([first, second])
     root = ET.fromstring(text)
     assert root.tag.endswith("svg")
-    said = ["".join(each.itertext()) for each in root if each.tag.endswith("text")]
-    assert "a <1>, clockwise" in said
-    assert said.count("finish") == said.count("start") == 2
+    assert root.get("viewBox") == "0 0 640 440"
+    said = ["".join(each.itertext()) for each in root.iter() if each.tag.endswith("text")]
+    assert {"a <1>, clockwise", "d, counter-clockwise"} <= set(said)
+    assert said.count("finish") == said.count("start") == 4
     assert "href" not in text
     fills = {each.get("fill") for each in root.iter() if each.get("fill")}
     assert fills <= {"black", "white", "none"}  # reads in black and white

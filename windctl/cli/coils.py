@@ -15,6 +15,8 @@ from windctl.cli import (
     coil_measure,
     coil_proof,
     label,
+    pair,
+    pair_told,
     present,
     report,
 )
@@ -134,11 +136,18 @@ def _resistance(head: CoilHead) -> str:
 @takes("book", "json")
 def show(shared: Shared, coil: str) -> None:
     """Everything known of COIL: by its number, the number's last digits, or the beginning of its id."""
+    from windctl.desk.stock import picks_up_of
+    from windctl.record.addenda import paired
+
     with book_to_read(shared) as book:
         shown = book.show(coil)
         head = book.find(coil)
+        picks_up = picks_up_of(book, head.id)
+        partner = paired(book.addenda(head.id))
     if shared.json:
-        present.result_json(dict(shown))
+        hum = None if picks_up is None else picks_up.as_json()
+        goes_with = None if partner is None else partner.partner_number
+        present.result_json({**shown, "hum": hum, "goes_with": goes_with})
         return
     target = (
         present.turns(head.target_value)
@@ -158,6 +167,8 @@ def show(shared: Shared, coil: str) -> None:
         ("resistance", _resistance(head) and f"{_resistance(head)} at 20 °C"),
         ("target", target),
         ("verdict", head.verdict),
+        ("hum", "" if picks_up is None else pair_told.both_hums(picks_up)),
+        ("goes with", "" if partner is None else partner.partner_number),
         ("program", head.program_digest),
         ("record", head.record_digest),
     ]
@@ -184,6 +195,9 @@ def _show_addenda(addenda: Any) -> None:
         if fact["kind"] == "coil_taught":
             kinds = ", ".join(one["what"] for one in fact["lesson"]["measured"])
             present.result(f"taught: {kinds or 'nothing, but that it took wire'}")
+            continue
+        if (told := pair_told.fact_words(fact)) is not None:
+            present.result(told)
             continue
         said = [
             f"{name.replace('_', ' ')} {value:g}" if isinstance(value, float) else str(value)
@@ -225,5 +239,6 @@ for _command in (
     coil_measure.budget,
     coil_compare.compare,
     coil_addenda.withdraw,
+    pair.unpair,
 ):
     coils.add_command(_command)

@@ -21,6 +21,7 @@ COMMANDS = {
     "resume": "windctl.cli.wind:resume",
     "forecast": "windctl.cli.forecast:forecast",
     "estimate": "windctl.cli.estimate:estimate",
+    "pair": "windctl.cli.pair:pair",
     "coils": "windctl.cli.coils:coils",
     "chart": "windctl.cli.chart:chart",
     "spool": "windctl.cli.spool:spool",

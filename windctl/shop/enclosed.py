@@ -22,7 +22,7 @@ from numpy.typing import NDArray
 from windctl.coil.geometry import Core
 from windctl.coil.turns_area import Winding, bow_sd, slopes, third_moment, winding_of
 from windctl.plan.experience.fold import Experience, at_coil
-from windctl.plan.experience.gaussian import Name
+from windctl.plan.experience.gaussian import Gaussian, Name
 from windctl.plan.experience.lesson import Lesson
 from windctl.plan.experience.unknowns import OWN, WALK_PER_ROOT_KM, expected, roles, with_unknowns
 from windctl.shop.hum import Mismatch, mismatch_of
@@ -119,20 +119,30 @@ class _Told:
 
     def __init__(self, lessons: Sequence[Lesson], experience: Experience) -> None:
         self.lessons = lessons
-        belief = experience.belief
-        for lesson in lessons:
-            belief = with_unknowns(belief, lesson.basis, lesson.source, lesson.bench, lesson.meter_rel)
-        self.shared = belief.without(OWN)
-        self.index = {name: at for at, name in enumerate(self.shared.names)}
-        begun = replace(experience, belief=self.shared, places={}, wound={})
         wound: dict[str, float] = {}
-        self.km: list[float] = []
-        self.theres = []
-        for lesson in lessons:
+        sources = list(dict.fromkeys(lesson.source for lesson in lessons))
+        self.spool = np.array([sources.index(lesson.source) for lesson in lessons])
+        self.km = np.zeros(len(lessons))
+        self.theres: list[Gaussian] = []  # what each coil depends on, and nothing else: a dozen unknowns
+        self.index = {name: at for at, name in enumerate(experience.belief.names)}
+        fresh: list[float] = []  # variances of what nothing was learnt of
+        for at, lesson in enumerate(lessons):
             before = wound.get(lesson.source, 0.0)
             wound[lesson.source] = before + lesson.metres
-            self.km.append((before + lesson.metres / 2.0) / 1000.0)
-            self.theres.append(at_coil(replace(begun, wound={lesson.source: before}), lesson).belief)
+            self.km[at] = (before + lesson.metres / 2.0) / 1000.0
+            mine = unknowns_of(lesson)
+            learnt = experience.belief.without([name for name in experience.belief.names if name not in mine])
+            begun = with_unknowns(learnt, lesson.basis, lesson.source, lesson.bench, lesson.meter_rel)
+            for name in begun.names:
+                if name not in self.index and name not in OWN:
+                    self.index[name] = len(self.index)
+                    fresh.append(begun.sd(name) ** 2)
+            here = replace(experience, belief=learnt, places={}, wound={lesson.source: before})
+            self.theres.append(at_coil(here, lesson).belief)
+        known = len(experience.belief.names)
+        self.cov = np.diag([*[0.0] * known, *fresh])
+        if known:
+            self.cov[:known, :known] = experience.belief.cov
 
     def core_and_growth(self, picked: Sequence[int]) -> tuple[F64, F64]:
         """Means f64[2n] and covariance f64[2n, 2n] of core and growth (relative deviations from the basis) of
@@ -174,7 +184,7 @@ class _System:
     def add(self, coil: int, row: Mapping[Name, float], off: float, variance: float) -> None:
         """One sum about one coil. A level is that of the spool's beginning, sloped and walked to the coil."""
         told = self._told
-        source, km = told.lessons[coil].source, told.km[coil]
+        source, km = told.lessons[coil].source, float(told.km[coil])
         weights = np.zeros(len(told.index))
         for name, weight in row.items():
             if name not in OWN:
@@ -191,14 +201,11 @@ class _System:
     def against(self, other: _System) -> F64:
         """The covariance of these sums with the other's, before anything was measured."""
         told = self._told
-        cov = np.array(told.shared.cov)
-        total: F64 = np.array(self._shared) @ cov @ np.array(other._shared).T
-        for i, one in enumerate(self._coils):
-            for j, two in enumerate(other._coils):
-                if told.lessons[one].source == told.lessons[two].source:
-                    km = min(told.km[one], told.km[two])
-                    total[i, j] += self._walk[i] * other._walk[j] * WALK_PER_ROOT_KM**2 * km
-                if one == two:
-                    belief = told.theres[one]
-                    total[i, j] += belief.covariance(self._own[i], other._own[j])
+        total: F64 = np.array(self._shared) @ told.cov @ np.array(other._shared).T
+        shorter = np.minimum.outer(told.km[self._coils], told.km[other._coils])
+        same = np.equal.outer(told.spool[self._coils], told.spool[other._coils])
+        total += np.outer(self._walk, other._walk) * WALK_PER_ROOT_KM**2 * np.where(same, shorter, 0.0)
+        for i, j in np.argwhere(np.equal.outer(self._coils, other._coils)):
+            belief = told.theres[self._coils[i]]
+            total[i, j] += belief.covariance(self._own[i], other._own[j])
         return total

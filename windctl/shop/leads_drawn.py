@@ -6,11 +6,13 @@ and white and clashes with no maker's code.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from html import escape
 
 from windctl.shop.joining import Handed, Joined, Lead
 
 _WIDE = 34
+_HIGH = 220
 _WAYS = {"cw": "clockwise", "ccw": "counter-clockwise"}
 # seen from the strings: the way along the upper side, and along the lower
 _ARROWS = {"cw": (">", "<"), "ccw": ("<", ">")}
@@ -47,13 +49,22 @@ def _leads(left: Lead, right: Lead) -> str:
     return begin + "-" * (_WIDE - len(begin) - len(end)) + end
 
 
-def as_svg(joined: Joined) -> str:
-    """A drawing of its own, 640 by 220 units, black on white."""
+def as_svg(pairs: Sequence[Joined]) -> str:
+    """A drawing of its own, black on white: the pairs below each other, 640 by 220 units each."""
+    high = _HIGH * len(pairs)
     parts = [
-        '<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 640 220" font-family="sans-serif" '
+        f'<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 640 {high}" font-family="sans-serif" '
         'font-size="13" role="img">',
-        f"<title>{escape(joined.in_series)}</title>",
-        '<rect width="640" height="220" fill="white"/>',
+        f"<title>{escape('. '.join(joined.in_series for joined in pairs))}</title>",
+        f'<rect width="640" height="{high}" fill="white"/>',
+    ]
+    for at, joined in enumerate(pairs):
+        parts += [f'<g transform="translate(0 {_HIGH * at})">', *_pair(joined), "</g>"]
+    return "\n".join([*parts, "</svg>"]) + "\n"
+
+
+def _pair(joined: Joined) -> list[str]:
+    return [
         '<path d="M270 160 H370" stroke="black" stroke-width="3" fill="none"/>',
         *_drawn(joined.first, 30, "start", "finish"),
         *_drawn(joined.second, 350, joined.joint, joined.end),
@@ -61,10 +72,8 @@ def as_svg(joined: Joined) -> str:
         *_end(50, "end"),
         *_end(590, "end"),
         _label(320, 186, "both seen from the strings"),
-        _label(320, 214, joined.polarity),
-        "</svg>",
+        _label(320, 212, joined.polarity),
     ]
-    return "\n".join(parts) + "\n"
 
 
 def _drawn(coil: Handed, x: int, left: Lead, right: Lead) -> list[str]:
