@@ -178,21 +178,14 @@ def recipe_of(started: CoilStarted) -> Recipe | None:
 def picks_up_of(book: Book, coil: str) -> PicksUp | None:
     """What a recorded coil encloses and picks up, by its own record; None where that does not say enough."""
     from windctl.coil.geometry import core_of
-    from windctl.record.addenda import CoilTaught
     from windctl.record.events import CoilStarted
-    from windctl.shop.picks_up import picks_up
+    from windctl.shop.picks_up import recorded
 
-    said = book.addenda(coil)
-    taught = [fact.lesson for fact in said if isinstance(fact, CoilTaught)]
     started = next(book.events(coil), None)
-    if not taught or not isinstance(started, CoilStarted) or taught[-1].turns <= 0:
+    recipe = recipe_of(started) if isinstance(started, CoilStarted) else None
+    if recipe is None or not isinstance(started, CoilStarted):
         return None
-    recipe = recipe_of(started)
-    if recipe is None:
-        return None
-    by_hand = tuple(one for fact in said if isinstance(fact, CoilMeasured) for one in fact.measured)
-    lesson = replace(taught[-1], measured=(*taught[-1].measured, *by_hand))
-    return picks_up(core_of(recipe.bobbin), lesson, started.prior)
+    return recorded(core_of(recipe.bobbin), book.addenda(coil), started.prior)
 
 
 def matched(book: Book, stock: Stock, wish: Wish) -> Matched:

@@ -6,10 +6,10 @@ from collections.abc import Sequence
 
 from windctl.numbers import grouped, ohm, with_uncertainty
 from windctl.paper.html import Column, Markup, section, table, tag
-from windctl.paper.hum import Hum
 from windctl.record.addenda import Addendum, CoilMeasured
-from windctl.shop.hum import MAINS_HZ, hum_volt
+from windctl.shop.hum import MAINS_HZ
 from windctl.shop.life import Life
+from windctl.shop.picks_up import PicksUp
 from windctl.shop.still_reads import ColdValue, Still
 
 _Z95 = 1.959964
@@ -21,7 +21,7 @@ _BUDGET = (
 )
 
 
-def measured_section(life: Life | None, addenda: Sequence[Addendum], hum: Hum | None) -> Markup:
+def measured_section(life: Life | None, addenda: Sequence[Addendum], hum: PicksUp | None) -> Markup:
     """Readings, their budgets, what else was measured, and the hum that follows."""
     parts = []
     if life is not None and (len(life.readings) > 1 or (life.readings and life.made is None)):
@@ -117,11 +117,11 @@ def _told(value: float | None, sd: float | None, unit: str) -> str:
     return "" if value is None else with_uncertainty(value, _Z95 * (sd or 0.0), unit)
 
 
-def _hum(hum: Hum) -> Markup:
+def _hum(hum: PicksUp) -> Markup:
     columns = [Column("mains"), Column("hum per microtesla", True)]
     rows = []
     for hz in MAINS_HZ:
-        volt = 1e6 * hum_volt(hum.turns_area_m2, hz)
+        volt = 1e6 * hum.volt(hz)
         rows.append((f"{hz:g} Hz", with_uncertainty(volt, _Z95 * hum.rel * volt, "µV")))
     area = with_uncertainty(hum.turns_area_m2, _Z95 * hum.rel * hum.turns_area_m2, "m²")
     caption = f"Hum, from turns times mean area of {area}: uniform field along the axis, without steel"

@@ -21,7 +21,6 @@ from windctl.paper.html import (
     tag,
     verdict_words,
 )
-from windctl.paper.hum import hum_of
 from windctl.paper.layers import Growth, growth_of
 from windctl.paper.look import report_css
 from windctl.paper.measured import measured_section
@@ -32,6 +31,7 @@ from windctl.record import events as facts
 from windctl.record.addenda import Addendum
 from windctl.record.curve import CurvePoint
 from windctl.record.events import CoilStarted
+from windctl.shop.picks_up import recorded
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
@@ -96,7 +96,9 @@ def coil_report(coil: CoilFacts) -> str:
             "main",
             _resistance(coil),
             measured_section(
-                coil.life, coil.addenda, hum_of(None if growth is None else growth.core, coil.addenda)
+                coil.life,
+                coil.addenda,
+                recorded(None if growth is None else growth.core, coil.addenda, coil.started.prior),
             ),
             _pace(coil),
             _section(bobbin, growth),

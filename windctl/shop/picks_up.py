@@ -7,6 +7,7 @@ had taught by then, and what was measured of it: the same whenever it is asked, 
 from __future__ import annotations
 
 import math
+from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from math import sqrt
 
@@ -15,6 +16,7 @@ from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.fold import Experience
 from windctl.plan.experience.lesson import Lesson
 from windctl.plan.prior import Prior
+from windctl.record.addenda import Addendum, CoilMeasured, CoilTaught
 from windctl.shop.enclosed import Enclosed, Known, enclosed
 from windctl.shop.hum import MAINS_HZ, hum_volt
 
@@ -40,6 +42,17 @@ class PicksUp:
 def one_of(told: Enclosed, at: int) -> PicksUp:
     """One of several coils that were told together."""
     return PicksUp(told.turns_area_m2(at), told.rel(at))
+
+
+def recorded(core: Core | None, addenda: Iterable[Addendum], prior: Prior) -> PicksUp | None:
+    """Of a finished coil, begun with this prior, from what was said since; None where its record has taught
+    nothing, or has no core that can be read."""
+    said = tuple(addenda)
+    lessons = [fact.lesson for fact in said if isinstance(fact, CoilTaught)]
+    if core is None or not lessons or not lessons[-1].turns > 0:
+        return None
+    by_hand = tuple(one for fact in said if isinstance(fact, CoilMeasured) for one in fact.measured)
+    return picks_up(core, replace(lessons[-1], measured=(*lessons[-1].measured, *by_hand)), prior)
 
 
 def picks_up(core: Core, lesson: Lesson, prior: Prior) -> PicksUp:
