@@ -1,46 +1,74 @@
-"""What a commit to the coil book costs, and how much room a coil takes."""
+"""What a commit to the coil book costs, how much room a coil takes, how long it takes to find one of many."""
 
 from __future__ import annotations
 
+import sqlite3
 import statistics
 import tempfile
 import time
+from collections.abc import Callable
+from contextlib import closing
 from pathlib import Path
 
+from tests.book.many import DENSE_TURNS, fill
 from tests.book.samples import finished, packed, seal, started, wound
+from windctl.book.book import Book
 from windctl.book.open import open_book
 
-TURNS = 720  # six minutes at two a second: 7 200 board reports, 1 440 readings
 COILS = 3
+MANY, DENSE = 50_000, 200
+PAGE = 100  # coils on a screen
+LIMIT_MS = 60.0
+
+# What a list, a search and a filter ask for; the slowest of each kind are among them.
+QUERIES = (
+    "",
+    "recipe:neck",
+    "batch:lot*7 verdict:outside",
+    "spool:s1100",
+    "since:2025-01 until:2025-06 verdict:within",
+    "turns:7000..7100 ohm:3.64k",
+    "coil:north-2024-0147",
+    "b1-2023-00",
+    "rewound",
+    '"wax again wax"',
+    "nothing of the kind",
+    "note:breakage not note:hum bench:b2",
+    "sort:-ohm",
+    "sort:recipe,coil not recipe:neck",
+    "rewound sort:turns",
+    "id:3f0",
+)
 
 
 def run() -> None:
-    """Wind a few coils into a new book, a commit per stored row, and print what it took."""
+    """Wind a few coils into a new book, a commit per stored row; then find coils among many."""
     with tempfile.TemporaryDirectory() as folder:
-        path = Path(folder) / "shop.book"
-        with open_book(path) as book:
-            sizes = [path.stat().st_size]
-            commits: list[float] = []
-            seals: list[float] = []
-            n_rows = n_bytes = 0
-            for n in range(COILS):
-                with book.begin_coil("b1", 2026, started(n)) as writer:
-                    rows = packed([*wound(writer.started, TURNS), finished(TURNS)])
-                    n_rows, n_bytes = len(rows), sum(len(row.payload) for row in rows)
-                    for row in rows:
-                        begun = time.perf_counter()
-                        writer.commit([row])
-                        commits.append(time.perf_counter() - begun)
+        _few(Path(folder) / "shop.book")
+        _many(Path(folder) / "many.book")
+
+
+def _few(path: Path) -> None:
+    with open_book(path) as book:
+        sizes = [path.stat().st_size]
+        commits: list[float] = []
+        seals: list[float] = []
+        n_rows = n_bytes = 0
+        for n in range(COILS):
+            with book.begin_coil("b1", 2026, started(n)) as writer:
+                rows = packed([*wound(writer.started, DENSE_TURNS), finished(DENSE_TURNS)])
+                n_rows, n_bytes = len(rows), sum(len(row.payload) for row in rows)
+                for row in rows:
                     begun = time.perf_counter()
-                    seal(book, writer)
-                    seals.append(time.perf_counter() - begun)
-                sizes.append(path.stat().st_size)
-            begun = time.perf_counter()
-            report = book.verify()
-            verified = time.perf_counter() - begun
-            begun = time.perf_counter()
-            book.list(limit=40)
-            listed = time.perf_counter() - begun
+                    writer.commit([row])
+                    commits.append(time.perf_counter() - begun)
+                begun = time.perf_counter()
+                seal(book, writer)
+                seals.append(time.perf_counter() - begun)
+            sizes.append(path.stat().st_size)
+        begun = time.perf_counter()
+        report = book.verify()
+        verified = time.perf_counter() - begun
     assert report.good
     commits.sort()
     print(
@@ -54,7 +82,49 @@ def run() -> None:
     )
     print(f"room of no coil     {sizes[0]} bytes")
     print(f"verify              {1000 * verified / COILS:.0f} ms a coil")
-    print(f"list                {1000 * listed:.1f} ms a page")
+
+
+def _many(path: Path) -> None:
+    begun = time.perf_counter()
+    fill(path, MANY, DENSE)
+    made = time.perf_counter() - begun
+    size = path.stat().st_size
+    print(f"{MANY} coils        {DENSE} of them with dense series; made in {made:.0f} s")
+    with closing(sqlite3.connect(path)) as connection:
+        (dense,) = connection.execute(
+            "SELECT sum(length(payload)) FROM entries WHERE coil IN "
+            "(SELECT id FROM coils ORDER BY started DESC LIMIT ?)",
+            [DENSE],
+        ).fetchone()
+        kept = connection.execute("SELECT name, sum(pgsize) FROM dbstat GROUP BY name ORDER BY 2 DESC")
+        parts = ", ".join(f"{name} {room / MANY:.0f}" for name, room in kept.fetchmany(6))
+    print(f"room of the book    {size / 1e6:.0f} MB: {size / MANY:.0f} bytes a coil ({parts})")
+    print(f"                    {dense // DENSE} bytes in the record of one with dense series")
+    with open_book(path, readonly=True) as book:
+        slowest = max(_timed(book, query) for query in QUERIES)
+        for name in ("b1-2023-0147", book.list(limit=1)[0].id[:8]):
+            _said(f"find {name}", lambda name=name: book.find(name), 1)  # type: ignore[misc]  # bound here
+    print(f"slowest query       {slowest:.1f} ms, at most {LIMIT_MS:.0f} wanted")
+
+
+def _timed(book: Book, query: str) -> float:
+    """Print what a page of the list and its count take; the slower one, ms."""
+    found = book.count(query)
+    page = _said(f"list {query}", lambda: book.list(query, limit=PAGE), min(found, PAGE))
+    return max(page, _said(f"count {query}", lambda: book.count(query), found))
+
+
+def _said(what: str, ask: Callable[[], object], found: int) -> float:
+    """Ask a few times; the median, ms. The processor's own time stands beside it: others may use it too."""
+    took, used = [], []
+    for _ in range(7):
+        begun, busy = time.perf_counter(), time.process_time()
+        ask()
+        took.append(1000 * (time.perf_counter() - begun))
+        used.append(1000 * (time.process_time() - busy))
+    median, busy = statistics.median(took), statistics.median(used)
+    print(f"  {what:62} {median:6.1f} ms (processor {busy:5.1f}) {found:6} found")
+    return statistics.median(took)
 
 
 if __name__ == "__main__":

@@ -64,8 +64,10 @@ def _holds(field: str, wanted: Wanted) -> sa.ColumnElement[bool]:
     match wanted:
         case Part(text):
             return _within(field, text)
+        case Name((whole,)) if field == "coil":
+            return coils.c.number == whole.lower()  # numbers have no capitals: the key finds it
         case Name(parts):
-            return _COLUMNS[field].ilike("%".join(_literal(part) for part in parts), escape="/")
+            return _like(field, "%".join(_literal(part) for part in parts))
         case Span(low, high, included):
             return _between(field, low, high, included)
         case Period(low, high):
@@ -87,7 +89,12 @@ def _within(field: str, text: str) -> sa.ColumnElement[bool]:
             return sa.and_(coils.c.id >= begin, coils.c.id < f"{begin}~")
         case f if f == FREE:
             return first > 0
-    return _COLUMNS[field].ilike(f"%{_literal(text)}%", escape="/")
+    return _like(field, f"%{_literal(text)}%")
+
+
+def _like(field: str, pattern: str) -> sa.ColumnElement[bool]:
+    """SQLite's LIKE makes no difference of a to A; PostgreSQL has ILIKE for that, which is slower here."""
+    return _COLUMNS[field].like(pattern, escape="/")
 
 
 def _between(

@@ -1,0 +1,160 @@
+"""A book with very many coils, made quickly and for real: every record is chained and sealed and verifies.
+
+Of a made-up shop with three benches, wound over years: lots of 24, spools of 40 coils, notes at a third. Most
+coils have their rare facts only; `dense` of them have the series of a run of six minutes as well.
+"""
+
+from __future__ import annotations
+
+import random
+import sqlite3
+from collections.abc import Iterator
+from contextlib import closing
+from dataclasses import dataclass, replace
+from datetime import datetime, timedelta, timezone
+from pathlib import Path
+from typing import Any
+
+from tests.book.samples import coil_id, finished, packed, started, wound
+from windctl.book.heads import (
+    SEAL,
+    CoilHead,
+    closed,
+    coil_number,
+    curve_rows,
+    head_columns,
+    opened,
+    seal_payload,
+)
+from windctl.book.open import open_book
+from windctl.book.words import words_of, written_in
+from windctl.record.canonical import encode
+from windctl.record.chain import genesis, link
+from windctl.record.curve import CurvePoint, review
+from windctl.record.entries import Entry
+from windctl.record.events import CoilStarted, NoteMade
+from windctl.record.summary import CoilSummary, summarise
+from windctl.record.trace import trace_digest
+
+DENSE_TURNS = 720  # six minutes at two a second: 7 200 board reports, 1 440 readings
+_RECIPES = ("Bridge single, scatter", "Neck single by hand", "Hum pair, north coil", "Bass single, even")
+_WORDS = (
+    "spliced",
+    "tight",
+    "loose",
+    "rewound",
+    "breakage",
+    "dull",
+    "hum",
+    "felt",
+    "checked",
+    "again",
+    "wax",
+)
+_BATCH = 2000  # coils written at once
+
+
+@dataclass(frozen=True, slots=True)
+class _Pattern:
+    """The facts that all coils of a kind share, and what they come to."""
+
+    rows: tuple[Entry, ...]
+    summary: CoilSummary
+    curve: tuple[CurvePoint, ...]
+
+
+def fill(path: Path, n: int, dense: int) -> None:
+    """A new book with `n` coils, the last `dense` of them with dense series."""
+    draw = random.Random(n)
+    open_book(path).close()
+    patterns = {turns: _pattern(turns) for turns in (0, DENSE_TURNS)}
+    serials: dict[tuple[str, int], int] = {}
+    with closing(sqlite3.connect(path)) as connection:
+        connection.execute("PRAGMA synchronous = OFF")
+        for first in range(0, n, _BATCH):
+            for k in range(first, min(first + _BATCH, n)):
+                _write(connection, *_coil(k, patterns[DENSE_TURNS if k >= n - dense else 0], serials, draw))
+            connection.commit()
+        rows = [(bench, year, last) for (bench, year), last in serials.items()]
+        connection.executemany("INSERT INTO numbers VALUES (?, ?, ?)", rows)
+        connection.commit()
+
+
+def _pattern(turns: int) -> _Pattern:
+    first = started(0)
+    events = wound(first, turns)
+    seen = review([first, *events, finished(max(turns, 1))])
+    return _Pattern(tuple(packed(events)), summarise(seen.state), seen.curve)
+
+
+def _coil(
+    k: int, pattern: _Pattern, serials: dict[tuple[str, int], int], draw: random.Random
+) -> tuple[CoilHead, list[Entry], list[bytes], tuple[CurvePoint, ...]]:
+    """A coil's row, the rows of its record with their links, its curve."""
+    at = datetime(2019, 1, 7, 8, 0, tzinfo=timezone(timedelta(hours=1))) + timedelta(minutes=80 * k)
+    bench = draw.choice(("b1", "b2", "north"))
+    serial = serials[bench, at.year] = serials.get((bench, at.year), 0) + 1
+    base = started(0)
+    first = replace(
+        base,
+        coil_id=coil_id(k),
+        number=coil_number(bench, at.year, serial),
+        wall_time=at.isoformat(),
+        recipe_name=f"{draw.choice(_RECIPES)} (demo)",
+        batch=f"lot {k // 24}",
+        of=24,
+        spool=f"s{k // 40}",
+    )
+    notes = [NoteMade(98_000, " ".join(draw.choices(_WORDS, k=8)), "Demo Winder")] * (draw.random() < 0.33)
+    verdict = draw.choices(("within", "outside", "not judged"), (90, 6, 4))[0]
+    end = replace(
+        finished(1, verdict=verdict, dcr_20c_ohm=draw.gauss(3640.0, 60.0), dcr_u95_ohm=9.5),
+        turns=draw.uniform(6900.0, 8100.0),
+    )
+    rows = [_entry(first), *pattern.rows, *(_entry(note) for note in notes), _entry(end)]
+    summary = replace(
+        pattern.summary,
+        recipe=first.recipe_name,
+        batch=first.batch,
+        turns=end.turns,
+        dcr_20c_ohm=end.dcr_20c_ohm,
+        dcr_u95_ohm=end.dcr_u95_ohm,
+        verdict=end.verdict,
+    )
+    head = opened(first, bench, at.year, serial, b"")
+    ended = (at + timedelta(minutes=7)).isoformat()
+    head = closed(head, summary, trace_digest(rows), ended)
+    rows.append(Entry(SEAL, seal_payload(head, pattern.curve), 0))
+    links = list(_links(first, rows))
+    return replace(head, n_entries=len(rows), record_digest=links[-1].hex()), rows, links, pattern.curve
+
+
+def _entry(event: Any) -> Entry:
+    return Entry(event.kind, encode(event), 1)
+
+
+def _links(first: CoilStarted, rows: list[Entry]) -> Iterator[bytes]:
+    last = genesis(first.coil_id)
+    for row in rows:
+        last = link(last, row.kind, row.payload)
+        yield last
+
+
+def _write(
+    connection: sqlite3.Connection,
+    head: CoilHead,
+    rows: list[Entry],
+    links: list[bytes],
+    curve: tuple[CurvePoint, ...],
+) -> None:
+    columns = {**head_columns(head), "words": words_of(head.recipe, head.number, written_in(rows))}
+    names = ", ".join(f'"{name}"' for name in columns)
+    marks = ", ".join("?" * len(columns))
+    connection.execute(f"INSERT INTO coils ({names}) VALUES ({marks})", list(columns.values()))
+    stored = [
+        (head.id, seq, row.kind, row.events, row.payload, tie)
+        for seq, (row, tie) in enumerate(zip(rows, links, strict=True))
+    ]
+    connection.executemany("INSERT INTO entries VALUES (?, ?, ?, ?, ?, ?)", stored)
+    points = [tuple(point.values()) for point in curve_rows(head.id, curve)]
+    connection.executemany("INSERT INTO curve VALUES (?, ?, ?, ?, ?, ?)", points)
