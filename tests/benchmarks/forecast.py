@@ -1,5 +1,5 @@
-"""How well the forecast does on drawn coils, beside its bound and other ways, and what a reading costs; how
-well the next coil of a lot is foreseen; what is found of unknown coils.
+"""How well the forecast does on drawn coils, beside its bound and other ways, what a bad contact does to it,
+and what a reading costs; how well the next coil of a lot is foreseen; what is found of unknown coils.
 
 `WINDCTL_BENCH_SEED` picks the coils, `WINDCTL_BENCH_COILS` how many (200), `WINDCTL_BENCH_LOTS` how many lots
 (100).
@@ -13,16 +13,17 @@ from dataclasses import replace
 from functools import cache
 from math import nan
 
-from tests.benchmarks import _learning
+from tests.benchmarks import _contact, _learning
 from tests.forecast.bound import bound, grown, least_without_readings
 from tests.forecast.rivals import Filterpy
 from tests.forecast.scoring import Floats, Score, follow, rms, told_apart
-from tests.forecast.situations import EVERY, GAUGE, OUTSIDE, Situation, live, situations
+from tests.forecast.situations import EVERY, GAUGE, OUTSIDE, Situation, checks, live, situations
 from tests.forecast.truth import DEFAULT, FINE, TURNS, Truth, draw, prior_for
 from windctl.forecast.estimator import begin, update
 from windctl.forecast.finish import finish_at
 
 _STAGES = (0.125, 0.25, 0.5, 0.75, 0.9)
+_CHECKS = (0.3, 0.85)
 _BOUND_COILS = 1000
 _OTHERS = ("rule", "parabola", "filterpy")
 
@@ -36,6 +37,8 @@ def run() -> None:
     table(seeds)
     _learning.like_coils(seeds)
     outside(seeds)
+    _contact.alarms(seeds)
+    _contact.bad_first_reading(range(seeds[0], seeds[0] + 2 * coils))
     cost(seeds[0])
     _learning.lots(seeds[0], lots)
     _learning.unknown(seeds[0], coils)
@@ -96,11 +99,17 @@ def outside(seeds: range) -> None:
     print("  rms % / held % / half-width over rms")
     for name, truth, meter in OUTSIDE:
         print(f"  {name}: {_differences(truth, GAUGE)} {_differences(meter, FINE)}".rstrip())
-    print(f"  {'read to':30}" + "".join(f"{100 * part:16.1f} %  " for part in _STAGES))
+    at_checks = [part * TURNS for part in _CHECKS]
+    heads = [f"{100 * part:.1f} %" for part in _STAGES] + [f"check, {100 * part:.0f} %" for part in _CHECKS]
+    print(f"  {'read to':30}" + "".join(f"{head:>21}" for head in heads))
     for name, truth, meter in OUTSIDE:
         at = [part * TURNS for part in _STAGES]
         seen = follow(seeds, truth, meter, live(0.9, 10.0), at, prior=prior_for(GAUGE, FINE))
-        cells = [f"{100 * one.rms:8.3f} /{100 * one.held:5.1f} /{one.sharp:5.2f}" for one in seen.stages]
+        checked = follow(
+            seeds, truth, meter, checks(*_CHECKS), at_checks, resting=True, prior=prior_for(GAUGE, FINE)
+        )
+        stages = seen.stages + checked.stages
+        cells = [f"{100 * one.rms:8.3f} /{100 * one.held:5.1f} /{one.sharp:5.2f}" for one in stages]
         print(f"  {name:30}" + "".join(cells))
     few = seeds[: min(len(seeds), 200)]
     print(
@@ -113,7 +122,7 @@ def outside(seeds: range) -> None:
             usual, growth_walk_rel=times * usual.growth_walk_rel, wire_walk_rel=times * usual.wire_walk_rel
         )
         found = told_apart(few, truth, wider, live(0.9, 10.0), [part * TURNS for part in _STAGES])
-        print(f"  {name:30}" + "".join(f"{one:18.2f}   " for one in found))
+        print(f"  {name:30}" + "".join(f"{one:21.2f}" for one in found))
 
 
 def _differences(one: object, other: object) -> str:
