@@ -80,12 +80,12 @@ def pair(
                 found = matched(book, _with(stock, poles), wish)
     except QueryError as error:
         raise UsageError(f"{error}\n  {error.text}\n  {' ' * error.at}^") from error
-    if book is not None and not shared.dry_run:
-        _keep(shared, poles, found if take else None, by)
     if svg_file is not None and found.pairs:
         from windctl.shop.leads_drawn import as_svg
 
         _write(svg_file, as_svg([each.pair.joined for each in found.pairs]))
+    if book is not None and not shared.dry_run:
+        _keep(shared, poles, found if take else None, by)
     if shared.json:
         present.result_json(pair_told.as_json(found, taken=take and not shared.dry_run))
     else:

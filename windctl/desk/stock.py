@@ -249,8 +249,8 @@ def _key(lesson: CoilLesson) -> str:
 def _learnt(
     book: Book, lessons: Sequence[CoilLesson], sources: Collection[str]
 ) -> tuple[list[CoilLesson], Experience, set[str]]:
-    """The coils from the spools in question, to be taken together; what all others taught; and the coils that
-    are too far off to say anything."""
+    """The coils from the spools in question, to be taken together; what all others taught, and all of them of
+    how much coils differ; and the coils that are too far off to say anything."""
     from windctl.book.shelf import history
     from windctl.plan.experience.fold import learn
     from windctl.shop.enclosed import unknowns_of
@@ -258,11 +258,13 @@ def _learnt(
     spools = book.spools()
     wires = [each.spool for each in spools]
     renamed = [replace(one, lesson=replace(one.lesson, coil=_key(one))) for one in lessons]
-    unfit = {one.coil for one in learn(history(renamed, spools), wires, keep=()).unfit}
+    whole = learn(history(renamed, spools), wires, keep=())
+    unfit = {one.coil for one in whole.unfit}
     together = [one for one in lessons if one.lesson.source in sources and _key(one) not in unfit]
     rest = [one for one in lessons if one.lesson.source not in sources]
     keep = set().union(*(unknowns_of(one.lesson) for one in together))
-    return together, learn(history(rest, spools), wires, keep), unfit
+    others = learn(history(rest, spools), wires, keep)
+    return together, replace(others, unrest=whole.unrest), unfit
 
 
 def _candidate(coil: InStock) -> Candidate:
