@@ -15,6 +15,7 @@ from windctl.run.outlook import Ahead
 from windctl.run.requests import Request
 from windctl.run.snapshot import Snapshot
 from windctl.run.wind import Winding
+from windctl.tui.before_words import Repeats
 from windctl.tui.page import Page
 from windctl.tui.pictures.curve import Point
 from windctl.tui.session import Run, Session
@@ -119,11 +120,11 @@ class StillSession(Session):
     def open_coils(self) -> tuple[CoilHead, ...]:
         return ()
 
-    def page(self, number: int, outcome: str | None = None) -> Page:
+    def page(self, number: int, query: str = "", sort: str = "") -> Page:
         return Page(self._heads, len(self._heads), number)
 
-    def last_of(self, recipe: str) -> CoilHead | None:
-        return None
+    def repeats(self, recipe: str, batch: str) -> Repeats:
+        return Repeats()
 
 
 def run_of(winding: FakeWinding, card: Card = CARD) -> Run:

@@ -126,10 +126,15 @@ class WindctlApp(App[int], inherit_bindings=False):
 
     def _to_room(self, name: str) -> None:
         kind = rooms.room_of(name)
-        while not isinstance(self.screen, kind) and isinstance(self.screen, rooms.Between):
+        while not isinstance(self.screen, kind) and self._goes_away(self.screen):
             self.pop_screen()
         if not isinstance(self.screen, kind):
             self.push_screen(kind(self.session))
+
+    @staticmethod
+    def _goes_away(screen: Screen[object]) -> bool:
+        """A room that another one takes the place of; the first room and a coil on the machine stay."""
+        return isinstance(screen, rooms.Between) and not isinstance(screen, RecipesScreen)
 
     def pop_to_recipes(self) -> None:
         """Back to the first room."""

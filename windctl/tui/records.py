@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -17,10 +18,12 @@ from windctl.tui.view import Card
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
     from windctl.book.verify import VerifyReport
+    from windctl.record.addenda import Addendum
     from windctl.record.curve import CurvePoint
     from windctl.record.events import Event
 
 _Z95 = 1.959964
+ALIKE = 40  # coils of one recipe, among which others are chosen to compare
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,14 +40,23 @@ class Told:
 class Records(Sitting):
     """What was wound. Everything raises BookError; reading never makes a book."""
 
-    def page(self, number: int, outcome: str | None = None) -> Page:
-        """One page of coils, the one begun last first."""
+    def page(self, number: int, query: str = "", sort: str = "") -> Page:
+        """One page of the coils that `query` asks for, in the book's language, sorted as `sort` says, else
+        the one begun last first. Raises QueryError."""
         with self._book() as book:
             if book is None:
                 return Page((), 0, 0)
-            total = book.count(outcome=outcome)
-            heads = book.list(outcome=outcome, limit=PAGE, offset=number * PAGE)
+            total = book.count(query)
+            number = max(0, min(number, -(-total // PAGE) - 1))
+            heads = book.list(query, sort=sort, limit=PAGE, offset=number * PAGE)
             return Page(heads, total, number)
+
+    def alike(self, number: str) -> tuple[CoilHead, ...]:
+        """Other coils of the same recipe that were read, the one begun last first: worth comparing."""
+        with book_to_read(self.shared) as book:
+            head = book.find(number)
+            heads = book.list(recipe=head.recipe, limit=ALIKE + 1)
+        return tuple(one for one in heads if one.number != head.number and one.sealed)[:ALIKE]
 
     def told(self, number: str) -> Told:
         """One coil, as it is shown. Raises BookError, RecordBroken."""
@@ -54,7 +66,8 @@ class Records(Sitting):
             head = book.find(number)
             events = list(book.events(number))
             curve = book.curve(number) if head.sealed else review(events).curve
-        return _told(head, events, curve)
+            said = book.addenda(number)
+        return _told(head, events, curve, said)
 
     def verify(self, number: str) -> VerifyReport:
         """Check one record against its digests."""
@@ -65,16 +78,32 @@ class Records(Sitting):
         """Write the whole record beside the user, as JSON; where it went."""
         with book_to_read(self.shared) as book:
             record = {"format": 1, **dict(book.export(number))}
-        path = Path.cwd() / f"{number}.json"
-        path.write_text(json.dumps(record, ensure_ascii=False, indent=2), encoding="utf-8")
-        return path
+        return written(f"{number}.json", json.dumps(record, ensure_ascii=False, indent=2))
+
+    def report(self, number: str) -> Path:
+        """Write the coil's report beside the user, a page to print; where it went."""
+        from windctl.desk.papers import report_text
+
+        with book_to_read(self.shared) as book:
+            return written(f"{number}.html", report_text(book, book.find(number)))
+
+
+def written(name: str, text: str) -> Path:
+    """Write a file beside the user; where it went. Raises OSError."""
+    path = Path.cwd() / name
+    path.write_text(text, encoding="utf-8", newline="\n")
+    return path
 
 
 def points_of(curve: tuple[CurvePoint, ...]) -> list[Point]:
+    """A recorded curve as it is drawn."""
     return [Point(one.turn, one.ohm_20c, one.final_ohm, _Z95 * one.final_sd) for one in curve]
 
 
-def _told(head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...]) -> Told:
+def _told(
+    head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...], said: Sequence[Addendum]
+) -> Told:
+    from windctl.paper.told import said_since
     from windctl.record.events import CoilStarted
     from windctl.tui.telling import tell, when
 
@@ -104,6 +133,11 @@ def _told(head: CoilHead, events: list[Event], curve: tuple[CurvePoint, ...]) ->
         text = tell(event, started.setup.counts_per_turn) if event.kind not in _DENSE else None
         if text is not None:
             lines.append((when(event), text))
+    since = [one for fact in said if (one := said_since(fact)) is not None]
+    lines += [
+        ("since", f"{what} ({', '.join(part for part in (who, moment) if part)})")
+        for moment, who, what in since
+    ]
     return Told(head, card, tuple(points), tuple(lines), started.machine)
 
 

@@ -11,7 +11,8 @@ from windctl.tui.dialogs.dialog import Dialog
 EVERYWHERE = """\
 F8     the spindle holds, on every screen and in every dialog
 Space  the same while a coil turns and nothing is typed
-F1 help   F2 recipes   F3 coils   F4 commands   F6 light or dark   F10 leave
+F1 help     F2 recipes  F3 coils    F7 spools   F9 machine
+F4 all commands         F6 light or dark        F10 leave
 F8 is no emergency stop, this program no safety function: use the hardware stop."""
 
 

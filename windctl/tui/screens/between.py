@@ -2,24 +2,41 @@
 
 from __future__ import annotations
 
+from typing import ClassVar
+
 from textual.binding import BindingType
 
 from windctl.tui.keymap import key
 from windctl.tui.screens.room import Room
+from windctl.tui.widgets.room_bar import ROOMS, RoomBar
+from windctl.tui.widgets.title_bar import TitleBar
 
 
-def ways(here: str = "") -> list[BindingType]:
-    """The keys of the rooms, to stand behind a room's own; that of the room itself is not shown."""
-    rooms = [key(name, show=name != here) for name in ("recipes", "coils", "spools", "machine")]
-    return [*rooms, key("back", show=False)]
+def ways() -> list[BindingType]:
+    """The keys of the rooms: the top row shows them."""
+    return [key(name, show=False) for name in ROOMS]
 
 
 class Between(Room):
-    """Escape goes back. `BINDINGS` of a room end with `ways`."""
+    """Escape goes back. `HERE` is the id of the room's key."""
+
+    HERE: ClassVar[str] = "coils"
+    BINDINGS: ClassVar[list[BindingType]] = [key("back", show=False), *ways()]
+
+    def top(self) -> TitleBar:
+        """The rooms, with this one lit."""
+        return RoomBar(self.HERE, self.session.machine_words, self.session.simulated, id="title")
 
     def on_mount(self) -> None:
         """Colours in tables are painted anew when the theme changes."""
         self.watch(self.app, "theme", self.repaint, init=False)
+
+    def on_screen_resume(self) -> None:
+        """Another machine may have been taken meanwhile."""
+        bar = self.query_one(TitleBar)
+        bar.machine = self.session.machine_words
+        bar.simulated = self.session.simulated
+        bar.redraw()
 
     def repaint(self) -> None:
         """Other colours."""

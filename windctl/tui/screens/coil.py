@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from pathlib import Path
 from typing import TYPE_CHECKING, ClassVar
 
 from rich.text import Text
@@ -11,35 +13,47 @@ from textual.binding import BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import RichLog, Static
 
-from windctl.desk.numbers import ohm, turns
 from windctl.errors import WindctlError
+from windctl.tui import coil_view
+from windctl.tui.dialogs.choose import Choose
 from windctl.tui.keymap import key
-from windctl.tui.looks import OUTCOMES, VERDICTS
-from windctl.tui.screens.between import Between, ways
-from windctl.tui.view import target_text
+from windctl.tui.pictures.against import MOST, Other
+from windctl.tui.records import written
+from windctl.tui.screens.between import Between
+from windctl.tui.widgets.against import Against
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
 
 if TYPE_CHECKING:
-    from windctl.book.verify import VerifyReport
+    from windctl.book.heads import CoilHead
     from windctl.tui.records import Told
     from windctl.tui.session import Session
 
 
 class CoilScreen(Between):
-    """V checks the record against its digests; X writes it out."""
+    """The record, read; beside others of its kind if asked to."""
 
-    ABOUT = "One coil as its record tells it. V verifies the record, X writes all of it beside you as JSON."
-    BINDINGS: ClassVar[list[BindingType]] = [key("coil.verify"), key("coil.export"), *ways()]
+    ABOUT = (
+        "One coil as its record tells it. V verifies the record against its digests. C sets another coil of "
+        "the recipe beside it: how much more resistance that has at the same turn, in per cent. R writes its "
+        "report, a page to print; X writes the whole record as JSON; Y copies it as text. Files are written "
+        "into the folder that you are in, and named."
+    )
+    BINDINGS: ClassVar[list[BindingType]] = [
+        key("coil.verify"),
+        key("coil.compare"),
+        key("coil.alone"),
+        key("coil.report"),
+        key("coil.export"),
+        key("coil.copy"),
+    ]
 
-    def __init__(self, session: Session, number: str) -> None:
+    def __init__(self, session: Session, number: str, others: tuple[str, ...] = ()) -> None:
         super().__init__(session)
         self.number = number
         self.told: Told | None = None
-
-    def heading(self) -> str:
-        """The coil's number."""
-        return f"Coil {self.number}"
+        self.others: list[Told] = []
+        self._wanted = others
 
     def body(self) -> ComposeResult:
         """Figures, curves, facts."""
@@ -49,8 +63,10 @@ class CoilScreen(Between):
             with Vertical(id="coil-right"):
                 yield Curve(id="coil-curve")
                 yield Curve(closer=True, id="coil-closer")
+                yield Against(id="coil-against")
+        yield Static("", id="coil-beside", markup=False)
         yield Static("", id="coil-answer", markup=False)
-        yield RichLog(id="coil-events", wrap=True, markup=False, highlight=False, auto_scroll=False)
+        yield RichLog(id="coil-events", min_width=20, markup=False, highlight=False, auto_scroll=False)
 
     def on_mount(self) -> None:
         """Read the record."""
@@ -58,29 +74,114 @@ class CoilScreen(Between):
 
     @work(thread=True, exclusive=True, group="told")
     def read(self) -> None:
-        """Read the record."""
+        """Read the record, and those to compare it with."""
         try:
             told = self.session.told(self.number)
+            others = [self.session.told(number) for number in self._wanted]
         except WindctlError as error:
-            self.app.call_from_thread(self.answer, str(error))
+            self.app.call_from_thread(self.answer, f"✖ {error}")
         else:
-            self.app.call_from_thread(self.show, told)
+            self.app.call_from_thread(self.show, told, others)
 
-    def show(self, told: Told) -> None:
+    def show(self, told: Told, others: list[Told]) -> None:
         """Place it."""
         self.told = told
-        self.query_one("#coil-figures", Figures).show(figures(told))
+        self.query_one("#coil-figures", Figures).show(coil_view.figures(told))
         for curve in self.query(Curve):
             curve.show(told.card.scale, told.curve, [])
+        self.query_one(RichLog).focus()
+        self.beside(others)
+        self.call_after_refresh(self.tell)
+
+    def tell(self) -> None:
+        """What happened, as wide as there is room."""
         log = self.query_one(RichLog)
         log.clear()
-        for since, what in told.lines:
-            log.write(Text(f"{since:>7}  {what}"))
-        log.focus()
+        for line in coil_view.story(self.told, log.scrollable_content_region.width) if self.told else ():
+            log.write(Text(line))
+
+    def on_resize(self) -> None:
+        """Other lines."""
+        self.call_after_refresh(self.tell)
+
+    def beside(self, others: list[Told]) -> None:
+        """Other coils beside it, or none."""
+        if self.told is None:
+            return
+        self.others = others[:MOST]
+        compared = bool(self.others)
+        self.set_class(compared, "-beside")
+        drawn = tuple(Other(one.head.number, one.curve) for one in self.others)
+        words = coil_view.against(self.told.head, [one.head for one in self.others]) if compared else ""
+        line = self.query_one("#coil-beside", Static)
+        line.update(words)
+        line.set_class(compared, "-there")
+        self.query_one(Against).show(self.told.curve, drawn)
+        self.call_after_refresh(self.query_one(Against).redraw)
+        self.refresh_bindings()
 
     def answer(self, words: str) -> None:
         """Say something about the record."""
-        self.query_one("#coil-answer", Static).update(words)
+        line = self.query_one("#coil-answer", Static)
+        line.update(words)
+        line.set_class(bool(words), "-there")
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Only what can be done is offered."""
+        if action == "alone":
+            return bool(self.others)
+        return super().check_action(action, parameters)
+
+    # ------------------------------------------------------------ comparing
+
+    def action_compare(self) -> None:
+        """Choose another coil of the recipe."""
+        if len(self.others) >= MOST:
+            self.notify(f"{MOST} coils beside the first can be told apart", markup=False)
+        else:
+            self.look_for_others()
+
+    @work(thread=True, exclusive=True, group="alike")
+    def look_for_others(self) -> None:
+        """Coils of the same recipe."""
+        try:
+            heads = self.session.alike(self.number)
+        except WindctlError as error:
+            self.app.call_from_thread(self.answer, f"✖ {error}")
+        else:
+            self.app.call_from_thread(self.choose, heads)
+
+    def choose(self, heads: tuple[CoilHead, ...]) -> None:
+        """One of them."""
+        there = {one.head.number for one in self.others}
+        lines = [(one.number, coil_view.line_of(one)) for one in heads if one.number not in there]
+        if not lines:
+            self.notify("there is no other finished coil of this recipe", markup=False)
+            return
+        words = (
+            "Coils of the same recipe. Any others are marked in the list of coils (M), and compared there."
+        )
+        self.app.push_screen(Choose(f"Compare {self.number} with", words, lines), self._chose)
+
+    def _chose(self, number: str | None) -> None:
+        if number is not None:
+            self.set_beside(number)
+
+    @work(thread=True, exclusive=True, group="beside")
+    def set_beside(self, number: str) -> None:
+        """Read the other one, and set it beside."""
+        try:
+            other = self.session.told(number)
+        except WindctlError as error:
+            self.app.call_from_thread(self.answer, f"✖ {error}")
+        else:
+            self.app.call_from_thread(self.beside, [*self.others, other])
+
+    def action_alone(self) -> None:
+        """Without the others."""
+        self.beside([])
+
+    # ------------------------------------------------------------ checking and writing
 
     def action_verify(self) -> None:
         """Check the record."""
@@ -91,49 +192,32 @@ class CoilScreen(Between):
     def check_record(self) -> None:
         """Check the record."""
         try:
-            report = self.session.verify(self.number)
+            words = coil_view.verified(self.session.verify(self.number))
         except WindctlError as error:
-            words = str(error)
-        else:
-            words = verified(report)
+            words = f"✖ {error}"
         self.app.call_from_thread(self.answer, words)
 
-    @work(thread=True, exclusive=True, group="export")
     def action_export(self) -> None:
         """Write the record out."""
+        self.write(lambda: self.session.export(self.number))
+
+    def action_report(self) -> None:
+        """Write its report, a page to print."""
+        self.write(lambda: self.session.report(self.number))
+
+    def action_copy(self) -> None:
+        """To the terminal's clipboard, and into a file: a terminal does not say what it took."""
+        if self.told is not None:
+            text = coil_view.as_text(self.told)
+            self.app.copy_to_clipboard(text)
+            self.write(lambda: written(f"{self.number}.txt", text), "copied, and written to")
+
+    @work(thread=True, exclusive=True, group="write")
+    def write(self, made: Callable[[], Path], done: str = "written to") -> None:
+        """Write a file, and name it."""
+        self.app.call_from_thread(self.answer, "◌ writing")
         try:
-            words = f"✔ written to {self.session.export(self.number)}"
+            words = f"✔ {done} {made()}"
         except (WindctlError, OSError) as error:
             words = f"✖ not written: {error}"
         self.app.call_from_thread(self.answer, words)
-
-
-def verified(report: VerifyReport) -> str:
-    """A check in words."""
-    if not report.broken:
-        return "✔ the record agrees with its digests"
-    return "✖ " + "; ".join(one.what for one in report.broken)
-
-
-def figures(told: Told) -> tuple[tuple[str, str], ...]:
-    """One coil in rows."""
-    head, outcome, verdict = told.head, OUTCOMES[told.head.outcome], VERDICTS[told.head.verdict]
-    rows = [
-        ("recipe", head.recipe),
-        ("batch", f"{head.batch} of {head.of}" if head.of else head.batch),
-        ("machine", told.machine),
-        ("started", head.started[:16].replace("T", " ")),
-        ("outcome", f"{outcome.glyph} {outcome.word}"),
-        ("", head.reason),
-        ("turns", "" if head.turns is None else turns(head.turns)),
-    ]
-    if head.dcr_20c_ohm:
-        text = ohm(head.dcr_20c_ohm, head.dcr_u95_ohm or 0.0)
-        rows.append(("at 20 °C", text.replace("kohm", "kΩ").replace("ohm", "Ω")))
-    rows += [
-        ("target", target_text(told.card)),
-        ("verdict", f"{verdict.glyph} {verdict.word}"),
-        ("program", head.program_digest[:16]),
-        ("record", head.record_digest[:16]),
-    ]
-    return tuple((name, value) for name, value in rows if value)

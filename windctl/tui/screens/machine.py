@@ -18,11 +18,10 @@ from windctl.tui.dialogs.choose import Choose
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.say import Say
 from windctl.tui.keymap import HOLD_KEY, key
-from windctl.tui.screens.between import Between, ways
+from windctl.tui.screens.between import Between
 from windctl.tui.widgets.lamps import Lamps
 from windctl.tui.widgets.state_band import StateBand
 from windctl.tui.widgets.table import Table
-from windctl.tui.widgets.title_bar import TitleBar
 
 if TYPE_CHECKING:
     from windctl.desk.machine_look import Looked
@@ -40,6 +39,7 @@ class MachineScreen(Between):
         "drives are powered you type go. F8 stops the spindle and takes the drives off at any time. K keeps "
         "what was calibrated, after showing the difference."
     )
+    HERE = "machine"
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding(HOLD_KEY, "hold", "HOLD"),
         key("machine.open"),
@@ -49,7 +49,6 @@ class MachineScreen(Between):
         key("machine.skip"),
         key("machine.keep"),
         key("machine.other"),
-        *ways("machine"),
     ]
 
     def __init__(self, session: Session) -> None:
@@ -57,21 +56,22 @@ class MachineScreen(Between):
         self.looked: Looked | None = None
         self._answering = False
 
-    def heading(self) -> str:
-        """The machine."""
-        return f"Machine · {self.session.profile.name}"
-
     def body(self) -> ComposeResult:
         """Band, inputs on the left, the check on the right, what is asked below."""
         yield StateBand(id="machine-band")
         with Horizontal(id="machine-body"):
             with Vertical(id="machine-left"):
+                yield Static(self.machine_line(), id="machine-name", classes="heading", markup=False)
                 yield Lamps(id="lamps")
             with Vertical(id="machine-right"):
                 yield Table(id="check-table")
         yield Static("", id="check-asked", markup=False)
         yield Input(id="check-answer", compact=True)
         yield Static("", id="check-about", markup=False)
+
+    def machine_line(self) -> str:
+        """Which machine it is."""
+        return f"{self.session.profile.name}, bench {self.session.profile.bench}"
 
     def on_mount(self) -> None:
         """A simulated machine is looked at at once; a real port is opened when asked to."""
@@ -315,6 +315,6 @@ class MachineScreen(Between):
         """Show the other one."""
         self.looked = None
         self.query_one(Lamps).show(())
-        self.query_one(TitleBar).machine = self.session.machine_words
-        self.query_one(TitleBar).show(self.heading(), self.session.simulated)
+        self.query_one("#machine-name", Static).update(self.machine_line())
+        self.on_screen_resume()
         self.refresh_bindings()

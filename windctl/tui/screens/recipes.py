@@ -23,7 +23,7 @@ from windctl.tui.keymap import key
 from windctl.tui.looks import FITS
 from windctl.tui.pictures.section import Filled
 from windctl.tui.screens.before import BeforeScreen
-from windctl.tui.screens.room import Room
+from windctl.tui.screens.between import Between
 from windctl.tui.screens.wind import WindScreen
 from windctl.tui.view import bands
 from windctl.tui.widgets.bobbin_section import BobbinSection
@@ -36,25 +36,19 @@ if TYPE_CHECKING:
     from windctl.tui.session import Run, Session
 
 
-class RecipesScreen(Room):
+class RecipesScreen(Between):
     """Moving through the list shows each coil as it will be; Enter goes on to the machine."""
 
     ABOUT = (
         "The recipes within reach: in the folder you are in, in its folder recipes, and in your own. "
         "On the right the coil as it will be, before any wire is cut."
     )
+    HERE = "recipes"
     BINDINGS: ClassVar[list[BindingType]] = [
         key("recipes.wind"),
         key("recipes.resume"),
         key("recipes.reload", show=False),
-        key("coils"),
-        key("spools"),
-        key("machine"),
     ]
-
-    def heading(self) -> str:
-        """What the room is."""
-        return "windctl · recipes"
 
     def body(self) -> ComposeResult:
         """The list, and the chosen coil."""
@@ -74,6 +68,13 @@ class RecipesScreen(Room):
         self.recipes: list[Listed] = []
         self.chosen: Preview | None = None
         self.open: tuple[CoilHead, ...] = ()
+
+    def action_back(self) -> None:
+        """There is nothing before the first room."""
+
+    def repaint(self) -> None:
+        """Other colours."""
+        self.show_recipes(self.recipes)
 
     def on_mount(self) -> None:
         """Look round."""

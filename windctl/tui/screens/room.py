@@ -25,9 +25,13 @@ class Room(Screen[None]):
 
     def compose(self) -> ComposeResult:
         """Top row, body, keys."""
-        yield TitleBar(self.heading(), self.session.machine_words, self.session.simulated, id="title")
+        yield self.top()
         yield from self.body()
         yield Footer(show_command_palette=False)
+
+    def top(self) -> TitleBar:
+        """The top row."""
+        return TitleBar(self.heading(), self.session.machine_words, self.session.simulated, id="title")
 
     def heading(self) -> str:
         """The words in the top row."""

@@ -17,10 +17,9 @@ from windctl.tui import spool_forms, spool_view
 from windctl.tui.dialogs.form import Form
 from windctl.tui.field import Field
 from windctl.tui.keymap import key
-from windctl.tui.screens.between import Between, ways
+from windctl.tui.screens.between import Between
 from windctl.tui.widgets.figures import Figures
 from windctl.tui.widgets.known import Known
-from windctl.tui.widgets.news import News
 from windctl.tui.widgets.table import Table
 
 if TYPE_CHECKING:
@@ -38,12 +37,12 @@ class SpoolsScreen(Between):
         "What is left is the last weighing less what coils took since. Its ohm per metre is learnt from "
         "measured pieces and from finished coils; the bars below show how much closer that is than the table."
     )
+    HERE = "spools"
     BINDINGS: ClassVar[list[BindingType]] = [
         key("spools.take"),
         key("spools.add"),
         key("spools.weigh"),
         key("spools.measure"),
-        *ways("spools"),
     ]
 
     def __init__(self, session: Session) -> None:
@@ -51,17 +50,13 @@ class SpoolsScreen(Between):
         self.spools: tuple[SpoolState, ...] = ()
         self.looked = False
 
-    def heading(self) -> str:
-        """What the room is."""
-        return "Spools"
-
     def body(self) -> ComposeResult:
         """The list, and what is known of one."""
         yield Table(id="spool-table")
         with Vertical(id="spool-known"):
             yield Figures(id="spool-figures")
             yield Known(id="spool-bars")
-            yield News(id="spool-facts")
+            yield Figures(id="spool-facts")
         yield Static("", id="spools-foot", markup=False)
 
     def on_mount(self) -> None:
@@ -104,9 +99,9 @@ class SpoolsScreen(Between):
     def detail(self) -> None:
         """What is known of the spool under the cursor."""
         one = self.marked
-        self.query_one(Figures).show(spool_view.details(one) if one else ())
+        self.query_one("#spool-figures", Figures).show(spool_view.details(one) if one else ())
         self.query_one(Known).show(spool_view.parts(one) if one else None)
-        self.query_one(News).show(spool_view.facts(one) if one else ())
+        self.query_one("#spool-facts", Figures).show(spool_view.facts(one) if one else ())
 
     @property
     def marked(self) -> SpoolState | None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 
 from rich.text import Text
+from textual.coordinate import Coordinate
 from textual.widgets import DataTable
 
 from windctl.tui.looks import Look
@@ -17,6 +18,18 @@ class Table(DataTable[Text]):
 
     def __init__(self, *, id: str | None = None) -> None:
         super().__init__(id=id, cursor_type="row")
+
+    def head(self, names: Sequence[str]) -> None:
+        """Other columns; the rows go with the old ones."""
+        if [str(one.label) for one in self.ordered_columns] != list(names):
+            self.clear(columns=True)
+            self.add_columns(*[Text(name) for name in names])
+
+    def put(self, key: str, entries: Sequence[Entry]) -> None:
+        """Another content of one row."""
+        row = self.get_row_index(key)
+        for column, entry in enumerate(entries):
+            self.update_cell_at(Coordinate(row, column), self._text(entry), update_width=True)
 
     def fill(self, rows: Iterable[tuple[str, Sequence[Entry]]]) -> None:
         """Show other rows: (key, entries)."""
@@ -37,5 +50,5 @@ class Table(DataTable[Text]):
     def _text(self, entry: Entry) -> Text:
         if isinstance(entry, str):
             return Text(entry, no_wrap=True)
-        words = f"{entry.glyph} {entry.word}"
+        words = f"{entry.glyph} {entry.word}".strip()
         return Text(words, style=self.app.theme_variables.get(f"wc-{entry.role}", ""), no_wrap=True)
