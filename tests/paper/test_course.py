@@ -12,8 +12,9 @@ from windctl.desk.papers import coil_facts
 from windctl.paper.course import course_of
 from windctl.paper.layers import growth_of
 from windctl.paper.recorded import Bobbin, bobbin_of, recipe_of, settings
-from windctl.paper.told import story, told
-from windctl.protocol.messages import Capability, Identity, Setup, State, Status
+from windctl.paper.told import plainly, said_since, story, told
+from windctl.protocol.messages import Capability, Identity, Refused, Setup, State, Status
+from windctl.record.addenda import CoilWithdrawn, MagnetTold, PairMade, PairParted
 from windctl.record.events import KINDS, BoardGreeted, Event, StatusHeard, StopPointChosen
 
 
@@ -77,22 +78,37 @@ def test_a_hand_that_nobody_recorded_is_drawn_even_and_said_to_be(book: Book) ->
     assert len(set(growth.layers[-1].heights_mm)) == 1
 
 
-def test_every_kind_of_fact_has_words_of_its_own() -> None:
-    """A fact without a case is told by its fields, and begins with its name."""
-    for name, kind in KINDS.items():
-        if name in ("status_heard", "reading_taken"):
-            continue
-        event = made(kind)
-        if name in ("coil_started", "resumed"):
-            event = dataclasses.replace(event, wall_time="2026-05-04T08:30")
-        elif name == "board_greeted":
-            event = dataclasses.replace(event, identity=made(Identity))
-        elif name == "command_refused":
-            event = dataclasses.replace(event, refused=made(__import__("windctl").protocol.messages.Refused))
-        elif name == "coil_finished":
-            event = dataclasses.replace(event, outcome="finished", reason="so")
-        text = told(event, 400)
-        assert text is None or text[0].isupper() or text[0] == "+"
+NESTED = {"board_greeted": {"identity": made(Identity)}, "command_refused": {"refused": made(Refused)}}
+
+
+@pytest.mark.parametrize("name", sorted(set(KINDS) - {"status_heard", "reading_taken"}))
+def test_every_kind_of_fact_has_words_of_its_own(name: str) -> None:
+    """A fact that the program has no words for is told by its name, a colon and its fields."""
+    texts = {field.name: "so" for field in dataclasses.fields(KINDS[name]) if field.type == "str"}
+    event = dataclasses.replace(made(KINDS[name]), **texts, **NESTED.get(name, {}))
+    text = told(event, 400)
+    assert text is None or not text.startswith(f"{plainly(name)}:")
+    assert text is None or text.rstrip(".") != plainly(name)
+
+
+def test_what_is_said_since_has_words_of_its_own() -> None:
+    """A pair, a magnet, a withdrawal: who, when, and what in words."""
+    pair = PairMade(
+        "2026-05-04T10:00:00+02:00", "Ann", "id", "b1-2026-0002", "finish to finish", -41.2, -48, -37
+    )
+    assert said_since(pair) == (
+        "2026-05-04 10:00",
+        "Ann",
+        "Paired with b1-2026-0002: finish to finish; hum left in a uniform field -41 dB (-48 to -37)",
+    )
+    for fact in (
+        MagnetTold("2026-05-04T10:00", "Ann", "south"),
+        PairParted("2026-05-04T10:00", "Ann", "id", "b1-2026-0002", "sold apart"),
+        CoilWithdrawn("2026-05-04T10:00", "Ann", "wrong wire"),
+    ):
+        said = said_since(fact)
+        assert said is not None and said[:2] == ("2026-05-04 10:00", "Ann")
+        assert not said[2].startswith(f"{plainly(fact.kind.removeprefix('coil_'))}:")
 
 
 def test_a_long_row_of_stop_points_is_told_by_its_ends() -> None:

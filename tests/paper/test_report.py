@@ -14,6 +14,7 @@ from tests.paper.reading import Node, page, rows, stands_alone, table
 from windctl.book.book import Book
 from windctl.desk.papers import coil_facts, report_text
 from windctl.paper.report import coil_report
+from windctl.record.addenda import CoilWithdrawn, MagnetTold
 from windctl.shop.life import Life
 
 
@@ -176,3 +177,15 @@ def test_a_coil_without_a_reading_says_that_nothing_was_measured(book: Book) -> 
     stands_alone(root)
     assert "not known" in root.all("header")[0].text
     assert "No resistance of the finished coil was read" in root.text
+
+
+def test_a_withdrawn_coil_says_so_and_a_magnet_told_of_beats_the_recipe(book: Book) -> None:
+    facts = coil_facts(book, book.find("2"))
+    since = (
+        CoilWithdrawn("2026-05-04T10:00", BY, "wrong <wire>"),
+        MagnetTold("2026-05-04T10:00", BY, "south"),
+    )
+    root = page(coil_report(replace(facts, addenda=(*facts.addenda, *since))))
+    stands_alone(root)
+    assert f"Withdrawn by {BY}: wrong <wire>" in root.all("header")[0].text
+    assert "The south pole faces the strings" in root.all("header")[0].text

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from windctl.material.copper import to_20c
@@ -28,7 +28,7 @@ from windctl.paper.proof import META, Proof, proof_section
 from windctl.paper.recorded import Bobbin, bobbin_of, profile_of, recipe_of, settings
 from windctl.paper.told import said_since, story
 from windctl.record import events as facts
-from windctl.record.addenda import Addendum
+from windctl.record.addenda import Addendum, magnet, withdrawn
 from windctl.record.curve import CurvePoint
 from windctl.record.events import CoilStarted
 from windctl.shop.picks_up import recorded
@@ -86,6 +86,9 @@ def coil_report(coil: CoilFacts) -> str:
     head, proof = coil.head, Proof.of(coil.head)
     recipe = recipe_of(coil.started)
     bobbin = bobbin_of(recipe)
+    told = magnet(coil.addenda)
+    if bobbin is not None and told is not None:
+        bobbin = replace(bobbin, pole=told.pole)
     growth = None if bobbin is None else growth_of(coil.started, bobbin, coil.turns)
     foot = f"{head.number} · {head.id} · {head.record_digest[:16]}"
     return page(
@@ -141,6 +144,9 @@ def _head(coil: CoilFacts, bobbin: Bobbin | None, growth: Growth | None) -> Mark
     if not head.sealed:
         words = "The record of this coil is still open: the coil is not finished."
         parts.append(tag("p", words, class_="warn"))
+    out = withdrawn(coil.addenda)
+    if out is not None:
+        parts.append(tag("p", f"Withdrawn by {out.by}: {out.reason}", class_="warn"))
     return tag("header", *parts)
 
 

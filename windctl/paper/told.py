@@ -16,11 +16,19 @@ from windctl.record.addenda import (
     CoilReadmitted,
     CoilTaught,
     CoilWithdrawn,
+    MagnetTold,
+    PairMade,
+    PairParted,
 )
 from windctl.record.events import Event
 
 _Z95 = 1.959964
 _BY = {"virtual": "the simulation", "operator": "the operator", "windctl": "the program"}
+_BY_KIND = {
+    "pass_wanted": "The guide was to be seen at both flanges before the first turn, said {by}.",
+    "pass_agreed": "Go for the guide alone, there and back, given by {by}.",
+    "guide_seen": "The guide was seen to stand right at its {end} end, by {by}.",
+}
 _CAUSES = {
     Cause.STOP_POINT: "at its stop point",
     Cause.QUEUE_END: "at the end of its program",
@@ -113,6 +121,10 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.ReadingTyped():
             read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C"
             return f"Read by hand at turn {grouped(event.turn)}: {read}, as the meter showed it."
+        case facts.ReadingTakenBack():
+            return f"The reading typed last was taken back by {by(event.by)}."
+        case facts.PaceAsked():
+            return f"No faster than {event.percent} % of the planned pace, asked for by {by(event.by)}."
         case facts.CheckTaken():
             how = "the coil was read" if event.read else "passed over"
             return f"Check at turn {grouped(event.turn)}: {how}."
@@ -125,7 +137,10 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.CoilFinished():
             return f"{event.outcome.capitalize()}: {event.reason}."
         case _:
-            return f"{plainly(event.kind)}{_fields(event)}."
+            words = _BY_KIND.get(event.kind)
+            if words is None:
+                return f"{plainly(event.kind)}{_fields(event)}."
+            return words.format(by=by(getattr(event, "by", "")), end=getattr(event, "end", ""))
 
 
 def said_since(fact: Addendum) -> tuple[str, str, str] | None:
@@ -141,6 +156,13 @@ def said_since(fact: Addendum) -> tuple[str, str, str] | None:
             what = f"Readmitted, teaches again: {fact.reason}"
         case CoilMeasured():
             what = _measured(fact)
+        case MagnetTold():
+            what = f"The {fact.pole} pole of its magnet faces the strings"
+        case PairMade():
+            left = f"{fact.left_db:.0f} dB ({fact.left_low_db:.0f} to {fact.left_high_db:.0f})"
+            what = f"Paired with {fact.partner_number}: {fact.joined}; hum left in a uniform field {left}"
+        case PairParted():
+            what = f"Parted from {fact.partner_number}: {fact.reason}"
         case _:
             what = f"{plainly(fact.kind.removeprefix('coil_'))}{_fields(fact)}"
     return _moment(getattr(fact, "wall_time", "")), str(getattr(fact, "by", "")), what
