@@ -49,6 +49,11 @@ def test_a_lasting_open_or_short_is_told_and_a_bounce_is_not(ohm: float, kind: s
     assert found is not None
     assert found.kind == kind
     assert word in found.text
+    assert found.odds == pytest.approx(200.0)  # 1e-4 / (0.005 * 0.1^4), a break against five bounces alike
+    assert "odds 200 to 1 against a bouncing contact" in found.text
+    longer = find_alarm(update(lasting, Reading(726.0, ohm, 20.0))[0])
+    assert longer is not None
+    assert longer.odds == pytest.approx(2000.0)
     assert find_alarm(update(lasting, good(730.0))[0]) is None  # the contact is back
 
 
@@ -58,6 +63,7 @@ def test_shorted_turns_are_told() -> None:
     assert found.kind == "jump"
     assert "shorted turns" in found.text
     assert "at turn 780" in found.text
+    assert "odds of more than a million to 1" in found.text
 
 
 def test_half_a_coil_shorted_is_not_taken_for_another_wire() -> None:

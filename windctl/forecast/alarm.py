@@ -21,13 +21,19 @@ _OTHER_ODDS, _OTHER_SD = (
     0.15,
 )  # anything else that scales the resistance: core, count, wire; our judgement
 _MANY_GATED = 10
+# A contact that bounces, and a wire that is broken or shorted for good, per reading; how often a bounce shows
+# the same again in the next reading, and how often two other bounces agree. Our judgement.
+_BOUNCES, _BREAKS = 0.005, 1e-4
+_STAYS, _AGREE = 0.1, 1e-3
+_BELIEVED = 4  # readings that agree on a jump before it is one
+_MOST_ODDS = 1e6
 
 
 @dataclass(frozen=True, slots=True)
 class Alarm:
     """What is wrong: `kind` is "open", "short", "jump", "wire", "unsteady" or "doubt".
 
-    `odds`, for "wire" only: of the named reason against everything being right.
+    `odds`: of the named reason against everything being right, at most a million; None where none is named.
     """
 
     kind: str
@@ -44,16 +50,20 @@ def alarm(estimate: Estimate) -> str | None:
 def find_alarm(estimate: Estimate) -> Alarm | None:
     """The gravest alarm that the readings so far give cause for."""
     if estimate.open_run >= _RUN:
+        odds = _lasting(estimate.open_run, _STAYS)
         return Alarm(
             "open",
             f"the last {estimate.open_run} readings show an open circuit: the wire is broken or the contact "
-            "is off; hold, and look at the wire and the contact",
+            f"is off ({_against(odds)} a bouncing contact); hold, and look at the wire and the contact",
+            odds,
         )
     if estimate.zero_run >= _RUN:
+        odds = _lasting(estimate.zero_run, _STAYS)
         return Alarm(
             "short",
             f"the last {estimate.zero_run} readings show next to nothing: a short across the coil, to the "
-            "core, or between the leads; hold, and measure by hand",
+            f"core, or between the leads ({_against(odds)} a bouncing contact); hold, and measure by hand",
+            odds,
         )
     if estimate.jump is not None:
         return _jump(estimate.jump)
@@ -82,11 +92,22 @@ def _jump(jump: Surprise) -> Alarm:
         why = "shorted turns, a short to the core, or turns that were counted but not wound"
     else:
         why = "a bad joint or contact, or turns that were wound but not counted"
+    odds = _lasting(_BELIEVED, _AGREE)
     return Alarm(
         "jump",
         f"at turn {jump.turn:.0f} the readings went from {jump.expected_ohm:.1f} to {jump.seen_ohm:.1f} ohm "
-        f"and stayed there: {why}",
+        f"and stayed there: {why} ({_against(odds)} a bouncing contact)",
+        odds,
     )
+
+
+def _lasting(readings: int, again: float) -> float:
+    """Odds of a fault that lasts against so many bounces in a row, each like the one before with `again`."""
+    return min(_BREAKS / _BOUNCES / again ** (readings - 1), _MOST_ODDS)
+
+
+def _against(odds: float) -> str:
+    return f"odds {'of more than a million' if odds >= _MOST_ODDS else f'{odds:.0f}'} to 1 against"
 
 
 def _wire(estimate: Estimate) -> Alarm | None:
@@ -107,7 +128,8 @@ def _wire(estimate: Estimate) -> Alarm | None:
     steps, odds = likeliest(1.0 + off / grown, sqrt(before) / grown, read_sd / grown)
     side = "above" if off > 0.0 else "below"
     start = f"the resistance is {abs(100.0 * off / grown):.1f} % {side} what is expected of this coil"
-    against = f"odds {min(odds, 1e6):.0f} to 1 against the recipe's"
+    odds = min(odds, _MOST_ODDS)
+    against = f"{_against(odds)} the recipe's"
     if steps == 0:
         return Alarm(
             "wire", f"{start}: another wire, another core or a wrong count ({against}); check the spool", odds
