@@ -36,19 +36,19 @@ def test_a_published_interval_of_cp() -> None:
     assert (index.value, index.low, index.high) == pytest.approx((2.29, 1.57, 3.01), abs=0.0101)
 
 
-@pytest.mark.parametrize("centre", [0.0, 1.5])
+@pytest.mark.parametrize("centre", [0.0, 1.5, 4.0])
 def test_intervals_hold_as_often_as_they_say(centre: float) -> None:
-    """4000 drawn lots of 15: 95 % hold; four sampling sd are 1.4 %, and Cpk's is an approximation by 2 %."""
+    """2500 drawn lots of 15: 95 % hold; four sampling sd are 1.7 %, and Cpk's is an approximation by 2 %."""
     rng = np.random.default_rng(5)
     true_cp, true_cpk = 4.0 / 3.0, (4.0 - centre) / 3.0
     cp_holds = cpk_holds = 0
-    for lot in rng.normal(centre, 1.0, size=(4000, 15)).tolist():
+    for lot in rng.normal(centre, 1.0, size=(2500, 15)).tolist():
         found = capability(lot, -4.0, 4.0)
         assert found.cp is not None
         cp_holds += found.cp.low < true_cp < found.cp.high
         cpk_holds += found.cpk.low < true_cpk < found.cpk.high
-    assert cp_holds / 4000 == pytest.approx(0.95, abs=0.014)
-    assert cpk_holds / 4000 == pytest.approx(0.95, abs=0.034)
+    assert cp_holds / 2500 == pytest.approx(0.95, abs=0.018)
+    assert cpk_holds / 2500 == pytest.approx(0.95, abs=0.034)
 
 
 def test_one_limit_and_no_limit() -> None:

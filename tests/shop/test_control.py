@@ -66,6 +66,7 @@ def test_each_rule_says_since_when() -> None:
     assert _chart([0.1, 3.1, 0.2]) == [("W1", 1, 1, 1), ("N1", 1, 1, 1)]
     assert _chart([0.1, -2.1, 0.2, -2.2, 0.1]) == [("W2", 1, 3, -1), ("N5", 1, 3, -1)]
     assert _chart([0.1, 2.1, -0.2, -2.2, 0.1]) == []  # one on either side
+    assert _chart([-2.1, -2.2, 0.1, 0.2]) == [("W2", 0, 1, -1), ("N5", 0, 1, -1)]  # over with its last one
     assert _chart([0.2, 1.1, 1.2, 0.4, 1.3, 1.4, 0.2]) == [("W3", 1, 5, 1), ("N6", 1, 5, 1)]
     eight = [-0.2, 0.3, 0.1, 0.4, 0.2, 0.5, 0.3, 0.4, 0.2, -0.3]
     assert _chart(eight) == [("W4", 1, 8, 1)]

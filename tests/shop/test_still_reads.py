@@ -175,6 +175,13 @@ def test_a_change_begins_anew_and_a_slip_stays_alone() -> None:
     assert [reading.number for reading in shorted.now.readings] == [2, 3]
 
 
+def test_a_reading_that_cannot_tell_goes_with_the_others() -> None:
+    strange = replace(by_hand(OTHER, 7930.5, 20.0, None), number=2)
+    lived = life_of([_cold(7900, 1), strange])
+    assert [said and said.statement for said in lived.stills] == [None, "cannot be told"]
+    assert lived.now is not None and [reading.number for reading in lived.now.readings] == [1, 2]
+
+
 def test_an_assembled_coil_is_compared_with_itself_assembled() -> None:
     lived = life_of([_cold(7900, 1), _cold(7600, 2, bare=False), _cold(7605, 3, bare=False)])
     assert [said and said.before.number for said in lived.stills] == [None, 1, 2]
