@@ -229,3 +229,9 @@ def test_coils_laid_turn_by_turn_lie_within_their_intervals() -> None:
     assert 0.3 < math.sqrt(np.mean(np.square(zs))) < 1.5
     assert max(map(abs, zs)) < 3.0
     assert math.sqrt(np.mean(np.square(absolute))) < 1.5
+
+
+def test_no_measured_coil_at_all_is_no_trouble() -> None:
+    bare = lesson("a", spool="")
+    told = enclosed(known(bare), [bare], Experience())
+    assert told.rel(0) > 0.03

@@ -61,7 +61,7 @@ def pair(
     or coil:b1-2026-0001,b1-2026-0004.
 
     Hum is told for a uniform field and without steel, and for a source a metre away, which is the limit
-    that a room sets. Nothing is kept without --take.
+    that a room sets. Pairs are kept with --take alone; what is said of magnets is kept at once.
     """
     from windctl.desk.stock import Matched, Wish, matched, stock_of
     from windctl.shop.matching import Sitting

@@ -30,6 +30,7 @@ _TYPED = ("count_corrected", "wire_broke", "spliced")
 _POLELESS = "nobody said which pole is towards the strings: --north or --south"
 _UNFIT = "its resistance is far from that of so many turns: a shorted turn, another wire, a wrong count"
 MOST = 1000  # coils that are taken at once
+_RECENT = 500  # further coils whose lessons are heard; what older ones taught these know as well
 
 
 @dataclass(frozen=True, slots=True)
@@ -211,9 +212,14 @@ def _matched(book: Book, stock: Stock, wish: Wish, simulated: bool) -> Matched:
     if not coils:
         return Matched((), (), ())
     every = [one for one in stock.lessons if one.lesson.simulated == simulated and one.withdrawn is None]
-    together, experience, unfit = _learnt(book, every, {coil.lesson.lesson.source for coil in coils})
+    sources = {coil.lesson.lesson.source for coil in coils}
+    since = max(len(every) - _RECENT, 0)
+    heard = [one for at, one in enumerate(every) if at >= since or one.lesson.source in sources]
+    together, experience, unfit = _learnt(book, heard, sources)
     fit = [coil for coil in coils if _key(coil.lesson) not in unfit]
-    left_out = [LeftOut(coil.head.number, _UNFIT) for coil in coils if coil not in fit]
+    left_out = [LeftOut(coil.head.number, _UNFIT) for coil in coils if _key(coil.lesson) in unfit]
+    if not fit:
+        return Matched((), (), tuple(left_out))
     known = [
         Known(
             core_of(coil.recipe.bobbin),
