@@ -189,10 +189,13 @@ def test_an_import_says_what_was_refused(book: Path, tmp_path: Path, capsys: Pri
     assert "refused: coil b1-2026-0001: the book has another record under the same id" in said
     lines = file.read_bytes().splitlines(keepends=True)
     file.write_bytes(lines[0] + lines[1].replace(b'"turns":', b'"Turns":') + lines[2])
-    assert run(["coils", "import", str(file), "--book", str(tmp_path / "third.book")]) == 7
+    assert run(["coils", "import", str(file), "--by", "Demo Winder",
+                "--book", str(tmp_path / "third.book")]) == 7  # fmt: skip
     said = capsys.readouterr().out
     assert "1 coil imported" in said
     assert "refused: this export is not whole" in said
+    assert run(["coils", "show", "b1-2026-0003", "--book", str(tmp_path / "third.book")]) == 0
+    assert "by Demo Winder; teaches nothing" in capsys.readouterr().out
 
 
 def test_verify_takes_digests_from_elsewhere(book: Path, tmp_path: Path, capsys: Printed) -> None:

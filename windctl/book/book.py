@@ -15,7 +15,7 @@ from windctl.book.claims import Claim, claimed, held_against
 from windctl.book.exchange import Hand, Taken, lines_of, take_in
 from windctl.book.export import Restored, exported, shown
 from windctl.book.heads import CoilHead, coil_number, head_columns, opened
-from windctl.book.imports import next_serial
+from windctl.book.imports import imports_in, next_serial
 from windctl.book.lease import Lease
 from windctl.book.pairs import make_pairs, part_pair, stock_facts
 from windctl.book.queries import (
@@ -48,7 +48,7 @@ from windctl.book.verify import BrokenCoil, VerifyReport, verify_book, verify_co
 from windctl.book.words import first_words
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, RecordBroken
-from windctl.record.addenda import Addendum, PairMade, SpoolAdded
+from windctl.record.addenda import Addendum, CoilImported, PairMade, SpoolAdded
 from windctl.record.canonical import decode, encode
 from windctl.record.chain import genesis, link
 from windctl.record.curve import CurvePoint
@@ -202,6 +202,12 @@ class Book:
         Raises BookError when it is open, or the book has another one under the same id; nothing was changed.
         """
         return take_in(self._store, coil, hand)
+
+    def imported(self, coil: str) -> CoilImported | None:
+        """How a coil came here from another book; None where it was wound into this one."""
+        head = self.find(coil)
+        with self._store.reading() as connection:
+            return imports_in(connection).coils.get(head.id)
 
     def amend(self, coil: str, *facts: Addendum) -> None:
         """Say something of a closed coil: its record stays as it is. Raises BookError for an open one."""

@@ -26,6 +26,7 @@ from windctl.errors import QueryError, UsageError
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
+    from windctl.record.addenda import CoilImported
 
 _DENSE = ("status_heard", "reading_taken")  # thousands of them: counted, not listed
 # Of what was said since: who and when stand before it, and how far a meter was trusted is in the budget.
@@ -141,7 +142,7 @@ def show(shared: Shared, coil: str) -> None:
 
     with book_to_read(shared) as book:
         shown = book.show(coil)
-        head = book.find(coil)
+        head, imported = book.find(coil), book.imported(coil)
         picks_up = picks_up_of(book, head.id)
         partner = paired(book.addenda(head.id))
     if shared.json:
@@ -171,10 +172,18 @@ def show(shared: Shared, coil: str) -> None:
         ("goes with", "" if partner is None else partner.partner_number),
         ("program", head.program_digest),
         ("record", head.record_digest),
+        ("imported", "" if imported is None else _imported(imported)),
     ]
     present.pairs([(name, value) for name, value in rows if value])
     _show_events(shown["events"])
     _show_addenda(shown["addenda"])
+
+
+def _imported(fact: CoilImported) -> str:
+    """How a coil came from another book."""
+    when = fact.wall_time[:16].replace("T", " ")
+    known = "" if fact.recorded == fact.number else f"its record calls it {fact.recorded}; "
+    return f"{when} by {fact.by}; {known}{'teaches' if fact.teaches else 'teaches nothing'}"
 
 
 def _show_events(events: Any) -> None:
