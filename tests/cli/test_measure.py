@@ -11,7 +11,9 @@ from typing import Any
 import pytest
 
 from tests.cli import recipes
+from windctl.book.open import open_book
 from windctl.cli.main import run
+from windctl.paper.told import said_since
 
 Printed = pytest.CaptureFixture[str]
 
@@ -112,6 +114,11 @@ def test_inductance_and_resonance_are_kept_with_their_conditions(book: str, caps
     assert (kept["henry"], kept["quality"], kept["test_hz"]) == (2.31, 3.1, 1000.0)
     assert (kept["resonance_hz"], kept["load_pf"], kept["load_ohm"]) == (6200.0, 470.0, 1e6)
     assert kept["ohm"] is None
+    with open_book(Path(book), create=False, readonly=True) as opened:
+        said = said_since(opened.addenda("1")[-1])
+    assert said is not None
+    assert "inductance 2.31 H at 1 000 Hz" in said[2]
+    assert "resonance at 6 200 Hz with 470 pF and 1000 kohm across it" in said[2]
     assert run(["coils", "verify", "--book", book]) == 0
 
 
@@ -124,8 +131,6 @@ def test_what_does_not_go_together_is_refused(book: str, capsys: Printed) -> Non
 
 
 def test_what_left_the_bench_teaches_no_resistance(book: str, capsys: Printed) -> None:
-    from windctl.book.open import open_book
-
     def taught() -> int:
         with open_book(Path(book), create=False, readonly=True) as opened:
             return len(opened.lessons()[0].lesson.measured)

@@ -171,14 +171,35 @@ def said_since(fact: Addendum) -> tuple[str, str, str] | None:
 def _measured(fact: CoilMeasured) -> str:
     parts = []
     if fact.ohm is not None and fact.celsius is not None:
-        parts.append(f"{ohm(fact.ohm)} at {fact.celsius:.1f} °C, as the meter showed it")
+        parts.append(f"{ohm(fact.ohm)} at {fact.celsius:.1f} °C, as the meter showed it{_taken(fact)}")
     if fact.dcr_20c_ohm is not None:
         parts.append(f"{ohm(fact.dcr_20c_ohm)} at 20 °C without leads")
     if fact.grams is not None:
         parts.append(f"wire {with_uncertainty(fact.grams, _Z95 * (fact.grams_sd or 0.0), 'g')}")
     if fact.build_mm is not None:
         parts.append(f"build {with_uncertainty(fact.build_mm, _Z95 * (fact.build_sd_mm or 0.0), 'mm')}")
-    return f"Measured: {'; '.join(parts)}" if parts else "Measured"
+    at = "" if fact.test_hz is None else f" at {grouped(fact.test_hz)} Hz"
+    if fact.henry is not None:
+        parts.append(f"inductance {fact.henry:g} H{at}")
+    if fact.quality is not None:
+        parts.append(f"Q {fact.quality:g}{at}")
+    if fact.resonance_hz is not None:
+        parts.append(f"resonance at {grouped(fact.resonance_hz)} Hz{_loaded(fact)}")
+    stage = f", {fact.stage}" if fact.stage else ""
+    return f"Measured{stage}: {'; '.join(parts)}" if parts else f"Measured{stage}"
+
+
+def _taken(fact: CoilMeasured) -> str:
+    """Which meter, and how long after winding, where that was said."""
+    meter = f", {fact.meter}" if fact.meter else ""
+    return meter if fact.minutes is None else f"{meter}, {fact.minutes:g} min after winding"
+
+
+def _loaded(fact: CoilMeasured) -> str:
+    loads = [] if fact.load_pf is None else [f"{fact.load_pf:g} pF"]
+    if fact.load_ohm is not None:
+        loads.append(f"{fact.load_ohm / 1000:g} kohm" if fact.load_ohm >= 1000 else f"{fact.load_ohm:g} ohm")
+    return f" with {' and '.join(loads)} across it" if loads else ""
 
 
 def by(who: str) -> str:
