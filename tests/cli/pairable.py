@@ -56,7 +56,7 @@ def keep(book: Book, n: int, demo: Demo) -> str:
     plan = planned(demo.recipe, demo.text)
     first = started(
         n,
-        wall_time=f"2026-05-04T08:{n:02d}:00+02:00",
+        wall_time=f"2026-05-04T{8 + n // 60:02d}:{n % 60:02d}:00+02:00",
         recipe_name=plan.recipe_name,
         recipe_text=demo.text,
         prior=plan.prior,
