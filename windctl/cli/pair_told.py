@@ -160,7 +160,7 @@ def ending(found: Matched, *, take: bool, dry_run: bool) -> None:
         present.message(f"left out: {one.number}: {one.why}")
     if any(abs(each.pair.mismatch.mean) < each.pair.mismatch.sd for each in found.pairs):
         present.message(
-            "what is not known of cores and builds decides: a measured bobbin.core_perimeter_mm in the recipe "
+            "what is not known of cores and builds decides: a measured core_perimeter_mm in the recipe "
             "and a caliper's figure of each coil ('windctl coils measure COIL --build MM') tell them apart"
         )
     if found.pairs and dry_run:
