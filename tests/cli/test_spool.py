@@ -196,7 +196,7 @@ def test_a_finished_coil_is_measured_and_noted(book: str, recipe: str, capsys: P
     told = capsys.readouterr().out
     assert "noted by Demo Winder" in told
     assert "for the demo" in told
-    assert "grams 1.45" in told
+    assert "wire 1.450 ± 0.039 g" in told
 
 
 def test_a_slip_by_a_thousand_is_not_kept(book: str, recipe: str, capsys: Printed) -> None:

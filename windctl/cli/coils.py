@@ -29,9 +29,6 @@ if TYPE_CHECKING:
     from windctl.record.addenda import CoilImported
 
 _DENSE = ("status_heard", "reading_taken")  # thousands of them: counted, not listed
-# Of what was said since: who and when stand before it, and how far a meter was trusted is in the budget.
-_TRUST = ("kind", "wall_time", "by", "thermometer", "dcr_rel", "gain_rel", "noise_rel", "floor_ohm",
-          "lead_ohm", "lead_sd_ohm", "celsius_sd", "over_air_k", "over_air_sd_k")  # fmt: skip
 _UNTOLD = ("kind", "at_ms", "identity", "refused")
 
 
@@ -208,14 +205,27 @@ def _show_addenda(addenda: Any) -> None:
         if (told := pair_told.fact_words(fact)) is not None:
             present.result(told)
             continue
+        if fact["kind"] == "coil_measured":
+            present.result(_measured(fact))
+            continue
         said = [
             f"{name.replace('_', ' ')} {value:g}" if isinstance(value, float) else str(value)
             for name, value in fact.items()
-            if name not in _TRUST and value not in (None, "")
+            if name not in ("kind", "wall_time", "by") and value not in (None, "")
         ]
         when = fact["wall_time"][:16].replace("T", " ")
         kind = fact["kind"].removeprefix("coil_")
         present.result(f"{kind} by {fact['by']}, {when}: {', '.join(said)}")
+
+
+def _measured(fact: Mapping[str, Any]) -> str:
+    from windctl.paper.told import said_since
+    from windctl.record.addenda import CoilMeasured
+
+    said = said_since(CoilMeasured(**{name: value for name, value in fact.items() if name != "kind"}))
+    assert said is not None  # a measurement is always told
+    when, who, what = said
+    return f"measured by {who}, {when}{what.removeprefix('Measured')}"
 
 
 def _since(event: Mapping[str, Any]) -> str:
