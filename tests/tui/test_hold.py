@@ -12,10 +12,13 @@ from textual.widgets import Input
 from tests.tui.fakes import FakeWinding, StillSession, run_of
 from windctl.run.requests import Hold
 from windctl.tui.app import WindctlApp
+from windctl.tui.dialogs.choose import Choose
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.typed import Typed
 from windctl.tui.keymap import checked, ids
 from windctl.tui.screens.coil import CoilScreen
+from windctl.tui.screens.machine import MachineScreen
+from windctl.tui.screens.spools import SpoolsScreen
 from windctl.tui.screens.wind import WindScreen
 
 Opening = Callable[[Pilot[int]], Awaitable[None]]
@@ -64,7 +67,33 @@ async def coil(pilot: Pilot[int]) -> None:
     await app.push_screen(CoilScreen(app.session, "b1-2026-0001"))
 
 
+async def finding(pilot: Pilot[int]) -> None:
+    await pilot.press("f3", "slash")
+    assert isinstance(pilot.app.focused, Input)
+
+
+async def spools(pilot: Pilot[int]) -> None:
+    await pilot.press("f7")
+    assert isinstance(pilot.app.screen, SpoolsScreen)
+
+
+async def new_spool(pilot: Pilot[int]) -> None:
+    await pilot.press("f7", "a")
+    assert isinstance(pilot.app.focused, Input)
+
+
+async def machine(pilot: Pilot[int]) -> None:
+    await pilot.press("f9")
+    assert isinstance(pilot.app.screen, MachineScreen)
+
+
+async def machines(pilot: Pilot[int]) -> None:
+    await pilot.press("f9", "m")
+    assert isinstance(pilot.app.screen, Choose)
+
+
 EVERYWHERE = [nothing, note, tell, end, leave, help_, palette, coils, coil]
+EVERYWHERE += [finding, spools, new_spool, machine, machines]
 
 
 async def started(app: WindctlApp, pilot: Pilot[int], winding: FakeWinding) -> None:
@@ -87,7 +116,9 @@ async def test_f8_holds_everywhere(opening: Opening, tmp_path: Path) -> None:
         assert winding.requests == [Hold("operator", "the hold key")]
 
 
-@pytest.mark.parametrize("opening", [nothing, end, help_, coils, coil], ids=lambda one: one.__name__)
+@pytest.mark.parametrize(
+    "opening", [nothing, end, help_, coils, coil, spools, machines], ids=lambda one: one.__name__
+)
 async def test_space_holds_while_it_turns_and_nothing_is_typed(opening: Opening, tmp_path: Path) -> None:
     app, winding = WindctlApp(StillSession([tmp_path])), FakeWinding()
     async with app.run_test(size=(80, 24)) as pilot:

@@ -27,6 +27,7 @@ STATE = SpoolState(
     id="s1", wire="AWG 42, grade 1", insulation="", notes="", nominal_ohm_per_m=5.472,
     nominal_ohm_per_m_sd=0.22, ohm_per_m=5.527, ohm_per_m_sd=0.01, coils=3, taught_by=2, pieces=0,
     left_m=4000.0, left_sd_m=50.0, metres_each=1000.0, coils_left=3, unfit=(), withdrawn=(), facts=(),
+    coil_each="b1-2026-0147",
 )  # fmt: skip
 NOTHING = dict.fromkeys((field.key for field in spool_forms.NEW), "")
 

@@ -16,7 +16,7 @@ if TYPE_CHECKING:
     from windctl.desk.machine_look import Looked
     from windctl.desk.machines import KnownMachine
 
-_WIDE = 110  # cells, from which the limits have room
+_WIDE, _WIDEST = 110, 150  # cells, from which what was measured has room, and its limit
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,7 +113,7 @@ def band(looked: Looked) -> tuple[Look, Next]:
 
 def columns(width: int) -> tuple[str, ...]:
     """The columns of the check's table."""
-    return ("step", "verdict", "measured", "limit")[: 4 if width >= _WIDE else 2]
+    return ("step", "verdict", "measured", "limit")[: 2 + (width >= _WIDE) + (width >= _WIDEST)]
 
 
 def rows(looked: Looked, width: int) -> list[tuple[str, tuple[str | Look, ...]]]:

@@ -30,10 +30,10 @@ class CoilsScreen(Between):
     """A hundred coils a page."""
 
     ABOUT = (
-        "Every coil in the book, the latest first. / finds words in recipe, number and notes, and conditions "
-        "such as recipe:neck spool:s1 batch:118 verdict:outside since:2026-01 turns:7000..8000 note:splice; "
-        "not before one turns it round. F filters, S sorts. M marks coils, C compares them with the one that "
-        "was marked first. Y copies the page and writes it into a file. Enter shows a coil."
+        "Every coil in the book. / finds words in recipe, number and notes, and conditions such as "
+        "recipe:neck spool:s1 verdict:outside since:2026-01 turns:7000..8000 not note:splice. M marks coils, "
+        "C sets them beside the one marked first. Y copies the page and writes it into a file. Enter shows a "
+        "coil."
     )
     BINDINGS: ClassVar[list[BindingType]] = [
         key("coils.find"),
