@@ -75,7 +75,7 @@ class Questions:
         if self._prompt is None:
             self._give_up(snapshot)
             return
-        if snapshot.asks == "go" and not snapshot.virtual:
+        if snapshot.asks in ("go", "pass") and not snapshot.virtual:
             self._face.say(CAUTIONS)
         self._prompt.open_question()
         self._put_question(snapshot)
@@ -111,7 +111,7 @@ class Questions:
             self._face.say(f"{line!r} is not understood; help lists the words. {_question(snapshot)}")
         elif isinstance(request, End) and snapshot.turns <= 0:
             self._face.say("There is no turn to end the coil with; Ctrl-C leaves.")
-        elif isinstance(request, Go | Clear) and line.lower() != snapshot.asks:
+        elif isinstance(request, Go | Clear) and not _is_asked(request, snapshot.asks):
             self._face.say(_question(snapshot))
         else:
             if isinstance(request, Unwind) and request.turns is not None:
@@ -125,6 +125,10 @@ class Questions:
         if snapshot.hands.startswith(f"unwind {self._to_unwind:g} turns"):
             self._hand(-self._to_unwind)
             self._to_unwind = 0.0
+
+
+def _is_asked(request: Go | Clear, asks: str | None) -> bool:
+    return asks in ("go", "pass") if isinstance(request, Go) else asks == "clear"
 
 
 def _situation(snapshot: Snapshot) -> tuple[object, ...]:
@@ -153,6 +157,8 @@ _ANSWERS = {
     "reading": "Bare the wire at the guide, never on the coil, and touch the contact; or measure by hand and "
     "type read, what the meter shows and, where no thermometer is fitted, how warm it is.\n"
     f"skip and Enter passes the check over; {_MORE}",
+    "pass": f"Type go and Enter to let the guide move; {_MORE}",
+    "look": f"Type seen and Enter if so; hold and Enter if not, and put the guide right. {_MORE}",
     "place": f"Count the turns, then type turn, their number and Enter. {_MORE}",
 }
 

@@ -11,6 +11,7 @@ from windctl.run.requests import (
     Clear,
     CountIs,
     DrivesOff,
+    DryPass,
     End,
     Faster,
     Go,
@@ -19,6 +20,7 @@ from windctl.run.requests import (
     Note,
     Read,
     Request,
+    Seen,
     Skip,
     Slower,
     Splice,
@@ -63,6 +65,8 @@ WORDS = (
     Word(
         "read OHM [CELSIUS]", "the coil as the meter shows it, such as 5.93k 22.5, and how warm it is there"
     ),
+    Word("dry pass", "before the first turn: show the guide at both of its ends, nothing turning"),
+    Word("seen", "the guide stands right inside the flange"),
     Word("undo", "take the reading typed last back, until you go on or read again"),
     Word("skip", "pass over the check that is asked for"),
     Word("note TEXT", "write something into the record"),
@@ -142,6 +146,8 @@ _MEANS: dict[str, Callable[[str], Request | None]] = {
     "unwind": _at_a_turn(Unwind),
     "turn": _turn,
     "read": _read,
+    "dry pass": _alone(DryPass(BY)),
+    "seen": _alone(Seen(BY)),
     "undo": _alone(TakeBack(BY)),
     "skip": _alone(Skip(BY)),
     "note": _note,

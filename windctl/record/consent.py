@@ -18,6 +18,7 @@ from windctl.protocol.messages import (
 )
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
+from windctl.record.dry_pass import agreed, arrived, may_pass, nobody_agreed
 from windctl.record.events import Event, GoGiven
 from windctl.record.state import Fit, State
 
@@ -59,9 +60,10 @@ def _pedal_fitted(state: State) -> bool:
 
 
 def asks(state: State) -> str | None:
-    """What only a person can give now: "go", "clear", "reading", "place" or nothing.
+    """What only a person can give now: "go", "clear", "reading", "place", "pass", "look" or nothing.
 
     "reading": the coil stands for a check, and hands may go in.
+    "pass": the guide is about to move, before the first turn; "look": it stands where it is to be seen.
     "place": the board has lost the count or the guide's place, and a person has to say at which turn the coil
     stands.
     """
@@ -81,6 +83,10 @@ def asks(state: State) -> str | None:
         return None  # the drives are going off
     if _consented(state):
         return None
+    if agreed(state) is not None:
+        return "look" if arrived(state) else None
+    if nobody_agreed(state):
+        return None  # the drives are going off
     if (
         state.fit is Fit.FRESH
         and status.state != BoardState.DRIVES_OFF
@@ -89,7 +95,7 @@ def asks(state: State) -> str | None:
         return None  # still to be disarmed and set up
     if state.fit is Fit.SAME and status.trust != Trust.COUNT | Trust.GUIDE:
         return "place"
-    return "go"
+    return "pass" if state.pass_wanted and may_pass(state) else "go"
 
 
 def _contact_may_come(state: State) -> bool:

@@ -30,7 +30,7 @@ from windctl.record.wanting import wanted
 class Decision:
     """`events` to fold first; then `wants` for the board.
 
-    `asks` is "go", "clear", "reading", "place", "turn" or None: what only a person can give.
+    `asks` is "go", "clear", "reading", "place", "pass", "look", "turn" or None: what only a person can give.
     `blocked` says in words why the coil cannot go on by itself, where it cannot.
     """
 

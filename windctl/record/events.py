@@ -340,6 +340,37 @@ class PaceAsked:
 
 
 @dataclass(frozen=True, slots=True)
+class PassWanted:
+    """Before the first turn the guide is to be seen at both of its turn-rounds, nothing turning."""
+
+    kind: ClassVar[str] = "pass_wanted"
+    at_ms: int
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class PassAgreed:
+    """Consent to powering the drives and moving the guide there and back, void with the board's epoch."""
+
+    kind: ClassVar[str] = "pass_agreed"
+    at_ms: int
+    boot: int
+    epoch: int
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class GuideSeen:
+    """Somebody saw the guide, at `guide` motor steps, stand right inside a flange. `end`: "far", "start"."""
+
+    kind: ClassVar[str] = "guide_seen"
+    at_ms: int
+    guide: int
+    end: str
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
 class Unwound:
     """The spindle was turned back by hand with the drives off, from count `before` to `count`."""
 
@@ -406,6 +437,9 @@ Event = (
     | CheckTaken
     | ReadingTakenBack
     | PaceAsked
+    | PassWanted
+    | PassAgreed
+    | GuideSeen
     | Unwound
     | NoteMade
     | CoilFinished
@@ -440,6 +474,9 @@ KINDS: dict[str, type[Event]] = {
         CheckTaken,
         ReadingTakenBack,
         PaceAsked,
+        PassWanted,
+        PassAgreed,
+        GuideSeen,
         Unwound,
         NoteMade,
         CoilFinished,
@@ -449,4 +486,4 @@ KINDS: dict[str, type[Event]] = {
 DENSE = (StatusHeard, ReadingTaken)  # many a second: stored in chunks
 
 # Facts that must be durable before what they permit is done.
-BEFORE_ACTING = (CoilStarted, Resumed, GoGiven, ClearGiven, CountCorrected)
+BEFORE_ACTING = (CoilStarted, Resumed, GoGiven, PassAgreed, ClearGiven, CountCorrected)

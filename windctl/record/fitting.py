@@ -34,6 +34,12 @@ def _kept(state: State, identity: Identity) -> bool:
     )
 
 
+def same_place(state: State, identity: Identity) -> bool:
+    """The board was not reset since somebody consented to move its guide for this coil, and knows where it
+    is."""
+    return _kept(state, identity) and bool(identity.trust & Trust.GUIDE)
+
+
 def kept_guide(state: State, identity: Identity) -> bool:
     """The board still knows where it brought the guide for this coil."""
-    return state.let_go and _kept(state, identity) and bool(identity.trust & Trust.GUIDE)
+    return state.let_go and same_place(state, identity)

@@ -28,6 +28,7 @@ from windctl.protocol.messages import (
 )
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
+from windctl.record.dry_pass import START
 from windctl.record.events import (
     AlarmRaised,
     BoardGreeted,
@@ -41,12 +42,15 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    GuideSeen,
     HandsAsked,
     Held,
     HoldRequested,
     LinkLost,
     NoteMade,
     PaceAsked,
+    PassAgreed,
+    PassWanted,
     ReadingTaken,
     ReadingTakenBack,
     ReadingTyped,
@@ -60,7 +64,7 @@ from windctl.record.events import (
     WireBroke,
     WireChanged,
 )
-from windctl.record.fitting import fit_of, kept_guide
+from windctl.record.fitting import fit_of, kept_guide, same_place
 from windctl.record.state import Fit, State, setup_crc, touched
 from windctl.record.taking_back import kept, taken_back
 
@@ -88,7 +92,7 @@ def fold(state: State, event: Event) -> State:
         case CoilStarted():
             return replace(state, started=event, estimate=begin(event.prior))
         case Resumed():
-            return _link_gone(replace(state, hold=None, end=None, hands=None, link_lost=None))
+            return _link_gone(replace(_no_pass(state), hold=None, end=None, hands=None, link_lost=None))
         case BoardGreeted():
             return replace(
                 state,
@@ -102,6 +106,7 @@ def fold(state: State, event: Event) -> State:
                 before_typed=None,
                 link_lost=None,
                 guide_known=kept_guide(state, event.identity),
+                misplaced=state.misplaced and (state.let_go or same_place(state, event.identity)),
             )
         case GoGiven():
             return replace(
@@ -120,9 +125,9 @@ def fold(state: State, event: Event) -> State:
         case ClearGiven():
             return replace(state, clear=Permission(event.boot, event.epoch), refused=None)
         case HoldRequested():
-            return replace(state, hold=event, consent=None)
+            return replace(_no_pass(state), hold=event, consent=None)
         case EndRequested():
-            return replace(state, end=event, consent=None)
+            return replace(_no_pass(state), end=event, consent=None)
         case StopPointChosen():
             return replace(
                 state,
@@ -141,7 +146,7 @@ def fold(state: State, event: Event) -> State:
         case Tripped():
             return _tripped(state, event)
         case LinkLost():
-            return _link_gone(replace(state, link_lost=event))
+            return _link_gone(replace(_no_pass(state), link_lost=event))
         case CountCorrected():
             return _corrected(state, event)
         case HandsAsked():
@@ -162,6 +167,23 @@ def fold(state: State, event: Event) -> State:
             return replace(state, check=None, checks=checks, checked_count=state.count, before_typed=before)
         case ReadingTakenBack():
             return taken_back(state)
+        case PassWanted():
+            return replace(state, pass_wanted=True)
+        case PassAgreed():
+            return replace(
+                state,
+                pass_agreed=event,
+                seen_far=False,
+                boot=event.boot,
+                epoch=event.epoch,
+                hold=None,
+                hands=None,
+                refused=None,
+            )
+        case GuideSeen():
+            if event.end != START:
+                return replace(state, seen_far=True)
+            return replace(state, pass_wanted=False, pass_agreed=None, seen_far=False)
         case PaceAsked():
             return replace(state, pace_percent=event.percent)
         case Unwound():
@@ -181,6 +203,13 @@ def replay(events: Iterable[Event], state: State | None = None) -> State:
     for event in events:
         state = fold(state, event)
     return state
+
+
+def _no_pass(state: State) -> State:
+    """A dry pass ends where it is; the guide may stand anywhere between its ends."""
+    if state.pass_agreed is None:
+        return replace(state, pass_wanted=False) if state.pass_wanted else state
+    return replace(state, pass_wanted=False, pass_agreed=None, seen_far=False, misplaced=True)
 
 
 def _guided(state: State) -> bool:
@@ -208,8 +237,9 @@ def _went_on(state: State) -> State:
     return moving if state.status is None else _status(moving, state.status)
 
 
-def _tripped(state: State, event: Tripped) -> State:
+def _tripped(before: State, event: Tripped) -> State:
     """A trip for low tension comes with the turn that was short of it, so the wire broke about one before."""
+    state = _no_pass(before)
     low = event.trip == Trip.TENSION_LOW
     near = max(0.0, event.count / state.counts_per_turn - 1.0) if low else None
     return replace(state, tripped=event, consent=None, broke_near=near)
@@ -247,7 +277,7 @@ def _joined(state: State, estimate: Estimate | None) -> State:
 def _refused(state: State, refused: Refused) -> State:
     """A consent that the board declined is spent: another needs another word from a person."""
     if refused.command in (Arm.CODE, Go.CODE, GuideTo.CODE, SetDatum.CODE):
-        return replace(state, refused=refused, consent=None)
+        return replace(_no_pass(state), refused=refused, consent=None)
     if refused.command == ClearTrip.CODE:
         return replace(state, refused=refused, clear=None)
     return replace(state, refused=refused)

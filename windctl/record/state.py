@@ -24,6 +24,7 @@ from windctl.record.events import (
     Held,
     HoldRequested,
     LinkLost,
+    PassAgreed,
     Tripped,
     WireBroke,
 )
@@ -98,6 +99,9 @@ class State:
     checks: int = 0  # readings for which the coil was stopped, or the wire lay bare anyway
     checked_count: int | None = None  # where the last check was taken, or passed over
     before_typed: Before | None = None  # while a typed reading can be taken back
+    pass_wanted: bool = False  # the guide is to be seen at both ends before the first turn
+    pass_agreed: PassAgreed | None = None
+    seen_far: bool = False  # the guide was seen right at the far end; at its start is what is left
     pace_percent: int = 100  # of the planned cruising pace, that somebody wants at the most
     refused: Refused | None = None  # the last refusal since the last consent
     link_lost: LinkLost | None = None

@@ -8,6 +8,7 @@ from windctl.protocol.messages import Capability
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, GuidePlace, Permission, Sampling, Segments, Wants
 from windctl.record.consent import given
+from windctl.record.dry_pass import agreed, goal, nobody_agreed
 from windctl.record.program import place_at, unpacked
 from windctl.record.state import Fit, State, setup_crc
 
@@ -21,17 +22,21 @@ def wanted(state: State) -> Wants:
     assert started is not None
     hands = state.hands is not None and state.powered
     if state.hold is not None or state.end is not None:
-        return Wants(beat=True, hold=True, disarmed=hands, sampling=_sampling(state), clear_trip=state.clear)
+        off = hands or nobody_agreed(state)
+        return Wants(beat=True, hold=True, disarmed=off, sampling=_sampling(state), clear_trip=state.clear)
     if state.identity is None or permission is None:
         return Wants(beat=True)
     consent = given(state)
     drives_off = state.status is not None and state.status.state == BoardState.DRIVES_OFF
     to_declare = state.fit in (Fit.FRESH, Fit.CORRECTED)  # until it turns, we say where the coil stands
-    setting_up = to_declare and not state.consented_since_greeting and not drives_off
+    dry = agreed(state)
+    setting_up = to_declare and not state.consented_since_greeting and dry is None and not drives_off
     to_set_up = setting_up and state.identity.setup_crc != setup_crc(started)
     to_go = consent if state.stop_point is not None and state.stop_point > state.count else None
     guide, datum = None, None
-    if state.misplaced:
+    if dry is not None and not drives_off:
+        guide = GuidePlace(goal(state), started.guide_pace, dry)
+    elif state.misplaced:
         if state.powered and consent is not None:
             place = _place(state)
             guide = GuidePlace(place.guide, started.guide_pace, consent)
@@ -42,11 +47,11 @@ def wanted(state: State) -> Wants:
     return Wants(
         beat=True,
         setup=started.setup,
-        disarmed=to_set_up or hands,
+        disarmed=to_set_up or hands or nobody_agreed(state),
         guide=guide,
         datum=datum,
         program=Segments(started.program_id, unpacked(started.program_packed)),
-        armed=consent if drives_off else None,
+        armed=(consent or dry) if drives_off else None,
         pace=_pace(state),
         stop_point=state.stop_point,
         go=None if drives_off else to_go,

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from windctl.record.decide import Decision
+from windctl.record.dry_pass import FAR, START, goal, may_pass
 from windctl.record.events import (
     CheckTaken,
     ClearGiven,
@@ -10,9 +11,12 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    GuideSeen,
     HandsAsked,
     HoldRequested,
     NoteMade,
+    PassAgreed,
+    PassWanted,
     ReadingTakenBack,
     Spliced,
     WireBroke,
@@ -25,6 +29,7 @@ from windctl.run.requests import (
     Clear,
     CountIs,
     DrivesOff,
+    DryPass,
     End,
     Faster,
     Go,
@@ -33,6 +38,7 @@ from windctl.run.requests import (
     Note,
     Read,
     Request,
+    Seen,
     Skip,
     Slower,
     Splice,
@@ -57,13 +63,24 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
         case Note():
             return Answer((NoteMade(at_ms, request.text, request.by),), "noted")
         case Go():
-            if permission is None or leaving or decision.asks != "go":
+            if permission is None or leaving or decision.asks not in ("go", "pass"):
                 return Answer()  # a go that was not asked for starts nothing
+            if decision.asks == "pass":
+                return Answer((PassAgreed(at_ms, permission.boot, permission.epoch, request.by),))
             return Answer((GoGiven(at_ms, permission.boot, permission.epoch, request.by),))
         case Clear():
             if permission is None or leaving or decision.asks != "clear":
                 return Answer()
             return Answer((ClearGiven(at_ms, permission.boot, permission.epoch, request.by),))
+        case DryPass():
+            if leaving or not may_pass(state) or state.pass_wanted:
+                return Answer(says="a dry pass comes before the first turn, where a motor guides")
+            return Answer((PassWanted(at_ms, request.by),), "first a dry pass of the guide")
+        case Seen():
+            if leaving or decision.asks != "look":
+                return Answer(says="the guide is not where it is to be looked at")
+            end = START if state.seen_far else FAR
+            return Answer((GuideSeen(at_ms, goal(state), end, request.by),))
         case Slower() | Faster():
             return paced(request, state, at_ms)
         case TakeBack():

@@ -110,6 +110,20 @@ class Skip:
 
 
 @dataclass(frozen=True, slots=True)
+class DryPass:
+    """Before the first turn, the guide is to be seen at both of its turn-rounds."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class Seen:
+    """The guide stands right where it is."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
 class TakeBack:
     """The reading typed last was a mistake."""
 
@@ -144,6 +158,8 @@ Request = (
     | Unwind
     | Read
     | Skip
+    | DryPass
+    | Seen
     | TakeBack
     | Slower
     | Faster

@@ -31,6 +31,7 @@ from windctl.record.events import (
     Event,
     GoGiven,
     HoldRequested,
+    PassAgreed,
     ReadingTaken,
     StatusHeard,
 )
@@ -239,6 +240,8 @@ class Runner:
             return ()
         if not state.identity.capabilities & Capability.VIRTUAL:
             return ()
+        if decision.asks == "pass":
+            return (PassAgreed(self._at_ms(), permission.boot, permission.epoch, "virtual"),)
         if decision.asks == "clear" and state.fit is Fit.FRESH:
             return (ClearGiven(self._at_ms(), permission.boot, permission.epoch, "virtual"),)
         by_itself = state.held is None or state.held.cause in (Cause.STOP_POINT, Cause.QUEUE_END)

@@ -169,6 +169,8 @@ def _says(state: State, decision: Decision) -> str:
         return "at rest: the reading settles"
     if phase == "stopping":
         return "stopping"
+    if state.pass_agreed is not None or decision.asks in ("pass", "look"):
+        return _says_pass(state, decision)
     if decision.asks == "go":
         return "waits for go"
     return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[
@@ -195,6 +197,16 @@ def _says_held(state: State, decision: Decision) -> str:
     if state.held is None:
         return "held"
     return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
+
+
+def _says_pass(state: State, decision: Decision) -> str:
+    """The dry pass of the guide."""
+    end = "its start" if state.seen_far else "its far end"
+    if decision.asks == "pass":
+        return "a dry pass: the guide will move, nothing turns"
+    if decision.asks == "look":
+        return f"the guide stands at {end}: is it inside the flange, and free?"
+    return f"the guide moves to {end}, nothing turns"
 
 
 def _says_check(state: State) -> str:

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import tomllib
+from collections.abc import Mapping
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from windctl.desk.numbers import counted, duration, grouped, ohm, turns
@@ -12,6 +15,7 @@ if TYPE_CHECKING:
     from windctl.plan.model import Plan
     from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe
+    from windctl.tui.recipes import Preview
 
 _Z95 = 1.959964
 
@@ -78,13 +82,67 @@ def _wire(recipe: Recipe) -> str:
     return ", ".join(part for part in (size, coat, wire.insulation or "") if part)
 
 
-def since_last(last: CoilHead | None, recipe: Recipe, plan: Plan) -> str:
-    """What this coil repeats of the last one of its recipe, and what is different."""
-    if last is None:
-        return "The first coil of this recipe in the book."
-    same_recipe = last.recipe_digest == recipe.digest
-    same_program = last.program_digest == plan.program.digest
-    if same_recipe and same_program:
-        return f"The same as {last.number}: recipe, seed and program to the last byte."
-    what = "the recipe was changed" if not same_recipe else "the machine's profile gives another program"
-    return f"Not the same as {last.number}: {what}."
+@dataclass(frozen=True, slots=True)
+class Repeats:
+    """What the book knows of a recipe before its next coil: its last coil, and the batch so far."""
+
+    head: CoilHead | None = None
+    recipe_text: str = ""
+    in_batch: int = 0  # coils of the batch that are in the book
+
+
+def repeats(last: Repeats, preview: Preview, text: str, batch: str, of: int) -> tuple[tuple[str, str], ...]:
+    """What this coil repeats of the last one of its recipe, and what is different, in a few rows."""
+    plan, head = preview.plan, last.head
+    seed = preview.recipe.lay.seed
+    seeded = "" if seed is None else f", seed {seed}"
+    rows = [("batch", _place(batch, of, last.in_batch))] if batch else []
+    if head is None:
+        return (*rows, ("last", f"none: the first of this recipe in the book{seeded}"))
+    rows.append(("last", f"{head.number}, {_ended(head)}"))
+    same = head.program_digest == plan.program.digest
+    rows.append(("program", f"{'the same to the last byte' if same else 'another one'}{seeded}"))
+    spool = plan.learnt.spool
+    if spool != head.spool:
+        rows.append(("spool", f"{spool or 'none named'}; last time {head.spool or 'none'}"))
+    changed = differences(last.recipe_text, text)
+    rows.append(("recipe", f"changed: {changed}" if changed else "the same to the letter"))
+    return tuple(rows)
+
+
+def _place(batch: str, of: int, wound: int) -> str:
+    if of and wound >= of:
+        return f"{batch}: all {of} are begun already, this is one more"
+    return f"{batch}: this is {wound + 1}{f' of {of}' if of else ''}"
+
+
+def _ended(head: CoilHead) -> str:
+    if head.outcome == "finished":
+        return f"finished, {head.verdict}"
+    return head.outcome
+
+
+def differences(before: str, now: str, most: int = 2) -> str:
+    """The keys of a recipe that differ between two texts, with both values; empty where none does."""
+    try:
+        was, is_ = (_flat(tomllib.loads(text)) for text in (before, now))
+    except tomllib.TOMLDecodeError:
+        return "" if before == now else "the recipe's text"
+    keys = [key for key in sorted(was.keys() | is_.keys()) if was.get(key) != is_.get(key)]
+    told = [f"{key} {_value(was.get(key))} → {_value(is_.get(key))}" for key in keys[:most]]
+    more = [f"{len(keys) - most} more"] if len(keys) > most else []
+    return ", ".join(told + more)
+
+
+def _flat(table: Mapping[str, object], within: str = "") -> dict[str, object]:
+    out: dict[str, object] = {}
+    for name, value in table.items():
+        if isinstance(value, dict):
+            out |= _flat(value, f"{within}{name}.")
+        else:
+            out[f"{within}{name}"] = value
+    return out
+
+
+def _value(value: object) -> str:
+    return "–" if value is None else str(value)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from windctl.desk.numbers import ohm, turns
+from windctl.desk.numbers import counted, ohm, turns
 from windctl.tui.looks import OUTCOMES, VERDICTS, Look, look_of
 from windctl.tui.view import Next
 
@@ -34,6 +34,12 @@ def outcome_words(outcome: Outcome, truth: str = "") -> tuple[Look, str]:
         text = ohm(summary.dcr_20c_ohm, summary.dcr_u95_ohm or 0.0)
         parts.append(f"{text.replace('kohm', 'kΩ').replace('ohm', 'Ω')} at 20 °C")
     parts.append(f"record {outcome.record_digest[:8]}")
+    again = outcome.waiting
+    judged = summary.outcome == "finished" and summary.target_kind != "turns"
+    if again is not None and judged and summary.verdict != "within":
+        cold = ohm(again.ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
+        minutes = counted(again.minutes, "minute")
+        parts.append(f"still warm: wait {minutes} and read again, cold it should show {cold}")
     if truth:
         parts.append(f"really {truth}")
     return look, " · ".join(parts)

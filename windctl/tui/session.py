@@ -15,8 +15,10 @@ from typing import TYPE_CHECKING
 
 from windctl.desk.asked import Shared
 from windctl.desk.books import book_to_read, book_to_write
+from windctl.desk.numbers import ohm
 from windctl.errors import RecordBroken
-from windctl.run.requests import Hold
+from windctl.run.requests import DryPass, Hold
+from windctl.tui.before_words import Repeats
 from windctl.tui.cards import card_for
 from windctl.tui.pictures.curve import Point
 from windctl.tui.records import Records, points_of
@@ -93,16 +95,23 @@ class Session(Records):
 
         return recipes.preview(one, self.profile, supply_for)
 
-    def last_of(self, recipe: str) -> CoilHead | None:
-        """The coil of this recipe that was begun last."""
+    def repeats(self, recipe: str, batch: str) -> Repeats:
+        """The coil of this recipe that was begun last, and how far the batch is."""
+        from windctl.record.events import CoilStarted
+
         with self._book() as book:
-            heads = () if book is None else book.list(recipe=recipe, limit=1)
-        return heads[0] if heads else None
+            if book is None:
+                return Repeats()
+            heads = book.list(recipe=recipe, limit=1)
+            started = next(iter(book.events(heads[0].number)), None) if heads else None
+            text = started.recipe_text if isinstance(started, CoilStarted) else ""
+            return Repeats(heads[0] if heads else None, text, book.count(batch=batch) if batch else 0)
 
     # ------------------------------------------------------------ a coil
 
-    def begin(self, preview: Preview, batch: str = "", of: int = 0) -> Run:
-        """Open the machine, number the coil, and start its run. Raises WindctlError; nothing is open then."""
+    def begin(self, preview: Preview, batch: str = "", of: int = 0, *, dry_pass: bool = False) -> Run:
+        """Open the machine, number the coil, and start its run, where wanted with a dry pass of the guide
+        first. Raises WindctlError; nothing is open then."""
         from windctl.run.wind import Order, begin
 
         with ExitStack() as stack:
@@ -118,6 +127,8 @@ class Session(Records):
             )
             place = book.count(batch=batch) + 1 if batch else 0
             winding = begin(order, book, bench.port, bench.here)
+            if dry_pass:
+                winding.request(DryPass("operator"))
             recipe = preview.recipe
             card = card_for(recipe.name, winding.number, bench.name, preview.plan, recipe.stop)
             card = replace(card, batch=batch, of=of, place=place, depth_mm=recipe.bobbin.flange_depth_mm)
@@ -215,9 +226,8 @@ class Session(Records):
                     self.run = None
                     if self._bench is not None and self._bench.truth is not None:
                         truth = self._bench.truth()
-                        run.truth = (
-                            f"{truth.true_turns:.2f} turns, {truth.true_dcr_20c_ohm / 1000:.3f} kΩ at 20 °C"
-                        )
+                        really = ohm(truth.true_dcr_20c_ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
+                        run.truth = f"{truth.true_turns:.2f} turns, {really} at 20 °C"
                     stack.close()
             return run.outcome
 

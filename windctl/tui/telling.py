@@ -17,12 +17,15 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    GuideSeen,
     HandsAsked,
     Held,
     HoldRequested,
     LinkLost,
     NoteMade,
     PaceAsked,
+    PassAgreed,
+    PassWanted,
     ReadingTakenBack,
     ReadingTyped,
     Resumed,
@@ -94,6 +97,12 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             return f"read at turn {grouped(event.turn)} by {_by(event.by)}: {read}"
         case ReadingTakenBack():
             return f"the reading typed last is taken back by {_by(event.by)}"
+        case PassWanted():
+            return "a dry pass of the guide is to come first"
+        case PassAgreed():
+            return f"go for the dry pass, given by {_by(event.by)}"
+        case GuideSeen():
+            return f"the guide was seen right at its {event.end} end by {_by(event.by)}"
         case PaceAsked():
             return f"at most {event.percent} % of the planned pace, asked for by {_by(event.by)}"
         case CheckTaken():

@@ -141,9 +141,15 @@ def next_of(snapshot: Snapshot) -> Next:
     if snapshot.can_take_back and snapshot.asks in (None, "go") and snapshot.phase == "held":
         goes_on = ", G goes on" if snapshot.asks == "go" else ""
         return Next(_sentence(snapshot.says), "", f"U takes the reading back{goes_on}")
+    if snapshot.alarm and snapshot.phase == "held" and snapshot.asks == "go":
+        return Next("see the alarm below, and look to it", "", "T tells what you did, G goes on")
     if snapshot.asks == "go":
         word = "goes on" if snapshot.turns > 0 else "starts"
         return Next(_sentence(snapshot.says), "", f"{word} when you press G")
+    if snapshot.asks == "pass":
+        return Next(_sentence(snapshot.says), "", "G lets the guide move")
+    if snapshot.asks == "look":
+        return Next(_sentence(snapshot.says), "", "Y: it is right · F8: it is not")
     if snapshot.asks == "clear":
         return Next(_sentence(snapshot.says), "", "put it right, then press C")
     if snapshot.asks == "place":

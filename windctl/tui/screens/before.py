@@ -11,7 +11,7 @@ from textual.containers import Horizontal, Vertical
 from textual.widgets import Input, Static
 
 from windctl.errors import WindctlError
-from windctl.tui.before_words import checklist, figures_of, orientation_of, since_last
+from windctl.tui.before_words import checklist, figures_of, orientation_of, repeats
 from windctl.tui.dialogs.say import Say
 from windctl.tui.keymap import key
 from windctl.tui.screens.room import Room
@@ -30,9 +30,10 @@ class BeforeScreen(Room):
 
     ABOUT = (
         "Mount the bobbin as drawn and confirm line by line with Enter. S opens the machine and sets it up; "
-        "on a real machine nothing turns before you have typed go, or pressed the pedal."
+        "on a real machine nothing turns before you have typed go, or pressed the pedal. In a dry pass the "
+        "guide first goes to its far turn-round and back, and you see whether it stays inside both flanges."
     )
-    BINDINGS: ClassVar[list[BindingType]] = [key("before.start"), key("back")]
+    BINDINGS: ClassVar[list[BindingType]] = [key("before.start"), key("before.pass"), key("back")]
 
     def __init__(self, session: Session, preview: Preview, batch: str = "", of: int = 0) -> None:
         super().__init__(session)
@@ -40,6 +41,8 @@ class BeforeScreen(Room):
         self._batch = batch or session.shared.batch or ""
         self._of = of or session.shared.of or 0
         self._opening = False
+        guided = session.profile.guide.kind == "step"
+        self.dry_pass = guided and not session.simulated
 
     def heading(self) -> str:
         """The recipe."""
@@ -53,8 +56,9 @@ class BeforeScreen(Room):
                 yield OrientationDrawing(
                     orientation_of(recipe), recipe.coil.mounted == "face out", id="orientation"
                 )
-                yield Static("", id="before-facts", classes="quiet", markup=False)
                 yield Figures(figures_of(self.preview.plan), id="before-figures")
+                yield Static("", classes="before-gap", markup=False)
+                yield Figures(wrapped=True, id="before-repeats")
             with Vertical(id="before-right"):
                 yield Static("Check, then confirm each line", classes="heading", markup=False)
                 items = checklist(recipe, self.session.profile, self.session.simulated)
@@ -90,16 +94,27 @@ class BeforeScreen(Room):
         self.query_one(Figures).show(figures_of(made.plan))
         self.compare()
 
-    @work(thread=True, group="compare")
+    @on(Input.Changed)
+    def batch_changed(self) -> None:
+        """Another batch, another place in it."""
+        self.compare()
+
+    @work(thread=True, exclusive=True, group="compare")
     def compare(self) -> None:
         """What this coil repeats."""
+        batch, of = self._batch_and_number()
         try:
-            last = self.session.last_of(self.preview.recipe.name)
+            last = self.session.repeats(self.preview.recipe.name, batch)
         except WindctlError as error:
-            words = str(error)
+            rows: tuple[tuple[str, str], ...] = (("book", str(error)),)
         else:
-            words = since_last(last, self.preview.recipe, self.preview.plan)
-        self.app.call_from_thread(self.query_one("#before-facts", Static).update, words)
+            rows = repeats(last, self.preview, self.preview.listed.text, batch, of)
+        self.app.call_from_thread(self.query_one("#before-repeats", Figures).show, rows)
+
+    def _batch_and_number(self) -> tuple[str, int]:
+        batch = self.query_one("#batch", Input).value.strip()
+        of = self.query_one("#batch-of", Input).value.strip()
+        return batch, int(of) if of.isdecimal() and batch else 0
 
     @on(Checklist.Changed)
     def changed(self, event: Checklist.Changed) -> None:
@@ -112,7 +127,18 @@ class BeforeScreen(Room):
             if complete
             else "□ Confirm each line with Enter; then S starts."
         )
-        self.query_one("#before-state", Static).update(words)
+        self.query_one("#before-state", Static).update(f"{words}{self._pass_words()}")
+
+    def _pass_words(self) -> str:
+        if self.session.profile.guide.kind != "step":
+            return ""
+        return f"\nDry pass of the guide first: {'yes' if self.dry_pass else 'no'} (P)"
+
+    def action_dry_pass(self) -> None:
+        """With a dry pass or without."""
+        if self.session.profile.guide.kind == "step":
+            self.dry_pass = not self.dry_pass
+            self._say(self.query_one(Checklist).complete)
 
     def action_back(self) -> None:
         """To the recipes."""
@@ -126,15 +152,13 @@ class BeforeScreen(Room):
         if self._opening:
             return
         self._opening = True
-        batch = self.query_one("#batch", Input).value.strip()
-        of = self.query_one("#batch-of", Input).value.strip()
-        self.begin(batch, int(of) if of.isdecimal() and batch else 0)
+        self.begin(*self._batch_and_number(), self.dry_pass)
 
     @work(thread=True, exclusive=True, group="begin")
-    def begin(self, batch: str, of: int) -> None:
+    def begin(self, batch: str, of: int, dry_pass: bool) -> None:
         """Open the machine."""
         try:
-            run = self.session.begin(self.preview, batch, of)
+            run = self.session.begin(self.preview, batch, of, dry_pass=dry_pass)
         except WindctlError as error:
             self.app.call_from_thread(self.failed, str(error))
         else:

@@ -52,6 +52,11 @@ _WHILE_IT_RUNS = (
 )
 
 
+def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
+    """What keys come and go with."""
+    return (snapshot.can_take_back, snapshot.asks == "look")
+
+
 class WindScreen(WindQuestions):
     """Looks at the run ten times a second, draws as often as the line takes it; asks for what is pressed."""
 
@@ -69,6 +74,7 @@ class WindScreen(WindQuestions):
         key("wind.faster"),
         key("wind.read", show=False),
         key("wind.undo", show=False),
+        key("wind.seen"),
         key("wind.end"),
         key("wind.leave"),
         key("wind.note"),
@@ -131,7 +137,7 @@ class WindScreen(WindQuestions):
         before, self.latest = self.latest, snapshot
         if self.ended is None:
             self.consider_reading(before, snapshot)
-        if before is not None and before.can_take_back != snapshot.can_take_back:
+        if before is not None and _keys_of(before) != _keys_of(snapshot):
             self.refresh_bindings()
         hand = self.coil.hand
         agreed = (snapshot.hands or "").startswith(f"unwind {self._to_unwind:g} turns")
@@ -257,6 +263,8 @@ class WindScreen(WindQuestions):
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keys of a running coil end with it."""
         running = self.outcome is None
+        if action == "seen":
+            return running and self.latest is not None and self.latest.asks == "look"
         if action == "undo":
             return running and self.latest is not None and self.latest.can_take_back
         if action in _WHILE_IT_RUNS:

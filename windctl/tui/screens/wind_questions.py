@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from windctl.desk.words import request_of
-from windctl.run.requests import Clear, End, Faster, Go, Note, Slower, TakeBack, Unwind
+from windctl.run.requests import Clear, End, Faster, Go, Note, Seen, Slower, TakeBack, Unwind
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.read import ReadingPrompt
 from windctl.tui.dialogs.tell import Tell, said
@@ -37,11 +37,13 @@ class WindQuestions(Room):
     def action_go(self) -> None:
         """Consent to a start, by a typed word."""
         snapshot = self.coil.winding.look()
-        if snapshot.asks != "go":
+        if snapshot.asks not in ("go", "pass"):
             self.notify("nothing waits for a go", markup=False)
             return
         words = CAUTIONS if not snapshot.virtual else "The simulated machine will turn."
-        if snapshot.turns > 0:
+        if snapshot.asks == "pass":
+            words = f"The guide goes to its far turn-round and back; nothing turns.\n\n{CAUTIONS}"
+        elif snapshot.turns > 0:
             words = f"{snapshot.says}.\n\n{words}"
         self.app.push_screen(Word("Go?", words, "go"), self._went)
 
@@ -105,6 +107,10 @@ class WindQuestions(Room):
     def _noted(self, line: str | None) -> None:
         if line is not None:
             self.coil.winding.request(Note("operator", line))
+
+    def action_seen(self) -> None:
+        """The guide stands right where it is."""
+        self.coil.winding.request(Seen("operator"))
 
     def action_slower(self) -> None:
         """A tenth of the planned pace less."""
