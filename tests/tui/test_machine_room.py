@@ -106,6 +106,11 @@ def test_a_step_is_told_with_its_limit_and_what_to_look_at() -> None:
     looked = replace(LOOKED, results=(fault,))
     assert machine_view.about(looked, "line") == "Line: 12 reports · wanted 36 to 44 · look at the cable"
     assert machine_view.summed_up(looked) == "✖ 1 fault, 0 of 1 good"
+    assert machine_view.summed_up(replace(LOOKED, stopped=True, results=(fault,)[:0])) == ""
+    good = replace(fault, verdict=Verdict.GOOD)
+    assert machine_view.summed_up(replace(looked, results=(good,), stopped=True)) == (
+        "○ stopped: 0 faults, 1 of 1 good"
+    )
     assert "hardware stop" in machine_view.summed_up(replace(looked, unconfirmed=True))
     rows = dict(machine_view.rows(replace(looked, checking=True, step="limits"), 80))
     assert rows["line"] == ("Line", STEPS["fault"])
@@ -192,6 +197,11 @@ async def test_a_calibration_is_kept_after_its_difference_was_shown(tmp_path: Pa
         await pilot.press("o")
         await pilot.pause(0.3)
         assert "[red]x[/]" in app.export_screenshot()
+        assert "SIMULATED" not in app.export_screenshot()
+        virtual = replace(BOARD, virtual=True)
+        session.fake.shown = replace(looked, board=virtual)
+        await pilot.pause(0.15)
+        assert "SIMULATED" in app.export_screenshot()  # a board that says so is marked, whatever its port
         assert "K keeps" in str(room.query_one("#check-about", Static).content)
         await pilot.press("k")
         question = app.screen

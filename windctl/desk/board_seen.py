@@ -63,6 +63,7 @@ class BoardSeen:
     celsius: float | None
     bad_frames: int
     boot: int
+    virtual: bool = False  # it says of itself that it simulates
 
 
 def board_seen(picture: BoardPicture, reading: Reading | None, profile: MachineProfile) -> BoardSeen | None:
@@ -100,6 +101,7 @@ def board_seen(picture: BoardPicture, reading: Reading | None, profile: MachineP
         celsius=status.celsius / 100 if has & Capability.THERMOMETER else None,
         bad_frames=status.bad_frames,
         boot=status.boot,
+        virtual=bool(has & Capability.VIRTUAL),
     )
 
 

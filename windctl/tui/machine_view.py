@@ -159,7 +159,7 @@ def summed_up(looked: Looked) -> str:
         return ""
     faults = sum(one.verdict.value == "fault" for one in looked.results)
     good = sum(one.verdict.value == "good" for one in looked.results)
-    glyph = "✖" if faults else "✔"
+    glyph = "✖" if faults else "○" if looked.stopped else "✔"
     stopped = "stopped: " if looked.stopped else ""
     many = "1 fault" if faults == 1 else f"{faults} faults"
     words = f"{glyph} {stopped}{many}, {good} of {len(looked.results)} good"

@@ -13,6 +13,7 @@ if TYPE_CHECKING:
 
 _COLUMNS = ("", "spool", "wire", "left", "enough for", "wound", "known from")
 _WIDE = 110  # cells, from which the last column has room
+_WIRE = 22  # cells for a wire on a narrower screen
 CHOSEN = Look("next", "▶", "good")
 
 _FEW = 2  # coils: time to order wire
@@ -41,7 +42,7 @@ def row(state: SpoolState, chosen: bool, width: int) -> tuple[str | Look, ...]:
     cells = (
         CHOSEN if chosen else "",
         state.id,
-        state.wire,
+        state.wire if width >= _WIDE or len(state.wire) <= _WIRE else state.wire[: _WIRE - 1] + "…",
         words.left(state),
         stock(state),
         str(state.coils),

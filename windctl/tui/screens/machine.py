@@ -22,6 +22,7 @@ from windctl.tui.screens.between import Between
 from windctl.tui.widgets.lamps import Lamps
 from windctl.tui.widgets.state_band import StateBand
 from windctl.tui.widgets.table import Table
+from windctl.tui.widgets.title_bar import TitleBar
 
 if TYPE_CHECKING:
     from windctl.desk.machine_look import Looked
@@ -113,6 +114,8 @@ class MachineScreen(Between):
             self.query_one(StateBand).show(*machine_view.not_open(words))
             return
         before, self.looked = self.looked, looked
+        virtual = looked.board is not None and looked.board.virtual
+        self.query_one(TitleBar).show("Machine", virtual or self.session.simulated)
         if before == looked:
             return
         self.query_one(StateBand).show(*machine_view.band(looked))
