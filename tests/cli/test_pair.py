@@ -350,3 +350,12 @@ def test_a_stock_beyond_what_can_be_taken_at_once_is_refused_before_it_is_read(
     assert run(["pair", "--book", str(six)]) == 2
     assert "6 coils are in stock, more than the 5" in capsys.readouterr().err
     assert len(asked(capsys, six, "--batch", "lot 2")["pairs"]) == 1
+
+
+def test_a_withdrawn_coil_still_has_its_partner_and_that_is_said(six: Path, capsys: Printed) -> None:
+    asked(capsys, six, "--take")
+    assert run(["coils", "withdraw", "1", "--reason", "scratched", "--book", str(six)]) == 0
+    assert f"{number(4)} still goes with it" in capsys.readouterr().err
+    assert run(["coils", "unpair", "1", "--reason", "the other is good", "--book", str(six)]) == 0
+    capsys.readouterr()
+    assert asked(capsys, six)["alone"] == [number(4)]

@@ -63,15 +63,21 @@ def withdraw(shared: Shared, coil: str, reason: str, undo: bool, by: str | None)
 
     Its record stays as it is. The wire it took stays counted as gone from its spool.
     """
-    from windctl.record.addenda import CoilReadmitted, CoilWithdrawn, withdrawn
+    from windctl.record.addenda import CoilReadmitted, CoilWithdrawn, paired, withdrawn
 
     if not reason.strip():
         raise UsageError("say why, with --reason")
     with book_to_write(shared) as book:
-        out = withdrawn(book.addenda(coil))
+        said = book.addenda(coil)
+        out, partner = withdrawn(said), paired(said)
         if undo and out is None:
             raise UsageError(f"coil {book.find(coil).number} is not withdrawn")
         if not undo and out is not None:
             raise UsageError(f"coil {book.find(coil).number} is withdrawn already: {out.reason}")
         kind = CoilReadmitted if undo else CoilWithdrawn
         _keep(shared, book, coil, kind(*signed(by), reason.strip()))
+    if partner is not None and not undo:
+        present.message(
+            f"{partner.partner_number} still goes with it and is not in stock; "
+            "'windctl coils unpair' parts them"
+        )
