@@ -49,7 +49,8 @@ def order(orders: Sequence[Order]) -> tuple[sa.ColumnElement[object], ...]:
         for column in _SORTED.get(one.field, (_COLUMNS[one.field],)):
             sorted_column = column.desc() if one.descending else column.asc()
             columns.append(sorted_column.nulls_last() if one.field in _MAY_LACK else sorted_column)
-    return (*columns, *LATEST_FIRST)
+    alone = any(one.field == "coil" for one in orders)  # no two coils have the same number
+    return tuple(columns) if alone else (*columns, *LATEST_FIRST)
 
 
 def _term(term: Term) -> sa.ColumnElement[bool]:
