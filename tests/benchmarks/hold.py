@@ -23,6 +23,9 @@ PLACES: dict[str, tuple[str, ...]] = {
     "help": ("f1",),
     "commands": ("f4",),
     "coils": ("f3",),
+    "spools": ("f7",),
+    "machine": ("f9",),
+    "leave open?": ("l",),
     "leave?": ("f10",),
 }
 

@@ -4,10 +4,13 @@ which way it moves, and in large figures how many turns are left until it turns 
 from __future__ import annotations
 
 from math import ceil
+from typing import TYPE_CHECKING
 
-from windctl.plan.by_hand import HandLay, HandPlace
 from windctl.tui.pictures.cells import Picture, blank, put
 from windctl.tui.pictures.letters import lettered
+
+if TYPE_CHECKING:
+    from windctl.plan.by_hand import HandLay, HandPlace
 
 HEIGHT = 5  # cells: the bar, its ground, and figures three rows high
 _SOON = 3.0  # turns before a turn-round from which it says so
