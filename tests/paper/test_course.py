@@ -10,12 +10,21 @@ from tests.book.samples import made, started
 from windctl.book.book import Book
 from windctl.desk.papers import coil_facts
 from windctl.paper.course import course_of
+from windctl.paper.history import history_of
 from windctl.paper.layers import growth_of
 from windctl.paper.recorded import Bobbin, bobbin_of, recipe_of, settings
 from windctl.paper.told import plainly, said_since, story, told
 from windctl.protocol.messages import Capability, Identity, Refused, Setup, State, Status
 from windctl.record.addenda import CoilWithdrawn, MagnetTold, PairMade, PairParted
-from windctl.record.events import KINDS, BoardGreeted, Event, StatusHeard, StopPointChosen
+from windctl.record.events import (
+    KINDS,
+    BoardGreeted,
+    Event,
+    ReadingTakenBack,
+    ReadingTyped,
+    StatusHeard,
+    StopPointChosen,
+)
 
 
 def turning(ticks: int, turn: float, speed: int, tension: int = 0) -> StatusHeard:
@@ -122,3 +131,15 @@ def test_a_long_row_of_stop_points_is_told_by_its_ends() -> None:
 def test_a_key_that_no_version_knows_is_shown_all_the_same() -> None:
     (table,) = settings({"bobbin": {"later_thing_mm": 1.5, "flag": True}, "name": "x"})
     assert table == ("bobbin", [("later thing", "1.5 mm"), ("flag", "yes")])
+
+
+def test_a_reading_that_was_taken_back_is_nowhere(book: Book) -> None:
+    """As if it had not been typed: two courses and two histories, with and without the slip."""
+    begun = coil_facts(book, book.find("2")).started
+    good = ReadingTyped(2000, 60.0, 40.0, 21.0, "Ann")
+    slip = [ReadingTyped(1000, 60.0, 44.0, 21.0, "Ann"), ReadingTakenBack(1500, "Ann")]
+    with_it: list[Event] = [begun, *slip, good]
+    without: list[Event] = [begun, good]
+    assert course_of(begun, with_it, 60.0).hand_read == course_of(begun, without, 60.0).hand_read
+    one, other = history_of(with_it, 120.0).points, history_of(without, 120.0).points
+    assert one == other and len(one) == 2

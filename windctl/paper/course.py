@@ -12,6 +12,7 @@ from windctl.record.events import (
     CoilStarted,
     Event,
     ReadingTaken,
+    ReadingTakenBack,
     ReadingTyped,
     StatusHeard,
 )
@@ -75,6 +76,8 @@ def course_of(started: CoilStarted, events: Iterable[Event], turns: float) -> Co
                 simulated = simulated or bool(event.identity.capabilities & Capability.VIRTUAL)
             elif isinstance(event, ReadingTyped):
                 typed.append((event.turn, event.ohm, event.celsius))
+            elif isinstance(event, ReadingTakenBack):
+                del typed[-1:]
     celsius = [moment[3] / 100.0 for moment in turned]
     speeds = [(count, speed * 60.0 / per_speed) for _, count, speed, _ in turned]
     return Course(

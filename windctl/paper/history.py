@@ -11,7 +11,7 @@ from dataclasses import dataclass
 
 from windctl.forecast.finish import finish_at, so_far
 from windctl.record.curve import CurvePoint
-from windctl.record.events import CoilStarted, Event, ReadingTaken, ReadingTyped
+from windctl.record.events import CoilStarted, Event, ReadingTaken, ReadingTakenBack, ReadingTyped
 from windctl.record.fold import State, fold, start
 
 _MOST = 400  # points; a line on paper shows no more
@@ -40,6 +40,10 @@ def history_of(events: Iterable[Event], turns: float | None) -> History:
             turns = event.planned_turns if turns is None else turns
             finish = finish_at(state.estimate, turns)
             points.append(CurvePoint(0.0, 0.0, finish.ohm, finish.sd))
+        if isinstance(event, ReadingTakenBack) and state.readings_used < used:
+            if seen % spacing == 0 and len(points) > 1:
+                points.pop()
+            used, seen = state.readings_used, seen - 1
         if not isinstance(event, ReadingTaken | ReadingTyped) or state.readings_used <= used:
             continue
         used, seen = state.readings_used, seen + 1

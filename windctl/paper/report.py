@@ -39,6 +39,7 @@ if TYPE_CHECKING:
     from windctl.shop.life import Life
 
 _MACHINE = ("spindle", "guide", "tension", "readings")  # of a profile, what bears on a coil
+_FAR_CELSIUS = 90.0
 _NO_LIMIT = 0xFFFF  # sensor units: above what any tension is
 _WAYS = {
     "live": "while it turned",
@@ -169,7 +170,11 @@ def _resistance(coil: CoilFacts) -> Markup:
     parts = []
     if coil.curve or coil.final is not None:
         leads = coil.started.prior.offset_ohm
-        by_hand = [(turn, to_20c(max(value - leads, 0.0), celsius)) for turn, value, celsius in read]
+        by_hand = [
+            (turn, to_20c(max(value - leads, 0.0), celsius))
+            for turn, value, celsius in read
+            if -_FAR_CELSIUS <= celsius <= _FAR_CELSIUS  # else a slip of the pen, which copper's law refuses
+        ]
         drawing = charts.resistance(coil.curve, target, coil.turns, by_hand, _marks(coil), coil.final)
         parts.append(figure(drawing, f"Resistance at 20 °C as the coil grew, read {how}."))
     if coil.curve:
