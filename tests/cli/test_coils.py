@@ -77,9 +77,9 @@ def test_show_for_people_tells_rare_facts_and_counts_the_others(book: Path, caps
     assert run(["coils", "show", "b1-2026-0001", "--book", str(book)]) == 0
     shown = capsys.readouterr().out
     assert "finished: the target is reached" in shown
-    assert "note made: by Demo Winder, text splice-free" in shown
+    assert "Note by Demo Winder: splice-free" in shown
     assert "20 board reports and 4 readings besides" in shown
-    assert "status heard" not in shown
+    assert "count" not in shown  # turns, not the board's own figures
 
 
 def test_verify_is_content_with_an_untouched_book(book: Path, capsys: Printed) -> None:

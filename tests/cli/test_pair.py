@@ -167,7 +167,7 @@ def test_show_says_the_partner_and_the_hum(six: Path, capsys: Printed) -> None:
     text = capsys.readouterr().out
     assert f"goes with   {number(4)}" in text
     assert "mV at 50 Hz and" in text
-    assert f"paired with {number(4)} by {WHO}" in text
+    assert f"{WHO}: Paired with {number(4)}: " in text
 
 
 def test_a_dry_run_keeps_nothing(six: Path, capsys: Printed) -> None:

@@ -194,8 +194,7 @@ def test_a_finished_coil_is_measured_and_noted(book: str, recipe: str, capsys: P
     capsys.readouterr()
     assert run(["coils", "show", "1", "--book", book]) == 0
     told = capsys.readouterr().out
-    assert "noted by Demo Winder" in told
-    assert "for the demo" in told
+    assert "Demo Winder: Note: for the demo" in told
     assert "wire 1.450 ± 0.039 g" in told
 
 

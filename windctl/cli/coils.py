@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from typing import TYPE_CHECKING, Any
+from collections.abc import Iterable
+from typing import TYPE_CHECKING
 
 import click
 
@@ -26,10 +26,8 @@ from windctl.errors import QueryError, UsageError
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
-    from windctl.record.addenda import CoilImported
-
-_DENSE = ("status_heard", "reading_taken")  # thousands of them: counted, not listed
-_UNTOLD = ("kind", "at_ms", "identity", "refused")
+    from windctl.record.addenda import Addendum, CoilImported
+    from windctl.record.events import Event
 
 
 @click.group()
@@ -135,18 +133,21 @@ def _resistance(head: CoilHead) -> str:
 def show(shared: Shared, coil: str) -> None:
     """Everything known of COIL: by its number, the number's last digits, or the beginning of its id."""
     from windctl.desk.stock import picks_up_of
+    from windctl.paper.told import story
     from windctl.record.addenda import paired
+    from windctl.record.events import CoilStarted
 
     with book_to_read(shared) as book:
-        shown = book.show(coil)
         head, imported = book.find(coil), book.imported(coil)
         picks_up = picks_up_of(book, head.id)
-        partner = paired(book.addenda(head.id))
-    if shared.json:
-        hum = None if picks_up is None else picks_up.as_json()
-        goes_with = None if partner is None else partner.partner_number
-        present.result_json({**shown, "hum": hum, "goes_with": goes_with})
-        return
+        addenda = book.addenda(head.id)
+        partner = paired(addenda)
+        if shared.json:
+            hum = None if picks_up is None else picks_up.as_json()
+            goes_with = None if partner is None else partner.partner_number
+            present.result_json({**book.show(coil), "hum": hum, "goes_with": goes_with})
+            return
+        rare, reports, readings = _parted(book.events(head.id))
     target = (
         present.turns(head.target_value)
         if head.target_kind == "turns"
@@ -172,8 +173,28 @@ def show(shared: Shared, coil: str) -> None:
         ("imported", "" if imported is None else _imported(imported)),
     ]
     present.pairs([(name, value) for name, value in rows if value])
-    _show_events(shown["events"])
-    _show_addenda(shown["addenda"])
+    present.result()
+    for line in story(rare, rare[0].setup.counts_per_turn if isinstance(rare[0], CoilStarted) else 1):
+        present.result(f"{line.when:>10}  {line.what}")
+    present.result(f"{reports} board reports and {readings} readings besides")
+    for fact in addenda:
+        _show_addendum(fact)
+
+
+def _parted(events: Iterable[Event]) -> tuple[list[Event], int, int]:
+    """The rare facts, and how many board reports and readings there are besides."""
+    from windctl.record.events import ReadingTaken, StatusHeard
+
+    rare: list[Event] = []
+    reports = readings = 0
+    for event in events:
+        if isinstance(event, StatusHeard):
+            reports += 1
+        elif isinstance(event, ReadingTaken):
+            readings += 1
+        else:
+            rare.append(event)
+    return rare, reports, readings
 
 
 def _imported(fact: CoilImported) -> str:
@@ -183,66 +204,17 @@ def _imported(fact: CoilImported) -> str:
     return f"{when} by {fact.by}; {known}{'teaches' if fact.teaches else 'teaches nothing'}"
 
 
-def _show_events(events: Any) -> None:
-    """The rare facts in order, each with the time since its run began; of the dense ones, the number."""
-    present.result()
-    dense = dict.fromkeys(_DENSE, 0)
-    for event in events:
-        if event["kind"] in dense:
-            dense[event["kind"]] += 1
-        else:
-            present.result(f"{_since(event)}  {event['kind'].replace('_', ' ')}{_told(event)}")
-    present.result(f"{dense['status_heard']} board reports and {dense['reading_taken']} readings besides")
-
-
-def _show_addenda(addenda: Any) -> None:
+def _show_addendum(fact: Addendum) -> None:
     """What was said after the record was closed."""
-    for fact in addenda:
-        if fact["kind"] == "coil_taught":
-            kinds = ", ".join(one["what"] for one in fact["lesson"]["measured"])
-            present.result(f"taught: {kinds or 'nothing, but that it took wire'}")
-            continue
-        if (told := pair_told.fact_words(fact)) is not None:
-            present.result(told)
-            continue
-        if fact["kind"] == "coil_measured":
-            present.result(_measured(fact))
-            continue
-        said = [
-            f"{name.replace('_', ' ')} {value:g}" if isinstance(value, float) else str(value)
-            for name, value in fact.items()
-            if name not in ("kind", "wall_time", "by") and value not in (None, "")
-        ]
-        when = fact["wall_time"][:16].replace("T", " ")
-        kind = fact["kind"].removeprefix("coil_")
-        present.result(f"{kind} by {fact['by']}, {when}: {', '.join(said)}")
-
-
-def _measured(fact: Mapping[str, Any]) -> str:
     from windctl.paper.told import said_since
-    from windctl.record.addenda import CoilMeasured
+    from windctl.record.addenda import CoilTaught, plain
 
-    said = said_since(CoilMeasured(**{name: value for name, value in fact.items() if name != "kind"}))
-    assert said is not None  # a measurement is always told
-    when, who, what = said
-    return f"measured by {who}, {when}{what.removeprefix('Measured')}"
-
-
-def _since(event: Mapping[str, Any]) -> str:
-    return f"{event['at_ms'] / 1000:9.3f} s" if "at_ms" in event else " " * 11
-
-
-def _told(event: Mapping[str, Any]) -> str:
-    if event["kind"] == "coil_started":
-        return f": {event['recipe_name']} on {event['machine']}"
-    parts = [
-        f"{name.replace('_', ' ')} {value:g}"
-        if isinstance(value, float)
-        else f"{name.replace('_', ' ')} {value}"
-        for name, value in event.items()
-        if name not in _UNTOLD and value != ""
-    ]
-    return f": {', '.join(parts)}" if parts else ""
+    if isinstance(fact, CoilTaught):
+        kinds = ", ".join(one["what"] for one in plain(fact)["lesson"]["measured"])
+        present.result(f"taught: {kinds or 'nothing, but that it took wire'}")
+    elif (said := said_since(fact)) is not None:
+        when, who, what = said
+        present.result(f"{when}, {who}: {what}")
 
 
 for _command in (

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any
 
 from windctl.cli import present
@@ -29,20 +29,6 @@ def both_hums(picks_up: PicksUp) -> str:
     """For one coil, on a line of its own."""
     each = " and ".join(f"{hum(picks_up, hz)} at {hz:.0f} Hz" for hz in (50.0, 60.0))
     return f"{each} of one microtesla, uniform field, without steel"
-
-
-def fact_words(fact: Mapping[str, Any]) -> str | None:
-    """What was said of a coil's magnet or partner, as the book has it; None for anything else."""
-    when = f"by {fact.get('by')}, {str(fact.get('wall_time'))[:16].replace('T', ' ')}"
-    match fact["kind"]:
-        case "magnet_told":
-            return f"{fact['pole']} towards the strings, said {when}"
-        case "pair_made":
-            left = f"{fact['left_db']:.0f} dB ({fact['left_low_db']:.0f} to {fact['left_high_db']:.0f})"
-            return f"paired with {fact['partner_number']} {when}: hum left {left}; {fact['joined']}"
-        case "pair_parted":
-            return f"parted from {fact['partner_number']} {when}: {fact['reason']}"
-    return None
 
 
 def level(left: Left) -> str:
