@@ -67,8 +67,6 @@ def growth_of(recipe: Recipe, profile: MachineProfile, plan: Plan) -> Growth:
             build = plan.build_mm * turn / plan.turns
             if recipe.lay.style == "scatter":
                 laid = laid.settled(build, recipe.bobbin.flange_gap_mm)
-            if recipe.lay.style == "scatter":
-                laid = laid.settled(build, recipe.bobbin.flange_gap_mm)
             heights.append(tuple(float(part) * build for part in laid.profile(COLUMNS)))
         else:
             heights.append(tuple(height * turn / plan.turns for height in whole))
