@@ -113,7 +113,6 @@ def browser(home: Path) -> Iterator[Page]:
     assert program is not None
     their_in, our_out = os.pipe()
     our_in, their_out = os.pipe()
-    log = home / "net.log"
     command = [
         program,
         "--headless=new",
@@ -129,28 +128,22 @@ def browser(home: Path) -> Iterator[Page]:
         "--proxy-server=127.0.0.1:1",
         "--proxy-bypass-list=<-loopback>",
         f"--user-data-dir={home / 'profile'}",
-        f"--log-net-log={log}",
     ]
 
-    def pipes() -> None:
-        os.dup2(their_in, 3)
-        os.dup2(their_out, 4)
-
+    # The browser wants its pipes as 3 and 4; a shell puts them there whatever they are called here.
+    placed = f'exec "$@" 3</dev/fd/{their_in} 4>/dev/fd/{their_out}'
     process = subprocess.Popen(
-        command,
+        ["/bin/sh", "-c", placed, "sh", *command],
         stdin=subprocess.DEVNULL,
         stdout=subprocess.DEVNULL,
         stderr=subprocess.DEVNULL,
-        preexec_fn=pipes,
-        pass_fds=(3, 4),
+        pass_fds=(their_in, their_out),
         env={**os.environ, "HOME": str(home)},
     )
     os.close(their_in)
     os.close(their_out)
-    page = None
     try:
-        page = Page(our_out, our_in)
-        yield page
+        yield Page(our_out, our_in)
     finally:
         os.close(our_out)
         os.close(our_in)
