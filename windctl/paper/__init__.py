@@ -2,6 +2,9 @@
 
 Plain facts in, HTML or SVG out; no clock, no files.
 
-svg    the pieces of a drawing: lines, marks, texts, and the document around them
-plot   axes and a plot: values in, drawing out
+svg, plot, html, look   the pieces of a drawing, a plot with axes, the pieces of a page, its style
+gather, history, course, layers, recorded, told   a record's facts, made ready to be shown
+charts, winding, measured, proof   the parts of a report
+report, batch, label    whole pages
+control_chart, compared   drawings of several coils
 """

@@ -22,7 +22,6 @@ _LEFT = 24.0
 _WIDEST, _WIDEST_BOLD = 0.64, 0.72  # of a letter's size: a letter of the widest of the fonts, on average
 PAPERS = {"a4": (210.0, 297.0), "letter": (215.9, 279.4)}  # mm; ISO 216, ANSI/ASME Y14.1
 _EDGE_MM = 9.0  # that printers leave white
-MOST_COLUMNS = 6
 
 
 @dataclass(frozen=True, slots=True)

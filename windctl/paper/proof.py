@@ -48,11 +48,6 @@ def code(text: str) -> tuple[tuple[bool, ...], ...]:
     return tuple(tuple(bool(module) for module in row) for row in made.matrix)
 
 
-def code_modules(text: str) -> int:
-    """How many modules wide the code of a text is, its quiet zone included."""
-    return len(code(text)) + 2 * _QUIET
-
-
 def code_drawn(text: str, x: float, y: float, size: float) -> str:
     """The QR code of a text as one path, its quiet zone included, `size` wide with its corner at x, y."""
     rows = code(text)

@@ -24,11 +24,6 @@ from windctl.record.events import Event
 
 _Z95 = 1.959964
 _BY = {"virtual": "the simulation", "operator": "the operator", "windctl": "the program"}
-_BY_KIND = {
-    "pass_wanted": "The guide was to be seen at both flanges before the first turn, said {by}.",
-    "pass_agreed": "Go for the guide alone, there and back, given by {by}.",
-    "guide_seen": "The guide was seen to stand right at its {end} end, by {by}.",
-}
 _CAUSES = {
     Cause.STOP_POINT: "at its stop point",
     Cause.QUEUE_END: "at the end of its program",
@@ -125,6 +120,12 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             return f"The reading typed last was taken back by {by(event.by)}."
         case facts.PaceAsked():
             return f"No faster than {event.percent} % of the planned pace, asked for by {by(event.by)}."
+        case facts.PassWanted():
+            return f"The guide was to be seen at both flanges before the first turn, said {by(event.by)}."
+        case facts.PassAgreed():
+            return f"Go for the guide alone, there and back, given by {by(event.by)}."
+        case facts.GuideSeen():
+            return f"The guide was seen to stand right at its {event.end} end, by {by(event.by)}."
         case facts.CheckTaken():
             how = "the coil was read" if event.read else "passed over"
             return f"Check at turn {grouped(event.turn)}: {how}."
@@ -137,10 +138,7 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.CoilFinished():
             return f"{event.outcome.capitalize()}: {event.reason}."
         case _:
-            words = _BY_KIND.get(event.kind)
-            if words is None:
-                return f"{plainly(event.kind)}{_fields(event)}."
-            return words.format(by=by(getattr(event, "by", "")), end=getattr(event, "end", ""))
+            return f"{plainly(event.kind)}{_fields(event)}."
 
 
 def said_since(fact: Addendum) -> tuple[str, str, str] | None:
