@@ -85,10 +85,14 @@ def test_filters_and_orders_are_of_the_books_language() -> None:
 
 
 def test_the_coils_beside_are_named_with_what_they_differ_by() -> None:
-    other = replace(HEAD, number="b1-2026-0148", dcr_20c_ohm=5899.0 * 1.004, turns=8030.0)
+    other = replace(
+        HEAD, number="b1-2026-0148", dcr_20c_ohm=5899.0 * 1.004, turns=8030.0, program_digest="other"
+    )
     same = replace(HEAD, number="b1-2026-0149", dcr_20c_ohm=5898.99)
     words = coil_view.against(HEAD, [other, same])
-    assert words == "A b1-2026-0147 · B b1-2026-0148 +0.40 %, +6 turns · C b1-2026-0149 +0.00 %"
+    assert words == (
+        "A b1-2026-0147 · B b1-2026-0148 +0.40 %, +6 turns · C b1-2026-0149 +0.00 %, same program"
+    )
 
 
 def test_a_page_as_lines_is_a_table_of_plain_values() -> None:
@@ -158,6 +162,11 @@ async def test_coils_are_found_marked_compared_and_written_by_keys(
         assert coil.number == room.marked[0]
         assert coil.query_one(Against).display
         assert f"B {room.marked[1]}" in str(coil.query_one("#coil-beside", Static).content)
+        assert [one.name for one in coil.differing] == ["machine"]  # another plant seed, nothing else
+        drawn = tmp_path / f"{coil.number}-compared.svg"
+        await press(pilot, "d")
+        await until(pilot, lambda: str(drawn) in str(coil.query_one("#coil-answer", Static).content))
+        assert drawn.read_text(encoding="utf-8").endswith("</svg>\n")
         await press(pilot, "b")
         assert not coil.query_one(Against).display
         await press(pilot, "c")

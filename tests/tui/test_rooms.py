@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
 
@@ -18,6 +19,7 @@ from windctl.book.verify import VerifyReport
 from windctl.checkup.step import Result, Verdict
 from windctl.desk.machine_look import Looked, MachineLook
 from windctl.desk.spools import SpoolState
+from windctl.shop.compare import Differing
 from windctl.tui.app import WindctlApp
 from windctl.tui.dialogs.help import Help
 from windctl.tui.keymap import ids
@@ -63,6 +65,9 @@ class Shop(StillSession):
         )
         lines = (("0:00", f"{number} begins: {head.recipe}"), ("8:02", "note: [b]smooth[/b]"))
         return Told(head, card, curve(0.735 if number == HEAD.number else 0.739), lines, "virtual")
+
+    def differing(self, numbers: Sequence[str]) -> tuple[Differing, ...]:
+        return (Differing("recipe.lay.pitch_mm", (0.22, 0.23)), Differing("spool", ("s1", None)))
 
     def verify(self, number: str) -> VerifyReport:
         return VerifyReport(1, ())
@@ -110,6 +115,8 @@ async def test_coils_beside_each_other_as_they_look(tmp_path: Path) -> None:
     words = text_of(picture)
     assert "✔ the record agrees with its digests" in words
     assert "note: [b]smooth[/b]" in words
+    assert "recipe.lay.pitch_mm: A 0.22, B 0.23" in words
+    assert "spool: A s1, B –" in words
     compare("coil-120x40-dark", picture)
 
 

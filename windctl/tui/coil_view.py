@@ -15,6 +15,7 @@ from windctl.tui.view import target_text
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
     from windctl.book.verify import VerifyReport
+    from windctl.shop.compare import Differing
     from windctl.tui.records import Told
 
 
@@ -52,8 +53,21 @@ def against(first: CoilHead, others: Sequence[CoilHead]) -> str:
         more = ""
         if first.turns is not None and other.turns is not None and other.turns != first.turns:
             more = f", {other.turns - first.turns:+.0f} turns"
-        parts.append(f"{letter} {other.number}{off}{more}")
+        same = ", same program" if other.program_digest == first.program_digest else ""
+        parts.append(f"{letter} {other.number}{off}{more}{same}")
     return " · ".join(parts)
+
+
+def otherwise(differing: Sequence[Differing]) -> list[tuple[str, str]]:
+    """What was set otherwise, as lines like the events': a sign, and each coil's value behind its letter."""
+    lines = []
+    for one in differing:
+        values = ", ".join(
+            f"{letter} {'–' if value is None else value}"
+            for letter, value in zip("A" + LETTERS, one.values, strict=False)
+        )
+        lines.append(("≠", f"{one.name}: {values}"))
+    return lines
 
 
 def verified(report: VerifyReport) -> str:
@@ -63,10 +77,10 @@ def verified(report: VerifyReport) -> str:
     return "✖ " + "; ".join(one.what for one in report.broken)
 
 
-def story(told: Told, width: int) -> list[str]:
+def story(told: Sequence[tuple[str, str]], width: int) -> list[str]:
     """What happened, in lines of at most `width`; what goes on stands under its own beginning."""
     lines = []
-    for since, what in told.lines:
+    for since, what in told:
         for at, piece in enumerate(wrap(what, max(width - _INDENT, 20)) or [""]):
             lines.append(f"{'' if at else since:>{_INDENT - 2}}  {piece}")
     return lines

@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from windctl.desk.books import book_to_read
-from windctl.errors import RecordBroken
+from windctl.errors import RecordBroken, UsageError
 from windctl.tui.page import PAGE, Page
 from windctl.tui.pictures.curve import Point
 from windctl.tui.sitting import Sitting
@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from windctl.record.addenda import Addendum
     from windctl.record.curve import CurvePoint
     from windctl.record.events import Event
+    from windctl.shop.compare import Differing
 
 _Z95 = 1.959964
 ALIKE = 40  # coils of one recipe, among which others are chosen to compare
@@ -68,6 +69,28 @@ class Records(Sitting):
             curve = book.curve(number) if head.sealed else review(events).curve
             said = book.addenda(number)
         return _told(head, events, curve, said)
+
+    def differing(self, numbers: Sequence[str]) -> tuple[Differing, ...]:
+        """What of recipe, machine, spool and program's version these coils did not have in common."""
+        from windctl.desk.compared import gather
+        from windctl.shop.compare import differing
+
+        with book_to_read(self.shared) as book:
+            return differing([gather(book, book.find(number)) for number in numbers])
+
+    def draw(self, numbers: Sequence[str]) -> Path:
+        """Draw these coils against the first of them into a file beside the user; where it went."""
+        from windctl.desk.compared import gather
+        from windctl.paper.compared import compared_svg
+        from windctl.paper.svg import standalone
+        from windctl.shop.compare import curves
+
+        with book_to_read(self.shared) as book:
+            coils = [gather(book, book.find(number)) for number in numbers]
+        drawn = curves(coils)
+        if not drawn.turns:
+            raise UsageError("no two of these coils were read over the same turns: there is nothing to draw")
+        return written(f"{numbers[0]}-compared.svg", standalone(compared_svg(coils, drawn)))
 
     def verify(self, number: str) -> VerifyReport:
         """Check one record against its digests."""

@@ -176,6 +176,7 @@ class Session(Records):
     ) -> tuple[Bench, Book]:
         from windctl.desk.bench import open_bench
 
+        self.close_bench()  # one port has one user
         shared = self.shared
         if self.simulated and shared.speed is None:
             shared = replace(shared, speed=REAL_TIME)

@@ -6,11 +6,11 @@ difference. Each coil has a letter besides its colour.
 
 from __future__ import annotations
 
-from bisect import bisect_left
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
+from windctl.shop.compare import at
 from windctl.tui.pictures.axes import round_steps
 from windctl.tui.pictures.braille import ACROSS, DOWN, Dots
 from windctl.tui.pictures.cells import Ink, Picture, blank, put
@@ -36,15 +36,12 @@ def differences(first: Sequence[Point], other: Sequence[Point]) -> list[tuple[fl
     base = [(point.turn, point.ohm) for point in first if point.ohm]
     if len(base) < 2:
         return []
-    turns = [turn for turn, _ in base]
+    early = _EARLY * base[-1][0]
     found = []
     for point in other:
-        if not point.ohm or point.turn < max(turns[0], _EARLY * turns[-1]) or point.turn > turns[-1]:
-            continue
-        at = max(1, bisect_left(turns, point.turn))
-        (t0, r0), (t1, r1) = base[at - 1], base[min(at, len(base) - 1)]
-        ohm = r0 + (r1 - r0) * ((point.turn - t0) / (t1 - t0) if t1 > t0 else 0.0)
-        found.append((point.turn, 100.0 * (point.ohm / ohm - 1.0)))
+        ohm = at(base, point.turn) if point.turn >= early else None
+        if point.ohm and ohm:
+            found.append((point.turn, 100.0 * (point.ohm / ohm - 1.0)))
     return found
 
 
@@ -67,8 +64,8 @@ def against_picture(width: int, height: int, first: Sequence[Point], others: Seq
     def y(value: float) -> int:
         return round((value + span) / (2 * span) * (dots.down - 1))
 
-    for at in range(0, dots.across, 3):
-        dots.dot(at, y(0.0), "axis")
+    for place in range(0, dots.across, 3):
+        dots.dot(place, y(0.0), "axis")
     for ink, (_, points) in zip(INKS, drawn, strict=False):
         for (t0, v0), (t1, v1) in pairwise(points):
             dots.line(x(t0), y(v0), x(t1), y(v1), ink)
@@ -103,7 +100,7 @@ def _turns(picture: Picture, width: int, most: float, column: Callable[[float], 
     word = " turns"
     for value in round_steps(0.0, most, max(2, width // 12)):
         text = f"{value:,.0f}".replace(",", " ")
-        at = column(value) - len(text) // 2
-        if value > 0 and at + len(text) < width - len(word):
-            put(picture, last, at, text, "label")
+        left = column(value) - len(text) // 2
+        if value > 0 and left + len(text) < width - len(word):
+            put(picture, last, left, text, "label")
     put(picture, last, width - len(word), word, "label")

@@ -26,6 +26,7 @@ from windctl.tui.widgets.figures import Figures
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
+    from windctl.shop.compare import Differing
     from windctl.tui.records import Told
     from windctl.tui.session import Session
 
@@ -35,14 +36,15 @@ class CoilScreen(Between):
 
     ABOUT = (
         "One coil as its record tells it. V verifies the record against its digests. C sets another coil of "
-        "the recipe beside it: how much more resistance that has at the same turn, in per cent. R writes its "
-        "report, a page to print; X writes the whole record as JSON; Y copies it as text. Files are written "
-        "into the folder that you are in, and named."
+        "the recipe beside it: how much more resistance that has at the same turn, and what was set "
+        "otherwise; D draws that. R writes the report, a page to print, X the whole record as JSON, Y copies "
+        "it as text. Files are written into the folder that you are in, and named."
     )
     BINDINGS: ClassVar[list[BindingType]] = [
         key("coil.verify"),
         key("coil.compare"),
         key("coil.alone"),
+        key("coil.draw"),
         key("coil.report"),
         key("coil.export"),
         key("coil.copy"),
@@ -53,6 +55,7 @@ class CoilScreen(Between):
         self.number = number
         self.told: Told | None = None
         self.others: list[Told] = []
+        self.differing: tuple[Differing, ...] = ()
         self._wanted = others
 
     def body(self) -> ComposeResult:
@@ -77,38 +80,41 @@ class CoilScreen(Between):
         """Read the record, and those to compare it with."""
         try:
             told = self.session.told(self.number)
-            others = [self.session.told(number) for number in self._wanted]
+            others = [self.session.told(number) for number in self._wanted][:MOST]
+            differing = self.session.differing(_numbers(told, others)) if others else ()
         except WindctlError as error:
             self.app.call_from_thread(self.answer, f"✖ {error}")
         else:
-            self.app.call_from_thread(self.show, told, others)
+            self.app.call_from_thread(self.show, told, others, differing)
 
-    def show(self, told: Told, others: list[Told]) -> None:
+    def show(self, told: Told, others: list[Told], differing: tuple[Differing, ...]) -> None:
         """Place it."""
         self.told = told
         self.query_one("#coil-figures", Figures).show(coil_view.figures(told))
         for curve in self.query(Curve):
             curve.show(told.card.scale, told.curve, [])
         self.query_one(RichLog).focus()
-        self.beside(others)
-        self.call_after_refresh(self.tell)
+        self.beside(others, differing)
 
     def tell(self) -> None:
-        """What happened, as wide as there is room."""
+        """What was set otherwise and what happened, as wide as there is room."""
+        if self.told is None:
+            return
         log = self.query_one(RichLog)
         log.clear()
-        for line in coil_view.story(self.told, log.scrollable_content_region.width) if self.told else ():
+        lines = (*coil_view.otherwise(self.differing), *self.told.lines)
+        for line in coil_view.story(lines, log.scrollable_content_region.width):
             log.write(Text(line))
 
     def on_resize(self) -> None:
         """Other lines."""
         self.call_after_refresh(self.tell)
 
-    def beside(self, others: list[Told]) -> None:
+    def beside(self, others: list[Told], differing: tuple[Differing, ...] = ()) -> None:
         """Other coils beside it, or none."""
         if self.told is None:
             return
-        self.others = others[:MOST]
+        self.others, self.differing = others, differing
         compared = bool(self.others)
         self.set_class(compared, "-beside")
         drawn = tuple(Other(one.head.number, one.curve) for one in self.others)
@@ -118,6 +124,7 @@ class CoilScreen(Between):
         line.set_class(compared, "-there")
         self.query_one(Against).show(self.told.curve, drawn)
         self.call_after_refresh(self.query_one(Against).redraw)
+        self.call_after_refresh(self.tell)
         self.refresh_bindings()
 
     def answer(self, words: str) -> None:
@@ -128,7 +135,7 @@ class CoilScreen(Between):
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Only what can be done is offered."""
-        if action == "alone":
+        if action in ("alone", "draw"):
             return bool(self.others)
         return super().check_action(action, parameters)
 
@@ -170,16 +177,25 @@ class CoilScreen(Between):
     @work(thread=True, exclusive=True, group="beside")
     def set_beside(self, number: str) -> None:
         """Read the other one, and set it beside."""
+        if self.told is None:
+            return
         try:
-            other = self.session.told(number)
+            others = [*self.others, self.session.told(number)]
+            differing = self.session.differing(_numbers(self.told, others))
         except WindctlError as error:
             self.app.call_from_thread(self.answer, f"✖ {error}")
         else:
-            self.app.call_from_thread(self.beside, [*self.others, other])
+            self.app.call_from_thread(self.beside, others, differing)
 
     def action_alone(self) -> None:
         """Without the others."""
         self.beside([])
+
+    def action_draw(self) -> None:
+        """The coils beside each other as a drawing to keep."""
+        if self.told is not None and self.others:
+            numbers = _numbers(self.told, self.others)
+            self.write(lambda: self.session.draw(numbers))
 
     # ------------------------------------------------------------ checking and writing
 
@@ -221,3 +237,7 @@ class CoilScreen(Between):
         except (WindctlError, OSError) as error:
             words = f"✖ not written: {error}"
         self.app.call_from_thread(self.answer, words)
+
+
+def _numbers(told: Told, others: list[Told]) -> list[str]:
+    return [told.head.number, *(one.head.number for one in others)]
