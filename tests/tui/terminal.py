@@ -206,7 +206,7 @@ def winding(
             for _ in range(14):
                 terminal.press("enter")
                 time.sleep(0.05)
-            terminal.press("s")
+            terminal.press("p", "s")  # without the dry pass that a machine behind a port begins with
             until(lambda: turning(line), 60, f"it does not turn: {terminal.text[-3000:]}")
             yield terminal, line
         finally:

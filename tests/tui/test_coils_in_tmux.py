@@ -65,6 +65,9 @@ def to_the_machine(terminal: Tmux) -> None:
     for _ in range(12):
         terminal.press("Enter")
     terminal.shows("S opens the machine")
+    if "first: yes" in terminal.screen:
+        terminal.press("p")
+        terminal.shows("first: no")
     terminal.press("s")
 
 

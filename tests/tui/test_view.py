@@ -121,7 +121,8 @@ def test_a_spindle_that_somebody_else_drives_is_theirs_to_slow_and_stop() -> Non
     coming = next_of(own)
     assert (coming.words, coming.figure, coming.when) == ("slow down at", "7 896", "stop at 7 946")
     assert next_of(replace(own, turns=7900.0)).words == "stop at"
-    assert dict(glance(own, CARD).rows)["pace"] == "1000 rpm, your own motor's"
+    assert dict(glance(own, CARD).rows)["pace"] == "your own motor's"
+    assert next_of(replace(own, phase="stopping")).words == "stop your own motor"
     assert sound(replace(own, turns=7895.9), replace(own, turns=7896.2)) is Sound.SLOWS
 
 

@@ -79,6 +79,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         finish = finish_at(state.estimate, max(stop or started.planned_turns, state.turns))
         if state.readings_used:
             now_20c = so_far(state.estimate, state.turns).ohm
+    pulled = started is None or bool(started.setup.fitted & Capability.TENSION)
     guided = started is None or bool(started.setup.fitted & Capability.GUIDE_STEP)
     scale = identity.tension_scale if identity else 0
     return Snapshot(
@@ -93,7 +94,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         ohm_20c_now=now_20c,
         finish_ohm=finish.ohm if finish else None,
         finish_u95=(finish.high - finish.low) / 2.0 if finish else None,
-        tension_cn=status.tension * scale / 10_000.0 if status and scale else None,
+        tension_cn=status.tension * scale / 10_000.0 if status and scale and pulled else None,
         guide_mm=status.guide / steps_per_mm if status and steps_per_mm and guided else None,
         seconds_left=_seconds_left(state, stop, speed / spt),
         virtual=bool(identity and identity.capabilities & 128),

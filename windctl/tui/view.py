@@ -157,7 +157,7 @@ def next_of(snapshot: Snapshot) -> Next:
     if snapshot.asks == "reading":
         return Next(_sentence(snapshot.says), "", "R: type the reading")
     if snapshot.phase == "stopping":
-        return Next("comes to rest")
+        return Next("comes to rest" if snapshot.driven else "stop your own motor")
     return Next(_sentence(snapshot.says))
 
 
@@ -197,7 +197,7 @@ def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
 def _pace(snapshot: Snapshot) -> str:
     """The spindle's speed now, and whose it is where it is not the plan's."""
     if not snapshot.driven:
-        return f"{snapshot.pace_rpm:.0f} rpm, your own motor's"
+        return "your own motor's"
     slowed = f", slowed to {snapshot.pace_percent} %" if snapshot.pace_percent < 100 else ""
     return f"{snapshot.pace_rpm:.0f} rpm{slowed}"
 

@@ -44,4 +44,4 @@ def _words(picture: Picture, place: HandPlace, turning: bool) -> None:
         put(picture, row, 2, line, "unsure" if soon else "digits")
     at = len(figure[0]) + 4
     put(picture, 2, at, words, "unsure" if soon else None)
-    put(picture, 3, at, f"to the {place.towards} flange, {place.mm:.1f} mm", "label")
+    put(picture, 3, at, f"at {place.mm:.1f} mm, to the {place.towards}", "label")
