@@ -73,8 +73,11 @@ class RecipesScreen(Between):
         """There is nothing before the first room."""
 
     def repaint(self) -> None:
-        """Other colours."""
+        """Other colours; the cursor stays where it is."""
+        options = self.query_one("#recipe-list", OptionList)
+        at = options.highlighted
         self.show_recipes(self.recipes)
+        options.highlighted = at
 
     def on_mount(self) -> None:
         """Look round."""
