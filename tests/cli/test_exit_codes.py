@@ -16,6 +16,7 @@ from windctl.cli.exit_codes import ExitCode, code_for, code_for_coil
 
 PROMISED = {  # as the head of windctl.errors draws the tree
     errors.UsageError: 2,
+    errors.QueryError: 2,
     errors.RecipeError: 3,
     errors.ProfileError: 3,
     errors.ReadingsError: 3,
@@ -37,11 +38,9 @@ def every_class(base: type[errors.WindctlError]) -> Iterator[type[errors.Windctl
 
 def made(cls: type[errors.WindctlError]) -> errors.WindctlError:
     """An instance of any class of the tree."""
-    return (
-        cls([errors.Problem("x.toml", 1, 2, "is wrong")])
-        if issubclass(cls, errors.FileInvalid)
-        else cls("why")
-    )
+    if issubclass(cls, errors.FileInvalid):
+        return cls([errors.Problem("x.toml", 1, 2, "is wrong")])
+    return cls("why", 0) if issubclass(cls, errors.QueryError) else cls("why")
 
 
 def test_every_exception_of_the_tree_has_the_code_it_promises() -> None:
