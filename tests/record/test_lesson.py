@@ -102,14 +102,19 @@ def test_a_simulated_coil_says_so() -> None:
     assert lesson.simulated  # the samples' board says that it is simulated
 
 
-def turns_with(left_m: float | None) -> list[str]:
-    """Alarms of a coil that turns, with so much wire on its spool as it was begun."""
+def turns_with(left_m: float | None, *joined: Event) -> list[str]:
+    """Alarms of a coil that turns, is held, and turns again; so much wire was on its spool as it was begun.
+
+    `joined`: what was done at the wire before the first turn.
+    """
     sd = None if left_m is None else 10.0
     coil = Coil(replace(started("turns", 1500.0), basis=BASIS, spool_left_m=left_m, spool_left_sd_m=sd))
-    coil.hear(BoardGreeted(0, FRESH_BOARD), StatusHeard(0, status(0)), GoGiven(0, 5, 10, "operator"))
+    coil.hear(BoardGreeted(0, FRESH_BOARD), StatusHeard(0, status(0)), *joined)
+    coil.hear(GoGiven(0, 5, 10, "operator"))
     coil.hear(StatusHeard(0, status(100, state=BoardState.READY, cause=Cause.ARM, epoch=11)))
     going = status(5000, state=BoardState.TURNING, cause=0, epoch=11, count=400, speed=6667, next=100)
     coil.hear(*[StatusHeard(0, going)] * 3)
+    coil.hear(GoGiven(0, 5, 12, "operator"), *[StatusHeard(0, replace(going, ticks=6000))] * 3)
     return [fact.text for fact in coil.facts if isinstance(fact, AlarmRaised)]
 
 
@@ -118,3 +123,4 @@ def test_a_spool_that_will_not_last_is_told_once() -> None:
     (text,) = turns_with(150.0)
     assert "the spool is likely to run out before the stop: about 150 m were on it" in text
     assert turns_with(400.0) == turns_with(None) == []
+    assert turns_with(150.0, WireChanged(0, 0.0, "s2", "operator")) == []

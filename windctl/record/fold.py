@@ -138,7 +138,8 @@ def fold(state: State, event: Event) -> State:
         case AlarmRaised():
             opened = event.alarm == "open" and state.estimate is not None
             near = state.estimate.turn if opened and state.estimate else state.broke_near
-            return replace(state, alarm=event, broke_near=near)
+            told = state.spool_told or event.alarm == "spool"
+            return replace(state, alarm=event, broke_near=near, spool_told=told)
         case WentOn():
             return _went_on(state)
         case Held():
@@ -156,7 +157,8 @@ def fold(state: State, event: Event) -> State:
         case Spliced():
             return _joined(state, None if state.estimate is None else spliced(state.estimate, event.turn))
         case WireChanged():
-            return _joined(state, None if state.estimate is None else new_wire(state.estimate, event.turn))
+            joined = _joined(state, None if state.estimate is None else new_wire(state.estimate, event.turn))
+            return replace(joined, spool_told=True)
         case CheckAsked():
             return replace(state, check=event)
         case ReadingTyped():

@@ -44,10 +44,12 @@ def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
 
 
 def _spool_runs_out(state: State, at_ms: int) -> AlarmRaised | None:
-    """Told once while it turns: more likely than not the spool ends before the stop point."""
+    """Told once in a coil, while it turns: more likely than not the spool ends before the stop point."""
     started = state.started
     assert started is not None
-    if not state.turning or state.alarm is not None or state.stop_point is None or started.basis is None:
+    if state.spool_told or not state.turning or state.alarm is not None:
+        return None
+    if state.stop_point is None or started.basis is None:
         return None
     left, sd = started.spool_left_m, started.spool_left_sd_m
     if left is None or sd is None:

@@ -110,6 +110,7 @@ class State:
     fresh_reading: bool = False  # the latest word of the board was a reading that taught something
     read_last: bool = False  # the latest word of the board was a reading, of use or not
     alarm: AlarmRaised | None = None  # the last one, until somebody consents to go on
+    spool_told: bool = False  # that it will run out, or that another one was joined on
     readings_used: int = 0
     readings_gated: int = 0
     settled_readings: int = 0  # used ones since the spindle came to rest
