@@ -34,3 +34,13 @@ def test_once_behind_is_not_slow() -> None:
     for start in (0.0, 20.0, 40.0):
         pace.due(start, 9)
         assert not pace.slow
+
+
+def test_beneath_a_dialog_little_is_drawn_and_over_a_slow_line_nothing() -> None:
+    pace = Pace()
+    dues = [pace.due(tick / 10, 0, covered=True) for tick in range(100)]
+    assert (sum(due.texts for due in dues), sum(due.charts for due in dues)) == (10, 1)
+    for tick in range(3):
+        pace.due(10.0 + tick, 9)
+    assert not any(any(pace.due(13.0 + tick / 10, 0, covered=True)) for tick in range(100))
+    assert drawn(pace, 23.0, 10.0) == (10, 1)

@@ -33,8 +33,9 @@ class Pace:
         self._behind: deque[float] = deque(maxlen=OFTEN)
         self._texts_at = self._charts_at = float("-inf")
 
-    def due(self, now: float, backlog: int) -> Due:
-        """What to draw at `now`; nothing while the line is behind."""
+    def due(self, now: float, backlog: int, *, covered: bool = False) -> Due:
+        """What to draw at `now`; nothing while the line is behind. `covered`: by a dialog, through which the
+        whole screen is sent anew with every change; then rarely, and over a slow line not at all."""
         if backlog > BEHIND:
             self._behind.append(now)
             if len(self._behind) == OFTEN and now - self._behind[0] <= WHILE_S:
@@ -42,7 +43,10 @@ class Pace:
             return Due(False, False)
         if self.slow and now - self._behind[-1] > FORGIVEN_S:
             self.slow = False
-        texts_s, charts_s = (SLOW_DIGITS_S, SLOW_CHARTS_S) if self.slow else (DIGITS_S, CHARTS_S)
+        if covered and self.slow:
+            return Due(False, False)
+        rarely = covered or self.slow
+        texts_s, charts_s = (SLOW_DIGITS_S, SLOW_CHARTS_S) if rarely else (DIGITS_S, CHARTS_S)
         due = Due(now - self._texts_at >= texts_s - _EARLY_S, now - self._charts_at >= charts_s - _EARLY_S)
         if due.texts:
             self._texts_at = now

@@ -147,7 +147,8 @@ class WindScreen(WindQuestions):
         if self.ended is None and (ended := winding.wait(0.0)) is not None:
             self.ended = ended
             self.finish()
-        due = self.pace.due(monotonic(), getattr(self.app, "backlog", 0))
+        covered = self.app.screen is not self
+        due = self.pace.due(monotonic(), getattr(self.app, "backlog", 0), covered=covered)
         if due.texts and self.outcome is None:
             self.show(snapshot, figures=due.charts)
         if due.charts:
