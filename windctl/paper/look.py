@@ -27,7 +27,7 @@ section { margin: 7mm 0 0; }
 .kind { margin: 0 0 1mm; color: var(--copper); font-size: 9pt; letter-spacing: 0.09em; font-weight: 600;
   text-transform: uppercase; }
 .sub { font-family: SERIF; font-size: 13.5pt; margin: 1.5mm 0 0; color: var(--muted); }
-.key { display: grid; grid-template-columns: 0.75fr 1.35fr 1.3fr 1fr; margin: 5mm 0 0; }
+.key { display: grid; grid-template-columns: 0.7fr 1.55fr 1.2fr 0.95fr; margin: 5mm 0 0; }
 .key div { padding: 0 3mm; border-left: 0.25mm solid var(--rule); min-width: 0; overflow-wrap: anywhere; }
 .key div:first-child { padding-left: 0; border-left: 0; }
 .key dt { color: var(--muted); font-size: 8.5pt; }

@@ -116,7 +116,7 @@ def _dimensions(bobbin: Bobbin, middle: float, core: float, first: float, scale:
         svg.line(middle + core, y - 10, middle + core, y - 2, thin),
         svg.line(right, y - 10, right, y - 2, thin),
         svg.line(middle + core, y - 6, right, y - 6, thin),
-        svg.text(right + 6, y - 2, f"{bobbin.depth:g} mm deep"),
+        svg.text(middle + core - 6, y - 2, f"{bobbin.depth:g} mm deep", anchor="end"),
     ]
     face, base = ("face (start)", "base") if bobbin.starts_at_face else ("face", "base (start)")
     half = _FLANGE_MM * scale / 2
@@ -129,7 +129,7 @@ def _dimensions(bobbin: Bobbin, middle: float, core: float, first: float, scale:
 
 def _key(growth: Growth) -> str:
     """Which tone is which turns, the outermost on top."""
-    x, y = 480.0, 40.0
+    x, y = 498.0, 40.0
     parts = [svg.text(x, y - 12, "wound in this order, the last on top", fill=MUTED)]
     rows = list(zip(_TONES, shares(growth.layers), strict=False))
     for n, (tone, (low, high)) in enumerate(reversed(rows)):
