@@ -52,6 +52,7 @@ def go_on(terminal: Terminal, line: Line) -> None:
     """Consent by the typed word; again where the run had not come to ask for it yet."""
     for _ in range(10):
         time.sleep(0.4)
+        terminal.caught_up()
         terminal.press("g")
         time.sleep(0.4)
         terminal.press("g", "o", "enter")

@@ -121,6 +121,7 @@ class Terminal:
         )
         os.close(slave)
         self._rate = bytes_per_s
+        self._taken_at = time.monotonic()
         self.written = 0
         self.text = ""
         self._stop = threading.Event()
@@ -133,6 +134,13 @@ class Terminal:
             os.write(self._master, KEYS.get(key) or key.encode())
             if key == "escape":
                 time.sleep(0.15)  # alone, it is no beginning of a longer key
+
+    def caught_up(self, seconds: float = 15.0) -> None:
+        """Wait until everything that was sent stands there, as somebody does who reads before they type; a
+        screen that moves is waited for no longer than that."""
+        end = time.monotonic() + seconds
+        while time.monotonic() < end and time.monotonic() - self._taken_at < 0.3:
+            time.sleep(0.02)
 
     def cpu_s(self) -> float:
         """Processor time of the process so far."""
@@ -170,6 +178,7 @@ class Terminal:
             except OSError:
                 return
             taken += len(data)
+            self._taken_at = time.monotonic()
             self.written += len(data)
             self.text = (self.text + data.decode(errors="replace"))[-20_000:]
 

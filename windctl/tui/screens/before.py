@@ -127,7 +127,10 @@ class BeforeScreen(Room):
             if complete
             else "□ Confirm each line with Enter; then S starts."
         )
-        self.query_one("#before-state", Static).update(f"{words}{self._pass_words()}")
+        state = self.query_one("#before-state", Static)
+        words += self._pass_words()
+        if str(state.content) != words:  # each change lays the whole room out anew
+            state.update(words)
 
     def _pass_words(self) -> str:
         if self.session.profile.guide.kind != "step":
