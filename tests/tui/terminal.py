@@ -153,14 +153,20 @@ class Terminal:
         assert found is not None
         return int(found[1]) / 1024
 
+    def vanish(self) -> None:
+        """The window is closed. No signal tells: the process is of another session than the terminal."""
+        if self._master >= 0:
+            self._stop.set()
+            self._thread.join(5)
+            os.close(self._master)
+            self._master = -1
+
     def close(self) -> None:
         """End it by force, if it has not ended."""
         if self.process.poll() is None:
             self.process.kill()
         self.process.wait(10)
-        self._stop.set()
-        self._thread.join(5)
-        os.close(self._master)
+        self.vanish()
 
     def _drain(self) -> None:
         begun, taken = time.monotonic(), 0

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import os
+import select
 import signal
 import sys
 import threading
 import tomllib
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from types import FrameType
 from typing import Any
 
@@ -42,13 +43,16 @@ def start(shared: Shared) -> int:
     if faults:
         words = f"{words}\nThe log has the details: {faults[0]}".strip()
     if words:
-        sys.stderr.write(f"{words}\n")
+        with suppress(OSError):  # the terminal may be gone
+            sys.stderr.write(f"{words}\n")
+            sys.stderr.flush()
     return INTERRUPTED if stopped.is_set() else code or 0
 
 
 @contextmanager
 def _signals(session: Session, app: WindctlApp, stopped: threading.Event) -> Iterator[None]:
-    """SIGTERM, SIGHUP: hold at once; the rest follows in a thread, since the terminal may be gone."""
+    """SIGTERM, SIGHUP, a terminal that is gone: hold at once; the rest follows in a thread, since nothing can
+    be shown any more."""
 
     def leave(reason: str) -> None:
         session.leave(reason)
@@ -62,7 +66,9 @@ def _signals(session: Session, app: WindctlApp, stopped: threading.Event) -> Ite
             done.start()
 
     def heard(number: int, _frame: FrameType | None) -> None:
-        reason = f"interrupted by {signal.Signals(number).name}"
+        end(f"interrupted by {signal.Signals(number).name}")
+
+    def end(reason: str) -> None:
         session.hold(reason, leave=True)
         if not stopped.is_set():
             stopped.set()
@@ -72,11 +78,27 @@ def _signals(session: Session, app: WindctlApp, stopped: threading.Event) -> Ite
     before: dict[str, Callable[..., Any] | int | None] = {
         name: signal.signal(getattr(signal, name), heard) for name in names
     }
+    _watch_terminal(lambda: end("the terminal is gone"))
     try:
         yield
     finally:
         for name, handler in before.items():
             signal.signal(getattr(signal, name), handler)
+
+
+def _watch_terminal(gone: Callable[[], None]) -> None:
+    """Only a program that its terminal controls is sent a signal when that closes; any other would stay, with
+    nobody to see it."""
+    if not hasattr(select, "poll") or not os.isatty(0):  # Windows ends a program with its window
+        return
+    poll = select.poll()
+    poll.register(0, 0)  # no event is asked for: what is left to hear is that it was hung up
+
+    def wait() -> None:
+        if any(mask & select.POLLHUP for _, mask in poll.poll()):
+            gone()
+
+    threading.Thread(target=wait, name="windctl-terminal", daemon=True).start()
 
 
 def _end() -> None:
