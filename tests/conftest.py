@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import logging
 import os
 import signal
 from collections.abc import Iterator
@@ -44,14 +45,18 @@ _FOLDERS = {
 
 
 @pytest.fixture(autouse=True)
-def home(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Path:
+def home(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Iterator[Path]:
     """An empty home: settings, profiles, book and log of whoever runs the tests stay out of sight."""
     folder = tmp_path_factory.mktemp("home")
     for name, part in _FOLDERS.items():
         monkeypatch.setenv(name, str(folder / part))
     for name in _OUTSIDE:
         monkeypatch.delenv(name, raising=False)
-    return folder
+    yield folder
+    logger = logging.getLogger("windctl")  # a log that a test began is in its home
+    for handler in list(logger.handlers):
+        logger.removeHandler(handler)
+        handler.close()
 
 
 @pytest.fixture(scope="session", autouse=True)

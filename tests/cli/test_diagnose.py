@@ -3,11 +3,9 @@
 from __future__ import annotations
 
 import json
-import logging
 import os
 import zipfile
 from pathlib import Path
-from typing import Any
 
 import pytest
 
@@ -27,16 +25,6 @@ def gathered(file: Path) -> dict[str, str]:
     with zipfile.ZipFile(file) as held:
         assert held.testzip() is None
         return {name: held.read(name).decode() for name in held.namelist()}
-
-
-@pytest.fixture(autouse=True)
-def _log_of_its_own() -> Any:
-    """The log's handler belongs to the home of one test."""
-    yield
-    logger = logging.getLogger("windctl")
-    for handler in list(logger.handlers):
-        logger.removeHandler(handler)
-        handler.close()
 
 
 def test_after_a_coil_on_a_served_board_everything_is_in_it(tmp_path: Path, capsys: Printed) -> None:
