@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
 from textual.screen import Screen
+from textual.widget import Widget
 from textual.widgets import Footer
 
 from windctl.tui.widgets.title_bar import TitleBar
@@ -28,6 +29,11 @@ class Room(Screen[None]):
         yield self.top()
         yield from self.body()
         yield Footer(show_command_palette=False)
+
+    def on_screen_suspend(self) -> None:
+        """What was drawn is not kept: the library holds on to the lines of a thousand widgets gone by."""
+        for widget in self.walk_children(Widget, with_self=True):
+            widget.refresh()
 
     def top(self) -> TitleBar:
         """The top row."""
