@@ -74,7 +74,7 @@ def test_somebody_who_was_quicker_is_seen_within_the_transaction(
     def slow(store: object, facts: object, agreed: object) -> None:
         monkeypatch.setattr(pairs_in_book, "amend", amend)
         four.make_pairs([pair(1, 4)])
-        amend(store, facts, agreed)  # type: ignore[arg-type]
+        amend(store, facts, agreed)  # type: ignore[arg-type]  # handed on as they are
 
     monkeypatch.setattr(pairs_in_book, "amend", slow)
     with pytest.raises(BookError, match="b1-2026-0001 goes with b1-2026-0004 already"):

@@ -41,11 +41,6 @@ def level_db(ratio: float) -> float:
     return max(20 * math.log10(abs(ratio)), FLOOR_DB) if ratio else FLOOR_DB
 
 
-def mismatch_ratio(m: float) -> float:
-    """m/(2 + m): hum left of two coils whose turns-areas differ by the part m."""
-    return m / (2 + m)
-
-
 @dataclass(frozen=True, slots=True)
 class Left:
     """Hum left by a pair, in dB against both in phase: of the expected square, and 95 % of what it may be."""
