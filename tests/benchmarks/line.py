@@ -27,7 +27,7 @@ from windctl.run.wind import begin
 ROOT = Path(__file__).resolve().parents[2]
 EVERY_TICKS = 100
 QUICK_BOARD = """
-from windctl.machine.virtual import contact_mean
+from windctl.machine.twin import contact_mean
 contact_mean.BOX = 30
 start = contact_mean.ContactMean.start
 contact_mean.ContactMean.start = lambda mean, window, *more: start(mean, min(window, 1), *more)

@@ -5,10 +5,10 @@ from __future__ import annotations
 import copy
 import time
 
-from tests.machine.bare_host import bench_of, host_of
-from tests.machine.worlds import BOBBIN
+from tests.machine.plant.worlds import BOBBIN
+from tests.machine.virtual.bare_host import bench_of, host_of
+from windctl.machine.twin.signals import Inputs, Outputs
 from windctl.machine.virtual.bench import Bench
-from windctl.machine.virtual.signals import Inputs, Outputs
 from windctl.protocol import messages as m
 
 TICKS = 1500  # of cruising on what is in the queue, before the silence is noticed

@@ -11,8 +11,8 @@ from windctl.checkup.plan import chosen
 from windctl.checkup.step import TYPED, Act, Question, Result, Step
 from windctl.desk.ordinary import ORDINARY
 from windctl.desk.simulated_hand import SimulatedHand
+from windctl.machine.plant.faults import Faults
 from windctl.machine.virtual.bench import Bench, virtual_bench
-from windctl.machine.virtual.faults import Faults
 from windctl.machine.virtual.port import VirtualPort
 from windctl.profile.builtin import VIRTUAL
 from windctl.profile.model import MachineProfile

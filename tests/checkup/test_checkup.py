@@ -13,8 +13,8 @@ from windctl.checkup.checkup import Checkup
 from windctl.checkup.plan import STEPS, calibrations, chosen
 from windctl.checkup.step import Act, Verdict
 from windctl.desk.simulated_hand import SimulatedHand
+from windctl.machine.plant.faults import Faults
 from windctl.machine.virtual.bench import Bench
-from windctl.machine.virtual.faults import Faults
 from windctl.machine.virtual.port import VirtualPort
 from windctl.protocol.frames import encode
 from windctl.protocol.messages import Beat, State

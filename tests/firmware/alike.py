@@ -10,12 +10,12 @@ from typing import Any, Final, cast
 from tests.firmware.chip_bench import ChipBench
 from tests.run.winding import here, order
 from windctl.book.open import open_book
+from windctl.machine.plant.made_for import plant_for
+from windctl.machine.plant.plant import Plant
+from windctl.machine.twin.signals import Inputs, Outputs
 from windctl.machine.virtual.bench import Bench, virtual_bench
 from windctl.machine.virtual.line import SerialLine, Way
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.plant_for import plant_for
 from windctl.machine.virtual.port import VirtualPort
-from windctl.machine.virtual.signals import Inputs, Outputs
 from windctl.profile.builtin import VIRTUAL
 from windctl.protocol.frames import FrameReader
 from windctl.protocol.messages import Message, decode

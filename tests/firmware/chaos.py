@@ -19,8 +19,8 @@ from tests.firmware.conformance.benches import spec
 from tests.firmware.host_board import HostBoard
 from tests.protocol.chaos import HOST_EVERY, Chances, Machine, Operator, Program, Way
 from windctl.errors import LinkLost, MachineError
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.signals import ALL_OK, GUARD_OK
+from windctl.machine.plant.plant import Plant
+from windctl.machine.twin.signals import ALL_OK, GUARD_OK
 from windctl.protocol.conversation import Conversation
 from windctl.protocol.frames import FrameReader
 from windctl.protocol.messages import MESSAGES, Go, InputBit, Refused, State, Status, decode

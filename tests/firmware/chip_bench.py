@@ -7,9 +7,9 @@ from pathlib import Path
 from typing import Final
 
 from tests.firmware.chip import CYCLES_PER_TICK, HZ, VOLTS, Chip
-from windctl.machine.virtual.line import SerialLine
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.signals import (
+from windctl.machine.plant.plant import Plant
+from windctl.machine.plant.spindle import Spindle
+from windctl.machine.twin.signals import (
     GUARD_OK,
     GUIDE_HIGH_OK,
     GUIDE_LOW_OK,
@@ -18,7 +18,7 @@ from windctl.machine.virtual.signals import (
     Inputs,
     Outputs,
 )
-from windctl.machine.virtual.spindle import Spindle
+from windctl.machine.virtual.line import SerialLine
 
 CONTACT_MILLIOHM: Final = 305  # per unit, as pins.h has it
 _SLACK: Final = 200  # cycles before a tick at which the plant's own millisecond begins

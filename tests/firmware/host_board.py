@@ -7,8 +7,8 @@ from functools import cache
 from typing import Any
 
 from tests.firmware.build import shared_library
-from windctl.machine.virtual.board import EVERYTHING
-from windctl.machine.virtual.signals import Inputs, Outputs
+from windctl.machine.twin.board import EVERYTHING
+from windctl.machine.twin.signals import Inputs, Outputs
 
 NO_SUCH_FIELD = -(1 << 63)
 

@@ -5,9 +5,9 @@ from __future__ import annotations
 from typing import Any
 
 from tests.firmware.trace import RecordedBoard, Trace
-from tests.machine.ideal import COUNTER_ONLY, HAND_GUIDED, LIMITS, Machine
-from windctl.machine.virtual.board import EVERYTHING
-from windctl.machine.virtual.signals import ALL_OK, GUARD_OK, PEDAL_DOWN, STOP_OK
+from tests.machine.twin.ideal import COUNTER_ONLY, HAND_GUIDED, LIMITS, Machine
+from windctl.machine.twin.board import EVERYTHING
+from windctl.machine.twin.signals import ALL_OK, GUARD_OK, PEDAL_DOWN, STOP_OK
 from windctl.protocol import messages as m
 from windctl.protocol.messages import Capability, Cause, Refusal, State, Trip
 

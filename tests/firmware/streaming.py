@@ -10,8 +10,8 @@ from typing import Any, Final, cast
 
 from tests.firmware.build import ROOT
 from tests.firmware.chip_bench import ChipBench
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.plant_for import plant_for
+from windctl.machine.plant.made_for import plant_for
+from windctl.machine.plant.plant import Plant
 from windctl.machine.virtual.port import VirtualPort
 from windctl.plan.board_setup import board_setup
 from windctl.plan.make import make_plan

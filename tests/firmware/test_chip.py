@@ -13,9 +13,9 @@ import pytest
 from tests.firmware.build import run
 from tests.firmware.chip import CYCLES_PER_TICK, HZ
 from tests.firmware.chip_bench import ChipBench
-from tests.machine.bare_host import PITCH_STEPS, SETUP, BareHost
-from tests.machine.worlds import BOBBIN
-from windctl.machine.virtual.plant import Plant
+from tests.machine.plant.worlds import BOBBIN
+from tests.machine.virtual.bare_host import PITCH_STEPS, SETUP, BareHost
+from windctl.machine.plant.plant import Plant
 from windctl.protocol import messages as m
 
 Elf = Callable[..., Path]

@@ -13,8 +13,8 @@ from tests.firmware.chip_bench import ChipBench
 from windctl.checkup.plan import STEPS, calibrations, chosen
 from windctl.checkup.step import Step, Verdict
 from windctl.desk.ordinary import ORDINARY
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.plant_for import plant_for
+from windctl.machine.plant.made_for import plant_for
+from windctl.machine.plant.plant import Plant
 from windctl.recipe.load import parse_recipe
 
 Elf = Callable[..., Path]

@@ -13,7 +13,7 @@ from tests.conftest import LONG
 from tests.firmware.chip import HZ
 from tests.firmware.chip_bench import ChipBench
 from tests.firmware.test_chip import CRUISE, bench_of, host_of
-from tests.machine.bare_host import SETUP, BareHost
+from tests.machine.virtual.bare_host import SETUP, BareHost
 from windctl.protocol import messages as m
 from windctl.protocol.frames import encode
 

@@ -22,9 +22,9 @@ from tests.firmware.conformance.machine import Machine
 from tests.firmware.conformance.rig import Rig
 from tests.firmware.conformance.run import Finding, Verdict, clauses, judge_all
 from tests.firmware.host_board import HostBoard
-from windctl.machine.virtual import board_commands
-from windctl.machine.virtual.board import EVERYTHING, Board
-from windctl.machine.virtual.plant import Plant
+from windctl.machine.plant.plant import Plant
+from windctl.machine.twin import commands
+from windctl.machine.twin.board import EVERYTHING, Board
 from windctl.machine.virtual.port import VirtualPort
 from windctl.protocol import messages as m
 from windctl.protocol.messages import Capability
@@ -117,14 +117,14 @@ def test_a_board_that_does_something_by_itself_fails() -> None:
 
 
 def test_a_board_that_takes_an_old_permission_fails(monkeypatch: pytest.MonkeyPatch) -> None:
-    def judge(board: Board, code: int, body: bytes) -> board_commands.Verdict:
+    def judge(board: Board, code: int, body: bytes) -> commands.Verdict:
         command = m.decode(code, body) if code in m.MESSAGES else None
         if command is not None and command.MOVES and board.state == m.State.HELD:
-            return board_commands.HANDLERS[code](board, command)
+            return commands.HANDLERS[code](board, command)
         return right(board, code, body)
 
-    right = board_commands.judge
-    monkeypatch.setattr("windctl.machine.virtual.board_dialogue.judge", judge)
+    right = commands.judge
+    monkeypatch.setattr("windctl.machine.twin.dialogue.judge", judge)
     found = judge_all(twin(), [one for one in clauses() if one.section == 4])
     assert any(one.verdict is Verdict.FAILS and "a Go said again" in one.clause.says for one in found)
 

@@ -8,13 +8,13 @@ from typing import Any
 import pytest
 
 from tests.firmware.host_board import HostBoard
-from tests.machine.bare_host import host_of, setup_for
-from tests.machine.worlds import BOBBIN, HAND_GUIDED
+from tests.machine.plant.worlds import BOBBIN, HAND_GUIDED
+from tests.machine.virtual.bare_host import host_of, setup_for
+from windctl.machine.plant.faults import Faults
+from windctl.machine.plant.plant import Plant
+from windctl.machine.plant.spec import PlantSpec
+from windctl.machine.twin.board import Board
 from windctl.machine.virtual.bench import Bench
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.faults import Faults
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.plant_spec import PlantSpec
 from windctl.protocol import messages as m
 
 COARSE = replace(BOBBIN, counts_per_turn=24, steps_per_turn=400, guide=False)

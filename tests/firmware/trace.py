@@ -5,9 +5,9 @@ from __future__ import annotations
 import struct
 from typing import Any
 
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.board_rules import CHECK_EVERY, STATUS_EVERY
-from windctl.machine.virtual.signals import Inputs, Outputs
+from windctl.machine.twin.board import Board
+from windctl.machine.twin.rules import CHECK_EVERY, STATUS_EVERY
+from windctl.machine.twin.signals import Inputs, Outputs
 
 _START = struct.Struct("<cBHHH")
 _AGE = struct.Struct("<cIH")

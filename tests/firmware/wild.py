@@ -8,8 +8,8 @@ from collections import Counter
 from tests.firmware.trace import RecordedBoard, Trace
 from tests.firmware.wild_host import WildHost
 from tests.firmware.wild_plant import WildPlant
-from windctl.machine.virtual.board import EVERYTHING
-from windctl.machine.virtual.signals import Inputs, Outputs
+from windctl.machine.twin.board import EVERYTHING
+from windctl.machine.twin.signals import Inputs, Outputs
 from windctl.protocol import messages as m
 from windctl.protocol.frames import FrameReader
 from windctl.protocol.messages import Capability

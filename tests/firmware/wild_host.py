@@ -11,7 +11,7 @@ import struct
 from dataclasses import replace
 
 from tests.firmware.wild_plant import WildPlant
-from windctl.machine.virtual.board import Board
+from windctl.machine.twin.board import Board
 from windctl.protocol import messages as m
 from windctl.protocol.frames import encode
 from windctl.protocol.messages import Capability, State

@@ -5,7 +5,7 @@ from __future__ import annotations
 import random
 from collections import deque
 
-from windctl.machine.virtual.signals import (
+from windctl.machine.twin.signals import (
     ALL_OK,
     GUARD_OK,
     GUIDE_HIGH_OK,

@@ -14,9 +14,9 @@ from hypothesis.extra.numpy import arrays
 from tests.lay.recipes import WANDER, recipe
 from windctl.lay.deposit import STEEPEST, Deposit
 from windctl.lay.settle import settle
-from windctl.machine.virtual.coil_growing import Coil, Spool
-from windctl.machine.virtual.fate import true_to
-from windctl.machine.virtual.plant_for import plant_for
+from windctl.machine.plant.coil_growing import Coil, Spool
+from windctl.machine.plant.fate import true_to
+from windctl.machine.plant.made_for import plant_for
 from windctl.plan.make import make_plan
 from windctl.profile.builtin import VIRTUAL
 from windctl.recipe.model import Recipe

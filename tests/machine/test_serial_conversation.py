@@ -15,8 +15,8 @@ import pytest
 
 from windctl.errors import LinkLost, MachineError
 from windctl.machine.serial_port import SerialPort
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.signals import Inputs, Outputs
+from windctl.machine.twin.board import Board
+from windctl.machine.twin.signals import Inputs, Outputs
 from windctl.protocol.conversation import Conversation
 from windctl.protocol.messages import Status
 from windctl.protocol.wants import Wants

@@ -7,8 +7,8 @@ import pytest
 from tests.lay.recipes import WANDER, machine, recipe
 from windctl.errors import PlanRefused
 from windctl.lay.make import make_program
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.board_commands import DONE, HANDLERS
+from windctl.machine.twin.board import Board
+from windctl.machine.twin.commands import DONE, HANDLERS
 from windctl.plan.board_setup import board_setup
 from windctl.profile.builtin import VIRTUAL
 from windctl.profile.model import MachineProfile

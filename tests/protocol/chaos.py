@@ -13,8 +13,8 @@ from dataclasses import dataclass, replace
 from random import Random
 
 from windctl.errors import LinkLost, MachineError
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.signals import Inputs, Outputs
+from windctl.machine.twin.board import Board
+from windctl.machine.twin.signals import Inputs, Outputs
 from windctl.protocol.conversation import Conversation
 from windctl.protocol.frames import FrameReader
 from windctl.protocol.messages import Capability, Go, Refused, Setup, State, Trust

@@ -8,7 +8,7 @@ from random import Random
 
 import pytest
 
-from windctl.machine.virtual.signals import ALL_OK, GUARD_OK
+from windctl.machine.twin.signals import ALL_OK, GUARD_OK
 from windctl.protocol.frames import FrameReader, encode
 from windctl.protocol.messages import (
     MESSAGES,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from windctl.machine.virtual.board_rules import LEGAL
+from windctl.machine.twin.rules import LEGAL
 from windctl.protocol.messages import Refusal, State
 from windctl.protocol.rules import BEAT_S, HOLD_AGAIN_S, REACTIONS, RETRY_S, SILENCE_S, TAKEN_IN, TRIES
 

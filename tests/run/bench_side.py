@@ -7,9 +7,9 @@ import json
 import threading
 from collections.abc import Callable
 
+from windctl.machine.plant.faults import Faults
 from windctl.machine.virtual.bench import Bench, virtual_bench
 from windctl.machine.virtual.endpoints import Endpoint, PtyEndpoint, TcpEndpoint
-from windctl.machine.virtual.faults import Faults
 from windctl.machine.virtual.serve import Server
 from windctl.machine.virtual.trace import Trace
 from windctl.profile.builtin import VIRTUAL

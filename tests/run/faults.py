@@ -48,7 +48,7 @@ from tests.run.causes import (
     wound_anew,
 )
 from tests.run.stage import Ended, Stage
-from windctl.machine.virtual.faults import Faults
+from windctl.machine.plant.faults import Faults
 
 TOGETHER = 6  # played out at the same time: they mostly wait
 

@@ -18,7 +18,7 @@ from tests.run.bench_side import Served
 from tests.run.winding import ROOT, SHIPPED, with_key, with_stop
 from windctl.book.heads import CoilHead
 from windctl.book.open import open_book
-from windctl.machine.virtual.faults import Faults
+from windctl.machine.plant.faults import Faults
 from windctl.protocol.messages import Cause
 from windctl.protocol.messages import State as BoardState
 from windctl.record.events import BoardGreeted, CoilFinished, HoldRequested, LinkLost, Tripped

@@ -10,8 +10,8 @@ import pytest
 from tests.run.operator import Step, answering, asked
 from tests.run.winding import SHIPPED, Wound, order, wind, with_key, with_stop
 from windctl.book.open import open_book
+from windctl.machine.plant.faults import Faults
 from windctl.machine.virtual.bench import Bench
-from windctl.machine.virtual.faults import Faults
 from windctl.profile.builtin import VIRTUAL
 from windctl.profile.model import MachineProfile
 from windctl.protocol.messages import Cause

@@ -10,10 +10,10 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from windctl.book.open import open_book
+from windctl.machine.plant.faults import Faults
+from windctl.machine.plant.plant import PlantTruth
 from windctl.machine.ports import Port
 from windctl.machine.virtual.bench import Bench, virtual_bench
-from windctl.machine.virtual.faults import Faults
-from windctl.machine.virtual.plant import PlantTruth
 from windctl.machine.virtual.port import VirtualPort
 from windctl.plan.make import make_plan
 from windctl.profile.builtin import VIRTUAL

@@ -10,12 +10,12 @@ import numpy as np
 import pytest
 from numpy.typing import NDArray
 
-from tests.machine.worlds import to_and_fro
+from tests.machine.plant.worlds import to_and_fro
 from windctl.coil.geometry import Core, core_of
 from windctl.coil.turns_area import mean_area_mm2, third_moment
-from windctl.machine.virtual.coil_growing import Coil, Spool
-from windctl.machine.virtual.fate import draw_fate
-from windctl.machine.virtual.plant_for import plant_for
+from windctl.machine.plant.coil_growing import Coil, Spool
+from windctl.machine.plant.fate import draw_fate
+from windctl.machine.plant.made_for import plant_for
 from windctl.plan.experience.basis import Basis
 from windctl.plan.experience.fold import Experience, learn
 from windctl.plan.experience.lesson import Build, Lesson, Measured, Resistance, Share

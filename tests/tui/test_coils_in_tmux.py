@@ -16,7 +16,7 @@ from tests.run.bench_side import Served
 from tests.tui.tmux import THERE, Tmux, tmux
 from windctl.book.heads import CoilHead
 from windctl.book.open import open_book
-from windctl.machine.virtual.faults import Faults
+from windctl.machine.plant.faults import Faults
 from windctl.plan.make import make_plan
 from windctl.profile.load import parse_profile
 from windctl.recipe.load import load_recipe

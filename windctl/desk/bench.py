@@ -20,8 +20,8 @@ from windctl.errors import UsageError
 if TYPE_CHECKING:
     from windctl.desk.asked import Shared
     from windctl.machine.line_trace import LineTrace
+    from windctl.machine.plant.plant import PlantTruth
     from windctl.machine.ports import Port
-    from windctl.machine.virtual.plant import PlantTruth
     from windctl.plan.experience.supply import Supply
     from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from windctl.checkup.step import Act, Question
 
 if TYPE_CHECKING:
-    from windctl.machine.virtual.plant import Plant
+    from windctl.machine.plant.plant import Plant
 
 _HAND_TURNS = 10.0
 _FAR = 1_000_000  # guide steps: beyond any switch

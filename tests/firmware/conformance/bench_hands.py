@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 
 from tests.firmware.conformance.hands import Act
-from windctl.machine.virtual.plant import Plant
+from windctl.machine.plant.plant import Plant
 
 
 class PlantHands:

@@ -8,11 +8,11 @@ from tests.firmware.conformance.bench_hands import PlantHands
 from tests.firmware.conformance.machine import Machine
 from tests.firmware.conformance.rig import Rig
 from windctl.desk.ordinary import ORDINARY
+from windctl.machine.plant.made_for import plant_for
+from windctl.machine.plant.plant import Plant
+from windctl.machine.plant.spec import PlantSpec
+from windctl.machine.twin.board import EVERYTHING, Board
 from windctl.machine.virtual.bench import Bench
-from windctl.machine.virtual.board import EVERYTHING, Board
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.plant_for import plant_for
-from windctl.machine.virtual.plant_spec import PlantSpec
 from windctl.machine.virtual.port import VirtualPort
 from windctl.profile.builtin import VIRTUAL
 from windctl.recipe.load import parse_recipe

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.plant import Plant
+from windctl.machine.plant.plant import Plant
+from windctl.machine.twin.board import Board
 from windctl.protocol.messages import Capability, State
 
 LOOKS_EVERY = 50  # ticks

@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
+from windctl.machine.plant.faults import Faults
+from windctl.machine.plant.made_for import plant_for
+from windctl.machine.plant.plant import Plant
+from windctl.machine.plant.spec import PlantSpec
+from windctl.machine.twin.board import Board
+from windctl.machine.twin.signals import Inputs, Outputs
 from windctl.machine.virtual.attendant import LOOKS_EVERY, Attendant
-from windctl.machine.virtual.board import Board
-from windctl.machine.virtual.faults import Faults
 from windctl.machine.virtual.line import SerialLine
-from windctl.machine.virtual.plant import Plant
-from windctl.machine.virtual.plant_for import plant_for
-from windctl.machine.virtual.plant_spec import PlantSpec
-from windctl.machine.virtual.signals import Inputs, Outputs
 from windctl.profile.model import MachineProfile
 from windctl.protocol.messages import Capability
 from windctl.recipe.model import Recipe

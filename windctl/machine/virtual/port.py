@@ -7,8 +7,8 @@ import time
 from collections.abc import Callable
 
 from windctl.errors import LinkLost
+from windctl.machine.plant.plant import PlantTruth
 from windctl.machine.virtual.bench import Bench
-from windctl.machine.virtual.plant import PlantTruth
 
 _SLICE_TICKS = 20  # a paced machine shows itself at least so often
 _FORGIVEN_S = 0.25  # a paced machine that falls further behind does not hurry to catch up

@@ -13,9 +13,9 @@ from types import FrameType
 from typing import TextIO
 
 from windctl.errors import UsageError
+from windctl.machine.plant.faults import Faults
 from windctl.machine.virtual.bench import Bench, virtual_bench
 from windctl.machine.virtual.endpoints import Endpoint, PtyEndpoint, TcpEndpoint
-from windctl.machine.virtual.faults import Faults
 from windctl.machine.virtual.trace import Trace
 from windctl.profile.model import MachineProfile
 from windctl.recipe.model import Recipe

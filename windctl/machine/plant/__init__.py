@@ -1,0 +1,1 @@
+"""The plant: the physical world behind a board. Knows the board's signals only, no estimator, no plan."""
