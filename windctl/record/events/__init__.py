@@ -1,0 +1,108 @@
+"""The facts of one coil, frozen and named in past tense, each in the module of its subject.
+
+Raw facts hold what the board said (integers, board ticks) and `at_ms`, the host's milliseconds since its run
+began, on the port's clock. Whatever depended on a clock or on the estimator is a fact too, recorded before it
+acted: a replay never has to estimate or measure time again to know what was done.
+
+What a fact does to the state stands in `windctl.record.fold`; what takes more than a line, in the module of
+`windctl.record.folding` that is named like the fact's own.
+"""
+
+from __future__ import annotations
+
+from typing import get_args
+
+from windctl.record.events.alarms import AlarmRaised
+from windctl.record.events.board import BoardGreeted, CommandRefused, LinkLost, StatusHeard
+from windctl.record.events.checks import CheckAsked, CheckTaken
+from windctl.record.events.consents import ClearGiven, GoGiven
+from windctl.record.events.count import CountCorrected, Unwound
+from windctl.record.events.course import CoilFinished, CoilStarted, Resumed, StopPointChosen, Target
+from windctl.record.events.dry_pass import GuideSeen, PassAgreed, PassWanted
+from windctl.record.events.notes import NoteMade
+from windctl.record.events.readings import ReadingTaken, ReadingTakenBack, ReadingTyped
+from windctl.record.events.requests import EndRequested, HandsAsked, HoldRequested, PaceAsked
+from windctl.record.events.spindle import Held, Tripped, WentOn
+from windctl.record.events.wire import Spliced, WireBroke, WireChanged
+
+__all__ = [
+    "BEFORE_ACTING",
+    "DENSE",
+    "KINDS",
+    "AlarmRaised",
+    "BoardGreeted",
+    "CheckAsked",
+    "CheckTaken",
+    "ClearGiven",
+    "CoilFinished",
+    "CoilStarted",
+    "CommandRefused",
+    "CountCorrected",
+    "EndRequested",
+    "Event",
+    "GoGiven",
+    "GuideSeen",
+    "HandsAsked",
+    "Held",
+    "HoldRequested",
+    "LinkLost",
+    "NoteMade",
+    "PaceAsked",
+    "PassAgreed",
+    "PassWanted",
+    "ReadingTaken",
+    "ReadingTakenBack",
+    "ReadingTyped",
+    "Resumed",
+    "Spliced",
+    "StatusHeard",
+    "StopPointChosen",
+    "Target",
+    "Tripped",
+    "Unwound",
+    "WentOn",
+    "WireBroke",
+    "WireChanged",
+]
+
+Event = (
+    CoilStarted
+    | Resumed
+    | StopPointChosen
+    | CoilFinished
+    | BoardGreeted
+    | StatusHeard
+    | CommandRefused
+    | LinkLost
+    | WentOn
+    | Held
+    | Tripped
+    | CountCorrected
+    | Unwound
+    | GoGiven
+    | ClearGiven
+    | HoldRequested
+    | EndRequested
+    | HandsAsked
+    | PaceAsked
+    | PassWanted
+    | PassAgreed
+    | GuideSeen
+    | WireBroke
+    | Spliced
+    | WireChanged
+    | ReadingTaken
+    | ReadingTyped
+    | ReadingTakenBack
+    | CheckAsked
+    | CheckTaken
+    | AlarmRaised
+    | NoteMade
+)
+
+KINDS: dict[str, type[Event]] = {cls.kind: cls for cls in get_args(Event)}
+
+DENSE = (StatusHeard, ReadingTaken)  # many a second: stored in chunks
+
+# Facts that must be durable before what they permit is done.
+BEFORE_ACTING = (CoilStarted, Resumed, GoGiven, PassAgreed, ClearGiven, CountCorrected)

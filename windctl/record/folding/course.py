@@ -1,0 +1,24 @@
+"""The coil taken up by another run, and where it is to stop."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from windctl.record.events import StopPointChosen
+from windctl.record.folding import board, dry_pass
+from windctl.record.state import State
+
+
+def resumed(state: State) -> State:
+    """Whatever somebody wanted of the run before is void."""
+    return board.gone(replace(dry_pass.ended(state), hold=None, end=None, hands=None, link_lost=None))
+
+
+def stop_point_chosen(state: State, event: StopPointChosen) -> State:
+    """One that is chosen at rest tops the coil up."""
+    return replace(
+        state,
+        stop_point=event.count,
+        stop_choices=state.stop_choices + 1,
+        top_ups=state.top_ups + (1 if state.held is not None else 0),
+    )
