@@ -11,6 +11,7 @@ import struct
 from dataclasses import replace
 
 from tests.firmware.wild_plant import WildPlant
+from windctl.machine.twin import motion
 from windctl.machine.twin.board import Board
 from windctl.protocol import messages as m
 from windctl.protocol.frames import encode
@@ -106,7 +107,7 @@ class WildHost:
             self._say(self._guide_to(board.guide - board.away) if rng.random() < 0.7 else self._datum())
         elif board.spindle.pace == 0 or rng.random() < 0.15:
             self._say(self._pace())
-        elif board.target() <= board.count and rng.random() < 0.8:
+        elif motion.target(board) <= board.count and rng.random() < 0.8:
             further = (
                 (self._datum, self._stop_at, self._lay) if self._guided else (self._datum, self._stop_at)
             )

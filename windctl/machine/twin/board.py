@@ -10,38 +10,15 @@ from __future__ import annotations
 
 from typing import Final
 
-from windctl.machine.twin import reports, rest, watch
+from windctl.machine.twin import motion, reports, rest, watch
 from windctl.machine.twin.contact_mean import ContactMean
 from windctl.machine.twin.dialogue import Dialogue
 from windctl.machine.twin.guide_line import GuideLine
-from windctl.machine.twin.rules import (
-    CHECK_EVERY,
-    NO_STOP_POINT,
-    SILENCE,
-    STATUS_EVERY,
-    STILL,
-    still_ticks,
-)
-from windctl.machine.twin.signals import (
-    ALL_OK,
-    GUIDE_HIGH_OK,
-    GUIDE_LOW_OK,
-    Inputs,
-    Outputs,
-)
+from windctl.machine.twin.rules import CHECK_EVERY, NO_STOP_POINT, STATUS_EVERY, STILL
+from windctl.machine.twin.signals import ALL_OK, Inputs, Outputs
 from windctl.machine.twin.spindle import BRAKE, REST, RUN, Spindle
 from windctl.machine.twin.turns import Turns
-from windctl.protocol.messages import (
-    TRIPS,
-    Capability,
-    Cause,
-    Notice,
-    NoticeKind,
-    Setup,
-    State,
-    Trip,
-    Trust,
-)
+from windctl.protocol.messages import Capability, Cause, Notice, NoticeKind, Setup, State, Trip
 
 EVERYTHING: Final = int(
     Capability.DRIVE_STEP
@@ -53,17 +30,11 @@ EVERYTHING: Final = int(
     | Capability.THERMOMETER
     | Capability.VIRTUAL
 )
-GUIDE_OK: Final = GUIDE_LOW_OK | GUIDE_HIGH_OK
 M32: Final = 0xFFFFFFFF
 
-# The states, causes and bits that are used every tick, as the plain integers they are.
-DRIVES_OFF, READY, TURNING, HELD, TRIPPED = (int(state) for state in State)
+# The bits that are used every tick, as the plain integers they are.
 FITTED_DRIVE = int(Capability.DRIVE_STEP)
 FITTED_GUIDE = int(Capability.GUIDE_STEP)
-FITTED_INDEX = int(Capability.INDEX)
-FITTED_TENSION = int(Capability.TENSION)
-FITTED_PEDAL = int(Capability.PEDAL)
-KNOWN: Final = int(Trust.COUNT | Trust.GUIDE)
 
 
 class Board:
@@ -143,7 +114,7 @@ class Board:
         self.ticks = 0  # u32, wraps
         self.boot = boot_number  # u16, wraps
         self.epoch = 0  # u16, wraps
-        self.state: int = DRIVES_OFF  # u8
+        self.state: int = State.DRIVES_OFF  # u8
         self.cause: int = Cause.BOOT  # u8
         self.trip: int = Trip.NONE  # u8
         self.trust = 0  # u8
@@ -216,13 +187,13 @@ class Board:
         if mode == RUN:
             spindle.step(inputs.steps_issued, count)
             if spindle.mode != RUN:
-                self._arrived()
+                motion.arrived(self)
             if counted and self.fitted & FITTED_GUIDE:
                 guide_steps = self.line.follow(counted)
         elif mode == BRAKE:
             spindle.step(inputs.steps_issued, count)
             if spindle.mode == REST:
-                self._rests()
+                motion.rests(self)
             if ticks == self.pedal_at:
                 watch.pedal_pressed(self)
             if counted and self.fitted & FITTED_GUIDE:
@@ -250,165 +221,6 @@ class Board:
         outputs.rotation = self.rotation
         outputs.drive_enable = 1 if self.powered and self.fitted & FITTED_DRIVE else 0
         outputs.guide_enable = 1 if self.powered and self.fitted & FITTED_GUIDE else 0
-
-    # ------------------------------------------------------------ what commands and inputs do to the motion
-
-    def target(self) -> int:
-        """The nearest of stop point, queue end (if a guide is fitted) and hard limit; never passed."""
-        setup = self.setup
-        assert setup is not None  # nothing asks before a Setup
-        nearest = setup.max_count
-        if self.stop_point < nearest:
-            nearest = self.stop_point
-        if self.fitted & FITTED_GUIDE and self.line.end < nearest:
-            nearest = self.line.end
-        return nearest
-
-    def aim(self) -> None:
-        """The target may have moved: a running spindle is told."""
-        if self.spindle.mode == RUN:
-            self.spindle.aim(self.count, self.target())
-
-    def set_up(self, setup: Setup, crc: int) -> None:
-        """Take another Setup: place, program, pace and stop point are void."""
-        self.setup = setup
-        self.setup_crc = crc
-        self.fitted = setup.fitted
-        self.rotation = setup.rotation
-        self.counts_per_turn = setup.counts_per_turn
-        self.mean.counts_per_turn = setup.counts_per_turn
-        driven = bool(setup.fitted & FITTED_DRIVE)
-        self.still_ticks = still_ticks(driven, setup.counts_per_turn)
-        self.slip_limit = setup.slip_counts * setup.steps_per_turn
-        # 64 ticks at 5/4 of max_pace: max_pace * counts_per_turn * (64 * 5 / 4) / (1000 * steps_per_turn)
-        self.over_counts = setup.max_pace * setup.counts_per_turn * 80 // (1000 * setup.steps_per_turn)
-        self.spindle.configure(setup.counts_per_turn, setup.steps_per_turn, setup.accel, setup.decel)
-        self.stop_point = NO_STOP_POINT
-        self.trust = 0
-        self.line.datum(0, self.count, 0, 0)
-        self.away = 0
-        self.pedal_fresh = False
-        self.turns.configure(setup.counts_per_turn, self.count)
-
-    def set_datum(self, program: int, count: int, guide: int, first: int, into: int) -> None:
-        """The host declares where the machine stands."""
-        moved = count - self.count
-        self.count = count
-        self.turns.move(moved)
-        self.seen_count += moved
-        self.guide = guide
-        self.away = 0
-        self.line.datum(program, count, first, into)
-        self.trust = KNOWN
-        self.stop_point = NO_STOP_POINT
-
-    def go(self) -> None:
-        """Ready or held to turning."""
-        self.state = TURNING
-        self.cause = Cause.NONE
-        self.status_due = True
-        self.moves()
-        self.silent_at = (self.ticks + SILENCE) & M32
-        self.pedal_fresh = False
-        self.hand_stop_told = False
-        self.went_back = 0
-        self.turns.start(self.ticks, self.count)
-        self.seen_count = self.count
-        if self.fitted & FITTED_DRIVE:
-            self.spindle.set_out(self.count, self.target())
-
-    def guide_to(self, guide: int, pace: int) -> None:
-        """Start to move the guide, the spindle standing."""
-        self.guide_target = guide
-        self.guide_pace = pace
-        self.guide_ramp = 0
-        self.silent_at = (self.ticks + SILENCE) & M32
-        self.not_standing()
-
-    def hold(self, cause: int) -> None:
-        """Stop under control and stay powered; also ends a GuideTo. Raises the epoch in every state."""
-        self.raise_epoch()
-        self.guide_pace = 0
-        self.pedal_fresh = False
-        if self.state == TURNING:
-            self.state = HELD
-            self.cause = cause
-            self._brake(at_once=False)
-
-    def enter(self, state: int, cause: int) -> None:
-        """Change to a state in which nothing is driven."""
-        self.state = state
-        self.cause = cause
-        self.powered = state in (READY, HELD)
-        self.raise_epoch()
-
-    def raise_epoch(self) -> None:
-        """Every permission given before is void; the host hears of it at once."""
-        self.epoch = (self.epoch + 1) & 0xFFFF
-        self.status_due = True
-
-    def stop_for(self, trip: int) -> None:
-        rule = TRIPS[trip]
-        if self.state == TRIPPED and (rule.category != 0 or TRIPS[self.trip].category == 0):
-            return  # already stopping; only removed power overrides that
-        self.state = TRIPPED
-        self.cause = Cause.TRIP
-        self.trip = trip
-        if not rule.count:
-            self.trust &= ~Trust.COUNT
-        if not rule.guide:
-            self.trust &= ~Trust.GUIDE
-        self.guide_pace = 0
-        self.pedal_fresh = False
-        self.raise_epoch()
-        self.notice(NoticeKind.TRIPPED, trip, self.count)
-        if rule.category == 0:
-            self.powered = False
-            self._brake(at_once=True)
-        elif self.spindle.mode == REST:
-            self.powered = False
-        else:
-            self._brake(at_once=False)
-
-    def _brake(self, at_once: bool) -> None:
-        if self.spindle.mode != REST:
-            if at_once:
-                self.spindle.cut()
-            else:
-                self.spindle.brake()
-            if self.spindle.mode == REST:
-                self._rests()
-
-    def _rests(self) -> None:
-        """No more steps are issued; the spindle stands when counts have stayed away for a while."""
-        self.moves()
-        self.off_at = (self.ticks + STILL) & M32
-
-    def moves(self) -> None:
-        """The spindle moves, or may be about to."""
-        self.spindle_moves = True
-        self.not_standing()
-
-    def not_standing(self) -> None:
-        self.standing = False
-        self.still_at = (self.ticks + self.still_ticks) & M32
-
-    def _arrived(self) -> None:
-        """The last step before the target is out."""
-        goal = self.spindle.goal
-        setup = self.setup
-        assert setup is not None
-        if goal == self.stop_point:
-            self.settled_cause = Cause.STOP_POINT
-        elif goal == setup.max_count:
-            self.settled_cause = Cause.MAX_COUNT
-        else:
-            self.settled_cause = Cause.QUEUE_END
-        self._rests()
-
-    def beat(self) -> None:
-        """The host is alive."""
-        self.silent_at = (self.ticks + SILENCE) & M32
 
     # ------------------------------------------------------------ messages
 

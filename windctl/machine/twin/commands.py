@@ -10,7 +10,7 @@ from binascii import crc_hqx
 from collections.abc import Callable
 from typing import TYPE_CHECKING, Any, Final
 
-from windctl.machine.twin import rules
+from windctl.machine.twin import motion, rules
 from windctl.machine.twin.contact_mean import WINDOW_LIMIT
 from windctl.machine.twin.signals import GUARD_OK, GUIDE_HIGH_OK, GUIDE_LOW_OK, PEDAL_DOWN, STOP_OK
 from windctl.machine.twin.spindle import BRAKE, RUN, SETTLE
@@ -64,7 +64,7 @@ def _setup(board: Board, setup: m.Setup) -> Verdict:
             return Refusal.RANGE, low
         if value > high:
             return Refusal.RANGE, high
-    board.set_up(setup, crc)
+    motion.set_up(board, setup, crc)
     return DONE
 
 
@@ -77,14 +77,14 @@ def _arm(board: Board, _: m.Arm) -> Verdict:
         return Refusal.INPUT_OPEN, board.pins
     if board.fitted & Capability.PEDAL and board.pins & PEDAL_DOWN:
         return Refusal.PEDAL_DOWN, 0
-    board.enter(State.READY, Cause.ARM)
+    motion.enter(board, State.READY, Cause.ARM)
     return DONE
 
 
 def _disarm(board: Board, _: m.Disarm) -> Verdict:
     if not board.standing:
         return Refusal.MOVING, 0
-    board.enter(State.DRIVES_OFF, Cause.DISARM)
+    motion.enter(board, State.DRIVES_OFF, Cause.DISARM)
     return DONE
 
 
@@ -106,7 +106,7 @@ def _lay(board: Board, lay: m.Lay) -> Verdict:
     if line.end + line.length(lay.n, lay.segments) > rules.COUNT_LIMIT:
         return Refusal.RANGE, rules.COUNT_LIMIT
     line.append(lay.n, lay.segments)
-    board.aim()
+    motion.aim(board)
     return DONE
 
 
@@ -127,8 +127,8 @@ def _stop_at(board: Board, stop: m.StopAt) -> Verdict:
     count = stop.count
     if count == rules.NO_STOP_POINT:
         board.stop_point = count
-        board.aim()
-        return ACCEPTED, board.target()
+        motion.aim(board)
+        return ACCEPTED, motion.target(board)
     if count > setup.max_count:
         return Refusal.RANGE, setup.max_count
     if board.spindle.mode in (RUN, BRAKE):
@@ -140,8 +140,8 @@ def _stop_at(board: Board, stop: m.StopAt) -> Verdict:
             return Refusal.RANGE, board.count
         count = board.count if board.count > 0 else 0
     board.stop_point = count
-    board.aim()
-    return ACCEPTED, board.spindle.goal if board.spindle.mode == SETTLE else board.target()
+    motion.aim(board)
+    return ACCEPTED, board.spindle.goal if board.spindle.mode == SETTLE else motion.target(board)
 
 
 def _go(board: Board, _: m.Go) -> Verdict:
@@ -158,7 +158,7 @@ def _go(board: Board, _: m.Go) -> Verdict:
             return Refusal.PEDAL_DOWN, 0
     if board.away:
         return Refusal.RANGE, board.guide - board.away
-    target = board.target()
+    target = motion.target(board)
     if board.fitted & Capability.DRIVE_STEP:
         if board.spindle.pace == 0:
             return Refusal.RANGE, 1
@@ -166,7 +166,7 @@ def _go(board: Board, _: m.Go) -> Verdict:
             return Refusal.RANGE, target
     elif target <= board.count:
         return Refusal.RANGE, target
-    board.go()
+    motion.go(board)
     return DONE
 
 
@@ -185,7 +185,7 @@ def _guide_to(board: Board, to: m.GuideTo) -> Verdict:
         return Refusal.RANGE, 1
     if to.pace > rules.GUIDE_PACE_LIMIT:
         return Refusal.RANGE, rules.GUIDE_PACE_LIMIT
-    board.guide_to(to.guide, to.pace)
+    motion.guide_to(board, to.guide, to.pace)
     return DONE
 
 
@@ -204,7 +204,7 @@ def _set_datum(board: Board, datum: m.SetDatum) -> Verdict:
             return Refusal.RANGE, setup.guide_min
         if datum.guide > setup.guide_max:
             return Refusal.RANGE, setup.guide_max
-    board.set_datum(datum.program, datum.count, datum.guide, datum.next, datum.into)
+    motion.set_datum(board, datum.program, datum.count, datum.guide, datum.next, datum.into)
     return DONE
 
 
@@ -223,7 +223,7 @@ def _clear_trip(board: Board, _: m.ClearTrip) -> Verdict:
     if _inputs_open(board):
         return Refusal.INPUT_OPEN, board.pins
     board.trip = m.Trip.NONE
-    board.enter(State.DRIVES_OFF, Cause.TRIP)
+    motion.enter(board, State.DRIVES_OFF, Cause.TRIP)
     return DONE
 
 

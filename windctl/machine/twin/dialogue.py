@@ -5,7 +5,7 @@ from __future__ import annotations
 from binascii import crc_hqx
 from typing import TYPE_CHECKING, Final
 
-from windctl.machine.twin import reports
+from windctl.machine.twin import motion, reports
 from windctl.machine.twin.commands import judge
 from windctl.machine.twin.rules import SENT_MAX
 from windctl.protocol import messages as m
@@ -38,9 +38,9 @@ class Dialogue:
         for frame in self.reader.feed(data):
             code = frame.code
             if code == m.Hold.CODE:
-                board.hold(Cause.HOLD)
+                motion.hold(board, Cause.HOLD)
             elif code == m.Beat.CODE:
-                board.beat()
+                motion.beat(board)
             elif code == m.Greet.CODE:
                 self._greet(board, frame.sequence, m.Greet.decode_body(frame.body))
             else:
@@ -53,7 +53,7 @@ class Dialogue:
 
     def _greet(self, board: Board, sequence: int, greet: m.Greet) -> None:
         if not (self.greeted and greet.nonce == self._nonce):
-            board.hold(Cause.GREET)
+            motion.hold(board, Cause.GREET)
             self.greeted = greet.schema == m.SCHEMA
             self._nonce = greet.nonce
             self._sequence = sequence

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from windctl.machine.twin import watch
+from windctl.machine.twin import motion, watch
 from windctl.machine.twin.spindle import REST, SETTLE
 from windctl.protocol.messages import Capability, Cause, NoticeKind, State, Trip
 
@@ -28,7 +28,7 @@ def at_rest(board: Board, counted: int) -> int:
             steps = _guide_to(board)
         elif board.line.lagging and board.trip != Trip.GUIDE_LIMIT:
             steps = board.line.catch_up()
-            board.not_standing()
+            motion.not_standing(board)
     elif counted and board.fitted & GUIDE:
         board.line.wait(counted)
     if not board.standing and ticks == board.still_at:
@@ -39,7 +39,7 @@ def at_rest(board: Board, counted: int) -> int:
     if ticks == board.pedal_at:
         watch.pedal_pressed(board)
     by_hand = board.state == TURNING and not board.fitted & DRIVE
-    if by_hand and not board.hand_stop_told and board.count >= board.target():
+    if by_hand and not board.hand_stop_told and board.count >= motion.target(board):
         board.hand_stop_told = True
         board.notice(NoticeKind.HAND_STOP_DUE, board.count, 0)
     return steps
@@ -54,10 +54,10 @@ def _came_to_rest(board: Board) -> None:
     board.status_due = True
     if board.state == TURNING:
         if board.fitted & DRIVE:
-            board.enter(State.HELD, board.settled_cause)
+            motion.enter(board, State.HELD, board.settled_cause)
         elif board.hand_stop_told:
             at_stop_point = board.stop_point <= board.count
-            board.enter(State.HELD, Cause.STOP_POINT if at_stop_point else Cause.MAX_COUNT)
+            motion.enter(board, State.HELD, Cause.STOP_POINT if at_stop_point else Cause.MAX_COUNT)
     board.notice(NoticeKind.STANDING, board.count, board.guide)
 
 
@@ -74,7 +74,7 @@ def _guide_to(board: Board) -> int:
     board.away += steps
     if board.guide + steps == board.guide_target:
         board.guide_pace = 0
-    board.not_standing()
+    motion.not_standing(board)
     return steps
 
 
@@ -85,7 +85,7 @@ def guide_moved(board: Board, steps: int) -> int:
     guide = board.guide + steps
     if (steps > 0 and guide > setup.guide_max) or (steps < 0 and guide < setup.guide_min):
         board.away -= steps
-        board.stop_for(Trip.GUIDE_LIMIT)
+        motion.stop_for(board, Trip.GUIDE_LIMIT)
         return 0
     board.guide = guide
     return steps

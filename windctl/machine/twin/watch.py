@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Final
 
+from windctl.machine.twin import motion
 from windctl.machine.twin.rules import CHECK_EVERY, PEDAL_DEBOUNCE
 from windctl.machine.twin.signals import GUARD_OK, GUIDE_HIGH_OK, GUIDE_LOW_OK, PEDAL_DOWN, STOP_OK
 from windctl.machine.twin.spindle import REST, RUN
@@ -22,7 +23,7 @@ M32: Final = 0xFFFFFFFF
 def silence(board: Board) -> None:
     """Two seconds without a Beat: whatever moves stops, and the host must greet anew."""
     if board.state == State.TURNING or board.guide_pace:
-        board.hold(Cause.SILENCE)
+        motion.hold(board, Cause.SILENCE)
         board.state = State.HELD
         board.cause = Cause.SILENCE
         board.dialogue.greeted = False
@@ -36,7 +37,7 @@ def counted(board: Board, counted: int) -> None:
             setup = board.setup
             assert setup is not None
             if board.went_back > setup.reverse_counts:
-                board.stop_for(Trip.REVERSE)
+                motion.stop_for(board, Trip.REVERSE)
         board.turns.back(board.count)
     else:
         if board.went_back:
@@ -44,7 +45,7 @@ def counted(board: Board, counted: int) -> None:
         if board.count >= board.turns.end:
             turn_passed(board)
     if board.spindle.mode != RUN:
-        board.moves()
+        motion.moves(board)
 
 
 def turn_passed(board: Board) -> None:
@@ -53,9 +54,9 @@ def turn_passed(board: Board) -> None:
     setup = board.setup
     if whole and board.state == State.TURNING and board.fitted & Capability.TENSION and setup is not None:
         if turns.tension < setup.tension_low:
-            board.stop_for(Trip.TENSION_LOW)
+            motion.stop_for(board, Trip.TENSION_LOW)
         elif turns.tension > setup.tension_high:
-            board.stop_for(Trip.TENSION_HIGH)
+            motion.stop_for(board, Trip.TENSION_HIGH)
 
 
 def index_seen(board: Board, counted: int) -> None:
@@ -63,7 +64,7 @@ def index_seen(board: Board, counted: int) -> None:
     setup = board.setup
     watched = board.state == State.TURNING and board.fitted & Capability.INDEX
     if watched and setup is not None and off > setup.slip_counts + abs(counted):
-        board.stop_for(Trip.INDEX)
+        motion.stop_for(board, Trip.INDEX)
 
 
 def pins_changed(board: Board, pins: int) -> None:
@@ -71,17 +72,17 @@ def pins_changed(board: Board, pins: int) -> None:
     board.pins = pins
     if board.powered:
         if not pins & STOP_OK:
-            board.stop_for(Trip.STOP_INPUT)
+            motion.stop_for(board, Trip.STOP_INPUT)
         elif not pins & GUARD_OK:
-            board.stop_for(Trip.GUARD)
+            motion.stop_for(board, Trip.GUARD)
         elif board.fitted & Capability.GUIDE_STEP and pins & GUIDE_OK != GUIDE_OK:
-            board.stop_for(Trip.GUIDE_LIMIT)
+            motion.stop_for(board, Trip.GUIDE_LIMIT)
     if changed & PEDAL_DOWN and board.fitted & Capability.PEDAL:
         board.pedal_fresh = False
         if pins & PEDAL_DOWN:
             board.pedal_at = (board.ticks + PEDAL_DEBOUNCE) & M32
         elif board.state == State.TURNING:
-            board.hold(Cause.PEDAL)
+            motion.hold(board, Cause.PEDAL)
 
 
 def pedal_pressed(board: Board) -> None:
@@ -102,18 +103,18 @@ def check(board: Board) -> None:
     speed = counts * 125 // 8 if counts > 0 else 0
     board.speed = speed if speed < 0xFFFF else 0xFFFF
     if not State.DRIVES_OFF <= board.state <= State.TRIPPED:
-        board.stop_for(Trip.INTERNAL)
+        motion.stop_for(board, Trip.INTERNAL)
     setup = board.setup
     if setup is None:
         return
     spindle = board.spindle
     if spindle.mode != REST:
         if abs(spindle.check(board.count)) > board.slip_limit:
-            board.stop_for(Trip.SLIP)
+            motion.stop_for(board, Trip.SLIP)
         if counts > board.over_counts + 1:
-            board.stop_for(Trip.OVERSPEED)
-        board.aim()
+            motion.stop_for(board, Trip.OVERSPEED)
+        motion.aim(board)
     if board.state == State.TURNING and board.fitted & Capability.INDEX:
         longest = board.counts_per_turn + board.counts_per_turn // 2 + setup.slip_counts
         if board.turns.since_index(board.count) > longest:
-            board.stop_for(Trip.INDEX)
+            motion.stop_for(board, Trip.INDEX)

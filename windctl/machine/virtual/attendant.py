@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from windctl.machine.plant.plant import Plant
+from windctl.machine.twin import motion
 from windctl.machine.twin.board import Board
 from windctl.protocol.messages import Capability, State
 
@@ -54,7 +55,7 @@ class Attendant:
         board, plant = self._board, self._plant
         left = 0.0
         if board.state == State.TURNING:
-            left = (board.target() - board.count) / plant.spec.counts_per_turn
+            left = (motion.target(board) - board.count) / plant.spec.counts_per_turn
         if left > 0.0:
             self._looks_past_stop = 0
             cruise = plant.spec.cruise_rpm
