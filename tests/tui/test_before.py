@@ -176,6 +176,15 @@ def outcome(verdict: str, minutes: int | None) -> Outcome:
     return Outcome("v1-2026-0001", "x", "finished", "", summary, "", "ab" * 32, None, waiting)
 
 
+def test_turns_too_many_are_told_with_what_they_are_unsure_of() -> None:
+    over = outcome("outside", None)
+    reason = "unwind 25 ± 7 turns to meet the target"
+    over = replace(over, summary=replace(over.summary, reason=reason))
+    look, words = outcome_words(over)
+    assert look.word == "outside"
+    assert words.startswith(reason)
+
+
 def test_a_warm_coil_outside_its_tolerance_is_to_be_read_again_cold() -> None:
     _, words = outcome_words(outcome("not judged", 9))
     assert "still warm: wait 9 minutes and read again, cold it should show 6.012 kΩ" in words

@@ -19,6 +19,7 @@ from textual.widgets import Input, OptionList, Static
 from tests.cli.recipes import to_turns
 from windctl.book.open import open_book
 from windctl.desk.asked import Shared
+from windctl.desk.spool_keeping import NewSpool, keep_new
 from windctl.tui.app import WindctlApp
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.screens.before import BeforeScreen
@@ -130,6 +131,29 @@ async def test_from_the_recipe_list_to_the_sealed_record(
         assert (head.recipe, head.batch, head.of, head.outcome) == (NAME, "[bold]lot[/]", 2, "finished")
         assert head.turns == 60
         assert book.verify().broken == ()
+
+
+async def test_the_next_one_the_same_is_planned_from_what_is_left_on_the_spool(tmp_path: Path) -> None:
+    recipe(tmp_path, 60)
+    app = app_for(tmp_path, 0.0)
+    keep_new(app.session.shared, NewSpool("s1", gauge="AWG 42", enamel="grade 1", grams=100.0))
+    app.session.take_spool("s1")
+    async with app.run_test(size=(80, 24)) as pilot:
+        await to_the_machine(app, pilot)
+        wind = app.screen
+        assert isinstance(wind, WindScreen) and wind.preview is not None
+        first = wind.preview
+        assert first.supply.wound_m == 0.0
+        await until(pilot, lambda: wind.outcome is not None)
+        await press(pilot, "n")
+        await until(pilot, lambda: isinstance(app.screen, BeforeScreen))
+        before = app.screen
+        assert isinstance(before, BeforeScreen)
+        await until(pilot, lambda: before.preview.supply.wound_coils == 1)
+        assert before.preview.supply.wound_m == pytest.approx(first.plan.wire_length_m, rel=0.1)
+        left = before.preview.plan.learnt.left  # by what the first has taught of the wire, too
+        assert left is not None and left != first.plan.learnt.left
+        assert f"{left.metres:.0f}"[-3:] in shown(app)
 
 
 async def test_held_by_a_key_gone_on_with_by_a_word_noted_and_ended(tmp_path: Path) -> None:

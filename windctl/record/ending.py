@@ -88,7 +88,7 @@ def _judge_resistance(state: State, at_ms: int) -> tuple[Event, ...]:
         )
     met = _finished(state, at_ms, "finished", "the target is met")
     if more <= -1 and met.verdict != "within":
-        words = f"unwind {-more} +- {max(1, round(1.96 * missing.sd))} turns to meet the target"
+        words = f"unwind {-more} ± {max(1, round(1.96 * missing.sd))} turns to meet the target"
         return (replace(met, reason=words),)
     return (met,)
 

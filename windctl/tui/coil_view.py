@@ -44,7 +44,7 @@ def figures(told: Told) -> tuple[tuple[str, str], ...]:
 
 
 def against(first: CoilHead, others: Sequence[CoilHead]) -> str:
-    """The coils beside it, each with its letter and by how much its resistance differs in the end."""
+    """The coils beside it, a line each: its letter, and by how much its resistance differs in the end."""
     parts = [f"A {first.number}"]
     for letter, other in zip(LETTERS, others[:MOST], strict=False):
         off = ""
@@ -55,7 +55,7 @@ def against(first: CoilHead, others: Sequence[CoilHead]) -> str:
             more = f", {other.turns - first.turns:+.0f} turns"
         same = ", same program" if other.program_digest == first.program_digest else ""
         parts.append(f"{letter} {other.number}{off}{more}{same}")
-    return " · ".join(parts)
+    return "\n".join(parts)
 
 
 def otherwise(differing: Sequence[Differing]) -> list[tuple[str, str]]:

@@ -35,12 +35,16 @@ class BeforeScreen(Room):
     )
     BINDINGS: ClassVar[list[BindingType]] = [key("before.start"), key("before.pass"), key("back")]
 
-    def __init__(self, session: Session, preview: Preview, batch: str = "", of: int = 0) -> None:
+    def __init__(
+        self, session: Session, preview: Preview, batch: str = "", of: int = 0, *, again: bool = False
+    ) -> None:
         super().__init__(session)
         self.preview = preview
+        self._again = again  # a coil was wound since: its wire is off the spool, and it may have taught
         self._batch = batch or session.shared.batch or ""
         self._of = of or session.shared.of or 0
         self._opening = False
+        self._planning = False
         guided = session.profile.guide.kind == "step"
         self.dry_pass = guided and not session.simulated
 
@@ -71,6 +75,8 @@ class BeforeScreen(Room):
     def on_mount(self) -> None:
         """Begin with the list."""
         self.query_one(Checklist).focus()
+        if self._again:
+            self.replan()
         self.compare()
         self._say(False)
 
@@ -79,13 +85,19 @@ class BeforeScreen(Room):
         if (self.session.spool or "") != self.preview.supply.id and not self._opening:
             self.replan()
 
-    @work(thread=True, exclusive=True, group="plan")
     def replan(self) -> None:
-        """The same recipe with the wire that is taken now."""
+        """The same recipe with the wire that is taken now, and what coils have taught by now."""
+        self._planning = True
+        self.plan()
+
+    @work(thread=True, exclusive=True, group="plan")
+    def plan(self) -> None:
+        """Plan it."""
         self.app.call_from_thread(self.planned, self.session.preview(self.preview.listed))
 
     def planned(self, made: Preview | str) -> None:
         """Show the other coil, or say why there is none."""
+        self._planning = False
         if isinstance(made, str):
             self.app.pop_screen()
             self.app.push_screen(Say("It cannot be wound so", made))
@@ -151,6 +163,9 @@ class BeforeScreen(Room):
         """Open the machine, once everything is confirmed."""
         if not self.query_one(Checklist).complete:
             self.notify("first confirm every line", markup=False)
+            return
+        if self._planning:
+            self.notify("the coil is being planned anew", markup=False)
             return
         if self._opening:
             return

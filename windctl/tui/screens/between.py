@@ -9,6 +9,7 @@ from textual.binding import BindingType
 from windctl.tui.keymap import key
 from windctl.tui.screens.room import Room
 from windctl.tui.widgets.room_bar import ROOMS, RoomBar
+from windctl.tui.widgets.table import Table
 from windctl.tui.widgets.title_bar import TitleBar
 
 
@@ -38,8 +39,14 @@ class Between(Room):
         bar.simulated = self.session.simulated
         bar.redraw()
 
+    def on_resize(self) -> None:
+        """A table has other columns where there is more room or less."""
+        for table in self.query(Table):
+            if table.row_count:
+                self.call_after_refresh(self.repaint)
+
     def repaint(self) -> None:
-        """Other colours."""
+        """Other colours, or another width."""
 
     def action_back(self) -> None:
         """Where one came from."""

@@ -71,7 +71,7 @@ class CoilsScreen(Between):
         self.turn_to(self.page.number)
 
     def repaint(self) -> None:
-        """Other colours."""
+        """Other colours, or another width."""
         self.show(self.page)
 
     # ------------------------------------------------------------ pages

@@ -77,7 +77,7 @@ class MachineScreen(Between):
     def on_mount(self) -> None:
         """A simulated machine is looked at at once; a real port is opened when asked to."""
         table = self.query_one(Table)
-        table.add_columns(*machine_view.columns(self.app.size.width))
+        table.head(machine_view.columns(self.app.size.width))
         table.focus()
         if self.session.run is None and self.session.simulated:
             self.session.open_bench()
@@ -93,7 +93,7 @@ class MachineScreen(Between):
         self.app.run_worker(what, thread=True, group="bench")  # type: ignore[arg-type]  # a plain function
 
     def repaint(self) -> None:
-        """Other colours."""
+        """Other colours, or another width."""
         self.looked = None
         self.look()
 
@@ -124,7 +124,9 @@ class MachineScreen(Between):
         if before is None or (before.results, before.step, before.steps, before.checking) != (
             looked.results, looked.step, looked.steps, looked.checking,
         ):  # fmt: skip
-            table.fill(machine_view.rows(looked, self.app.size.width))
+            width = self.app.size.width
+            table.head(machine_view.columns(width))
+            table.fill(machine_view.rows(looked, width))
             if looked.checking and looked.step in table.rows:
                 table.move_cursor(row=table.get_row_index(looked.step))
             self.refresh_bindings()

@@ -61,13 +61,11 @@ class SpoolsScreen(Between):
 
     def on_mount(self) -> None:
         """Look into the book."""
-        table = self.query_one(Table)
-        table.add_columns(*spool_view.columns(self.app.size.width))
-        table.focus()
+        self.query_one(Table).focus()
         self.look()
 
     def repaint(self) -> None:
-        """Other colours."""
+        """Other colours, or another width."""
         self.show(self.spools)
 
     @work(thread=True, exclusive=True, group="spools")
@@ -83,10 +81,9 @@ class SpoolsScreen(Between):
     def show(self, spools: tuple[SpoolState, ...]) -> None:
         """Fill the table."""
         self.spools, self.looked = spools, True
-        chosen = self.session.spool
-        self.query_one(Table).fill(
-            (one.id, spool_view.row(one, one.id == chosen, self.app.size.width)) for one in spools
-        )
+        chosen, table, width = self.session.spool, self.query_one(Table), self.app.size.width
+        table.head(spool_view.columns(width))
+        table.fill((one.id, spool_view.row(one, one.id == chosen, width)) for one in spools)
         self.detail()
         if not spools:
             self.say("No spools yet. A keeps one; coils wound from it then teach how its wire is.")

@@ -259,7 +259,7 @@ class WindScreen(WindQuestions):
 
         if self.outcome is not None and self.preview is not None:
             card = self.coil.card
-            self.app.switch_screen(BeforeScreen(self.session, self.preview, card.batch, card.of))
+            self.app.switch_screen(BeforeScreen(self.session, self.preview, card.batch, card.of, again=True))
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keys of a running coil end with it."""

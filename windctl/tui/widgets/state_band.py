@@ -33,8 +33,7 @@ class StateBand(Drawing):
         picture: Picture = [[Cell(" ", _INK, paper)] * width for _ in range(height)]
         self._write(picture, 1, 2, self.look.glyph)
         word = lettered(self.look.word)
-        large = lettered_width(self.look.word) + 6 <= width * 2 // 3
-        if large:
+        if self._room_beside(width):
             for row, line in enumerate(word):
                 self._write(picture, row, 5, line)
             at = 5 + len(word[0]) + 3
@@ -43,6 +42,13 @@ class StateBand(Drawing):
             at = 5 + len(self.look.word) + 3
         self._next(picture, at, width)
         return picture
+
+    def _room_beside(self, width: int) -> bool:
+        """The word may be large as long as what comes next is whole beside it."""
+        room = width - lettered_width(self.look.word) - 9
+        coming = self.next
+        words = _wrapped(f"{coming.words} {coming.figure}".strip(), max(room, 1), 2)
+        return room >= width // 3 - 3 and all(len(line) <= room for line in (*words, coming.when))
 
     def _next(self, picture: Picture, at: int, width: int) -> None:
         coming = self.next
