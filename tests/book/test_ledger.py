@@ -23,7 +23,7 @@ from windctl.record.addenda import CoilNoted
 from windctl.record.events import NoteMade
 
 HERE = Path(__file__).parent
-NEWEST = 3
+NEWEST = 4
 NEXT = NEWEST + 1
 
 
@@ -80,7 +80,12 @@ def test_the_tables_of_the_newest_schema_are_what_they_always_were(book: Book, p
     """Books with them exist. To change a table, append a step to the ledger and add a schema file."""
     assert schema(path) == statements(NEWEST)
     assert ledger_of(path) == names()
-    assert names() == [(1, "coils, entries, curve"), (2, "logs, log_entries"), (3, "coils: spool, words")]
+    assert names() == [
+        (1, "coils, entries, curve"),
+        (2, "logs, log_entries"),
+        (3, "coils: spool, words"),
+        (4, "lessons; words of partings"),
+    ]
 
 
 @pytest.mark.parametrize("old", [1, 2])
@@ -113,6 +118,35 @@ def test_a_book_of_an_older_schema_is_brought_up_with_all_that_is_in_it(
     assert schema(path.with_name(f"shop.book.before-{old + 1}")) == statements(old)
 
 
+def test_a_book_of_schema_3_tells_what_teaches_and_why_pairs_were_parted(path: Path, tmp_path: Path) -> None:
+    """Written by the version that had it: a coil that taught, was parted from its pair, noted and withdrawn
+    (in this order, in its log); its former partner, which has nothing to be compared with; a coil whose
+    lesson was not written down; an open one."""
+    old_book(path, 3)
+    assert schema(path) == statements(3)
+    with open_book(path) as book:
+        assert book.verify().broken == ()
+        assert ledger_of(path) == names()
+        apart = [head.number for head in book.list('note:"wanted them apart"')]
+        assert apart == ["b2-2026-0001", "b1-2026-0001"]
+        assert [(one.lesson.coil, one.withdrawn) for one in book.lessons()] == [
+            ("b1-2026-0001", "was damp"),
+            ("b2-2026-0002", None),
+        ]
+    with closing(sqlite3.connect(path)) as connection:
+        rows = "SELECT number, how, lessons.spool FROM coils LEFT JOIN lessons ON coil = id ORDER BY number"
+        assert connection.execute(rows).fetchall() == [
+            ("b1-2026-0001", "withdrawn", "s1"),
+            ("b1-2026-0002", None, None),
+            ("b2-2026-0001", "nothing", ""),
+            ("b2-2026-0002", "untold", ""),
+        ]
+    new = tmp_path / "new.book"
+    open_book(new).close()
+    assert shape(path) == shape(new)
+    assert files_beside(path) == ["new.book", "shop.book.before-4"]
+
+
 def test_a_book_says_what_it_is(book: Book, path: Path) -> None:
     """Bytes 68 to 71 are the application id in SQLite's published file format."""
     assert path.read_bytes()[:16] == b"SQLite format 3\0"
@@ -127,8 +161,8 @@ def test_an_older_book_is_backed_up_and_taken_forward(book: Book, path: Path) ->
     assert bring_up(store, LATER) == []
     store.close()
     assert ledger_of(path) == [*names(), (NEXT, "a shelf for each coil")]
-    assert backup == path.with_name("shop.book.before-4")
-    assert files_beside(path) == ["shop.book.before-4"]
+    assert backup == path.with_name("shop.book.before-5")
+    assert files_beside(path) == ["shop.book.before-5"]
     assert ledger_of(backup) == names()
     assert len(backup.read_bytes()) == len(before)
     with open_book(backup, create=False) as old:
@@ -139,11 +173,11 @@ def test_an_older_book_is_backed_up_and_taken_forward(book: Book, path: Path) ->
 
 
 def test_a_backup_never_replaces_another(book: Book, path: Path) -> None:
-    path.with_name("shop.book.before-4").write_bytes(b"kept")
+    path.with_name("shop.book.before-5").write_bytes(b"kept")
     store = Store(path, "rw")
-    assert bring_up(store, LATER) == [path.with_name("shop.book.before-4-2")]
+    assert bring_up(store, LATER) == [path.with_name("shop.book.before-5-2")]
     store.close()
-    assert path.with_name("shop.book.before-4").read_bytes() == b"kept"
+    assert path.with_name("shop.book.before-5").read_bytes() == b"kept"
 
 
 def test_a_step_that_fails_leaves_the_book_as_it_was(book: Book, path: Path) -> None:
@@ -173,7 +207,7 @@ def test_of_two_that_open_an_older_book_at_once_one_takes_the_step(book: Book, p
         thread.start()
     for thread in threads:
         thread.join()
-    assert backups == [path.with_name("shop.book.before-4")]
+    assert backups == [path.with_name("shop.book.before-5")]
     assert ledger_of(path) == [*names(), (NEXT, "a shelf for each coil")]
 
 
@@ -207,7 +241,7 @@ def test_a_newer_book_is_left_alone(book: Book, path: Path) -> None:
     store.close()
     before = path.read_bytes()
     for readonly in (False, True):
-        with pytest.raises(BookError, match="has schema 4; this windctl knows schemas up to 3"):
+        with pytest.raises(BookError, match="has schema 5; this windctl knows schemas up to 4"):
             open_book(path, readonly=readonly)
     assert path.read_bytes() == before
 
@@ -215,7 +249,7 @@ def test_a_newer_book_is_left_alone(book: Book, path: Path) -> None:
 def test_an_older_book_is_not_taken_forward_when_only_read(book: Book, path: Path) -> None:
     before = path.read_bytes()
     store = Store(path, "ro")
-    with pytest.raises(BookError, match="must be brought to 4 first"):
+    with pytest.raises(BookError, match="must be brought to 5 first"):
         bring_up(store, LATER)
     store.close()
     assert path.read_bytes() == before

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import sqlite3
 from contextlib import closing
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -12,8 +13,10 @@ from tests.book.samples import ENDED, coil_id, wind
 from windctl.book import pairs as pairs_in_book
 from windctl.book.book import Book
 from windctl.book.export import restored
+from windctl.book.logs import COIL
 from windctl.errors import BookError
-from windctl.record.addenda import MagnetTold, PairMade, PairParted, magnet, paired
+from windctl.record.addenda import Addendum, MagnetTold, PairMade, PairParted, encode, genesis, magnet, paired
+from windctl.record.chain import link
 
 WHO = "Demo Winder"
 FIRST, SECOND, THIRD, FOURTH = (f"b1-2026-000{n}" for n in range(1, 5))
@@ -123,3 +126,57 @@ def test_a_pair_is_part_of_the_export_and_its_change_shows(four: Book, path: Pat
             "UPDATE log_entries SET payload = replace(payload, '-51', '-61') WHERE kind = 'pair_made'"
         )
     assert {fault.coil for fault in four.verify().broken} == {FIRST, THIRD}
+
+
+def rewritten(book: Book, n: int, *facts: Addendum) -> None:
+    """The log of coil `n` forged, with all its links: it agrees with itself."""
+    book.close()
+    log = COIL + coil_id(n)
+    last = genesis(log)
+    with closing(sqlite3.connect(book.path)) as connection, connection:
+        connection.execute("DELETE FROM log_entries WHERE log = ?", [log])
+        for seq, fact in enumerate(facts):
+            last = link(last, fact.kind, encode(fact))
+            row = [log, seq, fact.kind, encode(fact), last]
+            connection.execute("INSERT INTO log_entries VALUES (?, ?, ?, ?, ?)", row)
+        connection.execute("UPDATE logs SET n = ?, digest = ? WHERE name = ?", [len(facts), last.hex(), log])
+
+
+@pytest.mark.parametrize(
+    ("forged", "found"),
+    [
+        ([said(4)], {FIRST: f"it goes with {THIRD}, and that coil goes with {FOURTH}",
+                     THIRD: f"it goes with {FOURTH}, and that coil goes with {SECOND}"}),
+        ([said(2)], {FIRST: f"it goes with {THIRD}, and that coil goes with {SECOND}",
+                     THIRD: f"it goes with {SECOND}, and that coil goes with {FOURTH}"}),
+        ([said(1), PairParted(ENDED, WHO, coil_id(1), FIRST, "sold")],
+         {FIRST: f"it goes with {THIRD}, and that coil goes with no other"}),
+        ([replace(said(1), joined="start to finish")],
+         {FIRST: f"it goes with {THIRD}, and joined is 'start to start' here, 'start to finish' there",
+          THIRD: f"it goes with {FIRST}, and joined is 'start to finish' here, 'start to start' there"}),
+        ([replace(said(1), left_db=-61.0)],
+         {FIRST: f"it goes with {THIRD}, and left_db is -51.0 here, -61.0 there",
+          THIRD: f"it goes with {FIRST}, and left_db is -61.0 here, -51.0 there"}),
+    ],
+)  # fmt: skip
+def test_a_half_that_says_otherwise_is_found(
+    four: Book, forged: list[Addendum], found: dict[str, str]
+) -> None:
+    """Coil 3 goes with 1, and 2 with 4; what is said of coil 3 is forged."""
+    four.make_pairs([pair(1, 3), pair(2, 4)])
+    rewritten(four, 3, *forged)
+    what = "what was said since it was closed: "
+    others = {fault.coil: fault.what for fault in four.verify().broken if "words is" not in fault.what}
+    assert others == {coil: what + text for coil, text in found.items()}
+    for coil in (FIRST, THIRD):
+        alone = [fault.what for fault in four.verify(coil).broken if "words is" not in fault.what]
+        assert alone == ([what + found[coil]] if coil in found else [])
+    assert four.verify(SECOND).good
+
+
+def test_why_a_pair_was_parted_is_found_by_search(four: Book) -> None:
+    four.make_pairs([pair(1, 3)])
+    four.part_pair(FIRST, ENDED, WHO, "The customer wanted ONE")
+    for query in ('"wanted one"', 'note:"customer wanted"'):
+        assert {head.number for head in four.list(query)} == {FIRST, THIRD}
+    assert four.verify().good

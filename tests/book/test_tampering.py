@@ -100,6 +100,9 @@ def names(finding: BrokenCoil, table: Table, column: str, row: dict[str, object]
             return finding.coil == "book" and about in finding.what
         case "curve":
             return finding.coil == numbers[str(row["coil"])] and "curve" in finding.what
+        case "lessons":
+            said = "lessons: there is none" if column == "coil" else f"lessons: {column} is "
+            return finding.coil == numbers[str(row["coil"])] and said in finding.what
     raise AssertionError(table.name)
 
 

@@ -151,7 +151,11 @@ def test_a_book_of_an_older_version_is_taken_forward_when_it_is_read(tmp_path: P
         connection.executescript(old.read_text(encoding="utf-8"))
     coils = asked(capsys, "coils", "list", "--book", str(path), "spool:s1")["coils"]
     assert [coil["coil"] for coil in coils] == ["b1-2026-0001"]
-    assert sorted(file.name for file in tmp_path.iterdir()) == ["shop.book", "shop.book.before-3"]
+    assert sorted(file.name for file in tmp_path.iterdir()) == [
+        "shop.book",
+        "shop.book.before-3",
+        "shop.book.before-4",
+    ]
 
 
 def test_coils_go_from_book_to_book_in_a_file(book: Path, tmp_path: Path, capsys: Printed) -> None:

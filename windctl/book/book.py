@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 import uuid
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import replace
 from pathlib import Path
 from types import TracebackType
@@ -17,6 +17,7 @@ from windctl.book.export import Restored, exported, shown
 from windctl.book.heads import CoilHead, coil_number, head_columns, opened
 from windctl.book.imports import imports_in, next_serial
 from windctl.book.lease import Lease
+from windctl.book.lessons import CoilLesson, every, heard, kinds_of
 from windctl.book.pairs import make_pairs, part_pair, stock_facts
 from windctl.book.queries import (
     HEAD_COLUMNS,
@@ -31,16 +32,13 @@ from windctl.book.queries import (
 )
 from windctl.book.query import parse, sorted_by
 from windctl.book.shelf import (
-    CoilLesson,
     SpoolRecord,
     add_spool,
     add_to_spool,
     addenda_in,
     amend,
-    lessons_in,
     spool_in,
     spools_in,
-    untaught_in,
 )
 from windctl.book.store import Store
 from windctl.book.tables import coils, entries
@@ -48,6 +46,8 @@ from windctl.book.verify import BrokenCoil, VerifyReport, verify_book, verify_co
 from windctl.book.words import first_words
 from windctl.book.writer import CoilWriter
 from windctl.errors import BookError, RecordBroken
+from windctl.plan.experience.gaussian import Name
+from windctl.plan.experience.lesson import Lesson
 from windctl.record.addenda import Addendum, CoilImported, PairMade, SpoolAdded
 from windctl.record.canonical import decode, encode
 from windctl.record.chain import genesis, link
@@ -252,11 +252,18 @@ class Book:
 
     def lessons(self) -> tuple[CoilLesson, ...]:
         """What every closed coil teaches, in the order in which they were begun, the withdrawn ones too."""
-        missing = (
-            (number, lesson_of(list(self.events(number)), self.find(number).bench))
-            for number in untaught_in(self._store)
-        )
-        return lessons_in(self._store, [(number, one) for number, one in missing if one is not None])
+        return every(self._store, self._lesson)
+
+    def heard(
+        self, about: Iterable[Name], *, simulated: bool, also: Iterable[str] = ()
+    ) -> tuple[CoilLesson, ...]:
+        """Of these lessons those that a plan hears (`windctl.book.lessons`) which asks for the unknowns
+        `about`; of the spools among them all. `also`: ids of further coils."""
+        return heard(self._store, about, unreal=simulated, reader=self._lesson, also=also)
+
+    def kinds_of(self, spool: str) -> set[bool]:
+        """Whether the coils of a spool are simulated: which of the two there are."""
+        return kinds_of(self._store, spool)
 
     def verify(self, coil: str | None = None) -> VerifyReport:
         """Check one coil, or all of them and the book as a whole, against the chains of digests."""
@@ -277,6 +284,9 @@ class Book:
         if report.broken:
             return report
         return VerifyReport(report.checked, tuple(held_against(self._store, self.find(coil_id), claim)))
+
+    def _lesson(self, coil: str) -> Lesson | None:
+        return lesson_of(list(self.events(coil)), self.find(coil).bench)
 
     def _again(self, head: CoilHead) -> CoilHead:
         with self._store.reading() as connection:

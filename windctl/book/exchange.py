@@ -19,6 +19,7 @@ import sqlalchemy as sa
 from windctl.book.export import FORMAT, Restored, exported, restored
 from windctl.book.heads import CoilHead, curve_rows, head_columns
 from windctl.book.imports import free_number, imports_in
+from windctl.book.lessons import keep_row
 from windctl.book.logs import COIL, IMPORTS, Log, LogRow, append, append_stored, facts_of, read
 from windctl.book.queries import HEAD_COLUMNS, head_of
 from windctl.book.store import Store
@@ -162,6 +163,7 @@ def _new(connection: sa.Connection, one: Restored, hand: Hand) -> Taken:
     if one.log is not None:
         append_stored(connection, COIL + head.id, _stored(one.log.rows))
     _note(connection, hand, head.id, number, recorded, hand.teach)
+    keep_row(connection, head.id, silent=not hand.teach)
     return Taken(number, recorded, "new")
 
 
@@ -189,8 +191,10 @@ def _again(connection: sa.Connection, here: CoilHead, one: Restored, hand: Hand)
         if texts := said_in(facts_of(one.log)[common:]):
             longer = coils.c.words + more_words(texts)
             connection.execute(sa.update(coils).where(coils.c.id == here.id).values(words=longer))
+        keep_row(connection, here.id)
     if hand.teach and here.id in imports_in(connection).silent:
         _note(connection, hand, here.id, here.number, recorded, True)
+        keep_row(connection, here.id, silent=False)
         how = "taught" if how == "same" else how
     return Taken(here.number, recorded, how)
 

@@ -9,10 +9,10 @@ from dataclasses import dataclass, field, replace
 import sqlalchemy as sa
 
 from windctl.book.heads import CoilHead, coil_number
-from windctl.book.logs import IMPORTS, append, read
+from windctl.book.logs import IMPORTS, append, decoded, read
 from windctl.book.tables import coils, numbers
 from windctl.errors import BookError, RecordBroken
-from windctl.record.addenda import Addendum, CoilImported, NumbersPassed, decode
+from windctl.record.addenda import CoilImported, NumbersPassed
 
 _NUMBER = re.compile(r"([a-z0-9]+)-([0-9]{4})-([0-9]{4,})", re.ASCII)
 _TELLING_APART = "bcdefghijklmnopqrstuvwxyz"  # the bench that a number clashes with is the first of its name
@@ -33,13 +33,7 @@ class Imports:
 
 def imports_in(connection: sa.Connection) -> Imports:
     """All of it. A row that cannot be read is passed over here, and told by the check of its log."""
-    log = read(connection, IMPORTS)
-    facts: list[Addendum] = []
-    for row in () if log is None else log.rows:
-        try:
-            facts.append(decode(row.kind, row.payload))
-        except (RecordBroken, TypeError):
-            continue
+    facts = decoded(read(connection, IMPORTS))
     latest = {fact.coil: fact for fact in facts if isinstance(fact, CoilImported)}
     return Imports(latest, tuple(fact for fact in facts if isinstance(fact, NumbersPassed)))
 

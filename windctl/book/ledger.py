@@ -17,6 +17,7 @@ from pathlib import Path
 import sqlalchemy as sa
 
 from windctl.book.schema_3 import add_spool_and_words
+from windctl.book.schema_4 import add_lessons
 from windctl.book.store import Store
 from windctl.book.tables import ledger, log_entries, logs, metadata
 from windctl.errors import BookError, BookOutdated, RecordBroken
@@ -44,6 +45,7 @@ def _add_logs(connection: sa.Connection) -> None:
 STEPS: tuple[Step, ...] = (
     Step(2, "logs, log_entries", _add_logs),
     Step(3, "coils: spool, words", add_spool_and_words),
+    Step(4, "lessons; words of partings", add_lessons),
 )
 
 

@@ -95,17 +95,35 @@ def facts_of(log: Log | None) -> tuple[Addendum, ...]:
     return () if log is None else tuple(_fact(log.name, row.kind, row.payload) for row in log.rows)
 
 
+def decoded(log: Log | None) -> list[Addendum]:
+    """What can be read of a log; the rest is told by its check."""
+    facts: list[Addendum] = []
+    for row in () if log is None else log.rows:
+        try:
+            facts.append(decode(row.kind, row.payload))
+        except (RecordBroken, TypeError):
+            continue
+    return facts
+
+
 def all_facts(store: Store, prefix: str) -> dict[str, list[Addendum]]:
     """The facts of all logs whose names begin so, by what comes after it; in order within each."""
-    facts: dict[str, list[Addendum]] = {}
-    query = (
-        sa.select(log_entries.c.log, log_entries.c.kind, log_entries.c.payload)
-        .where(log_entries.c.log.startswith(prefix, autoescape=True))
-        .order_by(log_entries.c.log, log_entries.c.seq)
-    )
     with store.reading() as connection:
-        for name, kind, payload in connection.execute(query):
-            facts.setdefault(name.removeprefix(prefix), []).append(_fact(name, kind, payload))
+        return facts_by_log(connection, prefix)
+
+
+def facts_by_log(
+    connection: sa.Connection, prefix: str, which: Sequence[str] | None = None
+) -> dict[str, list[Addendum]]:
+    """The same; `which`: only of those that go on so. Raises RecordBroken where a row cannot be read."""
+    facts: dict[str, list[Addendum]] = {}
+    query = sa.select(log_entries.c.log, log_entries.c.kind, log_entries.c.payload)
+    if which is None:
+        query = query.where(log_entries.c.log.startswith(prefix, autoescape=True))
+    else:
+        query = query.where(log_entries.c.log.in_([prefix + one for one in which]))
+    for name, kind, payload in connection.execute(query.order_by(log_entries.c.log, log_entries.c.seq)):
+        facts.setdefault(name.removeprefix(prefix), []).append(_fact(name, kind, payload))
     return facts
 
 

@@ -138,3 +138,24 @@ log_entries = sa.Table(
     sa.Column("link", sa.LargeBinary(32), nullable=False),
     sqlite_with_rowid=False,
 )
+
+# What each closed coil is to the coils to come, in the words that a plan asks by (`windctl.book.lessons`).
+lessons = sa.Table(
+    "lessons",
+    metadata,
+    sa.Column("coil", sa.Text, sa.ForeignKey("coils.id"), primary_key=True),
+    sa.Column("began", sa.Double, nullable=False),
+    sa.Column("teaches", sa.Integer, nullable=False),
+    sa.Column("how", sa.Text, nullable=False),
+    sa.Column("simulated", sa.Integer, nullable=False),
+    sa.Column("bench", sa.Text, nullable=False),
+    sa.Column("spool", sa.Text, nullable=False),
+    sa.Column("bobbin", sa.Text, nullable=False),
+    sa.Column("lay", sa.Text, nullable=False),
+    sa.Column("style", sa.Text, nullable=False),
+    sa.Index("lessons_by_time", "simulated", "teaches", "began"),
+    sa.Index("lessons_by_spool", "spool"),
+    sa.Index("lessons_by_lay", "lay", "simulated", "teaches", "began"),
+    sa.Index("lessons_by_bobbin", "bobbin", "simulated", "teaches", "began"),
+    sqlite_with_rowid=False,
+)

@@ -6,7 +6,7 @@ Safe beside a live writer: of each coil one state is taken, rows that come later
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from typing import Any
 
 import sqlalchemy as sa
@@ -15,10 +15,13 @@ from windctl.book.check import Fault, check_record
 from windctl.book.heads import CoilHead, coil_number
 from windctl.book.imports import Imports, gaps, imports_in, recorded_head
 from windctl.book.ledger import names
-from windctl.book.logs import COIL, Log, LogFault, check_log, check_logs, facts_of, read
+from windctl.book.lessons import IN_RECORD as OF_LESSON
+from windctl.book.lessons import LessonRow, row_in, row_of
+from windctl.book.logs import COIL, Log, LogFault, check_log, check_logs, decoded, facts_of, read
+from windctl.book.pairs import check_pairs
 from windctl.book.queries import HEAD_COLUMNS, StoredRow, curve_in, head_of, raw_rows
 from windctl.book.store import Store
-from windctl.book.tables import coils, curve, entries, ledger, numbers
+from windctl.book.tables import coils, curve, entries, ledger, lessons, numbers
 from windctl.book.words import IN_RECORD, said_in, words_of, written_in
 from windctl.errors import BookError, RecordBroken
 from windctl.record.addenda import CoilImported
@@ -102,7 +105,7 @@ def verify_coil(store: Store, coil_id: str) -> VerifyReport:
     with store.reading() as connection:
         log = read(connection, f"{COIL}{coil_id}")
         number = connection.scalar(sa.select(coils.c.number).where(coils.c.id == coil_id))
-    faults = () if log is None else tuple(check_log(log))
+    faults = [*(() if log is None else check_log(log)), *check_pairs(store, coil_id)]
     told = [_of_log(fault, {COIL + coil_id: str(number)}) for fault in faults]
     return VerifyReport(report.checked, (*report.broken, *told))
 
@@ -111,7 +114,7 @@ def _logs(store: Store) -> Iterator[BrokenCoil]:
     with store.reading() as connection:
         known = [tuple(row) for row in connection.execute(sa.select(coils.c.id, coils.c.number))]
     numbers_of = {COIL + str(coil_id): str(number) for coil_id, number in known}
-    for fault in check_logs(store, [coil_id for coil_id, _ in known]):
+    for fault in (*check_logs(store, [coil_id for coil_id, _ in known]), *check_pairs(store)):
         yield _of_log(fault, numbers_of)
 
 
@@ -142,6 +145,7 @@ def _coil(store: Store, coil_id: str, imported: CoilImported | None) -> Iterator
             faults.append(Fault(stop, f"the record has {one.n_rows} rows, the coil's row says {stop}"))
         if not faults:  # else its words could not be told either
             faults += _against_words(one, written)
+            faults += _against_lesson(one, written, imported)
     except (BookError, RecordBroken) as error:
         faults = [Fault(None, f"cannot be read: {error}")]
     for fault in faults:
@@ -149,9 +153,10 @@ def _coil(store: Store, coil_id: str, imported: CoilImported | None) -> Iterator
 
 
 def _noticing(rows: Iterable[StoredRow], written: list[Entry]) -> Iterator[StoredRow]:
-    """The same rows; those that people wrote are put into `written` on the way."""
+    """The same rows; those that the coil's words and its lesson follow from are put into `written` on the
+    way."""
     for row in rows:
-        if row.entry.kind in IN_RECORD:
+        if row.seq == 0 or row.entry.kind in (*IN_RECORD, *OF_LESSON):
             written.append(row.entry)
         yield row
 
@@ -167,12 +172,35 @@ def _against_words(one: _Snapshot, written: Iterable[Entry]) -> Iterator[Fault]:
         yield Fault(None, f"words is {one.words!r}, its record and what was said since give {said!r}")
 
 
+def _against_lesson(
+    one: _Snapshot, record: Iterable[Entry], imported: CoilImported | None
+) -> Iterator[Fault]:
+    """What plans find its lesson by, once more from record and log."""
+    again = None
+    if one.head.sealed:
+        silent = imported is not None and not imported.teaches
+        again = row_of(one.head.started, one.head.bench, record, decoded(one.log), silent=silent)
+    if one.lesson == again:
+        return
+    if one.lesson is None or again is None:
+        is_there = "there is none" if one.lesson is None else "there is one, and the coil is open"
+        yield Fault(None, f"its row among the lessons: {is_there}")
+        return
+    for field in fields(again):
+        kept, said = getattr(one.lesson, field.name), getattr(again, field.name)
+        if kept != said:
+            what = f"{field.name} is {kept!r}, its record and what was said since give {said!r}"
+            yield Fault(None, f"its row among the lessons: {what}")
+
+
 @dataclass(frozen=True, slots=True)
 class _Snapshot:
-    """A coil's row, its words, its curve, how many rows its record has, and its log, all of one moment."""
+    """A coil's row, its words, its row among the lessons, its curve, how many rows its record has, and its
+    log, all of one moment."""
 
     head: CoilHead
     words: object
+    lesson: LessonRow | None
     points: list[tuple[int, CurvePoint]]
     n_rows: int
     log: Log | None
@@ -192,7 +220,8 @@ def _snapshot(store: Store, coil_id: str) -> _Snapshot:
         row = connection.execute(sa.select(*HEAD_COLUMNS, coils.c.words).where(coils.c.id == coil_id)).one()
         rows = sa.select(sa.func.count()).select_from(entries).where(entries.c.coil == coil_id)
         n_rows, log = int(connection.scalar(rows) or 0), read(connection, f"{COIL}{coil_id}")
-        return _Snapshot(head_of(row), row.words, curve_in(connection, coil_id), n_rows, log)
+        lesson, points = row_in(connection, coil_id), curve_in(connection, coil_id)
+        return _Snapshot(head_of(row), row.words, lesson, points, n_rows, log)
 
 
 def _damage(store: Store) -> Iterator[BrokenCoil]:
@@ -209,7 +238,8 @@ def _damage(store: Store) -> Iterator[BrokenCoil]:
 
 def _orphans(connection: sa.Connection) -> Iterator[BrokenCoil]:
     """Rows that belong to no coil."""
-    for table, what in ((entries, "rows of a record"), (curve, "points of a curve")):
+    kinds = ((entries, "rows of a record"), (curve, "points of a curve"), (lessons, "rows among the lessons"))
+    for table, what in kinds:
         known = sa.select(coils.c.id)
         query = (
             sa.select(table.c.coil, sa.func.count()).where(table.c.coil.not_in(known)).group_by(table.c.coil)

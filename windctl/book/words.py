@@ -10,14 +10,14 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from windctl.errors import RecordBroken
-from windctl.record.addenda import Addendum, CoilNoted, CoilReadmitted, CoilWithdrawn
+from windctl.record.addenda import Addendum, CoilNoted, CoilReadmitted, CoilWithdrawn, PairParted
 from windctl.record.canonical import decode
 from windctl.record.entries import Entry
 from windctl.record.events import NoteMade
 
 # The kinds that hold what people wrote: of rows of a record, and of rows of a coil's log.
 IN_RECORD = (NoteMade.kind,)
-IN_LOG = (CoilNoted.kind, CoilWithdrawn.kind, CoilReadmitted.kind)
+IN_LOG = (CoilNoted.kind, CoilWithdrawn.kind, CoilReadmitted.kind, PairParted.kind)
 
 
 def fold(text: str) -> str:
@@ -50,7 +50,7 @@ def said_in(facts: Iterable[Addendum]) -> tuple[str, ...]:
     for fact in facts:
         if isinstance(fact, CoilNoted):
             texts.append(fact.text)
-        elif isinstance(fact, CoilWithdrawn | CoilReadmitted):
+        elif isinstance(fact, CoilWithdrawn | CoilReadmitted | PairParted):
             texts.append(fact.reason)
     return tuple(texts)
 

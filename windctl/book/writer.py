@@ -12,6 +12,7 @@ import sqlalchemy as sa
 from windctl.book import tables
 from windctl.book.heads import SEAL, CoilHead, closed, curve_rows, head_columns, plain_curve, seal_payload
 from windctl.book.lease import Lease
+from windctl.book.lessons import keep_row
 from windctl.book.store import Store
 from windctl.book.words import more_words, written_in
 from windctl.errors import BookError
@@ -152,6 +153,7 @@ class CoilWriter:
         connection.execute(sa.update(coils).where(coils.c.id == self.id).values(**head_columns(head)))
         if points:
             connection.execute(sa.insert(tables.curve), curve_rows(self.id, points))
+        keep_row(connection, self.id)
 
     def _tied(self, rows: Sequence[Entry]) -> tuple[_Tail, list[dict[str, Any]]]:
         """Where the record ends with these rows, and the rows as they are stored."""

@@ -12,7 +12,8 @@ from windctl.errors import UsageError
 
 if TYPE_CHECKING:
     from windctl.book.book import Book
-    from windctl.book.shelf import CoilLesson, SpoolRecord
+    from windctl.book.lessons import CoilLesson
+    from windctl.book.shelf import SpoolRecord
     from windctl.plan.experience.fold import Experience, Unfit
 
 _NAME = re.compile(r"[A-Za-z0-9][A-Za-z0-9._-]{0,23}")

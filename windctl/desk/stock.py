@@ -16,7 +16,7 @@ from windctl.record.addenda import Addendum, CoilMeasured, magnet, paired, withd
 if TYPE_CHECKING:
     from windctl.book.book import Book
     from windctl.book.heads import CoilHead
-    from windctl.book.shelf import CoilLesson
+    from windctl.book.lessons import CoilLesson
     from windctl.plan.experience.fold import Experience
     from windctl.recipe.model import Recipe
     from windctl.record.events import CoilStarted
@@ -30,7 +30,6 @@ _TYPED = ("count_corrected", "wire_broke", "spliced")
 _POLELESS = "nobody said which pole is towards the strings: --north or --south"
 _UNFIT = "its resistance is far from that of so many turns: a shorted turn, another wire, a wrong count"
 MOST = 1000  # coils that are taken at once
-_RECENT = 500  # further coils whose lessons are heard; what older ones taught these know as well
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,7 +57,7 @@ class Stock:
 
     coils: tuple[InStock, ...]
     left_out: tuple[LeftOut, ...]
-    lessons: tuple[CoilLesson, ...]  # of all coils in the book
+    lessons: tuple[CoilLesson, ...]  # those that count for them, real and simulated ones
 
     @property
     def poleless(self) -> tuple[InStock, ...]:
@@ -116,7 +115,7 @@ def stock_of(book: Book, query: str, batch: str | None) -> Stock:
             f"{len(here)} coils are in stock, more than the {MOST} that can be paired at once: name some, "
             "with a query such as recipe:NAME or since:2026-03, or with --batch"
         )
-    lessons = book.lessons() if here else ()
+    lessons = _lessons(book, here)
     by_start = {(one.lesson.coil, one.began): one for one in lessons}
     coils = []
     for head in here:
@@ -126,6 +125,15 @@ def stock_of(book: Book, query: str, batch: str | None) -> Stock:
         else:
             coils.append(coil)
     return Stock(tuple(coils), tuple(left_out), lessons)
+
+
+def _lessons(book: Book, heads: Sequence[CoilHead]) -> tuple[CoilLesson, ...]:
+    """Those of these coils, of all others from the same spools, and of the last ones in the book."""
+    if not heads:
+        return ()
+    spools = {("level", head.spool) for head in heads if head.spool}
+    ids = [head.id for head in heads]
+    return tuple(one for kind in (False, True) for one in book.heard(spools, simulated=kind, also=ids))
 
 
 def _order(head: CoilHead) -> tuple[str, int, int]:
@@ -213,9 +221,7 @@ def _matched(book: Book, stock: Stock, wish: Wish, simulated: bool) -> Matched:
         return Matched((), (), ())
     every = [one for one in stock.lessons if one.lesson.simulated == simulated and one.withdrawn is None]
     sources = {coil.lesson.lesson.source for coil in coils}
-    since = max(len(every) - _RECENT, 0)
-    heard = [one for at, one in enumerate(every) if at >= since or one.lesson.source in sources]
-    together, experience, unfit = _learnt(book, heard, sources)
+    together, experience, unfit = _learnt(book, every, sources)
     fit = [coil for coil in coils if _key(coil.lesson) not in unfit]
     left_out = [LeftOut(coil.head.number, _UNFIT) for coil in coils if _key(coil.lesson) in unfit]
     if not fit:

@@ -61,12 +61,11 @@ def _from_book(
     if record is not None:
         record.spool.check_fits(recipe.wire)
     spools = book.spools()
-    every = book.lessons()
     if simulated is None:
-        kinds = {one.lesson.simulated for one in every if spool and one.lesson.spool == spool}
+        kinds = book.kinds_of(spool) if spool else set()
         simulated = all(kinds) if kinds else by_profile
-    lessons = [one for one in every if one.lesson.simulated == simulated]
     keep = asked_for(recipe, spool or "", profile.bench)
+    lessons = book.heard(keep, simulated=simulated)
     experience = learn(history(lessons, spools), [each.spool for each in spools], keep)
     if record is None:
         return Supply(None, experience)

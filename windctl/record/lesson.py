@@ -36,11 +36,12 @@ def lesson_of(events: Sequence[Event], bench: str) -> Lesson | None:
         turns=state.turns,
         meter_rel=meter_rel(prior.gain_sd, prior.celsius_sd, prior.coil_over_air_sd),
         measured=() if any(isinstance(event, WireChanged) for event in events) else _measured(state),
-        simulated=_simulated(events),
+        simulated=simulated(events),
     )
 
 
-def _simulated(events: Sequence[Event]) -> bool:
+def simulated(events: Sequence[Event]) -> bool:
+    """Whether a virtual machine wound this coil, or a part of it."""
     return any(
         isinstance(event, BoardGreeted) and event.identity.capabilities & Capability.VIRTUAL
         for event in events

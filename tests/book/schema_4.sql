@@ -1,0 +1,16 @@
+CREATE TABLE coils ( id TEXT NOT NULL, number TEXT NOT NULL, bench TEXT NOT NULL, year INTEGER NOT NULL, serial INTEGER NOT NULL, recipe TEXT NOT NULL, recipe_digest TEXT NOT NULL, batch TEXT NOT NULL, "of" INTEGER NOT NULL, operator TEXT NOT NULL, started TEXT NOT NULL, ended TEXT, outcome TEXT NOT NULL, reason TEXT NOT NULL, turns DOUBLE, dcr_20c_ohm DOUBLE, dcr_u95_ohm DOUBLE, target_kind TEXT NOT NULL, target_value DOUBLE NOT NULL, verdict TEXT NOT NULL, program_digest TEXT NOT NULL, trace_digest TEXT, n_entries INTEGER NOT NULL, record_digest TEXT NOT NULL, spool TEXT DEFAULT '' NOT NULL, words TEXT DEFAULT '' NOT NULL, PRIMARY KEY (id), UNIQUE (bench, year, serial), UNIQUE (number) );
+CREATE INDEX coils_by_batch ON coils (batch);
+CREATE INDEX coils_by_serial ON coils (serial);
+CREATE INDEX coils_by_spool ON coils (spool);
+CREATE INDEX coils_found ON coils (started, number, year, serial, bench, recipe, batch, spool, operator, outcome, verdict, turns, dcr_20c_ohm, trace_digest, words);
+CREATE TABLE curve ( coil TEXT NOT NULL, seq INTEGER NOT NULL, turn DOUBLE NOT NULL, ohm_20c DOUBLE NOT NULL, final_ohm DOUBLE NOT NULL, final_sd DOUBLE NOT NULL, PRIMARY KEY (coil, seq), FOREIGN KEY(coil) REFERENCES coils (id) ) WITHOUT ROWID;
+CREATE TABLE entries ( coil TEXT NOT NULL, seq INTEGER NOT NULL, kind TEXT NOT NULL, events INTEGER NOT NULL, payload BLOB NOT NULL, link BLOB NOT NULL, PRIMARY KEY (coil, seq), FOREIGN KEY(coil) REFERENCES coils (id) ) WITHOUT ROWID;
+CREATE TABLE ledger ( version INTEGER NOT NULL, name TEXT NOT NULL, PRIMARY KEY (version) );
+CREATE TABLE lessons ( coil TEXT NOT NULL, began DOUBLE NOT NULL, teaches INTEGER NOT NULL, how TEXT NOT NULL, simulated INTEGER NOT NULL, bench TEXT NOT NULL, spool TEXT NOT NULL, bobbin TEXT NOT NULL, lay TEXT NOT NULL, style TEXT NOT NULL, PRIMARY KEY (coil), FOREIGN KEY(coil) REFERENCES coils (id) ) WITHOUT ROWID;
+CREATE INDEX lessons_by_bobbin ON lessons (bobbin, simulated, teaches, began);
+CREATE INDEX lessons_by_lay ON lessons (lay, simulated, teaches, began);
+CREATE INDEX lessons_by_spool ON lessons (spool);
+CREATE INDEX lessons_by_time ON lessons (simulated, teaches, began);
+CREATE TABLE log_entries ( log TEXT NOT NULL, seq INTEGER NOT NULL, kind TEXT NOT NULL, payload BLOB NOT NULL, link BLOB NOT NULL, PRIMARY KEY (log, seq), FOREIGN KEY(log) REFERENCES logs (name) ) WITHOUT ROWID;
+CREATE TABLE logs ( name TEXT NOT NULL, n INTEGER NOT NULL, digest TEXT NOT NULL, PRIMARY KEY (name) );
+CREATE TABLE numbers ( bench TEXT NOT NULL, year INTEGER NOT NULL, last INTEGER NOT NULL, PRIMARY KEY (bench, year) );
