@@ -19,7 +19,9 @@ from windctl.run.requests import (
     Request,
     Skip,
     Splice,
+    Together,
     Unwind,
+    ZeroContact,
 )
 
 
@@ -48,6 +50,8 @@ from windctl.run.requests import (
         ("Read 5.93 k 22.5 °C", Read(BY, 5930.0, 22.5)),
         ("read 812.4 ohm -3", Read(BY, 812.4, -3.0)),
         ("skip", Skip(BY)),
+        ("zero", ZeroContact(BY)),
+        ("Together", Together(BY)),
     ],
 )
 def test_a_line_means_one_request(line: str, meant: Request) -> None:

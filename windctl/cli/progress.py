@@ -15,6 +15,7 @@ from collections.abc import Callable, Mapping, Sequence
 from typing import TYPE_CHECKING, Protocol, TextIO
 
 from windctl.cli import present
+from windctl.run.zero_seen import now_words
 
 if TYPE_CHECKING:
     from windctl.run.snapshot import Snapshot
@@ -78,6 +79,8 @@ def coil_fields(snapshot: Snapshot) -> list[str]:
         fields.append(f"finish {present.ohm(snapshot.finish_ohm, snapshot.finish_u95 or 0.0)}")
     if snapshot.ohm_20c_now is not None:
         fields.append(f"now {present.ohm(snapshot.ohm_20c_now)}")
+    if snapshot.zero is not None and snapshot.zero.wanted and not snapshot.zero.together:
+        fields.append(f"contact: {now_words(snapshot.zero.now)}")
     fields.append(snapshot.says)
     if snapshot.tension_cn is not None:
         fields.append(f"{snapshot.tension_cn:.0f} cN")

@@ -9,9 +9,25 @@ from windctl.cli.progress import Face
 from windctl.cli.prompt import Prompt
 from windctl.desk.words import BY, help_text, request_of
 from windctl.errors import RunFailed, UsageError, WindctlError
-from windctl.run.requests import Clear, End, Faster, Go, Hold, Note, Request, Slower, TakeBack, Unwind
+from windctl.run.requests import (
+    Clear,
+    End,
+    Faster,
+    Go,
+    Hold,
+    Note,
+    Request,
+    Skip,
+    Slower,
+    TakeBack,
+    Together,
+    Unwind,
+    ZeroContact,
+)
+from windctl.run.zero_seen import found_words
 
 if TYPE_CHECKING:
+    from windctl.desk.simulated_leads import SimulatedLeads
     from windctl.run.snapshot import Snapshot
 
 Hand = Callable[[float], None]  # turns the spindle of a machine simulated here; negative unwinds
@@ -31,11 +47,19 @@ class Asked(Protocol):
 class Questions:
     """What the run asks, put to the person once each time, and what the person says."""
 
-    def __init__(self, run: Asked, face: Face, prompt: Prompt | None, hand: Hand | None) -> None:
+    def __init__(
+        self,
+        run: Asked,
+        face: Face,
+        prompt: Prompt | None,
+        hand: Hand | None,
+        leads: SimulatedLeads | None = None,
+    ) -> None:
         self._run = run
         self._face = face
         self._prompt = prompt
         self._hand = hand
+        self._leads = leads
         self._open: str | None = None
         self._put: tuple[object, ...] = ()
         self._answers = 0
@@ -54,6 +78,8 @@ class Questions:
             self._answers = snapshot.answers
             self._face.say(snapshot.answer)
         self._unwind(snapshot)
+        if self._leads is not None:
+            self._leads.mind(snapshot.zero)
         asks = None if snapshot.asks == "turn" else snapshot.asks  # that one ends the run by itself
         if asks != self._open:
             self._open = asks
@@ -99,7 +125,9 @@ class Questions:
             wanted = request_of(line)
             if snapshot.phase == "turning" and (not line or isinstance(wanted, Hold)):
                 self._run.request(Hold(BY, "held at the keyboard"))
-            elif isinstance(wanted, Slower | Faster | Note | TakeBack):
+            elif isinstance(wanted, Slower | Faster | Note | TakeBack) or (
+                isinstance(wanted, Skip) and snapshot.zero is not None and snapshot.zero.wanted
+            ):
                 self._run.request(wanted)
             return
         if not line:
@@ -116,6 +144,10 @@ class Questions:
         else:
             if isinstance(request, Unwind) and request.turns is not None:
                 self._to_unwind = request.turns
+            if isinstance(request, ZeroContact):
+                request = ZeroContact(BY, simulated_hand=self._leads is not None)
+            elif isinstance(request, Together) and self._leads is not None and snapshot.asks == "leads":
+                self._leads.join()
             self._run.request(request)
 
     def _unwind(self, snapshot: Snapshot) -> None:
@@ -133,20 +165,25 @@ def _is_asked(request: Go | Clear, asks: str | None) -> bool:
 
 def _situation(snapshot: Snapshot) -> tuple[object, ...]:
     """What has to change before the same question is put again."""
-    return (snapshot.asks, snapshot.drives_off, snapshot.hands, snapshot.splices, snapshot.wire_ends_at)
+    refused = snapshot.zero.refused if snapshot.zero is not None else ""
+    at_the_wire = (snapshot.hands, snapshot.splices, snapshot.wire_ends_at)
+    return (snapshot.asks, snapshot.drives_off, at_the_wire, refused)
 
 
 def _question(snapshot: Snapshot) -> str:
-    lines = [f"{snapshot.says}."]
+    zero = snapshot.zero
+    lines = [] if zero is None or not found_words(zero) else [f"{found_words(zero)}."]
+    lines.append(f"{snapshot.says}.")
     if snapshot.wire_ends_at is not None:
         lines.append(
             f"If the wire broke, it ends near turn {snapshot.wire_ends_at:.1f}: splice goes back there."
         )
     if snapshot.asks == "place" and snapshot.guide_place_mm is not None:
         lines.append(f"Put the guide {snapshot.guide_place_mm:.2f} mm from where it began.")
-    lines.append(_ANSWERS[snapshot.asks or "go"])
     if snapshot.turns <= 0 and snapshot.asks == "go":
-        return "Type go and Enter to start; Ctrl-C leaves without turning anything."
+        start = "Type go and Enter to start; Ctrl-C leaves without turning anything."
+        return "\n".join([*lines, start]) if zero is not None and zero.contact_off else start
+    lines.append(_ANSWERS[snapshot.asks or "go"])
     return "\n".join(lines)
 
 
@@ -157,6 +194,8 @@ _ANSWERS = {
     "reading": "Bare the wire at the guide, never on the coil, and touch the contact; or measure by hand and "
     "type read, what the meter shows and, where no thermometer is fitted, how warm it is.\n"
     f"skip and Enter passes the check over; {_MORE}",
+    "leads": "Type together and Enter once they are, and hold them still; skip and Enter leaves them as the "
+    f"profile has them. {_MORE}",
     "pass": f"Type go and Enter to let the guide move; {_MORE}",
     "look": f"Type seen and Enter if so; hold and Enter if not, and put the guide right. {_MORE}",
     "place": f"Count the turns, then type turn, their number and Enter. {_MORE}",

@@ -20,6 +20,7 @@ from windctl.cli.questions import Hand, Questions
 from windctl.run.requests import Hold, Request
 
 if TYPE_CHECKING:
+    from windctl.desk.simulated_leads import SimulatedLeads
     from windctl.run.runner import Ended
     from windctl.run.snapshot import Snapshot
 
@@ -37,14 +38,20 @@ class Watched(Protocol):
     def wait(self, timeout_s: float) -> Ended | None: ...
 
 
-def stand_by(run: Watched, face: Face, prompt: Prompt | None, hand: Hand | None = None) -> Ended:
+def stand_by(
+    run: Watched,
+    face: Face,
+    prompt: Prompt | None,
+    hand: Hand | None = None,
+    leads: SimulatedLeads | None = None,
+) -> Ended:
     """Start the run, show it, answer what it asks, until it has ended.
 
     `prompt` is None where nobody can be asked: the run then ends as soon as it asks for something. Raises
     UsageError in that case on a real machine, RunFailed on a simulated one; the run is over by then. A trip
     of a simulated machine ends the coil instead.
     """
-    stops, questions = _Stops(run), Questions(run, face, prompt, hand)
+    stops, questions = _Stops(run), Questions(run, face, prompt, hand, leads)
     with listening(stops.heard):
         run.start()
         questions.begin()

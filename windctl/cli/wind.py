@@ -136,15 +136,17 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
     from windctl.cli.prompt import Prompt
     from windctl.cli.watch import deaf, stand_by
     from windctl.desk.log import faults_of_threads, note
+    from windctl.desk.simulated_leads import SimulatedLeads
 
     bench.name_coil(winding.number)
     if not shared.quiet:
         present.message(f"coil {winding.number} on {bench.name}")
     prompt = Prompt(sys.stdin.fileno()) if typed.may_ask(shared.no_input) else None
+    leads = None if bench.connect is None else SimulatedLeads(bench.connect)
     stuck: WindctlError | None = None
     with faults_of_threads() as faults, deaf():
         try:
-            stand_by(winding, face_for(sys.stderr, quiet=shared.quiet), prompt, bench.hand)
+            stand_by(winding, face_for(sys.stderr, quiet=shared.quiet), prompt, bench.hand, leads)
         except WindctlError as error:  # nobody to ask: told once it is known how the coil was left
             stuck = error
         finally:

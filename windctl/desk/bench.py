@@ -44,6 +44,7 @@ class Bench:
     truth: Callable[[], PlantTruth] | None
     profile: MachineProfile  # with the port as it was found
     hand: Callable[[float], None] | None = None  # turns the simulated spindle, in turns; negative unwinds
+    connect: Callable[[float | None], None] | None = None  # the simulated contact on ohm; None: the wire
     name_coil: Callable[[str], None] = lambda _number: None  # for whoever else wants this port
 
 
@@ -111,6 +112,7 @@ def open_bench(
         simulated_port.truth,
         profile,
         hand=simulated_port.turn_by_hand,
+        connect=simulated_port.connect,
     )
 
 

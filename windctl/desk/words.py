@@ -25,7 +25,9 @@ from windctl.run.requests import (
     Slower,
     Splice,
     TakeBack,
+    Together,
     Unwind,
+    ZeroContact,
 )
 
 BY = "operator"
@@ -65,10 +67,12 @@ WORDS = (
     Word(
         "read OHM [CELSIUS]", "the coil as the meter shows it, such as 5.93k 22.5, and how warm it is there"
     ),
+    Word("zero", "before the first turn: read what leads and contact have by themselves, to be taken off"),
+    Word("together", "the contact's leads are together, nothing between them"),
     Word("dry pass", "before the first turn: show the guide at both of its ends, nothing turning"),
     Word("seen", "the guide stands right inside the flange"),
     Word("undo", "take the reading typed last back, until you go on or read again"),
-    Word("skip", "pass over the check that is asked for"),
+    Word("skip", "pass over the check, or the zeroing, that is asked for"),
     Word("note TEXT", "write something into the record"),
     Word("end", "end the coil here"),
     Word("help", "this list"),
@@ -146,6 +150,8 @@ _MEANS: dict[str, Callable[[str], Request | None]] = {
     "unwind": _at_a_turn(Unwind),
     "turn": _turn,
     "read": _read,
+    "zero": _alone(ZeroContact(BY)),
+    "together": _alone(Together(BY)),
     "dry pass": _alone(DryPass(BY)),
     "seen": _alone(Seen(BY)),
     "undo": _alone(TakeBack(BY)),

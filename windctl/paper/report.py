@@ -169,7 +169,8 @@ def _resistance(coil: CoilFacts) -> Markup:
     how = _WAYS.get(coil.started.readings_mode, coil.started.readings_mode)
     parts = []
     if coil.curve or coil.final is not None:
-        leads = coil.started.prior.offset_ohm
+        zero = coil.state.zeroed
+        leads = coil.started.prior.offset_ohm if zero is None else zero.ohm
         by_hand = [
             (turn, to_20c(max(value - leads, 0.0), celsius))
             for turn, value, celsius in read

@@ -21,6 +21,7 @@ from windctl.record.addenda import (
     PairParted,
 )
 from windctl.record.events import Event
+from windctl.record.zeroing import why_refused
 
 _Z95 = 1.959964
 _BY = {"virtual": "the simulation", "operator": "the operator", "windctl": "the program"}
@@ -120,6 +121,17 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             return f"The reading typed last was taken back by {by(event.by)}."
         case facts.PaceAsked():
             return f"No faster than {event.percent} % of the planned pace, asked for by {by(event.by)}."
+        case facts.ZeroWanted():
+            return f"The contact was to be zeroed before the first turn, said {by(event.by)}."
+        case facts.LeadsTogether():
+            return f"The contact's leads were put together, said {by(event.by)}."
+        case facts.ContactZeroed():
+            found = ohm(event.ohm, _Z95 * event.sd_ohm)
+            return f"Contact zeroed: leads and contact had {found} in {event.readings} readings; taken off."
+        case facts.ZeroRefused():
+            return f"Not zeroed: {why_refused(event)}."
+        case facts.ZeroEnded():
+            return f"The contact was not zeroed: {event.reason}."
         case facts.PassWanted():
             return f"The guide was to be seen at both flanges before the first turn, said {by(event.by)}."
         case facts.PassAgreed():

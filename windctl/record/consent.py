@@ -21,6 +21,7 @@ from windctl.protocol.wants import Permission
 from windctl.record.dry_pass import agreed, arrived, may_pass, nobody_agreed
 from windctl.record.events import Event, GoGiven
 from windctl.record.state import Fit, State
+from windctl.record.zeroing import waits_for_leads
 
 PATIENCE_TICKS = 30_000  # for a simulated contact, before somebody is asked
 
@@ -60,8 +61,9 @@ def _pedal_fitted(state: State) -> bool:
 
 
 def asks(state: State) -> str | None:
-    """What only a person can give now: "go", "clear", "reading", "place", "pass", "look" or nothing.
+    """What only a person can give now: "go", "clear", "leads", "reading", "place", "pass", "look" or nothing.
 
+    "leads": before the first turn the contact's leads are to be put together, to be read by themselves.
     "reading": the coil stands for a check, and hands may go in.
     "pass": the guide is about to move, before the first turn; "look": it stands where it is to be seen.
     "place": the board has lost the count or the guide's place, and a person has to say at which turn the coil
@@ -74,6 +76,8 @@ def asks(state: State) -> str | None:
         return None
     if status.state == BoardState.TRIPPED:
         return None if state.clear == permission else "clear"
+    if state.zero is not None:
+        return "leads" if waits_for_leads(state) else None
     at_stop = state.stop_point is not None and state.count >= state.stop_point
     if state.check is not None:
         return "reading" if state.drives_off and not _contact_may_come(state) else None

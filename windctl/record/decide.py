@@ -5,6 +5,7 @@ before anything acts on them; `wants` is what the board should be, as levels; `a
 give. `decide` is called again after its events were folded, until it has none left.
 
 noticing   what the board's words amount to
+zeroing    what leads and contact have by themselves, before the first turn
 stopping   where to stop
 ending     how the coil ends
 checking   a check of its resistance while it stands
@@ -24,13 +25,15 @@ from windctl.record.noticing import noticed
 from windctl.record.state import Fit, State
 from windctl.record.stopping import stop_point
 from windctl.record.wanting import wanted
+from windctl.record.zeroing import zero_follows
 
 
 @dataclass(frozen=True, slots=True)
 class Decision:
     """`events` to fold first; then `wants` for the board.
 
-    `asks` is "go", "clear", "reading", "place", "pass", "look", "turn" or None: what only a person can give.
+    `asks` is "go", "clear", "leads", "reading", "place", "pass", "look", "turn" or None: what only a person
+    can give.
     `blocked` says in words why the coil cannot go on by itself, where it cannot.
     """
 
@@ -51,7 +54,12 @@ def decide(state: State, at_ms: int) -> Decision:
         return Decision(facts, wanted(state))
     if state.fit is Fit.LOST:
         return Decision((), Wants(beat=True, hold=True), "turn", why_lost(state))
-    follows = stop_point(state, at_ms) or ending(state, at_ms) or follows_from_consent(state, at_ms)
+    follows = (
+        zero_follows(state, at_ms)
+        or stop_point(state, at_ms)
+        or ending(state, at_ms)
+        or follows_from_consent(state, at_ms)
+    )
     if follows:
         return Decision(follows, wanted(state))
     return Decision((), wanted(state), asks(state), blocked(state))

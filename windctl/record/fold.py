@@ -22,6 +22,7 @@ from windctl.record.events import (
     CoilFinished,
     CoilStarted,
     CommandRefused,
+    ContactZeroed,
     CountCorrected,
     EndRequested,
     Event,
@@ -30,6 +31,7 @@ from windctl.record.events import (
     HandsAsked,
     Held,
     HoldRequested,
+    LeadsTogether,
     LinkLost,
     NoteMade,
     PaceAsked,
@@ -47,6 +49,9 @@ from windctl.record.events import (
     WentOn,
     WireBroke,
     WireChanged,
+    ZeroEnded,
+    ZeroRefused,
+    ZeroWanted,
 )
 from windctl.record.folding import (
     alarms,
@@ -59,8 +64,9 @@ from windctl.record.folding import (
     readings,
     spindle,
     wire,
+    zeroing,
 )
-from windctl.record.state import Fit, State, setup_crc
+from windctl.record.state import Fit, State, Zeroing, setup_crc
 from windctl.record.taking_back import taken_back
 
 __all__ = ["Fit", "State", "fold", "replay", "setup_crc", "start"]
@@ -94,7 +100,7 @@ def fold(state: State, event: Event) -> State:
         case CommandRefused():
             return board.refused(state, event.refused)
         case LinkLost():
-            return board.gone(replace(dry_pass.ended(state), link_lost=event))
+            return board.gone(replace(zeroing.ended(dry_pass.ended(state)), link_lost=event))
 
         case WentOn():
             return spindle.went_on(state)
@@ -114,13 +120,24 @@ def fold(state: State, event: Event) -> State:
             return replace(state, clear=Permission(event.boot, event.epoch), refused=None)
 
         case HoldRequested():
-            return replace(dry_pass.ended(state), hold=event, consent=None)
+            return replace(zeroing.ended(dry_pass.ended(state)), hold=event, consent=None)
         case EndRequested():
-            return replace(dry_pass.ended(state), end=event, consent=None)
+            return replace(zeroing.ended(dry_pass.ended(state)), end=event, consent=None)
         case HandsAsked():
             return replace(state, hands=event, consent=None)
         case PaceAsked():
             return replace(state, pace_percent=event.percent)
+
+        case ZeroWanted():
+            return replace(state, zero=Zeroing(event))
+        case LeadsTogether():
+            return zeroing.together(state)
+        case ContactZeroed():
+            return zeroing.zeroed(state, event)
+        case ZeroRefused():
+            return zeroing.refused(state, event)
+        case ZeroEnded():
+            return zeroing.ended(state)
 
         case PassWanted():
             return replace(state, pass_wanted=True)

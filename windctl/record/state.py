@@ -17,6 +17,7 @@ from windctl.record.events import (
     CheckAsked,
     CoilFinished,
     CoilStarted,
+    ContactZeroed,
     CountCorrected,
     EndRequested,
     GoGiven,
@@ -27,6 +28,8 @@ from windctl.record.events import (
     PassAgreed,
     Tripped,
     WireBroke,
+    ZeroRefused,
+    ZeroWanted,
 )
 
 
@@ -57,6 +60,18 @@ class Before:
     stop_point: int | None
     top_ups: int
     alarm: AlarmRaised | None
+
+
+@dataclass(frozen=True, slots=True)
+class Zeroing:
+    """A zeroing of the contact under way."""
+
+    wanted: ZeroWanted
+    since: int | None = None  # the board's ticks when the leads were said to be together
+    now: float | None = None  # the last reading, ohm; inf: open
+    ohms: tuple[float, ...] = ()  # the last settled readings since, as many as are needed at the most
+    opens: int = 0  # open ones in a row since
+    refused: ZeroRefused | None = None  # why the last attempt came to nothing
 
 
 @dataclass(frozen=True)
@@ -99,6 +114,9 @@ class State:
     checks: int = 0  # readings for which the coil was stopped, or the wire lay bare anyway
     checked_count: int | None = None  # where the last check was taken, or passed over
     before_typed: Before | None = None  # while a typed reading can be taken back
+    zero: Zeroing | None = None  # while the contact is to be zeroed
+    zeroed: ContactZeroed | None = None  # the last one: what is taken off
+    contact_off: bool = False  # the leads were together since the last go: the contact belongs on the wire
     pass_wanted: bool = False  # the guide is to be seen at both ends before the first turn
     pass_agreed: PassAgreed | None = None
     seen_far: bool = False  # the guide was seen right at the far end; at its start is what is left

@@ -71,7 +71,8 @@ def _pace(state: State) -> int:
 def _sampling(state: State) -> Sampling | None:
     assert state.started is not None
     contact = bool(state.started.setup.fitted & Capability.CONTACT)
-    reads = state.started.readings_mode == "live" or (state.check is not None and contact)
+    asked = state.check is not None or state.zero is not None
+    reads = state.started.readings_mode == "live" or (asked and contact)
     return Sampling(WINDOW_TICKS, EVERY_TICKS) if reads else None
 
 

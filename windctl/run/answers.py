@@ -14,6 +14,7 @@ from windctl.record.events import (
     GuideSeen,
     HandsAsked,
     HoldRequested,
+    LeadsTogether,
     NoteMade,
     PassAgreed,
     PassWanted,
@@ -21,8 +22,11 @@ from windctl.record.events import (
     Spliced,
     WireBroke,
     WireChanged,
+    ZeroEnded,
+    ZeroWanted,
 )
 from windctl.record.state import State
+from windctl.record.zeroing import NOBODY, may_zero, nobody_there
 from windctl.run.pacing import paced
 from windctl.run.requests import (
     Broke,
@@ -43,7 +47,9 @@ from windctl.run.requests import (
     Slower,
     Splice,
     TakeBack,
+    Together,
     Unwind,
+    ZeroContact,
 )
 from windctl.run.said import OFF, Answer
 from windctl.run.typed_readings import typed
@@ -72,6 +78,10 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
             if permission is None or leaving or decision.asks != "clear":
                 return Answer()
             return Answer((ClearGiven(at_ms, permission.boot, permission.epoch, request.by),))
+        case ZeroContact() | Together():
+            return _zeroing(request, state, decision, at_ms, leaving)
+        case Skip() if state.zero is not None:
+            return Answer((ZeroEnded(at_ms, request.by, "passed over"),), "the contact is not zeroed")
         case DryPass():
             if leaving or not may_pass(state) or state.pass_wanted:
                 return Answer(says="a dry pass comes before the first turn, where a motor guides")
@@ -92,6 +102,22 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
             if leaving or not at_rest or not state.in_hand or not state.let_go:
                 return Answer(says="that can be said once the coil has turns and stands")
             return _at_the_wire(request, state, at_ms)
+
+
+def _zeroing(
+    request: ZeroContact | Together, state: State, decision: Decision, at_ms: int, leaving: bool
+) -> Answer:
+    if isinstance(request, Together):
+        if leaving or decision.asks != "leads":
+            return Answer(says="nobody waits for the contact's leads to be together")
+        return Answer((LeadsTogether(at_ms, request.by),), "hold the leads together: they are being read")
+    if leaving or not may_zero(state):
+        return Answer(says="the contact is zeroed before the first turn, where the board has one")
+    if nobody_there(state, request.simulated_hand):
+        return Answer(says=NOBODY)
+    if state.zero is not None:
+        return Answer(says="the contact is being zeroed already")
+    return Answer((ZeroWanted(at_ms, request.by, request.simulated_hand),), "the contact is zeroed first")
 
 
 def _at_the_wire(

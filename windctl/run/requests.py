@@ -104,7 +104,23 @@ class Read:
 
 @dataclass(frozen=True, slots=True)
 class Skip:
-    """A check is passed over."""
+    """A check, or a zeroing of the contact, is passed over."""
+
+    by: str
+
+
+@dataclass(frozen=True, slots=True)
+class ZeroContact:
+    """Before the first turn, leads and contact are to be read by themselves. `simulated_hand`: of a simulated
+    machine, somebody can put its leads together."""
+
+    by: str
+    simulated_hand: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Together:
+    """The contact's leads are together, nothing between them."""
 
     by: str
 
@@ -158,6 +174,8 @@ Request = (
     | Unwind
     | Read
     | Skip
+    | ZeroContact
+    | Together
     | DryPass
     | Seen
     | TakeBack

@@ -235,6 +235,7 @@ class Runner:
             or self._leaving is not None
             or state.hold is not None
             or second_thoughts(state)
+            or state.contact_off  # somebody has the leads in hand, and says when the contact is on the wire
             or (state.hands is not None and state.hands.by != "windctl")  # a check is over by itself
         ):
             return ()

@@ -16,6 +16,7 @@ from windctl.record.fold import Fit, State
 from windctl.record.program import place_at
 from windctl.record.taking_back import second_thoughts
 from windctl.run.trips import look_to
+from windctl.run.zero_seen import BACK_ON_THE_WIRE, ZeroSeen, says_zero, zero_seen
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,6 +63,7 @@ class Snapshot:
     driven: bool = True  # windctl drives the spindle; else it is somebody's own motor
     pace_percent: int = 100  # of the planned pace, that somebody wants at the most
     check: Check | None = None  # the coil stands to be read
+    zero: ZeroSeen | None = None  # before the first turn, where the board's contact reads
     can_take_back: bool = False  # a typed reading can still be taken back
     answers: int = 0  # requests that were answered in words, and the last answer
     answer: str = ""
@@ -112,6 +114,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         driven=started is None or bool(started.setup.fitted & Capability.DRIVE_STEP),
         pace_percent=state.pace_percent,
         check=_check(state),
+        zero=zero_seen(state),
         can_take_back=state.before_typed is not None and state.finished is None,
     )
 
@@ -170,10 +173,12 @@ def _says(state: State, decision: Decision) -> str:
         return "at rest: the reading settles"
     if phase == "stopping":
         return "stopping"
+    if state.zero is not None and phase != "connecting":
+        return says_zero(state)
     if state.pass_agreed is not None or decision.asks in ("pass", "look"):
         return _says_pass(state, decision)
     if decision.asks == "go":
-        return "waits for go"
+        return f"{BACK_ON_THE_WIRE}, then go" if state.contact_off else "waits for go"
     return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[
         phase
     ]

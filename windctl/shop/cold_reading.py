@@ -33,6 +33,7 @@ THERMOMETER_STAYS = 0.75
 COOLED_MINUTES = 15.0  # five time constants: less than a hundredth of the warmth is left
 
 GAIN_OF, THERMOMETER_OF, LEADS_OF = "gain of ", "thermometer of ", "leads of "
+LEADS_ZEROED = "leads as zeroed"  # before this coil: no other reading is off by the same
 WARMTH, COOLING = "warmth of the coil", "how fast it cools"
 PLACING, OWN = "place of the thermometer", "scatter"
 OF_ONE = (PLACING, OWN)  # errors of one reading alone
@@ -180,7 +181,8 @@ def by_record(state: State, meter: Meter, *, label: str = "", when: str = "") ->
     if not ohm > 0.0:
         return None
     gradient = answer_gradient(belief)
-    prior = estimate.prior
+    prior = estimate.prior  # its leads are those that were taken off
+    leads = LEADS_OF + meter.name if state.zeroed is None else LEADS_ZEROED
 
     def slope(state_of: int, error_sd: float) -> float:
         if error_sd <= 0.0:
@@ -194,7 +196,7 @@ def by_record(state: State, meter: Meter, *, label: str = "", when: str = "") ->
         Source(GAIN_OF + meter.name, prior.gain_sd, "", slope(GAIN, prior.gain_sd)),
         Source(THERMOMETER_OF + meter.place, prior.celsius_sd * stays, "K", by_kelvin),
         Source(PLACING, prior.celsius_sd * comes, "K", by_kelvin),
-        Source(LEADS_OF + meter.name, prior.offset_sd, "ohm", slope(LEADS, prior.offset_sd)),
+        Source(leads, prior.offset_sd, "ohm", slope(LEADS, prior.offset_sd)),
         Source(WARMTH, prior.coil_over_air_sd, "K", slope(OVER_AIR, prior.coil_over_air_sd)),
     )
     rest = (sd / ohm) ** 2 - sum(source.rel**2 for source in shared)

@@ -13,6 +13,7 @@ from windctl.record.events import (
     CoilFinished,
     CoilStarted,
     CommandRefused,
+    ContactZeroed,
     CountCorrected,
     EndRequested,
     Event,
@@ -21,6 +22,7 @@ from windctl.record.events import (
     HandsAsked,
     Held,
     HoldRequested,
+    LeadsTogether,
     LinkLost,
     NoteMade,
     PaceAsked,
@@ -36,7 +38,11 @@ from windctl.record.events import (
     WentOn,
     WireBroke,
     WireChanged,
+    ZeroEnded,
+    ZeroRefused,
+    ZeroWanted,
 )
+from windctl.record.zeroing import why_refused
 
 _CAUSES = {
     Cause.STOP_POINT: "at the stop point",
@@ -97,6 +103,17 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             return f"read at turn {grouped(event.turn)} by {_by(event.by)}: {read}"
         case ReadingTakenBack():
             return f"the reading typed last is taken back by {_by(event.by)}"
+        case ZeroWanted():
+            return "the contact is to be zeroed first"
+        case LeadsTogether():
+            return f"the contact's leads are together, said by {_by(event.by)}"
+        case ContactZeroed():
+            found = ohm(event.ohm, 1.96 * event.sd_ohm).replace("ohm", "Ω")
+            return f"contact zeroed: {found} are taken off, from {event.readings} readings"
+        case ZeroRefused():
+            return f"not zeroed: {why_refused(event)}"
+        case ZeroEnded():
+            return f"the contact is not zeroed: {event.reason}"
         case PassWanted():
             return "a dry pass of the guide is to come first"
         case PassAgreed():

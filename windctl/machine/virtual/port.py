@@ -7,7 +7,7 @@ import time
 from collections.abc import Callable
 
 from windctl.errors import LinkLost
-from windctl.machine.plant.plant import PlantTruth
+from windctl.machine.plant.plant import Plant, PlantTruth
 from windctl.machine.virtual.bench import Bench
 
 _SLICE_TICKS = 20  # a paced machine shows itself at least so often
@@ -38,7 +38,7 @@ class VirtualPort:
         self._clock = clock
         self._sleep = sleep
         self._lost: str | None = None
-        self._by_hand: queue.SimpleQueue[float] = queue.SimpleQueue()
+        self._by_hand: queue.SimpleQueue[Callable[[Plant], None]] = queue.SimpleQueue()
         self._begun_s: float | None = None
         self._begun_tick = 0
 
@@ -51,7 +51,7 @@ class VirtualPort:
         self._check()
         bench = self._bench
         while not self._by_hand.empty():
-            bench.plant.turn_by_hand(self._by_hand.get())
+            self._by_hand.get()(bench.plant)
         arrived = bench.take()
         left = max(0, round(max_wait_s * 1000.0))
         while left and not arrived:
@@ -78,7 +78,11 @@ class VirtualPort:
 
     def turn_by_hand(self, turns: float) -> None:
         """Somebody turns the spindle, once no drive holds it; negative unwinds. From any thread."""
-        self._by_hand.put(turns)
+        self._by_hand.put(lambda plant: plant.turn_by_hand(turns))
+
+    def connect(self, ohm: float | None) -> None:
+        """Somebody puts the contact's leads on `ohm` (0: together); None: on the wire. From any thread."""
+        self._by_hand.put(lambda plant: plant.connect(ohm))
 
     def truth(self) -> PlantTruth:
         """What is really on the bobbin; for reports after a run, never for the run."""

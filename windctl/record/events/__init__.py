@@ -24,6 +24,13 @@ from windctl.record.events.readings import ReadingTaken, ReadingTakenBack, Readi
 from windctl.record.events.requests import EndRequested, HandsAsked, HoldRequested, PaceAsked
 from windctl.record.events.spindle import Held, Tripped, WentOn
 from windctl.record.events.wire import Spliced, WireBroke, WireChanged
+from windctl.record.events.zeroing import (
+    ContactZeroed,
+    LeadsTogether,
+    ZeroEnded,
+    ZeroRefused,
+    ZeroWanted,
+)
 
 __all__ = [
     "BEFORE_ACTING",
@@ -37,6 +44,7 @@ __all__ = [
     "CoilFinished",
     "CoilStarted",
     "CommandRefused",
+    "ContactZeroed",
     "CountCorrected",
     "EndRequested",
     "Event",
@@ -45,6 +53,7 @@ __all__ = [
     "HandsAsked",
     "Held",
     "HoldRequested",
+    "LeadsTogether",
     "LinkLost",
     "NoteMade",
     "PaceAsked",
@@ -63,6 +72,9 @@ __all__ = [
     "WentOn",
     "WireBroke",
     "WireChanged",
+    "ZeroEnded",
+    "ZeroRefused",
+    "ZeroWanted",
 ]
 
 Event = (
@@ -85,6 +97,11 @@ Event = (
     | EndRequested
     | HandsAsked
     | PaceAsked
+    | ZeroWanted
+    | LeadsTogether
+    | ContactZeroed
+    | ZeroRefused
+    | ZeroEnded
     | PassWanted
     | PassAgreed
     | GuideSeen

@@ -7,14 +7,14 @@ from dataclasses import replace
 from windctl.protocol.messages import Arm, ClearTrip, Go, GuideTo, Identity, Refused, SetDatum, Status, Trust
 from windctl.protocol.messages import State as BoardState
 from windctl.record.fitting import fit_of, kept_guide, same_place
-from windctl.record.folding import dry_pass
+from windctl.record.folding import dry_pass, zeroing
 from windctl.record.state import Fit, State, touched
 
 
 def greeted(state: State, identity: Identity) -> State:
     """A conversation begins, and with it whether the board has this coil in hand. No consent outlives one."""
     return replace(
-        state,
+        zeroing.anew(state),
         identity=identity,
         status=None,
         fit=fit_of(state, identity),

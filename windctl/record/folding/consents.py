@@ -15,6 +15,8 @@ def go_given(state: State, event: GoGiven) -> State:
         consent=event,
         consented_since_greeting=True,
         let_go=True,
+        zero=None,
+        contact_off=False,
         boot=event.boot,
         epoch=event.epoch,
         hold=None,

@@ -5,13 +5,14 @@ from __future__ import annotations
 from dataclasses import replace
 
 from windctl.record.events import StopPointChosen
-from windctl.record.folding import board, dry_pass
+from windctl.record.folding import board, dry_pass, zeroing
 from windctl.record.state import State
 
 
 def resumed(state: State) -> State:
     """Whatever somebody wanted of the run before is void."""
-    return board.gone(replace(dry_pass.ended(state), hold=None, end=None, hands=None, link_lost=None))
+    voided = zeroing.ended(dry_pass.ended(state))
+    return board.gone(replace(voided, hold=None, end=None, hands=None, link_lost=None))
 
 
 def stop_point_chosen(state: State, event: StopPointChosen) -> State:

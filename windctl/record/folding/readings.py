@@ -9,6 +9,7 @@ from windctl.forecast.estimator import update
 from windctl.forecast.reading import Reading as CoilReading
 from windctl.protocol.messages import ReadingFlag
 from windctl.record.events import ReadingTaken, ReadingTyped
+from windctl.record.folding import zeroing
 from windctl.record.state import Fit, State, touched
 from windctl.record.taking_back import kept
 
@@ -21,6 +22,8 @@ def taken(state: State, event: ReadingTaken) -> State:
     raw = event.reading
     if state.started is None or state.identity is None or state.estimate is None:
         return state
+    if state.zero is not None:
+        return zeroing.heard(state, state.zero, raw, state.identity.contact_scale)
     # A board that has started again counts as it was told, and a check waits for its reading all the same.
     told = state.fit is Fit.CORRECTED and state.check is not None and raw.count == state.count
     if raw.count <= 0 or not (state.fit is Fit.SAME or told):
