@@ -44,6 +44,7 @@ KEYS = (
     Key("port.serial_number", "text", '"A1"', needs=("vendor = 6790", "product = 29987")),
     whole("board.queue_segments", "64", "segments", "8", "65535"),
     Key("spindle.drive", "choice", '"step"', choices=("step", "none")),
+    Key("spindle.counter", "choice", '"read"', choices=("board", "read")),
     whole("spindle.counts_per_turn", "400", "counts", "1", "400"),
     whole("spindle.steps_per_turn", "800", "steps", "1", "800"),
     Key("spindle.index", "flag", "true"),

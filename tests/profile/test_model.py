@@ -28,6 +28,7 @@ DEFAULTS = {
     "board": {"queue_segments": None},
     "spindle": {
         "drive": "none",
+        "counter": "board",
         "counts_per_turn": 1,
         "steps_per_turn": 400,
         "index": False,

@@ -10,8 +10,8 @@ from windctl.cli import present
 from windctl.cli.machine_check import check
 from windctl.cli.options import Shared, takes
 from windctl.desk import places
-from windctl.desk.machines import kept_profiles, known_machines, profile_of
-from windctl.errors import ProfileError
+from windctl.desk.machines import NO_BOARD, KnownMachine, kept_profiles, known_machines, profile_of
+from windctl.errors import ProfileError, UsageError
 
 
 @click.group()
@@ -35,6 +35,7 @@ def list_(shared: Shared) -> None:
                         "machine": one.name,
                         "bench": one.bench,
                         "port": one.port,
+                        "counter": "read" if one.by_eye else "board",
                         "file": None if one.file is None else str(one.file),
                         "problem": one.problem,
                         "usual": one.usual,
@@ -47,11 +48,15 @@ def list_(shared: Shared) -> None:
     present.table(
         ["", "machine", "bench", "port"],
         [
-            ["*" if one.usual else "", one.name, one.bench or "", one.problem or one.port or ""]
+            ["*" if one.usual else "", one.name, one.bench or "", one.problem or one.port or _no_port(one)]
             for one in known
         ],
     )
     present.message(f"profiles are kept in {places.machines_folder()}")
+
+
+def _no_port(one: KnownMachine) -> str:
+    return "none: its counter is read by eye" if one.by_eye else ""
 
 
 @machine.command()
@@ -156,9 +161,12 @@ def serve(
 
     wanted = parse_recipe(ORDINARY, "ordinary coil") if recipe is None else load_recipe(recipe)
     host, port = _address(tcp)
+    profile = profile_of(shared)
+    if profile.by_eye:
+        raise UsageError(f"there is no board to simulate: {NO_BOARD}")
     serve_machine(
         wanted,
-        profile_of(shared),
+        profile,
         seed=shared.plant_seed if shared.plant_seed is not None else DEFAULT_SEED,
         speed=shared.speed if shared.speed is not None else 1.0,
         host=host,

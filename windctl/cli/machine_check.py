@@ -14,7 +14,7 @@ from windctl.cli import present, typed
 from windctl.cli.exit_codes import ExitCode
 from windctl.cli.options import Shared, takes
 from windctl.cli.watch import listening
-from windctl.desk.machines import profile_file, profile_of, simulated_here
+from windctl.desk.machines import NO_BOARD, profile_file, profile_of, simulated_here
 from windctl.errors import UsageError
 
 if TYPE_CHECKING:
@@ -91,6 +91,11 @@ def _check(
         raise UsageError("--save: the built-in machine has no profile file to write into")
     profile = profile_of(shared)
     simulated = simulated_here(shared, profile)
+    if profile.by_eye:
+        if shared.json:
+            present.result_json(as_json([]))
+        present.message(f"nothing to check: {NO_BOARD}")
+        return ExitCode.DONE
     someone = simulated or typed.may_ask(shared.no_input)
     if not someone and not still:
         raise UsageError("nobody can be asked: a real machine is only tried with --still then")

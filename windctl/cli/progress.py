@@ -30,6 +30,8 @@ _LOOKS = {  # phase: glyph, plain glyph, SGR colour; never colour alone
     "stopping": ("▷", ">", "33"),
     "held": ("‖", "=", "33"),
     "settling": ("‖", "=", "36"),
+    "waiting": ("○", "o", "32"),  # for somebody who winds and reads the counter
+    "reading": ("◇", "=", "36"),
     "tripped": ("✖", "x", "31"),
     "ended": ("■", "#", "36"),
 }
@@ -66,7 +68,8 @@ def motion_fields(snapshot: Snapshot) -> list[str]:
     """How far the coil is, most important first."""
     goal = snapshot.turns_planned if snapshot.stop_turn is None else snapshot.stop_turn
     fields = [f"{present.grouped(snapshot.turns)} / {present.grouped(goal)} turns"]
-    fields.append(f"{snapshot.pace_rpm:.0f} rpm")
+    if not snapshot.by_eye:
+        fields.append(f"{snapshot.pace_rpm:.0f} rpm")
     if snapshot.seconds_left is not None:
         fields.append(f"{present.duration(snapshot.seconds_left)} left")
     return fields

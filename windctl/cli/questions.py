@@ -11,6 +11,7 @@ from windctl.desk.words import BY, help_text, request_of
 from windctl.errors import RunFailed, UsageError, WindctlError
 from windctl.run.requests import (
     Clear,
+    CountIs,
     End,
     Faster,
     Go,
@@ -31,6 +32,8 @@ if TYPE_CHECKING:
     from windctl.run.snapshot import Snapshot
 
 Hand = Callable[[float], None]  # turns the spindle of a machine simulated here; negative unwinds
+
+NO_POWER = "windctl cannot start, slow or stop this machine: it says where to stop, and you tell the turns."
 
 CAUTIONS = """\
 Before anything turns: guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves.
@@ -101,8 +104,10 @@ class Questions:
         if self._prompt is None:
             self._give_up(snapshot)
             return
-        if snapshot.asks in ("go", "pass") and not snapshot.virtual:
+        if snapshot.asks in ("go", "pass", "count") and not snapshot.virtual:
             self._face.say(CAUTIONS)
+        if snapshot.asks == "count":
+            self._face.say(NO_POWER)
         self._prompt.open_question()
         self._put_question(snapshot)
 
@@ -126,7 +131,8 @@ class Questions:
             if snapshot.phase == "turning" and (not line or isinstance(wanted, Hold)):
                 self._run.request(Hold(BY, "held at the keyboard"))
             elif isinstance(wanted, Slower | Faster | Note | TakeBack) or (
-                isinstance(wanted, Skip) and snapshot.zero is not None and snapshot.zero.wanted
+                (isinstance(wanted, Skip) and snapshot.zero is not None and snapshot.zero.wanted)
+                or (snapshot.by_eye and isinstance(wanted, CountIs))
             ):
                 self._run.request(wanted)
             return
@@ -139,7 +145,7 @@ class Questions:
             self._face.say(f"{line!r} is not understood; help lists the words. {_question(snapshot)}")
         elif isinstance(request, End) and snapshot.turns <= 0:
             self._face.say("There is no turn to end the coil with; Ctrl-C leaves.")
-        elif isinstance(request, Go | Clear) and not _is_asked(request, snapshot.asks):
+        elif isinstance(request, Go | Clear) and not _is_asked(request, snapshot):
             self._face.say(_question(snapshot))
         else:
             if isinstance(request, Unwind) and request.turns is not None:
@@ -159,15 +165,18 @@ class Questions:
             self._to_unwind = 0.0
 
 
-def _is_asked(request: Go | Clear, asks: str | None) -> bool:
-    return asks in ("go", "pass") if isinstance(request, Go) else asks == "clear"
+def _is_asked(request: Go | Clear, snapshot: Snapshot) -> bool:
+    if isinstance(request, Go):
+        return snapshot.asks in ("go", "pass") or snapshot.by_eye  # which says that nothing goes by it
+    return snapshot.asks == "clear"
 
 
 def _situation(snapshot: Snapshot) -> tuple[object, ...]:
     """What has to change before the same question is put again."""
     refused = snapshot.zero.refused if snapshot.zero is not None else ""
     at_the_wire = (snapshot.hands, snapshot.splices, snapshot.wire_ends_at)
-    return (snapshot.asks, snapshot.drives_off, at_the_wire, refused)
+    by_eye = (snapshot.turns, snapshot.stop_turn) if snapshot.by_eye else ()
+    return (snapshot.asks, snapshot.drives_off, at_the_wire, refused, by_eye)
 
 
 def _question(snapshot: Snapshot) -> str:
@@ -199,6 +208,8 @@ _ANSWERS = {
     "pass": f"Type go and Enter to let the guide move; {_MORE}",
     "look": f"Type seen and Enter if so; hold and Enter if not, and put the guide right. {_MORE}",
     "place": f"Count the turns, then type turn, their number and Enter. {_MORE}",
+    "count": "Then type turn, what the counter says and Enter, such as turn 3200; read takes a resistance. "
+    f"{_MORE}",
 }
 
 

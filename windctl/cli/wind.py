@@ -14,12 +14,13 @@ from windctl.cli.options import Shared, takes
 from windctl.cli.plan import show_plan
 from windctl.desk.books import book_to_read, book_to_write
 from windctl.desk.going_on import open_coil, recorded_profile
-from windctl.desk.machines import profile_of, simulated_here
+from windctl.desk.machines import NO_BOARD, profile_of, simulated_here
 from windctl.errors import RecipeError, RecordBroken, UsageError, WindctlError
 
 if TYPE_CHECKING:
     from windctl.desk.bench import Bench
     from windctl.plan.model import Plan
+    from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe
     from windctl.run.outcome import Outcome
     from windctl.run.wind import Winding
@@ -64,6 +65,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
     plan = make_plan(wanted, profile, supply=supply)
     if shared.dry_run:
         return _dry_run(shared, plan, wanted)
+    _somebody_types(shared, profile)
     _before(shared, plan)
     with (
         open_bench(shared, profile, simulated, wanted, supply=supply) as bench,
@@ -103,8 +105,10 @@ def resume(shared: Shared, coil: str | None) -> ExitCode:
     simulated = simulated_here(shared, profile)
     if shared.dry_run:
         where = "on the simulated machine" if simulated else f"on {profile.port.url}"
+        where = "with turns read off its counter by eye" if profile.by_eye else where
         present.result(f"would go on with {head.number} ({head.recipe}) {where}; nothing was moved")
         return ExitCode.DONE
+    _somebody_types(shared, profile)
     recipe = parse_recipe(started.recipe_text, head.number)
     with open_bench(shared, profile, simulated, recipe, started) as bench, book_to_write(shared) as book:
         winding = go_on(head.number, book, bench.port, bench.here, shared.at_turn)
@@ -119,6 +123,15 @@ def _dry_run(shared: Shared, plan: Plan, recipe: Recipe) -> ExitCode:
         show_plan(plan, recipe)
         present.result("nothing was moved or recorded")
     return ExitCode.DONE
+
+
+def _somebody_types(shared: Shared, profile: MachineProfile) -> None:
+    """Where nobody counts, a coil is no use without somebody who types. Raises UsageError."""
+    if profile.by_eye and not typed.may_ask(shared.no_input):
+        raise UsageError(
+            f"{NO_BOARD}: its turns are typed at a terminal, so --no-input and input that is no terminal are "
+            "refused; nothing was begun"
+        )
 
 
 def _before(shared: Shared, plan: Plan) -> None:
@@ -167,7 +180,7 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
         present.message(f"The log has the details: {faults[0]}")
     if stuck is not None and outcome.error is None:
         raise stuck
-    return _ending(outcome)
+    return _ending(outcome, bench.profile.by_eye)
 
 
 def _show(outcome: Outcome, answer: dict[str, Any]) -> None:
@@ -205,14 +218,15 @@ def _show_waiting(outcome: Outcome) -> None:
     present.result(f"keep the reading: windctl coils measure {outcome.number} --ohm OHM --celsius C")
 
 
-def _ending(outcome: Outcome) -> ExitCode:
+def _ending(outcome: Outcome, by_eye: bool) -> ExitCode:
     """The exit code, and what to do next where the coil is not finished."""
     go_on = f"windctl resume {outcome.number}"
     match outcome.left:
         case "finished":
             return code_for_coil(outcome.summary.outcome, outcome.summary.verdict)
         case "held":
-            present.message(f"The spindle stands, the coil stays open: {go_on}")
+            stands = "Stop your own motor" if by_eye else "The spindle stands"
+            present.message(f"{stands}, the coil stays open: {go_on}")
             return ExitCode.INTERRUPTED
         case "turn wanted":
             raise UsageError(f"{outcome.why}. Count the turns and say: {go_on} --at-turn N")

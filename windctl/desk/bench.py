@@ -62,6 +62,12 @@ def open_bench(
 
     Raises MachineError when the port is not there or busy, UsageError for options that have no meaning on it.
     """
+    if profile.by_eye:
+        from windctl.machine.by_eye import ByEyePort
+
+        note(f"{profile.name}: no board, its counter is read by eye, for {recipe.name}")
+        yield Bench(profile.name, ByEyePort(), _here(), None, profile)
+        return
     if not simulated:
         from windctl.machine.line_trace import LineTrace
         from windctl.machine.port_found import found

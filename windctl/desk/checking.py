@@ -10,7 +10,8 @@ from typing import TYPE_CHECKING
 
 from windctl.desk.bench import DEFAULT_SEED, keep_line_trace
 from windctl.desk.log import note
-from windctl.errors import FileInvalid, Problem, UsageError
+from windctl.desk.machines import NO_BOARD
+from windctl.errors import FileInvalid, MachineError, Problem, UsageError
 
 if TYPE_CHECKING:
     from windctl.desk.asked import Shared
@@ -32,7 +33,10 @@ class CheckBench:
 def open_for_check(
     shared: Shared, profile: MachineProfile, simulated: bool, recipe: Recipe, reference_ohm: float | None
 ) -> Iterator[CheckBench]:
-    """The bench, its port open until the end. Raises MachineError when it is not there or busy."""
+    """The bench, its port open until the end. Raises MachineError when it is not there or busy, or has no
+    board."""
+    if profile.by_eye:
+        raise MachineError(f"nothing to check: {NO_BOARD}")
     if simulated:
         from windctl.desk.simulated_hand import SimulatedHand
         from windctl.machine.virtual.bench import virtual_bench

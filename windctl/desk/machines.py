@@ -15,6 +15,7 @@ if TYPE_CHECKING:
     from windctl.profile.model import MachineProfile, Port
 
 VIRTUAL = "virtual"
+NO_BOARD = 'this machine has no board and no port, its counter is read by eye (spindle.counter = "read")'
 
 
 def configured_machine() -> str:
@@ -52,6 +53,7 @@ class KnownMachine:
     file: Path | None
     problem: str | None
     usual: bool
+    by_eye: bool = False  # no board and no port: its counter is read by eye
 
 
 def known_machines() -> tuple[KnownMachine, ...]:
@@ -67,7 +69,9 @@ def known_machines() -> tuple[KnownMachine, ...]:
         except ProfileError as error:
             known.append(KnownMachine(name, None, None, file, str(error.problems[0]), name == usual))
         else:
-            known.append(KnownMachine(name, profile.bench, profile.port.url, file, None, name == usual))
+            known.append(
+                KnownMachine(name, profile.bench, profile.port.url, file, None, name == usual, profile.by_eye)
+            )
     return tuple(known)
 
 
@@ -100,9 +104,12 @@ def profile_of(shared: Shared) -> MachineProfile:
     file = profile_file(shared)
     profile = BUILT_IN if file is None else load_profile(file)
     if shared.readings is not None:
+        if shared.readings == "live" and profile.by_eye:
+            raise UsageError(f"--readings live needs a board with a contact; {NO_BOARD}")
         if shared.readings == "live" and not profile.readings.contact:
             raise UsageError("--readings live needs a contact, and the profile says readings.contact = false")
-        readings = profile.readings.model_copy(update={"mode": shared.readings})
+        contact = profile.readings.contact and not profile.by_eye
+        readings = profile.readings.model_copy(update={"mode": shared.readings, "contact": contact})
         profile = profile.model_copy(update={"readings": readings})
     if shared.port is not None and shared.port != VIRTUAL:
         port = port_at(profile.port, shared.port)
@@ -117,10 +124,18 @@ def port_at(port: Port, url: str) -> Port:
 
 
 def simulated_here(shared: Shared, profile: MachineProfile) -> bool:
-    """True if the machine is to be simulated in this process; False if the profile names a port.
+    """True if the machine is to be simulated in this process; False if the profile names a port, or needs
+    none since its counter is read by eye.
 
-    Raises MachineError if the profile is a real machine's and names none.
+    Raises MachineError if the profile is a real machine's and names none; UsageError for a port or a
+    simulation where there is no board.
     """
+    if profile.by_eye:
+        options = (("--port", shared.port), ("--speed", shared.speed), ("--plant-seed", shared.plant_seed))
+        for name, value in options:
+            if value is not None:
+                raise UsageError(f"{name} has no meaning here: {NO_BOARD}")
+        return False
     if shared.port == VIRTUAL:
         return True
     if profile.port.url is not None or profile.port.vendor is not None:

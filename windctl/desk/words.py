@@ -35,6 +35,7 @@ _READING = re.compile(
     r"(\d+(?:[.,]\d*)?|[.,]\d+) ?(k?)(?: ?ohm)?(?: (-?\d+(?:[.,]\d*)?)(?: ?°?c)?)?", re.IGNORECASE
 )
 _NUMBER = re.compile(r"\d+(?:[.,]\d*)?|[.,]\d+")
+_PARTED = re.compile(r"(?<=\d) (?=\d{3}(?!\d))")  # 3 200
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,7 +64,7 @@ WORDS = (
     ),
     Word("new wire [TURN] [NAME]", "another spool is joined on"),
     Word("unwind [TURNS]", "drives off; then turn the spindle back by hand, and the count follows"),
-    Word("turn TURN", "the count is wrong: so many turns lie on the bobbin"),
+    Word("turn TURN", "so many turns lie on the bobbin: the count is wrong, or you read the counter"),
     Word(
         "read OHM [CELSIUS]", "the coil as the meter shows it, such as 5.93k 22.5, and how warm it is there"
     ),
@@ -118,8 +119,16 @@ def _new_wire(rest: str) -> Request:
     return NewWire(BY, rest if turn is None else name, turn)
 
 
+def turns_of(text: str) -> float | None:
+    """What a counter says: `3200`, `3 200`, `3.2k` or `3,2k`; None where it is no number."""
+    plain = _PARTED.sub("", text)
+    thousands = plain[-1:] in ("k", "K")
+    turn = number(plain[:-1].strip() if thousands else plain)
+    return None if turn is None else round(turn * 1000.0, 6) if thousands else turn
+
+
 def _turn(rest: str) -> Request | None:
-    turn = number(rest)
+    turn = turns_of(rest)
     return None if turn is None else CountIs(BY, turn)
 
 

@@ -100,6 +100,11 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             return f"The line to the machine was lost: {event.reason}."
         case facts.CountCorrected():
             return f"The turn was set to {grouped(event.turn, 1)} by {by(event.by)}: {event.reason}."
+        case facts.CounterRead():
+            if event.doubted:
+                return f"A counter at {grouped(event.turn)} was typed by {by(event.by)}, and asked about."
+            again = "; what was read before was read at a wrong count" if event.recounted else ""
+            return f"The counter stood at {grouped(event.turn)}, read by {by(event.by)}{again}."
         case facts.CommandRefused():
             return f"The machine declined a command: {_named(Refusal, event.refused.why)}."
         case facts.HandsAsked():
@@ -118,7 +123,7 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C"
             return f"Read by hand at turn {grouped(event.turn)}: {read}, as the meter showed it."
         case facts.ReadingTakenBack():
-            return f"The reading typed last was taken back by {by(event.by)}."
+            return f"What was typed last was taken back by {by(event.by)}."
         case facts.PaceAsked():
             return f"No faster than {event.percent} % of the planned pace, asked for by {by(event.by)}."
         case facts.ZeroWanted():

@@ -172,7 +172,9 @@ def _speed(recipe: Recipe, profile: MachineProfile, wire: Wire, outlook: Outlook
 
 
 def _machine(recipe: Recipe, profile: MachineProfile) -> Iterator[str]:
-    if profile.spindle.drive == "none":
+    if profile.by_eye:
+        yield "nothing counts for this program: it goes by the turns you type, and cannot stop the machine"
+    elif profile.spindle.drive == "none":
         yield "no spindle drive is fitted: this program counts and tells, and cannot stop the machine"
     if profile.guide.kind == "hand":
         yield (

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+OWN_MOTOR_SLOW_TURNS = 50.0  # before the stop, from where somebody's own motor is to be slowed; our judgement
+
 
 @dataclass(frozen=True, slots=True)
 class PaceSpec:

@@ -8,7 +8,7 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
-from windctl.forms.faults import Fault
+from windctl.forms.faults import Fault, KeyPath
 from windctl.forms.form import Form, FormatOne, Line, about, check, quantity
 
 MAX_STEP_HZ = 15_000  # steps/s that the board can issue to one motor
@@ -64,6 +64,13 @@ class SpindleTable(Form):
     drive: Annotated[
         Literal["step", "none"], about("none: counts only; windctl cannot start, slow or stop the machine.")
     ] = "none"
+    counter: Annotated[
+        Literal["board", "read"],
+        about(
+            "board: the board counts. read: there is no board; the turns are read off a counter by eye, and "
+            "typed."
+        ),
+    ] = "board"
     counts_per_turn: Annotated[int, quantity("counts", "encoder counts per turn", ge=1, le=400)] = 1
     steps_per_turn: Annotated[int, quantity("steps", "motor steps per turn", ge=1, le=800)] = 400
     index: Annotated[bool, about("One pulse per turn at a fixed angle, apart from the counts.")] = False
@@ -223,6 +230,11 @@ class MachineProfile(Form):
     pedal: Annotated[bool, about("A hold-to-run pedal is fitted.")] = False
     readings: Readings = Readings()
 
+    @property
+    def by_eye(self) -> bool:
+        """No board and no port: the turns are read off a counter by eye, and typed."""
+        return self.spindle.counter == "read"
+
     def canonical_json(self) -> str:
         """Sorted, compact, complete: what the record keeps of the machine. Read by model_validate_json."""
         content = self.model_dump(mode="json")
@@ -243,3 +255,37 @@ class MachineProfile(Form):
                 f"allow a pitch of {pitch:.3g} mm, less than the {_FINEST_PITCH_MM:g} mm of the finest wire; "
                 f"spindle.counts_per_turn of at least {needed:.0f} is needed",
             )
+
+    @check
+    def _what_is_read_by_eye_has_no_board(self) -> Iterator[Fault]:
+        """Where the counter is read by eye, whatever needs a board cannot be fitted."""
+        if not self.by_eye:
+            return
+        spindle, port = self.spindle, self.port
+        out = "leave it out"
+        needing: tuple[tuple[bool, KeyPath, str, str], ...] = (
+            (spindle.drive != "none", ("spindle", "drive"), '"step"', 'say "none"'),
+            (spindle.counts_per_turn != 1, ("spindle", "counts_per_turn"), f"{spindle.counts_per_turn}", out),
+            (spindle.index, ("spindle", "index"), "true", out),
+            (self.guide.kind != "hand", ("guide", "kind"), '"step"', 'say "hand"'),
+            (self.tension.sensor, ("tension", "sensor"), "true", out),
+            (self.pedal, ("pedal",), "true", out),
+            (
+                self.readings.mode == "live",
+                ("readings", "mode"),
+                '"live"',
+                'say "checks", whose readings are typed, or "none"',
+            ),
+            (
+                self.readings.mode == "checks" and self.readings.contact,
+                ("readings", "contact"),
+                "true",
+                "say false, and type what the meter shows",
+            ),
+            (port.url is not None, ("port", "url"), f"{port.url!r}", out),
+            (port.vendor is not None, ("port", "vendor"), f"{port.vendor}", out),
+        )
+        for is_so, path, value, instead in needing:
+            if is_so:
+                text = f'is {value}, which needs a board, and spindle.counter is "read": {instead}'
+                yield Fault(path, text)

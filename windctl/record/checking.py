@@ -19,7 +19,7 @@ def to_be_read(state: State) -> bool:
     assert started is not None and estimate is not None
     if state.check is not None:
         return state.in_hand
-    if started.readings_mode != "checks" or state.fit is not Fit.SAME:
+    if started.readings_mode != "checks" or not (state.fit is Fit.SAME or state.by_eye):
         return False
     if state.checked_count == state.count:
         return False

@@ -21,6 +21,7 @@ from windctl.protocol.wants import Permission
 from windctl.record.dry_pass import agreed, arrived, may_pass, nobody_agreed
 from windctl.record.events import Event, GoGiven
 from windctl.record.state import Fit, State
+from windctl.record.taking_back import second_thoughts
 from windctl.record.zeroing import waits_for_leads
 
 PATIENCE_TICKS = 30_000  # for a simulated contact, before somebody is asked
@@ -61,8 +62,10 @@ def _pedal_fitted(state: State) -> bool:
 
 
 def asks(state: State) -> str | None:
-    """What only a person can give now: "go", "clear", "leads", "reading", "place", "pass", "look" or nothing.
+    """What only a person can give now: "go", "clear", "leads", "reading", "place", "pass", "look", "count" or
+    nothing.
 
+    "count": where the counter is read by eye, the coil is to be wound on and the counter's number typed.
     "leads": before the first turn the contact's leads are to be put together, to be read by themselves.
     "reading": the coil stands for a check, and hands may go in.
     "pass": the guide is about to move, before the first turn; "look": it stands where it is to be seen.
@@ -79,6 +82,8 @@ def asks(state: State) -> str | None:
     if state.zero is not None:
         return "leads" if waits_for_leads(state) else None
     at_stop = state.stop_point is not None and state.count >= state.stop_point
+    if state.by_eye and state.check is None:
+        return None if at_stop and state.let_go and second_thoughts(state) else "count"
     if state.check is not None:
         return "reading" if state.drives_off and not _contact_may_come(state) else None
     if at_stop and state.held is not None and state.fit is not Fit.CORRECTED:

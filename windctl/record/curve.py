@@ -6,7 +6,7 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 
 from windctl.forecast.finish import finish_at, so_far
-from windctl.record.events import Event, ReadingTaken
+from windctl.record.events import Event, ReadingTaken, ReadingTakenBack, ReadingTyped
 from windctl.record.fold import State, fold, start
 
 MOST_POINTS = 500
@@ -34,6 +34,7 @@ def review(events: Iterable[Event]) -> Review:
     """Fold all facts of a coil and take its curve on the way, at most `MOST_POINTS` points.
 
     Points are dropped evenly: whenever there are too many, every other one goes and the spacing doubles.
+    Typed readings are points only where nothing else can read: curves sealed before stay as they are.
     """
     state = start()
     points: list[CurvePoint] = []
@@ -41,7 +42,12 @@ def review(events: Iterable[Event]) -> Review:
     used = 0
     for event in events:
         state = fold(state, event)
-        if not isinstance(event, ReadingTaken) or state.readings_used == used:
+        by_eye = state.by_eye and isinstance(event, ReadingTyped | ReadingTakenBack)
+        if not (by_eye or isinstance(event, ReadingTaken)) or state.readings_used == used:
+            continue
+        if state.readings_used < used:  # taken back
+            used = state.readings_used
+            points = points[:-1]
             continue
         used = state.readings_used
         if used % spacing == 0 and state.reading is not None:

@@ -32,8 +32,8 @@ from windctl.record.zeroing import zero_follows
 class Decision:
     """`events` to fold first; then `wants` for the board.
 
-    `asks` is "go", "clear", "leads", "reading", "place", "pass", "look", "turn" or None: what only a person
-    can give.
+    `asks` is "go", "clear", "leads", "reading", "place", "pass", "look", "count", "turn" or None: what only a
+    person can give.
     `blocked` says in words why the coil cannot go on by itself, where it cannot.
     """
 

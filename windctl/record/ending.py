@@ -33,7 +33,7 @@ def ending(state: State, at_ms: int) -> tuple[Event, ...]:
     if state.check is not None and state.in_hand:
         return checking(state, at_ms)
     if state.fit is Fit.CORRECTED:  # somebody has said that it is there, and agreed to go on from there
-        if state.consent is None:
+        if state.consent is None and not state.by_eye:
             return ()
     elif state.held is None or (started.readings_mode == "live" and not _settled(state)):
         return ()
@@ -47,8 +47,11 @@ def ending(state: State, at_ms: int) -> tuple[Event, ...]:
 def _at_target(state: State, at_ms: int) -> tuple[Event, ...]:
     started = state.started
     assert started is not None
-    if started.target.kind == "turns":
-        return (_finished(state, at_ms, "finished", "the turns asked for are wound"),)
+    target = started.target
+    if target.kind == "turns":
+        over = round(state.turns - target.value)
+        words = f"{_turns(over)} more than asked for" if over > 0 else "the turns asked for are wound"
+        return (_finished(state, at_ms, "finished", words),)
     if state.readings_used == 0 or (started.readings_mode == "live" and state.settled_readings == 0):
         return (
             _finished(

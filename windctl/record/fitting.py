@@ -10,6 +10,8 @@ def fit_of(state: State, identity: Identity) -> Fit:
     """A board that was never reset for another coil, and stands where this one can stand, has it in hand."""
     if not state.let_go or state.started is None:
         return Fit.FRESH
+    if state.by_eye:
+        return Fit.CORRECTED  # no board ever knew: the record does, until the counter is read again
     if state.corrected is not None and identity.count != state.count:
         return Fit.LOST  # it was never told the turn that it should now stand at
     same = (

@@ -24,6 +24,7 @@ from windctl.record.events import (
     CommandRefused,
     ContactZeroed,
     CountCorrected,
+    CounterRead,
     EndRequested,
     Event,
     GoGiven,
@@ -111,6 +112,8 @@ def fold(state: State, event: Event) -> State:
 
         case CountCorrected():
             return count.corrected(state, event)
+        case CounterRead():
+            return count.counter_read(state, event)
         case Unwound():
             return count.unwound(state, event)
 

@@ -44,10 +44,11 @@ def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
 
 
 def _spool_runs_out(state: State, at_ms: int) -> AlarmRaised | None:
-    """Told once in a coil, while it turns: more likely than not the spool ends before the stop point."""
+    """Told once in a coil, while it turns, or beforehand where nobody sees it turn: more likely than not the
+    spool ends before the stop point."""
     started = state.started
     assert started is not None
-    if state.spool_told or not state.turning or state.alarm is not None:
+    if state.spool_told or not (state.turning or state.by_eye) or state.alarm is not None:
         return None
     if state.stop_point is None or started.basis is None:
         return None

@@ -19,6 +19,7 @@ from windctl.record.events import (
     CoilStarted,
     ContactZeroed,
     CountCorrected,
+    CounterRead,
     EndRequested,
     GoGiven,
     HandsAsked,
@@ -45,7 +46,7 @@ class Fit(Enum):
 
 @dataclass(frozen=True, slots=True)
 class Before:
-    """What a typed reading changed, as it was before it; `ticks`: the board's, when it was typed."""
+    """What a typed reading or turn changed, as it was before it; `ticks`: the board's, when it was typed."""
 
     ticks: int
     estimate: Estimate | None
@@ -60,6 +61,8 @@ class Before:
     stop_point: int | None
     top_ups: int
     alarm: AlarmRaised | None
+    count: int
+    hands: HandsAsked | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,10 +116,12 @@ class State:
     typed: bool = False  # a reading typed since the spindle came to rest is of use
     checks: int = 0  # readings for which the coil was stopped, or the wire lay bare anyway
     checked_count: int | None = None  # where the last check was taken, or passed over
-    before_typed: Before | None = None  # while a typed reading can be taken back
+    before_typed: Before | None = None  # while what was typed last can be taken back
     zero: Zeroing | None = None  # while the contact is to be zeroed
     zeroed: ContactZeroed | None = None  # the last one: what is taken off
     contact_off: bool = False  # the leads were together since the last go: the contact belongs on the wire
+    counter: CounterRead | None = None  # the last one that was believed, since the last greeting
+    doubted: int | None = None  # the turn that was typed last and can hardly be
     pass_wanted: bool = False  # the guide is to be seen at both ends before the first turn
     pass_agreed: PassAgreed | None = None
     seen_far: bool = False  # the guide was seen right at the far end; at its start is what is left
@@ -138,6 +143,11 @@ class State:
     def counts_per_turn(self) -> int:
         """Encoder counts in one turn of the spindle; 1 before the coil has started."""
         return self.started.setup.counts_per_turn if self.started else 1
+
+    @property
+    def by_eye(self) -> bool:
+        """Nobody counts for windctl: turns are read off a counter and typed."""
+        return self.started is not None and self.started.counter == "read"
 
     @property
     def turns(self) -> float:

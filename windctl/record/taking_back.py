@@ -1,4 +1,5 @@
-"""A typed reading can be taken back until somebody goes on or the next reading is taken."""
+"""A typed reading can be taken back until somebody goes on or the next reading is taken; so can a typed turn
+where nobody else counts."""
 
 from __future__ import annotations
 
@@ -10,7 +11,7 @@ TAKE_BACK_TICKS = 8_000  # a coil that a typed reading would end waits so long f
 
 
 def kept(state: State) -> Before:
-    """What a reading typed now is about to change."""
+    """What a reading or a turn typed now is about to change."""
     return Before(
         ticks=0 if state.status is None else state.status.ticks,
         estimate=state.estimate,
@@ -25,11 +26,13 @@ def kept(state: State) -> Before:
         stop_point=state.stop_point,
         top_ups=state.top_ups,
         alarm=state.alarm,
+        count=state.count,
+        hands=state.hands,
     )
 
 
 def taken_back(state: State) -> State:
-    """The coil without the reading typed last, and without what followed from it."""
+    """The coil without the reading or turn typed last, and without what followed from it."""
     was = state.before_typed
     if was is None:
         return state
@@ -49,11 +52,13 @@ def taken_back(state: State) -> State:
         stop_point=was.stop_point,
         top_ups=was.top_ups,
         alarm=was.alarm,
+        count=was.count if state.by_eye else state.count,
+        hands=was.hands if state.by_eye else state.hands,
         before_typed=None,
     )
 
 
 def second_thoughts(state: State) -> bool:
-    """A reading was typed a moment ago: nothing that cannot be undone follows from it yet."""
+    """A reading or a turn was typed a moment ago: nothing that cannot be undone follows from it yet."""
     was, status = state.before_typed, state.status
     return was is not None and status is not None and status.ticks - was.ticks < TAKE_BACK_TICKS

@@ -78,6 +78,8 @@ def _sampling(state: State) -> Sampling | None:
 
 def _place(state: State) -> Place:
     assert state.started is not None
+    if state.by_eye:
+        return Place(0, 0, 0)  # nothing follows the program but a hand
     return place_at(state.started.program_packed, state.counts_per_turn, state.count)
 
 

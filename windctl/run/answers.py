@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
+from windctl.numbers import grouped
 from windctl.record.decide import Decision
 from windctl.record.dry_pass import FAR, START, goal, may_pass
 from windctl.record.events import (
     CheckTaken,
     ClearGiven,
     CountCorrected,
+    CounterRead,
     EndRequested,
     Event,
     GoGiven,
@@ -25,8 +29,10 @@ from windctl.record.events import (
     ZeroEnded,
     ZeroWanted,
 )
+from windctl.record.fold import fold
 from windctl.record.state import State
 from windctl.record.zeroing import NOBODY, may_zero, nobody_there
+from windctl.run.counter import NO_POWER, counter_says
 from windctl.run.pacing import paced
 from windctl.run.requests import (
     Broke,
@@ -55,12 +61,14 @@ from windctl.run.said import OFF, Answer
 from windctl.run.typed_readings import typed
 
 # What a person may be asked for while the coil stands and hands may go in.
-_AT_REST = ("go", "clear", "place", "reading")
+_AT_REST = ("go", "clear", "place", "reading", "count")
 
 
 def answer(request: Request, state: State, decision: Decision, at_ms: int, *, leaving: bool) -> Answer:
     """What becomes of a request. `leaving`: the run is about to end, so nothing may start any more."""
     permission = state.permission
+    if state.by_eye and not leaving and (by_eye := _by_eye(request, state, at_ms)) is not None:
+        return by_eye
     match request:
         case Hold():
             return Answer((HoldRequested(at_ms, request.by, request.reason),))
@@ -96,7 +104,11 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
         case TakeBack():
             if state.before_typed is None or leaving:
                 return Answer(says="there is no typed reading that could still be taken back")
-            return Answer((ReadingTakenBack(at_ms, request.by),), "the reading typed last is taken back")
+            back = Answer((ReadingTakenBack(at_ms, request.by),), "the reading typed last is taken back")
+            if state.by_eye and state.before_typed.count != state.count:
+                before = grouped(state.before_typed.count)
+                return replace(back, says=f"the turn typed last is taken back: {before} turns, as before")
+            return back
         case _:
             at_rest = decision.asks in _AT_REST or (state.check is not None and state.drives_off)
             if leaving or not at_rest or not state.in_hand or not state.let_go:
@@ -120,6 +132,28 @@ def _zeroing(
     return Answer((ZeroWanted(at_ms, request.by, request.simulated_hand),), "the contact is zeroed first")
 
 
+def _by_eye(request: Request, state: State, at_ms: int) -> Answer | None:
+    """What is different where there is no board: nothing is powered, and what was wound is told."""
+    match request:
+        case CountIs():
+            return counter_says(request.turn, request.by, state, at_ms)
+        case Broke() | Splice() | NewWire() if request.turn is not None and request.turn > state.turns:
+            told = counter_says(request.turn, request.by, state, at_ms)
+            if any(isinstance(fact, CounterRead) and fact.doubted for fact in told.facts) or not told.facts:
+                return told
+            after = _at_the_wire(request, fold(state, told.facts[0]), at_ms)
+            return replace(after, facts=(*told.facts, *after.facts))
+        case Hold(leave=False):
+            held = HoldRequested(at_ms, request.by, request.reason)
+            return Answer((held,), f"{NO_POWER}: stop it yourself")
+        case Go():
+            return Answer(says=f"{NO_POWER}: wind on yourself, then type turn and what the counter says")
+        case DrivesOff():
+            return Answer(says=f"{NO_POWER}: switch it off yourself")
+        case _:
+            return None
+
+
 def _at_the_wire(
     request: DrivesOff | Broke | Splice | NewWire | CountIs | Unwind | Read | Skip, state: State, at_ms: int
 ) -> Answer:
@@ -133,10 +167,10 @@ def _at_the_wire(
                 if not 0.0 < request.turns <= state.turns:
                     return Answer(says=f"{request.turns:g} turns cannot be taken off {state.turns:.2f} turns")
                 words = f"unwind {request.turns:g} turns, to turn {state.turns - request.turns:.2f}"
-            return Answer(
-                (HandsAsked(at_ms, by, words),),
-                f"{OFF} Turn the spindle back by hand: the count follows. Type go when done.",
-            )
+            told = f"{OFF} Turn the spindle back by hand: the count follows. Type go when done."
+            if state.by_eye:
+                told = "Turn the spindle back by hand, then type turn and what the counter says."
+            return Answer((HandsAsked(at_ms, by, words),), told)
         case Broke():
             turn = state.wire_ends_at if request.turn is None else request.turn
             if not 0.0 <= turn <= state.turns:
@@ -168,9 +202,13 @@ def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
         facts.append(CountCorrected(at_ms, turn, by, "what was counted beyond is without wire"))
     if isinstance(request, Splice):
         facts.append(Spliced(at_ms, turn, by))
-        return Answer(tuple(facts), f"noted: spliced at turn {turn:.2f}, winding goes on from there")
-    facts.append(WireChanged(at_ms, turn, request.spool, by))
-    return Answer(tuple(facts), f"noted: another spool from turn {turn:.2f} on")
+        noted = f"noted: spliced at turn {turn:.2f}, winding goes on from there"
+    else:
+        facts.append(WireChanged(at_ms, turn, request.spool, by))
+        noted = f"noted: another spool from turn {turn:.2f} on"
+    if state.by_eye and turn < state.turns:
+        noted += f"; turn the spindle back until the counter says {grouped(turn)}"
+    return Answer(tuple(facts), noted)
 
 
 def _counted(request: CountIs, state: State, at_ms: int) -> Answer:

@@ -48,6 +48,7 @@ from windctl.run.suits import check_board, check_refusal
 __all__ = ["Clear", "End", "Ended", "Go", "Hold", "Note", "Request", "Runner"]
 
 WAIT_S = 0.010  # the longest the runner listens before it looks up again
+UNPOWERED_S = 0.050  # the same where there is no board and so nothing that could be held
 LAST_HOLD_S = 5.0  # how long a failing run tries to see the spindle stand
 DURABLE_S = 30.0  # how long a simulated run waits for the disk
 ASKED_S = 0.005  # a simulated machine is in no hurry while a person is asked: ten times the real pace
@@ -163,7 +164,7 @@ class Runner:
                 return ended
 
     def _listen(self) -> list[Event]:
-        wait = WAIT_S
+        wait = UNPOWERED_S if self._state.by_eye else WAIT_S
         if self._port.simulated:  # nobody else needs the time: sleep until something is due
             wait = max(0.001, min(0.05, self._talk.next_due(self._port.now()) - self._port.now()))
         data = self._port.read(wait) if self._begun else b""

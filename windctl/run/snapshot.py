@@ -15,6 +15,7 @@ from windctl.record.decide import Decision
 from windctl.record.fold import Fit, State
 from windctl.record.program import place_at
 from windctl.record.taking_back import second_thoughts
+from windctl.run.goal import phase_by_eye, says_by_eye, slow_from, stop_half_width
 from windctl.run.trips import look_to
 from windctl.run.zero_seen import BACK_ON_THE_WIRE, ZeroSeen, says_zero, zero_seen
 
@@ -35,6 +36,7 @@ class Snapshot:
     """One coil at one moment. None is "not known". Resistances in ohm, intervals are 95 % half-widths."""
 
     phase: str  # connecting, setting up, ready, turning, stopping, held, settling, tripped, ended
+    # where the counter is read by eye instead: connecting, waiting, reading, held, settling, ended
     says: str  # what is happening or happens next, in plain words
     turns: float
     turns_planned: float
@@ -64,7 +66,10 @@ class Snapshot:
     pace_percent: int = 100  # of the planned pace, that somebody wants at the most
     check: Check | None = None  # the coil stands to be read
     zero: ZeroSeen | None = None  # before the first turn, where the board's contact reads
-    can_take_back: bool = False  # a typed reading can still be taken back
+    can_take_back: bool = False  # a typed reading or turn can still be taken back
+    by_eye: bool = False  # nobody counts for windctl: turns are read off a counter and typed
+    told_at_ms: int | None = None  # when in this run the counter was last read and believed
+    stop_u95: float | None = None  # turns: of the one that meets a resistance, where it is by eye
     answers: int = 0  # requests that were answered in words, and the last answer
     answer: str = ""
 
@@ -92,7 +97,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         stop_turn=stop,
         pace_rpm=speed * 60.0 / spt,
         ohm_now=state.reading.ohm if state.reading else None,
-        celsius=status.celsius / 100.0 if status else None,
+        celsius=_celsius(state),
         ohm_20c_now=now_20c,
         finish_ohm=finish.ohm if finish else None,
         finish_u95=(finish.high - finish.low) / 2.0 if finish else None,
@@ -103,7 +108,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         asks=decision.asks,
         readings_used=state.readings_used,
         readings_gated=state.readings_gated,
-        slow_turn=_slow_turn(state, stop),
+        slow_turn=slow_from(state) if state.by_eye else _slow_turn(state, stop),
         begun=state.let_go,
         drives_off=state.drives_off,
         hands=state.hands.reason if state.hands else None,
@@ -116,7 +121,20 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         check=_check(state),
         zero=zero_seen(state),
         can_take_back=state.before_typed is not None and state.finished is None,
+        by_eye=state.by_eye,
+        told_at_ms=None if state.counter is None else state.counter.at_ms,
+        stop_u95=stop_half_width(state) if state.by_eye else None,
     )
+
+
+def _celsius(state: State) -> float | None:
+    """Beside the coil: as the board has it; without a thermometer as it was typed with the last reading."""
+    identity, status = state.identity, state.status
+    if status is None or identity is None:
+        return None
+    if identity.capabilities & Capability.THERMOMETER:
+        return status.celsius / 100.0
+    return None if state.reading is None else state.reading.celsius
 
 
 def _check(state: State) -> Check | None:
@@ -138,6 +156,8 @@ def _phase(state: State) -> str:
         return "ended"
     if status is None:
         return "connecting"
+    if state.by_eye:
+        return phase_by_eye(state)
     if status.state == BoardState.TRIPPED:
         return "tripped"
     if status.state == BoardState.TURNING:
@@ -161,6 +181,10 @@ def _says(state: State, decision: Decision) -> str:
             return f"{decision.blocked}: {look_to(status.trip)}"
         return decision.blocked
     phase = _phase(state)
+    if state.by_eye and phase != "reading":
+        return says_by_eye(state)
+    if phase == "reading":
+        return _says_check(state)
     if phase == "turning" and state.stop_point is not None and state.started is not None:
         stop = state.stop_point / state.counts_per_turn
         slow = _slow_turn(state, stop)
@@ -219,10 +243,11 @@ def _says_check(state: State) -> str:
     """The check that is asked for, and what it gains."""
     check = state.check
     assert check is not None
-    off = "drives off, hands may go in" if state.drives_off else "switching the drives off"
+    off = "drives off, hands may go in: " if state.drives_off else "switching the drives off: "
+    off = "" if state.by_eye else off
     without, with_it = (_brief(Z95 * sd) for sd in (check.without_ohm, check.with_ohm))
     gain = f"the finish is known to ±{without} ohm, with a reading to ±{with_it} ohm"
-    return f"{off}: read the resistance at turn {check.turn:.0f}; {gain}"
+    return f"{off}read the resistance at turn {check.turn:.0f}; {gain}"
 
 
 def _brief(ohm: float) -> str:

@@ -299,4 +299,5 @@ def _started(order: Order, here: Here) -> CoilStarted:
         basis=plan.basis,
         spool_left_m=None if left is None else left.metres,
         spool_left_sd_m=None if left is None else left.sd,
+        counter=profile.spindle.counter,
     )

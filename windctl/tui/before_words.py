@@ -62,6 +62,8 @@ def checklist(recipe: Recipe, profile: MachineProfile, simulated: bool) -> tuple
     ]
     if recipe.tension is not None and recipe.tension.set_cn is not None:
         items.append(f"tension set to {recipe.tension.set_cn:g} cN")
+    if profile.by_eye:
+        items.append("the counter shows 0; windctl cannot start, slow or stop this machine")
     if profile.guide.kind == "step":
         items.append("guide inside the start flange, free to travel")
     if profile.readings.mode == "live":

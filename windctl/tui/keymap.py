@@ -31,6 +31,7 @@ _KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
     "wind.slower": ("s", "slower", "Slower"),
     "wind.faster": ("f", "faster", "Faster"),
     "wind.read": ("r", "read", "Read by hand"),
+    "wind.count": ("k", "count", "Counter"),
     "wind.undo": ("u", "undo", "Take a reading back"),
     "wind.seen": ("y", "seen", "Guide is right"),
     "wind.note": ("n", "note", "Note"),

@@ -21,6 +21,8 @@ LOOKS = {
     "turning": Look("turning", "▶", "turning"),
     "stopping": Look("stopping", "▷", "stopping"),
     "held": Look("held", "‖", "held"),
+    "waiting": Look("wind", "○", "ready"),
+    "reading": Look("read", "◇", "settling"),
     "settling": Look("settling", "◇", "settling"),
     "tripped": Look("tripped", "✖", "alarm"),
     "ended": Look("ended", "■", "ended"),

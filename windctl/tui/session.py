@@ -53,7 +53,8 @@ class Run:
         self.winding = winding
         self.card = card
         self.growth = growth
-        self.lay_by_hand: HandLay | None = None  # where a hand guides the wire
+        self.lay_by_hand: HandLay | None = None  # where a hand guides the wire, and the turns are counted
+        self.by_eye = False  # nobody counts: turns are read off a counter and typed
         self.before = before  # the curve of earlier runs of this coil
         self.outcome: Outcome | None = None
         self.truth: str = ""
@@ -190,7 +191,10 @@ class Session(Records):
         from windctl.plan.by_hand import hand_lay
 
         self._leaving.clear()
-        if profile.guide.kind == "hand":
+        if profile.by_eye:
+            run.by_eye = True
+            run.card = replace(run.card, pass_turns=hand_lay(recipe).pass_turns)
+        elif profile.guide.kind == "hand":
             run.lay_by_hand = hand_lay(recipe)
         if self._bench is not None:
             self._bench.name_coil(run.card.number)

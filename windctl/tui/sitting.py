@@ -35,6 +35,8 @@ class Sitting:
     @property
     def machine_words(self) -> str:
         """The machine in a few words."""
+        if self.profile.by_eye:
+            return f"{self.profile.name} · counter read by eye"
         if not self.simulated:
             return f"{self.profile.name} · {self.profile.port.url}"
         speed = self.shared.speed

@@ -15,6 +15,7 @@ from windctl.record.events import (
     CommandRefused,
     ContactZeroed,
     CountCorrected,
+    CounterRead,
     EndRequested,
     Event,
     GoGiven,
@@ -84,6 +85,11 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             return f"the line is gone: {event.reason}"
         case CountCorrected():
             return f"turn set to {grouped(event.turn, 1)} by {_by(event.by)}: {event.reason}"
+        case CounterRead():
+            if event.doubted:
+                return f"the counter at {grouped(event.turn)}? asked about"
+            again = ", so the readings before were at a wrong count" if event.recounted else ""
+            return f"the counter at {grouped(event.turn)}, read by {_by(event.by)}{again}"
         case CommandRefused():
             return f"the board declined: {_words(Refusal(event.refused.why).name)}"
         case HandsAsked():
@@ -102,7 +108,7 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C".replace("kohm", "kΩ").replace("ohm", "Ω")
             return f"read at turn {grouped(event.turn)} by {_by(event.by)}: {read}"
         case ReadingTakenBack():
-            return f"the reading typed last is taken back by {_by(event.by)}"
+            return f"what was typed last is taken back by {_by(event.by)}"
         case ZeroWanted():
             return "the contact is to be zeroed first"
         case LeadsTogether():

@@ -9,6 +9,7 @@ from math import floor
 from typing import TYPE_CHECKING
 
 from windctl.desk.numbers import duration, grouped, ohm
+from windctl.plan.pace import OWN_MOTOR_SLOW_TURNS
 from windctl.tui.looks import Look, look_of
 from windctl.tui.pictures.curve import Band, Scale
 
@@ -17,7 +18,6 @@ if TYPE_CHECKING:
     from windctl.run.snapshot import Snapshot
 
 _TRIPPED = re.compile(r"^the board is tripped \(([^)]*)\): ")
-OWN_MOTOR_SLOW_TURNS = 50.0  # before the stop, from where somebody's own motor is to be slowed; our judgement
 _HEADROOM = 1.08  # of an axis over the most that is foreseen
 
 
@@ -39,6 +39,7 @@ class Card:
     batch: str = ""
     of: int = 0
     place: int = 0  # of this coil in its batch; 0: not known
+    pass_turns: float = 0.0  # from flange to flange, where a hand guides and nobody counts; else 0
 
     @property
     def title(self) -> str:
@@ -123,6 +124,8 @@ def still(seen: Glance, before: Glance) -> Glance:
 
 def next_of(snapshot: Snapshot) -> Next:
     """What happens next, from what is known."""
+    if snapshot.by_eye and snapshot.phase != "ended":
+        return _next_by_eye(snapshot)
     if snapshot.phase == "turning" and snapshot.stop_turn is not None:
         when = f"in {duration(snapshot.seconds_left)}" if snapshot.seconds_left is not None else ""
         slow = snapshot.slow_turn
@@ -161,6 +164,24 @@ def next_of(snapshot: Snapshot) -> Next:
     return Next(_sentence(snapshot.says))
 
 
+def _next_by_eye(snapshot: Snapshot) -> Next:
+    """What somebody does next who winds on a motor of their own and reads the counter."""
+    if snapshot.phase == "reading" and snapshot.check is not None:
+        return Next("at turn", grouped(snapshot.check.turn), "R types what the meter shows")
+    if snapshot.phase == "settling":
+        return Next("the coil ends in a moment", "", "U takes the turn back")
+    if snapshot.phase == "held":
+        return Next("stop your own motor", "", "windctl cannot; K: the counter")
+    if snapshot.phase != "waiting" or snapshot.stop_turn is None:
+        return Next(_sentence(snapshot.says))
+    if (snapshot.hands or "").startswith("unwind"):
+        return Next("turn it back by hand", "", "then K: the counter")
+    slow = snapshot.slow_turn
+    slows = slow is not None and snapshot.turns < slow
+    when = f"slow from {grouped(slow or 0.0)}, then K" if slows else "and stop, then K"
+    return Next("to" if snapshot.begun else "from 0 to", grouped(snapshot.stop_turn), when)
+
+
 def _sentence(words: str) -> str:
     return _TRIPPED.sub(r"\1: ", words.removeprefix("held: "))
 
@@ -168,7 +189,8 @@ def _sentence(words: str) -> str:
 def _under(snapshot: Snapshot, goal: float) -> str:
     about = "about " if snapshot.stop_turn is None else ""
     part = f" · {min(100, floor(100 * snapshot.turns / goal))} %" if goal > 0 else ""
-    return f"of {about}{grouped(goal)} turns{part}"
+    back = " · U takes back" if snapshot.by_eye and snapshot.can_take_back else ""
+    return f"of {about}{grouped(goal)} turns{part}{back}"
 
 
 def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
@@ -183,7 +205,7 @@ def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
             else f"{_ohm(snapshot.finish_ohm, snapshot.finish_u95 or 0.0)} at 20 °C",
         ),
         ("target", target_text(card)),
-        ("pace", _pace(snapshot)),
+        *_pace_rows(snapshot, card),
     ]
     if snapshot.tension_cn is not None:
         rows.append(("pull", f"{snapshot.tension_cn:.1f} cN"))
@@ -192,6 +214,18 @@ def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
     used = grouped(snapshot.readings_used)
     rows.append(("readings", f"{used} used, {grouped(snapshot.readings_gated)} set aside"))
     return tuple(rows)
+
+
+def _pace_rows(snapshot: Snapshot, card: Card) -> list[tuple[str, str]]:
+    """Of a spindle that turns; where nobody sees it turn, where it is to stop and how a hand lays."""
+    if not snapshot.by_eye:
+        return [("pace", _pace(snapshot))]
+    rows = []
+    if snapshot.stop_turn is not None and snapshot.stop_u95:
+        rows.append(("stop", f"{grouped(snapshot.stop_turn)} ± {grouped(snapshot.stop_u95)} turns"))
+    if card.pass_turns:
+        rows.append(("lay", f"{grouped(card.pass_turns)} turns each way"))
+    return rows
 
 
 def _pace(snapshot: Snapshot) -> str:
@@ -205,6 +239,7 @@ def _pace(snapshot: Snapshot) -> str:
 def reading_steps(snapshot: Snapshot) -> str:
     """What to do so that the coil can be read, in order."""
     off = "✔ drives off: hands may go in" if snapshot.drives_off else "□ wait: the drives go off"
+    off = "□ your own motor is off and stands" if snapshot.by_eye else off
     steps = [off, "□ bare the wire at the guide, never on the coil"]
     check = snapshot.check
     if check is not None and check.contact:

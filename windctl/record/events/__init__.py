@@ -16,7 +16,7 @@ from windctl.record.events.alarms import AlarmRaised
 from windctl.record.events.board import BoardGreeted, CommandRefused, LinkLost, StatusHeard
 from windctl.record.events.checks import CheckAsked, CheckTaken
 from windctl.record.events.consents import ClearGiven, GoGiven
-from windctl.record.events.count import CountCorrected, Unwound
+from windctl.record.events.count import CountCorrected, CounterRead, Unwound
 from windctl.record.events.course import CoilFinished, CoilStarted, Resumed, StopPointChosen, Target
 from windctl.record.events.dry_pass import GuideSeen, PassAgreed, PassWanted
 from windctl.record.events.notes import NoteMade
@@ -46,6 +46,7 @@ __all__ = [
     "CommandRefused",
     "ContactZeroed",
     "CountCorrected",
+    "CounterRead",
     "EndRequested",
     "Event",
     "GoGiven",
@@ -91,6 +92,7 @@ Event = (
     | Tripped
     | CountCorrected
     | Unwound
+    | CounterRead
     | GoGiven
     | ClearGiven
     | HoldRequested

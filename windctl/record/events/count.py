@@ -1,4 +1,5 @@
-"""The count became another without winding: somebody told it, or turned the spindle back by hand."""
+"""The count became another without the board's counting: somebody told it, or turned the spindle back by
+hand."""
 
 from __future__ import annotations
 
@@ -31,3 +32,19 @@ class Unwound:
     at_ms: int
     before: int
     count: int
+
+
+@dataclass(frozen=True, slots=True)
+class CounterRead:
+    """Nobody counts for windctl: somebody read `turn` off a counter, the spindle standing, and typed it.
+
+    `doubted`: it can hardly be, so it changes nothing but that the same number once more is believed.
+    `recounted`: the readings so far were taken at a wrong count, which is now called `turn`.
+    """
+
+    kind: ClassVar[str] = "counter_read"
+    at_ms: int
+    turn: int
+    by: str
+    doubted: bool = False
+    recounted: bool = False

@@ -57,6 +57,7 @@ class CoilStarted:
     spool_left_m: float | None = None  # wire on the spool as the coil was begun, as far as was known
     spool_left_sd_m: float | None = None
     guide_pace: int = 200  # motor steps/s at which the guide is brought back to a place, the spindle at rest
+    counter: str = "board"  # "read": nobody counts for windctl, turns are read by eye and typed
 
 
 @dataclass(frozen=True, slots=True)

@@ -23,6 +23,8 @@ def greeted(state: State, identity: Identity) -> State:
         clear=None,
         refused=None,
         before_typed=None,
+        counter=None,
+        doubted=None,
         link_lost=None,
         guide_known=kept_guide(state, identity),
         misplaced=state.misplaced and (state.let_go or same_place(state, identity)),

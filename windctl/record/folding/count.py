@@ -6,8 +6,9 @@ from dataclasses import replace
 
 from windctl.forecast.events import recounted
 from windctl.protocol.messages import Capability
-from windctl.record.events import CountCorrected, Unwound
+from windctl.record.events import CountCorrected, CounterRead, Unwound
 from windctl.record.state import Fit, State
+from windctl.record.taking_back import kept
 
 # How far off a turn typed by somebody who counted may be.
 MISCOUNT_SD_TURNS = 0.5
@@ -36,6 +37,36 @@ def unwound(state: State, event: Unwound) -> State:
     """The board has counted back with the spindle; its guide stayed where it was."""
     held = None if state.held is None else replace(state.held, count=event.count)
     return replace(state, misplaced=_guided(state), held=held, before_typed=None)
+
+
+def counter_read(state: State, event: CounterRead) -> State:
+    """The coil stands where the counter says. More turns than before were wound: whatever was to be looked
+    to first is done."""
+    if event.doubted:
+        return replace(state, doubted=event.turn)
+    if event.turn == state.count:
+        return replace(state, counter=event, doubted=None)
+    estimate = state.estimate
+    if event.recounted and estimate is not None:
+        estimate = recounted(estimate, state.turns, float(event.turn), MISCOUNT_SD_TURNS)
+    return replace(
+        state,
+        fit=Fit.CORRECTED,
+        let_go=True,
+        count=event.turn,
+        counter=event,
+        doubted=None,
+        corrected=None,
+        estimate=estimate,
+        fresh_reading=False,
+        settled_readings=0,
+        typed=False,
+        check=None,
+        hold=None,
+        hands=None,
+        alarm=None,
+        before_typed=kept(state),
+    )
 
 
 def _guided(state: State) -> bool:

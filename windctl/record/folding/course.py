@@ -16,10 +16,11 @@ def resumed(state: State) -> State:
 
 
 def stop_point_chosen(state: State, event: StopPointChosen) -> State:
-    """One that is chosen at rest tops the coil up."""
+    """One that is chosen where the coil stood at the last one tops the coil up."""
+    at_stop = state.stop_point is not None and state.count >= state.stop_point
     return replace(
         state,
         stop_point=event.count,
         stop_choices=state.stop_choices + 1,
-        top_ups=state.top_ups + (1 if state.held is not None else 0),
+        top_ups=state.top_ups + (1 if at_stop and (state.by_eye or state.held is not None) else 0),
     )

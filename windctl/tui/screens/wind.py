@@ -49,7 +49,9 @@ _WHILE_IT_RUNS = (
     "slower",
     "faster",
     "read",
+    "count",
 )
+_OF_A_BOARD = ("hold", "go", "clear", "slower", "faster")  # have no meaning where the counter is read by eye
 
 
 def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
@@ -72,6 +74,7 @@ class WindScreen(WindQuestions):
         key("wind.tell"),
         key("wind.slower"),
         key("wind.faster"),
+        key("wind.count"),
         key("wind.read", show=False),
         key("wind.undo", show=False),
         key("wind.seen"),
@@ -136,6 +139,7 @@ class WindScreen(WindQuestions):
             self.tell_answer(snapshot.answer)
         before, self.latest = self.latest, snapshot
         if self.ended is None:
+            self.consider_count(snapshot)
             self.consider_reading(before, snapshot)
         if before is not None and _keys_of(before) != _keys_of(snapshot):
             self.refresh_bindings()
@@ -268,6 +272,10 @@ class WindScreen(WindQuestions):
             return running and self.latest is not None and self.latest.asks == "look"
         if action == "undo":
             return running and self.latest is not None and self.latest.can_take_back
+        if action in _OF_A_BOARD and self.coil.by_eye:
+            return False
+        if action == "count":
+            return running and self.coil.by_eye
         if action in _WHILE_IT_RUNS:
             return running
         if action in ("done", "again"):

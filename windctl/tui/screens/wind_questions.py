@@ -4,9 +4,12 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from textual.events import Key
+
 from windctl.desk.words import request_of
 from windctl.run.requests import Clear, End, Faster, Go, Note, Seen, Slower, TakeBack, Unwind
 from windctl.tui.dialogs.confirm import Confirm
+from windctl.tui.dialogs.counter import CounterPrompt
 from windctl.tui.dialogs.read import ReadingPrompt
 from windctl.tui.dialogs.tell import Tell, said
 from windctl.tui.dialogs.typed import Typed, Word
@@ -29,6 +32,7 @@ class WindQuestions(Room):
         self.coil = run
         self._to_unwind = 0.0
         self._prompted: float | None = None  # the check that the prompt was opened for
+        self._told_at_ms: int | None = None  # when the counter was last believed
 
     def action_hold(self) -> None:
         """The spindle stands. The key acts before this is asked; a click on it comes here."""
@@ -67,8 +71,11 @@ class WindQuestions(Room):
     def action_end(self) -> None:
         """End the coil where it stands."""
         turns = self.coil.winding.look().turns
+        ends = f"It is held, and {self.coil.card.number} ends at about turn {turns:.0f}."
+        if self.coil.by_eye:
+            ends = f"{self.coil.card.number} ends at turn {turns:.0f}, the last one that was typed."
         words = (
-            f"It is held, and {self.coil.card.number} ends at about turn {turns:.0f}. Its record is sealed; "
+            f"{ends} Its record is sealed; "
             "it cannot be gone on with. To go on later, leave it open instead (L)."
         )
         self.app.push_screen(Confirm("End the coil here?", words), self._end)
@@ -120,6 +127,26 @@ class WindQuestions(Room):
         """A tenth more, at the most as planned."""
         self.coil.winding.request(Faster("operator"))
 
+    # ------------------------------------------------------------ turns by eye
+
+    def action_count(self, first: str = "") -> None:
+        """What the counter says."""
+        self.app.push_screen(CounterPrompt(self.coil.winding.look(), self.coil.winding.request, first))
+
+    def on_key(self, event: Key) -> None:
+        """A digit begins what the counter says."""
+        digit = event.character or ""
+        if self.coil.by_eye and digit.isdecimal() and self.check_action("count", ()):
+            event.stop()
+            self.action_count(digit)
+
+    def consider_count(self, snapshot: Snapshot) -> None:
+        """Close the prompt once the run has believed what was typed."""
+        top = self.app.screen
+        if snapshot.told_at_ms not in (None, self._told_at_ms) and isinstance(top, CounterPrompt):
+            top.dismiss(None)
+        self._told_at_ms = snapshot.told_at_ms
+
     # ------------------------------------------------------------ readings by hand
 
     def action_read(self) -> None:
@@ -141,6 +168,8 @@ class WindQuestions(Room):
         check, top = snapshot.check, self.app.screen
         if isinstance(top, ReadingPrompt):
             taken = snapshot.can_take_back and before is not None and not before.can_take_back
+            if snapshot.by_eye and before is not None:  # where a turn can be taken back already
+                taken = snapshot.readings_used > before.readings_used
             was_asked = before is not None and before.check is not None
             if check is None and (taken or was_asked):
                 top.dismiss(None)
@@ -153,8 +182,10 @@ class WindQuestions(Room):
 
     def tell_answer(self, words: str) -> None:
         """What the run says to a request."""
-        top = self.app.screen
-        if isinstance(top, ReadingPrompt) and self.coil.winding.look().check is not None:
+        top, snapshot = self.app.screen, self.coil.winding.look()
+        not_believed = isinstance(top, CounterPrompt) and snapshot.told_at_ms == self._told_at_ms
+        reads = isinstance(top, ReadingPrompt) and (snapshot.check is not None or snapshot.by_eye)
+        if isinstance(top, CounterPrompt | ReadingPrompt) and (reads or not_believed):
             top.tell(words)
         else:
             self.notify(words, markup=False)
