@@ -96,4 +96,4 @@ def test_zero_together_and_go_are_typed_and_each_answer_is_said(tmp_path: Path) 
         ContactZeroed,
     ]
     told = [line.what for line in story(rare, 400)]
-    assert any(line.startswith("Contact zeroed: leads and contact had") for line in told)
+    assert any(line.startswith("Zeroed: leads and contact had") for line in told)

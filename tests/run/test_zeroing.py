@@ -143,7 +143,7 @@ def test_leads_are_read_taken_off_and_the_coil_is_wound(tmp_path: Path) -> None:
     told = " ".join(
         line.what for line in story([event for event in events if not isinstance(event, DENSE)], 400)
     )
-    assert "Contact zeroed: leads and contact had" in told
+    assert "Zeroed: leads and contact had" in told
     whole = life(events, ())
     assert whole.made is not None
     lines = {line.name: line.sd for line in whole.made.budget}
