@@ -141,13 +141,14 @@ async def test_a_dry_pass_is_looked_at_before_anything_turns(tmp_path: Path) -> 
         await until(pilot, lambda: isinstance(app.screen, BeforeScreen))
         before = app.screen
         assert isinstance(before, BeforeScreen)
-        assert not before.dry_pass  # nobody needs to look at a simulated guide
+        assert not before.first.dry_pass  # nobody needs to look at a simulated guide
         await press(pilot, "p")
-        assert "Dry pass of the guide first: yes" in str(before.query_one("#before-state", Static).content)
+        assert "dry pass of guide: yes (P)" in before.query_one(Checklist).items
         await until(pilot, lambda: bool(before.query_one("#before-repeats", Figures).rows))
         assert ("batch", "lot: this is 1 of 2") in before.query_one("#before-repeats", Figures).rows
         for _ in before.query_one(Checklist).items:
             await press(pilot, "enter")
+        assert "Then there: dry pass of the guide" in str(before.query_one("#before-state", Static).content)
         await press(pilot, "s")
         await until(pilot, lambda: isinstance(app.screen, WindScreen))
         wind = app.screen

@@ -65,9 +65,11 @@ def to_the_machine(terminal: Tmux) -> None:
     for _ in range(12):
         terminal.press("Enter")
     terminal.shows("S opens the machine")
-    if "first: yes" in terminal.screen:
-        terminal.press("p")
-        terminal.shows("first: no")
+    if "Then there:" in terminal.screen:  # on a machine of its own
+        for key, what in (("z", "contact zeroed"), ("p", "dry pass")):
+            if what in terminal.screen.partition("Then there:")[2]:
+                terminal.press(key)
+        terminal.shows("and sets it")
     terminal.press("s")
 
 

@@ -132,7 +132,7 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             return f"The contact's leads were put together, said {by(event.by)}."
         case facts.ContactZeroed():
             found = ohm(event.ohm, _Z95 * event.sd_ohm)
-            return f"Zeroed: leads and contact had {found} in {event.readings} readings; taken off from then on."
+            return f"Zeroed: leads and contact had {found} in {event.readings} readings; taken off since."
         case facts.ZeroRefused():
             return f"Not zeroed: {why_refused(event)}."
         case facts.ZeroEnded():

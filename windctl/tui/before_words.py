@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from windctl.tui.recipes import Preview
 
 _Z95 = 1.959964
+_LEADS_SHOW_REL = 0.0005  # of the coil's resistance: a fiftieth of a tolerance of 2.5 %; our judgement
 
 
 def figures_of(plan: Plan) -> tuple[tuple[str, str], ...]:
@@ -50,8 +51,34 @@ def orientation_of(recipe: Recipe) -> Orientation:
     return orientation(coil.direction_from_face, coil.mounted, coil.start_flange)
 
 
-def checklist(recipe: Recipe, profile: MachineProfile, simulated: bool) -> tuple[str, ...]:
-    """What to do and to confirm before anything turns, in order."""
+@dataclass(frozen=True, slots=True)
+class First:
+    """What is to be done on the machine itself before the first turn."""
+
+    zero: bool = False  # leads and contact are read by themselves
+    dry_pass: bool = False  # the guide is seen at both of its turn-rounds
+
+    @property
+    def words(self) -> str:
+        """In their order; empty where there is nothing."""
+        steps = (("contact zeroed", self.zero), ("dry pass of the guide", self.dry_pass))
+        return ", ".join(words for words, wanted in steps if wanted)
+
+
+def first_of(plan: Plan, profile: MachineProfile, simulated: bool) -> First:
+    """What a real machine begins with unless somebody takes it out: the dry pass where a motor guides, and a
+    zeroing where the coil is stopped to be read and the leads may be off by something that shows. A contact
+    that follows the wire learns its leads from the first turns."""
+    leads = plan.prior.offset_sd > _LEADS_SHOW_REL * plan.dcr_20c_ohm
+    stopped = profile.readings.mode == "checks" and profile.readings.contact
+    return First(
+        zero=stopped and leads and not simulated,
+        dry_pass=profile.guide.kind == "step" and not simulated,
+    )
+
+
+def checklist(recipe: Recipe, profile: MachineProfile, simulated: bool, first: First) -> tuple[str, ...]:
+    """What to do and to confirm before anything turns, in order; as many lines whatever is done `first`."""
     coil, where = recipe.coil, orientation_of(recipe)
     way = "clockwise" if where.spindle == "cw" else "counter-clockwise"
     face = "face towards you" if coil.mounted == "face out" else "face towards the motor"
@@ -67,7 +94,12 @@ def checklist(recipe: Recipe, profile: MachineProfile, simulated: bool) -> tuple
     if profile.guide.kind == "step":
         items.append("guide inside the start flange, free to travel")
     if profile.readings.mode == "live":
-        items.append("contact touches the wire, meter leads on")
+        contact = "off the wire until it is zeroed" if first.zero else "touches the wire"
+        items.append(f"meter leads on, contact {contact}")
+    if profile.readings.by_contact:
+        items.append(f"contact zeroed: {_yes(first.zero)} (Z)")
+    if profile.guide.kind == "step":
+        items.append(f"dry pass of guide: {_yes(first.dry_pass)} (P)")
     if not simulated:
         items += [
             "guard closed; hands off; hair, sleeves, jewellery away; no gloves",
@@ -75,6 +107,10 @@ def checklist(recipe: Recipe, profile: MachineProfile, simulated: bool) -> tuple
             "hardware stop within reach; this program is no safety function",
         ]
     return tuple(items)
+
+
+def _yes(wanted: bool) -> str:
+    return "yes" if wanted else "no"
 
 
 def _wire(recipe: Recipe) -> str:

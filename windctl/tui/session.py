@@ -16,9 +16,10 @@ from typing import TYPE_CHECKING
 from windctl.desk.asked import Shared
 from windctl.desk.books import book_to_read, book_to_write
 from windctl.desk.numbers import ohm
+from windctl.desk.simulated_leads import SimulatedLeads
 from windctl.errors import RecordBroken
-from windctl.run.requests import DryPass, Hold
-from windctl.tui.before_words import Repeats
+from windctl.run.requests import DryPass, Hold, ZeroContact
+from windctl.tui.before_words import First, Repeats
 from windctl.tui.cards import card_for
 from windctl.tui.pictures.curve import Point
 from windctl.tui.records import Records, points_of
@@ -59,6 +60,7 @@ class Run:
         self.outcome: Outcome | None = None
         self.truth: str = ""
         self.hand: Callable[[float], None] | None = None  # turns a simulated spindle
+        self.leads: SimulatedLeads | None = None  # at a simulated contact
 
     @property
     def counts_per_turn(self) -> int:
@@ -110,9 +112,9 @@ class Session(Records):
 
     # ------------------------------------------------------------ a coil
 
-    def begin(self, preview: Preview, batch: str = "", of: int = 0, *, dry_pass: bool = False) -> Run:
-        """Open the machine, number the coil, and start its run, where wanted with a dry pass of the guide
-        first. Raises WindctlError; nothing is open then."""
+    def begin(self, preview: Preview, batch: str = "", of: int = 0, *, first: First | None = None) -> Run:
+        """Open the machine, number the coil, and start its run with what is to be done on it first. Raises
+        WindctlError; nothing is open then."""
         from windctl.run.wind import Order, begin
 
         with ExitStack() as stack:
@@ -128,7 +130,9 @@ class Session(Records):
             )
             place = book.count(batch=batch) + 1 if batch else 0
             winding = begin(order, book, bench.port, bench.here)
-            if dry_pass:
+            if first is not None and first.zero:
+                winding.request(ZeroContact("operator", simulated_hand=bench.connect is not None))
+            if first is not None and first.dry_pass:
                 winding.request(DryPass("operator"))
             recipe = preview.recipe
             card = card_for(recipe.name, winding.number, bench.name, preview.plan, recipe.stop)
@@ -199,6 +203,8 @@ class Session(Records):
         if self._bench is not None:
             self._bench.name_coil(run.card.number)
             run.hand = self._bench.hand
+            if self._bench.connect is not None:
+                run.leads = SimulatedLeads(self._bench.connect)
         run.winding.start()
         with self._lock:
             self._stack = stack.pop_all()

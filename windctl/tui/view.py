@@ -10,12 +10,14 @@ from typing import TYPE_CHECKING
 
 from windctl.desk.numbers import duration, grouped, ohm
 from windctl.plan.pace import OWN_MOTOR_SLOW_TURNS
+from windctl.run.zero_seen import now_words
 from windctl.tui.looks import Look, look_of
 from windctl.tui.pictures.curve import Band, Scale
 
 if TYPE_CHECKING:
     from windctl.run.outlook import Ahead
     from windctl.run.snapshot import Snapshot
+    from windctl.run.zero_seen import ZeroSeen
 
 _TRIPPED = re.compile(r"^the board is tripped \(([^)]*)\): ")
 _HEADROOM = 1.08  # of an axis over the most that is foreseen
@@ -146,6 +148,9 @@ def next_of(snapshot: Snapshot) -> Next:
         return Next(_sentence(snapshot.says), "", f"U takes the reading back{goes_on}")
     if snapshot.alarm and snapshot.phase == "held" and snapshot.asks == "go":
         return Next("see the alarm below, and look to it", "", "T tells what you did, G goes on")
+    zero = snapshot.zero
+    if zero is not None and zero.wanted and snapshot.phase != "connecting":
+        return _next_of_zero(snapshot, zero)
     if snapshot.asks == "go":
         word = "goes on" if snapshot.turns > 0 else "starts"
         return Next(_sentence(snapshot.says), "", f"{word} when you press G")
@@ -162,6 +167,22 @@ def next_of(snapshot: Snapshot) -> Next:
     if snapshot.phase == "stopping":
         return Next("comes to rest" if snapshot.driven else "stop your own motor")
     return Next(_sentence(snapshot.says))
+
+
+def _next_of_zero(snapshot: Snapshot, zero: ZeroSeen) -> Next:
+    """What to do with the contact's leads."""
+    if zero.together:
+        return Next("hold the leads together", f"{zero.read}/{zero.enough}", "they are being read")
+    if snapshot.asks != "leads":
+        return Next(_sentence(snapshot.says))
+    return Next("put contact and the meter's other lead together", "", "then Y · T: skip leaves it")
+
+
+def _leads(zero: ZeroSeen) -> str:
+    """The contact as it reads, or what was zeroed."""
+    if zero.wanted or zero.found is None:
+        return now_words(zero.now).replace("ohm", "Ω")
+    return f"{_ohm(zero.found, zero.found_u95 or 0.0)}, zeroed"
 
 
 def _next_by_eye(snapshot: Snapshot) -> Next:
@@ -207,6 +228,9 @@ def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:
         ("target", target_text(card)),
         *_pace_rows(snapshot, card),
     ]
+    zero = snapshot.zero
+    if zero is not None and (zero.wanted or zero.found is not None):
+        rows[:2] = [("leads", _leads(zero)), ("profile", _ohm(zero.profile, zero.profile_u95))]
     if snapshot.tension_cn is not None:
         rows.append(("pull", f"{snapshot.tension_cn:.1f} cN"))
     if snapshot.guide_mm is not None:
@@ -264,7 +288,8 @@ def target_text(card: Card) -> str:
 
 def _alarm(snapshot: Snapshot) -> str:
     if snapshot.phase != "tripped":
-        return snapshot.alarm
+        refused = "" if snapshot.zero is None else snapshot.zero.refused
+        return snapshot.alarm or (f"Not zeroed: {refused}." if refused else "")
     lost = ""
     if snapshot.wire_ends_at is not None:
         lost = f"What was counted beyond turn {grouped(snapshot.wire_ends_at, 1)} is without wire. "
@@ -310,5 +335,7 @@ def sound(before: Snapshot | None, now: Snapshot) -> Sound | None:
     if now.phase == "turning" and slow is not None and before.turns < slow <= now.turns:
         return Sound.SLOWS
     if before.check is not None and now.check is None:
+        return Sound.READ
+    if before.zero is not None and before.zero.together and (now.zero is None or not now.zero.together):
         return Sound.READ
     return None

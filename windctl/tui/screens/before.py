@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING, ClassVar
 
 from textual import on, work
@@ -11,7 +12,7 @@ from textual.containers import Horizontal, Vertical
 from textual.widgets import Input, Static
 
 from windctl.errors import WindctlError
-from windctl.tui.before_words import checklist, figures_of, orientation_of, repeats
+from windctl.tui.before_words import checklist, figures_of, first_of, orientation_of, repeats
 from windctl.tui.dialogs.say import Say
 from windctl.tui.keymap import key
 from windctl.tui.screens.room import Room
@@ -21,6 +22,7 @@ from windctl.tui.widgets.figures import Figures
 from windctl.tui.widgets.orientation import OrientationDrawing
 
 if TYPE_CHECKING:
+    from windctl.tui.before_words import First
     from windctl.tui.recipes import Preview
     from windctl.tui.session import Run, Session
 
@@ -30,10 +32,16 @@ class BeforeScreen(Room):
 
     ABOUT = (
         "Mount the bobbin as drawn and confirm line by line with Enter. S opens the machine and sets it up; "
-        "on a real machine nothing turns before you have typed go, or pressed the pedal. In a dry pass the "
-        "guide first goes to its far turn-round and back, and you see whether it stays inside both flanges."
+        "on a real machine nothing turns before you have typed go, or pressed the pedal. Two lines are done "
+        "there before that: a contact is zeroed by reading its leads put together (Z), and in a dry pass (P) "
+        "the guide goes to its far turn-round and back, and you see whether it stays inside both flanges."
     )
-    BINDINGS: ClassVar[list[BindingType]] = [key("before.start"), key("before.pass"), key("back")]
+    BINDINGS: ClassVar[list[BindingType]] = [
+        key("before.start"),
+        key("before.zero"),
+        key("before.pass"),
+        key("back"),
+    ]
 
     def __init__(
         self, session: Session, preview: Preview, batch: str = "", of: int = 0, *, again: bool = False
@@ -45,8 +53,7 @@ class BeforeScreen(Room):
         self._of = of or session.shared.of or 0
         self._opening = False
         self._planning = False
-        guided = session.profile.guide.kind == "step"
-        self.dry_pass = guided and not session.simulated
+        self.first = first_of(preview.plan, session.profile, session.simulated)
 
     def heading(self) -> str:
         """The recipe."""
@@ -65,8 +72,7 @@ class BeforeScreen(Room):
                 yield Figures(wrapped=True, id="before-repeats")
             with Vertical(id="before-right"):
                 yield Static("Check, then confirm each line", classes="heading", markup=False)
-                items = checklist(recipe, self.session.profile, self.session.simulated)
-                yield Checklist(items, id="checklist")
+                yield Checklist(self._items(), id="checklist")
                 with Horizontal(id="batch-row"):
                     yield Input(self._batch, placeholder="batch, if any", id="batch")
                     yield Input(str(self._of or ""), placeholder="of", type="integer", id="batch-of")
@@ -134,26 +140,33 @@ class BeforeScreen(Room):
         self._say(event.complete)
 
     def _say(self, complete: bool) -> None:
-        words = (
-            "○ S opens the machine and sets it up."
-            if complete
-            else "□ Confirm each line with Enter; then S starts."
-        )
+        words = "□ Confirm each line with Enter; then S starts."
+        if complete:
+            there = self.first.words
+            words = f"○ S opens the machine{f'. Then there: {there}' if there else ' and sets it up'}."
         state = self.query_one("#before-state", Static)
-        words += self._pass_words()
         if str(state.content) != words:  # each change lays the whole room out anew
             state.update(words)
 
-    def _pass_words(self) -> str:
-        if self.session.profile.guide.kind != "step":
-            return ""
-        return f"\nDry pass of the guide first: {'yes' if self.dry_pass else 'no'} (P)"
+    def _items(self) -> tuple[str, ...]:
+        session = self.session
+        return checklist(self.preview.recipe, session.profile, session.simulated, self.first)
 
     def action_dry_pass(self) -> None:
         """With a dry pass or without."""
         if self.session.profile.guide.kind == "step":
-            self.dry_pass = not self.dry_pass
-            self._say(self.query_one(Checklist).complete)
+            self._do_first(replace(self.first, dry_pass=not self.first.dry_pass))
+
+    def action_zero(self) -> None:
+        """With a zeroing of the contact or without."""
+        if self.session.profile.readings.by_contact:
+            self._do_first(replace(self.first, zero=not self.first.zero))
+
+    def _do_first(self, first: First) -> None:
+        self.first = first
+        listed = self.query_one(Checklist)
+        listed.reword(self._items())
+        self._say(listed.complete)
 
     def action_back(self) -> None:
         """To the recipes."""
@@ -170,13 +183,13 @@ class BeforeScreen(Room):
         if self._opening:
             return
         self._opening = True
-        self.begin(*self._batch_and_number(), self.dry_pass)
+        self.begin(*self._batch_and_number(), self.first)
 
     @work(thread=True, exclusive=True, group="begin")
-    def begin(self, batch: str, of: int, dry_pass: bool) -> None:
+    def begin(self, batch: str, of: int, first: First) -> None:
         """Open the machine."""
         try:
-            run = self.session.begin(self.preview, batch, of, dry_pass=dry_pass)
+            run = self.session.begin(self.preview, batch, of, first=first)
         except WindctlError as error:
             self.app.call_from_thread(self.failed, str(error))
         else:

@@ -56,7 +56,8 @@ _OF_A_BOARD = ("hold", "go", "clear", "slower", "faster")  # have no meaning whe
 
 def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
     """What keys come and go with."""
-    return (snapshot.can_take_back, snapshot.asks == "look")
+    zero = snapshot.zero is not None and not snapshot.zero.wanted
+    return (snapshot.can_take_back, snapshot.asks == "look", snapshot.asks == "leads", zero)
 
 
 class WindScreen(WindQuestions):
@@ -77,6 +78,8 @@ class WindScreen(WindQuestions):
         key("wind.count"),
         key("wind.read", show=False),
         key("wind.undo", show=False),
+        key("wind.zero"),
+        key("wind.together"),
         key("wind.seen"),
         key("wind.end"),
         key("wind.leave"),
@@ -143,6 +146,8 @@ class WindScreen(WindQuestions):
             self.consider_reading(before, snapshot)
         if before is not None and _keys_of(before) != _keys_of(snapshot):
             self.refresh_bindings()
+        if self.coil.leads is not None:
+            self.coil.leads.mind(snapshot.zero)
         hand = self.coil.hand
         agreed = (snapshot.hands or "").startswith(f"unwind {self._to_unwind:g} turns")
         if self._to_unwind and hand is not None and agreed and snapshot.drives_off:
@@ -270,6 +275,11 @@ class WindScreen(WindQuestions):
         running = self.outcome is None
         if action == "seen":
             return running and self.latest is not None and self.latest.asks == "look"
+        if action == "together":
+            return running and self.latest is not None and self.latest.asks == "leads"
+        if action == "zero":
+            zero = None if self.latest is None else self.latest.zero
+            return running and zero is not None and not zero.wanted
         if action == "undo":
             return running and self.latest is not None and self.latest.can_take_back
         if action in _OF_A_BOARD and self.coil.by_eye:

@@ -7,7 +7,20 @@ from typing import TYPE_CHECKING
 from textual.events import Key
 
 from windctl.desk.words import request_of
-from windctl.run.requests import Clear, End, Faster, Go, Note, Seen, Slower, TakeBack, Unwind
+from windctl.run.requests import (
+    Clear,
+    End,
+    Faster,
+    Go,
+    Note,
+    Seen,
+    Slower,
+    TakeBack,
+    Together,
+    Unwind,
+    ZeroContact,
+)
+from windctl.run.zero_seen import BACK_ON_THE_WIRE
 from windctl.tui.dialogs.confirm import Confirm
 from windctl.tui.dialogs.counter import CounterPrompt
 from windctl.tui.dialogs.read import ReadingPrompt
@@ -49,6 +62,8 @@ class WindQuestions(Room):
             words = f"The guide goes to its far turn-round and back; nothing turns.\n\n{CAUTIONS}"
         elif snapshot.turns > 0:
             words = f"{snapshot.says}.\n\n{words}"
+        if snapshot.zero is not None and snapshot.zero.contact_off:
+            words = f"First {BACK_ON_THE_WIRE}.\n\n{words}"
         self.app.push_screen(Word("Go?", words, "go"), self._went)
 
     def _went(self, line: str | None) -> None:
@@ -102,6 +117,10 @@ class WindQuestions(Room):
         request = None if line is None else request_of(line)
         if isinstance(request, End):
             self.action_end()
+        elif isinstance(request, ZeroContact):
+            self.action_zero()
+        elif isinstance(request, Together):
+            self.action_together()
         elif request is not None:
             if isinstance(request, Unwind):
                 self._to_unwind = request.turns or 0.0
@@ -114,6 +133,16 @@ class WindQuestions(Room):
     def _noted(self, line: str | None) -> None:
         if line is not None:
             self.coil.winding.request(Note("operator", line))
+
+    def action_zero(self) -> None:
+        """Leads and contact are to be read by themselves, before the first turn."""
+        self.coil.winding.request(ZeroContact("operator", simulated_hand=self.coil.leads is not None))
+
+    def action_together(self) -> None:
+        """The contact's leads are together; at a simulated machine nobody puts them so but we."""
+        if self.coil.leads is not None and self.coil.winding.look().asks == "leads":
+            self.coil.leads.join()
+        self.coil.winding.request(Together("operator"))
 
     def action_seen(self) -> None:
         """The guide stands right where it is."""

@@ -37,6 +37,13 @@ class Checklist(OptionList):
         """True when every line is confirmed."""
         return all(self.done)
 
+    def reword(self, items: Sequence[str]) -> None:
+        """As many lines as before, some in other words."""
+        before, self.items = self.items, tuple(items)
+        for at, (was, is_) in enumerate(zip(before, self.items, strict=True)):
+            if was != is_:
+                self.replace_option_prompt_at_index(at, self._line(at))
+
     def action_select(self) -> None:
         """Confirm, and go on: at once, so that a quick second key means the second line."""
         at = self.highlighted
