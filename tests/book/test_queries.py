@@ -8,6 +8,7 @@ import pytest
 
 from tests.book.samples import coil_id, finished, packed, seal, started, wind, wound
 from windctl.book.book import Book
+from windctl.book.queries import CoilLine
 from windctl.errors import BookError
 
 
@@ -47,6 +48,14 @@ def test_a_page_at_a_time(lot: Book) -> None:
     assert numbers(lot.list(limit=9, offset=5)) == ["b1 1"]
     assert numbers(lot.list(offset=4)) == ["b1 2", "b1 1"]
     assert lot.list(limit=2, offset=6) == ()
+
+
+def test_lines_are_the_list_of_which_less_is_read(lot: Book) -> None:
+    for asked in ({}, {"query": "bench:b1", "sort": "coil"}, {"limit": 2}, {"outcome": "open"}):
+        heads, lines = lot.list(**asked), lot.lines(**asked)  # type: ignore[arg-type]  # one of these four
+        assert [{name: getattr(head, name) for name in CoilLine._fields} for head in heads] == [
+            line._asdict() for line in lines
+        ]
     assert lot.count() == 6
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import errno
 import io
+import json
 import math
 
 import pytest
@@ -61,6 +62,29 @@ def test_json_is_one_object_with_its_format_and_refuses_what_json_cannot_say(
     assert capsys.readouterr().out == '{\n  "format": 1,\n  "turns": 3\n}\n'
     with pytest.raises(ValueError, match="JSON"):
         present.result_json({"ohm": math.nan})
+
+
+@pytest.mark.parametrize("n", [0, 1, 2, 1203])
+def test_a_long_list_is_one_json_object_too(capsys: pytest.CaptureFixture[str], n: int) -> None:
+    rows = [{"coil": f"b1-2026-{k:04d}", "recipe": "größer", "turns": None} for k in range(n)]
+    present.result_json_rows("coils", iter(rows))
+    text = capsys.readouterr().out
+    assert json.loads(text) == {"format": 1, "coils": rows}
+    assert text.count("\n") == n + 2
+    with pytest.raises(ValueError, match="not JSON compliant"):
+        present.result_json_rows("coils", [{"ohm": math.nan}])
+
+
+@pytest.mark.parametrize("n", [0, 1, 1203])
+def test_columns_of_a_table_stand_under_each_other(capsys: pytest.CaptureFixture[str], n: int) -> None:
+    rows = [["b" * (1 + k % 3), str(10**k) if k < 5 else "", "within"] for k in range(n)]
+    present.table(["coil", "turns", "verdict"], rows, right=" r")
+    written = capsys.readouterr().out.splitlines()
+    assert len(written) == n + 1
+    wide = 5
+    assert all(line[:4].rstrip() == row[0] for line, row in zip(written[1:], rows, strict=True))
+    assert all(line[6 : 6 + wide].strip() == row[1] for line, row in zip(written[1:], rows, strict=True))
+    assert all(line[6 + wide :] == "  within" for line in written[1:])
 
 
 def test_signs_are_spelt_out_where_the_stream_lacks_them() -> None:

@@ -21,11 +21,13 @@ from windctl.book.lessons import CoilLesson, every, heard, kinds_of
 from windctl.book.pairs import make_pairs, part_pair, stock_facts
 from windctl.book.queries import (
     HEAD_COLUMNS,
+    CoilLine,
     Which,
     counted,
     curve_in,
     found,
     head_of,
+    lines,
     listed,
     record_entries,
     stored_rows,
@@ -139,6 +141,7 @@ class Book:
         batch: str | None = None,
         outcome: str | None = None,
         verdict: str | None = None,
+        spool: str | None = None,
         limit: int | None = None,
         offset: int = 0,
     ) -> tuple[CoilHead, ...]:
@@ -147,8 +150,22 @@ class Book:
         Sorted by `sort`, fields with commas between, else as the query says, else the one started last first
         (by the text of its time); a page with `limit` and `offset`. Raises QueryError.
         """
-        which = Which(parse(query), bench, recipe, batch, outcome, verdict)
+        which = Which(parse(query), bench, recipe, batch, outcome, verdict, spool=spool)
         return listed(self._store, which, limit, offset, sorted_by(sort))
+
+    def lines(
+        self,
+        query: str = "",
+        *,
+        sort: str = "",
+        recipe: str | None = None,
+        batch: str | None = None,
+        outcome: str | None = None,
+        limit: int | None = None,
+    ) -> tuple[CoilLine, ...]:
+        """The same coils as `list` has, of each what a list shows: quick where there are very many."""
+        which = Which(parse(query), recipe=recipe, batch=batch, outcome=outcome)
+        return lines(self._store, which, limit, sorted_by(sort))
 
     def count(
         self,

@@ -27,7 +27,7 @@ from windctl.record.entries import Entry
 from windctl.record.events import BoardGreeted, CoilStarted
 from windctl.record.lesson import simulated
 
-RECENT = 400  # of all coils of a kind, real or simulated, those begun last
+RECENT = 200  # of all coils of a kind, real or simulated, those begun last
 ABOUT = 100  # further ones for each unknown that is asked about
 
 TOLD, UNTOLD, WITHDRAWN, SILENT, NOTHING = "told", "untold", "withdrawn", "silent", "nothing"

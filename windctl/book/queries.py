@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, fields
-from typing import Any
+from typing import Any, NamedTuple
 
 import sqlalchemy as sa
 
@@ -37,12 +37,13 @@ class Which:
     outcome: str | None = None
     verdict: str | None = None
     sealed: bool | None = None
+    spool: str | None = None
 
     def condition(self) -> sa.ColumnElement[bool]:
         """The same in SQL."""
         parts: list[sa.ColumnElement[bool]] = [
             coils.c[name] == value
-            for name in ("bench", "recipe", "batch", "outcome", "verdict")
+            for name in ("bench", "recipe", "batch", "outcome", "verdict", "spool")
             if (value := getattr(self, name)) is not None
         ]
         if self.sealed is not None:
@@ -60,25 +61,64 @@ class StoredRow:
 
 
 def head_of(row: sa.Row[Any, *tuple[Any, ...]]) -> CoilHead:
-    """A coil's row."""
-    return CoilHead(**{column.name: row._mapping[column] for column in HEAD_COLUMNS})
+    """A coil's row; it begins with `HEAD_COLUMNS`."""
+    return CoilHead(*row[: len(HEAD_COLUMNS)])
+
+
+class CoilLine(NamedTuple):
+    """What a list shows of one coil; the fields are those of `CoilHead`."""
+
+    number: str
+    id: str
+    recipe: str
+    started: str
+    outcome: str
+    turns: float | None
+    dcr_20c_ohm: float | None
+    dcr_u95_ohm: float | None
+    verdict: str
+    batch: str
+    spool: str
+
+
+LINE_COLUMNS = tuple(coils.c[name] for name in CoilLine._fields)
 
 
 def listed(
     store: Store, which: Which, limit: int | None, offset: int, orders: Sequence[Order] = ()
 ) -> tuple[CoilHead, ...]:
     """Coils, sorted by `orders` and those of the query, else the one started last first."""
+    query = _list(HEAD_COLUMNS, which, limit, offset, orders)
+    with store.reading() as connection:
+        return tuple([head_of(row) for row in connection.execute(query).all()])
+
+
+def lines(
+    store: Store, which: Which, limit: int | None, orders: Sequence[Order] = ()
+) -> tuple[CoilLine, ...]:
+    """The same, of each only what a list shows: for very many coils it takes a third of the time."""
+    query = _list(LINE_COLUMNS, which, limit, 0, orders)
+    with store.reading() as connection:
+        return tuple(map(CoilLine._make, connection.execute(query).all()))
+
+
+def _list(
+    columns: Sequence[sa.Column[Any]],
+    which: Which,
+    limit: int | None,
+    offset: int,
+    orders: Sequence[Order],
+) -> sa.Select[Any]:
     sorting = order((*orders, *which.query.orders))
-    query = sa.select(*HEAD_COLUMNS).where(which.condition()).order_by(*sorting)
+    query = sa.select(*columns).where(which.condition()).order_by(*sorting)
     if limit is not None:  # the page is found in an index alone, and only its rows are read
         page = sa.select(coils.c.number).where(which.condition()).order_by(*sorting)
         numbers = page.limit(limit).offset(offset or None).subquery()
-        query = sa.select(*HEAD_COLUMNS).where(coils.c.number.in_(sa.select(numbers.c.number)))
+        query = sa.select(*columns).where(coils.c.number.in_(sa.select(numbers.c.number)))
         query = query.order_by(*sorting)
     elif offset:
         query = query.offset(offset)
-    with store.reading() as connection:
-        return tuple(head_of(row) for row in connection.execute(query))
+    return query
 
 
 def counted(store: Store, which: Which) -> int:

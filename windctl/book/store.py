@@ -14,6 +14,7 @@ from __future__ import annotations
 import sqlite3
 from collections.abc import Iterator
 from contextlib import closing, contextmanager
+from functools import partial
 from pathlib import Path
 from typing import cast
 
@@ -44,7 +45,8 @@ class Store:
                 isolation_level=None,  # the driver begins nothing by itself
                 check_same_thread=False,  # the pool lends a connection to one thread at a time
             )
-            connection.text_factory = _text
+            # A damaged text still reads, so that what is wrong with it can be said.
+            connection.text_factory = partial(str, encoding="utf-8", errors="surrogateescape")
             return connection
 
         self._engine = sa.create_engine("sqlite+pysqlite://", creator=connect, poolclass=sa.pool.QueuePool)
@@ -73,11 +75,6 @@ class Store:
     def close(self) -> None:
         """Close what is open; a later use opens anew."""
         self._engine.dispose()
-
-
-def _text(stored: bytes) -> str:
-    """A damaged text still reads, so that what is wrong with it can be said."""
-    return stored.decode("utf-8", "surrogateescape")
 
 
 def _prepare(connection: sqlite3.Connection, _record: object) -> None:

@@ -67,9 +67,7 @@ def chart(
         raise UsageError(f"--low {low:g} is not below --high {high:g}")
     try:
         with book_to_read(shared) as book:
-            heads = book.list(asked, batch=shared.batch)
-            if shared.spool is not None:
-                heads = tuple(head for head in heads if head.spool == shared.spool)
+            heads = book.list(asked, batch=shared.batch, spool=shared.spool)
             gathered = gather(book, heads)
     except QueryError as error:
         raise UsageError(f"{error}\n  {error.text}\n  {' ' * error.at}^") from error

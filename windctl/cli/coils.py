@@ -26,6 +26,7 @@ from windctl.errors import QueryError, UsageError
 
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
+    from windctl.book.queries import CoilLine
     from windctl.record.addenda import Addendum, CoilImported
     from windctl.record.events import Event
 
@@ -76,14 +77,14 @@ def list_(
             heads = (
                 ()
                 if book is None
-                else book.list(
+                else book.lines(
                     asked, sort=sort, recipe=recipe, batch=shared.batch, outcome=outcome, limit=limit
                 )
             )
     except QueryError as error:
         raise UsageError(f"{error}\n  {error.text}\n  {' ' * error.at}^") from error
     if shared.json:
-        present.result_json({"coils": [_row(head) for head in heads]})
+        present.result_json_rows("coils", map(_row, heads))
         return
     if not heads:
         present.message("no coils")
@@ -106,7 +107,7 @@ def list_(
     )
 
 
-def _row(head: CoilHead) -> dict[str, object]:
+def _row(head: CoilLine) -> dict[str, object]:
     return {
         "coil": head.number,
         "id": head.id,
@@ -121,7 +122,7 @@ def _row(head: CoilHead) -> dict[str, object]:
     }
 
 
-def _resistance(head: CoilHead) -> str:
+def _resistance(head: CoilHead | CoilLine) -> str:
     if head.dcr_20c_ohm is None:
         return ""
     return present.ohm(head.dcr_20c_ohm, head.dcr_u95_ohm or 0.0)

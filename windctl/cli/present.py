@@ -9,7 +9,7 @@ import errno
 import json
 import os
 import sys
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from contextlib import suppress
 from typing import Any, TextIO
 
@@ -26,6 +26,7 @@ __all__ = [
     "pairs",
     "result",
     "result_json",
+    "result_json_rows",
     "short_digest",
     "table",
     "takes_unicode",
@@ -33,6 +34,8 @@ __all__ = [
     "with_uncertainty",
     "writable",
 ]
+
+_AT_ONCE = 500  # lines of a long answer that are written at once
 
 _SPELT_OUT = str.maketrans({"±": "+-", "°": "deg ", "·": "-"})
 
@@ -54,10 +57,24 @@ def result(text: str = "") -> None:
 
 def result_json(answer: dict[str, Any]) -> None:
     """The answer as one JSON object with its `format`; refuses NaN and infinities, which are not JSON."""
-    text = json.dumps(
-        {"format": 1, **answer}, ensure_ascii=not takes_unicode(sys.stdout), allow_nan=False, indent=2
-    )
-    _echo(text, sys.stdout)
+    _echo(_json({"format": 1, **answer}, indent=2), sys.stdout)
+
+
+def result_json_rows(name: str, rows: Iterable[dict[str, Any]]) -> None:
+    """The same where the answer is one list that may be long, under `name`: a row on each line, written as
+    they come."""
+    lines, before = [f'{{"format": 1, {_json(name)}: ['], "\n"
+    for row in rows:
+        lines.append(f"{before}  {_json(row)}")
+        before = ",\n"
+        if len(lines) >= _AT_ONCE:
+            _echo("".join(lines), sys.stdout, nl=False)
+            lines = []
+    _echo("".join(lines) + "\n]}", sys.stdout)
+
+
+def _json(answer: Any, indent: int | None = None) -> str:
+    return json.dumps(answer, ensure_ascii=not takes_unicode(sys.stdout), allow_nan=False, indent=indent)
 
 
 def message(text: str) -> None:
@@ -66,9 +83,9 @@ def message(text: str) -> None:
         _echo(text, sys.stderr)
 
 
-def _echo(text: str, stream: TextIO) -> None:
+def _echo(text: str, stream: TextIO, *, nl: bool = True) -> None:
     try:
-        click.echo(writable(text, stream), file=stream)
+        click.echo(writable(text, stream), file=stream, nl=nl)
     except OSError as error:
         if error.errno in (errno.EIO, errno.EPIPE):  # the terminal was closed, or the reader has gone
             forget(stream)
@@ -93,12 +110,9 @@ def pairs(rows: Sequence[tuple[str, str]]) -> None:
 
 def table(header: Sequence[str], rows: Sequence[Sequence[str]], right: str = "") -> None:
     """Columns of the answer; those whose place in `right` holds "r" are set to the right."""
-    cells = [list(header), *[list(row) for row in rows]]
-    widths = [max(len(row[column]) for row in cells) for column in range(len(header))]
-    for row in cells:
-        result(
-            "  ".join(
-                cell.rjust(width) if right[column : column + 1] == "r" else cell.ljust(width)
-                for column, (cell, width) in enumerate(zip(row, widths, strict=True))
-            ).rstrip()
-        )
+    cells = [header, *rows]
+    widths = [max(map(len, column)) for column in zip(*cells, strict=True)]
+    aligned = "".join(">" if right[at : at + 1] == "r" else "<" for at in range(len(header)))
+    form = "  ".join(f"{{:{side}{width}}}" for side, width in zip(aligned, widths, strict=True))
+    for at in range(0, len(cells), _AT_ONCE):
+        result("\n".join([form.format(*row).rstrip() for row in cells[at : at + _AT_ONCE]]))

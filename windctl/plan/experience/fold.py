@@ -15,6 +15,7 @@ from windctl.plan.experience.lesson import Lesson, Measured, Resistance
 from windctl.plan.experience.spool import PieceMeasured, Spool
 from windctl.plan.experience.unknowns import (
     OWN,
+    Expected,
     along_the_spool,
     expected,
     roles,
@@ -116,13 +117,15 @@ def _after_coil(before: Experience, lesson: Lesson) -> Experience:
     source = lesson.source
     wound = {**before.wound, source: before.wound.get(source, 0.0) + lesson.metres}
     there = replace(there, wound=wound)
-    unfit = _unfit(there.belief, lesson)
-    there = _heard(before, there, lesson)
+    ohms = [_foreseen(there.belief, lesson, one) for one in lesson.measured if isinstance(one, Resistance)]
+    unfit = _unfit(lesson, ohms)
+    there = _heard(before, there, lesson, ohms)
     if unfit is not None:
         return replace(there, belief=there.belief.without(OWN), unfit=(*there.unfit, unfit))
     belief = there.belief
     for measured in lesson.measured:
-        belief = _told(belief, lesson, measured)
+        fresh = belief is there.belief and isinstance(measured, Resistance)  # then it was worked out already
+        belief = (ohms[0] if fresh else _foreseen(belief, lesson, measured)).told(belief)
     coils = dict(there.coils)
     if lesson.measured:
         for name in _about(lesson):
@@ -130,30 +133,40 @@ def _after_coil(before: Experience, lesson: Lesson) -> Experience:
     return replace(there, belief=belief.without(OWN), coils=coils)
 
 
-def _told(belief: Gaussian, lesson: Lesson, measured: Measured) -> Gaussian:
+@dataclass(frozen=True, slots=True)
+class _Foreseen:
+    """What was expected of a measurement, and the covariance of every unknown with it."""
+
+    seen: Expected
+    spread: Sequence[float]
+    variance: float  # with that of the measurement's own error
+
+    def told(self, belief: Gaussian) -> Gaussian:
+        """After it came out as it did. `belief`: the one that expected it."""
+        return belief.told(self.seen.row, self.seen.off, self.seen.variance, self.spread)
+
+
+def _foreseen(belief: Gaussian, lesson: Lesson, measured: Measured) -> _Foreseen:
     seen = expected(belief, lesson, measured)
-    return belief.told(seen.row, seen.off, seen.variance)
+    spread = belief.spread(seen.row)
+    return _Foreseen(seen, spread, belief.weighed(seen.row, spread) + seen.variance)
 
 
-def _unfit(belief: Gaussian, lesson: Lesson) -> Unfit | None:
-    for measured in lesson.measured:
-        if isinstance(measured, Resistance):
-            seen = expected(belief, lesson, measured)
-            sd = sqrt(belief.covariance(seen.row, seen.row) + seen.variance)
-            if abs(seen.off) > GATE * sd:
-                return Unfit(lesson.coil, lesson.spool, seen.off, sd)
+def _unfit(lesson: Lesson, ohms: Sequence[_Foreseen]) -> Unfit | None:
+    for one in ohms:
+        sd = sqrt(one.variance)
+        if abs(one.seen.off) > GATE * sd:
+            return Unfit(lesson.coil, lesson.spool, one.seen.off, sd)
     return None
 
 
-def _heard(before: Experience, there: Experience, lesson: Lesson) -> Experience:
+def _heard(before: Experience, there: Experience, lesson: Lesson, ohms: Sequence[_Foreseen]) -> Experience:
     """Whether a coil differs from those before as was stated; a first coil, and one far off, says nothing."""
     lay = lesson.basis.lay
     taught = min(before.coils.get(name, 0) for name in (("lay", lay), ("level", lesson.source)))
-    ohm = next((each for each in lesson.measured if isinstance(each, Resistance)), None)
-    if taught == 0 or ohm is None:
+    if taught == 0 or not ohms:
         return there
-    seen = expected(there.belief, lesson, ohm)
-    variance = there.belief.covariance(seen.row, seen.row) + seen.variance
+    seen, variance = ohms[0].seen, ohms[0].variance
     unrest = before.unrest.get(lay, Unrest())
     own = {name: seen.row[name] for name in OWN if name in seen.row}
     stated = variance - (1.0 - 1.0 / unrest.factor) * there.belief.covariance(own, own)

@@ -79,8 +79,16 @@ def roles(basis: Basis, spool: str, bench: str) -> Roles:
 
 def with_spool(belief: Gaussian, spool: str, ohm_per_m_rel: float, overall_rel: float) -> Gaussian:
     """The belief with the unknowns of one spool's wire."""
-    belief = belief.having(("level", spool), ohm_per_m_rel).having(("slope", spool), SLOPE_PER_KM)
-    return belief.having(("area", spool), 2.0 * overall_rel).having(("metal", spool), METAL_REL)
+    return belief.having_all(_of_spool(spool, ohm_per_m_rel, overall_rel))
+
+
+def _of_spool(spool: str, ohm_per_m_rel: float, overall_rel: float) -> list[tuple[Name, float]]:
+    return [
+        (("level", spool), ohm_per_m_rel),
+        (("slope", spool), SLOPE_PER_KM),
+        (("area", spool), 2.0 * overall_rel),
+        (("metal", spool), METAL_REL),
+    ]
 
 
 def with_unknowns(
@@ -91,15 +99,21 @@ def with_unknowns(
     `unrest`: by how much the variance from coil to coil is more than stated.
     """
     shared = STYLE_SHARE if basis.style else 0.0
-    belief = with_spool(belief, spool, basis.ohm_per_m_rel, basis.overall_rel)
-    belief = belief.having(("core", basis.bobbin), basis.perimeter_rel)
-    if basis.style:
-        belief = belief.having(("style", basis.style), sqrt(shared) * basis.growth_rel)
-    belief = belief.having(("lay", basis.lay), sqrt(1.0 - shared) * basis.growth_rel)
-    belief = belief.having(("jaws", basis.lay), JAWS_REL).having(("meter", bench), meter_rel)
     more = sqrt(unrest)
-    belief = belief.having(COIL, more * COIL_REL).having(MOULD, more * basis.mould_rel)
-    return belief.having(BED, more * basis.bed_rel)
+    style = [(("style", basis.style), sqrt(shared) * basis.growth_rel)] if basis.style else []
+    return belief.having_all(
+        [
+            *_of_spool(spool, basis.ohm_per_m_rel, basis.overall_rel),
+            (("core", basis.bobbin), basis.perimeter_rel),
+            *style,
+            (("lay", basis.lay), sqrt(1.0 - shared) * basis.growth_rel),
+            (("jaws", basis.lay), JAWS_REL),
+            (("meter", bench), meter_rel),
+            (COIL, more * COIL_REL),
+            (MOULD, more * basis.mould_rel),
+            (BED, more * basis.bed_rel),
+        ]
+    )
 
 
 def along_the_spool(belief: Gaussian, spool: str, metres: float) -> Gaussian:
