@@ -10,6 +10,8 @@ alone can starve: one bad reading let in while little is known shuts out every g
   agreed for a while, from the present belief with its resistance opened up. Readings that agree with the
   rival feed it. When enough have in a row, it takes over.
 
+Readings that agree with each other and not with the plan leave only what they say (`contradicted.py`).
+
 Open circuits and readings near zero feed nothing; they are counted for the alarm. An estimate has a
 constant size.
 """
@@ -31,6 +33,7 @@ from windctl.forecast.belief import (
     told,
     walk_of,
 )
+from windctl.forecast.contradicted import contradicted
 from windctl.forecast.cooling import cooling_variance, share_left
 from windctl.forecast.hindsight import Hindsight, looked_back
 from windctl.forecast.noise import Unrest, near, own_variance
@@ -117,7 +120,7 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
     unsure = estimate.trust == 0 or seen.variance > _UNSURE * _UNSURE * stated
     trust = 1 if unsure else estimate.trust + 1
     anchor = estimate.belief if unsure else estimate.anchor
-    return _with(
+    after = _with(
         estimate,
         unrest.heard(surprise, seen.variance + stated, close),
         told(belief, seen, reading.ohm, noise),
@@ -126,7 +129,21 @@ def update(estimate: Estimate, reading: Reading) -> tuple[Estimate, bool]:
         used=1,
         seconds=reading.seconds,
         share=share,
-    ), True
+    )
+    if reading.resting or after.hindsight.due != estimate.hindsight.due:  # often enough, and cheap
+        after = _held_to_the_readings(after)
+    return after, True
+
+
+def _held_to_the_readings(estimate: Estimate) -> Estimate:
+    """The estimate, without its plan where that and the readings cannot both be right."""
+    instead = contradicted(estimate.belief, estimate.reference, estimate.walk)
+    if instead is None:
+        return estimate
+    hindsight = estimate.hindsight.begun_anew(estimate.used)
+    return replace(
+        estimate, belief=replace(instead, doubt=estimate.belief.doubt), anchor=None, hindsight=hindsight
+    )
 
 
 def _share_left(estimate: Estimate, reading: Reading) -> float:
