@@ -16,6 +16,7 @@ from windctl.book.query import parse
 from windctl.cli.main import run
 from windctl.desk.asked import Shared
 from windctl.errors import QueryError
+from windctl.record.addenda import CoilNoted, PairMade, PairParted
 from windctl.tui import coil_view, coils_view
 from windctl.tui.app import WindctlApp
 from windctl.tui.dialogs.choose import Choose
@@ -95,6 +96,19 @@ def test_the_coils_beside_are_named_with_what_they_differ_by() -> None:
         "B b1-2026-0148 +0.40 %, +6 turns",
         "C b1-2026-0149 +0.00 %, same program",
     ]
+
+
+def test_a_coil_says_what_it_goes_with_how_it_is_joined_and_what_it_was_parted_from() -> None:
+    joined = "join the finish of b1-2026-0147 to the start of b1-2026-0148"
+    made = PairMade("2026-03-02T09:00:00", "demo", "1", "b1-2026-0148", joined, -51.2, -80.0, -45.4)
+    parted = PairParted("2026-03-05T10:00:00", "demo", "1", "b1-2026-0148", "sold alone")
+    noted = CoilNoted("2026-03-06T10:00:00", "demo", "wax again")
+    assert coil_view.pairing([noted]) == ""
+    words = f"goes with b1-2026-0148: {joined}; hum left -51 dB (-80 to -45)"
+    assert coil_view.pairing([made, noted]) == words
+    apart = "goes with no other: parted from b1-2026-0148 on 2026-03-05, sold alone"
+    assert coil_view.pairing([made, parted, noted]) == apart
+    assert coil_view.pairing([made, parted, made]) == words
 
 
 def test_a_page_as_lines_is_a_table_of_plain_values() -> None:

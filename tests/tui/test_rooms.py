@@ -64,7 +64,12 @@ class Shop(StillSession):
             number, head.recipe, "virtual", "dcr_20c_ohm", 5900.0, 1.0, 8700.0, 8024.0, 5900.0, 90.0, 0.0
         )
         lines = (("0:00", f"{number} begins: {head.recipe}"), ("8:02", "note: [b]smooth[/b]"))
-        return Told(head, card, curve(0.735 if number == HEAD.number else 0.739), lines, "virtual")
+        joined = (
+            f"join the finish of {number} to the start of b1-2026-0150; the pair's ends are the start of "
+        )
+        joined += f"{number} and the finish of b1-2026-0150"
+        pair = f"goes with b1-2026-0150: {joined}; hum left -51 dB (-80 to -45)"
+        return Told(head, card, curve(0.735 if number == HEAD.number else 0.739), lines, "virtual", pair)
 
     def differing(self, numbers: Sequence[str]) -> tuple[Differing, ...]:
         return (Differing("recipe.lay.pitch_mm", (0.22, 0.23)), Differing("spool", ("s1", None)))

@@ -15,11 +15,13 @@ from windctl.tui.view import target_text
 if TYPE_CHECKING:
     from windctl.book.heads import CoilHead
     from windctl.book.verify import VerifyReport
+    from windctl.record.addenda import Addendum
     from windctl.shop.compare import Differing
     from windctl.tui.records import Told
 
 
 _INDENT = 9  # cells for the time before a line
+_WIDE = 98  # of plain text
 
 
 def figures(told: Told) -> tuple[tuple[str, str], ...]:
@@ -70,6 +72,22 @@ def otherwise(differing: Sequence[Differing]) -> list[tuple[str, str]]:
     return lines
 
 
+def pairing(said: Sequence[Addendum]) -> str:
+    """What a coil goes with and how their leads are joined, or from what it was parted last; empty where it
+    never was of a pair. `said`: all that was said of it."""
+    from windctl.record.addenda import PairMade, PairParted
+
+    last = next((fact for fact in reversed(said) if isinstance(fact, PairMade | PairParted)), None)
+    match last:
+        case PairMade():
+            left = f"{last.left_db:.0f} dB ({last.left_low_db:.0f} to {last.left_high_db:.0f})"
+            return f"goes with {last.partner_number}: {last.joined}; hum left {left}"
+        case PairParted():
+            when = last.wall_time[:10]
+            return f"goes with no other: parted from {last.partner_number} on {when}, {last.reason}"
+    return ""
+
+
 def verified(report: VerifyReport) -> str:
     """A check in words."""
     if not report.broken:
@@ -91,6 +109,7 @@ def as_text(told: Told) -> str:
     rows = figures(told)
     width = max(len(name) for name, _ in rows)
     lines = [f"{name:<{width}}  {value}" for name, value in rows]
+    lines += ["", *wrap(told.pair, _WIDE)] if told.pair else []
     return "\n".join([*lines, "", *(f"{since:>8}  {what}" for since, what in told.lines)]) + "\n"
 
 

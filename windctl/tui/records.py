@@ -36,6 +36,7 @@ class Told:
     curve: tuple[Point, ...]
     lines: tuple[tuple[str, str], ...]  # when, what
     machine: str
+    pair: str = ""  # what it goes with, or was parted from
 
 
 class Records(Sitting):
@@ -128,6 +129,7 @@ def _told(
 ) -> Told:
     from windctl.paper.told import said_since
     from windctl.record.events import CoilStarted
+    from windctl.tui.coil_view import pairing
     from windctl.tui.telling import tell, when
 
     started = events[0]
@@ -161,7 +163,7 @@ def _told(
         ("since", f"{what} ({', '.join(part for part in (who, moment) if part)})")
         for moment, who, what in since
     ]
-    return Told(head, card, tuple(points), tuple(lines), started.machine)
+    return Told(head, card, tuple(points), tuple(lines), started.machine, pairing(said))
 
 
 _DENSE = ("status_heard", "reading_taken")

@@ -67,6 +67,7 @@ class CoilScreen(Between):
                 yield Curve(id="coil-curve")
                 yield Curve(closer=True, id="coil-closer")
                 yield Against(id="coil-against")
+        yield Static("", id="coil-pair", markup=False)
         yield Static("", id="coil-beside", markup=False)
         yield Static("", id="coil-answer", markup=False)
         yield RichLog(id="coil-events", min_width=20, markup=False, highlight=False, auto_scroll=False)
@@ -91,6 +92,9 @@ class CoilScreen(Between):
         """Place it."""
         self.told = told
         self.query_one("#coil-figures", Figures).show(coil_view.figures(told))
+        pair = self.query_one("#coil-pair", Static)
+        pair.update(told.pair)
+        pair.set_class(bool(told.pair), "-there")
         for curve in self.query(Curve):
             curve.show(told.card.scale, told.curve, [])
         self.query_one(RichLog).focus()
