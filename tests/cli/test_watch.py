@@ -152,6 +152,35 @@ def test_what_was_typed_before_the_question_starts_nothing(keyboard: Keyboard) -
     assert run.requests == []
 
 
+@pytest.mark.parametrize("line", ["", "hold", "stop", "STOP!!", "end", "off", "splice 900", "noet kinked"])
+def test_any_line_holds_a_turning_spindle(keyboard: Keyboard, line: str) -> None:
+    """Whoever types in a hurry means stop, whatever the fingers made of it."""
+    prompt, type_in = keyboard
+
+    def typing(look: int) -> None:
+        if look == 5:
+            type_in(f"{line}\n")
+
+    run, face = Script([TURNING] * 50, typing), Said()
+    watch.stand_by(run, face, prompt)
+    assert run.requests == [Hold("operator", "held at the keyboard")]
+    told = [text for text in face.lines if text.endswith("holding.")]
+    assert len(told) == (line not in ("", "hold"))
+
+
+@pytest.mark.parametrize("line", ["slower", "note kinked", "go", "help"])
+def test_words_for_a_turning_spindle_do_not_hold_it(keyboard: Keyboard, line: str) -> None:
+    prompt, type_in = keyboard
+
+    def typing(look: int) -> None:
+        if look == 5:
+            type_in(f"{line}\n")
+
+    run = Script([TURNING] * 30, typing)
+    watch.stand_by(run, Said(), prompt)
+    assert not any(isinstance(one, Hold | End) for one in run.requests)
+
+
 def test_held_in_mid_coil_the_operator_may_end_it(keyboard: Keyboard) -> None:
     prompt, type_in = keyboard
 

@@ -35,6 +35,11 @@ Hand = Callable[[float], None]  # turns the spindle of a machine simulated here;
 
 NO_POWER = "windctl cannot start, slow or stop this machine: it says where to stop, and you tell the turns."
 
+_WHILE_IT_TURNS = (
+    "Enter holds the spindle, and so does any line but slower, faster and note TEXT; "
+    "Ctrl-C holds it and leaves."
+)
+
 CAUTIONS = """\
 Before anything turns: guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves.
 Wear eye protection: fine wire whips when it breaks. Never touch the work while it turns.
@@ -95,7 +100,7 @@ class Questions:
             self._put_question(snapshot)
         if snapshot.phase == "turning" and not self._told_how_to_hold:
             self._told_how_to_hold = True
-            self._face.say("Enter holds the spindle; slower, faster; Ctrl-C holds it and leaves.")
+            self._face.say(_WHILE_IT_TURNS)
         line = self._prompt.answer()
         if line is not None:
             self._typed(line, snapshot)
@@ -127,14 +132,7 @@ class Questions:
 
     def _typed(self, line: str, snapshot: Snapshot) -> None:
         if self._open is None:
-            wanted = request_of(line)
-            if snapshot.phase == "turning" and (not line or isinstance(wanted, Hold)):
-                self._run.request(Hold(BY, "held at the keyboard"))
-            elif isinstance(wanted, Slower | Faster | Note | TakeBack) or (
-                (isinstance(wanted, Skip) and snapshot.zero is not None and snapshot.zero.wanted)
-                or (snapshot.by_eye and isinstance(wanted, CountIs))
-            ):
-                self._run.request(wanted)
+            self._typed_unasked(line, snapshot)
             return
         if not line:
             return
@@ -155,6 +153,23 @@ class Questions:
             elif isinstance(request, Together) and self._leads is not None and snapshot.asks == "leads":
                 self._leads.join()
             self._run.request(request)
+
+    def _typed_unasked(self, line: str, snapshot: Snapshot) -> None:
+        """While it turns, whatever is not for a turning spindle holds it: `stop` and `end` are typed in a
+        hurry, and a hold harms nothing."""
+        wanted = request_of(line)
+        if isinstance(wanted, Slower | Faster | Note | TakeBack) or (
+            (isinstance(wanted, Skip) and snapshot.zero is not None and snapshot.zero.wanted)
+            or (snapshot.by_eye and isinstance(wanted, CountIs))
+        ):
+            self._run.request(wanted)
+        elif line.lower() == "help":
+            self._face.say(help_text())
+        elif snapshot.phase in ("turning", "stopping") and not isinstance(wanted, Go):
+            self._run.request(Hold(BY, "held at the keyboard"))
+            if line and not isinstance(wanted, Hold):
+                what = "is not understood" if wanted is None else "is for a coil that stands"
+                self._face.say(f"{line!r} {what}: holding.")
 
     def _unwind(self, snapshot: Snapshot) -> None:
         """At a simulated machine nobody turns the spindle back but we, once the run has agreed to it."""

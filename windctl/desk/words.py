@@ -53,7 +53,10 @@ class Word:
 
 WORDS = (
     Word("go", "wind on: powers the drives and starts"),
-    Word("hold", "let the spindle come to rest; Enter alone does the same while it turns"),
+    Word(
+        "hold",
+        "let the spindle come to rest; so does Enter, and any line but slower, faster, note, while it turns",
+    ),
     Word("slower", "turn a tenth of the plan's pace slower, also while it turns; it stays so"),
     Word("faster", "and a tenth faster, at the most as planned"),
     Word("clear", "the cause of the trip is put right; nothing turns by that"),
