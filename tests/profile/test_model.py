@@ -228,3 +228,42 @@ def test_live_readings_need_a_contact_and_checks_do_without() -> None:
     with pytest.raises(ProfileError) as raised:
         parse_profile(by_hand.replace("checks", "live"))
     assert "only a contact follows the wire" in str(raised.value)
+
+
+def test_a_counter_that_is_read_by_eye_goes_with_nothing_that_needs_a_board() -> None:
+    assert not MachineProfile(format=1).by_eye
+    by_eye = parse_profile('format = 1\n[spindle]\ncounter = "read"\nmax_rpm = 900\n')
+    assert by_eye.by_eye
+    assert not by_eye.readings.by_contact
+    text = (
+        'format = 1\npedal = true\n[port]\nurl = "COM3"\n[spindle]\ncounter = "read"\ndrive = "step"\n'
+        'counts_per_turn = 40\nindex = true\n[guide]\nkind = "step"\n[tension]\nsensor = true\n'
+        '[readings]\nmode = "live"\n'
+    )
+    with pytest.raises(ProfileError) as raised:
+        parse_profile(text, "p.toml")
+    needs = 'which needs a board, and spindle.counter is "read"'
+    assert [str(problem) for problem in raised.value.problems] == [
+        f"p.toml:2:9: pedal is true, {needs}: leave it out",
+        f"p.toml:4:7: port.url is 'COM3', {needs}: leave it out",
+        f'p.toml:7:9: spindle.drive is "step", {needs}: say "none"',
+        f"p.toml:8:19: spindle.counts_per_turn is 40, {needs}: leave it out",
+        f"p.toml:9:9: spindle.index is true, {needs}: leave it out",
+        f'p.toml:11:8: guide.kind is "step", {needs}: say "hand"',
+        f"p.toml:13:10: tension.sensor is true, {needs}: leave it out",
+        f'p.toml:15:8: readings.mode is "live", {needs}: say "checks", whose readings are typed, or "none"',
+    ]
+
+
+def test_checks_of_a_coil_that_is_counted_by_eye_are_typed() -> None:
+    text = 'format = 1\n[spindle]\ncounter = "read"\n[readings]\nmode = "checks"\ncontact = false\n'
+    assert parse_profile(text).readings.mode == "checks"
+    with pytest.raises(ProfileError) as raised:
+        parse_profile(text.replace("false", "true"), "p.toml")
+    assert str(raised.value.problems[0]) == (
+        'p.toml:6:11: readings.contact is true, which needs a board, and spindle.counter is "read": '
+        "say false, and type what the meter shows"
+    )
+    with pytest.raises(ProfileError) as raised:
+        parse_profile('format = 1\n[port]\nvendor = 6790\nproduct = 29987\n[spindle]\ncounter = "read"\n')
+    assert "port.vendor is 6790, which needs a board" in str(raised.value)

@@ -63,6 +63,7 @@ def test_the_folder_holds_what_a_shop_starts_with() -> None:
         "guided-checks.toml",
         "hand-guided.toml",
         "counter-only.toml",
+        "counter-read.toml",
     }
 
 

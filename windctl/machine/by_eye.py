@@ -13,6 +13,7 @@ from collections.abc import Callable
 from windctl.errors import LinkLost
 from windctl.machine.twin.board import Board
 from windctl.machine.twin.signals import Inputs, Outputs
+from windctl.protocol.rules import NO_BOARD_QUEUE
 
 _MOST_OWED = 1000  # ticks: after a longer pause of this process its time goes on from there
 
@@ -28,7 +29,7 @@ class ByEyePort:
     def __init__(
         self, clock: Callable[[], float] = time.monotonic, sleep: Callable[[float], None] = time.sleep
     ) -> None:
-        self._board = Board(capabilities=0, queue=1)
+        self._board = Board(capabilities=0, queue=NO_BOARD_QUEUE)
         self._inputs, self._outputs = Inputs(), Outputs()
         self._clock, self._sleep = clock, sleep
         self._ticked_at = clock()

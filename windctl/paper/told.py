@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 from windctl.numbers import duration, grouped, ohm, with_uncertainty
 from windctl.protocol.messages import Cause, Refusal, Trip
+from windctl.protocol.rules import NO_BOARD_QUEUE
 from windctl.record import events as facts
 from windctl.record.addenda import (
     Addendum,
@@ -77,6 +78,8 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             return f"Begun by {event.operator} on {event.machine}, {_moment(event.wall_time)}."
         case facts.Resumed():
             return f"Taken up again by {event.operator}, {_moment(event.wall_time)}."
+        case facts.BoardGreeted() if event.identity.queue == NO_BOARD_QUEUE:
+            return None
         case facts.BoardGreeted():
             return f"The machine answered, standing at turn {turn(event.identity.count)}."
         case facts.GoGiven():

@@ -32,6 +32,7 @@ BEAT_S: Final = 0.5  # the board stops by itself after 2 s without
 MISMATCH_S: Final = 1.0  # the board's sum over the program may be late, but not for so long
 
 NO_STOP_POINT: Final = 0xFFFFFFFF
+NO_BOARD_QUEUE: Final = 1  # segments of the twin that stands where there is no board; every board has more
 
 # Greet's sequence number is so far from the last one used that nothing still on its way can be taken for new.
 SEQUENCE_LEAP: Final = 101

@@ -32,6 +32,8 @@ def ending(state: State, at_ms: int) -> tuple[Event, ...]:
         return ()
     if state.check is not None and state.in_hand:
         return checking(state, at_ms)
+    if state.by_eye and state.counter is None:
+        return ()  # another run, and nobody has said yet that the counter agrees with the record
     if state.fit is Fit.CORRECTED:  # somebody has said that it is there, and agreed to go on from there
         if state.consent is None and not state.by_eye:
             return ()

@@ -33,6 +33,10 @@ def says_by_eye(state: State) -> str:
     if unwinding(state):
         return "turn the spindle back by hand, then say what the counter says"
     start = ""
+    stop = state.stop_point
+    if state.let_go and state.counter is None and stop is not None and state.count >= stop:
+        ends = f"the record ends at turn {grouped(state.turns)}"
+        return f"{ends}, it was to stop at {grouped(stop)}: say what the counter says"
     if state.let_go and state.counter is None:
         start = f"the record ends at turn {grouped(state.turns)}, say so if the counter differs; "
     elif not state.let_go:

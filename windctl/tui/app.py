@@ -197,7 +197,7 @@ class WindctlApp(App[int], inherit_bindings=False):
 def leaving_words(run: Run) -> str:
     """What leaving means now."""
     snapshot = run.winding.look()
-    first = "The coil turns. It will be held first." if snapshot.phase in MOVING else "The spindle stands."
+    first = "The coil turns. It will be held first." if snapshot.phase in MOVING else _stands(run)
     return (
         f"{first} {run.card.number} stays open at turn {snapshot.turns:.0f} and can be gone on with later, "
         "here or with `windctl resume`."
@@ -211,5 +211,10 @@ def farewell(run: Run | None, outcome: Outcome | None) -> str:
     if outcome.left == "unconfirmed":
         return UNCONFIRMED
     if outcome.summary.outcome == "open":
-        return f"The spindle stands, {outcome.number} stays open: windctl resume {outcome.number}"
+        return f"{_stands(run)} {outcome.number} stays open: windctl resume {outcome.number}"
     return ""
+
+
+def _stands(run: Run) -> str:
+    """What is known of the spindle; where there is no board, nothing."""
+    return "Stop your own motor." if run.by_eye else "The spindle stands."

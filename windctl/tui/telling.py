@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from windctl.desk.numbers import duration, grouped, ohm
 from windctl.protocol.messages import Cause, Refusal, Trip
+from windctl.protocol.rules import NO_BOARD_QUEUE
 from windctl.record.events import (
     AlarmRaised,
     BoardGreeted,
@@ -62,6 +63,8 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
             return f"{event.number} begins: {event.recipe_name} on {event.machine}"
         case Resumed():
             return "taken up again"
+        case BoardGreeted() if event.identity.queue == NO_BOARD_QUEUE:
+            return None
         case BoardGreeted():
             return f"the board answers, at turn {turn(event.identity.count)}"
         case GoGiven():

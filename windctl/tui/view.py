@@ -188,7 +188,7 @@ def _leads(zero: ZeroSeen) -> str:
 def _next_by_eye(snapshot: Snapshot) -> Next:
     """What somebody does next who winds on a motor of their own and reads the counter."""
     if snapshot.phase == "reading" and snapshot.check is not None:
-        return Next("at turn", grouped(snapshot.check.turn), "R types what the meter shows")
+        return Next("at turn", grouped(snapshot.check.turn), "R types it")
     if snapshot.phase == "settling":
         return Next("the coil ends in a moment", "", "U takes the turn back")
     if snapshot.phase == "held":
@@ -200,7 +200,9 @@ def _next_by_eye(snapshot: Snapshot) -> Next:
     slow = snapshot.slow_turn
     slows = slow is not None and snapshot.turns < slow
     when = f"slow from {grouped(slow or 0.0)}, then K" if slows else "and stop, then K"
-    return Next("to" if snapshot.begun else "from 0 to", grouped(snapshot.stop_turn), when)
+    if snapshot.hands is not None and snapshot.check is None:  # it was bared there to be read
+        when = "insulate the wire first"
+    return Next("to", grouped(snapshot.stop_turn), when if snapshot.begun else "counter to 0 first, K")
 
 
 def _sentence(words: str) -> str:
@@ -210,8 +212,10 @@ def _sentence(words: str) -> str:
 def _under(snapshot: Snapshot, goal: float) -> str:
     about = "about " if snapshot.stop_turn is None else ""
     part = f" · {min(100, floor(100 * snapshot.turns / goal))} %" if goal > 0 else ""
-    back = " · U takes back" if snapshot.by_eye and snapshot.can_take_back else ""
-    return f"of {about}{grouped(goal)} turns{part}{back}"
+    if snapshot.by_eye and snapshot.turns > 0:  # what is typed next, in the same place
+        back = " · U undoes" if snapshot.can_take_back else ""
+        return f"of {grouped(goal)}{part} · R reads{back}"
+    return f"of {about}{grouped(goal)} turns{part}"
 
 
 def _rows(snapshot: Snapshot, card: Card) -> tuple[tuple[str, str], ...]:

@@ -30,6 +30,7 @@ def corrected(state: State, event: CountCorrected) -> State:
         misplaced=misplaced,
         estimate=estimate,
         before_typed=None,
+        counter=CounterRead(event.at_ms, round(event.turn), event.by) if state.by_eye else None,
     )
 
 

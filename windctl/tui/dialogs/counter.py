@@ -47,7 +47,8 @@ class CounterPrompt(Typed):
 
     def tell(self, words: str) -> None:
         """Why it is asked about."""
-        self.query_one("#counter-answer", Static).update(words)
+        for answer in self.query("#counter-answer").results(Static):  # none before it is laid out
+            answer.update(words)
 
     def take(self, line: str) -> None:
         """On to the run; it says whether that can be."""

@@ -37,14 +37,15 @@ class ReadingPrompt(Typed):
 
     def look(self, snapshot: Snapshot) -> None:
         """The steps as far as they have come."""
-        words = self.query_one(".words", Static)
         steps = reading_steps(snapshot)
-        if str(words.content) != steps:
-            words.update(steps)
+        for words in self.query(".words").results(Static):  # none before it is laid out
+            if str(words.content) != steps:
+                words.update(steps)
 
     def tell(self, words: str) -> None:
         """What the run says to what was typed."""
-        self.query_one("#reading-answer", Static).update(words)
+        for answer in self.query("#reading-answer").results(Static):
+            answer.update(words)
 
     def take(self, line: str) -> None:
         """On to the run; the question stays."""

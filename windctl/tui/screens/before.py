@@ -152,6 +152,12 @@ class BeforeScreen(Room):
         session = self.session
         return checklist(self.preview.recipe, session.profile, session.simulated, self.first)
 
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """A dry pass only where a motor guides."""
+        if action == "dry_pass":
+            return self.session.profile.guide.kind == "step"
+        return super().check_action(action, parameters)
+
     def action_dry_pass(self) -> None:
         """With a dry pass or without."""
         if self.session.profile.guide.kind == "step":

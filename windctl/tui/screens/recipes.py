@@ -211,6 +211,8 @@ class RecipesScreen(Between):
             f"{number} is gone on with where its record ends. The board is asked where the coil stands; if "
             "it no longer knows, you will be asked for the turn."
         )
+        if self.session.profile.by_eye:
+            words = f"{number} is gone on with where its record ends. Where your counter differs, K tells it."
         self.app.push_screen(Confirm(f"Go on with {number}?", words), self._confirmed_resume)
 
     def _confirmed_resume(self, yes: bool | None) -> None:
