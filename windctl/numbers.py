@@ -43,6 +43,11 @@ def turns(value: float, half_width: float = 0.0) -> str:
     return f"{grouped(value, 0 if float(value).is_integer() else 2)} turns"
 
 
+def at_turn(value: float) -> str:
+    """A place in the coil: `7 946`, and `1 414.5` where it is not at the end of a turn."""
+    return grouped(value, 0 if abs(value - round(value)) < 0.05 else 1)
+
+
 def counted(number: int, what: str) -> str:
     """`no coil`, `1 coil`, `12 coils`."""
     return f"no {what}" if number == 0 else f"{grouped(number)} {what}{'' if number == 1 else 's'}"

@@ -26,7 +26,7 @@ def test_enter_holds_words_are_explained_and_the_simulated_spindle_is_turned_bac
             ("help", "splice [TURN]"),
             ("winde", "'winde' is not understood"),
             ("unwind 500", "500 turns cannot be taken off"),
-            ("splice 70000", "turn 70000 is outside this coil's 0 to"),
+            ("splice 70000", "turn 70 000 is outside this coil's 0 to"),
             ("off", "drives off, hands may go in: asked for at the keyboard"),
         ):
             session.types(f"{typed}\n")

@@ -11,6 +11,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from windctl import numbers
 from windctl.cli import present
 
 
@@ -45,6 +46,7 @@ def test_thousands_are_parted_by_a_space() -> None:
     assert present.grouped(7946.0) == "7 946"
     assert present.grouped(1234567.891, 2) == "1 234 567.89"
     assert present.grouped(-0.04, 1) == "0.0"
+    assert [numbers.at_turn(n) for n in (1200.0, 1199.98, 1414.51)] == ["1 200", "1 200", "1 414.5"]
     assert present.grouped(-12.04, 1) == "-12.0"
 
 

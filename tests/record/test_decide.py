@@ -167,7 +167,7 @@ def test_any_other_board_makes_the_turn_a_question(changed: dict[str, int]) -> N
     coil = resumed(identity(**{"epoch": 12, "count": 133 * CPT, "next": 140, **changed}))
     assert coil.state.fit is Fit.LOST
     assert coil.decision.asks == "turn" and coil.decision.blocked is not None
-    assert "100.00" in coil.decision.blocked  # where the record ends
+    assert "ends at turn 100," in coil.decision.blocked  # where the record ends
     assert coil.decision.wants.hold and coil.decision.wants.datum is None
 
 
@@ -407,4 +407,4 @@ def test_a_board_that_started_again_does_not_take_its_own_count_for_the_coils() 
     coil.hear(BoardGreeted(0, identity(boot=6, epoch=1, state=BoardState.DRIVES_OFF, trust=0, count=60)))
     assert coil.state.fit is Fit.LOST
     assert coil.decision.blocked is not None and "the board was reset since" in coil.decision.blocked
-    assert "ends at turn 100.00" in coil.decision.blocked
+    assert "ends at turn 100," in coil.decision.blocked

@@ -13,6 +13,7 @@ from tests.record.following import Coil, at_rest, measured, turning
 from tests.record.samples import CPT, status
 from tests.run.winding import SHIPPED, SHORT_TURNS, wind, with_key, with_stop
 from windctl.book.open import open_book
+from windctl.numbers import grouped
 from windctl.profile.builtin import VIRTUAL
 from windctl.protocol.messages import Cause
 from windctl.protocol.messages import State as BoardState
@@ -118,7 +119,9 @@ def test_what_is_said_at_a_check_and_after_it() -> None:
     coil.hear(StatusHeard(0, off))
     seen = snapshot(coil.state, coil.decision, 200.0)
     assert seen.asks == "reading"  # no contact came
-    where = f"drives off, hands may go in: read the resistance at turn {stop:.0f}; the finish is known to"
+    where = (
+        f"drives off, hands may go in: read the resistance at turn {grouped(stop)}; the finish is known to"
+    )
     assert seen.says.startswith(where)
     request = Read("operator", measured(stop), 20.0)
     replied = answer(request, coil.state, coil.decision, 0, leaving=False)

@@ -177,7 +177,9 @@ def show(shared: Shared, coil: str) -> None:
     present.result()
     for line in story(rare, rare[0].setup.counts_per_turn if isinstance(rare[0], CoilStarted) else 1):
         present.result(f"{line.when:>10}  {line.what}")
-    present.result(f"{reports} board reports and {readings} readings besides")
+    present.result(
+        f"{present.counted(reports, 'board report')} and {present.counted(readings, 'reading')} besides"
+    )
     for fact in addenda:
         _show_addendum(fact)
 

@@ -9,6 +9,7 @@ from windctl.cli.progress import Face
 from windctl.cli.prompt import Prompt
 from windctl.desk.words import BY, help_text, request_of
 from windctl.errors import RunFailed, UsageError, WindctlError
+from windctl.numbers import at_turn
 from windctl.run.requests import (
     Clear,
     CountIs,
@@ -88,6 +89,8 @@ class Questions:
         self._unwind(snapshot)
         if self._leads is not None:
             self._leads.mind(snapshot.zero)
+        if snapshot.phase == "turning":
+            self._put = ()  # at the next standstill everything is said again
         asks = None if snapshot.asks == "turn" else snapshot.asks  # that one ends the run by itself
         if asks != self._open:
             self._open = asks
@@ -117,8 +120,10 @@ class Questions:
         self._put_question(snapshot)
 
     def _put_question(self, snapshot: Snapshot) -> None:
+        """What is asked, and how to answer where that is not what was said last."""
+        same = bool(self._put) and self._put[0] == snapshot.asks
         self._put = _situation(snapshot)
-        self._face.say(_question(snapshot))
+        self._face.say(_question(snapshot, how=not same))
 
     def _give_up(self, snapshot: Snapshot) -> None:
         why = "nobody to ask"
@@ -140,7 +145,7 @@ class Questions:
         if line.lower() == "help":
             self._face.say(help_text())
         elif request is None:
-            self._face.say(f"{line!r} is not understood; help lists the words. {_question(snapshot)}")
+            self._face.say(f"{line!r} is not understood; help lists the words.")
         elif isinstance(request, End) and snapshot.turns <= 0:
             self._face.say("There is no turn to end the coil with; Ctrl-C leaves.")
         elif isinstance(request, Go | Clear) and not _is_asked(request, snapshot):
@@ -194,20 +199,21 @@ def _situation(snapshot: Snapshot) -> tuple[object, ...]:
     return (snapshot.asks, snapshot.drives_off, at_the_wire, refused, by_eye)
 
 
-def _question(snapshot: Snapshot) -> str:
+def _question(snapshot: Snapshot, *, how: bool = True) -> str:
     zero = snapshot.zero
     lines = [] if zero is None or not found_words(zero) else [f"{found_words(zero)}."]
     lines.append(f"{snapshot.says}.")
     if snapshot.wire_ends_at is not None:
         lines.append(
-            f"If the wire broke, it ends near turn {snapshot.wire_ends_at:.1f}: splice goes back there."
+            f"If the wire broke, it ends near turn {at_turn(snapshot.wire_ends_at)}: splice goes back there."
         )
     if snapshot.asks == "place" and snapshot.guide_place_mm is not None:
         lines.append(f"Put the guide {snapshot.guide_place_mm:.2f} mm from where it began.")
     if snapshot.turns <= 0 and snapshot.asks == "go":
         start = "Type go and Enter to start; Ctrl-C leaves without turning anything."
         return "\n".join([*lines, start]) if zero is not None and zero.contact_off else start
-    lines.append(_ANSWERS[snapshot.asks or "go"])
+    if how:
+        lines.append(_ANSWERS[snapshot.asks or "go"])
     return "\n".join(lines)
 
 

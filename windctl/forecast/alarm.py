@@ -7,6 +7,7 @@ from math import exp, log, sqrt
 
 from windctl.forecast.belief import SHOWN, moved
 from windctl.forecast.estimator import Estimate, Surprise
+from windctl.numbers import grouped
 
 _RUN = 5  # open circuits, or readings near zero, in a row: a bouncing contact rarely shows two
 _BEYOND = 3.6  # standard deviations of the prior; a right coil goes there once in 3 000
@@ -82,7 +83,7 @@ def find_alarm(estimate: Estimate) -> Alarm | None:
 def _doubt(doubt: Surprise) -> Alarm:
     return Alarm(
         "doubt",
-        f"the reading at rest at turn {doubt.turn:.0f} shows {doubt.seen_ohm:.1f} ohm where "
+        f"the reading at rest at turn {grouped(doubt.turn)} shows {doubt.seen_ohm:.1f} ohm where "
         f"{doubt.expected_ohm:.1f} ohm is expected, and is not used: measure again, and check the count",
     )
 
@@ -95,8 +96,8 @@ def _jump(jump: Surprise) -> Alarm:
     odds = _lasting(_BELIEVED, _AGREE)
     return Alarm(
         "jump",
-        f"at turn {jump.turn:.0f} the readings went from {jump.expected_ohm:.1f} to {jump.seen_ohm:.1f} ohm "
-        f"and stayed there: {why} ({_against(odds)} a bouncing contact)",
+        f"at turn {grouped(jump.turn)} the readings went from {jump.expected_ohm:.1f} to "
+        f"{jump.seen_ohm:.1f} ohm and stayed there: {why} ({_against(odds)} a bouncing contact)",
         odds,
     )
 

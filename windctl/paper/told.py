@@ -121,7 +121,8 @@ def told(event: Event, counts_per_turn: int) -> str | None:
             return f"Another spool{name} was joined on at turn {grouped(event.turn, 1)}."
         case facts.CheckAsked():
             before, after = _Z95 * event.without_ohm, _Z95 * event.with_ohm
-            return f"Stopped at turn {grouped(event.turn)} to be read: ±{before:.0f} to ±{after:.0f} ohm."
+            gain = f"which takes the finish from ±{before:.0f} to ±{after:.0f} ohm"
+            return f"Stopped at turn {grouped(event.turn)} to be read, {gain}."
         case facts.ReadingTyped():
             read = f"{ohm(event.ohm)} at {event.celsius:.1f} °C"
             return f"Read by hand at turn {grouped(event.turn)}: {read}, as the meter showed it."

@@ -9,6 +9,7 @@ from windctl.coil.fit import Fit
 from windctl.coil.wire_speed import WireSpeed
 from windctl.lay.ribbons import Ribbon, nearest_clear
 from windctl.material.wire import Wire
+from windctl.numbers import grouped
 from windctl.plan.experience.supply import Left
 from windctl.plan.speeds import accel_rpm_per_s
 from windctl.profile.model import MachineProfile
@@ -71,7 +72,7 @@ def _fit(outlook: Outlook) -> Iterator[str]:
         about = outlook.turns * fit.room_mm / fit.side_build_mm
         yield (
             f"it will not fit: {figures}, and the flange is only {fit.room_mm:g} mm deep; "
-            f"about {about:.0f} turns would fill it"
+            f"about {grouped(about)} turns would fill it"
         )
 
 
@@ -81,15 +82,15 @@ def _wire_left(outlook: Outlook) -> Iterator[str]:
         return
     words = "is likely to" if outlook.wire_m > left.metres else "may"
     yield (
-        f"the spool {words} run out before the stop: about {max(left.metres, 0.0):.0f} m are left, give or "
-        f"take {2 * left.sd:.0f} m, and the coil takes {outlook.wire_m:.0f} m"
+        f"the spool {words} run out before the stop: about {grouped(max(left.metres, 0.0))} m are left, "
+        f"give or take {grouped(2 * left.sd)} m, and the coil takes {grouped(outlook.wire_m)} m"
     )
 
 
 def _target(recipe: Recipe, profile: MachineProfile, outlook: Outlook) -> Iterator[str]:
     if abs(outlook.wanted_turns - outlook.turns) > 1:
         yield (
-            f"the target asks for about {outlook.wanted_turns:.0f} turns, beyond the recipe's limits of "
+            f"the target asks for about {grouped(outlook.wanted_turns)} turns, beyond the recipe's limits of "
             f"{recipe.stop.min_turns} to {recipe.stop.max_turns}; it stops at {outlook.turns}"
         )
     if recipe.stop.dcr_20c_ohm is not None and profile.readings.mode == "none":

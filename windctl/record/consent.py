@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from windctl.numbers import at_turn
 from windctl.protocol.messages import (
     Arm,
     Capability,
@@ -157,4 +158,4 @@ def why_lost(state: State) -> str:
     else:
         why = "what the board reports does not go on from the record"
     says = identity.count / state.counts_per_turn
-    return f"{why}; the record ends at turn {state.turns:.2f}, the board says {says:.2f}"
+    return f"{why}; the record ends at turn {at_turn(state.turns)}, the board says {at_turn(says)}"

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from windctl.numbers import grouped
+from windctl.numbers import at_turn, grouped
 from windctl.record.decide import Decision
 from windctl.record.dry_pass import FAR, START, goal, may_pass
 from windctl.record.events import (
@@ -165,8 +165,10 @@ def _at_the_wire(
             words = "unwind"
             if request.turns is not None:
                 if not 0.0 < request.turns <= state.turns:
-                    return Answer(says=f"{request.turns:g} turns cannot be taken off {state.turns:.2f} turns")
-                words = f"unwind {request.turns:g} turns, to turn {state.turns - request.turns:.2f}"
+                    return Answer(
+                        says=f"{request.turns:g} turns cannot be taken off {at_turn(state.turns)} turns"
+                    )
+                words = f"unwind {request.turns:g} turns, to turn {at_turn(state.turns - request.turns)}"
             told = f"{OFF} Turn the spindle back by hand: the count follows. Type go when done."
             if state.by_eye:
                 told = "Turn the spindle back by hand, then type turn and what the counter says."
@@ -175,7 +177,7 @@ def _at_the_wire(
             turn = state.wire_ends_at if request.turn is None else request.turn
             if not 0.0 <= turn <= state.turns:
                 return Answer(says=_outside(turn, state.turns))
-            return Answer((WireBroke(at_ms, turn, by),), f"noted: the wire broke at turn {turn:.2f}")
+            return Answer((WireBroke(at_ms, turn, by),), f"noted: the wire broke at turn {at_turn(turn)}")
         case Splice() | NewWire():
             return _joined(request, state, at_ms)
         case CountIs():
@@ -202,10 +204,10 @@ def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
         facts.append(CountCorrected(at_ms, turn, by, "what was counted beyond is without wire"))
     if isinstance(request, Splice):
         facts.append(Spliced(at_ms, turn, by))
-        noted = f"noted: spliced at turn {turn:.2f}, winding goes on from there"
+        noted = f"noted: spliced at turn {at_turn(turn)}, winding goes on from there"
     else:
         facts.append(WireChanged(at_ms, turn, request.spool, by))
-        noted = f"noted: another spool from turn {turn:.2f} on"
+        noted = f"noted: another spool from turn {at_turn(turn)} on"
     if state.by_eye and turn < state.turns:
         noted += f"; turn the spindle back until the counter says {grouped(turn)}"
     return Answer(tuple(facts), noted)
@@ -225,9 +227,9 @@ def _counted(request: CountIs, state: State, at_ms: int) -> Answer:
             HandsAsked(at_ms, request.by, "count the turns"),
             CountCorrected(at_ms, request.turn, request.by, "counted by hand", miscounted=True),
         ),
-        f"noted: {request.turn:.2f} turns lie on the bobbin",
+        f"noted: {at_turn(request.turn)} turns lie on the bobbin",
     )
 
 
 def _outside(turn: float, most: float) -> str:
-    return f"turn {turn:g} is outside this coil's 0 to {most:.2f} turns"
+    return f"turn {at_turn(turn)} is outside this coil's 0 to {at_turn(most)} turns"

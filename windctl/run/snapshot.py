@@ -8,6 +8,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from windctl.forecast.finish import Z95, finish_at, so_far
+from windctl.numbers import grouped
 from windctl.plan.pace import most_pace
 from windctl.protocol.messages import Capability, Cause
 from windctl.protocol.messages import State as BoardState
@@ -189,8 +190,8 @@ def _says(state: State, decision: Decision) -> str:
         stop = state.stop_point / state.counts_per_turn
         slow = _slow_turn(state, stop)
         if slow is not None and state.turns < slow:
-            return f"slows at {slow:.0f}, stops near {stop:.0f}"
-        return f"slow to the stop at {stop:.0f}"
+            return f"slows at {grouped(slow)}, stops near {grouped(stop)}"
+        return f"slow to the stop at {grouped(stop)}"
     if phase == "held":
         return _says_held(state, decision)
     if phase == "settling":
@@ -223,7 +224,8 @@ def _says_held(state: State, decision: Decision) -> str:
     if state.drives_off:
         return "held, drives off"
     if state.hold is not None:
-        return f"held: {state.hold.reason}"
+        reason = state.hold.reason
+        return reason if reason.startswith("held") else f"held: {reason}"
     if state.held is None:
         return "held"
     return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
@@ -247,7 +249,7 @@ def _says_check(state: State) -> str:
     off = "" if state.by_eye else off
     without, with_it = (_brief(Z95 * sd) for sd in (check.without_ohm, check.with_ohm))
     gain = f"the finish is known to ±{without} ohm, with a reading to ±{with_it} ohm"
-    return f"{off}read the resistance at turn {check.turn:.0f}; {gain}"
+    return f"{off}read the resistance at turn {grouped(check.turn)}; {gain}"
 
 
 def _brief(ohm: float) -> str:
