@@ -1,0 +1,106 @@
+"""A coil on a bench without a board by keys alone: K tells the counter, R the reading, U takes it back."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+from textual.pilot import Pilot
+from textual.widgets import Input, Static
+
+from tests.cli.test_by_eye import MACHINE, small
+from tests.run.by_eye import port
+from tests.tui.test_coil_by_keys import press, shown, until
+from windctl.book.open import open_book
+from windctl.desk.asked import Shared
+from windctl.desk.words import turns_of
+from windctl.machine import by_eye
+from windctl.run.snapshot import Snapshot
+from windctl.tui.app import WindctlApp
+from windctl.tui.dialogs.counter import CounterPrompt
+from windctl.tui.dialogs.read import ReadingPrompt
+from windctl.tui.screens.before import BeforeScreen
+from windctl.tui.screens.recipes import RecipesScreen
+from windctl.tui.screens.wind import WindScreen
+from windctl.tui.session import Session
+from windctl.tui.widgets.checklist import Checklist
+from windctl.tui.widgets.hand_target import HandTarget
+from windctl.tui.widgets.state_band import StateBand
+
+
+async def typed(app: WindctlApp, pilot: Pilot[int], line: str) -> None:
+    """A line into the dialog that is open."""
+    await until(pilot, lambda: isinstance(app.focused, Input))
+    await press(pilot, *line, "enter")
+
+
+async def test_from_the_recipe_list_to_the_sealed_record(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(by_eye, "ByEyePort", lambda: port(6.0))  # the same on a faster clock
+    small(tmp_path, 150)
+    app = WindctlApp(Session(Shared(machine=str(MACHINE), book=tmp_path / "a.book"), [tmp_path]))
+    async with app.run_test(size=(80, 24)) as pilot:
+        room = app.screen
+        assert isinstance(room, RecipesScreen)
+        await until(pilot, lambda: room.chosen is not None)
+        await press(pilot, "enter")
+        await until(pilot, lambda: isinstance(app.screen, BeforeScreen) and bool(app.screen.query(Checklist)))
+        checklist = app.screen.query_one(Checklist)
+        assert any(item.startswith("the counter shows 0") for item in checklist.items)
+        assert "Dry pass" not in shown(app)
+        for _ in checklist.items:
+            await press(pilot, "enter")
+        await press(pilot, "s")
+        await until(pilot, lambda: isinstance(app.screen, WindScreen) and app.screen.latest is not None)
+        wind = app.screen
+        assert isinstance(wind, WindScreen)
+
+        def latest() -> Snapshot:
+            assert wind.latest is not None
+            return wind.latest
+
+        await until(
+            pilot, lambda: latest().asks == "count" and wind.query_one(StateBand).next.figure == "150"
+        )
+        assert wind.query_one(StateBand).next.when == "counter to 0 first, K"
+        assert "Counter" in shown(app)
+        assert not [word for word in ("HOLD", "Slower", "Faster", "SIMULATED") if word in shown(app)]
+        assert not wind.query_one(HandTarget).display  # a target that nothing counts for would mislead
+        await press(pilot, "1")  # a digit opens the prompt
+        await until(pilot, lambda: isinstance(app.screen, CounterPrompt))
+        await typed(app, pilot, "00")
+        await until(pilot, lambda: latest().turns == 100 and app.screen is wind)
+        per_turn = (latest().finish_ohm or 0.0) / 150
+        await press(pilot, "r")
+        await until(pilot, lambda: isinstance(app.screen, ReadingPrompt))
+        await typed(app, pilot, f"{100 * per_turn + 1:.1f} 21,5".replace(".", ","))
+        await until(pilot, lambda: latest().readings_used == 1 and app.screen is wind)
+        await press(pilot, "u")
+        await until(pilot, lambda: latest().readings_used == 0 and latest().turns == 100)
+        await press(pilot, "k")
+        await until(pilot, lambda: isinstance(app.screen, CounterPrompt))
+        await typed(app, pilot, "1,5k")
+        answer = app.screen.query_one("#counter-answer", Static)
+        await until(pilot, lambda: "1 500 is 1 350 turns past" in str(answer.content))
+        assert isinstance(app.screen, CounterPrompt)
+        await typed(app, pilot, "151")
+        await until(pilot, lambda: isinstance(app.screen, ReadingPrompt))  # what comes next, by itself
+        assert latest().turns == 151
+        await typed(app, pilot, f"{151 * per_turn + 1:.1f} 22")
+        await until(pilot, lambda: wind.outcome is not None)
+        assert "within" in shown(app)
+    with open_book(tmp_path / "a.book", create=False, readonly=True) as book:
+        (head,) = book.list()
+        assert (head.outcome, head.verdict, head.turns) == ("finished", "within", 151)
+        assert book.verify().broken == ()
+
+
+@pytest.mark.parametrize("line", ["3200", "3 200", "3.2k", "3,2k", "3,2 K"])
+def test_a_counter_is_typed_as_people_write_it(line: str) -> None:
+    assert turns_of(line) == 3200.0
+
+
+@pytest.mark.parametrize("line", ["", "k", "3 20", "3 2000", "32-0", "-3", "3200 turns"])
+def test_what_is_no_number_is_none(line: str) -> None:
+    assert turns_of(line) is None
