@@ -21,8 +21,9 @@ class Node:
 
     @property
     def text(self) -> str:
-        """All text within it."""
-        return "".join(part if isinstance(part, str) else part.text for part in self.parts)
+        """All text within it, a blank where no line may end for a blank."""
+        text = "".join(part if isinstance(part, str) else part.text for part in self.parts)
+        return text.replace("\u00a0", " ")
 
     def all(self, *names: str) -> list[Node]:
         """Elements of these names within it, in order."""

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import re
 import xml.etree.ElementTree as ET
+from dataclasses import replace
 from itertools import pairwise
 
 import pytest
@@ -12,7 +13,17 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from windctl.paper import svg
-from windctl.paper.plot import Entry, Plot, axis, axis_over, categories, nice_step, nice_ticks
+from windctl.paper.plot import (
+    Beside,
+    Entry,
+    Plot,
+    axis,
+    axis_over,
+    categories,
+    nice_step,
+    nice_ticks,
+    room_beside,
+)
 
 NS = "{http://www.w3.org/2000/svg}"
 
@@ -91,10 +102,11 @@ def test_a_chart_is_well_formed_and_the_same_each_time() -> None:
             PLOT.polyline([(0, 1), (200, 5)], svg.DASHED),
             PLOT.marks([(3, 3)], "ring"),
             PLOT.bars([(5, 1, 3)]),
-            PLOT.across(4, words="target <t>"),
+            PLOT.across(4),
             PLOT.upright(80, words="stop & go"),
             PLOT.words(10, 9, "words"),
             legend=[Entry("one", svg.SOLID), Entry("two", None, "box"), Entry("three", fill=svg.SAND)] * 4,
+            beside=[Beside(4, "t <t>")],
         )
 
     text = draw()
@@ -105,3 +117,22 @@ def test_a_chart_is_well_formed_and_the_same_each_time() -> None:
     assert len(idents) == len(set(idents)) and all(ident and ident.startswith("p-") for ident in idents)
     for one in root.iter(f"{NS}text"):  # a legend of two rows included
         assert 0 <= float(one.get("x", "nan")) <= 720 and 0 <= float(one.get("y", "nan")) <= 300
+
+
+@pytest.mark.parametrize("levels", [[4.0], [4.0, 4.01, 3.99], [0.0, 0.01, 10.0, 9.9], [5.0] * 8])
+def test_words_to_a_level_stand_beside_the_frame_and_not_on_each_other(levels: list[float]) -> None:
+    """Nothing of the data is drawn right of the frame."""
+    words = [f"limit {n} kohm" for n in range(len(levels))]
+    plot = replace(PLOT, right=room_beside(words))
+    text = plot.drawn("t", "d", beside=[Beside(y, each) for y, each in zip(levels, words, strict=True)])
+    placed = [one for one in ET.fromstring(text).iter(f"{NS}text") if (one.text or "").startswith("limit")]
+    right, bottom = plot.at(plot.x.high, plot.y.low)
+    _, top = plot.at(plot.x.high, plot.y.high)
+    heights = sorted(float(one.get("y", "nan")) for one in placed)
+    assert len(placed) == len(levels)
+    assert all(float(one.get("x", "nan")) > right for one in placed)
+    assert all(right + svg.text_width(one.text or "") < plot.width for one in placed)
+    assert top <= heights[0] and heights[-1] <= bottom + 5
+    assert all(lower - higher >= 12 for higher, lower in pairwise(heights))
+    if levels == [4.0]:
+        assert heights[0] - plot.at(0, 4.0)[1] == pytest.approx(4.0, abs=0.01)  # beside the line

@@ -82,7 +82,7 @@ def chart(
     except ValueError as error:
         raise UsageError(_few(str(error), gathered)) from None
     if svg_file is not None:
-        _write(svg_file, lot)
+        _write(svg_file, lot, gathered)
     if shared.json:
         also: dict[str, Any] = {
             "recipe": gathered.recipe,
@@ -98,25 +98,38 @@ def _few(why: str, gathered: Gathered) -> str:
     return f"{why}{left}"
 
 
-def _write(file: Path, lot: Lot) -> None:
+def _write(file: Path, lot: Lot, gathered: Gathered) -> None:
     from windctl.paper.control_chart import chart_svg
     from windctl.paper.svg import standalone
 
     try:
-        file.write_text(standalone(chart_svg(lot)), encoding="utf-8", newline="\n")
+        file.write_text(
+            standalone(chart_svg(lot, heading=_capital(_heading(lot, gathered)))),
+            encoding="utf-8",
+            newline="\n",
+        )
     except OSError as error:
         raise WindctlError(f"{file} cannot be written: {error.strerror or error}") from error
     present.message(f"drawn into {file}")
 
 
+def _heading(lot: Lot, gathered: Gathered) -> str:
+    from windctl.shop.lot import name_of
+
+    coils = present.counted(len(lot.coils), "coil")
+    first, last = lot.coils[0].number, lot.coils[-1].number
+    return f"{name_of(lot.quantity)} of {coils}, {first} to {last}: {gathered.recipe}"
+
+
+def _capital(text: str) -> str:
+    return text[:1].upper() + text[1:]
+
+
 def _tell(lot: Lot, gathered: Gathered) -> None:
-    from windctl.shop.lot import capability_words, name_of, says, written
+    from windctl.shop.lot import capability_words, says, written
 
     sheet, spread = lot.chart, lot.chart.sigma
-    present.result(
-        f"{name_of(lot.quantity)} of {present.counted(len(lot.coils), 'coil')}, {lot.coils[0].number} to "
-        f"{lot.coils[-1].number}: {gathered.recipe}"
-    )
+    present.result(_heading(lot, gathered))
     drawn = sum(place >= 0 for place in _places(len(lot.coils))[1])
     if drawn < len(lot.coils):
         present.result(f"the last {drawn} of them drawn; a wider terminal or --svg shows more")

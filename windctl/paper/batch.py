@@ -100,7 +100,8 @@ def _spread(values: Sequence[float]) -> str:
         return ""
     mean = sum(values) / len(values)
     sd = sqrt(sum((value - mean) ** 2 for value in values) / (len(values) - 1))
-    return f"coils differ by {ohm(sd)} (sd), {100 * sd / mean:.2g}\u00a0%"
+    rounded = float(f"{sd:.2g}")  # two digits are more than a dozen coils can say
+    return f"coils differ by {grouped(rounded, 0 if sd >= 10 else 1)} ohm (sd), {100 * sd / mean:.2g}\u00a0%"
 
 
 def _drawn(heads: Sequence[CoilHead]) -> Markup:

@@ -20,6 +20,7 @@ _LIMIT = Pen(INK, 0.9, "7 3")
 _GOAL = Pen(INK, 0.9)
 _EVENT = Pen(MUTED, 0.8, "1.5 2.5")
 _TURNS = "turns"
+_HEADROOM = 1.02  # above the highest value
 _SPAN = 2.5  # a chart of the finish shows so many times the tolerance, or half-widths at its quarter
 _FEW = 25  # readings of which each is marked
 _MOST_EVENTS = 4  # that are named within a chart
@@ -50,11 +51,12 @@ def resistance(
     goal = target.value if target.kind != "turns" else None
     unit, per = ("kohm", 1000.0) if max(most, goal or 0.0) >= 1000 else ("ohm", 1.0)
     x = axis(0.0, max(turns, target.value if target.kind == "turns" else 0.0), _TURNS, widen=False)
-    y = axis(0.0, max(most, goal or 0.0) / per, f"{unit} at 20 °C", most=5)
+    share = target.tolerance_pct / 100.0
+    top = max(most, (goal or 0.0) * (1 + share))  # room for the whole band of the tolerance
+    y = axis(0.0, _HEADROOM * top / per, f"{unit} at 20 °C", most=5, widen=False)
     plot = Plot("resistance", _roomy(x), y, height=215)
     layers, legend = [], []
     if goal is not None:
-        share = target.tolerance_pct / 100.0
         wide = [(at, goal * (1 - share) / per, goal * (1 + share) / per) for at in (plot.x.low, plot.x.high)]
         layers += [plot.band(wide, svg.HAZE), plot.across(goal / per, _GOAL)]
         legend.append(Entry(f"target {ohm(goal)} ± {target.tolerance_pct:g} %", _GOAL, fill=svg.HAZE))

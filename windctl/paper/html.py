@@ -12,6 +12,12 @@ from windctl.paper.svg import escaped
 _POLICY = "default-src 'none'; style-src 'unsafe-inline'; img-src data:; base-uri 'none'; form-action 'none'"
 _ICON = "data:,"  # else a browser asks its server for one
 
+_PROSE = ("p", "li", "caption", "figcaption", "td", "th", "dd", "small")
+_WITHIN_A_FIGURE = re.compile(
+    r"(?<=\d) (?=\d{3}(?!\d)|±)|(?<=±) |"
+    r"(?<=\d) (?=(?:°C|kohm|ohm|%|mm|m|cN|rpm|µV|mV|Hz|g|K|min)(?![A-Za-z]))"
+)
+
 
 class Markup(str):
     """Text that is HTML or inline SVG already."""
@@ -34,7 +40,13 @@ def tag(name: str, *content: str, **attributes: str | None) -> Markup:
         for key, value in attributes.items()
         if value is not None
     )
-    return Markup(f"<{name}{said}>{joined(*content)}</{name}>")
+    pieces = (one if isinstance(one, Markup) else knit(one) for one in content) if name in _PROSE else content
+    return Markup(f"<{name}{said}>{joined(*pieces)}</{name}>")
+
+
+def knit(text: str) -> str:
+    """Text in which no line ends within a figure, or between it and its unit or its ±."""
+    return _WITHIN_A_FIGURE.sub("\u00a0", text)
 
 
 def joined(*content: str) -> Markup:

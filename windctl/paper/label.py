@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from windctl.numbers import grouped, ohm
@@ -21,6 +22,7 @@ _CODE = 246.0
 _LEFT = 24.0
 _WIDEST, _WIDEST_BOLD = 0.64, 0.72  # of a letter's size: a letter of the widest of the fonts, on average
 PAPERS = {"a4": (210.0, 297.0), "letter": (215.9, 279.4)}  # mm; ISO 216, ANSI/ASME Y14.1
+_NAME, _NAME_LEAST = 22.0, 19.0  # size of a recipe's name
 _EDGE_MM = 9.0  # that printers leave white
 
 
@@ -86,8 +88,8 @@ def label_svg(label: Label, ident: str = "label", *, sized: bool = True) -> str:
     under = f"at 20 °C · {label.day}" if label.cold is not None else label.day
     parts = [
         svg.rect(0, 0, *_SIZE, svg.PAPER),
-        _fitted(label.proof.number, 62, room, 44, bold=True),
-        _fitted(label.recipe, 96, room, 23, fill=MUTED),
+        _fitted(label.proof.number, 54, room, 44, bold=True),
+        *_recipe(label.recipe, room),
         svg.line(_LEFT, 116, _LEFT + room - 14, 116, svg.Pen(INK, 3)),
         _fitted(turns, 160, room, 34),
         _fitted(cold, 206, room, 34),
@@ -141,6 +143,16 @@ html, body {{ margin: 0; background: #fff; }}
 .label svg {{ display: block; width: 100%; height: 100%; }}
 @media screen {{ body {{ padding: 6mm; }} .sheet {{ margin-bottom: 6mm; }} }}
 """
+
+
+def _recipe(words: str, room: float) -> list[str]:
+    """A recipe's name in one line, or smaller in two, so that it can still be read at arm's length."""
+    if len(words) * _WIDEST * _NAME <= room:
+        return [_fitted(words, 94, room, _NAME + 1, fill=MUTED)]
+    lines = wrap(words, int(room / (_WIDEST * _NAME_LEAST)))
+    if len(lines) > 2:
+        lines = [lines[0], " ".join(lines[1:])]  # which is cut
+    return [_fitted(line, 80 + 22 * n, room, _NAME_LEAST, fill=MUTED) for n, line in enumerate(lines)]
 
 
 def _fitted(words: str, y: float, room: float, size: float, *, bold: bool = False, fill: str = INK) -> str:

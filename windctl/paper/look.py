@@ -63,6 +63,8 @@ th.n:last-child, td.n:last-child { padding-right: 0; }
 table.whole { break-inside: avoid; }
 code, .digest { font-family: ui-monospace, 'DejaVu Sans Mono', 'Liberation Mono', Consolas, monospace;
   font-size: 8.3pt; overflow-wrap: anywhere; }
+code { white-space: nowrap; }
+.columns .digest { font-size: 6.4pt; white-space: nowrap; }
 .proof { display: flex; gap: 7mm; align-items: flex-start; break-inside: avoid; }
 .proof > div { min-width: 0; flex: 1; }
 .proof figure { flex: 0 0 31mm; }

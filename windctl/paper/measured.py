@@ -121,8 +121,9 @@ def _hum(hum: PicksUp) -> Markup:
     columns = [Column("mains"), Column("hum per microtesla", True)]
     rows = []
     for hz in MAINS_HZ:
-        volt = 1e6 * hum.volt(hz)
-        rows.append((f"{hz:g} Hz", with_uncertainty(volt, _Z95 * hum.rel * volt, "µV")))
+        per, unit = (1e3, "mV") if hum.volt(hz) >= 1e-3 else (1e6, "µV")
+        volt = per * hum.volt(hz)
+        rows.append((f"{hz:g} Hz", with_uncertainty(volt, _Z95 * hum.rel * volt, unit)))
     area = with_uncertainty(hum.turns_area_m2, _Z95 * hum.rel * hum.turns_area_m2, "m²")
     caption = f"Hum, from turns times mean area of {area}: uniform field along the axis, without steel"
     return table(caption, columns, rows, class_="whole")

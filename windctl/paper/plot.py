@@ -8,8 +8,9 @@
         "From 0 to 7.9 kohm over 8 000 turns, nearly straight.",
         plot.band(fan, svg.SAND),
         plot.polyline(points),
-        plot.across(target, svg.DASHED, "target"),
-        legend=(("reading", svg.SOLID, None),),
+        plot.across(target, svg.DASHED),
+        legend=[Entry("reading", svg.SOLID)],
+        beside=[Beside(target, "target")],
     )
 
 What is drawn by a plot's functions is in the values' own units and is cut at the plot's frame.
@@ -25,6 +26,8 @@ from windctl.numbers import grouped
 from windctl.paper import svg
 from windctl.paper.svg import INK, MUTED, Pen, Point
 
+_GAP = 6.0  # between the frame and the words beside it
+_LINE = 13.0  # from one line of words to the next
 _STEPS = (1.0, 2.0, 2.5, 5.0, 10.0)
 
 
@@ -103,6 +106,21 @@ class Entry:
 
 
 @dataclass(frozen=True, slots=True)
+class Beside:
+    """Words to a level y, right of the frame, where no line of the data runs: `Plot.right` must have room
+    for them (`room_beside`)."""
+
+    y: float
+    words: str
+    colour: str = INK
+
+
+def room_beside(words: Iterable[str]) -> float:
+    """How wide the margin must be for these."""
+    return max((svg.text_width(each) for each in words), default=0.0) + 3 * _GAP
+
+
+@dataclass(frozen=True, slots=True)
 class Plot:
     """A frame with two axes. `ident` names the drawing within its page (see `svg.document`)."""
 
@@ -168,13 +186,10 @@ class Plot:
             drawn.extend(svg.line(px - cap, end, px + cap, end, pen) for end in (bottom, top))
         return "".join(drawn)
 
-    def across(self, y: float, pen: Pen = svg.DASHED, words: str = "", *, below: bool = False) -> str:
-        """A level line over the whole width, its words at the right end above it (or `below`)."""
+    def across(self, y: float, pen: Pen = svg.DASHED) -> str:
+        """A level line over the whole width; for words to it see `Beside`."""
         (left, py), (right, _) = self.at(self.x.low, y), self.at(self.x.high, y)
-        drawn = svg.line(left, py, right, py, pen)
-        if words:
-            drawn += svg.text(right - 4, py + (12 if below else -4), words, anchor="end", fill=pen.stroke)
-        return drawn
+        return svg.line(left, py, right, py, pen)
 
     def upright(self, x: float, pen: Pen = svg.DOTTED, words: str = "", *, row: int = 0) -> str:
         """An upright line over the whole height; its words beside its head, on the `row`-th line of text,
@@ -193,8 +208,15 @@ class Plot:
         px, py = self.at(x, y)
         return svg.text(px, py, text, anchor=anchor, size=size)
 
-    def drawn(self, title: str, desc: str, *layers: str, legend: Sequence[Entry] = ()) -> str:
-        """The whole chart: grid, then the layers in order, cut at the frame, then axes and legend.
+    def drawn(
+        self,
+        title: str,
+        desc: str,
+        *layers: str,
+        legend: Sequence[Entry] = (),
+        beside: Sequence[Beside] = (),
+    ) -> str:
+        """The whole chart: grid, then the layers in order, cut at the frame, then axes, words and legend.
 
         `title` and `desc` are for whoever does not see it; what is to be read above it belongs to the page.
         """
@@ -208,6 +230,7 @@ class Plot:
             svg.line(left, bottom, right, bottom, Pen(INK, 1.0)),
             svg.line(left, top, left, bottom, Pen(INK, 1.0)),
             self._labels(),
+            self._beside(beside),
             self._legend(legend),
         ]
         return svg.document(self.width, self.height, parts, title=title, desc=desc, ident=self.ident)
@@ -235,6 +258,25 @@ class Plot:
         centre = (self.top + self.height - self.bottom) / 2
         parts.append(svg.text(14, centre, self.y.label, anchor="middle", fill=MUTED, upright=True))
         return svg.group(*parts)
+
+    def _beside(self, levels: Sequence[Beside]) -> str:
+        """Each at the height of its level, or as near to it as the others leave room."""
+        right, bottom = self.at(self.x.high, self.y.low)
+        _, top = self.at(self.x.high, self.y.high)
+        wanted = [(self.at(self.x.high, one.y)[1], one) for one in levels]
+        placed: list[float] = []
+        ordered = sorted(wanted, key=lambda each: each[0])
+        for py, _ in ordered:
+            placed.append(max(py, top, placed[-1] + _LINE if placed else top))
+        limit = bottom
+        for at in reversed(range(len(placed))):
+            placed[at] = min(placed[at], limit)
+            limit = placed[at] - _LINE
+        words = [
+            svg.text(right + _GAP, py + 4, one.words, fill=one.colour)
+            for py, (_, one) in zip(placed, ordered, strict=True)
+        ]
+        return svg.group(*words) if words else ""
 
     def _legend(self, entries: Sequence[Entry]) -> str:
         """In a row above the frame, from the left, into a second row where the first is full."""

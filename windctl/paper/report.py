@@ -253,8 +253,8 @@ def _settings(coil: CoilFacts, recipe: object) -> Markup:
         ("begun", head.started[:16].replace("T", " ")),
         ("ended", (head.ended or "")[:16].replace("T", " ")),
         ("windctl", started.version),
-        ("recipe's digest", started.recipe_digest[:16]),
-        ("guide's program", started.program_digest[:16]),
+        ("recipe's digest", tag("span", started.recipe_digest[:16], class_="digest")),
+        ("guide's program", tag("span", started.program_digest[:16], class_="digest")),
     ]
     tables = [pairs("coil", [row for row in rows if row[1]])]
     if isinstance(recipe, dict):
