@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import gc
 import html
 import json
 import re
@@ -197,12 +198,14 @@ async def test_left_while_turning_it_is_held_and_said_first_at_the_next_start(
         await to_the_machine(app, pilot)
         run = app.session.run
         assert run is not None
+        assert gc.get_freeze_count() > 10_000  # what was there before is not looked through while it turns
         await until(pilot, lambda: run.winding.look().turns > 5)
         await press(pilot, "f10")
         await until(pilot, lambda: isinstance(app.screen, Confirm))
         await press(pilot, "y")
         await until(pilot, lambda: app.return_code is not None or not app.is_running)
     assert run.outcome is not None
+    assert gc.get_freeze_count() == 0
     assert (run.outcome.left, run.outcome.summary.outcome) == ("held", "open")
     assert f"windctl resume {run.card.number}" in app.farewell
 

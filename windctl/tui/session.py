@@ -19,6 +19,7 @@ from windctl.desk.numbers import ohm
 from windctl.desk.simulated_leads import SimulatedLeads
 from windctl.errors import RecordBroken
 from windctl.run.requests import DryPass, Hold, ZeroContact
+from windctl.tui import collector
 from windctl.tui.before_words import First, Repeats
 from windctl.tui.cards import card_for
 from windctl.tui.pictures.curve import Point
@@ -205,6 +206,7 @@ class Session(Records):
             run.hand = self._bench.hand
             if self._bench.connect is not None:
                 run.leads = SimulatedLeads(self._bench.connect)
+        collector.set_aside()
         run.winding.start()
         with self._lock:
             self._stack = stack.pop_all()
@@ -240,6 +242,7 @@ class Session(Records):
                         really = ohm(truth.true_dcr_20c_ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
                         run.truth = f"{truth.true_turns:.2f} turns, {really} at 20 °C"
                     stack.close()
+                    collector.take_back()
             return run.outcome
 
     def leave(self, reason: str) -> Outcome | None:

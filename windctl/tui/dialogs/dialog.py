@@ -11,6 +11,7 @@ from textual.screen import ModalScreen
 from textual.widget import Widget
 from textual.widgets import Static
 
+from windctl.tui.drawn import forget_drawn
 from windctl.tui.keymap import key
 
 Answer = TypeVar("Answer")
@@ -32,6 +33,10 @@ class Dialog(ModalScreen[Answer], Generic[Answer]):
             yield Static(self.words, classes="words", markup=False)
             yield from self.body()
             yield Static(self.how(), classes="how", markup=False)
+
+    def on_screen_suspend(self) -> None:
+        """What was drawn is not kept."""
+        forget_drawn()
 
     def body(self) -> list[Widget]:
         """What stands below the words."""

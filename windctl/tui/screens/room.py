@@ -6,9 +6,9 @@ from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
 from textual.screen import Screen
-from textual.widget import Widget
-from textual.widgets import Footer
 
+from windctl.tui.drawn import forget_drawn
+from windctl.tui.widgets.key_bar import KeyBar
 from windctl.tui.widgets.title_bar import TitleBar
 
 if TYPE_CHECKING:
@@ -28,12 +28,11 @@ class Room(Screen[None]):
         """Top row, body, keys."""
         yield self.top()
         yield from self.body()
-        yield Footer(show_command_palette=False)
+        yield KeyBar()
 
     def on_screen_suspend(self) -> None:
-        """What was drawn is not kept: the library holds on to the lines of a thousand widgets gone by."""
-        for widget in self.walk_children(Widget, with_self=True):
-            widget.refresh()
+        """What was drawn is not kept."""
+        forget_drawn()
 
     def top(self) -> TitleBar:
         """The top row."""
