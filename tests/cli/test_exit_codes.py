@@ -101,6 +101,26 @@ def test_an_unforeseen_error_says_where_the_log_is_and_the_log_holds_the_traceba
     assert "by nought" in log
 
 
+@pytest.mark.parametrize(
+    ("typed", "meant"), [("wnd", "wind"), ("coil", "coils"), ("spools", "spool"), ("go", "")]
+)
+def test_a_command_that_was_meant_is_named(
+    capsys: pytest.CaptureFixture[str], typed: str, meant: str
+) -> None:
+    assert main.run([typed]) == 2
+    told = capsys.readouterr().err
+    assert f"No such command {typed!r}." in told
+    assert (f"Did you mean {meant!r}?" in told) if meant else ("Did you mean" not in told)
+
+
+@pytest.mark.parametrize("group", ["coils", "spool", "machine", "recipe"])
+def test_the_list_of_a_groups_commands_is_not_cut_short(
+    capsys: pytest.CaptureFixture[str], group: str
+) -> None:
+    assert main.run([group, "--help"]) == 0
+    assert "..." not in capsys.readouterr().out.partition("Commands:")[2]
+
+
 def test_usage_errors_name_the_way_to_help(capsys: pytest.CaptureFixture[str]) -> None:
     assert main.run(["wind"]) == 2
     assert main.run(["no-such-command"]) == 2

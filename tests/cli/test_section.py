@@ -105,7 +105,7 @@ def test_plan_draws_it_in_plain_text_into_a_pipe(tmp_path: Path, capsys: pytest.
     assert "base (start)" in shown
     assert re.search(r"^8\.5 mm \|", shown, re.MULTILINE)
     assert re.search(
-        r"section through a long side, where the winding stands highest: \d\.\d\d mm of 8\.5 mm", shown
+        r"section through a long side, where the winding stands highest: \d\.\d ± \d\.\d mm of 8\.5 mm", shown
     )
     assert "unevenness" in shown
     assert "\x1b" not in shown

@@ -102,7 +102,7 @@ def test_a_second_signal_while_the_hold_is_on_its_way_is_told_so() -> None:
     run, face = Slow([TURNING] * 50, strike), Said()
     watch.stand_by(run, face, None)
     assert len(run.requests) == 1
-    assert face.lines == ["SIGINT: holding", "already stopping; if it does not stop, use the hardware stop"]
+    assert face.lines == ["Ctrl-C: holding", "already stopping; if it does not stop, use the hardware stop"]
 
 
 @pytest.fixture

@@ -79,6 +79,15 @@ def test_quiet_is_quiet(tmp_path: Path, book: Path, capsys: Printed) -> None:
     assert [line for line in capsys.readouterr().err.splitlines() if not line.startswith("caution:")] == []
 
 
+def test_a_dry_run_needs_no_port(tmp_path: Path, capsys: Printed) -> None:
+    profile = tmp_path / "north.toml"
+    profile.write_text('format = 1\nname = "north"\n[spindle]\ndrive = "step"\ncounts_per_turn = 400\n')
+    recipe = str(recipes.to_turns(tmp_path))
+    assert run(["wind", recipe, "--machine", str(profile), "--dry-run"]) == 0
+    assert "nothing was moved or recorded" in capsys.readouterr().out
+    assert run(["wind", recipe, "--machine", str(profile)]) == 4
+
+
 def test_a_dry_run_leaves_no_trace(tmp_path: Path, book: Path, capsys: Printed) -> None:
     recipe = str(recipes.to_turns(tmp_path))
     assert run(["wind", recipe, "--machine", "virtual", "--book", str(book), "--dry-run"]) == 0
@@ -137,7 +146,7 @@ def test_a_signal_leaves_a_held_and_recorded_coil(tmp_path: Path, book: Path, na
     said = interrupted(
         recipes.to_turns(tmp_path), book, getattr(signal, name), "--machine", "virtual", "--speed", "2"
     )
-    assert f"{name}: holding" in said
+    assert f"{'Ctrl-C' if name == 'SIGINT' else name}: holding" in said
     with open_book(book) as opened:
         (head,) = opened.open_coils()
         kinds = [event.kind for event in opened.events(head.number)]
@@ -154,8 +163,7 @@ def test_a_simulated_coil_that_was_left_goes_on_only_at_a_confirmed_turn(
     common = ["resume", "--book", str(book)]
     assert run(common) == 2
     told = capsys.readouterr().err
-    assert "--at-turn" in told
-    stands = re.findall(r"the record ends at turn ([\d.]+)", told)[0]
+    (stands,) = re.findall(rf"windctl resume {head.number} --at-turn ([\d.]+)", told)
     assert run([*common, "--at-turn", stands, "--dry-run"]) == 0
     capsys.readouterr()
     assert run([*common, "--at-turn", stands, "--json"]) == 0

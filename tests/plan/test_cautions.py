@@ -26,7 +26,7 @@ def test_an_ordinary_coil_on_a_full_machine_has_none() -> None:
 @pytest.mark.parametrize(
     ("changes", "says"),
     [
-        ({"bobbin__flange_depth_mm": "5.3"}, r"a tight fit: the long sides build up to 4\.9"),
+        ({"bobbin__flange_depth_mm": "5.3"}, r"a tight fit: the long sides build up to 5\.0"),
         ({"bobbin__flange_depth_mm": "4.0"}, "it will not fit: .* flange is only 4 mm deep; about 6"),
         (
             {"tension__set_cn": "20.0"},

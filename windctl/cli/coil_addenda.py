@@ -37,7 +37,7 @@ def _keep(shared: Shared, book: Book, coil: str, fact: Addendum) -> None:
     present.result(f"{head.number}: {fact.kind.removeprefix('coil_')}")
 
 
-@click.command()
+@click.command(short_help="Write something down beside a closed record.")
 @click.argument("coil")
 @click.argument("text")
 @by_option
@@ -52,7 +52,7 @@ def note(shared: Shared, coil: str, text: str, by: str | None) -> None:
         _keep(shared, book, coil, CoilNoted(*signed(by), text.strip()))
 
 
-@click.command()
+@click.command(short_help="Take out what a coil has taught, or let it teach again.")
 @click.argument("coil")
 @click.option("--reason", metavar="TEXT", required=True, help="Why.")
 @click.option("--undo", is_flag=True, help="Let a withdrawn coil teach again.")

@@ -13,7 +13,7 @@ from windctl.desk.books import book_to_read, where_the_book_is
 _file = click.Path(dir_okay=False, path_type=Path)
 
 
-@click.command()
+@click.command(short_help="Copy the whole book, and verify the copy.")
 @click.argument("to", metavar="FILE", type=_file)
 @click.option("--replace", is_flag=True, help="Write over FILE.")
 @takes("book", "json")
@@ -30,7 +30,7 @@ def backup(shared: Shared, to: Path, replace: bool) -> None:
         present.result(f"{present.counted(report.checked, 'coil')} in {to}, all verified")
 
 
-@click.command()
+@click.command(short_help="Make a backup the book.")
 @click.argument("backup_file", metavar="FILE", type=click.Path(exists=True, dir_okay=False, path_type=Path))
 @click.option("--replace", is_flag=True, help="Put it in the place of the book there is, which is kept.")
 @takes("book", "json")

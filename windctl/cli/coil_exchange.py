@@ -33,7 +33,7 @@ _SAYS = {
 }
 
 
-@click.command()
+@click.command(short_help="Whole records as JSON, for another book.")
 @click.argument("coil", nargs=-1)
 @click.option("--query", metavar="QUERY", help="The coils that this asks for, as in 'windctl coils list'.")
 @click.option("--to", "path", metavar="FILE", type=click.Path(dir_okay=False, path_type=Path),
@@ -99,7 +99,7 @@ def _write(path: Path, lines: Iterable[bytes]) -> int:
     return size
 
 
-@click.command("import")
+@click.command("import", short_help="Take over exported coils.")
 @click.argument("path", metavar="FILE", type=click.Path(exists=True, dir_okay=False, path_type=Path))
 @click.option("--teach", is_flag=True,
               help="Let them teach here too; spools of one name are taken for one spool.")  # fmt: skip

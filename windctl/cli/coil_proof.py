@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from windctl.book.verify import BrokenCoil
 
 
-@click.command()
+@click.command(short_help="Check records against their digests.")
 @click.argument("what", metavar="[COIL|FILE]...", nargs=-1)
 @click.option("--digest", metavar="HEX",
               help="The digest that the record of COIL must have, from a report or label; "

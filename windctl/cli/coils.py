@@ -36,7 +36,7 @@ def coils() -> None:
     """The coil book: every coil that was wound, and how."""
 
 
-@coils.command("list")
+@coils.command("list", short_help="The coils in the book, the latest first.")
 @click.argument("query", nargs=-1)
 @click.option("--sort", default="", metavar="FIELDS",
               help="Sort by these, with commas between, - before one for the largest first: "
@@ -128,7 +128,7 @@ def _resistance(head: CoilHead | CoilLine) -> str:
     return present.ohm(head.dcr_20c_ohm, head.dcr_u95_ohm or 0.0)
 
 
-@coils.command()
+@coils.command(short_help="Everything known of one coil.")
 @click.argument("coil")
 @takes("book", "json")
 def show(shared: Shared, coil: str) -> None:

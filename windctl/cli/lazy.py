@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import difflib
 import importlib
 from collections.abc import Mapping
 from typing import Any
@@ -23,6 +24,16 @@ class LazyGroup(click.Group):
     def list_commands(self, ctx: click.Context) -> list[str]:
         """Names in the order of the table: the order in which a newcomer needs them."""
         return [*self._lazy, *super().list_commands(ctx)]
+
+    def resolve_command(
+        self, ctx: click.Context, args: list[str]
+    ) -> tuple[str | None, click.Command | None, list[str]]:
+        """As click does it, with what was probably meant where there is no such command."""
+        if self.get_command(ctx, args[0]) is None and not args[0].startswith("-"):
+            meant = difflib.get_close_matches(args[0], self.list_commands(ctx), n=1, cutoff=0.5)
+            guess = f" Did you mean {meant[0]!r}?" if meant else ""
+            ctx.fail(f"No such command {args[0]!r}.{guess}")
+        return super().resolve_command(ctx, args)
 
     def get_command(self, ctx: click.Context, cmd_name: str) -> click.Command | None:
         """The command itself, imported now; None if there is no such name."""

@@ -22,7 +22,7 @@ def machine() -> None:
 machine.add_command(check)
 
 
-@machine.command("list")
+@machine.command("list", short_help="The machines that have a profile.")
 @takes("json")
 def list_(shared: Shared) -> None:
     """The machines that have a profile; the usual one is marked."""
@@ -59,7 +59,7 @@ def _no_port(one: KnownMachine) -> str:
     return "none: its counter is read by eye" if one.by_eye else ""
 
 
-@machine.command()
+@machine.command(short_help="The serial ports, and what is on them.")
 @takes("json")
 def ports(shared: Shared) -> None:
     """The serial ports of this computer: what is on them, whose profile names them, and who has them."""
@@ -119,7 +119,7 @@ def _owners() -> dict[str, list[str]]:
     return owners
 
 
-@machine.command()
+@machine.command(short_help="The simulated board as a process of its own.")
 @click.option(
     "--recipe",
     type=click.Path(path_type=Path),

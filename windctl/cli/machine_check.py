@@ -29,7 +29,7 @@ _LISTEN_S = 0.01
 _LAST_S = 30.0  # for the drives to go off after an interruption
 
 
-@click.command("check")
+@click.command("check", short_help="Try a board and its machine step by step.")
 @click.option("--step", "steps", multiple=True, metavar="STEP", help="Only this step; may be repeated.")
 @click.option("--still", is_flag=True, help="Only the steps that power no drive.")
 @click.option(

@@ -172,7 +172,7 @@ def _write(file: Path, text: str) -> None:
         raise WindctlError(f"{file} cannot be written: {error.strerror or error}") from error
 
 
-@click.command()
+@click.command(short_help="Part a coil from the one it goes with.")
 @click.argument("coil")
 @click.option("--reason", metavar="TEXT", required=True, help="Why.")
 @by_option

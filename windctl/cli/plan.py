@@ -37,7 +37,10 @@ _Z95 = 1.959964  # two-sided 95 % of a normal distribution
 )
 @takes("machine", "readings", "spool", "book", "json", "no_input")
 def plan(shared: Shared, recipe: Path, turns: int | None, dcr_ohm: float | None) -> None:
-    """What the coil of RECIPE will be: turns, resistance, wire, fit, time, and what can go wrong."""
+    """What the coil of RECIPE will be: turns, resistance, wire, fit, time, and what can go wrong.
+
+    ± is half of the 95 % interval, here and wherever windctl writes it.
+    """
     from windctl.desk.supply import supply_of
     from windctl.plan.make import make_plan
     from windctl.recipe.load import load_recipe
@@ -73,18 +76,22 @@ def _check(made: Plan, recipe: Recipe) -> Check | None:
 
 def show_plan(made: Plan, recipe: Recipe) -> None:
     """The plan as a table for people, and its section; ± is the half-width of the 95 % interval."""
-    resistance = present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)
-    highest = f"{made.peak_build_mm:.2f} mm at its highest (unevenness {100 * made.unevenness:.0f} %)"
+    resistance = f"{present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)} at 20 °C"
+    if made.target_kind == "dcr_20c_ohm":
+        meant = f"{present.ohm(made.target_value)} at 20 °C, the target"
+        resistance = f"{meant}; {resistance} after just {present.turns(made.turns)}"
+    build = _millimetres(made.build_mm, made.build_sd_mm)
+    highest = f"{made.peak_build_mm:.1f} mm at its highest (unevenness {100 * made.unevenness:.0f} %)"
     peak = f"{made.wire_speed_peak_m_s:.1f} m/s twice a turn"
     segments = present.grouped(made.program.segments)
     present.result(made.recipe_name)
     present.pairs(
         [
             ("turns", present.turns(made.turns, _Z95 * made.turns_sd)),
-            ("resistance", f"{resistance} at 20 °C"),
+            ("resistance", resistance),
             ("wire", f"{present.grouped(made.wire_length_m, 1)} m, {made.wire_mass_g:.1f} g"),
             ("mean turn", f"{made.mean_turn_mm:.1f} mm"),
-            ("build", f"{made.build_mm:.2f} mm, {highest}"),
+            ("build", f"{build}, {highest}"),
             ("fits", made.fits),
             ("time", present.duration(made.duration_s)),
             ("wire speed", f"{made.wire_speed_mean_m_s:.1f} m/s, {peak}"),
@@ -97,6 +104,10 @@ def show_plan(made: Plan, recipe: Recipe) -> None:
         present.result(f"caution: {warning}")
 
 
+def _millimetres(value: float, sd: float) -> str:
+    return present.with_uncertainty(value, _Z95 * sd, "mm", most_decimals=1)
+
+
 def _learnt(made: Plan) -> list[tuple[str, str]]:
     """What the plan rests on besides recipe and tables."""
     from windctl.plan.experience.reel import coils_left
@@ -105,9 +116,9 @@ def _learnt(made: Plan) -> list[tuple[str, str]]:
     rows = []
     if learnt.spool:
         per_m = f"{made.ohm_per_m:.4g} ohm/m"
-        rows.append(
-            ("spool", f"{learnt.spool}, {per_m}, known from {present.counted(learnt.spool_coils, 'coil')}")
-        )
+        coils = learnt.spool_coils
+        known = f"known from {present.counted(coils, 'coil')}" if coils else "no coil from it has taught yet"
+        rows.append(("spool", f"{learnt.spool}, {per_m}, {known}"))
         if learnt.left is not None:
             left = present.with_uncertainty(max(learnt.left.metres, 0.0), _Z95 * learnt.left.sd, "m")
             such = present.counted(coils_left(learnt.left, made.wire_length_m), "such coil")
@@ -129,7 +140,7 @@ def _show_section(made: Plan, recipe: Recipe) -> None:
     for line in drawn(section, Pen.of(sys.stdout, os.environ)):
         present.result(line)
     present.result(
-        f"section through a long side, where the winding stands highest: {made.side_build_mm:.2f} mm of "
-        f"{bobbin.flange_depth_mm:g} mm"
+        "section through a long side, where the winding stands highest: "
+        f"{_millimetres(made.side_build_mm, made.side_build_sd_mm)} of {bobbin.flange_depth_mm:g} mm"
     )
     present.result()

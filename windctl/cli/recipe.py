@@ -16,7 +16,7 @@ def recipe() -> None:
     """Recipe files."""
 
 
-@recipe.command()
+@recipe.command(short_help="Everything that is wrong with recipe files.")
 @click.argument("files", metavar="FILE...", type=click.Path(path_type=Path), nargs=-1, required=True)
 @takes("json")
 def check(shared: Shared, files: tuple[Path, ...]) -> ExitCode:
@@ -46,7 +46,7 @@ def check(shared: Shared, files: tuple[Path, ...]) -> ExitCode:
     return ExitCode.FILE_INVALID if problems else ExitCode.DONE
 
 
-@recipe.command()
+@recipe.command(short_help="The JSON schema of recipe files, for editors.")
 def schema() -> None:
     """The JSON schema of recipe files, for editors: they complete, explain and check while you write.
 
@@ -60,7 +60,7 @@ def schema() -> None:
     click.echo(json.dumps(form_schema(Recipe), indent=2))
 
 
-@recipe.command()
+@recipe.command(short_help="Ask a few questions and write a recipe.")
 @click.argument("file", type=click.Path(dir_okay=False, path_type=Path))
 @takes("json", "no_input")
 def new(shared: Shared, file: Path) -> None:

@@ -17,7 +17,7 @@ def spool() -> None:
     """Wire spools: what is left, and what their coils have taught."""
 
 
-@spool.command()
+@spool.command(short_help="Keep a new spool of wire.")
 @click.argument("spool_id", metavar="[ID]", required=False)
 @click.option("--gauge", metavar='"AWG N"', help='Bare size by number, such as "AWG 42".')
 @click.option("--diameter", "diameter_mm", type=typed.FiniteRange(min=0.01, max=1), metavar="MM",
@@ -70,7 +70,7 @@ def add(
     _tell(shared, name)
 
 
-@spool.command("list")
+@spool.command("list", short_help="The spools, and what is left on each.")
 @takes("book", "json")
 def list_(shared: Shared) -> None:
     """The spools in the book, what is left on each, and for how many coils."""
@@ -101,7 +101,7 @@ def list_(shared: Shared) -> None:
     )
 
 
-@spool.command()
+@spool.command(short_help="Everything known of one spool.")
 @click.argument("spool_id", metavar="ID")
 @takes("book", "json")
 def show(shared: Shared, spool_id: str) -> None:
@@ -109,7 +109,7 @@ def show(shared: Shared, spool_id: str) -> None:
     _tell(shared, spool_id)
 
 
-@spool.command()
+@spool.command(short_help="What the wire on it weighs now.")
 @click.argument("spool_id", metavar="ID")
 @click.argument("grams", metavar="G", type=typed.FiniteRange(min=0))
 @click.option("--sd", "sd_g", type=typed.FiniteRange(min=0, min_open=True), default=SCALE_SD_G,
@@ -123,7 +123,7 @@ def weigh(shared: Shared, spool_id: str, grams: float, sd_g: float) -> None:
     _tell(shared, spool_id)
 
 
-@spool.command()
+@spool.command(short_help="Ohm per metre from a piece of its loose end.")
 @click.argument("spool_id", metavar="ID")
 @click.option("--length", "metres", type=typed.FiniteRange(min=0, min_open=True), required=True, metavar="M",
               help="Length of the measured piece, m.")  # fmt: skip

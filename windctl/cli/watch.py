@@ -101,11 +101,14 @@ class _Stops:
             self._run.request(Hold("operator", f"interrupted by {self.signal}", leave=True))
         self._heard += 1
 
+    def _named(self) -> str:
+        return "Ctrl-C" if self.signal == "SIGINT" else str(self.signal)
+
     def news(self) -> str | None:
         """What to say about signals not told of yet."""
         if self._heard == self._told:
             return None
-        words = _STOPPING_ALREADY if self._told else f"{self.signal}: holding"
+        words = _STOPPING_ALREADY if self._told else f"{self._named()}: holding"
         self._told = self._heard
         return words
 

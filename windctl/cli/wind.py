@@ -60,11 +60,11 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
         raise click.UsageError("--of says how many coils a batch is to have: name the batch with --batch.")
     text = read_text(recipe, RecipeError)
     wanted, profile = parse_recipe(text, str(recipe)), profile_of(shared)
+    if shared.dry_run:  # which needs no port either
+        return _dry_run(shared, make_plan(wanted, profile, supply=supply_of(shared, profile, wanted)), wanted)
     simulated = simulated_here(shared, profile)
     supply = supply_of(shared, profile, wanted, simulated=simulated)
     plan = make_plan(wanted, profile, supply=supply)
-    if shared.dry_run:
-        return _dry_run(shared, plan, wanted)
     _somebody_types(shared, profile)
     _before(shared, plan)
     with (
@@ -80,7 +80,7 @@ def wind(shared: Shared, recipe: Path) -> ExitCode:
             batch=shared.batch or "",
             of=shared.of or 0,
         )
-        return _stand_by(shared, begin(order, book, bench.port, bench.here), bench)
+        return _stand_by(shared, begin(order, book, bench.port, bench.here), bench, wanted)
 
 
 @click.command(short_help="Go on after an interruption.")
@@ -112,7 +112,7 @@ def resume(shared: Shared, coil: str | None) -> ExitCode:
     recipe = parse_recipe(started.recipe_text, head.number)
     with open_bench(shared, profile, simulated, recipe, started) as bench, book_to_write(shared) as book:
         winding = go_on(head.number, book, bench.port, bench.here, shared.at_turn)
-        return _stand_by(shared, winding, bench)
+        return _stand_by(shared, winding, bench, recipe)
 
 
 def _dry_run(shared: Shared, plan: Plan, recipe: Recipe) -> ExitCode:
@@ -143,7 +143,7 @@ def _before(shared: Shared, plan: Plan) -> None:
         present.message(f"{plan.recipe_name}: {goal}, {present.duration(plan.duration_s)} of winding")
 
 
-def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
+def _stand_by(shared: Shared, winding: Winding, bench: Bench, recipe: Recipe) -> ExitCode:
     """Watch the run to its end, tell how it went, and with which code."""
     from windctl.cli.progress import face_for
     from windctl.cli.prompt import Prompt
@@ -175,15 +175,15 @@ def _stand_by(shared: Shared, winding: Winding, bench: Bench) -> ExitCode:
     if shared.json:
         present.result_json(answer)
     else:
-        _show(outcome, answer)
+        _show(outcome, answer, recipe.stop.tolerance_pct)
     if faults:
         present.message(f"The log has the details: {faults[0]}")
     if stuck is not None and outcome.error is None:
         raise stuck
-    return _ending(outcome, bench.profile.by_eye)
+    return _ending(outcome, bench)
 
 
-def _show(outcome: Outcome, answer: dict[str, Any]) -> None:
+def _show(outcome: Outcome, answer: dict[str, Any], tolerance_pct: float) -> None:
     """How it went, for people."""
     summary = outcome.summary
     rows = [("coil", outcome.number), ("outcome", f"{summary.outcome}: {answer['reason']}")]
@@ -192,7 +192,8 @@ def _show(outcome: Outcome, answer: dict[str, Any]) -> None:
     if summary.dcr_20c_ohm:
         rows.append(("resistance", f"{present.ohm(summary.dcr_20c_ohm, summary.dcr_u95_ohm or 0)} at 20 °C"))
     aim = present.turns if summary.target_kind == "turns" else present.ohm
-    rows.append(("target", f"{aim(summary.target_value)}: {summary.verdict}"))
+    target = f"{aim(summary.target_value)}, give or take {tolerance_pct:g} %"
+    rows.append(("target", f"{target}: {summary.verdict}"))
     if outcome.record_digest:
         rows.append(("record", present.short_digest(outcome.record_digest)))
     if "plant" in answer:
@@ -218,16 +219,22 @@ def _show_waiting(outcome: Outcome) -> None:
     present.result(f"keep the reading: windctl coils measure {outcome.number} --ohm OHM --celsius C")
 
 
-def _ending(outcome: Outcome, by_eye: bool) -> ExitCode:
+def _ending(outcome: Outcome, bench: Bench) -> ExitCode:
     """The exit code, and what to do next where the coil is not finished."""
     go_on = f"windctl resume {outcome.number}"
     match outcome.left:
         case "finished":
             return code_for_coil(outcome.summary.outcome, outcome.summary.verdict)
         case "held":
-            stands = "Stop your own motor" if by_eye else "The spindle stands"
+            stands = "Stop your own motor" if bench.profile.by_eye else "The spindle stands"
             present.message(f"{stands}, the coil stays open: {go_on}")
             return ExitCode.INTERRUPTED
+        case "turn wanted" if bench.truth is not None and outcome.summary.turns is not None:
+            turn = f"{outcome.summary.turns:.2f}".rstrip("0").rstrip(".")
+            raise UsageError(
+                "the simulated machine and its count ended with the command that wound; its coil is where "
+                f"the record ends: {go_on} --at-turn {turn}"
+            )
         case "turn wanted":
             raise UsageError(f"{outcome.why}. Count the turns and say: {go_on} --at-turn N")
         case "unconfirmed":

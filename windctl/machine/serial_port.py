@@ -164,6 +164,7 @@ def open_serial(url: str, baud: int) -> Line:
 
 def _cannot_open(url: str, baud: int, error: Exception) -> str:
     import errno
+    import os
 
     code = getattr(error, "errno", None)
     cause = error.__cause__ or error.__context__ or error
@@ -175,4 +176,6 @@ def _cannot_open(url: str, baud: int, error: Exception) -> str:
         )
     else:
         advice = "`windctl machine ports` lists the ports there are"
-    return f"cannot open port {url} at {baud} baud: {error}; {advice}"
+    # pyserial wraps the system's words in its own, with the number and the name twice
+    why = "there is no such port" if code == errno.ENOENT else os.strerror(code) if code else str(error)
+    return f"cannot open port {url} at {baud} baud: {why}; {advice}"

@@ -64,7 +64,7 @@ def _fit(outlook: Outlook) -> Iterator[str]:
     if fit.fits == "yes":
         return
     figures = (
-        f"the long sides build up to {fit.side_build_mm:.2f} mm, give or take {2 * fit.side_sd_mm:.2f} mm"
+        f"the long sides build up to {fit.side_build_mm:.1f} mm, give or take {2 * fit.side_sd_mm:.1f} mm"
     )
     if fit.fits == "tight":
         yield f"a tight fit: {figures}, and the flange is {fit.room_mm:g} mm deep"

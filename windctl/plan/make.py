@@ -136,8 +136,10 @@ def make_plan(
         packing=packing,
         packing_sd=min(beliefs.packing_sd, packing * known.packing.sd),  # the latter has the crown in it
         build_mm=build,
+        build_sd_mm=build * build_rel,
         peak_build_mm=build * laid.peak,
         side_build_mm=fit.side_build_mm,
+        side_build_sd_mm=fit.side_sd_mm,
         crown=laid.crown,
         unevenness=laid.unevenness,
         build_profile_mm=tuple(float(part) * build for part in laid.profile(_PROFILE_PARTS)),

@@ -48,8 +48,10 @@ class Plan:
     packing: float
     packing_sd: float
     build_mm: float  # mean over the gap
+    build_sd_mm: float
     peak_build_mm: float  # the highest place along the gap
     side_build_mm: float  # that, bulging on the long sides: what must stay below the flange's edge
+    side_build_sd_mm: float
     crown: float  # h * integral of the squared lay density: 1 is flat
     unevenness: float  # relative standard deviation of the build along the gap
     build_profile_mm: tuple[float, ...]  # from the start flange to the other, in equal parts of the gap
@@ -85,8 +87,10 @@ class Plan:
             "packing": self.packing,
             "packing_sd": self.packing_sd,
             "build_mm": self.build_mm,
+            "build_sd_mm": self.build_sd_mm,
             "peak_build_mm": self.peak_build_mm,
             "side_build_mm": self.side_build_mm,
+            "side_build_sd_mm": self.side_build_sd_mm,
             "crown": self.crown,
             "unevenness": self.unevenness,
             "build_profile_mm": list(self.build_profile_mm),
