@@ -121,10 +121,10 @@ def bench(text: str, book: Path, profile: MachineProfile, faster: float = FASTER
 
 
 @contextmanager
-def gone_on(coil: str, book: Path, prior: Prior) -> Iterator[Bench]:
-    """The same coil in another run, which says nothing of the turn."""
+def gone_on(coil: str, book: Path, prior: Prior, at_turn: float | None = None) -> Iterator[Bench]:
+    """The same coil in another run, which says nothing of the turn unless it is given."""
     with open_book(book) as opened:
-        winding = go_on(coil, opened, port(), here(2))
+        winding = go_on(coil, opened, port(), here(2), at_turn)
         with _running(Bench(winding, TrueCoil(prior), opened)) as at:
             yield at
 
@@ -133,7 +133,7 @@ def gone_on(coil: str, book: Path, prior: Prior) -> Iterator[Bench]:
 def _running(at: Bench) -> Iterator[Bench]:
     at.winding.start()
     try:
-        until(lambda: at.winding.look().asks is not None)
+        until(lambda: at.winding.look().asks is not None or at.winding.wait(0.0) is not None)
         yield at
     finally:
         at.close()

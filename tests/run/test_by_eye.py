@@ -20,7 +20,19 @@ from windctl.record.events import (
     StatusHeard,
 )
 from windctl.record.fold import replay
-from windctl.run.requests import CountIs, DrivesOff, End, Go, Hold, Skip, Slower, Splice, TakeBack, Unwind
+from windctl.run.requests import (
+    CountIs,
+    DrivesOff,
+    End,
+    Go,
+    Hold,
+    Read,
+    Skip,
+    Slower,
+    Splice,
+    TakeBack,
+    Unwind,
+)
 
 
 def test_a_whole_coil_to_a_resistance_with_two_typed_readings(tmp_path: Path) -> None:
@@ -255,3 +267,29 @@ def test_a_first_number_is_no_reason_to_ask(tmp_path: Path) -> None:
     """Somebody may wind all of it before they type at all."""
     with bench(TO_TURNS, tmp_path / "a.book", counts_only()) as at:
         assert at.says(CountIs("operator", 795)).answer == "noted: 795 turns"
+
+
+def test_a_reading_that_the_coil_cannot_have_is_told_as_an_alarm_and_taken_back(tmp_path: Path) -> None:
+    """A turn that was typed wrong shows in the next reading."""
+    with bench(TO_RESISTANCE, tmp_path / "a.book", checks()) as at:
+        at.counter(2000)
+        at.reads()
+        at.counter(4400)  # 3400 was meant
+        shown = at.coil.shown(3400, 22.0)
+        seen = at.says(Read("operator", shown, 22.0))
+        assert "does not fit the expected" in seen.answer
+        assert seen.alarm.endswith("is not used: measure again, and check the count")
+        seen = at.says(TakeBack("operator"))
+        assert seen.alarm == ""
+        at.counter(3400)
+        assert at.says(Read("operator", shown, 22.0)).readings_used == 2
+
+
+def test_a_turn_that_is_given_on_going_on_may_be_past_the_program(tmp_path: Path) -> None:
+    book = tmp_path / "a.book"
+    with bench(TO_TURNS, book, counts_only()) as at:
+        at.counter(700)
+        number, prior = at.winding.number, at.coil.prior
+    with gone_on(number, book, prior, at_turn=806.0) as at:
+        summary = at.ends().summary
+        assert (summary.turns, summary.verdict) == (806.0, "within")

@@ -14,7 +14,7 @@ from windctl.run.said import Answer
 
 _FAR_PAST = 100  # a hundredth of the way to the stop, and
 _AT_LEAST = 20  # turns: hands and eyes overshoot by less
-_NEVER = 10  # times the turns of the program
+NEVER = 10  # times the turns of the program
 
 UNWIND = "unwind"  # how the reason for hands at the wire begins, where turns are to be taken off
 
@@ -29,7 +29,7 @@ def counter_says(turn: float, by: str, state: State, at_ms: int) -> Answer:
         return Answer(says=f"whole turns are meant: {grouped(low)} or {grouped(low + 1)}")
     started = state.started
     most = 0 if started is None else started.total_counts
-    if not 0 <= whole <= _NEVER * most:
+    if not 0 <= whole <= NEVER * most:
         return Answer(says=f"{grouped(whole)} turns cannot be: this coil has {grouped(most)} at the most")
     if state.doubted != whole:
         doubt = _doubt(whole, state)

@@ -33,6 +33,7 @@ from windctl.record.lesson import lesson_of
 from windctl.record.program import stored
 from windctl.record.summary import CoilSummary, summarise
 from windctl.record.trace import trace_digest
+from windctl.run.counter import NEVER
 from windctl.run.journal import LINGER_S, Journal
 from windctl.run.outcome import Outcome
 from windctl.run.outlook import Ahead
@@ -247,6 +248,8 @@ def go_on(
 
 def _check_turn(at_turn: float | None, started: CoilStarted) -> None:
     most = started.total_counts / started.setup.counts_per_turn
+    if started.counter == "read":
+        most *= NEVER  # hands overshoot, and no board stopped them
     if at_turn is not None and not 0.0 <= at_turn <= most:
         raise UsageError(f"--at-turn is {at_turn:g} turns, outside this coil's 0 to {most:g} turns")
 

@@ -81,6 +81,7 @@ def typed(state: State, event: ReadingTyped) -> State:
         estimate=estimate,
         reading=reading,
         fresh_reading=used,
+        read_last=state.by_eye or state.read_last,  # nothing else will read this coil
         readings_used=state.readings_used + used,
         readings_gated=state.readings_gated + (not used),
         settled_readings=state.settled_readings + used,

@@ -153,9 +153,11 @@ class BeforeScreen(Room):
         return checklist(self.preview.recipe, session.profile, session.simulated, self.first)
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
-        """A dry pass only where a motor guides."""
+        """A dry pass only where a motor guides, a zeroing only where the board's contact reads."""
         if action == "dry_pass":
             return self.session.profile.guide.kind == "step"
+        if action == "zero":
+            return self.session.profile.readings.by_contact
         return super().check_action(action, parameters)
 
     def action_dry_pass(self) -> None:
