@@ -48,6 +48,17 @@ def at_turn(value: float) -> str:
     return grouped(value, 0 if abs(value - round(value)) < 0.05 else 1)
 
 
+def signed_mm(value: float) -> str:
+    """A way with its direction, to a hundredth of a millimetre: `+0.15 mm`, `-0.10 mm`, `0.00 mm`."""
+    sign = "+" if round(value, 2) > 0 else ""
+    return f"{sign}{grouped(value, 2)} mm"
+
+
+def apart(mm: float) -> str:
+    """How two places lie that should be as far apart as planned: `0.20 mm further apart`."""
+    return f"{abs(mm):.2f} mm {'further apart' if mm > 0 else 'nearer together'}"
+
+
 def counted(number: int, what: str) -> str:
     """`no coil`, `1 coil`, `12 coils`."""
     return f"no {what}" if number == 0 else f"{grouped(number)} {what}{'' if number == 1 else 's'}"

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import re
 import signal
+import time
 from pathlib import Path
 from typing import Any
 
@@ -238,3 +239,41 @@ def test_ctrl_c_at_the_terminal_before_the_go_turns_nothing(tmp_path: Path, book
         session.process.send_signal(signal.SIGINT)
         session.ends(130)
         assert bench.plant.truth().true_turns == 0
+
+
+def test_the_flanges_are_taught_by_typed_nudges(tmp_path: Path, book: Path) -> None:
+    """On a machine that is taken for a real one: nothing turns before its own go, and it begins there."""
+    recipe = recipes.to_turns(tmp_path, 30)
+    with (
+        served(recipe, real=True) as (url, bench),
+        at_terminal(
+            "wind", str(recipe), "--machine", "virtual", "--port", url, "--book", str(book), "--json"
+        ) as session,
+    ):
+        session.shows("Type go")
+        session.types("dry pass\n")
+        session.shows("Type go and Enter to let the guide move")
+        session.types("go\n")
+        session.shows("the guide stands at its far end")
+        far = bench.plant.guide.motor
+        session.types("nudge 1,5\n")
+        session.shows("1.5 mm are more than the 1 mm of one nudge")
+        session.types("nudge 0,15\n")
+        session.shows("Nudging has come to +0.15 mm")
+        assert bench.plant.guide.motor == far + 30
+        session.types("seen\n")
+        session.shows("the guide stands at its start")
+        assert bench.plant.guide.motor == 30
+        session.types("nudge -0.05\n")
+        session.shows("Nudging has come to +0.10 mm")
+        session.types("seen\n")
+        session.shows("its far end again, nudged since")
+        session.types("seen\n")
+        until(lambda: bench.plant.guide.motor == 20 and bench.board.state == State.DRIVES_OFF)
+        assert bench.plant.truth().true_turns == 0
+        time.sleep(0.5)  # until it is asked for
+        session.types("go\n")
+        coil = json.loads(session.ends(0))
+    shown = call("coils", "show", coil["coil"], "--book", str(book)).stdout
+    assert "nudged at its far end, by the operator: 0.15 mm towards the far flange" in shown
+    assert "nudged by +0.10 mm in all from where it had been put" in shown

@@ -15,6 +15,7 @@ from windctl.run.requests import (
     Hold,
     NewWire,
     Note,
+    Nudge,
     Read,
     Request,
     Skip,
@@ -53,6 +54,10 @@ from windctl.run.requests import (
         ("Read 5.93 k 22.5 °C", Read(BY, 5930.0, 22.5)),
         ("read 812.4 ohm -3", Read(BY, 812.4, -3.0)),
         ("skip", Skip(BY)),
+        ("nudge 0.1", Nudge(BY, 0.1)),
+        ("Nudge  -0,05", Nudge(BY, -0.05)),
+        ("nudge +1 mm", Nudge(BY, 1.0)),
+        ("nudge \N{MINUS SIGN}.5mm", Nudge(BY, -0.5)),
         ("zero", ZeroContact(BY)),
         ("Together", Together(BY)),
     ],
@@ -78,6 +83,7 @@ def test_a_line_means_one_request(line: str, meant: Request) -> None:
             "unwind all",
         ),
         *("read", "read 0", "read -5k", "read 5.93k warm", "read nan", "read 5M", "skip it"),
+        *("nudge", "nudge left", "nudge --1", "nudge 1 2", "nudge 1 m", "nudge - ", "nudge mm"),
     ],
 )
 def test_what_is_no_word_or_half_of_one_asks_for_nothing(line: str) -> None:
@@ -95,7 +101,6 @@ def test_help_has_every_word_and_every_word_but_help_means_something() -> None:
         assert word.usage in text
         assert word.help in text
         filled = word.usage.replace("[TURN]", "").replace("[NAME]", "").replace("[TURNS]", "")
-        filled = (
-            filled.replace("TURN", "5").replace("TEXT", "x").replace("[CELSIUS]", "").replace("OHM", "5k")
-        )
+        for what, value in (("TURN", "5"), ("TEXT", "x"), ("MM", "1"), ("[CELSIUS]", ""), ("OHM", "5k")):
+            filled = filled.replace(what, value)
         assert (request_of(filled) is None) == (word.name == "help"), filled

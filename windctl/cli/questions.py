@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Protocol
 
 from windctl.cli.progress import Face
 from windctl.cli.prompt import Prompt
+from windctl.desk.numbers import signed_mm
 from windctl.desk.words import BY, help_text, request_of
 from windctl.errors import RunFailed, UsageError, WindctlError
 from windctl.numbers import at_turn
@@ -196,7 +197,11 @@ def _situation(snapshot: Snapshot) -> tuple[object, ...]:
     refused = snapshot.zero.refused if snapshot.zero is not None else ""
     at_the_wire = (snapshot.hands, snapshot.splices, snapshot.wire_ends_at)
     by_eye = (snapshot.turns, snapshot.stop_turn) if snapshot.by_eye else ()
-    return (snapshot.asks, snapshot.drives_off, at_the_wire, refused, by_eye)
+    return (snapshot.asks, snapshot.drives_off, at_the_wire, refused, by_eye, _shift(snapshot))
+
+
+def _shift(snapshot: Snapshot) -> float | None:
+    return None if snapshot.guide_look is None else snapshot.guide_look.shift_mm
 
 
 def _question(snapshot: Snapshot, *, how: bool = True) -> str:
@@ -209,6 +214,12 @@ def _question(snapshot: Snapshot, *, how: bool = True) -> str:
         )
     if snapshot.asks == "place" and snapshot.guide_place_mm is not None:
         lines.append(f"Put the guide {snapshot.guide_place_mm:.2f} mm from where it began.")
+    look = snapshot.guide_look
+    if look is not None and snapshot.asks == "look":
+        if look.shift_mm:
+            lines.append(f"Nudging has come to {signed_mm(look.shift_mm)} from where the guide was put.")
+        if look.apart:
+            lines.append(look.apart)
     if snapshot.turns <= 0 and snapshot.asks == "go":
         start = "Type go and Enter to start; Ctrl-C leaves without turning anything."
         return "\n".join([*lines, start]) if zero is not None and zero.contact_off else start
@@ -227,7 +238,8 @@ _ANSWERS = {
     "leads": "Type together and Enter once they are, and hold them still; skip and Enter leaves them as the "
     f"profile has them. {_MORE}",
     "pass": f"Type go and Enter to let the guide move; {_MORE}",
-    "look": f"Type seen and Enter if so; hold and Enter if not, and put the guide right. {_MORE}",
+    "look": "Type seen and Enter if so. A little off: nudge 0.1 moves it 0.1 mm towards the far flange, "
+    f"nudge -0.1 towards the start flange. Far off: hold and Enter, and put it right. {_MORE}",
     "place": f"Count the turns, then type turn, their number and Enter. {_MORE}",
     "count": "Then type turn, what the counter says and Enter, such as turn 3200; read takes a resistance. "
     f"{_MORE}",

@@ -18,6 +18,7 @@ from windctl.run.requests import (
     Hold,
     NewWire,
     Note,
+    Nudge,
     Read,
     Request,
     Seen,
@@ -75,6 +76,7 @@ WORDS = (
     Word("together", "the contact's leads are together, nothing between them"),
     Word("dry pass", "before the first turn: show the guide at both of its ends, nothing turning"),
     Word("seen", "the guide stands right inside the flange"),
+    Word("nudge MM", "in a dry pass: move the guide to where it is right, - towards the start flange"),
     Word("undo", "take the reading typed last back, until you go on or read again"),
     Word("skip", "pass over the check, or the zeroing, that is asked for"),
     Word("note TEXT", "write something into the record"),
@@ -145,6 +147,12 @@ def _read(rest: str) -> Request | None:
     return Read(BY, ohm, celsius) if ohm > 0 else None
 
 
+def _nudge(rest: str) -> Request | None:
+    sign, figures = (rest[:1], rest[1:].strip()) if rest[:1] in ("+", "-", "\N{MINUS SIGN}") else ("", rest)
+    mm = number(figures.removesuffix("mm").strip())
+    return None if mm is None else Nudge(BY, mm if sign in ("", "+") else -mm)
+
+
 def _note(rest: str) -> Request | None:
     return Note(BY, rest) if rest else None
 
@@ -166,6 +174,7 @@ _MEANS: dict[str, Callable[[str], Request | None]] = {
     "together": _alone(Together(BY)),
     "dry pass": _alone(DryPass(BY)),
     "seen": _alone(Seen(BY)),
+    "nudge": _nudge,
     "undo": _alone(TakeBack(BY)),
     "skip": _alone(Skip(BY)),
     "note": _note,

@@ -6,7 +6,7 @@ import dataclasses
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from windctl.numbers import duration, grouped, ohm, with_uncertainty
+from windctl.numbers import apart, duration, grouped, ohm, signed_mm, with_uncertainty
 from windctl.protocol.messages import Cause, Refusal, Trip
 from windctl.protocol.rules import NO_BOARD_QUEUE
 from windctl.record import events as facts
@@ -146,7 +146,18 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.PassAgreed():
             return f"Go for the guide alone, there and back, given by {by(event.by)}."
         case facts.GuideSeen():
-            return f"The guide was seen to stand right at its {event.end} end, by {by(event.by)}."
+            where = f"The guide was seen to stand right at its {event.end} end, by {by(event.by)}"
+            if event.shift:
+                where += f", nudged by {signed_mm(event.shift_mm)} in all from where it had been put"
+            if event.apart_mm:
+                where += f"; the ends were {apart(event.apart_mm)} than in the program"
+            return f"{where}."
+        case facts.GuideNudged():
+            flange = "far" if event.steps > 0 else "start"
+            return (
+                f"The guide was nudged at its {event.end} end, by {by(event.by)}: {abs(event.mm):.2f} mm "
+                f"towards the {flange} flange."
+            )
         case facts.CheckTaken():
             how = "the coil was read" if event.read else "passed over"
             return f"Check at turn {grouped(event.turn)}: {how}."

@@ -34,9 +34,9 @@ def board_setup(
     """The Setup of a coil. Raises PlanRefused where no board takes its ramps or its pace.
 
     The hard limits are the program's own: the count at which it ends, and the least and greatest
-    position of the guide's motor in it. Without a drive, paces are counts/s, and a turn has as many
-    steps as counts; where nothing follows the spindle either, its speed is the machine's affair and only
-    max_rpm bounds it.
+    position of the guide's motor in it, or what takes up the drive's play before the start. Without a
+    drive, paces are counts/s, and a turn has as many steps as counts; where nothing follows the spindle
+    either, its speed is the machine's affair and only max_rpm bounds it.
     """
     per_turn = steps_per_turn(profile)
     rpm = max(recipe.spindle.start_rpm, recipe.spindle.cruise_rpm, recipe.spindle.finish_rpm)
@@ -63,7 +63,7 @@ def board_setup(
         max_pace=pace,
         accel=accel,
         decel=decel,
-        guide_min=int(program.guide_marks.min()),
+        guide_min=min(int(program.guide_marks.min()), -program.backlash_steps),
         guide_max=int(program.guide_marks.max()),
         slip_counts=max(_LEAST_COUNTS, counts // _SLIP_PART),
         reverse_counts=max(_LEAST_COUNTS, counts // _REVERSE_PART),

@@ -14,6 +14,7 @@ from windctl.protocol.messages import (
     Accepted,
     Capability,
     Go,
+    GuideTo,
     HostMessage,
     Identity,
     InputBit,
@@ -35,7 +36,8 @@ from windctl.protocol.wants import Datum, Permission
 
 @dataclass(frozen=True, slots=True)
 class Declared:
-    """A place in a program that the board has taken, until it turns: see `messages.SetDatum`."""
+    """A place in a program that the board has taken, until it turns or its guide is brought elsewhere: see
+    `messages.SetDatum`."""
 
     program: int
     count: int
@@ -236,7 +238,7 @@ def accepted(picture: BoardPicture, command: HostMessage, answer: Accepted) -> B
             return replace(picture, stop_asked=(command.epoch, command.count))
         case Measure():
             return replace(picture, measuring=command)
-        case Go():
+        case Go() | GuideTo():
             return replace(picture, declared=None)
         case _:
             return picture

@@ -29,6 +29,7 @@ class Datum:
     next: int
     into: int
     given_for: Permission
+    nth: int = 0  # tells a declaration from an equal one before it
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,6 +42,7 @@ class GuidePlace:
     guide: int
     pace: int
     given_for: Permission
+    nth: int = 0  # tells a movement from an equal one before it
 
 
 @dataclass(frozen=True, slots=True)

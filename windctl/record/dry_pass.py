@@ -1,7 +1,9 @@
 """A dry pass: before the first turn the guide goes to its far turn-round and back, and is seen right at both.
+Where it stands a little off it is nudged, and where it then stands is the place that the program means.
 
 It moves something, so it takes a consent of its own, and whatever else happens to the board ends it. The
-guide is then brought back to its start before anything turns.
+guide is then brought back to its start before anything turns. Where the board has lost the guide's place, a
+person puts it to its start by hand, and the pass is made anew.
 """
 
 from __future__ import annotations
@@ -9,9 +11,10 @@ from __future__ import annotations
 from windctl.protocol.messages import Capability, Cause
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Permission
+from windctl.record.guide_way import FAR, HOME, START
 from windctl.record.state import State
 
-FAR, START = "far", "start"
+__all__ = ["FAR", "HOME", "START", "agreed", "arrived", "goal", "may_pass", "nobody_agreed"]
 
 
 def may_pass(state: State) -> bool:
@@ -37,17 +40,19 @@ def agreed(state: State) -> Permission | None:
 def goal(state: State) -> int:
     """Where the guide is to be seen next, in motor steps."""
     assert state.started is not None
-    return 0 if state.seen_far else state.started.setup.guide_max
+    return state.started.setup.guide_max if state.shown.end == FAR else 0
 
 
 def arrived(state: State) -> bool:
     """The guide stands where it is to be seen."""
-    status = state.status
+    status, shown = state.status, state.shown
     return (
         agreed(state) is not None
         and status is not None
         and status.state == BoardState.READY
         and state.standing
+        and not shown.way
+        and shown.end != HOME
         and status.guide == goal(state)
     )
 

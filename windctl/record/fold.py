@@ -28,6 +28,7 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    GuideNudged,
     GuideSeen,
     HandsAsked,
     Held,
@@ -146,6 +147,8 @@ def fold(state: State, event: Event) -> State:
             return replace(state, pass_wanted=True)
         case PassAgreed():
             return dry_pass.agreed(state, event)
+        case GuideNudged():
+            return dry_pass.nudged(state, event)
         case GuideSeen():
             return dry_pass.guide_seen(state, event)
 

@@ -18,7 +18,7 @@ def noticed(state: State, at_ms: int) -> tuple[Event, ...]:
     status = state.status
     if status is None:
         return ()
-    ours = state.fit is Fit.SAME or state.consented_since_greeting
+    ours = state.fit is Fit.SAME or state.consented_since_greeting or state.pass_agreed is not None
     if status.state == BoardState.TRIPPED and state.tripped is None and ours:
         return (Tripped(at_ms, status.count, status.trip),)
     if status.state == BoardState.TURNING and not state.turning and state.consented_since_greeting:

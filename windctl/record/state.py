@@ -32,6 +32,7 @@ from windctl.record.events import (
     ZeroRefused,
     ZeroWanted,
 )
+from windctl.record.guide_way import NOTHING_SHOWN, Shown
 
 
 class Fit(Enum):
@@ -124,7 +125,8 @@ class State:
     doubted: int | None = None  # the turn that was typed last and can hardly be
     pass_wanted: bool = False  # the guide is to be seen at both ends before the first turn
     pass_agreed: PassAgreed | None = None
-    seen_far: bool = False  # the guide was seen right at the far end; at its start is what is left
+    shown: Shown = NOTHING_SHOWN  # how far that is, and what nudging has taught
+    guide_lost: bool = False  # somebody has to put the guide to its start by hand, before that
     pace_percent: int = 100  # of the planned cruising pace, that somebody wants at the most
     refused: Refused | None = None  # the last refusal since the last consent
     link_lost: LinkLost | None = None

@@ -8,7 +8,7 @@ from windctl.protocol.messages import Capability
 from windctl.protocol.messages import State as BoardState
 from windctl.protocol.wants import Datum, GuidePlace, Permission, Sampling, Segments, Wants
 from windctl.record.consent import given
-from windctl.record.dry_pass import agreed, goal, nobody_agreed
+from windctl.record.dry_pass import agreed, nobody_agreed
 from windctl.record.program import place_at, unpacked
 from windctl.record.state import Fit, State, setup_crc
 
@@ -33,9 +33,10 @@ def wanted(state: State) -> Wants:
     setting_up = to_declare and not state.consented_since_greeting and dry is None and not drives_off
     to_set_up = setting_up and state.identity.setup_crc != setup_crc(started)
     to_go = consent if state.stop_point is not None and state.stop_point > state.count else None
-    guide, datum = None, None
+    guide: GuidePlace | None = None
+    datum: Datum | None = None
     if dry is not None and not drives_off:
-        guide = GuidePlace(goal(state), started.guide_pace, dry)
+        guide, datum = _leg(state, dry)
     elif state.misplaced:
         if state.powered and consent is not None:
             place = _place(state)
@@ -58,6 +59,18 @@ def wanted(state: State) -> Wants:
         sampling=_sampling(state),
         clear_trip=state.clear,
     )
+
+
+def _leg(state: State, dry: Permission) -> tuple[GuidePlace | None, Datum | None]:
+    """The leg of the dry pass that is to be made now."""
+    assert state.started is not None
+    shown = state.shown
+    if not shown.way:
+        return None, None
+    leg = shown.way[0]
+    if leg.declares is None:
+        return GuidePlace(leg.place, state.started.guide_pace, dry, shown.legs), None
+    return None, Datum(0, leg.place, 0, 0, dry, shown.legs)
 
 
 def _pace(state: State) -> int:

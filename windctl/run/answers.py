@@ -6,7 +6,7 @@ from dataclasses import replace
 
 from windctl.numbers import at_turn, grouped
 from windctl.record.decide import Decision
-from windctl.record.dry_pass import FAR, START, goal, may_pass
+from windctl.record.dry_pass import may_pass
 from windctl.record.events import (
     CheckTaken,
     ClearGiven,
@@ -15,7 +15,6 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
-    GuideSeen,
     HandsAsked,
     HoldRequested,
     LeadsTogether,
@@ -33,6 +32,7 @@ from windctl.record.fold import fold
 from windctl.record.state import State
 from windctl.record.zeroing import NOBODY, may_zero, nobody_there
 from windctl.run.counter import NO_POWER, counter_says
+from windctl.run.nudging import nudged, seen
 from windctl.run.pacing import paced
 from windctl.run.requests import (
     Broke,
@@ -46,6 +46,7 @@ from windctl.run.requests import (
     Hold,
     NewWire,
     Note,
+    Nudge,
     Read,
     Request,
     Seen,
@@ -97,8 +98,9 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
         case Seen():
             if leaving or decision.asks != "look":
                 return Answer(says="the guide is not where it is to be looked at")
-            end = START if state.seen_far else FAR
-            return Answer((GuideSeen(at_ms, goal(state), end, request.by),))
+            return seen(request, state, at_ms)
+        case Nudge():
+            return Answer() if leaving else nudged(request, state, decision.asks, at_ms)
         case Slower() | Faster():
             return paced(request, state, at_ms)
         case TakeBack():

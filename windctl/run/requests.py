@@ -140,6 +140,14 @@ class Seen:
 
 
 @dataclass(frozen=True, slots=True)
+class Nudge:
+    """The guide stands a little off: it is to stand `mm` further, positive towards the far flange."""
+
+    by: str
+    mm: float
+
+
+@dataclass(frozen=True, slots=True)
 class TakeBack:
     """The reading typed last was a mistake."""
 
@@ -178,6 +186,7 @@ Request = (
     | Together
     | DryPass
     | Seen
+    | Nudge
     | TakeBack
     | Slower
     | Faster

@@ -242,7 +242,7 @@ class Runner:
             return ()
         if not state.identity.capabilities & Capability.VIRTUAL:
             return ()
-        if decision.asks == "pass":
+        if decision.asks == "pass" and not state.guide_lost:
             return (PassAgreed(self._at_ms(), permission.boot, permission.epoch, "virtual"),)
         if decision.asks == "clear" and state.fit is Fit.FRESH:
             return (ClearGiven(self._at_ms(), permission.boot, permission.epoch, "virtual"),)

@@ -17,6 +17,7 @@ from windctl.record.fold import Fit, State
 from windctl.record.program import place_at
 from windctl.record.taking_back import second_thoughts
 from windctl.run.goal import phase_by_eye, says_by_eye, slow_from, stop_half_width
+from windctl.run.guide_look import GuideLook, guide_look, says_pass
 from windctl.run.trips import look_to
 from windctl.run.zero_seen import BACK_ON_THE_WIRE, ZeroSeen, says_zero, zero_seen
 
@@ -71,6 +72,7 @@ class Snapshot:
     by_eye: bool = False  # nobody counts for windctl: turns are read off a counter and typed
     told_at_ms: int | None = None  # when in this run the counter was last read and believed
     stop_u95: float | None = None  # turns: of the one that meets a resistance, where it is by eye
+    guide_look: GuideLook | None = None  # the guide is shown before the first turn
     answers: int = 0  # requests that were answered in words, and the last answer
     answer: str = ""
 
@@ -125,6 +127,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         by_eye=state.by_eye,
         told_at_ms=None if state.counter is None else state.counter.at_ms,
         stop_u95=stop_half_width(state) if state.by_eye else None,
+        guide_look=guide_look(state, steps_per_mm),
     )
 
 
@@ -201,7 +204,7 @@ def _says(state: State, decision: Decision) -> str:
     if state.zero is not None and phase != "connecting":
         return says_zero(state)
     if state.pass_agreed is not None or decision.asks in ("pass", "look"):
-        return _says_pass(state, decision)
+        return says_pass(state, decision.asks)
     if decision.asks == "go":
         return f"{BACK_ON_THE_WIRE}, then go" if state.contact_off else "waits for go"
     return {"connecting": "looks for the board", "setting up": "sets the board up", "ready": "drives are on"}[
@@ -229,16 +232,6 @@ def _says_held(state: State, decision: Decision) -> str:
     if state.held is None:
         return "held"
     return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
-
-
-def _says_pass(state: State, decision: Decision) -> str:
-    """The dry pass of the guide."""
-    end = "its start" if state.seen_far else "its far end"
-    if decision.asks == "pass":
-        return "a dry pass: the guide will move, nothing turns"
-    if decision.asks == "look":
-        return f"the guide stands at {end}: is it inside the flange, and free?"
-    return f"the guide moves to {end}, nothing turns"
 
 
 def _says_check(state: State) -> str:

@@ -85,13 +85,14 @@ class WindctlApp(App[int], inherit_bindings=False):
         self.session.hold()
 
     def space_holds(self) -> bool:
-        """Space holds while a coil turns and nothing is being typed."""
+        """Space holds while a coil turns or its guide is shown, and nothing is being typed."""
         if isinstance(self.focused, Input | TextArea):
             return False
         run, bench = self.session.run, self.session.bench
         if run is None:
             return bench is not None and bench.look().turning
-        return run.winding.look().phase in MOVING
+        snapshot = run.winding.look()
+        return snapshot.phase in MOVING or snapshot.guide_look is not None
 
     async def on_event(self, event: events.Event) -> None:
         """The hold keys come before every binding, in every screen and dialog."""

@@ -13,6 +13,7 @@ from textual.binding import Binding
 HOLD_KEY = "f8"
 SPACE = "space"
 KEPT = (HOLD_KEY, SPACE)  # no other command may take these
+FINE_MM, COARSE_MM = 0.05, 0.5  # that a key moves the guide, where it is shown before the first turn
 
 _KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
     "help": ("f1", "help", "Help"),
@@ -36,6 +37,10 @@ _KEYS: dict[str, tuple[str, str, str]] = {  # id: key, action, what it does
     "wind.zero": ("z", "zero", "Zero the contact"),
     "wind.together": ("y", "together", "Leads are together"),
     "wind.seen": ("y", "seen", "Guide is right"),
+    "wind.left": ("left", f"nudge({-FINE_MM})", f"{FINE_MM:g} mm"),
+    "wind.right": ("right", f"nudge({FINE_MM})", f"{FINE_MM:g} mm"),
+    "wind.far_left": ("comma,shift+left", f"nudge({-COARSE_MM})", f"{COARSE_MM:g} mm left"),
+    "wind.far_right": ("full_stop,shift+right", f"nudge({COARSE_MM})", f"{COARSE_MM:g} mm right"),
     "wind.note": ("n", "note", "Note"),
     "wind.leave": ("l", "leave_open", "Leave open"),
     "wind.closer": ("v", "closer", "Closer look"),

@@ -36,6 +36,7 @@ if TYPE_CHECKING:
     from windctl.plan.growth import Growth
     from windctl.profile.model import MachineProfile
     from windctl.recipe.model import Recipe
+    from windctl.recipe.orientation import Side
     from windctl.record.events import CoilStarted
     from windctl.run.outcome import Outcome
     from windctl.run.wind import Winding
@@ -60,6 +61,7 @@ class Run:
         self.before = before  # the curve of earlier runs of this coil
         self.outcome: Outcome | None = None
         self.truth: str = ""
+        self.start_side: Side = "motor"  # on which the lay starts
         self.hand: Callable[[float], None] | None = None  # turns a simulated spindle
         self.leads: SimulatedLeads | None = None  # at a simulated contact
 
@@ -201,6 +203,7 @@ class Session(Records):
             run.card = replace(run.card, pass_turns=hand_lay(recipe).pass_turns)
         elif profile.guide.kind == "hand":
             run.lay_by_hand = hand_lay(recipe)
+        run.start_side = recipe.coil.orientation.start_side
         if self._bench is not None:
             self._bench.name_coil(run.card.number)
             run.hand = self._bench.hand

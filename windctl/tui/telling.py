@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from windctl.desk.numbers import duration, grouped, ohm
+from windctl.desk.numbers import apart, duration, grouped, ohm, signed_mm
 from windctl.protocol.messages import Cause, Refusal, Trip
 from windctl.protocol.rules import NO_BOARD_QUEUE
 from windctl.record.events import (
@@ -20,6 +20,7 @@ from windctl.record.events import (
     EndRequested,
     Event,
     GoGiven,
+    GuideNudged,
     GuideSeen,
     HandsAsked,
     Held,
@@ -128,7 +129,11 @@ def tell(event: Event, counts_per_turn: int) -> str | None:
         case PassAgreed():
             return f"go for the dry pass, given by {_by(event.by)}"
         case GuideSeen():
-            return f"the guide was seen right at its {event.end} end by {_by(event.by)}"
+            ends = f"; the ends are {apart(event.apart_mm)} than in the program" if event.apart_mm else ""
+            shift = f", nudged by {signed_mm(event.shift_mm)} in all" if event.shift else ""
+            return f"the guide was seen right at its {event.end} end by {_by(event.by)}{shift}{ends}"
+        case GuideNudged():
+            return f"the guide is nudged at its {event.end} end by {_by(event.by)}: {signed_mm(event.mm)}"
         case PaceAsked():
             return f"at most {event.percent} % of the planned pace, asked for by {_by(event.by)}"
         case CheckTaken():

@@ -156,8 +156,8 @@ def next_of(snapshot: Snapshot) -> Next:
         return Next(_sentence(snapshot.says), "", f"{word} when you press G")
     if snapshot.asks == "pass":
         return Next(_sentence(snapshot.says), "", "G lets the guide move")
-    if snapshot.asks == "look":
-        return Next(_sentence(snapshot.says), "", "Y: it is right · F8: it is not")
+    if shown_near(snapshot):
+        return Next(_sentence(snapshot.says), "", "Y: it is right · ← → nudge it · F8 holds")
     if snapshot.asks == "clear":
         return Next(_sentence(snapshot.says), "", "put it right, then press C")
     if snapshot.asks == "place":
@@ -203,6 +203,11 @@ def _next_by_eye(snapshot: Snapshot) -> Next:
     if snapshot.hands is not None and snapshot.check is None:  # it was bared there to be read
         when = "insulate the wire first"
     return Next("to", grouped(snapshot.stop_turn), when if snapshot.begun else "counter to 0 first, K")
+
+
+def shown_near(snapshot: Snapshot) -> bool:
+    """The guide stands to be looked at, or is being nudged there."""
+    return snapshot.guide_look is not None and snapshot.guide_look.near
 
 
 def _sentence(words: str) -> str:
@@ -293,7 +298,8 @@ def target_text(card: Card) -> str:
 def _alarm(snapshot: Snapshot) -> str:
     if snapshot.phase != "tripped":
         refused = "" if snapshot.zero is None else snapshot.zero.refused
-        return snapshot.alarm or (f"Not zeroed: {refused}." if refused else "")
+        apart = "" if snapshot.guide_look is None else snapshot.guide_look.apart
+        return snapshot.alarm or (f"Not zeroed: {refused}." if refused else apart)
     lost = ""
     if snapshot.wire_ends_at is not None:
         lost = f"What was counted beyond turn {grouped(snapshot.wire_ends_at, 1)} is without wire. "
@@ -330,6 +336,8 @@ def sound(before: Snapshot | None, now: Snapshot) -> Sound | None:
         return None
     if now.phase == "tripped" and before.phase != "tripped":
         return Sound.ALARM
+    if shown_near(before) and shown_near(now):
+        return None  # nudged by the one who looks at it
     moving = ("turning", "stopping")
     if before.phase in moving and now.phase not in moving:
         return Sound.STANDS

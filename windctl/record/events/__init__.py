@@ -18,7 +18,7 @@ from windctl.record.events.checks import CheckAsked, CheckTaken
 from windctl.record.events.consents import ClearGiven, GoGiven
 from windctl.record.events.count import CountCorrected, CounterRead, Unwound
 from windctl.record.events.course import CoilFinished, CoilStarted, Resumed, StopPointChosen, Target
-from windctl.record.events.dry_pass import GuideSeen, PassAgreed, PassWanted
+from windctl.record.events.dry_pass import GuideNudged, GuideSeen, PassAgreed, PassWanted
 from windctl.record.events.notes import NoteMade
 from windctl.record.events.readings import ReadingTaken, ReadingTakenBack, ReadingTyped
 from windctl.record.events.requests import EndRequested, HandsAsked, HoldRequested, PaceAsked
@@ -50,6 +50,7 @@ __all__ = [
     "EndRequested",
     "Event",
     "GoGiven",
+    "GuideNudged",
     "GuideSeen",
     "HandsAsked",
     "Held",
@@ -106,6 +107,7 @@ Event = (
     | ZeroEnded
     | PassWanted
     | PassAgreed
+    | GuideNudged
     | GuideSeen
     | WireBroke
     | Spliced
@@ -124,4 +126,4 @@ KINDS: dict[str, type[Event]] = {cls.kind: cls for cls in get_args(Event)}
 DENSE = (StatusHeard, ReadingTaken)  # many a second: stored in chunks
 
 # Facts that must be durable before what they permit is done.
-BEFORE_ACTING = (CoilStarted, Resumed, GoGiven, PassAgreed, ClearGiven, CountCorrected)
+BEFORE_ACTING = (CoilStarted, Resumed, GoGiven, PassAgreed, GuideNudged, ClearGiven, CountCorrected)

@@ -4,15 +4,31 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from windctl.protocol.messages import Arm, ClearTrip, Go, GuideTo, Identity, Refused, SetDatum, Status, Trust
+from windctl.protocol.messages import (
+    Arm,
+    Capability,
+    ClearTrip,
+    Go,
+    GuideTo,
+    Identity,
+    Refused,
+    SetDatum,
+    Status,
+    Trust,
+)
 from windctl.protocol.messages import State as BoardState
 from windctl.record.fitting import fit_of, kept_guide, same_place
 from windctl.record.folding import dry_pass, zeroing
+from windctl.record.guide_way import begun_anew, settled
 from windctl.record.state import Fit, State, touched
 
 
 def greeted(state: State, identity: Identity) -> State:
     """A conversation begins, and with it whether the board has this coil in hand. No consent outlives one."""
+    if state.pass_agreed is not None:
+        state = dry_pass.interrupted(state)
+    if state.misplaced and not state.let_go:
+        state = _guide_of(state, identity)
     return replace(
         zeroing.anew(state),
         identity=identity,
@@ -27,8 +43,17 @@ def greeted(state: State, identity: Identity) -> State:
         doubted=None,
         link_lost=None,
         guide_known=kept_guide(state, identity),
-        misplaced=state.misplaced and (state.let_go or same_place(state, identity)),
     )
+
+
+def _guide_of(state: State, identity: Identity) -> State:
+    """Of a coil whose dry pass was broken off: the board still knows where it brought the guide, or somebody
+    has to put it to its start. At another simulated machine it is put there."""
+    if same_place(state, identity):
+        return replace(state, shown=settled(state.shown, identity.guide, identity.epoch))
+    if identity.capabilities & Capability.VIRTUAL:
+        return replace(state, misplaced=False, shown=begun_anew(state.shown, shift=0))
+    return dry_pass.lost(state)
 
 
 def status_heard(state: State, status: Status) -> State:
@@ -58,7 +83,7 @@ def status_heard(state: State, status: Status) -> State:
         unpowered = status.state in (BoardState.DRIVES_OFF, BoardState.TRIPPED)
         count += status.count - board_count if unpowered else 0
         board_count = status.count if unpowered else None
-    return touched(
+    now = touched(
         state,
         {
             "status": status,
@@ -70,6 +95,7 @@ def status_heard(state: State, status: Status) -> State:
             "read_last": False,
         },
     )
+    return dry_pass.heard(now)
 
 
 def refused(state: State, word: Refused) -> State:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from windctl.protocol.messages import Trip
+from windctl.protocol.messages import Trip, Trust
 from windctl.record.events import Tripped
 from windctl.record.folding import board, dry_pass
 from windctl.record.state import Fit, State
@@ -31,7 +31,9 @@ def went_on(state: State) -> State:
 
 def tripped(before: State, event: Tripped) -> State:
     """A trip for low tension comes with the turn that was short of it, so the wire broke about one before."""
-    state = dry_pass.ended(before)
+    state = dry_pass.interrupted(before)
+    if before.pass_agreed is not None and before.status is not None and not before.status.trust & Trust.GUIDE:
+        state = dry_pass.lost(state)
     low = event.trip == Trip.TENSION_LOW
     near = max(0.0, event.count / state.counts_per_turn - 1.0) if low else None
     return replace(state, tripped=event, consent=None, broke_near=near)

@@ -22,7 +22,7 @@ class Help(Dialog[None]):
     def __init__(self, screen: Screen[object]) -> None:
         about = getattr(screen, "ABOUT", "")
         keys = [
-            f"{_written(active.binding.key):<7}{active.binding.description}"
+            f"{_written(active.binding.key):<6} {active.binding.description}"
             for active in screen.active_bindings.values()
             if active.binding.id and "." in active.binding.id
         ]

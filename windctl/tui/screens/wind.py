@@ -12,6 +12,7 @@ from textual.containers import Horizontal, Vertical
 from textual.widgets import Static
 
 from windctl.errors import WindctlError
+from windctl.tui.guide_view import flanges
 from windctl.tui.keymap import HOLD_KEY, key
 from windctl.tui.outcome_words import after_words, outcome_words
 from windctl.tui.pace import DIGITS_S, Pace
@@ -19,10 +20,11 @@ from windctl.tui.pictures.curve import Point
 from windctl.tui.pictures.section import Filled
 from windctl.tui.screens.wind_questions import WindQuestions
 from windctl.tui.trail import Trail
-from windctl.tui.view import Glance, bands, glance, sound, still
+from windctl.tui.view import Glance, bands, glance, shown_near, sound, still
 from windctl.tui.widgets.bobbin_section import BobbinSection
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
+from windctl.tui.widgets.flange_target import FlangeTarget
 from windctl.tui.widgets.hand_target import HandTarget
 from windctl.tui.widgets.news import News
 from windctl.tui.widgets.state_band import StateBand
@@ -52,12 +54,14 @@ _WHILE_IT_RUNS = (
     "count",
 )
 _OF_A_BOARD = ("hold", "go", "clear", "slower", "faster")  # have no meaning where the counter is read by eye
+# The guide stands to be looked at: what cannot follow then makes room for the arrows.
+_NOT_WHILE_LOOKING = ("go", "clear", "slower", "faster", "read", "end", "zero")
 
 
 def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
     """What keys come and go with."""
     zero = snapshot.zero is not None and not snapshot.zero.wanted
-    return (snapshot.can_take_back, snapshot.asks == "look", snapshot.asks == "leads", zero)
+    return (snapshot.can_take_back, shown_near(snapshot), snapshot.asks == "leads", zero)
 
 
 class WindScreen(WindQuestions):
@@ -81,6 +85,10 @@ class WindScreen(WindQuestions):
         key("wind.zero"),
         key("wind.together"),
         key("wind.seen"),
+        key("wind.left"),
+        key("wind.right"),
+        key("wind.far_left"),
+        key("wind.far_right"),
         key("wind.end"),
         key("wind.leave"),
         key("wind.note"),
@@ -112,6 +120,7 @@ class WindScreen(WindQuestions):
         yield Way(id="way")
         yield Static("", id="alarm", markup=False)
         yield Static("", id="verdict", markup=False)
+        yield FlangeTarget(id="look")
         with Horizontal(id="wind-body"):
             with Vertical(id="wind-left"):
                 yield TurnCount(id="turns")
@@ -175,6 +184,7 @@ class WindScreen(WindQuestions):
             seen = still(seen, self.glance)
         self.trail.add(Point(snapshot.turns, snapshot.ohm_20c_now, snapshot.finish_ohm, snapshot.finish_u95))
         self.query_one(HandTarget).show(snapshot.turns, snapshot.phase == "turning")
+        self.show_guide(snapshot)
         if seen == self.glance:
             return
         before, self.glance = self.glance, seen
@@ -189,6 +199,12 @@ class WindScreen(WindQuestions):
         if str(alarm.content) != seen.alarm:
             alarm.update(seen.alarm)
             alarm.set_class(bool(seen.alarm), "-there")
+
+    def show_guide(self, snapshot: Snapshot) -> None:
+        """While the guide is shown before the first turn, nothing else matters."""
+        seen = flanges(snapshot, self.coil.start_side)
+        self.set_class(seen is not None, "-look")
+        self.query_one(FlangeTarget).show(seen)
 
     def draw(self) -> None:
         """Charts, section and news."""
@@ -273,8 +289,11 @@ class WindScreen(WindQuestions):
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keys of a running coil end with it."""
         running = self.outcome is None
-        if action == "seen":
-            return running and self.latest is not None and self.latest.asks == "look"
+        look = self.latest is not None and shown_near(self.latest)
+        if action in ("seen", "nudge"):
+            return running and look
+        if action in _NOT_WHILE_LOOKING and look:
+            return False
         if action == "together":
             return running and self.latest is not None and self.latest.asks == "leads"
         if action == "zero":

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from time import monotonic
 from typing import TYPE_CHECKING
 
 from textual.events import Key
@@ -13,6 +14,7 @@ from windctl.run.requests import (
     Faster,
     Go,
     Note,
+    Nudge,
     Seen,
     Slower,
     TakeBack,
@@ -32,6 +34,8 @@ if TYPE_CHECKING:
     from windctl.run.snapshot import Snapshot
     from windctl.tui.session import Run, Session
 
+_AGAIN_S = 5.0  # before the same words are said again
+
 CAUTIONS = """\
 Guard closed, hands off, hair, sleeves and jewellery tucked away, no gloves, eye protection on.
 Never touch the work while it turns. Know where the hardware stop is: this program is no safety function."""
@@ -44,6 +48,7 @@ class WindQuestions(Room):
         super().__init__(session)
         self.coil = run
         self._to_unwind = 0.0
+        self._answered, self._answered_at = "", 0.0
         self._prompted: float | None = None  # the check that the prompt was opened for
         self._told_at_ms: int | None = None  # when the counter was last believed
 
@@ -148,6 +153,11 @@ class WindQuestions(Room):
         """The guide stands right where it is."""
         self.coil.winding.request(Seen("operator"))
 
+    def action_nudge(self, mm: float) -> None:
+        """The guide a little to the right as it is drawn, or to the left."""
+        outwards = self.coil.start_side == "motor"  # the motor is drawn on the left
+        self.coil.winding.request(Nudge("operator", mm if outwards else -mm))
+
     def action_slower(self) -> None:
         """A tenth of the planned pace less."""
         self.coil.winding.request(Slower("operator"))
@@ -216,5 +226,6 @@ class WindQuestions(Room):
         reads = isinstance(top, ReadingPrompt) and (snapshot.check is not None or snapshot.by_eye)
         if isinstance(top, CounterPrompt | ReadingPrompt) and (reads or not_believed):
             top.tell(words)
-        else:
+        elif words != self._answered or monotonic() - self._answered_at > _AGAIN_S:  # a key may be held down
+            self._answered, self._answered_at = words, monotonic()
             self.notify(words, markup=False)
