@@ -52,7 +52,7 @@ def test_a_page_at_a_time(lot: Book) -> None:
 
 def test_lines_are_the_list_of_which_less_is_read(lot: Book) -> None:
     for asked in ({}, {"query": "bench:b1", "sort": "coil"}, {"limit": 2}, {"outcome": "open"}):
-        heads, lines = lot.list(**asked), lot.lines(**asked)  # type: ignore[arg-type]  # one of these four
+        heads, lines = lot.list(**asked), lot.lines(**asked)
         assert [{name: getattr(head, name) for name in CoilLine._fields} for head in heads] == [
             line._asdict() for line in lines
         ]

@@ -30,6 +30,7 @@ from windctl.book.queries import (
     lines,
     listed,
     record_entries,
+    starts_of,
     stored_rows,
 )
 from windctl.book.query import parse, sorted_by
@@ -39,6 +40,7 @@ from windctl.book.shelf import (
     add_to_spool,
     addenda_in,
     amend,
+    said_of,
     spool_in,
     spools_in,
 )
@@ -250,6 +252,14 @@ class Book:
     def addenda(self, coil: str) -> tuple[Addendum, ...]:
         """What was said of a coil after it was closed, in order."""
         return addenda_in(self._store, self.find(coil))
+
+    def said_of(self, heads: Sequence[CoilHead]) -> Mapping[str, Sequence[Addendum]]:
+        """The same of many coils at once, by id; those of which nothing was said are not in it."""
+        return said_of(self._store, [head.id for head in heads])
+
+    def starts_of(self, heads: Sequence[CoilHead]) -> Iterator[tuple[str, CoilStarted]]:
+        """The first facts of many coils, each with the coil's id, in any order."""
+        return starts_of(self._store, [head.id for head in heads])
 
     def add_spool(self, added: SpoolAdded, *more: Addendum) -> None:
         """Keep a new spool. Raises BookError when there is one of that name."""

@@ -15,8 +15,10 @@ from windctl.book.search import condition, order
 from windctl.book.store import Store
 from windctl.book.tables import coils, curve, entries
 from windctl.errors import BookError, RecordBroken
+from windctl.record.canonical import decode
 from windctl.record.curve import CurvePoint
 from windctl.record.entries import Entry
+from windctl.record.events import CoilStarted
 
 PAGE = 256  # rows of a record read at once; a reader holds up writers only that long
 _NAMED = 6  # how many candidates an ambiguous name lists
@@ -209,6 +211,21 @@ def record_entries(store: Store, head: CoilHead) -> Iterator[Entry]:
     for row in stored_rows(store, head.id, head.n_entries):
         if row.entry.kind != SEAL:
             yield row.entry
+
+
+def starts_of(store: Store, ids: Sequence[str]) -> Iterator[tuple[str, CoilStarted]]:
+    """The first facts of many coils, each with the coil's id, in any order. Raises RecordBroken for one that
+    is none."""
+    for at in range(0, len(ids), PAGE):
+        query = sa.select(entries.c.coil, entries.c.kind, entries.c.payload)
+        some = query.where(entries.c.coil.in_(ids[at : at + PAGE]), entries.c.seq == 0)
+        with store.reading() as connection:
+            rows = connection.execute(some).all()
+        for coil, kind, payload in rows:
+            started = decode(kind, payload)
+            if not isinstance(started, CoilStarted):
+                raise RecordBroken(f"the record of coil {coil} does not begin with the start of the coil")
+            yield coil, started
 
 
 def curve_in(connection: sa.Connection, coil_id: str) -> list[tuple[int, CurvePoint]]:

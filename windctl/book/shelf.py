@@ -9,7 +9,7 @@ import sqlalchemy as sa
 
 from windctl.book.heads import CoilHead
 from windctl.book.lessons import CoilLesson, keep_row, moment_of
-from windctl.book.logs import COIL, SPOOL, all_facts, append, facts_of, read
+from windctl.book.logs import COIL, SPOOL, all_facts, append, facts_by_log, facts_of, read
 from windctl.book.store import Store
 from windctl.book.tables import coils
 from windctl.book.words import more_words, said_in
@@ -25,6 +25,8 @@ from windctl.record.addenda import (
     SpoolMeasured,
     SpoolWeighed,
 )
+
+_AT_ONCE = 500  # coils in one statement
 
 _GRADES: dict[str, Grade] = {"grade 1": "grade 1", "grade 2": "grade 2"}
 
@@ -131,6 +133,15 @@ def addenda_in(store: Store, head: CoilHead) -> tuple[Addendum, ...]:
     """What was said of a coil after it was closed."""
     with store.reading() as connection:
         return facts_of(read(connection, COIL + head.id))
+
+
+def said_of(store: Store, ids: Sequence[str]) -> dict[str, list[Addendum]]:
+    """The same of many coils, by id; those of which nothing was said are not in it."""
+    said: dict[str, list[Addendum]] = {}
+    for at in range(0, len(ids), _AT_ONCE):
+        with store.reading() as connection:
+            said |= facts_by_log(connection, COIL, ids[at : at + _AT_ONCE])
+    return said
 
 
 def history(lessons: Iterable[CoilLesson], spools: Iterable[SpoolRecord]) -> tuple[Teaching, ...]:

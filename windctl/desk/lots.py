@@ -11,6 +11,7 @@ from windctl.errors import UsageError
 if TYPE_CHECKING:
     from windctl.book.book import Book
     from windctl.book.heads import CoilHead
+    from windctl.record.addenda import Addendum
     from windctl.shop.lot import LotCoil
 
 
@@ -34,14 +35,16 @@ def gather(book: Book, heads: Sequence[CoilHead]) -> Gathered:
     if not heads:
         raise UsageError("there are no such coils; 'windctl coils list' shows what there is")
     coils, left_out, used = [], [], []
+    said = book.said_of(heads)
+    tolerances = {coil: started.target.tolerance_pct for coil, started in book.starts_of(heads)}
     for head in sorted(heads, key=lambda head: (head.started, head.number)):
-        facts = book.addenda(head.number)
+        facts = said.get(head.id, ())
         if head.outcome != "finished":
             left_out.append((head.number, head.outcome))
         elif withdrawn(facts) is not None:
             left_out.append((head.number, "withdrawn"))
         else:
-            coils.append(_coil(book, head))
+            coils.append(_coil(book, head, facts, tolerances[head.id]))
             used.append(head)
     if not coils:
         raise UsageError("none of these coils is finished")
@@ -54,16 +57,12 @@ def gather(book: Book, heads: Sequence[CoilHead]) -> Gathered:
     return Gathered(tuple(coils), tuple(left_out), recipes[0], versions)
 
 
-def _coil(book: Book, head: CoilHead) -> LotCoil:
+def _coil(book: Book, head: CoilHead, facts: Sequence[Addendum], tolerance_pct: float) -> LotCoil:
     """With the resistance that the winding measured, else the first that was measured by hand."""
     from windctl.plan.experience.lesson import Resistance
     from windctl.record.addenda import CoilMeasured, CoilTaught
-    from windctl.record.events import CoilStarted
     from windctl.shop.lot import LotCoil
 
-    started = next(iter(book.events(head.number)))
-    assert isinstance(started, CoilStarted)  # a record begins with it
-    facts = book.addenda(head.number)
     lessons = [fact.lesson for fact in facts if isinstance(fact, CoilTaught)]
     if lessons:
         read = any(isinstance(one, Resistance) for one in lessons[-1].measured)
@@ -80,5 +79,5 @@ def _coil(book: Book, head: CoilHead) -> LotCoil:
         u95,
         head.target_kind,
         head.target_value,
-        started.target.tolerance_pct,
+        tolerance_pct,
     )

@@ -117,9 +117,10 @@ def stock_of(book: Book, query: str, batch: str | None) -> Stock:
         )
     lessons = _lessons(book, here)
     by_start = {(one.lesson.coil, one.began): one for one in lessons}
+    recipes: dict[str, Recipe | None] = {}  # by their text: a stock is of a few recipes
     coils = []
     for head in here:
-        coil = _in_stock(book, head, facts.get(head.id, ()), by_start)
+        coil = _in_stock(book, head, facts.get(head.id, ()), by_start, recipes)
         if isinstance(coil, LeftOut):
             left_out.append(coil)
         else:
@@ -153,7 +154,11 @@ def _not_in_stock(head: CoilHead, said: Sequence[Addendum]) -> str | None:
 
 
 def _in_stock(
-    book: Book, head: CoilHead, said: Sequence[Addendum], lessons: Mapping[tuple[str, str], CoilLesson]
+    book: Book,
+    head: CoilHead,
+    said: Sequence[Addendum],
+    lessons: Mapping[tuple[str, str], CoilLesson],
+    recipes: dict[str, Recipe | None],
 ) -> InStock | LeftOut:
     from windctl.record.canonical import decode
     from windctl.record.events import CoilStarted
@@ -163,7 +168,9 @@ def _in_stock(
     started = decode(first.kind, first.payload)
     assert isinstance(started, CoilStarted)  # every record begins so
     lesson = lessons.get((started.number, started.wall_time))
-    recipe = recipe_of(started)
+    if started.recipe_text not in recipes:
+        recipes[started.recipe_text] = recipe_of(started)
+    recipe = recipes[started.recipe_text]
     if lesson is None or recipe is None:
         return LeftOut(head.number, "its record does not say what it was planned to be")
     told = magnet(said)
