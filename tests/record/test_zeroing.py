@@ -266,7 +266,9 @@ def test_the_dry_pass_comes_after_it() -> None:
     reads(made, *[0.5] * 8)
     assert made.decision.asks == "pass"
     made.hear(PassAgreed(0, 5, 10, "operator"))
-    assert "before the first turn" in say(made, ZeroContact("operator")).says
+    assert "the guide is being shown" in say(made, ZeroContact("operator")).says
+    seen = zero_seen(made.state)
+    assert seen is not None and not seen.can
 
 
 def test_what_is_asked_where_it_cannot_be_met_is_answered_in_words() -> None:

@@ -37,9 +37,10 @@ CHECKS = VIRTUAL.model_copy(
     update={"readings": VIRTUAL.readings.model_copy(update={"mode": "checks", "contact": True})}
 )
 SEEN = ZeroSeen(
-    wanted=True, together=False, now=1.31, read=0, enough=8, most=3.7, profile=0.5, profile_u95=0.59,
-    found=None, found_u95=None, refused="", contact_off=False,
+    can=False, wanted=True, together=False, now=1.31, read=0, enough=8, most=3.7, profile=0.5,
+    profile_u95=0.59, found=None, found_u95=None, refused="", contact_off=False,
 )  # fmt: skip
+READY = replace(SEEN, can=True, wanted=False)
 ASKED = replace(
     SNAPSHOT, phase="setting up", turns=0.0, asks="leads", drives_off=True, begun=False, zero=SEEN,
     ohm_now=None, ohm_20c_now=None, says="put the contact and the meter's other lead together",
@@ -150,12 +151,12 @@ async def test_by_keys_the_whole_step_on_the_simulated_machine(tmp_path: Path) -
 @pytest.mark.parametrize(
     ("zero", "keys", "meant"),
     [
-        (replace(SEEN, wanted=False), "z", [ZeroContact("operator")]),
-        (replace(SEEN, wanted=False), "y", []),
+        (READY, "z", [ZeroContact("operator")]),
+        (READY, "y", []),
         (SEEN, "y", [Together("operator")]),
         (SEEN, "z", []),
         (SEEN, "tskip", [Skip("operator")]),
-        (replace(SEEN, wanted=False), "tzero", [ZeroContact("operator")]),
+        (READY, "tzero", [ZeroContact("operator")]),
         (None, "z", []),
     ],
 )

@@ -135,8 +135,8 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.LeadsTogether():
             return f"The contact's leads were put together, said {by(event.by)}."
         case facts.ContactZeroed():
-            found = ohm(event.ohm, _Z95 * event.sd_ohm)
-            return f"Zeroed: leads and contact had {found} in {event.readings} readings; taken off since."
+            found = f"{ohm(event.ohm, _Z95 * event.sd_ohm)} in {event.readings} readings"
+            return f"Zeroed: leads and contact had {found}, taken off from then on."
         case facts.ZeroRefused():
             return f"Not zeroed: {why_refused(event)}."
         case facts.ZeroEnded():

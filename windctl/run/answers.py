@@ -125,6 +125,8 @@ def _zeroing(
         if leaving or decision.asks != "leads":
             return Answer(says="nobody waits for the contact's leads to be together")
         return Answer((LeadsTogether(at_ms, request.by),), "hold the leads together: they are being read")
+    if state.pass_agreed is not None:
+        return Answer(says="the guide is being shown: first see that through")
     if leaving or not may_zero(state):
         return Answer(says="the contact is zeroed before the first turn, where the board has one")
     if nobody_there(state, request.simulated_hand):

@@ -9,7 +9,7 @@ from windctl.forecast.finish import Z95
 from windctl.forecast.zeroing import most_leads_ohm
 from windctl.numbers import ohm
 from windctl.record.state import State
-from windctl.record.zeroing import ENOUGH, has_contact, why_refused
+from windctl.record.zeroing import ENOUGH, has_contact, may_zero, why_refused
 
 BACK_ON_THE_WIRE = "put the contact back on the wire"
 PUT_TOGETHER = "put the contact and the meter's other lead together, nothing between them"
@@ -22,7 +22,8 @@ class ZeroSeen:
     `now` is the last reading, inf for an open contact; `read` of `enough` count so far.
     """
 
-    wanted: bool  # a zeroing is under way
+    can: bool  # a zeroing may be asked for now
+    wanted: bool  # it is under way
     together: bool  # and the leads were said to be together
     now: float | None
     read: int
@@ -42,6 +43,7 @@ def zero_seen(state: State) -> ZeroSeen | None:
     if started is None or state.let_go or not has_contact(state):
         return None
     return ZeroSeen(
+        can=zero is None and may_zero(state),
         wanted=zero is not None,
         together=zero is not None and zero.since is not None,
         now=None if zero is None else zero.now,

@@ -60,7 +60,7 @@ _NOT_WHILE_LOOKING = ("go", "clear", "slower", "faster", "read", "end", "zero")
 
 def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
     """What keys come and go with."""
-    zero = snapshot.zero is not None and not snapshot.zero.wanted
+    zero = snapshot.zero is not None and snapshot.zero.can
     return (snapshot.can_take_back, shown_near(snapshot), snapshot.asks == "leads", zero)
 
 
@@ -298,7 +298,7 @@ class WindScreen(WindQuestions):
             return running and self.latest is not None and self.latest.asks == "leads"
         if action == "zero":
             zero = None if self.latest is None else self.latest.zero
-            return running and zero is not None and not zero.wanted
+            return running and zero is not None and zero.can
         if action == "undo":
             return running and self.latest is not None and self.latest.can_take_back
         if action in _OF_A_BOARD and self.coil.by_eye:
