@@ -129,3 +129,32 @@ def test_a_result_without_a_reader_is_told_and_one_without_a_terminal_is_not(
     monkeypatch.setattr("sys.stdout", Gone(errno.ENOSPC))
     with pytest.raises(OSError, match="gone"):
         present.result("150 turns")
+
+
+def test_a_long_line_is_parted_between_words_and_a_command_is_not() -> None:
+    assert present.folded("one two three", None) == "one two three"
+    assert present.folded("one two three", 8) == "one two\nthree"
+    assert present.folded("name  one two three", 13, under=6) == "name  one two\n      three"
+    assert present.folded("0123456789abcdef", 8) == "0123456789abcdef"  # a digest
+    line = "The spindle stands, the coil stays open: windctl resume v1-2026-0001"
+    assert present.folded(line, 30) == line
+    assert present.folded("a\nlong line", 5) == "a\nlong\nline"
+
+
+WIDE = [("coil", "recipe", "at 20 °C"), ("b1-2026-0001", "Bridge, by hand", "5.900 ± 0.050 kohm")]
+
+
+@pytest.mark.parametrize("width", range(36, 60))
+def test_columns_follow_the_terminal_and_figures_stay_whole(width: int) -> None:
+    """12, 15 and 18 cells; the longest word of the recipes' column has 7."""
+    lines = present.in_columns(WIDE, [False, False, True], width)
+    assert max(map(len, lines)) <= width or width < 12 + 7 + 18 + 2
+    assert "5.900 ± 0.050 kohm" in lines[1]
+    words = " ".join(lines).split()
+    assert sorted(words) == sorted(" ".join(" ".join(row) for row in WIDE).split())
+
+
+def test_columns_that_cannot_be_narrow_enough_are_left_to_the_terminal() -> None:
+    assert present.in_columns(WIDE, [False, False, True], 30) == present.in_columns(
+        WIDE, [False, False, True]
+    )

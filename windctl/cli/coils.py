@@ -176,7 +176,7 @@ def show(shared: Shared, coil: str) -> None:
     present.pairs([(name, value) for name, value in rows if value])
     present.result()
     for line in story(rare, rare[0].setup.counts_per_turn if isinstance(rare[0], CoilStarted) else 1):
-        present.result(f"{line.when:>10}  {line.what}")
+        present.result(f"{line.when:>10}  {line.what}", under=12)
     present.result(
         f"{present.counted(reports, 'board report')} and {present.counted(readings, 'reading')} besides"
     )

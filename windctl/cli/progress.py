@@ -166,7 +166,7 @@ class Live:
     def say(self, text: str) -> None:
         """A line above the display, which stays."""
         drawn = "\n".join(self._drawn)
-        self._out.write(f"{self._wiped()}{text}\n{drawn}")
+        self._out.write(f"{self._wiped()}{present.folded(text, _width(self._lender))}\n{drawn}")
 
     def close(self) -> None:
         """Leave the last picture standing, the cursor below it."""
