@@ -11,6 +11,8 @@ from windctl.desk.books import book_if_any, book_to_read
 from windctl.desk.spool_keeping import OHM_PER_M_SD_PCT, SCALE_SD_G
 from windctl.errors import UsageError
 
+_MANY, _S_PER_COIL = 5000, 0.0006  # from how many coils on it is said how long a list of spools takes
+
 
 @click.group()
 def spool() -> None:
@@ -77,6 +79,12 @@ def list_(shared: Shared) -> None:
     from windctl.desk.spools import states_of
 
     with book_if_any(shared) as book:
+        coils = 0 if book is None else book.count()
+        if coils > _MANY:  # each spool's level hangs together with all others'
+            present.message(
+                f"reading what {present.counted(coils, 'coil')} taught of all spools, some "
+                f"{_S_PER_COIL * coils:.0f} s; 'windctl spool show ID' tells of one at once"
+            )
         states = () if book is None else states_of(book)
     if shared.json:
         present.result_json({"spools": [state.as_json() for state in states]})

@@ -99,12 +99,16 @@ def states_of(book: Book) -> tuple[SpoolState, ...]:
 
 
 def state_of(book: Book, spool: str) -> SpoolState:
-    """One spool. Raises BookError when there is none of that name."""
+    """One spool, by its own coils and the last ones in the book. Raises BookError when there is none of that
+    name."""
+    from windctl.book.lessons import moment_of
     from windctl.book.shelf import history
     from windctl.plan.experience.fold import learn
 
-    record, spools, lessons = book.spool(spool), book.spools(), book.lessons()
+    record, spools = book.spool(spool), book.spools()
     keep = {("level", spool), ("slope", spool), ("area", spool), ("metal", spool)}
+    heard = [one for kind in (False, True) for one in book.heard(keep, simulated=kind)]
+    lessons = sorted(heard, key=lambda one: (moment_of(one.began), one.lesson.coil))
     learnt = learn(history(lessons, spools), [one.spool for one in spools], keep)
     return _state(record, lessons, learnt)
 
