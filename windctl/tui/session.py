@@ -228,6 +228,15 @@ class Session(Records):
         run.winding.request(Hold("operator", reason, leave=leave))
         return True
 
+    def tidy(self) -> None:
+        """The spindle has just come to rest, and nobody is kept waiting: a moment for the collector."""
+        if self._lock.acquire(blocking=False):  # else the run is being ended, which does it, too
+            try:
+                if self.run is not None:
+                    collector.set_aside()
+            finally:
+                self._lock.release()
+
     def finish(self) -> Outcome | None:
         """Complete the record of a run that has ended, and give the machine back. Safe to call twice."""
         with self._lock:

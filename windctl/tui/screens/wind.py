@@ -20,7 +20,7 @@ from windctl.tui.pictures.curve import Point
 from windctl.tui.pictures.section import Filled
 from windctl.tui.screens.wind_questions import WindQuestions
 from windctl.tui.trail import Trail
-from windctl.tui.view import Glance, bands, glance, shown_near, sound, still
+from windctl.tui.view import Glance, Sound, bands, glance, shown_near, sound, still
 from windctl.tui.widgets.bobbin_section import BobbinSection
 from windctl.tui.widgets.curve import Curve
 from windctl.tui.widgets.figures import Figures
@@ -145,8 +145,11 @@ class WindScreen(WindQuestions):
         """Texts and digits."""
         winding = self.coil.winding
         snapshot = winding.look()
-        if sound(self.latest, snapshot) is not None:
+        heard = sound(self.latest, snapshot)
+        if heard is not None:
             self.app.bell()
+        if heard is Sound.STANDS:
+            self.session.tidy()
         if self.latest is not None and snapshot.answers != self.latest.answers:
             self.tell_answer(snapshot.answer)
         before, self.latest = self.latest, snapshot
