@@ -7,6 +7,7 @@ import json
 import math
 import shutil
 import xml.etree.ElementTree as ET
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -185,6 +186,23 @@ def test_unpair_lets_both_into_stock_again(six: Path, capsys: Printed) -> None:
     assert run(["coils", "unpair", "4", "--reason", "again", "--book", str(six)]) == 1
     assert "goes with no other" in capsys.readouterr().err
     assert run(["coils", "unpair", "2", "--reason", " ", "--book", str(six)]) == 2
+    capsys.readouterr()
+    assert run(["coils", "list", "--json", 'note:"sold alone"', "--book", str(six)]) == 0
+    found = json.loads(capsys.readouterr().out)["coils"]
+    assert len(found) == 2 and number(4) in [coil["coil"] for coil in found]
+
+
+def test_halves_of_a_pair_that_differ_are_no_whole_book(six: Path, capsys: Printed) -> None:
+    """Said of one coil alone, past what windctl lets people do."""
+    asked(capsys, six, "--take")
+    with open_book(six) as book:
+        made = paired(book.addenda(number(1)))
+        assert made is not None
+        book.amend(number(1), replace(made, joined="finish to finish"))
+    assert run(["coils", "verify", "--book", str(six)]) == 7
+    said = capsys.readouterr()
+    other = f"it goes with {made.partner_number}, and joined is 'finish to finish' here, "
+    assert other in said.out + said.err
 
 
 def test_coils_whose_magnet_nobody_told_are_left_out_and_named(tmp_path: Path, capsys: Printed) -> None:

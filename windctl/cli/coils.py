@@ -60,7 +60,8 @@ def list_(
     """The coils in the book, the one started last first; with QUERY those that it asks for.
 
     \b
-    A query is words, looked for in recipe, number and notes, and conditions:
+    A query is words, looked for in recipe, number, notes, and reasons to
+    withdraw or part; and conditions:
       recipe:TEXT note:TEXT by:TEXT     anywhere within
       coil:NAME batch:NAME spool:NAME   whole, with * for anything
       outcome:finished verdict:within   open, finished, stopped, tripped; within,
