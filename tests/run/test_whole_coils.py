@@ -6,6 +6,7 @@ import dataclasses
 import os
 import statistics
 from concurrent.futures import ProcessPoolExecutor
+from multiprocessing import get_context
 from pathlib import Path
 
 import pytest
@@ -36,7 +37,8 @@ def fate(job: tuple[str, Path, int]) -> tuple[float, float, float, float, float]
 
 def many_fates(text: str, folder: Path, seeds: range, target: float, most_turns: int) -> int:
     """Wind every seed, print the figures, hold them to the limits; how many intervals hold the truth."""
-    with ProcessPoolExecutor(max_workers=os.cpu_count()) as pool:
+    # Spawned, since what has threads, such as numpy's, is not to be forked.
+    with ProcessPoolExecutor(os.cpu_count(), mp_context=get_context("spawn")) as pool:
         fates = list(pool.map(fate, [(text, folder, seed) for seed in seeds]))
     inside = sum(abs(measured - true) <= u95 for _, _, measured, u95, true in fates)
     width = statistics.median(u95 / measured for _, _, measured, u95, _ in fates)
