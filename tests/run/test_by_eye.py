@@ -293,3 +293,15 @@ def test_a_turn_that_is_given_on_going_on_may_be_past_the_program(tmp_path: Path
     with gone_on(number, book, prior, at_turn=806.0) as at:
         summary = at.ends().summary
         assert (summary.turns, summary.verdict) == (806.0, "within")
+
+
+def test_a_coil_for_turns_may_be_read_where_it_ends(tmp_path: Path) -> None:
+    """In the moment before it ends; and so it teaches, though nobody asked."""
+    with bench(TO_TURNS, tmp_path / "a.book", counts_only(), faster=4.0) as at:
+        assert at.counter(800).phase == "settling"
+        assert at.reads().readings_used == 1
+        summary = at.ends().summary
+        assert (summary.reason, summary.verdict) == ("the turns asked for are wound", "within")
+        assert summary.dcr_20c_ohm == pytest.approx(at.coil.ohm(800), rel=0.01)
+        (lesson,) = at.book.lessons()
+        assert lesson.lesson.measured

@@ -19,6 +19,7 @@ from windctl.run.requests import (
     Go,
     Hold,
     Note,
+    Read,
     Request,
     Skip,
     Slower,
@@ -166,7 +167,7 @@ class Questions:
         wanted = request_of(line)
         if isinstance(wanted, Slower | Faster | Note | TakeBack) or (
             (isinstance(wanted, Skip) and snapshot.zero is not None and snapshot.zero.wanted)
-            or (snapshot.by_eye and isinstance(wanted, CountIs))
+            or (snapshot.by_eye and isinstance(wanted, CountIs | Read))
         ):
             self._run.request(wanted)
         elif line.lower() == "help":

@@ -113,6 +113,7 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
             return back
         case _:
             at_rest = decision.asks in _AT_REST or (state.check is not None and state.drives_off)
+            at_rest = at_rest or state.by_eye  # nobody says anything of a coil that they are winding
             if leaving or not at_rest or not state.in_hand or not state.let_go:
                 return Answer(says="that can be said once the coil has turns and stands")
             return _at_the_wire(request, state, at_ms)

@@ -191,7 +191,8 @@ class WindQuestions(Room):
     def action_read(self) -> None:
         """A reading by hand; where the drives are on, they go off first."""
         snapshot = self.coil.winding.look()
-        if snapshot.turns <= 0 or (snapshot.asks is None and snapshot.check is None):
+        stands = snapshot.asks is not None or snapshot.check is not None or snapshot.by_eye
+        if snapshot.turns <= 0 or not stands:
             self.notify("a coil is read once it has turns and stands", markup=False)
             return
         self._prompted = None if snapshot.check is None else snapshot.check.turn
