@@ -153,7 +153,7 @@ def test_all_files_of_a_check_are_told_of_and_the_good_ones_named(shop: Shop, ca
         f"{one}: is empty",
         f"{two}:1:2: is not valid TOML: Invalid initial character for a key part",
     ]
-    assert shown.out.startswith(f"{shop.recipe}: Sample, ")
+    assert shown.out.startswith(f"{shop.recipe}: good: Sample, ")
 
 
 @pytest.mark.parametrize(

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+import re
 import shutil
 from pathlib import Path
 from typing import Any
@@ -140,3 +141,23 @@ def test_what_left_the_bench_teaches_no_resistance(book: str, capsys: Printed) -
     assert taught() == before
     assert run([*measure(book, "--ohm", "200.5", "--celsius", "20", "--stage", "potted")]) == 0
     assert taught() == before + 1
+
+
+def test_mass_and_build_are_told_beside_the_plans_and_a_slip_shows(
+    book: str, tmp_path: Path, capsys: Printed
+) -> None:
+    """The plan's figures at as many turns; a coil weighed with its bobbin is far off."""
+    turns = asked(capsys, "coils", "show", "1", "--book", book)["turns"]
+    recipe = str(recipes.to_resistance(tmp_path))
+    plan = asked(capsys, "plan", recipe, "--turns", f"{turns:.0f}", "--machine", "virtual")
+    grams, build = plan["wire_mass_g"], plan["build_mm"]
+    assert (
+        run(["coils", "measure", "1", "--book", book, "--mass", f"{grams:.3f}", "--build", f"{build:.3f}"])
+        == 0
+    )
+    told = capsys.readouterr().out
+    figures = re.findall(r"(wire|build) ([\d.]+) (?:g|mm), where the plan has ([\d.]+)", told)
+    assert [(name, ours == theirs) for name, ours, theirs in figures] == [("wire", True), ("build", True)]
+    assert "slip" not in told
+    assert run(["coils", "measure", "1", "--book", book, "--mass", f"{4 * grams:.2f}"]) == 0
+    assert "is the bobbin taken off?" in capsys.readouterr().out

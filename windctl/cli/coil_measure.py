@@ -74,7 +74,7 @@ def measure(shared: Shared, /, coil: str, by: str | None, change_pct: float, **g
     with what the coil read before: it still reads the same, it has changed, or that cannot be told. What the
     two readings share (one meter, one thermometer, one warm coil) drops out of the comparison.
     """
-    from windctl.desk.measuring import Measurement, fact_of, judged
+    from windctl.desk.measuring import Measurement, beside_plan, fact_of, judged
 
     gain_pct = given.pop("gain_pct")
     profile = profile_of(shared)
@@ -88,6 +88,7 @@ def measure(shared: Shared, /, coil: str, by: str | None, change_pct: float, **g
         taken = Measurement(**given, gain_rel=None if gain_pct is None else gain_pct / 100.0)
         fact = fact_of(taken, profile, who, when)
         said = judged(book, head.number, fact, change_pct)
+        planned = beside_plan(book, head.number, fact)
         book.amend(head.number, fact)
     if shared.json:
         from windctl.record.addenda import plain
@@ -97,6 +98,8 @@ def measure(shared: Shared, /, coil: str, by: str | None, change_pct: float, **g
         present.result_json(answer)
         return
     _tell(head.number, said)
+    for line in planned:
+        present.result(line)
     if taken.ohm is not None and taken.minutes is None:
         _tell_if_warm(head.ended, when)
 

@@ -40,7 +40,8 @@ def check(shared: Shared, files: tuple[Path, ...]) -> ExitCode:
         present.result_json({"recipes": sound, "problems": listed})
     else:
         for entry in sound:
-            present.result(f"{entry['file']}: {entry['name']}, {present.short_digest(entry['digest'])}")
+            digest = present.short_digest(entry["digest"])
+            present.result(f"{entry['file']}: good: {entry['name']}, {digest}")
         for problem in problems:
             present.message(str(problem))
     return ExitCode.FILE_INVALID if problems else ExitCode.DONE

@@ -15,6 +15,15 @@ if TYPE_CHECKING:
     from windctl.shop.still_reads import ColdValue, Still
 
 
+# Beyond three times what wire, enamel and packing leave open from the tables alone, it is likelier a slip.
+_ODD_MASS, _ODD_BUILD = 0.15, 0.35
+_LOOK_AT_MASS = "is the bobbin taken off? If it was a slip, `windctl coils withdraw` keeps it from teaching"
+_LOOK_AT_BUILD = (
+    "is it half of what lies beyond the core, at the core's ends? If it was a slip, `windctl coils withdraw` "
+    "keeps it from teaching"
+)
+
+
 @dataclass(frozen=True, slots=True)
 class Measurement:
     """What somebody measured; None: not that. Units as in the record. `gain_rel`: of a meter with a `meter`
@@ -129,6 +138,34 @@ def judged(book: Book, coil: str, fact: CoilMeasured, change_pct: float | None =
     if target.kind != "turns" and reading.bare:
         said = verdict(reading.ohm - half, reading.ohm + half, target.value, target.tolerance_pct)
     return Judged(reading, half, said, lived.stills[-1])
+
+
+def beside_plan(book: Book, coil: str, fact: CoilMeasured) -> tuple[str, ...]:
+    """Mass and build that were measured, beside what the recipe's plan has at that many turns: a slip shows.
+
+    Empty where neither was measured, and for a coil whose record has no plan to compare with.
+    """
+    from math import pi
+
+    from windctl.desk.numbers import grouped
+    from windctl.material.wire import mass_g_per_m
+    from windctl.record.events import CoilStarted
+
+    started, turns = next(iter(book.events(coil))), book.find(coil).turns
+    basis = started.basis if isinstance(started, CoilStarted) else None
+    if basis is None or not turns:
+        return ()
+    build = basis.build_per_turn_mm * turns
+    metres = turns * (basis.perimeter_mm + pi * basis.crown * build) / 1000.0
+    lines = []
+    if fact.grams is not None:
+        planned = metres * mass_g_per_m(*basis.wire_sizes())
+        slip = "" if abs(fact.grams / planned - 1.0) < _ODD_MASS else f": {_LOOK_AT_MASS}"
+        lines.append(f"wire {grouped(fact.grams, 1)} g, where the plan has {grouped(planned, 1)} g{slip}")
+    if fact.build_mm is not None:
+        slip = "" if abs(fact.build_mm / build - 1.0) < _ODD_BUILD else f": {_LOOK_AT_BUILD}"
+        lines.append(f"build {grouped(fact.build_mm, 1)} mm, where the plan has {grouped(build, 1)} mm{slip}")
+    return tuple(lines)
 
 
 def _refuse(taken: Measurement) -> None:

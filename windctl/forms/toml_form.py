@@ -25,6 +25,9 @@ _DEEP_KEY = re.compile(
     r"""(?:^|[\[{,])[ \t]*+(?:(?:[A-Za-z0-9_-]++|"(?:\\.|[^"\\\n])*+"|'[^'\n]*+')[ \t]*+\.[ \t]*+){40}""",
     re.MULTILINE,
 )
+_NUMBER_BEFORE = re.compile(r"=[ \t]*([-+]?\d[\d.]*)[ \t]*$")
+_COMMA_PART = re.compile(r",(\d+)[ \t]*(?:#.*)?$")
+_UNIT = re.compile(r"[A-Za-z°%][A-Za-z0-9°%/]*")
 _LONG_NUMBER = re.compile(r"[0-9_]{4000,}")
 
 
@@ -137,7 +140,22 @@ def _broken(broken: tomllib.TOMLDecodeError, text: str, file: str) -> Problem:
     if match is None:
         return Problem(file, 0, 0, f"is not valid TOML: {shorten(str(broken), 120)}")
     spot = Spot(int(match["line"]), int(match["column"])) if match["line"] else _spot_at(text, len(text))
-    return Problem(file, spot.line, spot.column, f"is not valid TOML: {shorten(match['what'], 120)}")
+    what = shorten(match["what"], 120)
+    return Problem(file, spot.line, spot.column, f"is not valid TOML: {_likely(text, spot) or what}")
+
+
+def _likely(text: str, spot: Spot) -> str | None:
+    """The slip that people make where the parser only finds that the line should have ended."""
+    lines = text.split("\n")
+    line = lines[spot.line - 1] if spot.line <= len(lines) else ""
+    before, after = _NUMBER_BEFORE.search(line[: spot.column - 1]), line[spot.column - 1 :]
+    if before is None:
+        return None
+    if comma := _COMMA_PART.match(after):
+        return f"the decimal sign is a point: {before[1]}.{comma[1]}"
+    if unit := _UNIT.match(after):
+        return f"a number stands alone, its unit is in the key's name: {before[1]}, without {unit[0]}"
+    return None
 
 
 def _spot_at(text: str, at: int) -> Spot:

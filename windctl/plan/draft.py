@@ -120,6 +120,10 @@ def draft(answers: Answers) -> str:
                     f"set_cn = {_pull_cn(wire):g}",
                     "about a sixth of what breaks this wire; 1 cN is about the weight of 1 gram",
                 ),
+                (
+                    f"band_cn = {_pull_cn(wire) / 2:g}",
+                    "the mean of a turn may differ by this much, else it stops: a broken wire, a snag",
+                ),
             ]
         ),
         _block([("[stop]", ""), *_stop_lines(answers, wire, bobbin)]),
