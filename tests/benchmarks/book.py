@@ -1,4 +1,5 @@
-"""What a commit to the coil book costs, how much room a coil takes, how long it takes to find one of many."""
+"""What a commit to the coil book costs, how much room a coil takes, how long it takes to find one of many;
+and what a plan, a list, a chart and pairs cost in a book of very many coils beside one of few."""
 
 from __future__ import annotations
 
@@ -12,11 +13,20 @@ from pathlib import Path
 
 from tests.book.many import DENSE_TURNS, fill
 from tests.book.samples import finished, packed, seal, started, wound
+from tests.cli.pairable import ROOT
 from windctl.book.book import Book
 from windctl.book.open import open_book
+from windctl.book.shelf import history
+from windctl.desk.lots import gather
+from windctl.desk.stock import Wish, matched, stock_of
+from windctl.plan.experience.fold import learn
+from windctl.plan.experience.keys import asked_for
+from windctl.recipe.load import parse_recipe
+from windctl.shop.matching import Sitting
 
 COILS = 3
 MANY, DENSE = 50_000, 200
+FEW = 480  # a small shop's first year
 PAGE = 100  # coils on a screen
 LIMIT_MS = 60.0
 
@@ -46,6 +56,7 @@ def run() -> None:
     with tempfile.TemporaryDirectory() as folder:
         _few(Path(folder) / "shop.book")
         _many(Path(folder) / "many.book")
+        _taught(Path(folder))
 
 
 def _few(path: Path) -> None:
@@ -106,6 +117,44 @@ def _many(path: Path) -> None:
             _said(f"find {name}", lambda name=name: book.find(name), 1)  # type: ignore[misc]  # bound here
     slowest, busiest = max(wall for wall, _ in took), max(busy for _, busy in took)
     print(f"slowest query       {slowest:.1f} ms (processor {busiest:.1f}), at most {LIMIT_MS:.0f} wanted")
+
+
+def _taught(folder: Path) -> None:
+    """The same questions of a book of very many coils, each with its lesson, and of one of few."""
+    took: dict[int, dict[str, float]] = {}
+    for coils in (FEW, MANY):
+        path = folder / f"taught-{coils}.book"
+        fill(path, coils, 0, taught=True)
+        print(f"{coils} coils with lessons")
+        with open_book(path, readonly=True) as book:
+            took[coils] = _asked(book, coils // 24 - 1)
+    print(f"in the book of {MANY} beside that of {FEW}, processor's time:")
+    for what, many in took[MANY].items():
+        few = took[FEW][what]
+        print(f"  {what:62} {many / few:6.1f} times, {many - few:+.0f} ms")
+
+
+def _asked(book: Book, lot: int) -> dict[str, float]:
+    """What is asked for every day, about the last lots; by name, the processor's time, ms."""
+    recipe = parse_recipe((ROOT / "recipes" / "hum-pair-north.toml").read_text(encoding="utf-8"), "")
+    about = asked_for(recipe, f"s{lot * 24 // 40}", "b1")
+    heard = book.heard(about, simulated=False)
+    lots = ",".join(f'"lot {lot - n}"' for n in range(8))
+    one = f'batch:"lot {lot}"'
+    whole = book.count()
+
+    def pairs() -> object:
+        return matched(book, stock_of(book, f"recipe:hum batch:{lots}", None), Wish(Sitting()))
+
+    asked: dict[str, tuple[Callable[[], object], int]] = {
+        "lessons that a plan hears": (lambda: book.heard(about, simulated=False), len(heard)),
+        "what they come to": (lambda: learn(history(heard, ()), (), about), len(heard)),
+        "chart of a lot": (lambda: gather(book, book.list(one)), book.count(one)),
+        "pairs from eight lots": (pairs, book.count(f"recipe:hum batch:{lots}")),
+        "a page of the list": (lambda: book.lines(limit=PAGE), PAGE),
+        "the whole list": (book.lines, whole),
+    }
+    return {what: _said(what, ask, found)[1] for what, (ask, found) in asked.items()}
 
 
 def _timed(book: Book, query: str) -> tuple[float, float]:

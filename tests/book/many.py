@@ -11,7 +11,7 @@ import random
 import sqlite3
 from collections.abc import Iterator
 from contextlib import closing
-from dataclasses import dataclass, replace
+from dataclasses import astuple, dataclass, replace
 from datetime import datetime, timedelta, timezone
 from pathlib import Path
 from typing import Any
@@ -28,6 +28,7 @@ from windctl.book.heads import (
     opened,
     seal_payload,
 )
+from windctl.book.lessons import row_of
 from windctl.book.logs import COIL, LOGS
 from windctl.book.open import open_book
 from windctl.book.words import words_of, written_in
@@ -64,6 +65,7 @@ _WORDS = (
     "again",
     "wax",
 )
+_LESSON = "INSERT INTO lessons VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?)"
 _BATCH = 2000  # coils written at once
 
 
@@ -91,8 +93,9 @@ def fill(path: Path, n: int, dense: int, *, taught: bool = False) -> None:
                 kind = patterns[DENSE_TURNS if k >= n - dense else 0]
                 head, rows, links, curve = _coil(k, kind, serials, draw, shop)
                 _write(connection, head, rows, links, curve)
-                if shop is not None:
-                    shop.teach(connection, head)
+                said = [] if shop is None else [shop.taught(connection, head)]
+                row = row_of(head.started, head.bench, rows[:1], said, silent=False)
+                connection.execute(_LESSON, [head.id, *astuple(row)])
             connection.commit()
         numbers = [(bench, year, last) for (bench, year), last in serials.items()]
         connection.executemany("INSERT INTO numbers VALUES (?, ?, ?)", numbers)
@@ -110,13 +113,15 @@ class _Shop:
         self._levels: dict[str, float] = {}
         self._begun, self._last = 0, genesis_of_log(LOGS)
 
-    def started(self, k: int, first: CoilStarted) -> CoilStarted:
+    def planned(self, k: int, first: CoilStarted) -> CoilStarted:
+        """The same start of a coil of one of these recipes."""
         plan, text = self.plans[k // 24 % len(self.plans)]
         return replace(
             first, recipe_name=plan.recipe_name, recipe_text=text, prior=plan.prior, basis=plan.basis
         )
 
-    def teach(self, connection: sqlite3.Connection, head: CoilHead) -> None:
+    def taught(self, connection: sqlite3.Connection, head: CoilHead) -> CoilTaught:
+        """Write down what a coil teaches."""
         plan = next(plan for plan, _ in self.plans if plan.recipe_name == head.recipe)
         level = self._levels.setdefault(head.spool, self._draw.gauss(0.0, 0.03))
         turns = head.turns or 0.0
@@ -134,7 +139,9 @@ class _Shop:
         log = COIL + head.id
         self._begun += 1
         self._last = _say(connection, LOGS, self._begun, self._last, LogBegun(log))
-        _say(connection, log, 1, genesis_of_log(log), CoilTaught("0", lesson))
+        taught = CoilTaught("0", lesson)
+        _say(connection, log, 1, genesis_of_log(log), taught)
+        return taught
 
 
 def _say(connection: sqlite3.Connection, log: str, n: int, last: bytes, fact: Addendum) -> bytes:
@@ -178,7 +185,7 @@ def _coil(
         spool=f"s{k // 40}",
     )
     if shop is not None:
-        first = shop.started(k, first)
+        first = shop.planned(k, first)
     notes = [NoteMade(98_000, " ".join(draw.choices(_WORDS, k=8)), "Demo Winder")] * (draw.random() < 0.33)
     verdict = draw.choices(("within", "outside", "not judged"), (90, 6, 4))[0]
     end = replace(

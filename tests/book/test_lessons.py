@@ -13,6 +13,7 @@ from pathlib import Path
 
 import pytest
 
+from tests.book.many import fill
 from tests.book.samples import ENDED, wind
 from tests.plan.experience.lots import basis
 from windctl.book import lessons as kept
@@ -137,3 +138,12 @@ def test_a_row_among_the_lessons_that_is_gone_or_too_many_is_found(lots: Book, p
         first.number: "its row among the lessons: there is none",
         "no coil": "1 rows among the lessons belong to no coil in the book",
     }
+
+
+def test_a_shop_made_quickly_is_one_made_for_real(path: Path) -> None:
+    """The book that benchmarks ask: whole, and each of its coils teaches."""
+    fill(path, 60, 0, taught=True)
+    with open_book(path) as book:
+        assert book.verify().good
+        assert len(book.lessons()) == len(book.heard((), simulated=False)) == 60
+        assert [one.lesson.coil for one in book.lessons()] == [head.number for head in book.list()][::-1]
