@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 import pytest
 from textual.pilot import Pilot
@@ -10,12 +12,13 @@ from textual.widgets import Input, Static
 
 from tests.cli.test_by_eye import MACHINE, small
 from tests.run.by_eye import port
+from tests.tui.fakes import CARD, SNAPSHOT
 from tests.tui.test_coil_by_keys import press, shown, until
 from windctl.book.open import open_book
 from windctl.desk.asked import Shared
 from windctl.desk.words import turns_of
 from windctl.machine import by_eye
-from windctl.run.snapshot import Snapshot
+from windctl.run.snapshot import Check, Snapshot
 from windctl.tui.app import WindctlApp
 from windctl.tui.dialogs.counter import CounterPrompt
 from windctl.tui.dialogs.read import ReadingPrompt
@@ -23,6 +26,7 @@ from windctl.tui.screens.before import BeforeScreen
 from windctl.tui.screens.recipes import RecipesScreen
 from windctl.tui.screens.wind import WindScreen
 from windctl.tui.session import Session
+from windctl.tui.view import glance
 from windctl.tui.widgets.checklist import Checklist
 from windctl.tui.widgets.hand_target import HandTarget
 from windctl.tui.widgets.state_band import StateBand
@@ -104,3 +108,56 @@ def test_a_counter_is_typed_as_people_write_it(line: str) -> None:
 @pytest.mark.parametrize("line", ["", "k", "3 20", "3 2000", "32-0", "-3", "3200 turns"])
 def test_what_is_no_number_is_none(line: str) -> None:
     assert turns_of(line) is None
+
+
+BY_EYE = replace(
+    SNAPSHOT,
+    phase="waiting",
+    asks="count",
+    by_eye=True,
+    driven=False,
+    virtual=False,
+    pace_rpm=0.0,
+    seconds_left=None,
+    tension_cn=None,
+    guide_mm=None,
+    slow_turn=7896.0,
+    stop_u95=105.0,
+    told_at_ms=1000,
+)
+CHECK = Check(7946.0, 90.0, 50.0, contact=False, thermometer=False)
+
+
+@pytest.mark.parametrize(
+    ("changed", "words", "figure", "when"),
+    [
+        ({}, "to", "7 946", "slow from 7 896, then K"),
+        ({"turns": 7900.0}, "to", "7 946", "and stop, then K"),
+        ({"turns": 0.0, "begun": False}, "to", "7 946", "counter to 0 first, K"),
+        ({"turns": 7946.0, "phase": "reading", "check": CHECK}, "at turn", "7 946", "R types it"),
+        ({"hands": "read the resistance"}, "to", "7 946", "insulate the wire first"),
+        ({"hands": "unwind 50 turns, to turn 4762.25"}, "turn it back by hand", "", "then K: the counter"),
+        ({"phase": "settling", "asks": None}, "the coil ends in a moment", "", "R reads it, U undoes"),
+        ({"phase": "held"}, "stop your own motor", "", "windctl cannot; K: the counter"),
+    ],
+)
+def test_what_to_do_next_is_whole_in_the_band_of_a_small_terminal(
+    changed: dict[str, Any], words: str, figure: str, when: str
+) -> None:
+    seen = glance(replace(BY_EYE, **changed), CARD)
+    assert (seen.next.words, seen.next.figure, seen.next.when) == (words, figure, when)
+    assert seen.look.word in ("wind", "read", "settling", "held")  # never "turning": nobody knows
+    band = StateBand()
+    band.look, band.next = seen.look, seen.next
+    text = "\n".join("".join(cell.char for cell in row) for row in band.drawn(80, 3))
+    assert words in text
+    assert when in text
+
+
+def test_the_figures_say_where_the_stop_lies_and_how_a_hand_lays_and_no_pace() -> None:
+    rows = dict(glance(BY_EYE, replace(CARD, pass_turns=60.0)).rows)
+    assert rows["stop"] == "7 946 ± 105 turns"
+    assert rows["lay"] == "60 turns each way"
+    assert "pace" not in rows
+    assert glance(BY_EYE, CARD).under_digits == "of 7 946 · 60 % · R reads"
+    assert glance(replace(BY_EYE, can_take_back=True), CARD).under_digits.endswith(" · U undoes")

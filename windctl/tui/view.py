@@ -190,7 +190,7 @@ def _next_by_eye(snapshot: Snapshot) -> Next:
     if snapshot.phase == "reading" and snapshot.check is not None:
         return Next("at turn", grouped(snapshot.check.turn), "R types it")
     if snapshot.phase == "settling":
-        return Next("the coil ends in a moment", "", "R reads it first, U takes the turn back")
+        return Next("the coil ends in a moment", "", "R reads it, U undoes")
     if snapshot.phase == "held":
         return Next("stop your own motor", "", "windctl cannot; K: the counter")
     if snapshot.phase != "waiting" or snapshot.stop_turn is None:
