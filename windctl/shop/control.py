@@ -121,7 +121,7 @@ def signals(chart: Chart, rules: Sequence[Rule]) -> tuple[Signal, ...]:
                 continue
             began, side = start + broken[0], broken[1]
             if last is not None and last.side == side and began <= last.last + 1:
-                found.remove(last)
+                found.pop()  # it goes on
                 last = Signal(rule, last.first, last.seen, at, side)
             else:
                 last = Signal(rule, began, at, at, side)

@@ -86,7 +86,7 @@ def lot_of(
     return Lot(
         quantity,
         used,
-        tuple(coil for coil in coils if coil not in used),
+        tuple(coil for coil in coils if coil.value(quantity) is None),
         chart,
         tuple(rules),
         signals(chart, rules),
