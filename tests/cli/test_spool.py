@@ -74,7 +74,7 @@ def test_what_is_no_wire_is_refused(book: str, capsys: Printed) -> None:
     for arguments, words in (
         (("--gauge", "AWG 42"), "how thick is its enamel?"),
         (("--gauge", "AWG 99", "--enamel", "grade 1"), "there is no such wire"),
-        (("--enamel", "grade 1"), "there is no such wire: give exactly one of gauge and diameter_mm"),
+        (("--enamel", "grade 1"), "which wire is it?"),
         (("--gauge", "AWG 42", "--overall", "0.05"), "less than the bare"),
         (("--gauge", "AWG 42", "--enamel", "grade 1", "--ohm-per-m", "9"), "about 5.47 ohm per metre"),
         (("--gauge", "AWG 42", "--enamel", "grade 1", "--ohm-per-m-sd", "1"), "stands alone"),
@@ -98,6 +98,20 @@ def test_a_spool_is_weighed_and_measured(book: str, capsys: Printed) -> None:
         capsys, "spool", "measure", "s1", "--length", "2", "--ohm", "20", "--celsius", "20", "--book", book
     )
     assert run(["spool", "weigh", "s9", "100", "--book", book]) == 1
+
+
+def test_more_wire_than_there_was_is_told_at_once(book: str, capsys: Printed) -> None:
+    assert run([*NEW, "--book", book]) == 0
+    for grams, slip in (("100", False), ("101", False), ("60", False), ("160", True)):
+        capsys.readouterr()
+        assert run(["spool", "weigh", "s1", grams, "--book", book]) == 0
+        assert ("was the empty spool taken off?" in capsys.readouterr().err) is slip, grams
+
+
+def test_all_that_a_new_spool_lacks_is_asked_for_at_once(book: str, capsys: Printed) -> None:
+    told = refused(capsys, "spool", "add", "--book", book)
+    assert "which wire" in told
+    assert "how thick is its enamel" in told
 
 
 def wind(capsys: Printed, recipe: str, book: str, *more: str) -> Any:

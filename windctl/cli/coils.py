@@ -208,13 +208,16 @@ def _imported(fact: CoilImported) -> str:
     return f"{when} by {fact.by}; {known}{'teaches' if fact.teaches else 'teaches nothing'}"
 
 
+_TAUGHT = {"share": "how its resistance grew"}  # the others are words as they stand
+
+
 def _show_addendum(fact: Addendum) -> None:
     """What was said after the record was closed."""
     from windctl.paper.told import said_since
     from windctl.record.addenda import CoilTaught, plain
 
     if isinstance(fact, CoilTaught):
-        kinds = ", ".join(one["what"] for one in plain(fact)["lesson"]["measured"])
+        kinds = ", ".join(_TAUGHT.get(one["what"], one["what"]) for one in plain(fact)["lesson"]["measured"])
         present.result(f"taught: {kinds or 'nothing, but that it took wire'}")
     elif (said := said_since(fact)) is not None:
         when, who, what = said

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 import click
 
 from windctl.cli import present, typed
@@ -10,6 +12,11 @@ from windctl.desk import spool_words as words
 from windctl.desk.books import book_if_any, book_to_read
 from windctl.desk.spool_keeping import OHM_PER_M_SD_PCT, SCALE_SD_G
 from windctl.errors import UsageError
+
+if TYPE_CHECKING:
+    from windctl.desk.spools import SpoolState
+
+_MORE, _MORE_M = 1.05, 50.0  # more wire than before, beyond what a scale and the wire's table may be off by
 
 _MANY, _S_PER_COIL = 5000, 0.0006  # from how many coils on it is said how long a list of spools takes
 
@@ -52,8 +59,13 @@ def add(
     """Keep a new spool under ID (write it on the spool), or under the next free number."""
     from windctl.desk.spool_keeping import NewSpool, keep_new
 
+    missing = []
+    if gauge is None and diameter_mm is None:
+        missing.append('which wire is it? Give --gauge "AWG 42", say, or --diameter')
     if enamel is None and overall_mm is None:
-        raise UsageError("how thick is its enamel? Give --enamel or, better, --overall from a micrometer")
+        missing.append("how thick is its enamel? Give --enamel or, better, --overall from a micrometer")
+    if missing:
+        raise UsageError("\n".join(missing))
     if ohm_per_m_sd is not None and ohm_per_m is None:
         raise UsageError("--ohm-per-m-sd stands alone: give --ohm-per-m, whose uncertainty it is")
     new = NewSpool(
@@ -126,9 +138,17 @@ def show(shared: Shared, spool_id: str) -> None:
 def weigh(shared: Shared, spool_id: str, grams: float, sd_g: float) -> None:
     """Keep that the wire on spool ID now weighs G grams: the scale's reading less the empty spool."""
     from windctl.desk.spool_keeping import keep_weighing
+    from windctl.desk.spools import state_of
 
+    with book_to_read(shared) as book:
+        before = state_of(book, spool_id).left_m
     keep_weighing(shared, spool_id, grams, sd_g)
-    _tell(shared, spool_id)
+    after = _tell(shared, spool_id).left_m
+    if before is not None and after is not None and after > _MORE * before + _MORE_M:
+        present.message(
+            f"caution: that is more wire than there was, {present.grouped(max(before, 0.0))} m: was the "
+            "empty spool taken off? Weigh it again; the last weighing counts"
+        )
 
 
 @spool.command(short_help="Ohm per metre from a piece of its loose end.")
@@ -151,14 +171,14 @@ def measure(shared: Shared, spool_id: str, metres: float, ohm: float, celsius: f
     _tell(shared, spool_id)
 
 
-def _tell(shared: Shared, spool_id: str) -> None:
+def _tell(shared: Shared, spool_id: str) -> SpoolState:
     from windctl.desk.spools import state_of
 
     with book_to_read(shared) as book:
         state = state_of(book, spool_id)
     if shared.json:
         present.result_json(state.as_json())
-        return
+        return state
     rows = [
         ("spool", state.id),
         ("wire", words.wire(state)),
@@ -172,3 +192,4 @@ def _tell(shared: Shared, spool_id: str) -> None:
     present.pairs([(name, value) for name, value in rows if value])
     for line in words.told(state):
         present.result(line)
+    return state

@@ -31,7 +31,7 @@ if TYPE_CHECKING:
 DEFAULT_SEED = 1
 
 # What the record keeps of a simulated machine: enough to simulate the same one again.
-_SIMULATED = re.compile(r", plant seed (\d+)(?:, (\d+) coils and (\d+) m into the spool)?$")
+_SIMULATED = re.compile(r", plant seed (\d+)(?:, (\d+) coils? and (\d+) m into the spool)?$")
 
 
 @dataclass(frozen=True, slots=True)
@@ -147,7 +147,8 @@ class _Drawn:
         return zlib.crc32(f"{self.seed} {self.spool}".encode()) if self.spool else None
 
     def __str__(self) -> str:
-        into = f", {self.coils} coils and {self.metres} m into the spool" if self.spool else ""
+        coils = f"{self.coils} coil{'' if self.coils == 1 else 's'}"
+        into = f", {coils} and {self.metres} m into the spool" if self.spool else ""
         return f", plant seed {self.seed}{into}"
 
 

@@ -6,7 +6,7 @@ import dataclasses
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from windctl.numbers import apart, duration, grouped, ohm, signed_mm, with_uncertainty
+from windctl.numbers import apart, at_turn, duration, grouped, ohm, signed_mm, with_uncertainty
 from windctl.protocol.messages import Cause, Refusal, Trip
 from windctl.protocol.rules import NO_BOARD_QUEUE
 from windctl.record import events as facts
@@ -102,7 +102,7 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.LinkLost():
             return f"The line to the machine was lost: {event.reason}."
         case facts.CountCorrected():
-            return f"The turn was set to {grouped(event.turn, 1)} by {by(event.by)}: {event.reason}."
+            return f"The turn was set to {at_turn(event.turn)} by {by(event.by)}: {event.reason}."
         case facts.CounterRead():
             if event.doubted:
                 return f"A counter at {grouped(event.turn)} was typed by {by(event.by)}, and asked about."
@@ -113,12 +113,12 @@ def told(event: Event, counts_per_turn: int) -> str | None:
         case facts.HandsAsked():
             return f"Drives off: {event.reason}."
         case facts.WireBroke():
-            return f"The wire broke at turn {grouped(event.turn, 1)}."
+            return f"The wire broke at turn {at_turn(event.turn)}."
         case facts.Spliced():
-            return f"The wire was spliced at turn {grouped(event.turn, 1)} by {by(event.by)}."
+            return f"The wire was spliced at turn {at_turn(event.turn)} by {by(event.by)}."
         case facts.WireChanged():
             name = f", {event.spool}," if event.spool else ""
-            return f"Another spool{name} was joined on at turn {grouped(event.turn, 1)}."
+            return f"Another spool{name} was joined on at turn {at_turn(event.turn)}."
         case facts.CheckAsked():
             before, after = _Z95 * event.without_ohm, _Z95 * event.with_ohm
             gain = f"which takes the finish from ±{before:.0f} to ±{after:.0f} ohm"
