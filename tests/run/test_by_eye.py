@@ -49,6 +49,7 @@ def test_a_whole_coil_to_a_resistance_with_two_typed_readings(tmp_path: Path) ->
         assert seen.stop_turn != foreseen
         assert seen.stop_u95 < 0.3 * first  # and yet it holds the turn that meets the target
         assert 0 < at.coil.turn_for(5800.0) - seen.stop_turn <= 1.5 * seen.stop_u95
+        assert seen.says.startswith("insulate the bared spot again; ") and seen.bared
         assert f"wind to {seen.stop_turn:,.0f} and read the counter".replace(",", " ") in seen.says
         assert f"; slow down at {seen.stop_turn - 50:,.0f}".replace(",", " ") in seen.says
         at.counter(seen.stop_turn)

@@ -135,7 +135,7 @@ CHECK = Check(7946.0, 90.0, 50.0, contact=False, thermometer=False)
         ({"turns": 7900.0}, "to", "7 946", "and stop, then K"),
         ({"turns": 0.0, "begun": False}, "to", "7 946", "counter to 0 first, K"),
         ({"turns": 7946.0, "phase": "reading", "check": CHECK}, "at turn", "7 946", "R types it"),
-        ({"hands": "read the resistance"}, "to", "7 946", "insulate the wire first"),
+        ({"bared": True}, "to", "7 946", "insulate the wire first"),
         ({"hands": "unwind 50 turns, to turn 4762.25"}, "turn it back by hand", "", "then K: the counter"),
         ({"phase": "settling", "asks": None}, "the coil ends in a moment", "", "R reads it, U undoes"),
         ({"phase": "held"}, "stop your own motor", "", "windctl cannot; K: the counter"),

@@ -41,6 +41,8 @@ def checking(state: State, at_ms: int) -> tuple[Event, ...]:
         end = turn if target.kind == "turns" else max(turn, turn_for(estimate, target.value).turn)
         found = check_at(estimate, turn, min(end, float(target.max_turns)))
         asked = CheckAsked(at_ms, turn, found.without_ohm, found.with_ohm)
+        if state.by_eye:
+            return (asked,)  # no drives to switch off
         return (asked, HandsAsked(at_ms, "windctl", "read the resistance"))
     if state.typed:
         return (CheckTaken(at_ms, turn, True, "operator"),)

@@ -202,7 +202,7 @@ def _joined(request: Splice | NewWire, state: State, at_ms: int) -> Answer:
         return Answer(says=_outside(turn, state.turns))
     if not state.drives_off:
         return Answer((HandsAsked(at_ms, by, "join the wire"),), f"{OFF} Then say it again.")
-    facts: list[Event] = [HandsAsked(at_ms, by, "join the wire")]
+    facts: list[Event] = [] if state.by_eye else [HandsAsked(at_ms, by, "join the wire")]
     if state.broke is None and state.broke_near is not None:
         facts.append(WireBroke(at_ms, turn, by))
     if round(turn * state.counts_per_turn) != state.count:

@@ -41,7 +41,7 @@ def says_by_eye(state: State) -> str:
         start = f"the record ends at turn {grouped(state.turns)}, say so if the counter differs; "
     elif not state.let_go:
         start = "set the counter to 0; "
-    elif state.checked_count == state.count:
+    elif state.typed:
         start = "insulate the bared spot again; "
     return f"{start}{_goal(state)}"
 

@@ -70,6 +70,7 @@ class Snapshot:
     zero: ZeroSeen | None = None  # before the first turn, where the board's contact reads
     can_take_back: bool = False  # a typed reading or turn can still be taken back
     by_eye: bool = False  # nobody counts for windctl: turns are read off a counter and typed
+    bared: bool = False  # by eye: the wire was bared here to be read
     told_at_ms: int | None = None  # when in this run the counter was last read and believed
     stop_u95: float | None = None  # turns: of the one that meets a resistance, where it is by eye
     guide_look: GuideLook | None = None  # the guide is shown before the first turn
@@ -125,6 +126,7 @@ def snapshot(state: State, decision: Decision, steps_per_mm: float) -> Snapshot:
         zero=zero_seen(state),
         can_take_back=state.before_typed is not None and state.finished is None,
         by_eye=state.by_eye,
+        bared=state.by_eye and state.typed,
         told_at_ms=None if state.counter is None else state.counter.at_ms,
         stop_u95=stop_half_width(state) if state.by_eye else None,
         guide_look=guide_look(state, steps_per_mm),

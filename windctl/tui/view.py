@@ -200,7 +200,7 @@ def _next_by_eye(snapshot: Snapshot) -> Next:
     slow = snapshot.slow_turn
     slows = slow is not None and snapshot.turns < slow
     when = f"slow from {grouped(slow or 0.0)}, then K" if slows else "and stop, then K"
-    if snapshot.hands is not None and snapshot.check is None:  # it was bared there to be read
+    if snapshot.bared:
         when = "insulate the wire first"
     return Next("to", grouped(snapshot.stop_turn), when if snapshot.begun else "counter to 0 first, K")
 
