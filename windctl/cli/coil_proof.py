@@ -90,6 +90,7 @@ def _tell(shared: Shared, checked: int, broken: list[BrokenCoil]) -> ExitCode:
     else:
         present.result(f"{checked} checked, {len({one.coil for one in broken})} broken")
         for one in broken:
-            place = "" if one.event_seq is None else f", row {one.event_seq} of its record"
+            says_where = one.event_seq is None or one.what.startswith("row ")
+            place = "" if says_where else f", row {one.event_seq} of its record"
             present.result(f"{one.coil}{place}: {one.what}")
     return ExitCode.RECORD_BROKEN if broken else ExitCode.DONE

@@ -161,8 +161,8 @@ def show(shared: Shared, coil: str) -> None:
         ("recipe", head.recipe),
         ("batch", head.batch),
         ("spool", head.spool),
-        ("started", head.started),
-        ("ended", head.ended or ""),
+        ("started", _moment(head.started)),
+        ("ended", _moment(head.ended or "")),
         ("outcome", f"{head.outcome}: {head.reason}" if head.reason else head.outcome),
         ("turns", "" if head.turns is None else present.turns(head.turns)),
         ("resistance", _resistance(head) and f"{_resistance(head)} at 20 °C"),
@@ -208,7 +208,12 @@ def _imported(fact: CoilImported) -> str:
     return f"{when} by {fact.by}; {known}{'teaches' if fact.teaches else 'teaches nothing'}"
 
 
-_TAUGHT = {"share": "how its resistance grew"}  # the others are words as they stand
+def _moment(wall_time: str) -> str:
+    """Date, time and zone, as they stand in the record, to be read by people."""
+    return wall_time.replace("T", " ", 1)
+
+
+_TAUGHT = {"share": "how it grew"}  # the others are words as they stand
 
 
 def _show_addendum(fact: Addendum) -> None:

@@ -110,7 +110,8 @@ def _check(
     if shared.json:
         present.result_json(as_json(results))
     else:
-        _show(results)
+        # At a terminal each step has just been told there; a table would say it all again.
+        _show(results, told=not shared.quiet and sys.stdout.isatty() and sys.stderr.isatty())
         if found and not save:
             present.message(
                 "calibration, kept with --save: "
@@ -199,17 +200,23 @@ class _Driver:
             self._checkup.answer(line)
 
     def _tell(self) -> None:
+        from windctl.checkup.step import Verdict
+
         for result in self._checkup.results[self._told :]:
             if not self._quiet:
-                present.message(f"{result.verdict.value:<10}  {result.title}: {result.measured}")
+                limit = (
+                    f" (limit: {result.limit})" if result.verdict is Verdict.FAULT and result.limit else ""
+                )
+                present.message(f"{result.verdict.value:<10}  {result.title}: {result.measured}{limit}")
         self._told = len(self._checkup.results)
 
 
-def _show(results: list[Result]) -> None:
-    present.table(
-        ["step", "verdict", "measured", "limit"],
-        [[one.title, one.verdict.value, one.measured, one.limit] for one in results],
-    )
+def _show(results: list[Result], *, told: bool) -> None:
+    if not told:
+        present.table(
+            ["step", "verdict", "measured", "limit"],
+            [[one.title, one.verdict.value, one.measured, one.limit] for one in results],
+        )
     for one in results:
         if one.advice:
             present.result(f"{one.title}: {one.advice}")
