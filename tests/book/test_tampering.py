@@ -219,7 +219,7 @@ def test_a_deleted_coil_leaves_a_gap(copied: Path) -> None:
     for n, number in ((1, "b1-2026-0001"), (3, "b1-2026-0002"), (2, "b2-2026-0001")):
         copied.write_bytes(pristine)
         with closing(sqlite3.connect(copied, isolation_level=None)) as connection:
-            for table in ("entries", "curve"):
+            for table in ("entries", "curve", "lessons"):
                 connection.execute(f"DELETE FROM {table} WHERE coil = ?", [coil_id(n)])
             connection.execute("DELETE FROM coils WHERE id = ?", [coil_id(n)])
         with open_book(copied, readonly=True) as book:

@@ -106,12 +106,12 @@ def tamper(
 
 def places(one: BrokenCoil, table: Table, column: str, row: dict[str, object], shop: Path) -> bool:
     """Whether a finding tells where to look: the coil, and of its record the row."""
-    if table.name not in ("entries", "curve"):
+    if table.name not in ("entries", "curve", "lessons"):
         return names(one, table, column, row)
     with closing(sqlite3.connect(shop)) as connection:
         (number,) = connection.execute("SELECT number FROM coils WHERE id = ?", [row["coil"]]).fetchone()
-    if table.name == "curve":
-        return one.coil == number and "curve" in one.what
+    if table.name in ("curve", "lessons"):
+        return one.coil == number and table.name in one.what
     return (one.coil, one.event_seq) == (number, row["seq"])
 
 
