@@ -30,6 +30,7 @@ from windctl.tui.session import Session
 from windctl.tui.view import Sound, glance, sound
 from windctl.tui.widgets.checklist import Checklist
 from windctl.tui.widgets.flange_target import FlangeTarget
+from windctl.tui.widgets.key_bar import KeyBar
 
 LOOK = GuideLook("far", near=True, shift_mm=0.15, again=False, way_mm=10.4, apart="")
 LOOKED_AT = replace(
@@ -145,6 +146,8 @@ async def test_the_keys_are_there_only_while_the_guide_is_looked_at(tmp_path: Pa
         shown = {active.binding.action for active in screen.active_bindings.values()}
         assert {"nudge(-0.05)", "nudge(0.05)", "nudge(-0.5)", "nudge(0.5)"} <= shown
         assert not {"slower", "go", "end"} & shown
+        (bar,) = texts(screen.query_one(KeyBar).drawn(80, 1))
+        assert "Y It is right  ← 0.05 mm  → 0.05 mm  , 0.5 mm  . 0.5 mm" in bar
 
 
 @pytest.mark.parametrize("key", ["f8", "space"])
