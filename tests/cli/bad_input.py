@@ -105,7 +105,7 @@ BROKEN = (
 
 RECIPES = (
     line("format", "format = 2", "{file}:1:10: format is 2, must be 1"),
-    line("format", "", "{file}:1:1: format is missing: Version of this form; 1 is the only one so far."),
+    line("format", "", "{file}:1:1: format is missing: version of this form; 1 is the only one so far"),
     line("format", 'format = "1"', '{file}:1:10: format is "1", where a whole number is needed; write it without quotes'),
     line("name", 'name = ""', "{file}:2:8: name is empty"),
     line("name", 'name = "a\\u001b[31m"', "{file}:2:8: name holds the unprintable character \\x1b"),

@@ -122,7 +122,7 @@ def test_the_version_of_the_form_is_one_and_only_a_whole_number() -> None:
 
 def test_missing_keys_are_placed_at_their_table() -> None:
     assert problems("\n[other]\n") == [
-        "x.toml:1:1: format is missing: Version of this form; 1 is the only one so far.",
+        "x.toml:1:1: format is missing: version of this form; 1 is the only one so far",
         "x.toml:1:1: gap is missing; the table [gap] is needed",
         "x.toml:1:1: name is missing: the name",
         "x.toml:2:2: other.width_mm is missing: width of the gap [mm]",

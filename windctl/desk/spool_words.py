@@ -48,8 +48,9 @@ def enough(state: SpoolState) -> str:
 
 def told(state: SpoolState) -> tuple[str, ...]:
     """Coils that taught nothing, and why."""
+    piece = "the piece that was measured, " if state.pieces else ""
     return tuple(
         f"coil {one.coil} was {100 * (exp(one.off) - 1):+.1f} % off and taught nothing: look at the spool's "
-        "label, the count, the coil"
+        f"label, {piece}the count, the coil"
         for one in state.unfit
     ) + tuple(f"coil {coil} was withdrawn: {reason}" for coil, reason in state.withdrawn)

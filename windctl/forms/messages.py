@@ -85,7 +85,13 @@ def _missing(path: KeyPath, field: FieldInfo | None) -> str:
     if field is not None and form_in(field.annotation) is not None:
         return f"is missing; the table [{dotted(path)}] is needed"
     meaning = field.description if field is not None else None
-    return f"is missing: {meaning}" if meaning else "is missing"
+    return f"is missing: {_in_a_sentence(meaning)}" if meaning else "is missing"
+
+
+def _in_a_sentence(meaning: str) -> str:
+    """A key's description without its own full stop, and its capital where that is only the beginning's."""
+    small = meaning[:1].lower() if meaning[1:2].islower() else meaning[:1]
+    return f"{small}{meaning[1:]}".removesuffix(".")
 
 
 def _unknown_key(path: KeyPath, value: object, model: type[Form]) -> str:
