@@ -64,3 +64,5 @@ def told(path: Path, wait_s: float) -> Iterator[None]:
         yield
     except (sa.exc.SQLAlchemyError, sqlite3.Error) as error:
         raise said(error, path, wait_s) from error
+    except UnicodeDecodeError as error:  # of SQLite's own complaint, which quotes a damaged name
+        raise BookError(_SAY[sqlite3.SQLITE_CORRUPT](path, wait_s)) from error
