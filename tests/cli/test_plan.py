@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import re
 from pathlib import Path
 from typing import Any
 
@@ -60,6 +61,19 @@ def test_plan_for_people_says_what_the_coil_will_be(tmp_path: Path, capsys: Prin
     shown = capsys.readouterr().out
     for part in ("150 turns", "at 20 °C", "fits", "wire speed"):
         assert part in shown
+    assert "the target" not in shown
+
+
+def test_the_target_is_told_apart_from_what_the_planned_turns_would_give(
+    tmp_path: Path, capsys: Printed
+) -> None:
+    """That the build is not known better is told as well: packing of a scatter to a tenth (our prior)."""
+    assert run(["plan", str(recipes.to_resistance(tmp_path))]) == 0
+    shown = capsys.readouterr().out
+    assert re.search(
+        r"resistance  200\.0 ohm at 20 °C, the target; 200 ± \d+ ohm if it stopped at turn \d+", shown
+    )
+    assert re.search(r"build +\d\.\d ± \d\.\d mm", shown)
 
 
 @pytest.mark.parametrize("command", [["plan"], ["wind"], ["recipe", "check"]], ids=" ".join)

@@ -76,10 +76,12 @@ def _check(made: Plan, recipe: Recipe) -> Check | None:
 
 def show_plan(made: Plan, recipe: Recipe) -> None:
     """The plan as a table for people, and its section; ± is the half-width of the 95 % interval."""
-    resistance = f"{present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)} at 20 °C"
+    resistance = present.ohm(made.dcr_20c_ohm, _Z95 * made.dcr_sd_ohm)
     if made.target_kind == "dcr_20c_ohm":
-        meant = f"{present.ohm(made.target_value)} at 20 °C, the target"
-        resistance = f"{meant}; {resistance} after just {present.turns(made.turns)}"
+        at_target = f"{present.ohm(made.target_value)} at 20 °C, the target"
+        resistance = f"{at_target}; {resistance} if it stopped at turn {present.grouped(made.turns)}"
+    else:
+        resistance = f"{resistance} at 20 °C"
     build = _millimetres(made.build_mm, made.build_sd_mm)
     highest = f"{made.peak_build_mm:.1f} mm at its highest (unevenness {100 * made.unevenness:.0f} %)"
     peak = f"{made.wire_speed_peak_m_s:.1f} m/s twice a turn"
