@@ -29,6 +29,13 @@ _BY = {"virtual": "the simulation", "operator": "the operator", "windctl": "the 
 _CAUSES = {
     Cause.STOP_POINT: "at its stop point",
     Cause.QUEUE_END: "at the end of its program",
+    Cause.HOLD: "as it was told to",
+    Cause.PEDAL: "the pedal was let go",
+    Cause.SILENCE: "the board no longer heard the computer",
+    Cause.MAX_COUNT: "at the most turns of the recipe",
+    Cause.TRIP: "tripped",
+    Cause.GREET: "the computer came back to it",
+    Cause.DISARM: "its drives were switched off",
 }
 _ALIKE = 3  # choices of a stop point in a row, from which on only the first and the last are told
 
