@@ -22,7 +22,7 @@ from windctl.protocol.conversation import Conversation
 from windctl.protocol.messages import Capability
 from windctl.protocol.messages import State as BoardState
 from windctl.record.decide import Decision, decide
-from windctl.record.events import Event, LinkLost, Resumed
+from windctl.record.events import Event, LinkLost, Resumed, StatusHeard
 from windctl.record.fold import fold, replay, start
 from windctl.run.answers import answer
 from windctl.run.requests import Clear, DryPass, Go, Hold, Nudge, Request, Seen
@@ -64,6 +64,7 @@ class Showing:
         self.decision: Decision = decide(self.state, 0)
         self.turned_from: int | None = None  # the motor's place as the spindle began to turn
         self.seen_at: dict[str, int] = {}
+        self.seen_through: dict[str, int] = {}  # of the last pass, if nothing broke it off
         self.per_mm = profile.guide.steps_per_mm
         self.record(_started(wanted, here()))
         self.say(DryPass(BY))
@@ -105,8 +106,13 @@ class Showing:
                 raise AssertionError("deciding does not come to an end")
 
     def _fold(self, event: Event) -> None:
+        before = self.state
         self.facts.append(event)
-        self.state = fold(self.state, event)
+        self.state = fold(before, event)
+        if self.state.pass_agreed is not before.pass_agreed:
+            broken_off = self.state.misplaced or self.state.guide_lost
+            through = before.pass_agreed is not None and not broken_off
+            self.seen_through = dict(self.seen_at) if through else {}
 
     def say(self, request: Request) -> str:
         """Ask something of the run; what it says."""
@@ -218,6 +224,14 @@ class Showing:
     def limit_switch(self) -> None:
         """A limit switch of the guide opens, until somebody has looked to it."""
         self.switch_open = True
+
+    def killed(self, forgets: int) -> None:
+        """windctl dies, and with it what the board said in its last milliseconds; another run takes up."""
+        last = self.tick - forgets
+        self.facts = [fact for fact in self.facts if not isinstance(fact, StatusHeard) or fact.at_ms <= last]
+        self.state = replay(self.facts)
+        self.talk = Conversation(lambda: self.random.getrandbits(32))
+        self.record(Resumed(0, "", "a test", "0"))
 
     def reset(self) -> None:
         """The board's power goes and comes back."""

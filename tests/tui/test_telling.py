@@ -9,6 +9,8 @@ from windctl.record.events import (
     DENSE,
     KINDS,
     GoGiven,
+    GuideNudged,
+    GuideSeen,
     Held,
     HoldRequested,
     LinkLost,
@@ -36,6 +38,16 @@ from windctl.tui.trail import MOST, Trail
         (Spliced(9, 1200.5, "operator"), "spliced at turn 1 200.5"),
         (LinkLost(9, "unplugged"), "the line is gone: unplugged"),
         (NoteMade(9, "[red]x[/]", "operator"), "note: [red]x[/]"),
+        (
+            GuideNudged(9, -10, -0.05, "far", "operator"),
+            "the guide is nudged at its far end by you: -0.05 mm",
+        ),
+        (
+            GuideSeen(9, 2080, "far", "operator", 30, 0.15, -0.2),
+            "the guide was seen right at its far end by you, nudged by +0.15 mm in all; the ends are 0.20 mm "
+            "nearer together than in the program",
+        ),
+        (GuideSeen(9, 0, "start", "operator"), "the guide was seen right at its start end by you"),
         (
             StopPointChosen(9, 3_178_400, "where the forecast nears the target", 5899.0, 16.0),
             "stop at 7 946: where the forecast nears the target; finish 5.899 ± 0.031 kΩ",
