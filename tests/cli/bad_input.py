@@ -287,7 +287,7 @@ CSVS = (
 OPTIONS: tuple[tuple[int, tuple[str, ...], str], ...] = (
     (2, ("plan", "{recipe}", "--turns", "9", "--dcr", "5k"), "--turns and --dcr each name the target: give one of them."),
     (2, ("plan", "{recipe}", "--turns", "0"), "Invalid value for '--turns': 0 is not in the range x>=1."),
-    (2, ("plan", "{recipe}", "--turns", "many"), "Invalid value for '--turns': 'many' is not a valid integer range."),
+    (2, ("plan", "{recipe}", "--turns", "many"), "Invalid value for '--turns': 'many' is not a valid whole number."),
     (2, ("plan", "{recipe}", "--turns", "2000000"), "2000000 turns are asked for; a coil has 1 to 1000000 turns"),
     (2, ("plan", "{recipe}", "--dcr", "5,9,1"), "'5,9,1' is not a resistance: write 7946, 7.946k or 7,946k"),
     (2, ("plan", "{recipe}", "--dcr", "0"), "a resistance is above 0 ohm, not 0"),
@@ -300,7 +300,7 @@ OPTIONS: tuple[tuple[int, tuple[str, ...], str], ...] = (
     (2, ("plan", "{recipe}", "--dry-run"), "No such option '--dry-run'."),
     (2, ("--dry-run", "plan", "{recipe}"), "--dry-run has no meaning here: this command moves no machine."),
     (2, ("wind", "{recipe}", "--book", "{book}", "--speed", "-1"), "-1.0 is not in the range x>=0."),
-    (2, ("wind", "{recipe}", "--book", "{book}", "--plant-seed", "1.5"), "'1.5' is not a valid integer range."),
+    (2, ("wind", "{recipe}", "--book", "{book}", "--plant-seed", "1.5"), "'1.5' is not a valid whole number."),
     (2, ("wind", "{recipe}", "--book", "{book}", "--readings", "sometimes"), "'sometimes' is not one of 'live', 'checks', 'none'."),
     (2, ("wind", "{recipe}", "--book", "{book}", "--of", "3"), "--of says how many coils a batch is to have: name the batch with --batch."),
     (2, ("wind", "{recipe}", "--book", "{book}", "--batch", "A", "--of", "0"), "0 is not in the range x>=1."),

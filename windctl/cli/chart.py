@@ -31,7 +31,7 @@ _WIDEST = 110
               show_default=True,
               help="Which published set of rules says what is out: four of 1956, or eight of "
                    "1984.")  # fmt: skip
-@click.option("--baseline", type=click.IntRange(min=2), metavar="N",
+@click.option("--baseline", type=typed.WholeRange(min=2), metavar="N",
               help="Limits from the first N coils alone; else from all.")  # fmt: skip
 @click.option("--low", callback=typed.ohm_option, metavar="VALUE",
               help="What the coils are to lie within, in the unit of what is charted; 7.6k.")  # fmt: skip

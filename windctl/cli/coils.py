@@ -19,6 +19,7 @@ from windctl.cli import (
     pair_told,
     present,
     report,
+    typed,
 )
 from windctl.cli.options import Shared, takes
 from windctl.desk.books import book_if_any, book_to_read
@@ -47,7 +48,7 @@ def coils() -> None:
     type=click.Choice(["open", "finished", "stopped", "tripped"]),
     help="Only coils that ended so; open: not ended yet.",
 )
-@click.option("--limit", type=click.IntRange(min=1), metavar="N", help="Only the first N of them.")
+@click.option("--limit", type=typed.WholeRange(min=1), metavar="N", help="Only the first N of them.")
 @takes("book", "batch", "json")
 def list_(
     shared: Shared,

@@ -6,6 +6,7 @@ from pathlib import Path
 
 import click
 
+from windctl.cli import typed
 from windctl.cli.options import Shared, takes
 from windctl.cli.report import STDOUT, written
 from windctl.desk.books import book_to_read
@@ -31,7 +32,7 @@ from windctl.errors import UsageError
 )
 @click.option(
     "--columns",
-    type=click.IntRange(1, 6),
+    type=typed.WholeRange(1, 6),
     default=3,
     show_default=True,
     metavar="N",
@@ -39,7 +40,7 @@ from windctl.errors import UsageError
 )
 @click.option(
     "--start",
-    type=click.IntRange(min=1),
+    type=typed.WholeRange(min=1),
     default=1,
     show_default=True,
     metavar="N",

@@ -60,7 +60,7 @@ _OPTIONS: dict[str, _Decorator] = {
     "plant_seed": _shared(
         "--plant-seed",
         metavar="N",
-        type=click.IntRange(min=0),
+        type=typed.WholeRange(min=0),
         help="Virtual machine: which wire and which fate is drawn.",
     ),
     "readings": _shared(
@@ -77,7 +77,7 @@ _OPTIONS: dict[str, _Decorator] = {
     ),
     "batch": _shared("--batch", metavar="NAME", help="The batch that the coil belongs to."),
     "of": _shared(
-        "--of", metavar="N", type=click.IntRange(min=1), help="How many coils the batch is to have."
+        "--of", metavar="N", type=typed.WholeRange(min=1), help="How many coils the batch is to have."
     ),
     "quiet": _shared("-q", "--quiet", is_flag=True, help="No progress; results, questions and errors only."),
     "no_input": _shared(

@@ -26,7 +26,7 @@ _Z95 = 1.959964  # two-sided 95 % of a normal distribution
 @click.command(short_help="What a coil will be.")
 @click.argument("recipe", type=click.Path(path_type=Path))
 @click.option(
-    "--turns", type=click.IntRange(min=1), metavar="N", help="Plan this many turns, whatever the target."
+    "--turns", type=typed.WholeRange(min=1), metavar="N", help="Plan this many turns, whatever the target."
 )
 @click.option(
     "--dcr",

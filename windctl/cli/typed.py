@@ -16,6 +16,8 @@ from windctl.errors import UsageError
 class FiniteRange(click.FloatRange):
     """A number within limits. Click itself takes "nan" for one, which no limit keeps out."""
 
+    name = "number"  # as a refusal calls it
+
     def convert(
         self, value: Any, param: click.Parameter | None, ctx: click.Context | None
     ) -> Any:  # as click's own
@@ -23,6 +25,12 @@ class FiniteRange(click.FloatRange):
         if isinstance(number, float) and not math.isfinite(number):
             self.fail(f"{value} is not a finite number.", param, ctx)
         return number
+
+
+class WholeRange(click.IntRange):
+    """A whole number within limits."""
+
+    name = "whole number"
 
 
 class Figure(FiniteRange):
