@@ -139,6 +139,8 @@ def test_a_long_line_is_parted_between_words_and_a_command_is_not() -> None:
     line = "The spindle stands, the coil stays open: windctl resume v1-2026-0001"
     assert present.folded(line, 30) == line
     assert present.folded("a\nlong line", 5) == "a\nlong\nline"
+    drawing = "start o---.      .---o end"
+    assert present.folded(drawing, 12) == drawing
 
 
 WIDE = [("coil", "recipe", "at 20 °C"), ("b1-2026-0001", "Bridge, by hand", "5.900 ± 0.050 kohm")]

@@ -38,6 +38,7 @@ __all__ = [
 
 _LEAST_CELL = 1  # cells of a text's line, however narrow the terminal
 _TO_COPY = re.compile(r"\bwindctl [a-z]")
+_DRAWN = re.compile(r"\S {3,}\S")  # words that stand so far apart have their places
 _AT_ONCE = 500  # lines of a long answer that are written at once
 
 _SPELT_OUT = str.maketrans({"±": "+-", "°": "deg ", "·": "-"})
@@ -97,14 +98,15 @@ def room(stream: TextIO) -> int | None:
 
 def folded(text: str, width: int | None, under: int = 0) -> str:
     """The text in lines of at most `width` cells, parted between words; what follows a line's first is set in
-    by `under` cells. What has no place to be parted, such as a digest, and what is to be copied, a command,
-    is left to the terminal.
+    by `under` cells. What has no place to be parted, such as a digest or a drawing, and what is to be copied,
+    a command, is left to the terminal.
     """
     if width is None:
         return text
     lines = []
     for line in text.split("\n"):
-        if len(line) <= width or _TO_COPY.search(line):
+        drawing = not under and _DRAWN.search(line) is not None
+        if len(line) <= width or drawing or _TO_COPY.search(line):
             lines.append(line)
             continue
         parts = _wrapped(line, width, under)
