@@ -34,7 +34,8 @@ class BeforeScreen(Room):
         "Mount the bobbin as drawn and confirm line by line with Enter. S opens the machine and sets it up; "
         "on a real machine nothing turns before you have typed go, or pressed the pedal. Two lines are done "
         "there before that: a contact is zeroed by reading its leads put together (Z), and in a dry pass (P) "
-        "the guide goes to its far turn-round and back, and you see whether it stays inside both flanges."
+        "the guide goes to its far turn-round and back, and you see whether it stays inside both flanges: "
+        "the arrows nudge it to where it is right."
     )
     BINDINGS: ClassVar[list[BindingType]] = [
         key("before.start"),
