@@ -214,6 +214,14 @@ def _says(state: State, decision: Decision) -> str:
     ]
 
 
+_WHY_HELD = {
+    Cause.SILENCE: "the board no longer heard the computer",
+    Cause.PEDAL: "the pedal was let go",
+    Cause.MAX_COUNT: "the recipe allows no more turns",
+    Cause.GREET: "the computer came back to it",
+}
+
+
 def _says_held(state: State, decision: Decision) -> str:
     if decision.asks == "place":
         return "the board no longer knows where the coil stands"
@@ -233,7 +241,8 @@ def _says_held(state: State, decision: Decision) -> str:
         return reason if reason.startswith("held") else f"held: {reason}"
     if state.held is None:
         return "held"
-    return f"held: {Cause(state.held.cause).name.lower().replace('_', ' ')}"
+    cause = Cause(state.held.cause)
+    return f"held: {_WHY_HELD.get(cause, cause.name.lower().replace('_', ' '))}"
 
 
 def _says_check(state: State) -> str:
