@@ -187,6 +187,21 @@ def test_a_break_without_a_splice_can_be_the_end(tmp_path: Path) -> None:
     assert len(facts(tmp_path, WireBroke)) == 1
 
 
+def test_a_wire_that_was_said_to_be_broken_is_not_wound_on_before_it_is_joined(tmp_path: Path) -> None:
+    coil = wound(
+        tmp_path,
+        hold_at(70.0),
+        Step(asked("go"), DrivesOff(ME, "to look")),
+        hands(Broke(ME)),
+        hands(Go(ME)),
+        Step(asked("go", lambda seen: "joined" in seen.answer), Splice(ME)),
+        Step(asked("go", lambda seen: seen.splices == 1), Go(ME)),
+    )
+    came_right(coil)
+    kinds = [type(fact) for fact in facts(tmp_path, WireBroke, GoGiven, Spliced)]
+    assert kinds[kinds.index(WireBroke) + 1] is Spliced
+
+
 # ---------------------------------------------------------------- the count
 
 

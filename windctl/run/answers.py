@@ -82,6 +82,11 @@ def answer(request: Request, state: State, decision: Decision, at_ms: int, *, le
                 return Answer()  # a go that was not asked for starts nothing
             if decision.asks == "pass":
                 return Answer((PassAgreed(at_ms, permission.boot, permission.epoch, request.by),))
+            if state.broke is not None:
+                where = f"the wire broke at turn {at_turn(state.broke.turn)}"
+                return Answer(
+                    says=f"{where}, and nothing says that it is joined: say splice, or new wire, and then go"
+                )
             return Answer((GoGiven(at_ms, permission.boot, permission.epoch, request.by),))
         case Clear():
             if permission is None or leaving or decision.asks != "clear":
