@@ -32,7 +32,7 @@ def test_enter_holds_words_are_explained_and_the_simulated_spindle_is_turned_bac
             session.types(f"{typed}\n")
             session.shows(shown)
         session.types("unwind 5\n")
-        session.shows("Turn the spindle back by hand")
+        session.shows("Turn the spindle back")
         time.sleep(1.5)  # 5 turns at 5 turns a second of the machine's own time
         session.types("note Felt is new\n")
         session.shows("noted")
