@@ -172,6 +172,25 @@ def test_a_spool_says_for_how_many_coils_it_is_enough(book: str, recipe: str, ca
     assert "such coils" in capsys.readouterr().out
 
 
+def test_spools_listed_one_by_one_are_told_as_those_learnt_at_once(
+    book: str, recipe: str, capsys: Printed, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """As in a book of so many coils that none is learnt from all of them."""
+    for name in ("s1", "s2"):
+        asked(capsys, "spool", "add", name, "--gauge", "AWG 42", "--enamel", "grade 1", "--book", book)
+    for name, seed in (("s1", "3"), ("s2", "4"), ("s1", "5")):
+        wind(capsys, recipe, book, "--spool", name, "--plant-seed", seed)
+    at_once = asked(capsys, "spool", "list", "--book", book)["spools"]
+    monkeypatch.setattr("windctl.desk.spools._BY_ITSELF", 0)
+    one_by_one = asked(capsys, "spool", "list", "--book", book)["spools"]
+    assert [one.pop("spool") for one in one_by_one] == [one.pop("spool") for one in at_once] == ["s1", "s2"]
+    for one, all_ in zip(one_by_one, at_once, strict=True):
+        assert one["taught_by"] == all_["taught_by"] > 0
+        for key in ("ohm_per_m", "ohm_per_m_sd"):  # what later coils say of an older one's wire is left out
+            assert one.pop(key) == pytest.approx(all_.pop(key), rel=1e-3)
+        assert one == all_
+
+
 def test_without_a_spool_a_simulated_coil_comes_out_the_same_again(
     book: str, recipe: str, capsys: Printed
 ) -> None:

@@ -18,8 +18,6 @@ if TYPE_CHECKING:
 
 _MORE, _MORE_M = 1.05, 50.0  # more wire than before, beyond what a scale and the wire's table may be off by
 
-_MANY, _S_PER_COIL = 5000, 0.0006  # from how many coils on it is said how long a list of spools takes
-
 
 @click.group()
 def spool() -> None:
@@ -91,12 +89,6 @@ def list_(shared: Shared) -> None:
     from windctl.desk.spools import states_of
 
     with book_if_any(shared) as book:
-        coils = 0 if book is None else book.count()
-        if coils > _MANY:  # each spool's level hangs together with all others'
-            present.message(
-                f"reading what {present.counted(coils, 'coil')} taught of all spools, some "
-                f"{_S_PER_COIL * coils:.0f} s; 'windctl spool show ID' tells of one at once"
-            )
         states = () if book is None else states_of(book)
     if shared.json:
         present.result_json({"spools": [state.as_json() for state in states]})

@@ -19,6 +19,10 @@ if TYPE_CHECKING:
 _NAME = re.compile(r"[A-Za-z0-9][A-Za-z0-9._-]{0,23}")
 _NUMBERED = re.compile(r"s(\d{1,9})")
 
+# From how many coils a spool on, each is asked about by itself, which hears a few hundred coils, instead of
+# all being learnt from all coils at once.
+_BY_ITSELF = 250
+
 
 @dataclass(frozen=True, slots=True)
 class SpoolState:
@@ -91,7 +95,10 @@ def states_of(book: Book) -> tuple[SpoolState, ...]:
     from windctl.book.shelf import history
     from windctl.plan.experience.fold import learn
 
-    spools, lessons = book.spools(), book.lessons()
+    spools = book.spools()
+    if book.count() > _BY_ITSELF * len(spools):
+        return tuple(_by_itself(book, record, spools) for record in spools)
+    lessons = book.lessons()
     # With everything kept the fold grows with the square of the spools; what a spool's last coil left is
     # what can be said of it.
     learnt = learn(history(lessons, spools), [one.spool for one in spools], keep=())
@@ -101,11 +108,15 @@ def states_of(book: Book) -> tuple[SpoolState, ...]:
 def state_of(book: Book, spool: str) -> SpoolState:
     """One spool, by its own coils and the last ones in the book. Raises BookError when there is none of that
     name."""
+    return _by_itself(book, book.spool(spool), book.spools())
+
+
+def _by_itself(book: Book, record: SpoolRecord, spools: Sequence[SpoolRecord]) -> SpoolState:
     from windctl.book.lessons import moment_of
     from windctl.book.shelf import history
     from windctl.plan.experience.fold import learn
 
-    record, spools = book.spool(spool), book.spools()
+    spool = record.spool.id
     keep = {("level", spool), ("slope", spool), ("area", spool), ("metal", spool)}
     heard = [one for kind in (False, True) for one in book.heard(keep, simulated=kind)]
     lessons = sorted(heard, key=lambda one: (moment_of(one.began), one.lesson.coil))

@@ -62,6 +62,7 @@ class SpoolsScreen(Between):
     def on_mount(self) -> None:
         """Look into the book."""
         self.query_one(Table).focus()
+        self.say("◌ reads what coils have taught of them")
         self.look()
 
     def repaint(self) -> None:
