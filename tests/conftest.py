@@ -11,6 +11,8 @@ from pathlib import Path
 import hypothesis
 import pytest
 
+pytest_plugins = ("tests.workers",)
+
 # A busy computer is slow, not wrong: pytest's own time limit is the only one.
 # CI draws the same examples each time.
 hypothesis.settings.register_profile("windctl", deadline=None)
