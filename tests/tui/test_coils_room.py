@@ -175,7 +175,7 @@ async def test_coils_are_found_marked_compared_and_written_by_keys(
         line.value = "recipe:red"
         await until(pilot, lambda: room.page.total == 2)
         await press(pilot, "enter")
-        assert isinstance(app.focused, Table)
+        await until(pilot, lambda: isinstance(app.focused, Table))
         await press(pilot, "m", "m")
         assert len(room.marked) == 2
         await press(pilot, "y")

@@ -112,7 +112,7 @@ async def test_by_keys_the_whole_step_on_the_simulated_machine(tmp_path: Path) -
         assert not before.first.zero
         await press(pilot, "z")
         listed = before.query_one(Checklist)
-        assert "contact zeroed: yes (Z)" in listed.items
+        await until(pilot, lambda: "contact zeroed: yes (Z)" in listed.items)
         for _ in listed.items:
             await press(pilot, "enter")
         assert "Then there: contact zeroed." in str(before.query_one("#before-state", Static).content)
