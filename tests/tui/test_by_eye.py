@@ -7,21 +7,24 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from textual.events import Key
 from textual.pilot import Pilot
 from textual.widgets import Input, Static
 
 from tests.cli.test_by_eye import MACHINE, small
 from tests.run.by_eye import port
-from tests.tui.fakes import CARD, SNAPSHOT
+from tests.tui.fakes import CARD, SNAPSHOT, FakeWinding, StillSession, run_of
 from tests.tui.test_coil_by_keys import press, shown, until
 from windctl.book.open import open_book
 from windctl.desk.asked import Shared
-from windctl.desk.words import turns_of
+from windctl.desk.words import BY, turns_of
 from windctl.machine import by_eye
+from windctl.run.requests import CountIs, Read
 from windctl.run.snapshot import Check, Snapshot
 from windctl.tui.app import WindctlApp
 from windctl.tui.dialogs.counter import CounterPrompt
 from windctl.tui.dialogs.read import ReadingPrompt
+from windctl.tui.dialogs.typed import Typed
 from windctl.tui.screens.before import BeforeScreen
 from windctl.tui.screens.recipes import RecipesScreen
 from windctl.tui.screens.wind import WindScreen
@@ -152,6 +155,27 @@ def test_what_to_do_next_is_whole_in_the_band_of_a_small_terminal(
     text = "\n".join("".join(cell.char for cell in row) for row in band.drawn(80, 3))
     assert words in text
     assert when in text
+
+
+@pytest.mark.parametrize(("asks", "kind"), [("", CounterPrompt), ("read", ReadingPrompt)])
+async def test_of_a_number_typed_fast_no_digit_is_another_number(asks: str, kind: type[Typed]) -> None:
+    app, winding = WindctlApp(StillSession([])), FakeWinding(replace(BY_EYE, turns=3000.0))
+    async with app.run_test(size=(80, 24)) as pilot:
+        run = run_of(winding)
+        run.by_eye = True
+        wind = WindScreen(app.session, run)
+        await app.push_screen(wind)
+        await pilot.pause()
+        if asks:
+            wind.action_read()
+        for digit in "5940":  # all are on their way to this screen before the prompt is there
+            wind.post_message(Key(digit, digit))
+        await until(pilot, lambda: isinstance(app.screen, kind) and bool(app.screen.query(Input)))
+        await until(pilot, lambda: app.screen.query_one(Input).value == "5940")
+        assert len(app.screen_stack) == app.screen_stack.index(wind) + 2  # one prompt, not one a digit
+        await press(pilot, "enter")
+        await until(pilot, lambda: bool(winding.requests))
+    assert winding.requests == [Read(BY, 5940.0) if asks else CountIs(BY, 5940.0)]
 
 
 def test_the_figures_say_where_the_stop_lies_and_how_a_hand_lays_and_no_pace() -> None:

@@ -26,24 +26,12 @@ class CounterPrompt(Typed):
     def __init__(self, snapshot: Snapshot, ask: Callable[[Request], None], first: str = "") -> None:
         words = f"{snapshot.says}.\nType what it says with the spindle standing, such as 3200, 3 200 or 3.2k."
         super().__init__("Counter?", words, grouped(snapshot.stop_turn or snapshot.turns_planned))
-        self._ask, self._first = ask, first
+        self._ask = ask
+        self._early = first
 
     def body(self) -> list[Widget]:
         """The line, and what the run says to it."""
         return [*super().body(), Static("", id="counter-answer", markup=False)]
-
-    def on_mount(self) -> None:
-        """What was typed already stands there."""
-        super().on_mount()
-        line = self.query_one(Input)
-        line.value = self._first
-        line.cursor_position = len(self._first)
-        self.call_after_refresh(self._behind_it)
-
-    def _behind_it(self) -> None:
-        """Focus selects what stands there, and the next digit would take its place."""
-        line = self.query_one(Input)
-        line.cursor_position = len(line.value)
 
     def tell(self, words: str) -> None:
         """Why it is asked about."""

@@ -16,6 +16,7 @@ class Typed(Dialog[str]):
     def __init__(self, heading: str, words: str, placeholder: str = "") -> None:
         super().__init__(heading, words)
         self._placeholder = placeholder
+        self._early = ""
 
     def body(self) -> list[Widget]:
         """The line."""
@@ -23,7 +24,22 @@ class Typed(Dialog[str]):
 
     def on_mount(self) -> None:
         """Type at once."""
-        self.query_one(Input).focus()
+        line = self.query_one(Input)
+        line.focus()
+        line.value = self._early
+        self.call_after_refresh(self._behind_it)
+
+    def more(self, typed: str) -> None:
+        """What was typed before this was laid out, and went to the screen below."""
+        self._early += typed
+        for line in self.query(Input):
+            line.value += typed
+            self._behind_it()
+
+    def _behind_it(self) -> None:
+        """Focus selects what stands there, and the next letter would take its place."""
+        line = self.query_one(Input)
+        line.cursor_position = len(line.value)
 
     def how(self) -> str:
         """How to answer."""

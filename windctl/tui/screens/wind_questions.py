@@ -173,11 +173,15 @@ class WindQuestions(Room):
         self.app.push_screen(CounterPrompt(self.coil.winding.look(), self.coil.winding.request, first))
 
     def on_key(self, event: Key) -> None:
-        """A digit begins what the counter says."""
-        digit = event.character or ""
-        if self.coil.by_eye and digit.isdecimal() and self.check_action("count", ()):
+        """A digit begins what the counter says. What was on its way here when a prompt was opened belongs to
+        the prompt: of a number typed fast not one digit may be taken for another number."""
+        typed, top = event.character or "", self.app.screen
+        if isinstance(top, CounterPrompt | ReadingPrompt) and typed.isprintable():
             event.stop()
-            self.action_count(digit)
+            top.more(typed)
+        elif top is self and self.coil.by_eye and typed.isdecimal() and self.check_action("count", ()):
+            event.stop()
+            self.action_count(typed)
 
     def consider_count(self, snapshot: Snapshot) -> None:
         """Close the prompt once the run has believed what was typed."""
