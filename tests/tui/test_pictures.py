@@ -8,11 +8,15 @@ from __future__ import annotations
 import html
 import os
 import re
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
+from textual.widgets import Input
 
 from tests.tui.fakes import SNAPSHOT, FakeWinding, StillSession, run_of
+from tests.tui.test_by_eye import BY_EYE
+from tests.tui.test_nudging import LOOKED_AT
 from windctl.run.snapshot import Snapshot
 from windctl.tui.app import WindctlApp
 from windctl.tui.screens.wind import WindScreen
@@ -43,15 +47,28 @@ def text_of(picture: str) -> str:
     return " ".join(words.replace("\xa0", " ").split())
 
 
-async def picture_of(app: WindctlApp, size: tuple[int, int], snapshot: Snapshot = SNAPSHOT) -> str:
-    """The run screen at one moment."""
+async def picture_of(
+    app: WindctlApp,
+    size: tuple[int, int],
+    snapshot: Snapshot = SNAPSHOT,
+    *,
+    has: str = "build&#160;",
+    keys: tuple[str, ...] = (),
+) -> str:
+    """The run screen at one moment, once it `has` that, after these `keys`."""
     winding = FakeWinding(snapshot)
     async with app.run_test(size=size) as pilot:
         run = run_of(winding)
+        run.by_eye = snapshot.by_eye
         app.session.run = run
         await app.push_screen(WindScreen(app.session, run))
+        await pilot.pause()
+        await pilot.press(*keys)
+        await pilot.pause()
+        for line in app.screen.query(Input):
+            line.cursor_blink = False  # else it is there in one picture and not in the next
         before = ""
-        while "build&#160;" not in before or before != app.export_screenshot(title="windctl"):
+        while has not in before or before != app.export_screenshot(title="windctl"):
             before = app.export_screenshot(title="windctl")  # until everything is placed and drawn
             await pilot.pause(0.7)
         return plain(before)
@@ -90,13 +107,26 @@ async def test_the_run_screen_without_colour(tmp_path: Path, monkeypatch: pytest
 
 
 async def test_a_trip_is_unmistakable(tmp_path: Path) -> None:
-    from dataclasses import replace
-
     app = WindctlApp(StillSession([tmp_path]))
     picture = await picture_of(app, (80, 24), replace(SNAPSHOT, **TRIPPED))
     assert "the wire broke" in text_of(picture)
     assert "C clears it" in text_of(picture)
     compare("tripped-80x24-dark", picture)
+
+
+async def test_a_counter_read_by_eye_is_asked_for(tmp_path: Path) -> None:
+    app = WindctlApp(StillSession([tmp_path]))
+    waiting = replace(BY_EYE, says="wind to 7 946 and read the counter; slow down at 7 896")
+    picture = await picture_of(app, (80, 24), waiting, has="Counter?", keys=("k",))
+    assert "wind to 7 946 and read the counter" in text_of(picture)
+    compare("counter-80x24-dark", picture)
+
+
+async def test_the_guide_is_nudged_to_where_it_is_seen_right(tmp_path: Path) -> None:
+    app = WindctlApp(StillSession([tmp_path]))
+    picture = await picture_of(app, (80, 24), LOOKED_AT, has="nudged")
+    assert "START FLANGE" in text_of(picture)
+    compare("guide-80x24-dark", picture)
 
 
 async def test_the_help_fits_the_smallest_screen(tmp_path: Path) -> None:

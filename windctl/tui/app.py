@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, ClassVar
 from textual import events
 from textual.app import App, SystemCommand
 from textual.binding import BindingType
+from textual.command import CommandPalette
 from textual.driver import Driver
 from textual.screen import Screen
 from textual.widgets import Input, TextArea
@@ -168,6 +169,11 @@ class WindctlApp(App[int], inherit_bindings=False):
                     f"key {self.get_key_display(binding)}",
                     lambda action=binding.action: screen.call_later(screen.run_action, action),
                 )
+
+    def action_command_palette(self) -> None:
+        """What can be done here, by its name; a coil goes on beneath."""
+        if not isinstance(self.screen, CommandPalette):
+            self.push_screen(CommandPalette(placeholder="what is to be done"))
 
     def _picture(self) -> None:
         path = self.save_screenshot(path=str(Path.cwd()))

@@ -29,7 +29,7 @@ def figures_of(plan: Plan) -> tuple[tuple[str, str], ...]:
         ("turns", turns(plan.turns, _Z95 * plan.turns_sd).removesuffix(" turns")),
         ("resistance", f"{resistance} at 20 °C"),
         ("wire", f"{grouped(plan.wire_length_m)} m, {plan.wire_mass_g:.1f} g"),
-        ("build", f"{plan.build_mm:.2f} mm, {plan.peak_build_mm:.2f} mm at its highest"),
+        ("build", f"{plan.build_mm:.2f} mm, {plan.peak_build_mm:.2f} at its highest"),
         ("time", duration(plan.duration_s)),
         ("wire speed", f"{plan.wire_speed_mean_m_s:.1f} m/s, peaks of {plan.wire_speed_peak_m_s:.1f}"),
         ("program", f"{grouped(plan.program.segments)} segments, {plan.program.digest[:8]}"),

@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING
 
 from windctl.desk.asked import Shared
 from windctl.desk.books import book_to_read, book_to_write
-from windctl.desk.numbers import ohm
+from windctl.desk.numbers import grouped, ohm
 from windctl.desk.simulated_leads import SimulatedLeads
 from windctl.errors import RecordBroken
 from windctl.run.requests import DryPass, Hold, ZeroContact
@@ -252,7 +252,7 @@ class Session(Records):
                     if self._bench is not None and self._bench.truth is not None:
                         truth = self._bench.truth()
                         really = ohm(truth.true_dcr_20c_ohm).replace("kohm", "kΩ").replace("ohm", "Ω")
-                        run.truth = f"{truth.true_turns:.2f} turns, {really} at 20 °C"
+                        run.truth = f"{grouped(truth.true_turns, 2)} turns, {really} at 20 °C"
                     stack.close()
                     collector.take_back()
             return run.outcome

@@ -15,6 +15,17 @@ F1 help     F2 recipes  F3 coils    F7 spools   F9 machine
 F4 all commands         F6 light or dark        F10 leave
 F8 is no emergency stop, this program no safety function: use the hardware stop."""
 
+_SIGNS = {
+    "left": "←",
+    "right": "→",
+    "shift+left": "Shift←",
+    "shift+right": "Shift→",
+    "comma": ",",
+    "full_stop": ".",
+    "slash": "/",
+    "escape": "Esc",
+}
+
 
 class Help(Dialog[None]):
     """Closes with Escape or F1."""
@@ -22,7 +33,7 @@ class Help(Dialog[None]):
     def __init__(self, screen: Screen[object]) -> None:
         about = getattr(screen, "ABOUT", "")
         keys = [
-            f"{_written(active.binding.key):<6} {active.binding.description}"
+            f"{_written(active.binding.key):<7}{active.binding.description}"
             for active in screen.active_bindings.values()
             if active.binding.id and "." in active.binding.id
         ]
@@ -38,4 +49,7 @@ class Help(Dialog[None]):
 
 
 def _written(keys: str) -> str:
+    """As it stands on the keyboard, in six letters."""
+    if keys in _SIGNS:
+        return _SIGNS[keys]
     return keys.upper() if len(keys) == 1 else keys.capitalize()

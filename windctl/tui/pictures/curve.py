@@ -6,7 +6,7 @@ target, closing in on the band that counts as good.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
 
@@ -156,12 +156,22 @@ class _Field:
         last = self._height - 1
         put(whole, last, _MARGIN - 1, "└" + "─" * (self._width - _MARGIN), "axis")
         word = " turns"
-        for value in round_steps(*self._across, max(2, self._width // 10)):
+        usual = max(2, self._width // 10)
+        for most in range(usual, usual + 4):  # where the only figure would stand under the word, finer ones
+            placed = list(self._figures(most, self._width - len(word)))
+            if placed:
+                break
+        for column, text in placed:
+            put(whole, last, column, text, "label")
+        put(whole, last, self._width - len(word), word, "label")
+
+    def _figures(self, most: int, end: int) -> Iterator[tuple[int, str]]:
+        """Column and text of the turns that can stand left of `end`."""
+        for value in round_steps(*self._across, most):
             text = f"{value:,.0f}".replace(",", " ")
             column = _MARGIN + self.x(value) // ACROSS - len(text) // 2
-            if value > 0 and column + len(text) < self._width - len(word):
-                put(whole, last, column, text, "label")
-        put(whole, last, self._width - len(word), word, "label")
+            if value > 0 and column + len(text) < end:
+                yield column, text
 
 
 def _kohm(value: float) -> str:

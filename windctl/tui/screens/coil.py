@@ -73,7 +73,8 @@ class CoilScreen(Between):
         yield RichLog(id="coil-events", min_width=20, markup=False, highlight=False, auto_scroll=False)
 
     def on_mount(self) -> None:
-        """Read the record."""
+        """Read the record; of a long coil that takes a moment."""
+        self.query_one("#coil-figures", Figures).show((("coil", self.number), ("record", "is being read")))
         self.read()
 
     @work(thread=True, exclusive=True, group="told")

@@ -61,7 +61,8 @@ _NOT_WHILE_LOOKING = ("go", "clear", "slower", "faster", "read", "end", "zero")
 def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
     """What keys come and go with."""
     zero = snapshot.zero is not None and snapshot.zero.can
-    return (snapshot.can_take_back, shown_near(snapshot), snapshot.asks == "leads", zero)
+    leads = snapshot.asks == "leads"
+    return (snapshot.can_take_back, shown_near(snapshot), leads, zero, snapshot.driven)
 
 
 class WindScreen(WindQuestions):
@@ -308,6 +309,8 @@ class WindScreen(WindQuestions):
             return running and self.latest is not None and self.latest.can_take_back
         if action in _OF_A_BOARD and self.coil.by_eye:
             return False
+        if action in ("slower", "faster") and self.latest is not None and not self.latest.driven:
+            return False  # somebody's own motor
         if action == "count":
             return running and self.coil.by_eye
         if action in _WHILE_IT_RUNS:

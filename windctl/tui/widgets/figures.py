@@ -39,8 +39,13 @@ class Figures(Drawing):
             )
         for row, (name, value) in enumerate(rows[:height]):
             put(picture, row, 0, name, "label")
-            put(picture, row, indent, value, "digits" if name == "finish" else None)
+            put(picture, row, indent, _cut(value, width - indent), "digits" if name == "finish" else None)
         return picture
+
+
+def _cut(value: str, width: int) -> str:
+    """It shows where there is more than there is room for."""
+    return value if len(value) <= width else f"{value[: max(width - 1, 0)]}…"
 
 
 def _pieces(value: str, width: int) -> list[tuple[bool, str]]:

@@ -68,8 +68,8 @@ class KeyBar(Drawing):
         self._places = []
         room = width
         if last is not None:
-            room = width - len(last.key) - len(last.words) - 3
-            self._put(picture, room + 1, last)
+            room = width - len(last.key) - len(last.words) - 4
+            self._put(picture, room + 2, last)
         column = 1
         for at, one in enumerate(keys):
             needed = len(one.key) + 1 + len(one.words)

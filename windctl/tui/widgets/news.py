@@ -9,7 +9,7 @@ from windctl.tui.widgets.drawing import Drawing
 
 
 class News(Drawing):
-    """As many of the latest lines as there are rows; a long one goes on in the next row."""
+    """As many of the latest as there are rows for, each whole; a long one goes on in the next row."""
 
     def __init__(self, *, id: str | None = None) -> None:
         super().__init__(id=id)
@@ -24,15 +24,18 @@ class News(Drawing):
     def drawn(self, width: int, height: int) -> Picture:
         """The latest lines."""
         picture = blank(width, height)
+        latest = self.lines[-height:]
+        clock = max((len(when) for when, _ in latest), default=0)
+        clock = max(clock, 5)  # a minute and an hour stand in the same column
         rows: list[tuple[str, str]] = []
-        for when, what in self.lines[-height:]:
-            first = True
-            for piece in _pieces(what, max(width - 7, 8)):
-                rows.append((when if first else "", piece))
-                first = False
-        for row, (when, what) in enumerate(rows[-height:]):
-            put(picture, row, 0, when.rjust(5), "label")
-            put(picture, row, 7, what)
+        for when, what in reversed(latest):
+            pieces = _pieces(what, max(width - clock - 2, 8))
+            if rows and len(rows) + len(pieces) > height:
+                break  # the end of a sentence says nothing
+            rows[:0] = [(when if at == 0 else "", piece) for at, piece in enumerate(pieces)]
+        for row, (when, what) in enumerate(rows[:height]):
+            put(picture, row, 0, when.rjust(clock), "label")
+            put(picture, row, clock + 2, what)
         return picture
 
 
