@@ -162,6 +162,16 @@ def test_a_mistyped_turn_is_taken_back_or_put_right_by_the_next(tmp_path: Path) 
         assert len([event for event in at.events() if isinstance(event, ReadingTakenBack)]) == 1
 
 
+def test_a_turn_that_lacks_a_digit_is_asked_about(tmp_path: Path) -> None:
+    with bench(TO_TURNS, tmp_path / "a.book", counts_only()) as at:
+        at.counter(700)
+        for typed in (70, 0):
+            seen = at.counter(typed)
+            assert f"{typed} is far less than the 700 turns that were said before" in seen.answer
+            assert seen.turns == 700.0
+        assert at.counter(0).turns == 0.0
+
+
 def test_a_turn_below_the_last_reading_is_asked_about_since_one_of_the_two_is_wrong(tmp_path: Path) -> None:
     with bench(TO_RESISTANCE, tmp_path / "a.book", checks()) as at:
         at.counter(3000)

@@ -12,6 +12,12 @@ from windctl.tui.looks import LOOKS
 from windctl.tui.view import Sound, glance, next_of, reading_steps, sound, still, target_text
 
 
+def test_the_word_says_where_a_person_is_waited_for() -> None:
+    setting_up = replace(SNAPSHOT, phase="setting up", turns=0.0)
+    words = {asks: glance(replace(setting_up, asks=asks), CARD).look.word for asks in (None, "go", "leads")}
+    assert words == {None: "setting up", "go": "ready", "leads": "waits"}
+
+
 def test_turning_says_where_it_slows_and_stops_and_when() -> None:
     seen = glance(SNAPSHOT, CARD)
     assert (seen.look.word, seen.look.glyph) == ("turning", "▶")

@@ -14,6 +14,7 @@ from windctl.run.said import Answer
 
 _FAR_PAST = 100  # a hundredth of the way to the stop, and
 _AT_LEAST = 20  # turns: hands and eyes overshoot by less
+_A_DIGIT = 5  # so many times too few: a digit was left out
 NEVER = 10  # times the turns of the program
 
 UNWIND = "unwind"  # how the reason for hands at the wire begins, where turns are to be taken off
@@ -57,6 +58,8 @@ def _doubt(turn: int, state: State) -> str | None:
             f"{grouped(turn)} is less than the {known} turns at which the coil was last read or joined "
             "(where turns are taken off, say unwind first)"
         )
+    if turn * _A_DIGIT < state.count - _AT_LEAST and not unwinding(state):
+        return f"{grouped(turn)} is far less than the {grouped(state.count)} turns that were said before"
     return None
 
 

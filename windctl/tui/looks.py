@@ -18,6 +18,7 @@ LOOKS = {
     "connecting": Look("connecting", "◌", "waiting"),
     "setting up": Look("setting up", "◌", "waiting"),
     "ready": Look("ready", "○", "ready"),
+    "asking": Look("waits", "○", "ready"),
     "turning": Look("turning", "▶", "turning"),
     "stopping": Look("stopping", "▷", "stopping"),
     "held": Look("held", "‖", "held"),

@@ -56,14 +56,12 @@ def _signals(session: Session, app: WindctlApp, stopped: threading.Event) -> Ite
 
     def leave(reason: str) -> None:
         session.leave(reason)
-        try:
+        # Before the interface is asked to end: it may be stuck for good in writing to what is gone.
+        done = threading.Timer(_GRACE_S, _end)
+        done.daemon = True
+        done.start()
+        with suppress(RuntimeError):  # it has ended already
             app.call_from_thread(app.exit, INTERRUPTED)
-        except RuntimeError:
-            return  # it has ended already
-        finally:
-            done = threading.Timer(_GRACE_S, _end)
-            done.daemon = True
-            done.start()
 
     def heard(number: int, _frame: FrameType | None) -> None:
         end(f"interrupted by {signal.Signals(number).name}")

@@ -95,7 +95,7 @@ class Glance:
 def glance(snapshot: Snapshot, card: Card, link_lost: str = "") -> Glance:
     """The texts for one snapshot. `link_lost`: how the run failed, if it did."""
     goal = snapshot.stop_turn or snapshot.turns_planned or card.planned_turns
-    look = look_of("no link" if link_lost else snapshot.phase)
+    look = look_of("no link") if link_lost else _look(snapshot)
     return Glance(
         look=look,
         next=Next("see below") if link_lost else next_of(snapshot),
@@ -107,6 +107,13 @@ def glance(snapshot: Snapshot, card: Card, link_lost: str = "") -> Glance:
         virtual=snapshot.virtual,
         alarm=link_lost or _alarm(snapshot),
     )
+
+
+def _look(snapshot: Snapshot) -> Look:
+    """Where a person is waited for before the first turn, the word says so, too."""
+    if snapshot.phase == "setting up" and snapshot.asks is not None:
+        return look_of("ready" if snapshot.asks == "go" else "asking")
+    return look_of(snapshot.phase)
 
 
 def still(seen: Glance, before: Glance) -> Glance:
