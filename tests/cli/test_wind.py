@@ -70,8 +70,9 @@ def test_what_a_person_sees_goes_where_it_should(tmp_path: Path, book: Path, cap
     printed = capsys.readouterr()
     assert "finished" in printed.out
     assert "150 turns" in printed.out
-    assert "turning:" in printed.err
-    assert "turning:" not in printed.out
+    assert " / 150 turns, " in printed.err  # how far it is, at the latest when it has come to rest
+    assert " rpm, finish " in printed.err
+    assert " rpm, finish " not in printed.out
 
 
 def test_quiet_is_quiet(tmp_path: Path, book: Path, capsys: Printed) -> None:
