@@ -9,6 +9,7 @@ from pathlib import Path
 
 import pytest
 from textual.screen import Screen
+from textual.widgets import Static
 
 from tests.tui.fakes import StillSession
 from tests.tui.test_coils_room import HEAD, curve
@@ -23,10 +24,12 @@ from windctl.shop.compare import Differing
 from windctl.tui.app import WindctlApp
 from windctl.tui.dialogs.help import Help
 from windctl.tui.keymap import ids
+from windctl.tui.pictures.cells import texts
 from windctl.tui.records import Told
 from windctl.tui.screens import rooms
 from windctl.tui.screens.coil import CoilScreen
 from windctl.tui.view import Card
+from windctl.tui.widgets.key_bar import KeyBar
 
 KEYS = {"coils": "f3", "spools": "f7", "machine": "f9"}
 CHECKED = replace(
@@ -174,6 +177,18 @@ async def test_every_room_has_help_that_fits(tmp_path: Path) -> None:
             for said in ("no emergency stop", "F9 machine", "Esc closes"):
                 assert said in words, room
             await pilot.press("escape")
+
+
+async def test_without_a_recipe_it_is_said_how_to_come_by_one(tmp_path: Path) -> None:
+    app = WindctlApp(StillSession([tmp_path]))
+    async with app.run_test(size=(80, 24)) as pilot:
+        words = app.screen.query_one("#preview-cautions", Static)
+        for _ in range(200):
+            if "windctl recipe new" in str(words.content):
+                break
+            await pilot.pause(0.02)
+        assert "windctl recipe new" in str(words.content)
+        assert "Wind it" not in texts(app.screen.query_one(KeyBar).drawn(80, 1))[0]
 
 
 def test_every_command_of_the_rooms_has_an_id() -> None:

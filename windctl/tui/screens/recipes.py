@@ -127,8 +127,10 @@ class RecipesScreen(Between):
             options.focus()
         else:
             self.query_one("#preview-cautions", Static).update(
-                "No recipes here. Put recipe files into the folder recipes beside you, then press F5."
+                "No recipes here. windctl recipe new NAME.toml asks for what one needs and writes it. Put recipes "
+                "into the folder that you are in, or into its folder recipes, then press F5."
             )
+        self.refresh_bindings()
 
     def show_open(self, heads: tuple[CoilHead, ...], problem: str = "") -> None:
         """Say first what was left open."""
@@ -185,6 +187,8 @@ class RecipesScreen(Between):
         """Only what can be done is offered."""
         if action == "resume":
             return bool(self.open)
+        if action == "wind":
+            return bool(self.recipes)
         return super().check_action(action, parameters)
 
     # ------------------------------------------------------------ going on

@@ -64,7 +64,8 @@ class WindQuestions(Room):
             return
         words = CAUTIONS if not snapshot.virtual else "The simulated machine will turn."
         if snapshot.asks == "pass":
-            words = f"The guide goes to its far turn-round and back; nothing turns.\n\n{CAUTIONS}"
+            cautions = f"\n\n{CAUTIONS}" if not snapshot.virtual else ""
+            words = f"The guide goes to its far turn-round and back; nothing turns.{cautions}"
         elif snapshot.turns > 0:
             words = f"{snapshot.says}.\n\n{words}"
         if snapshot.zero is not None and snapshot.zero.contact_off:
