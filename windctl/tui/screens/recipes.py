@@ -127,8 +127,8 @@ class RecipesScreen(Between):
             options.focus()
         else:
             self.query_one("#preview-cautions", Static).update(
-                "No recipes here. windctl recipe new NAME.toml asks for what one needs and writes it. Put recipes "
-                "into the folder that you are in, or into its folder recipes, then press F5."
+                "No recipes here. windctl recipe new NAME.toml asks for what one needs and writes it. "
+                "Put recipes into the folder that you are in, or into its folder recipes, then press F5."
             )
         self.refresh_bindings()
 
