@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
-from windctl.tui.pace import FORGIVEN_S, Pace
+from windctl.tui.pace import DIGITS_S, FORGIVEN_S, Pace
 
 
 def drawn(pace: Pace, start: float, seconds: float, backlog: int = 0) -> tuple[int, int]:
-    """Texts and charts drawn in a time, looked at ten times a second."""
-    dues = [pace.due(start + tick / 10, backlog) for tick in range(round(seconds * 10))]
+    """Texts and charts drawn in a time, looked at as often as the screen does."""
+    dues = [pace.due(start + tick * DIGITS_S, backlog) for tick in range(round(seconds / DIGITS_S))]
     return sum(due.texts for due in dues), sum(due.charts for due in dues)
 
 
-def test_a_quick_line_sees_ten_texts_and_two_charts_a_second() -> None:
-    assert drawn(Pace(), 0.0, 10.0) == (100, 20)
+def test_a_quick_line_sees_eight_texts_and_two_charts_a_second() -> None:
+    assert drawn(Pace(), 0.0, 10.0) == (80, 20)
 
 
 def test_nothing_is_drawn_while_the_line_is_behind() -> None:

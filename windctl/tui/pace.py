@@ -1,5 +1,5 @@
-"""How often the run screen is drawn: its digits ten times a second, figures and charts twice, and rarely over
-a slow line.
+"""How often the run screen is drawn: its digits eight times a second, figures and charts twice, and rarely
+over a slow line.
 
 A slow line shows by what it leaves waiting. Pure: time and backlog are handed in.
 """
@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections import deque
 from typing import NamedTuple
 
-DIGITS_S, CHARTS_S = 0.1, 0.5
+DIGITS_S, CHARTS_S = 0.125, 0.5
 SLOW_DIGITS_S, SLOW_CHARTS_S = 1.0, 10.0
 BEHIND = 2  # pieces of output waiting, from which the line counts as behind
 OFTEN = 3  # so often behind within a while makes a line slow

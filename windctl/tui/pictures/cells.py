@@ -25,7 +25,7 @@ BLANK = Cell()
 
 @lru_cache(maxsize=4096)
 def cell(char: str, ink: Ink = None, paper: Ink = None) -> Cell:
-    """A cell that is made once: text is drawn ten times a second, and most of it is the same."""
+    """A cell that is made once: text is drawn eight times a second, and most of it is the same."""
     return Cell(char, ink, paper)
 
 

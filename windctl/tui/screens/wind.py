@@ -66,7 +66,7 @@ def _keys_of(snapshot: Snapshot) -> tuple[object, ...]:
 
 
 class WindScreen(WindQuestions):
-    """Looks at the run ten times a second, draws as often as the line takes it; asks for what is pressed."""
+    """Looks at the run eight times a second, draws as often as the line takes it; asks what is pressed."""
 
     ABOUT = (
         "The coil on the machine. Large: turns. The band: what the machine does, and what it does next. "
@@ -179,7 +179,7 @@ class WindScreen(WindQuestions):
             self.draw()
 
     def show(self, snapshot: Snapshot, *, figures: bool = True) -> None:
-        """Place what the view says. Figures that nobody can read ten times a second come with the charts."""
+        """Place what the view says. Figures that nobody can read so often come with the charts."""
         failed = ""
         if self.ended is not None and self.ended.left in ("failed", "unconfirmed"):
             failed = f"{self.ended.why}. What was wound is in the record; go on with it from the recipes (R)."
