@@ -65,12 +65,20 @@ def to_the_machine(terminal: Tmux) -> None:
     for _ in range(12):
         terminal.press("Enter")
     terminal.shows("S opens the machine")
-    if "Then there:" in terminal.screen:  # on a machine of its own
-        for key, what in (("z", "contact zeroed"), ("p", "dry pass")):
-            if what in terminal.screen.partition("Then there:")[2]:
-                terminal.press(key)
-        terminal.shows("and sets it")
+    then = said_below(terminal, "○ S opens the machine").partition("Then there:")[2]  # on a machine of its own
+    for key, what in (("z", "contact zeroed"), ("p", "dry pass")):
+        if what in then:
+            terminal.press(key)
+    terminal.shows("and sets it")
     terminal.press("s")
+
+
+def said_below(terminal: Tmux, words: str) -> str:
+    """The text that begins with `words`, over the lines that it takes, without what stands beside it."""
+    lines = terminal.screen.splitlines()
+    first = next(at for at, line in enumerate(lines) if words in line)
+    left = lines[first].index(words)
+    return " ".join(line[left:].strip() for line in lines[first : first + 4])
 
 
 def to_the_record(terminal: Tmux) -> None:
@@ -127,7 +135,7 @@ def test_a_coil_that_is_read_by_hand(tmp_path: Path) -> None:
         terminal.type(f"{0.9 * shown:.1f} 22,5".replace(".", ","))
         terminal.shows("takes the reading back", "at 20 °C after")
         terminal.press("u")
-        terminal.shows("taken back by you", "Read the resistance at turn")
+        terminal.shows("typed last is taken", "Read the resistance at turn")
         time.sleep(0.5)
         if "Read the resistance" not in terminal.screen:
             terminal.press("r")

@@ -36,7 +36,7 @@ class Dialog(ModalScreen[Answer], Generic[Answer]):
 
     def on_screen_suspend(self) -> None:
         """What was drawn is not kept."""
-        forget_drawn()
+        forget_drawn(self)
 
     def body(self) -> list[Widget]:
         """What stands below the words."""

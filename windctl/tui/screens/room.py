@@ -32,7 +32,7 @@ class Room(Screen[None]):
 
     def on_screen_suspend(self) -> None:
         """What was drawn is not kept."""
-        forget_drawn()
+        forget_drawn(self)
 
     def top(self) -> TitleBar:
         """The top row."""
