@@ -65,7 +65,8 @@ def to_the_machine(terminal: Tmux) -> None:
     for _ in range(12):
         terminal.press("Enter")
     terminal.shows("S opens the machine")
-    then = said_below(terminal, "○ S opens the machine").partition("Then there:")[2]  # on a machine of its own
+    # On a machine of its own there is something to be done there first.
+    then = said_below(terminal, "○ S opens the machine").partition("Then there:")[2]
     for key, what in (("z", "contact zeroed"), ("p", "dry pass")):
         if what in then:
             terminal.press(key)
