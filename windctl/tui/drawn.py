@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
+import sys
 from typing import Any
 
-from textual import _styles_cache
 from textual.screen import Screen
 from textual.widget import Widget
 
@@ -18,7 +18,8 @@ def forget_drawn(screen: Screen[Any]) -> None:
     """
     for widget in screen.walk_children(Widget, with_self=True):
         widget.refresh()
-    remembered = getattr(_styles_cache.StylesCache, "get_inner_outer", None)
-    clear = getattr(remembered, "cache_clear", None)
-    if clear is not None:  # else a later version of the library remembers them otherwise
+    # Loaded by the library itself; a later version of it may remember them otherwise, or not at all.
+    store = getattr(sys.modules.get("textual._styles_cache"), "StylesCache", None)
+    clear = getattr(getattr(store, "get_inner_outer", None), "cache_clear", None)
+    if clear is not None:
         clear()
